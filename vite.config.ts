@@ -1,0 +1,29 @@
+import { defineConfig } from 'vitest/config';
+
+/**
+ * One configuration for the two jobs: bundling the command line with its worker (`vite build --ssr`), and running the
+ * tests. The projects are the three depths of `DEVELOPERS.md`: unit (under a minute), verify (ladders and published
+ * checks), stress (the long counts, run on request only).
+ */
+const stress = process.argv.includes('stress');
+
+export default defineConfig({
+  build: {
+    ssr: true,
+    target: 'node20',
+    minify: false,
+    rollupOptions: {
+      input: { main: 'src/cli/main.ts', worker: 'src/run/worker.ts', index: 'src/index.ts' },
+      output: { format: 'es', entryFileNames: '[name].js', chunkFileNames: 'shared/[name]-[hash].js' },
+    },
+  },
+  cacheDir: '.cache/vite',
+  test: {
+    environment: 'node',
+    projects: [
+      { extends: true, test: { name: 'unit', include: ['test/**/*.test.ts'], exclude: ['test/{verify,stress,page}/**'], testTimeout: 60_000 } },
+      { extends: true, test: { name: 'verify', include: ['test/verify/**/*.test.ts'], testTimeout: 600_000 } },
+      ...(stress ? [{ extends: true as const, test: { name: 'stress', include: ['test/stress/**/*.test.ts'], testTimeout: 3_600_000 } }] : []),
+    ],
+  },
+});
