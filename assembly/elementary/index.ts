@@ -11,6 +11,14 @@ export function log(x: f64): f64 {
   return NativeMath.log(x);
 }
 
+export function expm1(x: f64): f64 {
+  return NativeMath.expm1(x);
+}
+
+export function log1p(x: f64): f64 {
+  return NativeMath.log1p(x);
+}
+
 export function pow(x: f64, y: f64): f64 {
   return NativeMath.pow(x, y);
 }

@@ -2,13 +2,17 @@ import bytes from '../kernels/elementary.ts';
 import { instantiate } from './wasm.ts';
 
 /**
- * exp, log, pow, sin, cos, asin, atan2 in double precision, with the same last bit in Node and in every browser
+ * exp, log, expm1, log1p, pow, sin, cos, asin, atan2 in double precision, with the same last bit in Node and in every browser
  * (radians; the usual IEEE results for infinities and NaN). Everything that reaches a printed number uses these instead
  * of the host's `Math`, whose last bits are its own affair.
  */
 interface Elementary {
   exp(x: number): number;
   log(x: number): number;
+  /** eˣ − 1 without cancellation near 0 */
+  expm1(x: number): number;
+  /** log(1 + x) without cancellation near 0 */
+  log1p(x: number): number;
   pow(x: number, y: number): number;
   sin(x: number): number;
   cos(x: number): number;
@@ -16,7 +20,7 @@ interface Elementary {
   atan2(y: number, x: number): number;
 }
 
-export const { exp, log, pow, sin, cos, asin, atan2 } = instantiate(bytes, {}) as unknown as Elementary;
+export const { exp, log, expm1, log1p, pow, sin, cos, asin, atan2 } = instantiate(bytes, {}) as unknown as Elementary;
 
 /** Decibels of a ratio of amplitudes: 20 log₁₀ x (−∞ for 0). */
 export function decibels(ratio: number): number {
