@@ -5,6 +5,8 @@ import { defineConfig } from 'vitest/config';
  * tests. The projects are the three depths of `DEVELOPERS.md`: unit (under a minute), verify (ladders and published
  * checks), stress (the long counts, run on request only).
  */
+/** Where a build server wants the runner's own report. */
+const report = process.env['FIELDASSAY_TEST_REPORT'];
 const stress = process.argv.includes('stress');
 
 export default defineConfig({
@@ -20,10 +22,27 @@ export default defineConfig({
   cacheDir: '.cache/vite',
   test: {
     environment: 'node',
+    reporters: report ? ['default', 'json'] : ['default'],
+    ...(report ? { outputFile: { json: report } } : {}),
     projects: [
-      { extends: true, test: { name: 'unit', include: ['test/**/*.test.ts'], exclude: ['test/{verify,stress,page}/**'], testTimeout: 60_000 } },
+      {
+        extends: true,
+        test: {
+          name: 'unit',
+          include: ['test/**/*.test.ts'],
+          exclude: ['test/{verify,stress,page}/**'],
+          testTimeout: 60_000,
+        },
+      },
       { extends: true, test: { name: 'verify', include: ['test/verify/**/*.test.ts'], testTimeout: 600_000 } },
-      ...(stress ? [{ extends: true as const, test: { name: 'stress', include: ['test/stress/**/*.test.ts'], testTimeout: 3_600_000 } }] : []),
+      ...(stress
+        ? [
+            {
+              extends: true as const,
+              test: { name: 'stress', include: ['test/stress/**/*.test.ts'], testTimeout: 3_600_000 },
+            },
+          ]
+        : []),
     ],
   },
 });

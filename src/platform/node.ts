@@ -1,0 +1,25 @@
+import { existsSync } from 'node:fs';
+import { availableParallelism } from 'node:os';
+import { version } from 'node:process';
+import { fileURLToPath } from 'node:url';
+
+/** Threads that can run at once. */
+export const threadsAvailable = (): number => availableParallelism();
+
+/** Whether threads can share memory here. */
+export const canShareMemory = (): boolean => true;
+
+/** Where the bundled worker lies: beside the bundle that runs, or, from sources, in dist/. */
+export function workerScript(): string {
+  for (const place of ['./worker.js', '../worker.js', '../../dist/worker.js']) {
+    const path = fileURLToPath(new URL(place, import.meta.url));
+    if (existsSync(path)) return path;
+  }
+  throw new Error('the worker (dist/worker.js) is missing: run `npm run build`');
+}
+
+/** Options for the pool's worker constructor. */
+export const poolOptions = { workerType: 'thread' } as const;
+
+/** The host, for a result's `environment`. */
+export const hostName = (): string => `Node ${version.slice(1)}, ${process.platform} ${process.arch}`;
