@@ -6,7 +6,7 @@ import { defineConfig } from 'vitest/config';
  * checks), stress (the long counts, run on request only).
  */
 /** Where a build server wants the runner's own report. */
-const report = process.env['FIELDASSAY_TEST_REPORT'];
+const report = process.env.FIELDASSAY_TEST_REPORT;
 const stress = process.argv.includes('stress');
 
 export default defineConfig({

@@ -20,6 +20,9 @@ export const nodeGridOf = (grid: Grid): NodeGrid => ({
 /** A coordinate nearer than this (in cells) to a grid plane is taken to lie on it, so that a wire on a grid line stays on it. */
 const SNAP = 1e-9;
 
+/** What is left of terms that cancel: the rounding of arc lengths, up to a few hundred cells long, in units of a cell. */
+const CANCELLED = 1e-13;
+
 /**
  * Puts the designed currents on grid edges, charge conserving.
  *
@@ -203,8 +206,7 @@ class PairCollector {
         let sum = 0;
         for (; m < list.length && list[m]!.delay === first.delay && list[m]!.waveform === first.waveform; m++)
           sum += list[m]!.weight;
-        // What is left of terms that cancel is a few roundings of the largest.
-        if (Math.abs(sum) <= 16 * Number.EPSILON * scale) continue;
+        if (Math.abs(sum) <= CANCELLED * scale) continue;
         weight.push(sum);
         delay.push(first.delay);
         waveform.push(first.waveform);
