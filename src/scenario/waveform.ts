@@ -2,7 +2,12 @@
  * The time dependence w(t) of a prescribed current. Both solvers see w(t) = 0 for t < 0.
  */
 export type WaveformSpec =
-  | { readonly type: 'gaussian' | 'gaussianDerivative'; readonly amplitude: number; readonly delay: number; readonly sigma: number }
+  | {
+      readonly type: 'gaussian' | 'gaussianDerivative';
+      readonly amplitude: number;
+      readonly delay: number;
+      readonly sigma: number;
+    }
   | {
       readonly type: 'modulatedGaussian';
       readonly amplitude: number;
