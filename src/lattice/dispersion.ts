@@ -1,5 +1,5 @@
 import { cos, sin } from '../elementary/elementary.ts';
-import type { Vec3 } from '../scenario/model.ts';
+import type { Axis, Vec3 } from '../scenario/model.ts';
 import type { Lattice } from './lattice.ts';
 
 /**
@@ -9,39 +9,44 @@ import type { Lattice } from './lattice.ts';
  */
 type DispersiveLattice = Pick<Lattice, 'cellSize' | 'timeStep'> & { readonly medium: { readonly speed: number } };
 
-/** Half the square root of the lattice Laplacian's symbol, squared: Σ_a [sin(k u_a d_a/2)/d_a]², 1/m². */
-function spatialSymbol(k: number, u: Vec3, d: Vec3): number {
-  let sum = 0;
-  for (let a = 0; a < 3; a++) {
-    const s = sin((k * u[a]! * d[a]!) / 2) / d[a]!;
-    sum += s * s;
-  }
-  return sum;
-}
-
-/** ∂/∂k of the spatial symbol: Σ_a (u_a/d_a) sin(k u_a d_a/2) cos(k u_a d_a/2), 1/m. */
-function spatialSymbolSlope(k: number, u: Vec3, d: Vec3): number {
-  let sum = 0;
+/**
+ * The spatial symbol Σ_a [sin(k u_a d_a/2)/d_a]² (1/m²) in out[0] and its derivative in k,
+ * Σ_a (u_a/d_a) sin(k u_a d_a/2) cos(k u_a d_a/2) (1/m), in out[1].
+ */
+function spatialSymbol(k: number, u: Vec3, d: Vec3, out: Float64Array): void {
+  out[0] = 0;
+  out[1] = 0;
   for (let a = 0; a < 3; a++) {
     const phase = (k * u[a]! * d[a]!) / 2;
-    sum += (u[a]! / d[a]!) * sin(phase) * cos(phase);
+    const s = sin(phase) / d[a]!;
+    out[0]! += s * s;
+    out[1]! += u[a]! * s * cos(phase);
   }
-  return sum;
 }
 
-/** Up to this wavenumber no component passes the end of the Brillouin zone, so the spatial symbol rises: π/max|u_a d_a|. */
-const zoneEdge = (u: Vec3, d: Vec3) =>
-  Math.PI / Math.max(Math.abs(u[0] * d[0]), Math.abs(u[1] * d[1]), Math.abs(u[2] * d[2]));
+const symbol = new Float64Array(2);
+
+/** The axis on which a wave along u meets the end of the Brillouin zone first. */
+function firstAxis(u: Vec3, d: Vec3): Axis {
+  const phase = (a: Axis) => Math.abs(u[a] * d[a]);
+  const first = phase(1) > phase(0) ? 1 : 0;
+  return phase(2) > phase(first) ? 2 : first;
+}
 
 /**
  * The largest wavenumber (rad/m) of a wave along the unit vector `direction`: where the spatial symbol has its first
  * maximum on the way out. Slower waves are the aliases of faster ones, so nothing resolved lies beyond.
  */
 export function cutoffWavenumber(direction: Vec3, cellSize: Vec3): number {
-  let lower = zoneEdge(direction, cellSize);
+  const axis = firstAxis(direction, cellSize);
+  // Up to here every term of the symbol rises.
+  let lower = Math.PI / Math.abs(direction[axis] * cellSize[axis]);
   const step = lower / 16;
-  // At the edge itself the slope may be zero but for rounding, along axes and diagonals.
-  const rising = (k: number) => spatialSymbolSlope(k, direction, cellSize) * cellSize[0] > 1e-14;
+  // On axes and diagonals the slope vanishes right here, but for rounding.
+  const rising = (k: number) => {
+    spatialSymbol(k, direction, cellSize, symbol);
+    return symbol[1]! * cellSize[axis] > 1e-14;
+  };
   if (!rising(lower)) return lower;
   let upper = lower + step;
   while (rising(upper)) {
@@ -67,22 +72,30 @@ export function numericalWavenumber(omega: number, direction: Vec3, lattice: Dis
   if (omega * timeStep > Math.PI) return undefined;
   const temporal = sin((omega * timeStep) / 2) / (medium.speed * timeStep);
   const target = temporal * temporal;
-  let upper = zoneEdge(direction, cellSize);
-  if (spatialSymbol(upper, direction, cellSize) < target) {
-    upper = cutoffWavenumber(direction, cellSize);
-    if (spatialSymbol(upper, direction, cellSize) < target) return undefined;
-  }
+  const axis = firstAxis(direction, cellSize);
   let lower = 0;
-  let k = omega / medium.speed;
-  k = Math.min(k + leadingWavenumberError(k, direction, lattice), upper);
+  let upper = Math.PI / Math.abs(direction[axis] * cellSize[axis]);
+  // At `upper` this axis alone contributes 1/d²; only above that is the cut-off in question.
+  if (target * cellSize[axis] * cellSize[axis] > 1) {
+    spatialSymbol(upper, direction, cellSize, symbol);
+    if (symbol[0]! < target) {
+      lower = upper;
+      upper = cutoffWavenumber(direction, cellSize);
+      spatialSymbol(upper, direction, cellSize, symbol);
+      if (symbol[0]! < target) return undefined;
+    }
+  }
+  const free = omega / medium.speed;
+  let k = Math.min(Math.max(free + leadingWavenumberError(free, direction, lattice), lower), upper);
   // Newton doubles the digits each round and bisection halves the bracket: 100 rounds are never needed.
   for (let round = 0; round < 100; round++) {
-    const excess = spatialSymbol(k, direction, cellSize) - target;
+    spatialSymbol(k, direction, cellSize, symbol);
+    const excess = symbol[0]! - target;
     if (excess > 0) upper = k;
     else lower = k;
-    let next = k - excess / spatialSymbolSlope(k, direction, cellSize);
-    if (!(next > lower && next < upper)) next = (lower + upper) / 2;
-    if (Math.abs(next - k) <= 2 * Number.EPSILON * k) return next;
+    let next = k - excess / symbol[1]!;
+    if (!(next >= lower && next <= upper)) next = (lower + upper) / 2;
+    if (Math.abs(next - k) <= 4 * Number.EPSILON * k) return next;
     k = next;
   }
   return k;

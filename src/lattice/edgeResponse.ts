@@ -121,7 +121,7 @@ export class EdgeResponse {
   /** d_e ε_ace D_c g, A/m for 1 A */
   #latticeH(edge: Axis, a: Axis, x: number, y: number, z: number): number {
     const { cellSize } = this.#lattice;
-    const c = 3 - edge - a;
+    const c = (3 - edge - a) as Axis;
     let sum = 0;
     for (const p of HALVES)
       sum += 2 * p * this.#static.at(x + (c === 0 ? p : 0), y + (c === 1 ? p : 0), z + (c === 2 ? p : 0));
