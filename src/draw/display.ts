@@ -1,0 +1,178 @@
+import { axes } from './axes.ts';
+import { MAPS, NEUTRALS, type Scale } from './colour.ts';
+import { crossings, planeOutline } from './furniture.ts';
+import { type ImageLabel, type Label, shortNumber } from './label.ts';
+import { GHOST, type ImageStroke } from './pen.ts';
+import { type FacetMap, facetMap, type Projection, pixelOf, projectionOf, type Rectangle } from './projection.ts';
+import type { Pane, Plane, Scene, Stroke } from './scene.ts';
+import type { Texture } from './surface.ts';
+
+/** A pane as the rasteriser draws it: everything in image pixels, nothing left to decide but what hides what. */
+export interface PaneList {
+  readonly area: Rectangle;
+  readonly view: Rectangle;
+  readonly layers: readonly { readonly clip: Rectangle; readonly facets: readonly ImageFacet[] }[];
+  readonly strokes: readonly ImageStroke[];
+  readonly markers: readonly ImageMarker[];
+  readonly bar?: ColourBar | undefined;
+  readonly labels: readonly ImageLabel[];
+}
+
+export interface ImageFacet {
+  readonly map: FacetMap;
+  readonly texture: Texture;
+}
+
+export interface ImageMarker {
+  readonly x: number;
+  readonly y: number;
+  readonly z: number;
+  readonly radius: number;
+  readonly colour: number;
+}
+
+export interface ColourBar {
+  readonly rectangle: Rectangle;
+  readonly table: Uint32Array;
+}
+
+const TITLE_HEIGHT = 30;
+const BAR_HEIGHT = 44;
+
+/** The part of a pane that shows space: its area without the title's strip and the colour bar's. */
+export function viewOf({ area, scale }: Pane, pixelRatio: number): Rectangle {
+  const above = TITLE_HEIGHT * pixelRatio;
+  const below = scale ? BAR_HEIGHT * pixelRatio : 0;
+  return { x: area.x, y: area.y + above, width: area.width, height: area.height - above - below };
+}
+
+/**
+ * Projects a scene.
+ * @param colours the colours of a plane's values, packed
+ */
+export function displayList(scene: Scene, colours: (plane: Plane) => Uint32Array): PaneList[] {
+  return scene.panes.map((pane, n) => paneList(scene, pane, n, colours));
+}
+
+function paneList(scene: Scene, pane: Pane, n: number, colours: (plane: Plane) => Uint32Array): PaneList {
+  const { theme, pixelRatio } = scene;
+  const neutrals = NEUTRALS[theme];
+  const view = viewOf(pane, pixelRatio);
+  const projection = projectionOf(pane.camera, view);
+  const facets = (planes: readonly Plane[]) =>
+    planes.flatMap((plane) => {
+      const map = facetMap(projection, plane);
+      return map ? [{ map, texture: { nu: plane.nu, nv: plane.nv, colours: colours(plane) } }] : [];
+    });
+  const split = pane.overlay ? Math.round(view.width * pane.overlay.divider) : view.width;
+  const layers = [{ clip: { ...view, width: split }, facets: facets(pane.planes) }];
+  if (pane.overlay)
+    layers.push({
+      clip: { ...view, x: view.x + split, width: view.width - split },
+      facets: facets(pane.overlay.planes),
+    });
+
+  const rims = [...pane.planes.map((plane) => planeOutline(plane, neutrals)), crossings(pane.planes, neutrals)];
+  const strokes = [...rims, ...pane.strokes].map((stroke) => imageStroke(stroke, projection, pixelRatio));
+  const frame = pane.axes ? axes(pane.axes, projection, neutrals, pixelRatio, n) : { strokes: [], labels: [] };
+  if (pane.overlay) strokes.push(dividerStroke(view, view.x + split, neutrals.ink, pixelRatio));
+
+  const markers: ImageMarker[] = [];
+  const labels: ImageLabel[] = [...frame.labels];
+  for (const { at, name, colour } of pane.markers) {
+    const anchor = pixelOf(projection, at);
+    if (!anchor || !contains(view, anchor.x, anchor.y)) continue;
+    const radius = 4.5 * pixelRatio;
+    markers.push({ ...anchor, radius, colour });
+    const place = { pane: n, x: anchor.x + radius + 4 * pixelRatio, y: anchor.y };
+    labels.push({
+      label: { ...place, text: name, align: 'left', baseline: 'middle', role: 'name', hidden: false },
+      anchor,
+    });
+  }
+  const { area } = pane;
+  const title = { pane: n, x: area.x + 10 * pixelRatio, y: area.y + (TITLE_HEIGHT / 2) * pixelRatio, text: pane.title };
+  labels.push({ label: { ...title, align: 'left', baseline: 'middle', role: 'title', hidden: false } });
+  const bar = pane.scale && colourBar(pane.scale, scene, area, n);
+  if (bar) labels.push(...bar.labels.map((label) => ({ label })));
+  return { area, view, layers, strokes: [...frame.strokes, ...strokes], markers, bar, labels };
+}
+
+export function contains({ x, y, width, height }: Rectangle, px: number, py: number): boolean {
+  return px >= x && px < x + width && py >= y && py < y + height;
+}
+
+/** A stroke in the image, cut at the near plane, where a line would otherwise come back from behind the eye. */
+export function imageStroke(stroke: Stroke, { rows }: Projection, pixelRatio: number): ImageStroke {
+  const { points, form, colour, width, dash, ghost = GHOST } = stroke;
+  const count = points.length / 3;
+  const step = form === 'line' ? 1 : 2;
+  const most = Math.max(0, form === 'line' ? count - 1 : count / 2);
+  const segments = new Float64Array(6 * most);
+  const colours = new Uint32Array(2 * most);
+  const row = (r: number, k: number) =>
+    rows[r]! * points[k]! + rows[r + 1]! * points[k + 1]! + rows[r + 2]! * points[k + 2]! + rows[r + 3]!;
+  let drawn = 0;
+  for (let n = 0; n + 1 < count; n += step) {
+    const [from, to] = [3 * n, 3 * n + 3];
+    const [x0, y0, z0, w0] = [row(0, from), row(4, from), row(8, from), row(12, from)];
+    const [x1, y1, z1, w1] = [row(0, to), row(4, to), row(8, to), row(12, to)];
+    // beyond the near plane z·w + w ≥ 0, linear along the segment
+    const before = z0 + w0;
+    const after = z1 + w1;
+    if (before <= 0 && after <= 0) continue;
+    const cut = before / (before - after);
+    const put = (t: number, at: number) => {
+      const w = w0 + t * (w1 - w0);
+      segments[at] = (x0 + t * (x1 - x0)) / w;
+      segments[at + 1] = (y0 + t * (y1 - y0)) / w;
+      segments[at + 2] = (z0 + t * (z1 - z0)) / w;
+    };
+    put(before > 0 ? 0 : cut, 6 * drawn);
+    put(after > 0 ? 1 : cut, 6 * drawn + 3);
+    colours[2 * drawn] = colourAt(colour, n);
+    colours[2 * drawn + 1] = colourAt(colour, n + 1);
+    drawn++;
+  }
+  return {
+    segments: segments.subarray(0, 6 * drawn),
+    colours: colours.subarray(0, 2 * drawn),
+    width: width * pixelRatio,
+    dash: dash && [dash[0] * pixelRatio, dash[1] * pixelRatio],
+    ghost,
+  };
+}
+
+function colourAt(colour: number | Uint32Array, vertex: number): number {
+  return typeof colour === 'number' ? colour : colour[vertex]!;
+}
+
+function dividerStroke(view: Rectangle, x: number, colour: number, pixelRatio: number): ImageStroke {
+  return {
+    segments: Float64Array.of(x, view.y, -1, x, view.y + view.height, -1),
+    colours: Uint32Array.of(colour, colour),
+    width: 2 * pixelRatio,
+    ghost: 1,
+  };
+}
+
+/** The colour bar of a scale with its ends and its name, in the strip below the view. */
+function colourBar(scale: Scale, scene: Scene, area: Rectangle, pane: number): ColourBar & { labels: Label[] } {
+  const { theme, pixelRatio } = scene;
+  const width = Math.round(Math.min(200 * pixelRatio, area.width * 0.5));
+  const height = Math.round(10 * pixelRatio);
+  const x = Math.round(area.x + (area.width - width) / 2);
+  const y = Math.round(area.y + area.height - BAR_HEIGHT * pixelRatio + 6 * pixelRatio);
+  const [from, to] = scale.kind === 'signed' ? [-scale.limit, scale.limit] : [scale.from, scale.to];
+  const gap = 6 * pixelRatio;
+  const text = { pane, role: 'scale', hidden: false } as const;
+  return {
+    rectangle: { x, y, width, height },
+    table: MAPS[theme][scale.kind].table,
+    labels: [
+      { ...text, x: x - gap, y: y + height / 2, text: shortNumber(from), align: 'right', baseline: 'middle' },
+      { ...text, x: x + width + gap, y: y + height / 2, text: shortNumber(to), align: 'left', baseline: 'middle' },
+      { ...text, x: x + width / 2, y: y + height + gap, text: scale.label, align: 'center', baseline: 'top' },
+    ],
+  };
+}
