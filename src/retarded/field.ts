@@ -1,0 +1,416 @@
+import type { Medium, Source, Vec3 } from '../scenario/model.ts';
+import {
+  CHARGE,
+  COEFFICIENTS,
+  type Constants,
+  CURRENT,
+  chargeElement,
+  constantsOf,
+  dipoleElement,
+  filamentElement,
+  MAGNETIC,
+  QUANTITIES,
+  SCALAR,
+  SLOPE,
+  VECTOR,
+} from './elements.ts';
+import { delayRate, fronts, gradedCuts, onset, steepestBend } from './panels.ts';
+import { type PieceView, viewOf } from './pieceView.ts';
+import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
+import { KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
+import { TermList } from './terms.ts';
+import { addWave } from './waves.ts';
+
+export interface FieldOptions {
+  /** 'best' (default): closed form where there is one; 'quadrature': adaptive quadrature of every filament */
+  readonly method?: Method;
+  /** relative error asked of each of E, B, φ, A; default 1e-10 */
+  readonly tolerance?: number;
+  /** false leaves φ and A out (they are NaN), which halves the work of full-speed waves */
+  readonly potentials?: boolean;
+  /** most integrand evaluations; default 200 000 */
+  readonly maxEvaluations?: number;
+}
+
+/** The field at one point and instant, SI units, with bounds on the Euclidean norm of each error. */
+export interface FieldValue {
+  readonly E: Vec3;
+  readonly H: Vec3;
+  readonly B: Vec3;
+  readonly phi: number;
+  readonly A: Vec3;
+  readonly errorE: number;
+  readonly errorH: number;
+  readonly errorPhi: number;
+  readonly errorA: number;
+  /** evaluations of integrands and closed-form terms */
+  readonly evaluations: number;
+  /** false: the errors are larger than the tolerance, the evaluations being used up (at `worst`) */
+  readonly converged: boolean;
+  readonly worst?: string;
+}
+
+/**
+ * The exact field of prescribed currents at any point and instant.
+ * @param point m; @param t s
+ * @throws RangeError where the point lies on a source, naming it
+ */
+export function fieldAt(
+  sources: readonly Source[],
+  medium: Medium,
+  point: Vec3,
+  t: number,
+  options: FieldOptions = {},
+): FieldValue {
+  return fieldOf(prepareSources(sources, medium, options.method ?? 'best'), options)(point, t);
+}
+
+/** The same for many points: sources are taken apart once. */
+export function fieldOf(prepared: Prepared, options: FieldOptions = {}): (point: Vec3, t: number) => FieldValue {
+  const k = constantsOf(prepared.medium);
+  const settings = { tolerance: 1e-10, potentials: true, maxEvaluations: 200_000, ...options };
+  return (point, t) => evaluate(prepared, k, point, t, settings);
+}
+
+/** Roundings of one product of the formulas, generously counted. */
+const ROUNDINGS = 8 * Number.EPSILON;
+
+/** A gap between the two delays of a wave counts as small below this part of the waveform's time scale. */
+export const SMALL_GAP = 0.1;
+
+/** The quantities that have an error of their own: from, to in the vector of ten. */
+const GROUPS = [
+  [0, MAGNETIC],
+  [MAGNETIC, SCALAR],
+  [SCALAR, VECTOR],
+  [VECTOR, QUANTITIES],
+] as const;
+
+const groupNorm = (v: Float64Array, g: number): number => {
+  const [from, to] = GROUPS[g]!;
+  let sum = 0;
+  for (let c = from; c < to; c++) sum += v[c]! * v[c]!;
+  return Math.sqrt(sum);
+};
+
+/** One part of an integral: its value, and for each group its error and the rounding no refinement removes. */
+interface Panel {
+  readonly integral: Integral;
+  readonly view: PieceView;
+  readonly from: number;
+  readonly to: number;
+  readonly value: Float64Array;
+  readonly error: Float64Array;
+  readonly rounding: Float64Array;
+}
+
+function evaluate(
+  prepared: Prepared,
+  k: Constants,
+  point: Vec3,
+  t: number,
+  settings: Required<Omit<FieldOptions, 'method'>>,
+): FieldValue {
+  refuseOnSource(prepared, point);
+  const total = new Float64Array(QUANTITIES);
+  const rounding = new Float64Array(4);
+  let evaluations = 0;
+
+  terms.clear();
+  addClosedTerms(prepared, k, point, gapWithoutKink(prepared, t), terms);
+  for (let n = 0; n < terms.count; n++) addTerm(prepared, terms, n, t, total, rounding);
+  evaluations += terms.count;
+
+  const panels: Panel[] = [];
+  for (const integral of prepared.integrals) {
+    if (integral.potentialsOnly && !settings.potentials) continue;
+    const view = viewOf(integral.piece, point);
+    addFronts(prepared, k, integral, view, t, total);
+    for (const [from, to] of partsOf(prepared, k, integral, view, t)) {
+      panels.push(integrate(prepared, k, integral, view, from, to, t));
+      evaluations += KRONROD_POINTS;
+    }
+  }
+
+  const groups = settings.potentials ? [0, 1, 2, 3] : [0, 1];
+  const sum = new Float64Array(QUANTITIES);
+  const error = new Float64Array(4);
+  const noise = new Float64Array(4);
+  for (;;) {
+    sum.set(total);
+    error.fill(0);
+    noise.set(rounding);
+    for (const panel of panels) {
+      for (let c = 0; c < QUANTITIES; c++) sum[c]! += panel.value[c]!;
+      for (let g = 0; g < 4; g++) {
+        error[g]! += panel.error[g]!;
+        noise[g]! += panel.rounding[g]!;
+      }
+    }
+    // B is measured against |E|/v and A against φ/v: after a pulse has passed they are zero to rounding.
+    const sizes = [0, 1, 2, 3].map((g) => groupNorm(sum, g));
+    const limits = [
+      sizes[0]!,
+      Math.max(sizes[1]!, sizes[0]! / k.speed),
+      Math.max(sizes[2]!, sizes[3]! * k.speed),
+      Math.max(sizes[3]!, sizes[2]! / k.speed),
+    ].map((size, g) => Math.max(settings.tolerance * size - noise[g]!, noise[g]!));
+    const open = groups.filter((g) => error[g]! > limits[g]!);
+    const worst = open.length === 0 ? -1 : worstPanel(panels, open, limits);
+    const exhausted = evaluations + 2 * KRONROD_POINTS > settings.maxEvaluations;
+    if (worst < 0 || exhausted) {
+      const bad = worst < 0 ? undefined : panels[worst]!;
+      const no = settings.potentials ? 0 : Number.NaN;
+      return {
+        E: [sum[0]!, sum[1]!, sum[2]!],
+        B: [sum[3]!, sum[4]!, sum[5]!],
+        H: [3, 4, 5].map((c) => sum[c]! / prepared.medium.permeability) as unknown as Vec3,
+        phi: sum[SCALAR]! + no,
+        A: [sum[VECTOR]! + no, sum[VECTOR + 1]! + no, sum[VECTOR + 2]! + no],
+        errorE: error[0]! + noise[0]!,
+        errorH: (error[1]! + noise[1]!) / prepared.medium.permeability,
+        errorPhi: error[2]! + noise[2]! + no,
+        errorA: error[3]! + noise[3]! + no,
+        evaluations,
+        converged: open.length === 0,
+        ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),
+      };
+    }
+    const { integral, view, from, to } = panels[worst]!;
+    const middle = (from + to) / 2;
+    panels[worst] = integrate(prepared, k, integral, view, from, middle, t);
+    panels.push(integrate(prepared, k, integral, view, middle, to, t));
+    evaluations += 2 * KRONROD_POINTS;
+  }
+}
+
+/** The panel with the largest error relative to its limit that bisection can still lower; −1 if there is none. */
+function worstPanel(panels: readonly Panel[], open: readonly number[], limits: readonly number[]): number {
+  let worst = -1;
+  let most = 0;
+  panels.forEach((panel, n) => {
+    const middle = (panel.from + panel.to) / 2;
+    if (!(middle > panel.from && middle < panel.to)) return;
+    for (const g of open) {
+      const size = panel.error[g]! / limits[g]!;
+      if (size > most && panel.error[g]! > panel.rounding[g]!) {
+        most = size;
+        worst = n;
+      }
+    }
+  });
+  return worst;
+}
+
+/** Bounds of the parts that an integral starts with: cut at fronts of kinks, graded towards the observer. */
+function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: PieceView, t: number) {
+  const waveform = prepared.waveforms[integral.waveform]!;
+  const stations = [view.start, view.end];
+  if (view.nearest > view.start && view.nearest < view.end) stations.push(view.nearest);
+  for (const { delay, slowness } of integral.terms)
+    for (const kink of waveform.kinks.length > 0 ? waveform.kinks : [0])
+      stations.push(...fronts(view, delay, slowness, k.speed, t - kink));
+  stations.sort((a, b) => a - b);
+  const bend = steepestBend(integral, k.speed);
+  for (let m = 1; m < stations.length; m++) {
+    const from = stations[m - 1]!;
+    const to = stations[m]!;
+    if (!(to > from)) continue;
+    const cuts: number[] = [];
+    gradedCuts(view, from, to, 1, 2 * waveform.timeScale, bend, k.speed, cuts);
+    let start = from;
+    for (const cut of cuts) {
+      if (reached(integral, view, start, cut, t, k.speed)) yield [start, cut] as const;
+      start = cut;
+    }
+  }
+}
+
+/** Whether any part of [from, to] can be felt at t: before its start a current is zero. */
+function reached(integral: Integral, view: PieceView, from: number, to: number, t: number, speed: number): boolean {
+  const travel = view.distance(from, to) / speed;
+  return integral.terms.some(({ delay, slowness }) => t >= delay + Math.min(slowness * from, slowness * to) + travel);
+}
+
+/**
+ * A current that starts with a jump J has w′ = J δ at its front: J D/|dτ/ds| there, D the coefficients of w′. (A front
+ * exactly along a stationary delay is the caustic of a uniform current switched on at once; it has no finite value.)
+ */
+function addFronts(
+  prepared: Prepared,
+  k: Constants,
+  integral: Integral,
+  view: PieceView,
+  t: number,
+  total: Float64Array,
+): void {
+  const jump = onset(prepared.waveforms[integral.waveform]!);
+  if (jump === 0 || integral.potentialsOnly) return;
+  for (const { factor, delay, slowness } of integral.terms)
+    for (const s of fronts(view, delay, slowness, k.speed, t)) {
+      const rate = delayRate(view, s, slowness, k.speed);
+      if (rate === 0) continue;
+      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+      for (let c = 0; c < QUANTITIES; c++) total[c]! += (factor * jump * element[SLOPE + c]!) / rate;
+    }
+}
+
+const element = new Float64Array(COEFFICIENTS);
+const terms = new TermList();
+const wave = new Float64Array(4);
+const samples = new Float64Array(KRONROD_POINTS * QUANTITIES);
+const difference = new Float64Array(QUANTITIES);
+
+/** Gauss–Kronrod over one part of an integral. */
+function integrate(
+  prepared: Prepared,
+  k: Constants,
+  integral: Integral,
+  view: PieceView,
+  from: number,
+  to: number,
+  t: number,
+): Panel {
+  const waveform = prepared.waveforms[integral.waveform]!;
+  const half = (to - from) / 2;
+  const value = new Float64Array(QUANTITIES);
+  const error = new Float64Array(4);
+  const rounding = new Float64Array(4);
+  difference.fill(0);
+  samples.fill(0);
+  for (let m = 0; m < KRONROD_POINTS; m++) {
+    const s = (from + to) / 2 + half * kronrod.nodes[m]!;
+    view.look(s);
+    const base = m * QUANTITIES;
+    for (const { factor, delay, slowness } of integral.terms) {
+      const u = t - delay - slowness * s - view.r / k.speed;
+      if (u < 0) continue;
+      waveform.at(u, 2, wave);
+      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+      const w = factor * wave[1]!;
+      const slope = factor * wave[2]!;
+      for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++)
+        samples[base + c]! += element[CURRENT + c]! * w + element[SLOPE + c]! * slope;
+    }
+    for (let c = 0; c < QUANTITIES; c++) {
+      value[c]! += half * kronrod.weights[m]! * samples[base + c]!;
+      difference[c]! += half * kronrod.differences[m]! * samples[base + c]!;
+    }
+  }
+  const relative = ROUNDINGS + relativeRounding(view, from, to, t, waveform.timeScale);
+  for (let g = 0; g < 4; g++) {
+    const [first, last] = GROUPS[g]!;
+    let size = 0;
+    let spread = 0;
+    for (let m = 0; m < KRONROD_POINTS; m++) {
+      let own = 0;
+      let off = 0;
+      for (let c = first; c < last; c++) {
+        const f = samples[m * QUANTITIES + c]!;
+        own += f * f;
+        off += (f - value[c]! / (2 * half)) ** 2;
+      }
+      size += half * kronrod.weights[m]! * Math.sqrt(own);
+      spread += half * kronrod.weights[m]! * Math.sqrt(off);
+    }
+    error[g] = kronrodError(groupNorm(difference, g), spread);
+    rounding[g] = relative * size;
+  }
+  return { integral, view, from, to, value, error, rounding };
+}
+
+/** What rounding of positions and of instants does to an integrand, relatively. */
+function relativeRounding(view: PieceView, from: number, to: number, t: number, timeScale: number): number {
+  const extent = Math.abs(from) + Math.abs(to);
+  return Number.EPSILON * (extent / view.distance(from, to) + (2 * Math.abs(t)) / timeScale);
+}
+
+/** Adds term n at t, and its rounding: of products, of the geometry, of the instant. */
+function addTerm(
+  prepared: Prepared,
+  list: TermList,
+  n: number,
+  t: number,
+  total: Float64Array,
+  rounding: Float64Array,
+): void {
+  const delay = list.delay[n]!;
+  prepared.waveforms[list.waveform[n]!]!.at(t - delay, 3, wave);
+  const base = n * COEFFICIENTS;
+  const instant = Number.EPSILON * (Math.abs(t) + Math.abs(delay));
+  const relative = ROUNDINGS + Number.EPSILON * list.geometry[n]!;
+  for (let g = 0; g < 4; g++) {
+    let own = 0;
+    let shift = 0;
+    for (let c = GROUPS[g]![0]; c < GROUPS[g]![1]; c++) {
+      const q = list.coefficient[base + CHARGE + c]!;
+      const w = list.coefficient[base + CURRENT + c]!;
+      const d = list.coefficient[base + SLOPE + c]!;
+      const f = q * wave[0]! + w * wave[1]! + d * wave[2]!;
+      total[c]! += f;
+      own += (Math.abs(q * wave[0]!) + Math.abs(w * wave[1]!) + Math.abs(d * wave[2]!)) ** 2;
+      shift += (q * wave[1]! + w * wave[2]! + d * wave[3]!) ** 2;
+    }
+    rounding[g]! += relative * Math.sqrt(own) + instant * Math.sqrt(shift);
+  }
+}
+
+/** All that has a closed form at `point`, as delayed waveforms. */
+export function addClosedTerms(
+  prepared: Prepared,
+  k: Constants,
+  point: Vec3,
+  smallGap: (waveform: number, from: number, gap: number, slimness: number) => boolean,
+  list: TermList,
+): void {
+  for (const { at, factor, delay, waveform } of prepared.charges) {
+    const [x, y, z, r, rounding] = relativeTo(at, point);
+    chargeElement(k, x, y, z, element);
+    list.add(element, factor, delay + r / k.speed, waveform, rounding);
+  }
+  for (const { at, moment, waveform } of prepared.dipoles) {
+    const [x, y, z, r, rounding] = relativeTo(at, point);
+    dipoleElement(k, x, y, z, moment, element);
+    list.add(element, 1, r / k.speed, waveform, rounding);
+  }
+  for (const w of prepared.waves) addWave(k, w, point, smallGap, list);
+}
+
+/** R, |R|, and how many roundings of the positions |R| is worth. */
+function relativeTo(at: Vec3, point: Vec3): readonly [number, number, number, number, number] {
+  const x = point[0] - at[0];
+  const y = point[1] - at[1];
+  const z = point[2] - at[2];
+  const r = Math.sqrt(x * x + y * y + z * z);
+  return [x, y, z, r, (largest(at) + largest(point)) / r];
+}
+
+const largest = (p: Vec3): number => Math.max(Math.abs(p[0]), Math.abs(p[1]), Math.abs(p[2]));
+
+/** At one instant t a gap is small if no kink of the waveform falls into it. */
+function gapWithoutKink(prepared: Prepared, t: number) {
+  return (index: number, from: number, gap: number) => {
+    const { kinks, timeScale } = prepared.waveforms[index]!;
+    return gap < SMALL_GAP * timeScale && !kinks.some((kink) => t - from >= kink && t - from - gap < kink);
+  };
+}
+
+/** Below this many roundings of the coordinates a point counts as on a source. */
+const ON_SOURCE = 64 * Number.EPSILON;
+
+/**
+ * @throws RangeError naming the source and where on it
+ */
+export function refuseOnSource(prepared: Prepared, point: Vec3): void {
+  const refuse = (where: string) => {
+    throw new RangeError(
+      `observer (${point.join(', ')}) m lies on the source: ${where}; the field of a filament is infinite there. Move it off.`,
+    );
+  };
+  for (const { piece, label } of prepared.integrals) {
+    const size = largest(point) + piece.length;
+    if (piece.distance(point) <= ON_SOURCE * size) refuse(`${label}, s = ${viewOf(piece, point).nearest} m`);
+  }
+  for (const { at, label } of [...prepared.charges, ...prepared.dipoles])
+    if (relativeTo(at, point)[3] <= ON_SOURCE * (largest(at) + largest(point))) refuse(label);
+}

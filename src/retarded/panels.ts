@@ -1,0 +1,54 @@
+import type { Waveform } from '../scenario/waveform.ts';
+import { crossing, type PieceView } from './pieceView.ts';
+import type { Integral } from './prepare.ts';
+
+/**
+ * Cuts [from, to] in halves until each part is no longer than `grading` times its distance from the observer, and its
+ * delay s·|slowness| + R/v varies by no more than `longest` (s). On such a part the integrand is analytic within an
+ * ellipse that the distance sets, whatever the distance is. Appends the upper ends of the parts, ascending.
+ */
+export function gradedCuts(
+  view: PieceView,
+  from: number,
+  to: number,
+  grading: number,
+  longest: number,
+  bend: number,
+  speed: number,
+  cuts: number[],
+): void {
+  const length = to - from;
+  const middle = from + length / 2;
+  const tooLong = length > grading * view.distance(from, to) || (length * (1 + Math.abs(bend))) / speed > longest;
+  if (tooLong && middle > from && middle < to) {
+    gradedCuts(view, from, middle, grading, longest, bend, speed, cuts);
+    gradedCuts(view, middle, to, grading, longest, bend, speed, cuts);
+  } else cuts.push(to);
+}
+
+/** Where a wave term's delay, delay + slowness·s + R(s)/v, equals `target`: arc lengths, ascending. */
+export function fronts(view: PieceView, delay: number, slowness: number, speed: number, target: number): number[] {
+  const bend = slowness * speed;
+  const reach = (target - delay) * speed;
+  const stations = [view.start, ...view.turns(bend), view.end];
+  const found: number[] = [];
+  for (let m = 1; m < stations.length; m++) {
+    const s = crossing(view, bend, reach, stations[m - 1]!, stations[m]!);
+    if (s !== undefined && s !== found.at(-1)) found.push(s);
+  }
+  return found;
+}
+
+/** w(0⁺), A: the size of the jump with which a waveform starts. */
+export function onset(waveform: Waveform): number {
+  return waveform.jump > 0 ? waveform.value(0) : 0;
+}
+
+/** |d(delay)/ds| at s, s/m, and the element there left in `view`. */
+export function delayRate(view: PieceView, s: number, slowness: number, speed: number): number {
+  view.look(s);
+  return Math.abs(slowness - (view.x * view.sx + view.y * view.sy + view.z * view.sz) / (view.r * speed));
+}
+
+export const steepestBend = (integral: Integral, speed: number): number =>
+  integral.terms.reduce((most, { slowness }) => Math.max(most, Math.abs(slowness * speed)), 0);
