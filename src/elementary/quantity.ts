@@ -1,3 +1,5 @@
+import { decibels } from './elementary.ts';
+
 /**
  * Numbers for people: a unit, and at most three significant digits. Files keep full precision; this is display only.
  * Rounding uses toPrecision and toExponential, which the language specifies exactly.
@@ -73,4 +75,12 @@ export function formatPercent(fraction: number, digits = 2): string {
 /** A ratio of amplitudes given in decibels, to the decibel: −71.3 → "−71 dB". */
 export function formatDecibels(dB: number): string {
   return `${formatNumber(Number.isFinite(dB) ? Math.round(dB) : dB, 12)} dB`;
+}
+
+/**
+ * A relative error as a percentage, or its floor where it lies below that: "3.1 %", "< −84 dB (floor)". Files keep the
+ * raw value.
+ */
+export function formatAboveFloor(value: number, floor: number, digits = 2): string {
+  return value < floor ? `< ${formatDecibels(decibels(floor))} (floor)` : formatPercent(value, digits);
 }
