@@ -1,0 +1,595 @@
+import { parse as parseWithLocations } from '@humanwhocodes/momoa';
+import type { z } from 'zod';
+import { mediumOf } from './constants.ts';
+import { circle, norm, polyline, scale, sub } from './curve.ts';
+import { distanceToSources, firstArrival, sourceBounds } from './distance.ts';
+import {
+  type Axis,
+  type Boundary,
+  FACES,
+  type Face,
+  type Grid,
+  type Medium,
+  type Observer,
+  type Plane,
+  type Scenario,
+  type Source,
+  type Vec3,
+  type WaveTerm,
+} from './model.ts';
+import {
+  CPML_DEFAULTS,
+  gridSchema,
+  LIMITS,
+  mediumSchema,
+  observerSchema,
+  planeSchema,
+  scenarioSchema,
+  sourceSchema,
+  TWO_FORMS,
+} from './schema.ts';
+import { shortestWavelength } from './shortest.ts';
+import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
+import { formatQuantity, show } from './units.ts';
+import type { Waveform, WaveformSpec } from './waveform.ts';
+import { JUMP_NOTED, JUMP_REFUSED, makeWaveform } from './waveforms.ts';
+
+/** Why a scenario is refused. */
+export interface Problem {
+  /** keys from the root, `sources.0.current.waveform.sigma`; empty for the file as a whole */
+  readonly path: string;
+  /** what stands there; undefined where nothing does */
+  readonly value: unknown;
+  /** one sentence: quantity, value, limit, remedy */
+  readonly message: string;
+}
+
+export type Loaded = { readonly scenario: Scenario } | { readonly problems: readonly Problem[] };
+
+/** Cells of the lattice, absorbing layers included, that a 32-bit kernel holds beside its arrays for norms: 440³ singles. */
+export const MAX_CELLS = { single: 440 ** 3, double: 440 ** 3 / 2 } as const;
+
+/** Beyond this a run takes days on a desktop machine. */
+export const MAX_STEPS = 200_000;
+
+/** Characters of a scenario file. */
+const MAX_TEXT = 64 * 1024 * 1024;
+
+/** Fewer cells leave no room for a source beside the walls. */
+const MIN_CELLS = 3;
+
+/** Below this the grid's dispersion alone is some 3 %. */
+const CELLS_PER_WAVELENGTH_NOTED = 10;
+
+type Path = readonly (string | number)[];
+type Report = (path: Path, predicate: string) => void;
+
+/**
+ * Reads and checks a scenario.
+ * @param input the text of a scenario file, or what JSON.parse made of it
+ * @returns the scenario in SI units with all defaults filled in, or every problem found, in the order of the file's
+ *   sections. It throws nothing.
+ */
+export function loadScenario(input: unknown): Loaded {
+  let raw = input;
+  if (typeof input === 'string') {
+    if (input.length > MAX_TEXT)
+      return refused(
+        '',
+        undefined,
+        `The file has ${input.length} characters; the limit is ${MAX_TEXT}. Use fewer points.`,
+      );
+    try {
+      raw = JSON.parse(input);
+    } catch {
+      return refused('', undefined, syntaxError(input));
+    }
+  }
+  if (typeof raw !== 'object' || raw === null || Array.isArray(raw))
+    return refused(
+      '',
+      raw,
+      `The scenario is ${show(raw)}; it must be an object with at least sources, grid and duration.`,
+    );
+  const file = raw as Record<string, unknown>;
+
+  const problems: Problem[] = [];
+  const report: Report = (path, predicate) =>
+    problems.push({
+      path: path.join('.'),
+      value: valueAt(file, path),
+      message: `${subjectOf(path)} ${predicate}.`,
+    });
+  for (const issue of scenarioSchema.safeParse(file).error?.issues ?? []) reportIssue(issue, [], file, report);
+  const scenario = build(file, report);
+  return problems.length === 0 && scenario ? { scenario } : { problems };
+}
+
+/** A problem as one line of text. */
+export function describeProblem({ path, message }: Problem): string {
+  return path === '' ? message : `${path}: ${message}`;
+}
+
+function refused(path: string, value: unknown, message: string): Loaded {
+  return { problems: [{ path, value, message }] };
+}
+
+/** Where a text stops being JSON. The host's own message differs from one to the next; this one does not. */
+function syntaxError(text: string): string {
+  try {
+    parseWithLocations(text, { mode: 'json' });
+  } catch (error) {
+    const { line, column } = error as { line?: number; column?: number };
+    if (line !== undefined)
+      return `The file is not JSON: line ${line}, column ${column} is where it goes wrong; correct the text there.`;
+    return 'The file is not JSON and is nested too deeply to say where; check its brackets.';
+  }
+  return 'The file is not JSON: a text in it holds a control character; write it as \\u followed by four digits.';
+}
+
+/** `points.1.2` of a path: from the last key on, so that a message can be read without its path. */
+function subjectOf(path: Path): string {
+  const last = path.findLastIndex((key) => typeof key === 'string');
+  return path.length === 0 ? 'The scenario' : path.slice(Math.max(0, last)).join('.');
+}
+
+function valueAt(root: unknown, path: Path): unknown {
+  let value = root;
+  for (const key of path) {
+    if (typeof value !== 'object' || value === null || !Object.hasOwn(value, key)) return undefined;
+    value = (value as Record<string | number, unknown>)[key];
+  }
+  return value;
+}
+
+/** An issue of the schema as problems: one for each unknown key, and of two forms those of the one that was meant. */
+function reportIssue(issue: z.core.$ZodIssue, parent: Path, file: unknown, report: Report): void {
+  const path = [...parent, ...(issue.path as Path)];
+  if (issue.code === 'unrecognized_keys') {
+    const lines = issue.message.split('\n');
+    issue.keys.forEach((key, k) => {
+      report([...path, key], lines[k]!);
+    });
+    return;
+  }
+  if (issue.code === 'invalid_union' && issue.message === TWO_FORMS) {
+    const value = valueAt(file, path);
+    const second = Array.isArray(value) || (isObject(value) && FACES.some((face) => Object.hasOwn(value, face)));
+    for (const inner of issue.errors[second ? 1 : 0]!) reportIssue(inner, path, file, report);
+    return;
+  }
+  report(path, issue.message);
+}
+
+const isObject = (value: unknown): value is object => typeof value === 'object' && value !== null;
+
+/** What a part of the file means, or nothing where the schema has already refused it. */
+function part<S extends z.ZodType>(schema: S, value: unknown): z.output<S> | undefined {
+  const parsed = schema.safeParse(value);
+  return parsed.success ? parsed.data : undefined;
+}
+
+/** A list of parts, those that are sound, with their places in the file. */
+function parts<S extends z.ZodType>(schema: S, value: unknown, most: number): { index: number; given: z.output<S> }[] {
+  if (!Array.isArray(value) || value.length > most) return [];
+  return value.flatMap((item, index) => {
+    const given = part(schema, item);
+    return given === undefined ? [] : [{ index, given }];
+  });
+}
+
+/**
+ * The scenario of what is sound in the file, reporting what is wrong with values taken together. Undefined where a
+ * part it needs is missing; the schema has then reported that.
+ */
+function build(file: Record<string, unknown>, report: Report): Scenario | undefined {
+  const notes: string[] = [];
+  const shape = scenarioSchema.shape;
+  const title = part(shape.title, file.title) ?? '';
+  const duration = part(shape.duration, file.duration);
+  const tolerance = part(shape.tolerance, file.tolerance) ?? 0.05;
+  const allowJump = part(shape.allowJump, file.allowJump) ?? false;
+  const medium = mediumFrom(part(mediumSchema.optional(), file.medium));
+  const givenGrid = part(gridSchema, file.grid);
+  const grid = givenGrid && buildGrid(givenGrid, medium, duration, notes, report);
+  const sources = buildSources(file.sources, medium, allowJump, notes, report);
+  if (grid) for (const { index, source } of sources) checkInside(index, source, grid, report);
+  const all = sources.map(({ source }) => source);
+  const observers = buildObservers(file.observers, grid, all, report);
+  const planes = buildPlanes(file.planes, grid, report);
+  if (!grid || duration === undefined || all.length === 0) return undefined;
+
+  const scenario = { title, medium, sources: all, grid, duration, observers, planes, tolerance, notes };
+  noteResolution(scenario, notes);
+  for (const { name, at } of observers) {
+    const first = firstArrival(all, medium, at);
+    if (first >= duration)
+      notes.push(
+        `Observer “${name}” sees nothing: the first field arrives at ${formatQuantity(first, 's')}, the run ends at ${formatQuantity(duration, 's')}.`,
+      );
+  }
+  return scenario;
+}
+
+function mediumFrom(given: z.output<typeof mediumSchema> | undefined): Medium {
+  return mediumOf(given?.relativePermittivity ?? 1, given?.relativePermeability ?? 1);
+}
+
+// ---------------------------------------------------------------------------------------------------------------- grid
+
+function buildGrid(
+  given: z.output<typeof gridSchema>,
+  medium: Medium,
+  duration: number | undefined,
+  notes: string[],
+  report: Report,
+): Grid | undefined {
+  const { cellSize, box } = given;
+  const courant = given.courant ?? 0.99;
+  const precision = given.precision ?? 'single';
+  if (courant > 1) {
+    const wanted = formatExact(timeStepOf({ cellSize, courant }, medium));
+    const limit = formatExact(timeStepOf({ cellSize, courant: 1 }, medium));
+    report(
+      ['grid', 'courant'],
+      `is ${courant}, a time step of ${wanted} s; these cells need at most ${limit} s (the Courant limit, courant 1); lower courant`,
+    );
+  }
+
+  const boxOfWholeCells = wholeCells(box, cellSize, notes, report);
+  if (!boxOfWholeCells) return undefined;
+  const { to, cells } = boxOfWholeCells;
+
+  const boundary = boundaryOf(given.boundary, cellSize, medium);
+  const layers = (face: Face) => {
+    const wall = boundary[face];
+    return wall.type === 'cpml' ? wall.layers : 0;
+  };
+  const total = [0, 1, 2].reduce(
+    (product, a) => product * (cells[a]! + layers(FACES[2 * a]!) + layers(FACES[2 * a + 1]!)),
+    1,
+  );
+  if (!(total <= MAX_CELLS[precision])) {
+    report(
+      ['grid', 'cellSize'],
+      `makes ${count(total)} cells with the absorber; the limit in ${precision} precision is ${count(MAX_CELLS[precision])}; use larger cells or a smaller box`,
+    );
+    return undefined;
+  }
+
+  const timeStep = timeStepOf({ cellSize, courant }, medium);
+  if (duration !== undefined) {
+    const steps = stepsOf(duration, timeStep);
+    if (!(steps <= MAX_STEPS))
+      report(
+        ['duration'],
+        `makes ${count(steps)} steps of ${formatQuantity(timeStep, 's')}; the limit is ${count(MAX_STEPS)}; shorten it or use larger cells`,
+      );
+    if (duration < timeStep)
+      report(
+        ['duration'],
+        `is ${formatQuantity(duration, 's')}, less than one time step, ${formatQuantity(timeStep, 's')}; lengthen it or use smaller cells`,
+      );
+  }
+  const mask = given.mask ?? 8 * Math.max(...cellSize);
+  return { cellSize, courant, box: { from: box.from, to }, cells, boundary, precision, mask };
+}
+
+/** The box with its upper corner rounded outwards to whole cells. */
+function wholeCells(
+  box: z.output<typeof gridSchema>['box'],
+  cellSize: Vec3,
+  notes: string[],
+  report: Report,
+): (Pick<Grid, 'cells'> & { to: Vec3 }) | undefined {
+  const cells: [number, number, number] = [0, 0, 0];
+  const to: [number, number, number] = [...box.to];
+  let sound = true;
+  for (const a of [0, 1, 2] as const) {
+    const exact = (box.to[a] - box.from[a]) / cellSize[a];
+    const corners = `its side from ${formatQuantity(box.from[a], 'm')} to ${formatQuantity(box.to[a], 'm')}`;
+    if (!(exact > 0)) {
+      report(
+        ['grid', 'box', 'to', a],
+        `must lie above box.from along ${'xyz'[a]}; ${corners} is empty; exchange or move the corners`,
+      );
+      sound = false;
+      continue;
+    }
+    cells[a] = Math.ceil(exact - CELL_SLACK);
+    to[a] = box.from[a] + cells[a] * cellSize[a];
+    if (cells[a] < MIN_CELLS) {
+      report(
+        ['grid', 'cellSize'],
+        `leaves ${cells[a]} cells of the box along ${'xyz'[a]}, ${corners}; at least ${MIN_CELLS} are needed; use smaller cells or a larger box`,
+      );
+      sound = false;
+    } else if (cells[a] - exact > CELL_SLACK)
+      notes.push(
+        `The box ends at ${formatQuantity(to[a], 'm')} along ${'xyz'[a]}, rounded outwards from ${formatQuantity(box.to[a], 'm')} to ${cells[a]} whole cells.`,
+      );
+  }
+  return sound ? { cells, to } : undefined;
+}
+
+type GivenBoundary = NonNullable<z.output<typeof gridSchema>['boundary']>;
+type GivenWall = Extract<GivenBoundary, { type: string }>;
+
+function boundaryOf(given: GivenBoundary | undefined, cellSize: Vec3, medium: Medium): Record<Face, Boundary> {
+  const ofFace = (face: Face, normal: Axis): Boundary => {
+    const wall: GivenWall = given === undefined ? { type: 'cpml' } : 'type' in given ? given : given[face];
+    if (wall.type !== 'cpml') return wall;
+    const { layers, grading, kappaMax, sigmaFactor } = CPML_DEFAULTS;
+    return {
+      type: 'cpml',
+      layers: wall.layers ?? layers,
+      grading: wall.grading ?? grading,
+      kappaMax: wall.kappaMax ?? kappaMax,
+      alphaFrequency: wall.alphaFrequency ?? defaultAlphaFrequency(cellSize[normal], medium),
+      sigmaFactor: wall.sigmaFactor ?? sigmaFactor,
+    };
+  };
+  return {
+    'x-': ofFace('x-', 0),
+    'x+': ofFace('x+', 0),
+    'y-': ofFace('y-', 1),
+    'y+': ofFace('y+', 1),
+    'z-': ofFace('z-', 2),
+    'z+': ofFace('z+', 2),
+  };
+}
+
+/** f_α = αmax/(2πε) of αmax = 0.05/(ηh), Hz; h (m) the cell along the normal. */
+function defaultAlphaFrequency(h: number, medium: Medium): number {
+  return 0.05 / (medium.impedance * h) / (2 * Math.PI * medium.permittivity);
+}
+
+// ------------------------------------------------------------------------------------------------------------- sources
+
+type GivenSource = z.output<typeof sourceSchema>;
+type GivenWire = Extract<GivenSource, { type: 'wire' }>;
+
+function buildSources(
+  value: unknown,
+  medium: Medium,
+  allowJump: boolean,
+  notes: string[],
+  report: Report,
+): { index: number; source: Source }[] {
+  const given = parts(sourceSchema, value, LIMITS.sources);
+  const names = uniqueNames(given, ({ type }) => type, 'sources', report);
+  return given.flatMap(({ index, given: source }, k) => {
+    const path = ['sources', index];
+    const name = names[k]!;
+    const waveform = buildWaveform(
+      source.current.waveform,
+      allowJump,
+      name,
+      [...path, 'current', 'waveform'],
+      notes,
+      report,
+    );
+    if (!waveform) return [];
+    const built = buildSource(source, name, waveform, medium, path, report);
+    return built ? [{ index, source: built }] : [];
+  });
+}
+
+function buildSource(
+  given: GivenSource,
+  name: string,
+  waveform: Waveform,
+  medium: Medium,
+  path: Path,
+  report: Report,
+): Source | undefined {
+  if (given.type === 'dipole') {
+    const { at, length } = given;
+    return { type: 'dipole', name, at, direction: unit(given.direction), length, waveform };
+  }
+  if (given.type === 'loop') {
+    const curve = circle(given.centre, unit(given.normal), given.radius);
+    return { type: 'loop', name, curve, terms: [{ factor: 1, delay: 0, slowness: 0 }], waveform };
+  }
+  let sound = true;
+  for (let k = 1; k < given.points.length; k++) {
+    if (norm(sub(given.points[k]!, given.points[k - 1]!)) > 0) continue;
+    report(
+      [...path, 'points', k],
+      `is the same place as point ${k - 1}; consecutive points of a wire must differ; remove one of them`,
+    );
+    sound = false;
+  }
+  if (!sound) return undefined;
+  const curve = polyline(given.points);
+  return { type: 'wire', name, curve, terms: termsOf(given.current, curve.length, medium.speed), waveform };
+}
+
+/**
+ * The current's terms factor · w(t − delay − slowness·s): forward waves have slowness 1/v; backward ones,
+ * w(t − delay − (L − s)/v), slowness −1/v and the delay L/v more.
+ */
+function termsOf(current: GivenWire['current'], length: number, mediumSpeed: number): WaveTerm[] {
+  if (current.waves)
+    return current.waves.map(({ direction, speed = 1, delay = 0, factor = 1 }) => {
+      const slowness = 1 / (speed * mediumSpeed);
+      return direction === 'forward'
+        ? { factor, delay, slowness }
+        : { factor, delay: delay + length * slowness, slowness: -slowness };
+    });
+  const slowness = current.profile === 'travelling' ? 1 / ((current.speed ?? 1) * mediumSpeed) : 0;
+  return [{ factor: 1, delay: 0, slowness }];
+}
+
+/** A vector of length 1, without overflow on the way. */
+function unit(v: Vec3): Vec3 {
+  const scaled = scale(v, 1 / Math.max(...v.map(Math.abs)));
+  return scale(scaled, 1 / norm(scaled));
+}
+
+function buildWaveform(
+  given: GivenSource['current']['waveform'],
+  allowJumpAnywhere: boolean,
+  source: string,
+  path: Path,
+  notes: string[],
+  report: Report,
+): Waveform | undefined {
+  const { allowJump = allowJumpAnywhere, ...spec } = given;
+  let waveform: Waveform;
+  try {
+    waveform = makeWaveform(spec as WaveformSpec);
+  } catch (error) {
+    // What the schema lets through and no waveform can be made of: a pulse that is over before t = 0.
+    report([...path, 'delay'], `leaves no current: ${(error as Error).message.replace(/\.$/, '')}`);
+    return undefined;
+  }
+  const jump = Number(waveform.jump.toPrecision(2));
+  if (waveform.jump > JUMP_REFUSED && !allowJump) {
+    report(
+      [...path, 'delay'],
+      `makes the current jump at t = 0 by ${jump} of its peak; the limit is ${JUMP_REFUSED}; raise delay (8.6 sigma suffice for a Gaussian) or set "allowJump": true`,
+    );
+    return undefined;
+  }
+  if (waveform.jump > JUMP_NOTED)
+    notes.push(
+      `The current of “${source}” jumps at t = 0 by ${jump} of its peak and radiates a front that no grid resolves; raise its delay to be rid of it.`,
+    );
+  return waveform;
+}
+
+function checkInside(index: number, source: Source, grid: Grid, report: Report): void {
+  const { from, to } = sourceBounds(source);
+  const wrong = ([0, 1, 2] as const).filter(
+    (a) =>
+      from[a] < grid.box.from[a] + grid.cellSize[a] * (1 - CELL_SLACK) ||
+      to[a] > grid.box.to[a] - grid.cellSize[a] * (1 - CELL_SLACK),
+  );
+  if (wrong.length === 0) return;
+  const key = source.type === 'dipole' ? 'at' : source.type === 'wire' ? 'points' : 'centre';
+  const reach = wrong
+    .map(
+      (a) =>
+        `reaches from ${formatQuantity(from[a], 'm')} to ${formatQuantity(to[a], 'm')} along ${'xyz'[a]}, where the box spans ${formatQuantity(grid.box.from[a], 'm')} to ${formatQuantity(grid.box.to[a], 'm')}`,
+    )
+    .join(' and ');
+  report(
+    ['sources', index, key],
+    `puts “${source.name}” outside the box or within a cell of its walls: it ${reach}; move the source or enlarge grid.box`,
+  );
+}
+
+// ------------------------------------------------------------------------------------------------ observers and planes
+
+function buildObservers(
+  value: unknown,
+  grid: Grid | undefined,
+  sources: readonly Source[],
+  report: Report,
+): Observer[] {
+  const given = parts(observerSchema, value, LIMITS.observers);
+  const names = uniqueNames(given, () => 'observer', 'observers', report);
+  return given.map(({ index, given: { at } }, k) => {
+    const inside = grid !== undefined && at.every((x, a) => x >= grid.box.from[a]! && x <= grid.box.to[a]!);
+    if (grid) {
+      const places = inside ? yeeSites(grid, observerCell(grid, at)) : [at];
+      const slack = CELL_SLACK * Math.max(...grid.cellSize);
+      if (places.some((p) => distanceToSources(sources, p) < slack))
+        report(
+          ['observers', index, 'at'],
+          `puts “${names[k]}” on a source${inside ? ' (at least one component of its Yee cell)' : ''}, where the field is infinite; move it a cell away`,
+        );
+    }
+    return { name: names[k]!, at, inside };
+  });
+}
+
+/** Where the six components of a cell live. */
+function yeeSites(grid: Grid, cell: readonly [number, number, number]): Vec3[] {
+  const along = (a: Axis, offset: number) => grid.box.from[a] + (cell[a] + offset) * grid.cellSize[a];
+  return (
+    [
+      [1, 0, 0],
+      [0, 1, 0],
+      [0, 0, 1],
+      [0, 1, 1],
+      [1, 0, 1],
+      [1, 1, 0],
+    ] as const
+  ).map(([x, y, z]): Vec3 => [along(0, x / 2), along(1, y / 2), along(2, z / 2)]);
+}
+
+function buildPlanes(value: unknown, grid: Grid | undefined, report: Report): Plane[] {
+  const given = parts(planeSchema, value, LIMITS.planes);
+  const names = uniqueNames(given, () => 'plane', 'planes', report);
+  return given.map(({ index, given: { normal: letter, at } }, k) => {
+    const normal = 'xyz'.indexOf(letter) as Axis;
+    const [from, to] = [grid?.box.from[normal] ?? at, grid?.box.to[normal] ?? at];
+    if (at < from || at > to)
+      report(
+        ['planes', index, 'at'],
+        `is ${formatQuantity(at, 'm')}; a plane must lie in the box, here ${letter} from ${formatQuantity(from, 'm')} to ${formatQuantity(to, 'm')}; move it or enlarge grid.box`,
+      );
+    return { name: names[k]!, normal, at };
+  });
+}
+
+/** The names of things, those without one numbered by their sort: “wire 1”, “wire 2”. Names given twice are reported. */
+function uniqueNames<T extends { name?: string | undefined }>(
+  things: readonly { index: number; given: T }[],
+  sort: (thing: T) => string,
+  section: string,
+  report: Report,
+): string[] {
+  const taken = new Map<string, number>();
+  for (const { index, given } of things) {
+    if (given.name === undefined) continue;
+    const first = taken.get(given.name);
+    if (first === undefined) taken.set(given.name, index);
+    else
+      report(
+        [section, index, 'name'],
+        `is ${show(given.name)}, the name of ${section}.${first} too; names must be unique; choose another`,
+      );
+  }
+  const counts = new Map<string, number>();
+  return things.map(({ given }) => {
+    if (given.name !== undefined) return given.name;
+    const word = sort(given);
+    let n = counts.get(word) ?? 0;
+    let name: string;
+    do name = `${word} ${++n}`;
+    while (taken.has(name));
+    counts.set(word, n);
+    return name;
+  });
+}
+
+// --------------------------------------------------------------------------------------------------------------- notes
+
+function noteResolution(scenario: Omit<Scenario, 'notes'>, notes: string[]): void {
+  const coarsest = Math.max(...scenario.grid.cellSize);
+  for (const source of scenario.sources) {
+    const size = source.type === 'dipole' ? source.length : source.curve.length;
+    if (source.type !== 'dipole' && size < coarsest)
+      notes.push(
+        `Source “${source.name}” is ${formatQuantity(size, 'm')} long, less than one cell of ${formatQuantity(coarsest, 'm')}: the grid sees it as a blur.`,
+      );
+  }
+  const { frequency, wavelength, cells } = shortestWavelength(scenario);
+  if (cells < CELLS_PER_WAVELENGTH_NOTED)
+    notes.push(
+      `The shortest significant wavelength, ${formatQuantity(wavelength, 'm')} at ${formatQuantity(frequency, 'Hz')} (−40 dB of what radiates), is ${Number(cells.toPrecision(2))} cells; ${CELLS_PER_WAVELENGTH_NOTED} or more are usual.`,
+    );
+}
+
+/** A number of cells or steps for people. */
+function count(n: number): string {
+  return n < 1e6 ? String(n) : Number.isFinite(n) ? `${Number((n / 1e6).toPrecision(3))} million` : 'too many';
+}
+
+/** A number with the four digits that tell a value from its limit. */
+function formatExact(x: number): string {
+  return String(Number(x.toPrecision(4)));
+}

@@ -1,0 +1,390 @@
+/**
+ * The scenario file: what may stand in it, with units, defaults and limits. Checks here see one value at a time; what
+ * takes several together (a source in its box, steps in a duration) is checked by load.ts.
+ *
+ * Messages are predicates, "is -1; it must be …": the name of the key is put before them by whoever knows its path.
+ */
+import { z } from 'zod';
+import { FACES } from './model.ts';
+import { nearest } from './nearest.ts';
+import { KINDS, type Kind, type Parsed, parseFraction, parseQuantity, show } from './units.ts';
+
+export const LIMITS = {
+  sources: 1000,
+  observers: 1000,
+  planes: 100,
+  pointsPerWire: 10_000,
+  wavesPerWire: 100,
+  layers: 128,
+  /** cells across one sigma of phase: more is a continuous wave, which a pulse solver answers badly */
+  cyclesPerSigma: 1000,
+  /** of any length, time, frequency, rate or current in SI units: their squares and cubes stay finite */
+  magnitude: 1e30,
+  text: 1000,
+  name: 100,
+} as const;
+
+/** An error function for zod: one predicate for a value that is missing or of the wrong sort. */
+const expected =
+  (wanted: string) =>
+  ({ input }: { readonly input?: unknown }): string =>
+    input === undefined ? `is missing; it must be ${wanted}` : `is ${show(input)}; it must be ${wanted}`;
+
+/**
+ * An object that refuses unknown keys; one line of its message for each.
+ * @param what names the object in the message
+ */
+function record<Shape extends z.core.$ZodLooseShape>(what: string, shape: Shape) {
+  const known = Object.keys(shape);
+  return z.strictObject(shape, {
+    error: (issue) =>
+      issue.code === 'unrecognized_keys'
+        ? issue.keys.map((key) => unknownKey(String(key), what, known)).join('\n')
+        : expected(`an object with the keys of ${what}: ${known.join(', ')}`)(issue),
+  });
+}
+
+function unknownKey(key: string, what: string, known: readonly string[]): string {
+  return `is not a key of ${what}${nearest(key, known)}; it may have ${known.join(', ')}`;
+}
+
+/** The key that tells one of several objects apart. */
+const tag = <const Name extends string>(name: Name, meaning: string) => z.literal(name).describe(meaning);
+
+/** One of several objects, told apart by `type`. */
+function oneOf<const Options extends readonly [z.core.$ZodTypeDiscriminable, ...z.core.$ZodTypeDiscriminable[]]>(
+  what: string,
+  types: readonly string[],
+  options: Options,
+) {
+  return z.discriminatedUnion('type', options, {
+    error: ({ input }) => {
+      if (typeof input !== 'object' || input === null || Array.isArray(input))
+        return expected(`an object that describes ${what}, its type one of ${types.join(', ')}`)({ input });
+      const type = Object.hasOwn(input, 'type') ? (input as { type: unknown }).type : undefined;
+      if (type === undefined) return `is missing; it must name the type of ${what}: ${types.join(', ')}`;
+      const hint = typeof type === 'string' ? nearest(type, types) : '';
+      return `is ${show(type)}${hint}; ${what} may be ${types.join(', ')}`;
+    },
+  });
+}
+
+function transformed(parse: (given: number | string) => Parsed, wanted: string) {
+  return z.union([z.number(), z.string()], { error: expected(wanted) }).transform((given, ctx) => {
+    const parsed = parse(given);
+    if ('value' in parsed) return parsed.value;
+    ctx.addIssue({ code: 'custom', message: parsed.reason });
+    return z.NEVER;
+  });
+}
+
+type Range = 'any' | 'positive' | 'not negative';
+
+/** A quantity with a unit, within a range. */
+function quantity(kind: Kind, range: Range = 'any') {
+  const { words, example } = KINDS[kind];
+  const wanted = { any: words, positive: `${words} above 0`, 'not negative': `${words} of 0 or more` }[range];
+  return transformed((given) => {
+    const parsed = parseQuantity(given, kind);
+    if ('reason' in parsed) return parsed;
+    if (Math.abs(parsed.value) > LIMITS.magnitude)
+      return { reason: `is ${show(given)}; it must be at most ${LIMITS.magnitude} in SI units` };
+    const inRange =
+      range === 'any' || (range === 'positive' ? parsed.value >= 1 / LIMITS.magnitude : parsed.value >= 0);
+    return inRange ? parsed : { reason: `is ${show(given)}; it must be ${wanted}, such as ${example}` };
+  }, `${wanted}, such as ${example}`);
+}
+
+const point = (wanted: string) =>
+  z.tuple([quantity('length'), quantity('length'), quantity('length')], {
+    error: expected(`${wanted}: three lengths, such as ["0 mm", "20 mm", "-50 mm"]`),
+  });
+
+const number = (wanted: string) => z.number({ error: expected(wanted) });
+
+/** A direction: three plain numbers, not all zero, of any length. */
+const direction = z
+  .tuple([number('a number'), number('a number'), number('a number')], {
+    error: expected('a direction: three numbers, such as [0, 0, 1]'),
+  })
+  .refine((v) => v.some((x) => x !== 0), {
+    error: 'is [0, 0, 0], which points nowhere; give a vector that is not zero',
+  });
+
+const text = (limit: number, wanted: string) =>
+  z.string({ error: expected(wanted) }).max(limit, { error: `is too long; it must be at most ${limit} characters` });
+
+const name = text(LIMITS.name, `a name of at most ${LIMITS.name} characters`)
+  .refine((given) => given.trim() !== '', { error: 'is empty; give a name, or leave the key out' })
+  .optional();
+
+const choice = <const Names extends readonly [string, ...string[]]>(names: Names) =>
+  z.enum(names, {
+    error: ({ input }) =>
+      input === undefined
+        ? `is missing; it must be one of ${names.join(', ')}`
+        : `is ${show(input)}${typeof input === 'string' ? nearest(input, names) : ''}; it must be one of ${names.join(', ')}`,
+  });
+const list = <Item extends z.ZodType>(item: Item, least: number, most: number, what: string) => {
+  const wanted = `a list of ${least > 0 ? `${least} to ${most}` : `at most ${most}`} ${what}`;
+  return z
+    .array(item, { error: expected(wanted) })
+    .min(least, { error: expected(wanted) })
+    .max(most, { error: expected(wanted) });
+};
+
+const amplitude = (what: string) =>
+  quantity('current')
+    .refine((value) => value !== 0, { error: 'is 0; a source needs a current, such as "1 A"' })
+    .describe(`${what}, A`);
+const delay = quantity('time').describe(
+  'Instant of the centre of the pulse, s. Nothing flows before t = 0: at least 8.6 sigma keep the jump there below rounding.',
+);
+const sigma = quantity('time', 'positive').describe('Time scale sigma, s; u = (t − delay)/sigma.');
+const allowJump = z
+  .boolean({ error: expected('true or false') })
+  .optional()
+  .describe('Accept a jump at t = 0 above 1e-3 of the peak (default: that of the scenario).');
+
+export const WAVEFORMS = ['gaussian', 'gaussianDerivative', 'modulatedGaussian', 'doubleExponential'] as const;
+
+const waveform = oneOf('a waveform', WAVEFORMS, [
+  record('a Gaussian', {
+    type: tag('gaussian', 'w = amplitude · exp(−u²/2).'),
+    amplitude: amplitude('Peak current'),
+    delay,
+    sigma,
+    allowJump,
+  }),
+  record('a Gaussian derivative', {
+    type: tag('gaussianDerivative', 'w = −amplitude · √e · u · exp(−u²/2).'),
+    amplitude: amplitude('Peak current'),
+    delay,
+    sigma,
+    allowJump,
+  }),
+  record('a modulated Gaussian', {
+    type: tag('modulatedGaussian', 'w = amplitude · exp(−u²/2) · sin(2π · frequency · (t − delay)).'),
+    amplitude: amplitude('Peak of the envelope'),
+    delay,
+    sigma,
+    frequency: quantity('frequency', 'positive').describe('Carrier frequency, Hz.'),
+    allowJump,
+  }).refine(({ frequency, sigma }) => frequency * sigma <= LIMITS.cyclesPerSigma, {
+    path: ['frequency'],
+    error: ({ input }) => {
+      const { frequency, sigma } = input as { frequency: number; sigma: number };
+      const cycles = Number((frequency * sigma).toPrecision(3));
+      return `makes ${cycles} cycles in one sigma; a pulse may have at most ${LIMITS.cyclesPerSigma}; lower frequency or sigma`;
+    },
+  }),
+  record('a double exponential', {
+    type: tag('doubleExponential', 'w = k · (exp(−alpha·t) − exp(−beta·t)), k such that the peak is amplitude.'),
+    amplitude: amplitude('Peak current'),
+    alpha: quantity('rate', 'positive').describe('Rate of decay, 1/s; smaller than beta.'),
+    beta: quantity('rate', 'positive').describe('Rate of rise, 1/s.'),
+    allowJump,
+  }).refine(({ alpha, beta }) => alpha < beta, {
+    path: ['alpha'],
+    error: ({ input }) => {
+      const { alpha, beta } = input as { alpha: number; beta: number };
+      return `is ${alpha} 1/s, not below beta, ${beta} 1/s; the decay must be slower than the rise: exchange them or raise beta`;
+    },
+  }),
+]).describe('Time dependence w(t) of the current; zero for t < 0.');
+
+const speed = number('a fraction of the speed of waves in the medium, above 0 and at most 1')
+  .gt(0, { error: expected('above 0 and at most 1, the speed of waves in the medium') })
+  .lte(1, { error: expected('above 0 and at most 1, the speed of waves in the medium') })
+  .optional()
+  .describe("Speed of the wave along the wire, relative to the medium's speed, above 0 and at most 1 (default 1).");
+
+const wave = record('a wave', {
+  direction: choice(['forward', 'backward']).describe(
+    'forward: factor · w(t − delay − s/v); backward: factor · w(t − delay − (L − s)/v).',
+  ),
+  speed,
+  delay: quantity('time', 'not negative').optional().describe('Delay of this wave, s, 0 or more (default 0).'),
+  factor: number('a number')
+    .refine((value) => Math.abs(value) <= LIMITS.magnitude, { error: expected(`at most ${LIMITS.magnitude} in size`) })
+    .optional()
+    .describe('Factor of this wave (default 1).'),
+});
+
+const currentOfWire = record("a wire's current", {
+  profile: choice(['uniform', 'travelling', 'waves'])
+    .optional()
+    .describe(
+      'uniform: I = w(t) (default); travelling: one forward wave; waves: the sum of `waves` (default if they are given).',
+    ),
+  speed,
+  waves: list(wave, 1, LIMITS.wavesPerWire, 'waves').optional().describe('Travelling waves whose sum is the current.'),
+  waveform,
+}).superRefine(({ profile, speed, waves }, ctx) => {
+  const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
+  if (speed !== undefined && profile !== 'travelling')
+    wrong(
+      'speed',
+      `belongs to the profile "travelling", not to "${profile ?? (waves ? 'waves' : 'uniform')}"; remove it or set profile`,
+    );
+  if (waves && profile !== undefined && profile !== 'waves')
+    wrong('waves', `belongs to the profile "waves", not to "${profile}"; remove one of the two`);
+  if (profile === 'waves' && !waves) wrong('waves', 'is missing; the profile "waves" must have a list of waves');
+});
+
+const uniformCurrent = record("a loop's current", {
+  profile: choice(['uniform']).optional().describe('uniform: I = w(t), the only profile of a loop.'),
+  waveform,
+});
+
+export const SOURCES = ['dipole', 'wire', 'loop'] as const;
+
+export const sourceSchema = oneOf('a source', SOURCES, [
+  record('a dipole', {
+    type: tag('dipole', 'A point Hertzian element.'),
+    name: name.describe('Unique name (default: dipole 1, dipole 2, …).'),
+    at: point('its position').describe('Position, m.'),
+    direction: direction.describe('Direction of the moment: any vector that is not zero.'),
+    length: quantity('length', 'positive').describe('Length of the element, m; its moment is w(t) · length.'),
+    current: record("a dipole's current", { waveform }).describe('Current in the element.'),
+  }),
+  record('a wire', {
+    type: tag('wire', 'A polyline of thin filament.'),
+    name: name.describe('Unique name (default: wire 1, wire 2, …).'),
+    points: list(point('a point of the wire'), 2, LIMITS.pointsPerWire, 'points').describe(
+      'Corners of the wire, m, in the direction of positive current; closed if the last is the first.',
+    ),
+    current: currentOfWire.describe('Current along the wire; charge follows by continuity, at the ends too.'),
+  }),
+  record('a loop', {
+    type: tag('loop', 'A circle of thin filament.'),
+    name: name.describe('Unique name (default: loop 1, loop 2, …).'),
+    centre: point('its centre').describe('Centre of the circle, m.'),
+    normal: direction.describe('Axis of the circle: any vector that is not zero; current flows right-handed about it.'),
+    radius: quantity('length', 'positive').describe('Radius of the circle, m.'),
+    current: uniformCurrent.describe('Current round the loop.'),
+  }),
+]);
+
+export const BOUNDARIES = ['pec', 'mur1', 'cpml'] as const;
+
+/** Defaults of a CPML; that of alphaFrequency depends on cells and medium, see load.ts. */
+export const CPML_DEFAULTS = { layers: 10, grading: 3, kappaMax: 1, sigmaFactor: 1 } as const;
+
+const within = (low: number, high: number, what: string) => {
+  const error = expected(`${what} from ${low} to ${high}`);
+  return z.number({ error }).gte(low, { error }).lte(high, { error }).optional();
+};
+
+const boundary = oneOf('a boundary', BOUNDARIES, [
+  record('a perfect conductor', { type: tag('pec', 'Perfect electric conductor: the worst case, for scale.') }),
+  record('a Mur boundary', { type: tag('mur1', 'First-order absorbing wall (Mur 1981).') }),
+  record('a CPML', {
+    type: tag('cpml', 'Convolutional perfectly matched layer (Roden & Gedney 2000).'),
+    layers: z
+      .int({ error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+      .gte(1, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+      .lte(LIMITS.layers, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+      .optional()
+      .describe(`Cells of thickness, outside the box (default ${CPML_DEFAULTS.layers}).`),
+    grading: within(0, 10, 'an exponent').describe(
+      `Exponent m of σ = σmax (depth/thickness)^m and of κ (default ${CPML_DEFAULTS.grading}).`,
+    ),
+    kappaMax: within(1, 100, 'a number').describe(`κ at the outer end (default ${CPML_DEFAULTS.kappaMax}).`),
+    alphaFrequency: quantity('frequency', 'not negative')
+      .optional()
+      .describe(
+        'f_α = αmax/(2πε), Hz; α falls linearly to 0 at the outer end (default: that of αmax = 0.05/(ηh), h the cell along the normal).',
+      ),
+    sigmaFactor: within(0, 100, 'a number').describe(
+      `σmax in units of 0.8 (grading + 1)/(ηh) (default ${CPML_DEFAULTS.sigmaFactor}).`,
+    ),
+  }),
+]).describe('What the wall does to outgoing waves.');
+
+/** The message of a union of two forms of one thing: the plain one first, then a list or an object of such. */
+export const TWO_FORMS = 'has one of two forms';
+
+const boundaryOfFaces = record(
+  'the faces of the box',
+  Object.fromEntries(FACES.map((face) => [face, boundary])) as Record<(typeof FACES)[number], typeof boundary>,
+);
+
+export const gridSchema = record('the grid', {
+  cellSize: z
+    .union(
+      [
+        quantity('length', 'positive'),
+        z.tuple([quantity('length', 'positive'), quantity('length', 'positive'), quantity('length', 'positive')], {
+          error: expected('three lengths, dx, dy and dz'),
+        }),
+      ],
+      { error: TWO_FORMS },
+    )
+    .transform((size): [number, number, number] => (typeof size === 'number' ? [size, size, size] : size))
+    .describe('Cell size, m: one length, or dx, dy, dz.'),
+  courant: number('a number above 0 and at most 1')
+    .gt(0, { error: expected('a number above 0 and at most 1') })
+    .optional()
+    .meta({ maximum: 1 })
+    .describe('Courant number S; the time step is S / (v √(1/dx² + 1/dy² + 1/dz²)) (default 0.99).'),
+  box: record('the box', {
+    from: point('the lower corner').describe('Lower corner, m; node (0, 0, 0) lies there.'),
+    to: point('the upper corner').describe('Upper corner, m; rounded outwards to whole cells.'),
+  }).describe('Working region; absorbing layers lie outside it. Sources lie inside.'),
+  boundary: z
+    .union([boundary, boundaryOfFaces], { error: TWO_FORMS })
+    .optional()
+    .describe('One boundary for all faces, or one for each of x-, x+, y-, y+, z-, z+ (default: cpml with 10 layers).'),
+  precision: choice(['single', 'double'])
+    .optional()
+    .describe('Precision of the fields on the grid (default single; double to measure below −80 dB).'),
+  mask: quantity('length', 'not negative')
+    .optional()
+    .describe('Samples nearer to a source than this are left out of box norms, m (default: 8 of the largest cell).'),
+});
+
+export const mediumSchema = record('the medium', {
+  relativePermittivity: within(1, 1e6, 'a number').describe('ε/ε0, from 1 (default 1).'),
+  relativePermeability: within(1, 1e6, 'a number').describe('μ/μ0, from 1 (default 1).'),
+});
+
+export const observerSchema = record('an observer', {
+  name: name.describe('Unique name (default: observer 1, observer 2, …).'),
+  at: point('its position').describe('Position, m; on the grid it is the nearest node.'),
+});
+
+export const planeSchema = record('a plane', {
+  name: name.describe('Unique name (default: plane 1, plane 2, …).'),
+  normal: choice(['x', 'y', 'z']).describe('Axis the plane is normal to.'),
+  at: quantity('length').describe('Coordinate along the normal, m, within the box.'),
+});
+
+export const scenarioSchema = record('the scenario', {
+  title: text(LIMITS.text, 'a text').optional().describe('Title of reports (default: none).'),
+  medium: mediumSchema.optional().describe('Homogeneous, lossless medium (default: vacuum).'),
+  sources: list(sourceSchema, 1, LIMITS.sources, 'sources').describe('Known currents.'),
+  grid: gridSchema.describe('The grid solver’s cells, box and walls.'),
+  duration: quantity('time', 'positive').describe('How long the field is computed, s.'),
+  observers: list(observerSchema, 0, LIMITS.observers, 'observers')
+    .optional()
+    .describe('Points whose field is traced. Outside the box they have an exact field but no grid trace.'),
+  planes: list(planeSchema, 0, LIMITS.planes, 'planes').optional().describe('Planes shown as pictures and trust maps.'),
+  tolerance: transformed((given) => {
+    const parsed = parseFraction(given);
+    return 'value' in parsed && !(parsed.value > 0 && parsed.value <= 1)
+      ? { reason: `is ${show(given)}; it must be above 0 and at most 1 (100 %)` }
+      : parsed;
+  }, 'a fraction, such as 0.05 or "5 %"')
+    .optional()
+    .describe('Largest relative error that is good enough, 0.05 or "5 %" (default 0.05).'),
+  allowJump: z
+    .boolean({ error: expected('true or false') })
+    .optional()
+    .describe('Accept waveforms that jump at t = 0 by more than 1e-3 of their peak (default false).'),
+});
+
+/** The JSON Schema of scenario files, as an editor reads it. */
+export function scenarioJsonSchema(): Record<string, unknown> {
+  return { ...z.toJSONSchema(scenarioSchema, { io: 'input' }), title: 'Fieldassay scenario' };
+}
