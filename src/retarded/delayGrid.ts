@@ -1,0 +1,379 @@
+import { cos } from '../elementary/elementary.ts';
+import { instantiate } from '../elementary/wasm.ts';
+import bytes from '../kernels/retarded.ts';
+import type { Waveform } from '../scenario/waveform.ts';
+
+/** Kernel of assembly/retarded/; addresses in bytes. */
+export interface Kernel {
+  readonly memory: WebAssembly.Memory;
+  heapBase(): number;
+  setRule(points: number, phases: number, polynomials: number, bounds: number, parts: number, scratch: number): void;
+  setWindow(firstCell: number, kindStride: number): void;
+  spread(elements: number, count: number, weights: number): void;
+  spreadCharges(
+    nodes: number,
+    count: number,
+    x: number,
+    y: number,
+    z: number,
+    axis: number,
+    origin: number,
+    perLength: number,
+    weights: number,
+  ): void;
+  correlate(
+    weights: number,
+    cells: number,
+    samples: number,
+    sampleStride: number,
+    out: number,
+    from: number,
+    blocks: number,
+  ): void;
+}
+
+/**
+ * How a value of a waveform is made of its samples: `points` nodes, either on both sides of the place among equidistant
+ * samples (`centred`: Lagrange's formula with the place in the middle interval), or within the place's own part of a
+ * cell (`inCell`: Chebyshev nodes; the parts' bounds are where the waveform has kinks, so that none is crossed).
+ */
+export interface Rule {
+  readonly kind: 'centred' | 'inCell';
+  readonly points: number;
+  /** samples in one time step */
+  readonly phases: number;
+  /** place of each sample in its cell, in time steps, ascending */
+  readonly offsets: readonly number[];
+  /** bounds of a cell's parts, from 0 to 1 (inCell) */
+  readonly bounds: readonly number[];
+  /** places of the nodes within a part: centred, in samples from the middle; inCell, on [−1, 1] */
+  readonly nodes: readonly number[];
+}
+
+/** @param parts equal parts of a time step (centred: samples in it) */
+export function centredRule(points: number, parts: number): Rule {
+  return {
+    kind: 'centred',
+    points,
+    phases: parts,
+    offsets: Array.from({ length: parts }, (_, g) => g / parts),
+    bounds: [],
+    nodes: Array.from({ length: points }, (_, j) => j - (points - 1) / 2),
+  };
+}
+
+/** @param kinks places of kinks in a cell, in time steps, in [0, 1) */
+export function inCellRule(points: number, parts: number, kinks: readonly number[]): Rule {
+  const bounds = [...new Set([...kinks, ...Array.from({ length: parts + 1 }, (_, g) => g / parts)])].sort(
+    (a, b) => a - b,
+  );
+  const nodes = Array.from({ length: points }, (_, j) => -cos((Math.PI * (j + 0.5)) / points));
+  const offsets = bounds
+    .slice(1)
+    .flatMap((high, m) => nodes.map((x) => (bounds[m]! + high + x * (high - bounds[m]!)) / 2));
+  return { kind: 'inCell', points, phases: offsets.length, offsets, bounds, nodes };
+}
+
+/** Coefficients of the nodes' Lagrange polynomials, highest power first: [power][node]. */
+export function lagrangeCoefficients(nodes: readonly number[]): Float64Array {
+  const p = nodes.length;
+  const table = new Float64Array(p * p);
+  for (let j = 0; j < p; j++) {
+    let polynomial = [1]; // ascending powers
+    for (let m = 0; m < p; m++) {
+      if (m === j) continue;
+      const gain = 1 / (nodes[j]! - nodes[m]!);
+      const next = new Array<number>(polynomial.length + 1).fill(0);
+      polynomial.forEach((a, power) => {
+        next[power + 1]! += gain * a;
+        next[power]! -= gain * nodes[m]! * a;
+      });
+      polynomial = next;
+    }
+    polynomial.forEach((a, power) => {
+      table[(p - 1 - power) * p + j] = a;
+    });
+  }
+  return table;
+}
+
+/** The rule's nodes around place u (time steps of source time): source times of its nodes and their weights. */
+export function stencil(rule: Rule, u: number): { times: number[]; weights: number[] } {
+  const { points, phases, bounds, nodes } = rule;
+  let x: number;
+  let times: number[];
+  if (rule.kind === 'centred') {
+    const first = Math.floor(u * phases) - points / 2 + 1;
+    x = u * phases - Math.floor(u * phases) - 0.5;
+    times = nodes.map((_, j) => (first + j) / phases);
+  } else {
+    const cell = Math.floor(u);
+    const part = bounds.findLastIndex((bound) => u - cell >= bound);
+    const low = bounds[part]!;
+    const high = bounds[part + 1]!;
+    x = (2 * (u - cell) - low - high) / (high - low);
+    times = nodes.map((node) => cell + (low + high + node * (high - low)) / 2);
+  }
+  const weights = nodes.map((node, j) =>
+    nodes.reduce((product, other, m) => (m === j ? product : (product * (x - other)) / (node - other)), 1),
+  );
+  return { times, weights };
+}
+
+/** Largest values of q, w, w′, and the largest errors of a rule on each of them. */
+export interface RuleError {
+  readonly peak: readonly [number, number, number];
+  readonly error: readonly [number, number, number];
+}
+
+const TRIALS = 256;
+
+/** Measures a rule on a waveform sampled every `step` seconds, at places spread evenly over its activity. */
+export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleError {
+  const peak: [number, number, number] = [0, 0, 0];
+  const error: [number, number, number] = [0, 0, 0];
+  const exact = new Float64Array(3);
+  const sample = new Float64Array(3);
+  const end = waveform.lastActivity(1e-3);
+  for (let n = 0; n < TRIALS; n++) {
+    // Multiples of the golden ratio spread the places within a cell as evenly as those over the pulse.
+    const u = Math.floor((end * (n + 0.5)) / TRIALS / step) + ((n * 0.6180339887498949) % 1);
+    waveform.at(u * step, 2, exact);
+    const { times, weights } = stencil(rule, u);
+    const sum = [0, 0, 0];
+    times.forEach((time, j) => {
+      waveform.at(time * step, 2, sample);
+      for (let kind = 0; kind < 3; kind++) sum[kind]! += weights[j]! * sample[kind]!;
+    });
+    for (let kind = 0; kind < 3; kind++) {
+      peak[kind] = Math.max(peak[kind]!, Math.abs(exact[kind]!));
+      error[kind] = Math.max(error[kind]!, Math.abs(sum[kind]! - exact[kind]!));
+    }
+  }
+  return { peak, error };
+}
+
+const CENTRED_RULES = [
+  [4, 1],
+  [6, 1],
+  [8, 1],
+  [10, 1],
+  [12, 1],
+  [10, 2],
+  [12, 2],
+  [12, 4],
+  [12, 8],
+  [12, 16],
+  [12, 32],
+] as const;
+
+const IN_CELL_RULES = [
+  [4, 1],
+  [6, 1],
+  [8, 1],
+  [8, 2],
+  [8, 4],
+  [8, 8],
+  [8, 16],
+  [8, 32],
+] as const;
+
+/**
+ * The cheapest rule whose error is at most `accuracy` of the peak of each of q, w, w′, for every waveform; the best there
+ * is if none is, so that its measured error says so.
+ */
+export function chooseRule(
+  waveforms: readonly Waveform[],
+  step: number,
+  accuracy: number,
+): { rule: Rule; errors: RuleError[] } {
+  const kinks = waveforms.flatMap((waveform) => waveform.kinks);
+  const places = [...new Set(kinks.map((kink) => kink / step - Math.floor(kink / step)))];
+  const rules = kinks.length === 0 ? CENTRED_RULES : IN_CELL_RULES;
+  for (const [points, parts] of rules) {
+    const rule = kinks.length === 0 ? centredRule(points, parts) : inCellRule(points, parts, places);
+    const errors = waveforms.map((waveform) => measureRule(rule, waveform, step));
+    const good = errors.every(({ peak, error }) => error.every((e, kind) => e <= accuracy * peak[kind]!));
+    if (good || (points === rules.at(-1)![0] && parts === rules.at(-1)![1])) return { rule, errors };
+  }
+  throw new Error('unreachable: the last rule is always taken');
+}
+
+/** Elements of one waveform at one site: F, and coefficients of q, w, w′. */
+export class ElementList {
+  count = 0;
+  data = new Float64Array(4 * 256);
+  lowest = Number.POSITIVE_INFINITY;
+  highest = Number.NEGATIVE_INFINITY;
+
+  clear(): void {
+    this.count = 0;
+    this.lowest = Number.POSITIVE_INFINITY;
+    this.highest = Number.NEGATIVE_INFINITY;
+  }
+
+  add(place: number, q: number, w: number, slope: number): void {
+    if (q === 0 && w === 0 && slope === 0) return;
+    if (4 * this.count === this.data.length) {
+      const bigger = new Float64Array(2 * this.data.length);
+      bigger.set(this.data);
+      this.data = bigger;
+    }
+    const at = 4 * this.count++;
+    this.data[at] = place;
+    this.data[at + 1] = q;
+    this.data[at + 2] = w;
+    this.data[at + 3] = slope;
+    if (place < this.lowest) this.lowest = place;
+    if (place > this.highest) this.highest = place;
+  }
+}
+
+/** Outputs that one round of `correlate` makes. */
+const BLOCK = 8;
+
+/**
+ * Waveforms sampled once for a run of equidistant instants, and the kernel that turns elements into histories.
+ * Instants of one list are t₀ + n·step; lists may start at different t₀ (E and H) but share the samples, which are laid
+ * out in source time.
+ */
+export class DelayGrid {
+  readonly step: number;
+  readonly count: number;
+  readonly rule: Rule;
+  readonly errors: readonly RuleError[];
+  readonly kernel: Kernel;
+  readonly #waveforms: readonly Waveform[];
+  /** cells of samples after source time 0, and zeros before it */
+  readonly #cells: number;
+  #lead = 0;
+  #samples = 0;
+  #sampleStride = 0;
+  #out = 0;
+  #fixed = 0;
+  #free = 0;
+
+  /**
+   * @param latest the last instant of all lists, s
+   * @param accuracy relative error asked of each of q, w, w′
+   */
+  constructor(waveforms: readonly Waveform[], step: number, count: number, latest: number, accuracy: number) {
+    this.step = step;
+    this.count = count;
+    this.#waveforms = waveforms;
+    const chosen = chooseRule(waveforms, step, accuracy);
+    this.rule = chosen.rule;
+    this.errors = chosen.errors;
+    this.#cells = Math.ceil(latest / step) + this.rule.points + 2 * BLOCK;
+    this.kernel = instantiate(bytes, {}) as unknown as Kernel;
+    const { points, phases, bounds } = this.rule;
+    let at = Math.ceil(this.kernel.heapBase() / 16) * 16;
+    const polynomials = at;
+    at += 8 * points * points;
+    const boundsAt = at;
+    at += 16 * Math.ceil((bounds.length + 1) / 2);
+    const scratch = at;
+    at += 8 * points;
+    this.#fixed = at;
+    this.reserve(at);
+    const memory = new Float64Array(this.kernel.memory.buffer);
+    memory.set(lagrangeCoefficients(this.rule.nodes), polynomials / 8);
+    memory.set(bounds, boundsAt / 8);
+    this.kernel.setRule(points, phases, polynomials, boundsAt, Math.max(0, bounds.length - 1), scratch);
+    this.#sample(64);
+  }
+
+  /** Grows memory to hold `bytes`. */
+  reserve(bytes: number): void {
+    const missing = bytes - this.kernel.memory.buffer.byteLength;
+    if (missing > 0) this.kernel.memory.grow(Math.ceil(missing / 65536));
+  }
+
+  /** Address of memory that nothing else uses. */
+  get free(): number {
+    return this.#free;
+  }
+
+  /** Samples the waveforms, with room for elements that span `lead` cells. */
+  #sample(lead: number): void {
+    const { phases, offsets } = this.rule;
+    this.#lead = lead;
+    const length = 2 * Math.ceil((lead + this.#cells) / 2);
+    this.#sampleStride = 8 * length;
+    this.#samples = this.#fixed;
+    const total = this.#waveforms.length * 3 * phases * length;
+    this.#out = this.#samples + 8 * total;
+    this.#free = this.#out + 16 * Math.ceil((this.count + BLOCK) / 2);
+    this.reserve(this.#free);
+    const memory = new Float64Array(this.kernel.memory.buffer, this.#samples, total);
+    memory.fill(0);
+    const sample = new Float64Array(3);
+    this.#waveforms.forEach((waveform, m) => {
+      offsets.forEach((offset, g) => {
+        for (let n = 0; n < this.#cells; n++) {
+          waveform.at((n + offset) * this.step, 2, sample);
+          for (let kind = 0; kind < 3; kind++)
+            memory[((m * 3 + kind) * phases + g) * length + lead + n] = sample[kind]!;
+        }
+      });
+    });
+  }
+
+  /** The cells that elements between places `lowest` and `highest` touch. */
+  window(lowest: number, highest: number): { first: number; cells: number } {
+    const reach = this.rule.kind === 'centred' ? this.rule.points / 2 / this.rule.phases : 0;
+    const first = Math.floor(lowest - reach);
+    return { first, cells: Math.floor(highest + reach) - first + 1 };
+  }
+
+  /**
+   * The history of elements of one waveform: adds to out[n], n = 0 … count − 1. `fill` spreads the elements once their
+   * weights (3 kinds) are cleared and the window is set.
+   */
+  correlateInto(
+    out: Float64Array,
+    waveform: number,
+    window: { first: number; cells: number },
+    kinds: readonly boolean[],
+    fill: (weights: number, room: number) => void,
+  ): void {
+    const from = Math.max(0, -(window.first + window.cells - 1));
+    if (from >= this.count) return;
+    if (window.cells > this.#lead) this.#sample(2 * window.cells);
+    const { phases } = this.rule;
+    const weights = this.#free;
+    const kindBytes = 16 * Math.ceil((window.cells * phases + this.rule.points) / 2);
+    const room = weights + 3 * kindBytes;
+    this.reserve(room);
+    new Float64Array(this.kernel.memory.buffer, weights, (3 * kindBytes) / 8).fill(0);
+    this.kernel.setWindow(window.first, kindBytes);
+    fill(weights, room);
+    const blocks = Math.ceil((this.count - from) / BLOCK);
+    const result = new Float64Array(this.kernel.memory.buffer, this.#out, from + blocks * BLOCK);
+    result.fill(0);
+    for (let kind = 0; kind < 3; kind++) {
+      if (!kinds[kind]) continue;
+      const samples = this.#samples + (waveform * 3 + kind) * phases * this.#sampleStride + 8 * this.#lead;
+      this.kernel.correlate(
+        weights + kind * kindBytes,
+        window.cells,
+        samples,
+        this.#sampleStride,
+        this.#out,
+        from,
+        blocks,
+      );
+    }
+    for (let n = from; n < this.count; n++) out[n]! += result[n]!;
+  }
+
+  /** The history of listed elements of one waveform, added to `out`. */
+  addHistory(out: Float64Array, waveform: number, list: ElementList): void {
+    if (list.count === 0) return;
+    this.correlateInto(out, waveform, this.window(list.lowest, list.highest), [true, true, true], (weights, room) => {
+      this.reserve(room + 32 * list.count);
+      new Float64Array(this.kernel.memory.buffer, room, 4 * list.count).set(list.data.subarray(0, 4 * list.count));
+      this.kernel.spread(room, list.count, weights);
+    });
+  }
+}
