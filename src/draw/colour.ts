@@ -39,7 +39,7 @@ export const NEUTRALS: Readonly<Record<Theme, Neutrals>> = {
     background: packed('#fcfcfb'),
     ink: packed('#1b1d21'),
     muted: packed('#5f636b'),
-    line: packed('#8b8f97'),
+    line: packed('#7a7e86'),
   },
   dark: { background: packed('#131518'), ink: packed('#eceef1'), muted: packed('#a3a8b0'), line: packed('#7b8089') },
 };
@@ -84,7 +84,7 @@ const ORANGE = 55;
  */
 function diverging(theme: Theme): ColourMap {
   const { zero, limit, chroma } = DIVERGING[theme];
-  return tabulate(401, (n) => {
+  return tabulate(255, (n) => {
     const s = 2 * n - 1;
     const m = Math.abs(s);
     return { l: zero + (limit - zero) * m, c: chroma * m, h: s < 0 ? BLUE : ORANGE };
