@@ -61,7 +61,8 @@ function predict(
     const spread = spreads[site < 3 ? 0 : 1]!;
     spread.clear();
     forEachEdge(currents, points, point, site, response, (edge) => {
-      wantedCoefficients(quantity, response, wanted);
+      const { element, lattice: added, filament } = response;
+      for (let k = 0; k < SIX; k++) wanted[k] = added[k]! + (quantity === 'field' ? element[k]! : -filament[k]!);
       const travel = response.distance / lattice.medium.speed;
       for (let p = currents.pairStart[edge]!; p < currents.pairStart[edge + 1]!; p++)
         spread.add(currents.waveform[p]!, travel + currents.delay[p]!, currents.weight[p]!, wanted);
@@ -69,12 +70,6 @@ function predict(
     spread.addHistory(values, (point * COMPONENTS.length + site) * instants.count);
   });
   return values;
-}
-
-/** The coefficients of the quantity asked for, from the parts of an edge's response. */
-export function wantedCoefficients(quantity: Quantity, response: EdgeResponse, out: Float64Array): void {
-  const { element, lattice, filament } = response;
-  for (let k = 0; k < SIX; k++) out[k] = lattice[k]! + (quantity === 'field' ? element[k]! : -filament[k]!);
 }
 
 export function forEachSite(points: SamplePoints, visit: (point: number, site: Site) => void): void {

@@ -6,7 +6,7 @@ import { DelaySpread } from './delaySpread.ts';
 import { leadingWavenumberError, wavenumberError } from './dispersion.ts';
 import { EdgeResponse } from './edgeResponse.ts';
 import type { Lattice } from './lattice.ts';
-import { delayRange, forEachEdge, forEachSite, type Quantity, stride, wantedCoefficients } from './predict.ts';
+import { delayRange, forEachEdge, forEachSite, type Quantity, stride } from './predict.ts';
 import { SIX } from './radialOperator.ts';
 
 /**
@@ -16,8 +16,9 @@ import { SIX } from './radialOperator.ts';
  * (X + C + T) e^(−jkr), of which −jκ₂r X is the phase to leading order; so
  *   field(ω) = (X + C + T + jκ₂r X) e^(−j(k + κ)r) W(ω),
  *   error(ω) = field(ω) − (X + Φ) e^(−jkr) W(ω),   Φ the filament's part.
- * Nothing propagates above the cut-off, where the first factor is dropped. The term 1/(jω) on the charge is a pole: the
- * static field is summed in time, and what is left of that term, (e^(−jκr) − 1)/(jω), vanishes at ω = 0.
+ * Nothing propagates above the cut-off, where the lattice's field is dropped. The point element's own field, and the
+ * static part of what is added to it, are summed in time. So faint lines matter to the correction only, and the pole of
+ * the charge, 1/(jω), is left with the factor e^(−jκr) − 1, which removes it.
  *
  * Needs w alone, not its derivatives, so that waveforms with kinks may use it.
  */
@@ -59,23 +60,21 @@ function predict(
   const every = stride(instants, lattice.timeStep);
   const delays = delayRange(currents, lattice, points);
   const lines = new Lines(currents, lattice, instants, delays);
-  const statics = [instants.E, instants.H].map(
+  const spreads = [instants.E, instants.H].map(
     (at) => new DelaySpread(currents.waveforms, at[0]!, every, instants.count, lattice.timeStep, delays),
   );
   const response = new EdgeResponse(lattice);
   const bracket = new Bracket(quantity, response, lattice);
-  const chargeOnly = new Float64Array(SIX);
   forEachSite(points, (point, site) => {
-    const spread = statics[site < 3 ? 0 : 1]!;
+    const spread = spreads[site < 3 ? 0 : 1]!;
     spread.clear();
     lines.clear();
     forEachEdge(currents, points, point, site, response, (edge) => {
       bracket.take();
       lines.addEdge(edge, bracket);
-      chargeOnly[0] = bracket.charge;
       const travel = response.distance / lattice.medium.speed;
       for (let p = currents.pairStart[edge]!; p < currents.pairStart[edge + 1]!; p++)
-        spread.add(currents.waveform[p]!, travel + currents.delay[p]!, currents.weight[p]!, chargeOnly);
+        spread.add(currents.waveform[p]!, travel + currents.delay[p]!, currents.weight[p]!, bracket.direct);
     });
     const offset = (point * COMPONENTS.length + site) * instants.count;
     spread.addHistory(values, offset);
@@ -84,14 +83,14 @@ function predict(
   return values;
 }
 
-/** One edge's spectrum at one site, without the factors W(ω) and e^(−jkr) and without the pole. */
+/** One edge's correction at one site, a spectrum without the factors W(ω) and e^(−jkr). */
 class Bracket {
   re = 0;
   im = 0;
-  /** coefficient on q, which is left to the time domain */
-  charge = 0;
+  /** coefficients of what is left to the time domain, as those of EdgeResponse */
+  readonly direct = new Float64Array(SIX);
   readonly #total = new Float64Array(SIX);
-  readonly #wanted = new Float64Array(SIX);
+  readonly #added = new Float64Array(SIX);
   readonly #scratch = new Float64Array(2);
 
   constructor(
@@ -102,21 +101,24 @@ class Bracket {
 
   /** Takes up the response that was computed last. */
   take(): void {
-    const { element, lattice } = this.response;
-    wantedCoefficients(this.quantity, this.response, this.#wanted);
-    for (let k = 0; k < SIX; k++) this.#total[k] = element[k]! + lattice[k]!;
-    this.charge = this.#wanted[0]!;
-    this.#wanted[0] = 0;
+    const { element, lattice, filament } = this.response;
+    for (let k = 0; k < SIX; k++) {
+      this.#total[k] = element[k]! + lattice[k]!;
+      this.#added[k] = lattice[k]! - (this.quantity === 'error' ? filament[k]! : 0);
+      this.direct[k] = this.quantity === 'field' ? element[k]! : 0;
+    }
+    this.direct[0]! += this.#added[0]!;
+    this.#added[0] = 0;
   }
 
   /**
-   * (e − 1) Σ total_k (jω)^k + Σ_{k≥0} wanted_k (jω)^k + jκ₂r e Σ X_k (jω)^k with e = e^(−jκr), in `re` and `im`: the
+   * (e − 1) Σ total_k (jω)^k + Σ_{k≥0} added_k (jω)^k + jκ₂r e Σ X_k (jω)^k with e = e^(−jκr), in `re` and `im`: the
    * module's formulas, arranged so that small errors are not differences of large fields.
    */
   at(omega: number): void {
     const { response, lattice } = this;
     const r = response.distance;
-    this.#polynomial(this.#wanted, omega);
+    this.#polynomial(this.#added, omega);
     this.re = this.#scratch[0]!;
     this.im = this.#scratch[1]!;
     // At ω = 0, e = 1 and κ₂ = 0.
@@ -154,8 +156,11 @@ class Bracket {
   }
 }
 
-/** Lines beyond the last one at this level of the largest |ω W| are left out: far below what a lattice's error is known to. */
-const FAINTEST = 1e-5;
+/**
+ * Lines beyond the last one at this level of the largest |ω W| are left out of the correction, which is itself a small part
+ * of the field. Above the flat spectrum of the jump that a pulse makes at t = 0 when it starts 5 sigma before its peak.
+ */
+const FAINTEST = 1e-4;
 
 /** The window's end is tapered over this fraction beyond the last instant, so that a current still flowing then has an end. */
 const TAPER = 0.25;
@@ -177,12 +182,10 @@ class Lines {
   readonly #edgeIm: Float64Array;
   readonly #sumRe: Float64Array;
   readonly #sumIm: Float64Array;
-  readonly #distance: (bracket: Bracket) => number;
 
   constructor(currents: EdgeCurrents, lattice: Lattice, instants: Instants, delays: readonly [number, number]) {
     this.#step = lattice.timeStep;
     this.#speed = lattice.medium.speed;
-    this.#distance = (bracket) => bracket.response.distance;
     const last = instants.H[instants.count - 1]!;
     const flowing = Math.ceil(((1 + TAPER) * last) / this.#step);
     this.#period = Math.ceil((1 + LAG) * (flowing + delays[1] / this.#step));
@@ -239,7 +242,7 @@ class Lines {
 
   /** Adds an edge's spectrum: bracket · I_edge(ω) · e^(−jkr). */
   addEdge(edge: number, bracket: Bracket): void {
-    const travel = this.#distance(bracket) / this.#speed;
+    const travel = bracket.response.distance / this.#speed;
     for (let m = 0; m < this.#count; m++) {
       const omega = this.#omega(m);
       bracket.at(omega);
