@@ -22,6 +22,7 @@ describe('numbers for people', () => {
     [1.84e-9, 's', '1.84 ns'],
     [2.31e8, 'B', '231 MB'],
     [1.2345, '', '1.23'],
+    [4e7, '1/s', '4·10⁷ 1/s'],
     [3e-19, 's', '0.0003 fs'],
   ])('%d %s is %s', (value, unit, text) => {
     expect(formatQuantity(value, unit)).toBe(text);
