@@ -1,5 +1,6 @@
 import { parse as parseWithLocations } from '@humanwhocodes/momoa';
 import type { z } from 'zod';
+import { formatQuantity } from '../elementary/quantity.ts';
 import { mediumOf } from './constants.ts';
 import { circle, norm, polyline, scale, sub } from './curve.ts';
 import { distanceToSources, firstArrival, sourceBounds } from './distance.ts';
@@ -30,7 +31,7 @@ import {
 } from './schema.ts';
 import { shortestWavelength } from './shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
-import { formatQuantity, show } from './units.ts';
+import { show } from './units.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 import { JUMP_NOTED, JUMP_REFUSED, makeWaveform } from './waveforms.ts';
 

@@ -89,27 +89,6 @@ export function show(value: unknown): string {
   if (typeof value === 'string') return JSON.stringify(value.length > 40 ? `${value.slice(0, 40)}…` : value);
   if (Array.isArray(value)) return `a list of ${value.length}`;
   if (typeof value === 'object' && value !== null) return 'an object';
+  if (value === undefined) return 'nothing';
   return String(value);
-}
-
-const PREFIXES = ['f', 'p', 'n', 'µ', 'm', '', 'k', 'M', 'G', 'T', 'P'];
-
-/**
- * A quantity for people: at most three significant digits, an engineering prefix. Metres keep their unit from 0.1 up:
- * "5 mm", "2.4 GHz", "0.54 m". Units that take no prefix (1/s) or values beyond the prefixes are written with a power
- * of ten.
- */
-export function formatQuantity(value: number, unit: string): string {
-  if (value === 0 || !Number.isFinite(value)) return `${value} ${unit}`.replace('Infinity', '∞').replace('NaN', '—');
-  const [digits, exponentText] = Math.abs(value).toExponential(2).split('e') as [string, string];
-  const exponent = Number(exponentText);
-  const sign = value < 0 ? '−' : '';
-  const group = unit === 'm' && exponent === -1 ? 0 : Math.floor(exponent / 3);
-  const prefix = /^[A-Za-zΩ]/.test(unit) ? PREFIXES[group + 5] : group === 0 ? '' : undefined;
-  if (prefix === undefined) return `${sign}${Number(digits)}·10${superscript(exponent)} ${unit}`;
-  return `${sign}${Number(`${digits}e${exponent - 3 * group}`)} ${prefix}${unit}`;
-}
-
-function superscript(n: number): string {
-  return String(n).replace(/./g, (c) => (c === '-' ? '⁻' : '⁰¹²³⁴⁵⁶⁷⁸⁹'[Number(c)]!));
 }

@@ -1,6 +1,6 @@
 import { describe, expect, test } from 'vitest';
 import { ELECTRIC_CONSTANT, MAGNETIC_CONSTANT, mediumOf, SPEED_OF_LIGHT } from '../../src/scenario/constants.ts';
-import { formatQuantity, type Kind, parseFraction, parseQuantity } from '../../src/scenario/units.ts';
+import { type Kind, parseFraction, parseQuantity } from '../../src/scenario/units.ts';
 
 describe('quantities', () => {
   // Exact: a decimal prefix shifts the point, so the double is the one nearest to the decimal number.
@@ -62,29 +62,6 @@ describe('quantities', () => {
     for (const given of ['5', '0.05', '5 mm', '%', '5 %%', '1e400 %', Number.NaN])
       expect(parseFraction(given)).toHaveProperty('reason');
   });
-});
-
-test('quantities for people', () => {
-  const table: [number, string, string][] = [
-    [0.005, 'm', '5 mm'],
-    [0.54, 'm', '0.54 m'],
-    [0.0999, 'm', '99.9 mm'],
-    [0.09999, 'm', '0.1 m'],
-    [0.9996, 'm', '1 m'],
-    [1234, 'm', '1.23 km'],
-    [2.4e9, 'Hz', '2.4 GHz'],
-    [999.6e6, 'Hz', '1 GHz'],
-    [9.533e-12, 's', '9.53 ps'],
-    [0.9e-9, 's', '900 ps'],
-    [-0.05, 'm', '−50 mm'],
-    [0, 'm', '0 m'],
-    [4e7, '1/s', '4·10⁷ 1/s'],
-    [2.5, '1/s', '2.5 1/s'],
-    [3e-20, 's', '3·10⁻²⁰ s'],
-    [1.5e3, 'V/m', '1.5 kV/m'],
-    [Infinity, 'm', '∞ m'],
-  ];
-  for (const [value, unit, expected] of table) expect(formatQuantity(value, unit)).toBe(expected);
 });
 
 test('constants agree with CODATA 2022', () => {
