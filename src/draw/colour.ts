@@ -129,52 +129,76 @@ export interface DecibelScale {
   readonly label: string;
 }
 
+/** Kinds instead of amounts, such as which part of the error is the largest: a value is the index of its kind. */
+export interface KindScale {
+  readonly kind: 'kinds';
+  readonly kinds: readonly { readonly name: string; readonly colour: number }[];
+  /** for the colour bar: “largest part” */
+  readonly label: string;
+}
+
 /** How values become colours. Scales are never changed in place: a new scale is a new object. */
-export type Scale = SignedScale | DecibelScale;
+export type Scale = SignedScale | DecibelScale | KindScale;
+
+/** The colours of a scale, from its lower end to its upper. */
+export function coloursOf(scale: Scale, theme: Theme): ArrayLike<number> {
+  return scale.kind === 'kinds' ? scale.kinds.map(({ colour }) => colour) : MAPS[theme][scale.kind].table;
+}
+
+/** The values at the lower and the upper end of a scale; dB on a decibel scale. */
+export function endsOf(scale: Scale): readonly [from: number, to: number] {
+  if (scale.kind === 'kinds') return [0, scale.kinds.length - 1];
+  return scale.kind === 'signed' ? [-scale.limit, scale.limit] : [scale.from, scale.to];
+}
 
 /** The place of a value on its scale, 0…1; values beyond the ends take the ends. NaN for NaN. */
 export function placeOn(scale: Scale, value: number): number {
-  const place =
-    scale.kind === 'signed'
-      ? (value / scale.limit + 1) / 2
-      : (decibels(Math.abs(value) / scale.reference) - scale.from) / (scale.to - scale.from);
-  return Math.min(1, Math.max(0, place));
+  const [from, to] = endsOf(scale);
+  const shown = scale.kind === 'decibels' ? decibels(Math.abs(value) / scale.reference) : value;
+  // a single kind has its ends in one place
+  return to > from ? Math.min(1, Math.max(0, (shown - from) / (to - from))) : 0 * shown;
 }
 
 /** The colour of one value, packed; 0 (transparent) for NaN. */
 export function colourOf(value: number, scale: Scale, theme: Theme): number {
-  const { table } = MAPS[theme][scale.kind];
-  return Number.isNaN(value) ? 0 : table[Math.round(placeOn(scale, value) * (table.length - 1))]!;
+  return Number.isNaN(value) ? 0 : colourAt(coloursOf(scale, theme), placeOn(scale, value));
+}
+
+function colourAt(colours: ArrayLike<number>, place: number): number {
+  return colours[Math.round(place * (colours.length - 1))]!;
 }
 
 /**
  * The value whose colour this is, to half a step of the table; dB on a decibel scale. The inverse of `colourOf` inside
  * the scale.
- * @returns undefined for a colour that is not of the scale's map
+ * @returns undefined for a colour that is not of the scale
  */
 export function valueAt(colour: number, scale: Scale, theme: Theme): number | undefined {
-  const { table, places } = MAPS[theme][scale.kind];
-  const n = places.get(colour);
-  if (n === undefined) return undefined;
-  const s = n / (table.length - 1);
-  return scale.kind === 'signed' ? (2 * s - 1) * scale.limit : scale.from + s * (scale.to - scale.from);
+  const n =
+    scale.kind === 'kinds'
+      ? scale.kinds.findIndex((one) => one.colour === colour)
+      : (MAPS[theme][scale.kind].places.get(colour) ?? -1);
+  const [from, to] = endsOf(scale);
+  const steps = coloursOf(scale, theme).length - 1;
+  return n < 0 ? undefined : from + (steps > 0 ? (n / steps) * (to - from) : 0);
 }
 
 /** Colours of all values, into `colours` (of the same length): `colourOf` for each, without a call for each. */
 export function paint(values: ArrayLike<number>, scale: Scale, theme: Theme, colours: Uint32Array): void {
-  if (scale.kind === 'decibels') {
-    for (let n = 0; n < values.length; n++) colours[n] = colourOf(values[n]!, scale, theme);
+  const table = coloursOf(scale, theme);
+  if (scale.kind !== 'signed') {
+    for (let n = 0; n < values.length; n++)
+      colours[n] = Number.isNaN(values[n]) ? 0 : colourAt(table, placeOn(scale, values[n]!));
     return;
   }
-  const { table } = MAPS[theme].signed;
   const last = table.length - 1;
   const half = last / 2;
   const slope = half / scale.limit;
   for (let n = 0; n < values.length; n++) {
     const value = values[n]!;
     const place = Math.min(last, Math.max(0, value * slope + half));
-    // NaN rounds to place 0 below; it must stay transparent
-    colours[n] = !Number.isNaN(value) ? table[(place + 0.5) | 0]! : 0;
+    // NaN would round to place 0; it must stay transparent
+    colours[n] = Number.isNaN(value) ? 0 : table[(place + 0.5) | 0]!;
   }
 }
 

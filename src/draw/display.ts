@@ -1,5 +1,5 @@
 import { axes } from './axes.ts';
-import { MAPS, NEUTRALS, type Scale } from './colour.ts';
+import { coloursOf, endsOf, NEUTRALS, type Scale } from './colour.ts';
 import { crossings, planeOutline } from './furniture.ts';
 import { type ImageLabel, type Label, shortNumber } from './label.ts';
 import { GHOST, type ImageStroke } from './pen.ts';
@@ -33,7 +33,8 @@ export interface ImageMarker {
 
 export interface ColourBar {
   readonly rectangle: Rectangle;
-  readonly table: Uint32Array;
+  /** from left to right, equally wide */
+  readonly colours: ArrayLike<number>;
 }
 
 const TITLE_HEIGHT = 30;
@@ -156,23 +157,26 @@ function dividerStroke(view: Rectangle, x: number, colour: number, pixelRatio: n
   };
 }
 
-/** The colour bar of a scale with its ends and its name, in the strip below the view. */
+/** The colour bar of a scale with its ends, or its kinds, and its name, in the strip below the view. */
 function colourBar(scale: Scale, scene: Scene, area: Rectangle, pane: number): ColourBar & { labels: Label[] } {
   const { theme, pixelRatio } = scene;
-  const width = Math.round(Math.min(200 * pixelRatio, area.width * 0.5));
+  const gap = 6 * pixelRatio;
+  const share = scale.kind === 'kinds' ? 0.8 : 0.5;
+  const width = Math.round(Math.min((scale.kind === 'kinds' ? 320 : 200) * pixelRatio, area.width * share));
   const height = Math.round(10 * pixelRatio);
   const x = Math.round(area.x + (area.width - width) / 2);
-  const y = Math.round(area.y + area.height - BAR_HEIGHT * pixelRatio + 6 * pixelRatio);
-  const [from, to] = scale.kind === 'signed' ? [-scale.limit, scale.limit] : [scale.from, scale.to];
-  const gap = 6 * pixelRatio;
+  const y = Math.round(area.y + area.height - BAR_HEIGHT * pixelRatio + gap);
   const text = { pane, role: 'scale', hidden: false } as const;
-  return {
-    rectangle: { x, y, width, height },
-    table: MAPS[theme][scale.kind].table,
-    labels: [
-      { ...text, x: x - gap, y: y + height / 2, text: shortNumber(from), align: 'right', baseline: 'middle' },
-      { ...text, x: x + width + gap, y: y + height / 2, text: shortNumber(to), align: 'left', baseline: 'middle' },
-      { ...text, x: x + width / 2, y: y + height + gap, text: scale.label, align: 'center', baseline: 'top' },
-    ],
-  };
+  const below = { ...text, y: y + height + gap, align: 'center', baseline: 'top' } as const;
+  const beside = { ...text, y: y + height / 2, baseline: 'middle' } as const;
+  const [from, to] = endsOf(scale);
+  const labels: Label[] =
+    scale.kind === 'kinds'
+      ? scale.kinds.map(({ name }, n) => ({ ...below, x: x + (width * (n + 0.5)) / scale.kinds.length, text: name }))
+      : [
+          { ...beside, x: x - gap, text: shortNumber(from), align: 'right' },
+          { ...beside, x: x + width + gap, text: shortNumber(to), align: 'left' },
+          { ...below, x: x + width / 2, text: scale.label },
+        ];
+  return { rectangle: { x, y, width, height }, colours: coloursOf(scale, theme), labels };
 }

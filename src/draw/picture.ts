@@ -46,13 +46,13 @@ export class Picture {
     );
   }
 
-  private drawBar({ rectangle, table }: ColourBar): void {
+  private drawBar({ rectangle, colours }: ColourBar): void {
     const { surface } = this;
     const { left, right, top, bottom }: Clip = surface.clip(rectangle);
     for (let y = top; y < bottom; y++)
       for (let x = left; x < right; x++) {
-        const s = (x + 0.5 - rectangle.x) / rectangle.width;
-        surface.pixels[y * surface.width + x] = table[Math.round(s * (table.length - 1))]!;
+        const place = Math.floor(((x + 0.5 - rectangle.x) / rectangle.width) * colours.length);
+        surface.pixels[y * surface.width + x] = colours[place]!;
       }
   }
 

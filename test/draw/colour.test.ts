@@ -3,6 +3,7 @@ import { describe, expect, test } from 'vitest';
 import {
   colourOf,
   type DecibelScale,
+  type KindScale,
   MAPS,
   NEUTRALS,
   paint,
@@ -174,6 +175,20 @@ describe('scales', () => {
     expect(valueAt(colourOf(0, errors, 'light'), errors, 'light')).toBe(-80);
     expect(colourOf(Number.NaN, signed, 'dark')).toBe(0);
     expect(valueAt(NEUTRALS.dark.background, signed, 'dark')).toBeUndefined();
+  });
+
+  test('kinds have their own colours', () => {
+    const kinds = ['boundary', 'lattice', 'gridding'].map((name, n) => ({ name, colour: 0xff000000 + n }));
+    for (const some of [kinds, kinds.slice(0, 1)]) {
+      const scale: KindScale = { kind: 'kinds', kinds: some, label: 'largest part' };
+      const colours = new Uint32Array(some.length + 1);
+      paint([...some.keys(), Number.NaN], scale, 'light', colours);
+      expect(Array.from(colours)).toEqual([...some.map(({ colour }) => colour), 0]);
+      some.forEach(({ colour }, n) => {
+        expect(valueAt(colour, scale, 'light')).toBe(n);
+      });
+      expect(valueAt(1, scale, 'light')).toBeUndefined();
+    }
   });
 
   test('painting many values is colouring each', () => {
