@@ -155,3 +155,223 @@ export function correlate(
     v128.store(to, f64x2.add(v128.load(to, 48), sum3), 48);
   }
 }
+
+/**
+ * Currents on grid edges, charges at grid nodes. An entry (edge or node) is 32 bytes: x, y, z of the node (the lower one
+ * of an edge) in m, then its first pair and the one after its last, i32 each. A pair is 16 bytes: weight, and delay in
+ * cells. `origin` is t₀ and `perLength` 1/v, both in cells.
+ */
+let entries: usize = 0;
+let pairs: usize = 0;
+let observerX: f64 = 0;
+let observerY: f64 = 0;
+let observerZ: f64 = 0;
+let origin: f64 = 0;
+let perLength: f64 = 0;
+/** Gauss rules by nearness, from far to near: 24 bytes each: least (distance/length)² , nodes, address of (x, weight) on [0, 1]. */
+let gaussRules: usize = 0;
+
+export function setGridded(entryAddress: usize, pairAddress: usize, rules: usize): void {
+  entries = entryAddress;
+  pairs = pairAddress;
+  gaussRules = rules;
+}
+
+export function setObserver(x: f64, y: f64, z: f64, cellsAtFirst: f64, cellsPerLength: f64): void {
+  observerX = x;
+  observerY = y;
+  observerZ = z;
+  origin = cellsAtFirst;
+  perLength = cellsPerLength;
+}
+
+/** The rule for a stretch of `length` at squared distance `distance2`; the last one serves whatever is nearer. */
+// @ts-ignore: decorator
+@inline
+function gaussRule(distance2: f64, length: f64): usize {
+  let rule = gaussRules;
+  const limit = distance2 / (length * length);
+  while (load<f64>(rule) > limit) rule += 24;
+  return rule;
+}
+
+/**
+ * Charges, E along `axis`: ∂/∂(q, w) of (Q/R³ + Q̇/(vR²)) R.
+ * @param perSpeed 1/v, s/m
+ */
+export function spreadCharges(first: i32, last: i32, axis: i32, perSpeed: f64, scale: f64, weights: usize): void {
+  for (let n = first; n < last; n++) {
+    const entry = entries + (<usize>n << 5);
+    const x = observerX - load<f64>(entry);
+    const y = observerY - load<f64>(entry, 8);
+    const z = observerZ - load<f64>(entry, 16);
+    const r = Math.sqrt(x * x + y * y + z * z);
+    const along = axis == 0 ? x : axis == 1 ? y : z;
+    const moving = (scale * along * perSpeed) / (r * r);
+    const still = (scale * along) / (r * r * r);
+    const seen = origin - r * perLength;
+    const end = pairs + (<usize>load<i32>(entry, 28) << 4);
+    for (let pair = pairs + (<usize>load<i32>(entry, 24) << 4); pair < end; pair += 16) {
+      const weight = load<f64>(pair);
+      const at = weights + place(seen - load<f64>(pair, 8));
+      deposit(at, still * weight);
+      deposit(at + kindStride, moving * weight);
+    }
+  }
+}
+
+/** Of one edge and one observer: squared distance to its line, and where the foot of the perpendicular is on it. */
+let rho2: f64 = 0;
+let foot: f64 = 0;
+/** The observer's coordinate that is across both the edge and the component (for B). */
+let across: f64 = 0;
+
+// @ts-ignore: decorator
+@inline
+function lookAtEdge(entry: usize, axis: i32, acrossAxis: i32): void {
+  const x = observerX - load<f64>(entry);
+  const y = observerY - load<f64>(entry, 8);
+  const z = observerZ - load<f64>(entry, 16);
+  foot = axis == 0 ? x : axis == 1 ? y : z;
+  across = acrossAxis == 0 ? x : acrossAxis == 1 ? y : z;
+  rho2 = axis == 0 ? y * y + z * z : axis == 1 ? x * x + z * z : x * x + y * y;
+}
+
+/**
+ * Edges along `axis`, each uniform. Electric (`magnetic` false), E along the edge: ∂/∂w′ of −∫ İ/(v²R) ds. Magnetic, B
+ * along the axis across both `axis` and `acrossAxis`: ∂/∂(w, w′) of ∫ (I/R³ + İ/(vR²)) (ŝ×R) ds, of which ŝ×R is constant
+ * along the edge, ± its `across` coordinate; the sign is in `scale`.
+ */
+export function spreadEdges(
+  first: i32,
+  last: i32,
+  axis: i32,
+  acrossAxis: i32,
+  magnetic: bool,
+  length: f64,
+  perSpeed: f64,
+  scale: f64,
+  weights: usize,
+): void {
+  for (let n = first; n < last; n++) {
+    const entry = entries + (<usize>n << 5);
+    lookAtEdge(entry, axis, acrossAxis);
+    const gain = magnetic ? scale * across : -scale * perSpeed * perSpeed;
+    if (gain == 0) continue;
+    const beyond = foot < 0 ? -foot : foot > length ? foot - length : 0;
+    const start = pairs + (<usize>load<i32>(entry, 24) << 4);
+    const end = pairs + (<usize>load<i32>(entry, 28) << 4);
+    if (parts == 0) {
+      const rule = gaussRule(rho2 + beyond * beyond, length);
+      const count = load<i32>(rule, 8);
+      let node = load<usize>(rule, 16);
+      for (let m = 0; m < count; m++) {
+        const off = foot - length * load<f64>(node);
+        depositEdgeNode(off, gain * length * load<f64>(node, 8), magnetic, perSpeed, start, end, weights);
+        node += 16;
+      }
+    } else {
+      // Between a foot inside the edge and its ends R rises; each pair is cut where its delay passes a part's bound.
+      for (let pair = start; pair < end; pair += 16) {
+        if (foot > 0)
+          spreadStretch(foot > length ? foot - length : 0, foot, gain, magnetic, perSpeed, pair, weights);
+        if (foot < length)
+          spreadStretch(foot < 0 ? -foot : 0, length - foot, gain, magnetic, perSpeed, pair, weights);
+      }
+    }
+  }
+}
+
+/** One Gauss node, `off` from the foot, for the pairs from `start` to `end`. */
+// @ts-ignore: decorator
+@inline
+function depositEdgeNode(
+  off: f64,
+  gain: f64,
+  magnetic: bool,
+  perSpeed: f64,
+  start: usize,
+  end: usize,
+  weights: usize,
+): void {
+  const r2 = rho2 + off * off;
+  const r = Math.sqrt(r2);
+  const seen = origin - r * perLength;
+  const near = magnetic ? gain / (r2 * r) : 0;
+  const far = magnetic ? (gain * perSpeed) / r2 : gain / r;
+  for (let pair = start; pair < end; pair += 16) {
+    const weight = load<f64>(pair);
+    const at = weights + place(seen - load<f64>(pair, 8));
+    if (magnetic) deposit(at + kindStride, near * weight);
+    deposit(at + 2 * kindStride, far * weight);
+  }
+}
+
+/** The stretch of an edge between `from` and `to` metres from the foot, cut at the bounds that one pair's delay passes. */
+function spreadStretch(
+  from: f64,
+  to: f64,
+  gain: f64,
+  magnetic: bool,
+  perSpeed: f64,
+  pair: usize,
+  weights: usize,
+): void {
+  const seen = origin - load<f64>(pair, 8);
+  const lowest = seen - Math.sqrt(rho2 + to * to) * perLength;
+  let off = from;
+  let at = seen - Math.sqrt(rho2 + from * from) * perLength;
+  let cell = Math.floor(at);
+  let part = parts - 1;
+  while (part > 0 && at - cell < load<f64>(bounds + (part << 3))) part--;
+  for (;;) {
+    const bound = cell + load<f64>(bounds + (part << 3));
+    const reach = (seen - bound) / perLength;
+    const next = bound > lowest ? Math.min(to, Math.sqrt(Math.max(reach * reach - rho2, 0))) : to;
+    if (next > off) {
+      const rule = gaussRule(rho2 + off * off, next - off);
+      const count = load<i32>(rule, 8);
+      let node = load<usize>(rule, 16);
+      for (let m = 0; m < count; m++) {
+        depositEdgeNode(
+          off + (next - off) * load<f64>(node),
+          gain * (next - off) * load<f64>(node, 8),
+          magnetic,
+          perSpeed,
+          pair,
+          pair + 16,
+          weights,
+        );
+        node += 16;
+      }
+      off = next;
+    }
+    if (bound <= lowest) break;
+    if (part > 0) part--;
+    else {
+      part = parts - 1;
+      cell -= 1;
+    }
+  }
+}
+
+/** The lowest and highest place F of entries, stored at `to`; edges count as `length` long, in any direction. */
+export function reach(first: i32, last: i32, length: f64, to: usize): void {
+  let lowest: f64 = Infinity;
+  let highest: f64 = -Infinity;
+  for (let n = first; n < last; n++) {
+    const entry = entries + (<usize>n << 5);
+    const x = observerX - load<f64>(entry);
+    const y = observerY - load<f64>(entry, 8);
+    const z = observerZ - load<f64>(entry, 16);
+    const seen = origin - Math.sqrt(x * x + y * y + z * z) * perLength;
+    const end = pairs + (<usize>load<i32>(entry, 28) << 4);
+    for (let pair = pairs + (<usize>load<i32>(entry, 24) << 4); pair < end; pair += 16) {
+      const at = seen - load<f64>(pair, 8);
+      lowest = Math.min(lowest, at);
+      highest = Math.max(highest, at);
+    }
+  }
+  store<f64>(to, lowest - length * perLength);
+  store<f64>(to, highest + length * perLength, 8);
+}

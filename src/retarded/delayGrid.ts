@@ -10,15 +10,19 @@ export interface Kernel {
   setRule(points: number, phases: number, polynomials: number, bounds: number, parts: number, scratch: number): void;
   setWindow(firstCell: number, kindStride: number): void;
   spread(elements: number, count: number, weights: number): void;
-  spreadCharges(
-    nodes: number,
-    count: number,
-    x: number,
-    y: number,
-    z: number,
+  setGridded(entries: number, pairs: number, gaussRules: number): void;
+  setObserver(x: number, y: number, z: number, origin: number, perLength: number): void;
+  reach(first: number, last: number, length: number, to: number): void;
+  spreadCharges(first: number, last: number, axis: number, perSpeed: number, scale: number, weights: number): void;
+  spreadEdges(
+    first: number,
+    last: number,
     axis: number,
-    origin: number,
-    perLength: number,
+    acrossAxis: number,
+    magnetic: boolean,
+    length: number,
+    perSpeed: number,
+    scale: number,
     weights: number,
   ): void;
   correlate(
@@ -48,17 +52,21 @@ export interface Rule {
   readonly bounds: readonly number[];
   /** places of the nodes within a part: centred, in samples from the middle; inCell, on [−1, 1] */
   readonly nodes: readonly number[];
+  /** coefficients of the nodes' Lagrange polynomials, highest power first: [power][node] */
+  readonly polynomials: Float64Array;
 }
 
 /** @param parts equal parts of a time step (centred: samples in it) */
 export function centredRule(points: number, parts: number): Rule {
+  const nodes = Array.from({ length: points }, (_, j) => j - (points - 1) / 2);
   return {
     kind: 'centred',
     points,
     phases: parts,
     offsets: Array.from({ length: parts }, (_, g) => g / parts),
     bounds: [],
-    nodes: Array.from({ length: points }, (_, j) => j - (points - 1) / 2),
+    nodes,
+    polynomials: lagrangeCoefficients(nodes),
   };
 }
 
@@ -71,11 +79,12 @@ export function inCellRule(points: number, parts: number, kinks: readonly number
   const offsets = bounds
     .slice(1)
     .flatMap((high, m) => nodes.map((x) => (bounds[m]! + high + x * (high - bounds[m]!)) / 2));
-  return { kind: 'inCell', points, phases: offsets.length, offsets, bounds, nodes };
+  const polynomials = lagrangeCoefficients(nodes);
+  return { kind: 'inCell', points, phases: offsets.length, offsets, bounds, nodes, polynomials };
 }
 
-/** Coefficients of the nodes' Lagrange polynomials, highest power first: [power][node]. */
-export function lagrangeCoefficients(nodes: readonly number[]): Float64Array {
+/** Coefficients of Lagrange's polynomials, highest power first: [power][node]. */
+function lagrangeCoefficients(nodes: readonly number[]): Float64Array {
   const p = nodes.length;
   const table = new Float64Array(p * p);
   for (let j = 0; j < p; j++) {
@@ -97,8 +106,8 @@ export function lagrangeCoefficients(nodes: readonly number[]): Float64Array {
   return table;
 }
 
-/** The rule's nodes around place u (time steps of source time): source times of its nodes and their weights. */
-export function stencil(rule: Rule, u: number): { times: number[]; weights: number[] } {
+/** The rule's nodes around place u (time steps of source time): where they are, and their weights as the kernel makes them. */
+export function stencil(rule: Rule, u: number): { times: number[]; weights: Float64Array } {
   const { points, phases, bounds, nodes } = rule;
   let x: number;
   let times: number[];
@@ -114,9 +123,9 @@ export function stencil(rule: Rule, u: number): { times: number[]; weights: numb
     x = (2 * (u - cell) - low - high) / (high - low);
     times = nodes.map((node) => cell + (low + high + node * (high - low)) / 2);
   }
-  const weights = nodes.map((node, j) =>
-    nodes.reduce((product, other, m) => (m === j ? product : (product * (x - other)) / (node - other)), 1),
-  );
+  const weights = new Float64Array(points);
+  for (let power = 0; power < points; power++)
+    for (let j = 0; j < points; j++) weights[j] = weights[j]! * x + rule.polynomials[power * points + j]!;
   return { times, weights };
 }
 
@@ -126,9 +135,11 @@ export interface RuleError {
   readonly error: readonly [number, number, number];
 }
 
-const TRIALS = 256;
+const TRIALS = 96;
 
-/** Measures a rule on a waveform sampled every `step` seconds, at places spread evenly over its activity. */
+/**
+ * Measures a rule on a waveform sampled every `step` seconds, at places spread evenly over its activity.
+ */
 export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleError {
   const peak: [number, number, number] = [0, 0, 0];
   const error: [number, number, number] = [0, 0, 0];
@@ -243,6 +254,8 @@ export class DelayGrid {
   readonly rule: Rule;
   readonly errors: readonly RuleError[];
   readonly kernel: Kernel;
+  /** address of the `held` bytes */
+  readonly held: number;
   readonly #waveforms: readonly Waveform[];
   /** cells of samples after source time 0, and zeros before it */
   readonly #cells: number;
@@ -256,8 +269,9 @@ export class DelayGrid {
   /**
    * @param latest the last instant of all lists, s
    * @param accuracy relative error asked of each of q, w, w′
+   * @param held bytes of memory that the caller keeps its own data in
    */
-  constructor(waveforms: readonly Waveform[], step: number, count: number, latest: number, accuracy: number) {
+  constructor(waveforms: readonly Waveform[], step: number, count: number, latest: number, accuracy: number, held = 0) {
     this.step = step;
     this.count = count;
     this.#waveforms = waveforms;
@@ -274,10 +288,12 @@ export class DelayGrid {
     at += 16 * Math.ceil((bounds.length + 1) / 2);
     const scratch = at;
     at += 8 * points;
+    this.held = at;
+    at += 16 * Math.ceil(held / 16);
     this.#fixed = at;
     this.reserve(at);
     const memory = new Float64Array(this.kernel.memory.buffer);
-    memory.set(lagrangeCoefficients(this.rule.nodes), polynomials / 8);
+    memory.set(this.rule.polynomials, polynomials / 8);
     memory.set(bounds, boundsAt / 8);
     this.kernel.setRule(points, phases, polynomials, boundsAt, Math.max(0, bounds.length - 1), scratch);
     this.#sample(64);
@@ -287,11 +303,6 @@ export class DelayGrid {
   reserve(bytes: number): void {
     const missing = bytes - this.kernel.memory.buffer.byteLength;
     if (missing > 0) this.kernel.memory.grow(Math.ceil(missing / 65536));
-  }
-
-  /** Address of memory that nothing else uses. */
-  get free(): number {
-    return this.#free;
   }
 
   /** Samples the waveforms, with room for elements that span `lead` cells. */

@@ -244,7 +244,7 @@ function addFronts(
   t: number,
   total: Float64Array,
 ): void {
-  const jump = onset(prepared.waveforms[integral.waveform]!);
+  const jump = onset(prepared, integral);
   if (jump === 0 || integral.potentialsOnly) return;
   for (const { factor, delay, slowness } of integral.terms)
     for (const s of fronts(view, delay, slowness, k.speed, t)) {

@@ -48,7 +48,7 @@ export function exactHistory(
 }
 
 /** Error of a sampled waveform relative to its peak: of closed forms, which have no other. */
-const CLOSED_ACCURACY = 2e-14;
+const CLOSED_ACCURACY = 1e-12;
 
 /** Halvings of the panels' grading before an error above the tolerance is reported instead. */
 const REFINEMENTS = 4;
@@ -62,7 +62,7 @@ export function historyOf(
   const step = stepOf(instants, prepared);
   const latest = Math.max(instants.E.at(-1) ?? 0, instants.H.at(-1) ?? 0);
   const grid = new DelayGrid(prepared.waveforms, step, instants.count, latest, CLOSED_ACCURACY);
-  const site = new Site(prepared, grid, tolerance);
+  const site = new Site(prepared, grid, tolerance, latest);
   const values = new Float64Array(points.count * 6 * instants.count);
   const errorBound = new Float64Array(points.count * 6);
   for (let m = 0; m < points.count * 6; m++) {
@@ -105,12 +105,17 @@ class Site {
   #sampling = 0;
   #rounding = 0;
 
+  /** roundings that an instant is worth, by waveform */
+  readonly #instant: readonly number[];
+
   constructor(
     readonly prepared: Prepared,
     readonly grid: DelayGrid,
     readonly tolerance: number,
+    latest: number,
   ) {
     this.#k = constantsOf(prepared.medium);
+    this.#instant = prepared.waveforms.map(({ timeScale }) => (2 * latest) / timeScale);
     const lists = () => prepared.waveforms.map(() => new ElementList());
     this.#closed = lists();
     this.#nodes = lists();
@@ -180,7 +185,7 @@ class Site {
     const size = Math.abs(q) * peak[0] + Math.abs(w) * peak[1] + Math.abs(slope) * peak[2];
     this.#size += size;
     this.#sampling += Math.abs(q) * error[0] + Math.abs(w) * error[1] + Math.abs(slope) * error[2];
-    this.#rounding += Number.EPSILON * (8 + geometry) * size;
+    this.#rounding += Number.EPSILON * (8 + geometry + this.#instant[waveform]!) * size;
   }
 
   /** Nodes of one integral, and the fronts of a jump, which go to `out` directly. */
@@ -199,7 +204,7 @@ class Site {
     const element = this.#element;
     const kept = this.#nodes[integral.waveform]!;
     const differing = this.#differences[integral.waveform]!;
-    const jump = onset(waveform);
+    const jump = onset(this.prepared, integral);
     for (const { factor, delay, slowness } of integral.terms) {
       const place = (s: number) => {
         view.look(s);

@@ -1,6 +1,5 @@
-import type { Waveform } from '../scenario/waveform.ts';
 import { crossing, type PieceView } from './pieceView.ts';
-import type { Integral } from './prepare.ts';
+import type { Integral, Prepared } from './prepare.ts';
 
 /**
  * Cuts [from, to] in halves until each part is no longer than `grading` times its distance from the observer, and its
@@ -39,9 +38,10 @@ export function fronts(view: PieceView, delay: number, slowness: number, speed: 
   return found;
 }
 
-/** w(0⁺), A: the size of the jump with which a waveform starts. */
-export function onset(waveform: Waveform): number {
-  return waveform.jump > 0 ? waveform.value(0) : 0;
+/** w(0⁺), A: the size of the jump with which an integral's waveform starts; 0 where jumps do not count. */
+export function onset(prepared: Prepared, integral: Integral): number {
+  const waveform = prepared.waveforms[integral.waveform]!;
+  return prepared.impulses && waveform.kinks.length > 0 ? waveform.value(0) : 0;
 }
 
 /** |d(delay)/ds| at s, s/m, and the element there left in `view`. */

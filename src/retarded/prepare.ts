@@ -38,6 +38,8 @@ export interface PointDipole {
 
 /** The sources taken apart into what the integrator knows. */
 export interface Prepared {
+  /** whether the front of a jump in current counts: an impulse in w′ (not for gridded currents, see gridded.ts) */
+  readonly impulses: boolean;
   readonly medium: Medium;
   readonly waveforms: readonly Waveform[];
   readonly waves: readonly Wave[];
@@ -71,7 +73,7 @@ export function prepareSources(sources: readonly Source[], medium: Medium, metho
       charges.push(...endCharges(source, waveform));
     }
   }
-  return { medium, waveforms: waveforms.list, waves, integrals, charges: merged(charges), dipoles };
+  return { impulses: true, medium, waveforms: waveforms.list, waves, integrals, charges: merged(charges), dipoles };
 }
 
 function takeApart(
@@ -187,5 +189,5 @@ export function prepareGridded(gridded: GriddedSources, origin: Vec3, cellSize: 
       nodes.push({ at, factor: charges.weight[m]!, delay: charges.delay[m]!, waveform, label });
     }
   }
-  return { medium, waveforms: waveforms.list, waves: [], integrals, charges: nodes, dipoles: [] };
+  return { impulses: false, medium, waveforms: waveforms.list, waves: [], integrals, charges: nodes, dipoles: [] };
 }
