@@ -71,11 +71,11 @@ export function parseFraction(given: number | string): Parsed {
 
 /** number × factor, rounded once where the factor is a power of ten. */
 function scaled(number: string, factor: number): number {
-  const power = Math.round(Math.log10(factor));
-  // The library's own factors carry a few roundings ("1/ns" is 999999999.9999998 of it).
-  if (Math.abs(factor / Number(`1e${power}`) - 1) > 1e-12) return Number(number) * factor;
+  // Twelve digits, because the library's own factors carry a few roundings: its 1/ns is 999999999.9999998.
+  const [digits, power] = factor.toExponential(11).split('e') as [string, string];
+  if (Number(digits) !== 1) return Number(number) * factor;
   const [mantissa, exponent = '0'] = number.toLowerCase().split('e');
-  return Number(`${mantissa}e${Number(exponent) + power}`);
+  return Number(`${mantissa}e${Number(exponent) + Number(power)}`);
 }
 
 function article(kind: string): string {
