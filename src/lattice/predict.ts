@@ -13,8 +13,9 @@ export type Quantity = 'field' | 'error';
  * The field that an unbounded Yee lattice is expected to show of known edge currents, to second order in cell size and
  * time step and with exact statics (see EdgeResponse), without a run: six delayed derivatives an edge.
  *
- * The waveforms must have four derivatives that the instants resolve (a kinked one wants `predictGridFieldBySpectrum`),
- * at 8 or more cells per shortest wavelength. Far away it runs low once the phase error itself is no longer small.
+ * For waveforms whose four derivatives the time step resolves: 8 or more cells per shortest wavelength, and expected order
+ * 2 (one with kinks wants `predictGridFieldBySpectrum`). The phase error enters to first order, so that the predicted
+ * error runs some per cent low beyond 20 cells at 10 cells per shortest wavelength.
  * @returns values in the layout of `FieldHistory`; V/m and A/m
  * @throws RangeError when a sample lies on a driven edge, or when the instants are not evenly spaced by whole time steps
  */
