@@ -15,23 +15,29 @@
  * smooth waveforms; `inCell` takes p nodes of its own for each part of a cell, for waveforms with kinks, which lie on
  * the parts' bounds. Node weights are polynomials in the place x within the part, given by their coefficients.
  *
+ * Nodes are symmetric about x = 0, so node weights come in mirrored pairs, ℓ_j = even + x odd and ℓ_{p−1−j} = even − x odd.
+ * Weights of two kinds that an element has together lie interleaved, so that each sum is read, raised and written in one
+ * piece, at places that never overlap by half.
+ *
  * All memory is laid out by the host, which passes byte addresses; kernels allocate nothing.
  */
 
-/** Nodes of the rule, an even number. */
+/** Nodes of the rule, a multiple of 4. */
 let points: i32 = 8;
 /** Phases in a cell. */
 let phases: i32 = 1;
-/** Coefficients of the node weights, highest power first: [power][node]. */
+/** Polynomials in x² of the node weights: for each two nodes j, j + 1 of the lower half, highest power first, [even, even, odd, odd]. */
 let polynomials: usize = 0;
 /** Bounds of the parts of a cell (in cells, from 0 to 1) for `inCell`; no parts means `centred`. */
 let bounds: usize = 0;
 let parts: i32 = 0;
 /** p numbers for the weights of one element. */
 let scratch: usize = 0;
-/** First cell of the weights, and the distance in bytes from one kind of weights to the next. */
+/** First cell of the weights. */
 let firstCell: i32 = 0;
-let kindStride: usize = 0;
+/** Interleaved weights of two kinds (q and w, or w and w′), and those of w′ alone. */
+let doubles: usize = 0;
+let singles: usize = 0;
 
 export function heapBase(): usize {
   return __heap_base;
@@ -46,22 +52,23 @@ export function setRule(p: i32, g: i32, coefficients: usize, cellBounds: usize, 
   scratch = room;
 }
 
-export function setWindow(first: i32, stride: usize): void {
+export function setWindow(first: i32, doubleWeights: usize, singleWeights: usize): void {
   firstCell = first;
-  kindStride = stride;
+  doubles = doubleWeights;
+  singles = singleWeights;
 }
 
-/** Weights of the p nodes for an element at place F (in cells), left in `scratch`; returns the first node's offset in bytes. */
+/** Weights of the p nodes for an element at place F (in cells), left in `scratch`; returns the index of the first node. */
 // @ts-ignore: decorator
 @inline
 function place(F: f64): usize {
-  let offset: i32;
+  let index: i32;
   let x: f64;
   if (parts == 0) {
     const fine = F * <f64>phases;
     const floor = Math.floor(fine);
     x = fine - floor - 0.5;
-    offset = <i32>floor - (points >> 1) + 1 - firstCell * phases;
+    index = <i32>floor - (points >> 1) + 1 - firstCell * phases;
   } else {
     const floor = Math.floor(F);
     const y = F - floor;
@@ -70,57 +77,87 @@ function place(F: f64): usize {
     const low = load<f64>(bounds + (part << 3));
     const high = load<f64>(bounds + ((part + 1) << 3));
     x = (2 * y - low - high) / (high - low);
-    offset = (<i32>floor - firstCell) * phases + part * points;
+    index = (<i32>floor - firstCell) * phases + part * points;
   }
   const argument = f64x2.splat(x);
-  const row = <usize>points << 3;
-  for (let node: usize = 0; node < row; node += 16) {
-    let at = polynomials + node;
-    let value = v128.load(at);
-    for (let power = 1; power < points; power++) {
-      at += row;
-      value = f64x2.add(f64x2.mul(value, argument), v128.load(at));
+  const square = f64x2.mul(argument, argument);
+  let at = polynomials;
+  let lower = scratch;
+  let upper = scratch + (<usize>points << 3);
+  const half = points >> 1;
+  for (let j = 0; j < half; j += 2) {
+    let even = v128.load(at);
+    let odd = v128.load(at, 16);
+    at += 32;
+    for (let power = 1; power < half; power++) {
+      even = f64x2.add(f64x2.mul(even, square), v128.load(at));
+      odd = f64x2.add(f64x2.mul(odd, square), v128.load(at, 16));
+      at += 32;
     }
-    v128.store(scratch + node, value);
+    odd = f64x2.mul(odd, argument);
+    upper -= 16;
+    v128.store(lower, f64x2.add(even, odd));
+    const mirrored = f64x2.sub(even, odd);
+    v128.store(upper, v128.shuffle<f64>(mirrored, mirrored, 1, 0));
+    lower += 16;
   }
-  return <usize>offset << 3;
+  return <usize>index;
 }
 
-/** weights += amount · scratch */
+/** weights of w′ += amount · scratch */
 // @ts-ignore: decorator
 @inline
-function deposit(weights: usize, amount: f64): void {
-  const a = f64x2.splat(amount);
-  const row = <usize>points << 3;
-  for (let node: usize = 0; node < row; node += 16)
-    v128.store(weights + node, f64x2.add(v128.load(weights + node), f64x2.mul(a, v128.load(scratch + node))));
+function depositOne(index: usize, amount: f64): void {
+  let weights = singles + (index << 3);
+  const end = scratch + (<usize>points << 3);
+  for (let node = scratch; node < end; node += 8) {
+    store<f64>(weights, load<f64>(weights) + amount * load<f64>(node));
+    weights += 8;
+  }
+}
+
+/** interleaved weights += amounts · scratch */
+// @ts-ignore: decorator
+@inline
+function depositTwo(index: usize, amounts: v128): void {
+  let weights = doubles + (index << 4);
+  const end = scratch + (<usize>points << 3);
+  for (let node = scratch; node < end; node += 8) {
+    v128.store(weights, f64x2.add(v128.load(weights), f64x2.mul(amounts, v128.load_splat<f64>(node))));
+    weights += 16;
+  }
+}
+
+// @ts-ignore: decorator
+@inline
+function pairOf(first: f64, second: f64): v128 {
+  return f64x2.replace_lane(f64x2.splat(first), 1, second);
 }
 
 /**
  * Spreads elements given one by one.
  * @param elements F, and coefficients of q, w, w′: 4 numbers each
- * @param weights address of the weights of q; those of w and w′ follow
  */
-export function spread(elements: usize, count: i32, weights: usize): void {
+export function spread(elements: usize, count: i32): void {
   for (let n = 0; n < count; n++) {
-    const at = weights + place(load<f64>(elements));
-    const q = load<f64>(elements, 8);
-    const w = load<f64>(elements, 16);
+    const index = place(load<f64>(elements));
+    depositTwo(index, v128.load(elements, 8));
     const slope = load<f64>(elements, 24);
-    if (q != 0) deposit(at, q);
-    if (w != 0) deposit(at + kindStride, w);
-    if (slope != 0) deposit(at + 2 * kindStride, slope);
+    if (slope != 0) depositOne(index, slope);
     elements += 32;
   }
 }
 
 /**
  * out[n] += Σ_c Σ_g W[c][g] S[g][n + firstCell + c] for n from `from` to `from + 8·blocks − 1`.
+ * @param weights address of W[0][0]
+ * @param weightBytes from one phase of W to the next: 16 where two kinds are interleaved, else 8
  * @param samples address of S[0][0]
- * @param sampleStride bytes from one phase to the next
+ * @param sampleStride bytes from one phase of S to the next
  */
 export function correlate(
   weights: usize,
+  weightBytes: usize,
   cells: i32,
   samples: usize,
   sampleStride: usize,
@@ -128,7 +165,7 @@ export function correlate(
   from: i32,
   blocks: i32,
 ): void {
-  const cellBytes = <usize>phases << 3;
+  const cellBytes = <usize>phases * weightBytes;
   for (let block = 0; block < blocks; block++) {
     const n = from + 8 * block;
     let sum0 = f64x2.splat(0);
@@ -137,7 +174,7 @@ export function correlate(
     let sum3 = sum0;
     for (let g: usize = 0; g < <usize>phases; g++) {
       let at = samples + g * sampleStride + (<usize>(n + firstCell) << 3);
-      let weight = weights + (g << 3);
+      let weight = weights + g * weightBytes;
       for (let c = 0; c < cells; c++) {
         const a = v128.load_splat<f64>(weight);
         sum0 = f64x2.add(sum0, f64x2.mul(a, v128.load(at)));
@@ -199,7 +236,7 @@ function gaussRule(distance2: f64, length: f64): usize {
  * Charges, E along `axis`: ∂/∂(q, w) of (Q/R³ + Q̇/(vR²)) R.
  * @param perSpeed 1/v, s/m
  */
-export function spreadCharges(first: i32, last: i32, axis: i32, perSpeed: f64, scale: f64, weights: usize): void {
+export function spreadCharges(first: i32, last: i32, axis: i32, perSpeed: f64, scale: f64): void {
   for (let n = first; n < last; n++) {
     const entry = entries + (<usize>n << 5);
     const x = observerX - load<f64>(entry);
@@ -211,12 +248,9 @@ export function spreadCharges(first: i32, last: i32, axis: i32, perSpeed: f64, s
     const still = (scale * along) / (r * r * r);
     const seen = origin - r * perLength;
     const end = pairs + (<usize>load<i32>(entry, 28) << 4);
-    for (let pair = pairs + (<usize>load<i32>(entry, 24) << 4); pair < end; pair += 16) {
-      const weight = load<f64>(pair);
-      const at = weights + place(seen - load<f64>(pair, 8));
-      deposit(at, still * weight);
-      deposit(at + kindStride, moving * weight);
-    }
+    const amounts = pairOf(still, moving);
+    for (let pair = pairs + (<usize>load<i32>(entry, 24) << 4); pair < end; pair += 16)
+      depositTwo(place(seen - load<f64>(pair, 8)), f64x2.mul(amounts, v128.load_splat<f64>(pair)));
   }
 }
 
@@ -251,7 +285,6 @@ export function spreadEdges(
   length: f64,
   perSpeed: f64,
   scale: f64,
-  weights: usize,
 ): void {
   for (let n = first; n < last; n++) {
     const entry = entries + (<usize>n << 5);
@@ -267,16 +300,16 @@ export function spreadEdges(
       let node = load<usize>(rule, 16);
       for (let m = 0; m < count; m++) {
         const off = foot - length * load<f64>(node);
-        depositEdgeNode(off, gain * length * load<f64>(node, 8), magnetic, perSpeed, start, end, weights);
+        depositEdgeNode(off, gain * length * load<f64>(node, 8), magnetic, perSpeed, start, end);
         node += 16;
       }
     } else {
       // Between a foot inside the edge and its ends R rises; each pair is cut where its delay passes a part's bound.
       for (let pair = start; pair < end; pair += 16) {
         if (foot > 0)
-          spreadStretch(foot > length ? foot - length : 0, foot, gain, magnetic, perSpeed, pair, weights);
+          spreadStretch(foot > length ? foot - length : 0, foot, gain, magnetic, perSpeed, pair);
         if (foot < length)
-          spreadStretch(foot < 0 ? -foot : 0, length - foot, gain, magnetic, perSpeed, pair, weights);
+          spreadStretch(foot < 0 ? -foot : 0, length - foot, gain, magnetic, perSpeed, pair);
       }
     }
   }
@@ -292,31 +325,22 @@ function depositEdgeNode(
   perSpeed: f64,
   start: usize,
   end: usize,
-  weights: usize,
 ): void {
   const r2 = rho2 + off * off;
   const r = Math.sqrt(r2);
   const seen = origin - r * perLength;
   const near = magnetic ? gain / (r2 * r) : 0;
   const far = magnetic ? (gain * perSpeed) / r2 : gain / r;
+  const amounts = pairOf(near, far);
   for (let pair = start; pair < end; pair += 16) {
-    const weight = load<f64>(pair);
-    const at = weights + place(seen - load<f64>(pair, 8));
-    if (magnetic) deposit(at + kindStride, near * weight);
-    deposit(at + 2 * kindStride, far * weight);
+    const index = place(seen - load<f64>(pair, 8));
+    if (magnetic) depositTwo(index, f64x2.mul(amounts, v128.load_splat<f64>(pair)));
+    else depositOne(index, far * load<f64>(pair));
   }
 }
 
 /** The stretch of an edge between `from` and `to` metres from the foot, cut at the bounds that one pair's delay passes. */
-function spreadStretch(
-  from: f64,
-  to: f64,
-  gain: f64,
-  magnetic: bool,
-  perSpeed: f64,
-  pair: usize,
-  weights: usize,
-): void {
+function spreadStretch(from: f64, to: f64, gain: f64, magnetic: bool, perSpeed: f64, pair: usize): void {
   const seen = origin - load<f64>(pair, 8);
   const lowest = seen - Math.sqrt(rho2 + to * to) * perLength;
   let off = from;
@@ -340,7 +364,6 @@ function spreadStretch(
           perSpeed,
           pair,
           pair + 16,
-          weights,
         );
         node += 16;
       }

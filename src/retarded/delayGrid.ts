@@ -8,12 +8,12 @@ export interface Kernel {
   readonly memory: WebAssembly.Memory;
   heapBase(): number;
   setRule(points: number, phases: number, polynomials: number, bounds: number, parts: number, scratch: number): void;
-  setWindow(firstCell: number, kindStride: number): void;
-  spread(elements: number, count: number, weights: number): void;
+  setWindow(firstCell: number, doubles: number, singles: number): void;
+  spread(elements: number, count: number): void;
   setGridded(entries: number, pairs: number, gaussRules: number): void;
   setObserver(x: number, y: number, z: number, origin: number, perLength: number): void;
   reach(first: number, last: number, length: number, to: number): void;
-  spreadCharges(first: number, last: number, axis: number, perSpeed: number, scale: number, weights: number): void;
+  spreadCharges(first: number, last: number, axis: number, perSpeed: number, scale: number): void;
   spreadEdges(
     first: number,
     last: number,
@@ -23,10 +23,10 @@ export interface Kernel {
     length: number,
     perSpeed: number,
     scale: number,
-    weights: number,
   ): void;
   correlate(
     weights: number,
+    weightBytes: number,
     cells: number,
     samples: number,
     sampleStride: number,
@@ -52,7 +52,7 @@ export interface Rule {
   readonly bounds: readonly number[];
   /** places of the nodes within a part: centred, in samples from the middle; inCell, on [−1, 1] */
   readonly nodes: readonly number[];
-  /** coefficients of the nodes' Lagrange polynomials, highest power first: [power][node] */
+  /** the nodes' Lagrange polynomials as the kernel reads them (evenOdd) */
   readonly polynomials: Float64Array;
 }
 
@@ -66,7 +66,7 @@ export function centredRule(points: number, parts: number): Rule {
     offsets: Array.from({ length: parts }, (_, g) => g / parts),
     bounds: [],
     nodes,
-    polynomials: lagrangeCoefficients(nodes),
+    polynomials: evenOdd(nodes),
   };
 }
 
@@ -79,29 +79,34 @@ export function inCellRule(points: number, parts: number, kinks: readonly number
   const offsets = bounds
     .slice(1)
     .flatMap((high, m) => nodes.map((x) => (bounds[m]! + high + x * (high - bounds[m]!)) / 2));
-  const polynomials = lagrangeCoefficients(nodes);
+  const polynomials = evenOdd(nodes);
   return { kind: 'inCell', points, phases: offsets.length, offsets, bounds, nodes, polynomials };
 }
 
-/** Coefficients of Lagrange's polynomials, highest power first: [power][node]. */
-function lagrangeCoefficients(nodes: readonly number[]): Float64Array {
-  const p = nodes.length;
-  const table = new Float64Array(p * p);
-  for (let j = 0; j < p; j++) {
+/**
+ * Lagrange's polynomials of symmetric nodes, a multiple of 4 of them: ℓ_j = even_j(x²) + x odd_j(x²) for the lower half, the
+ * upper half being its mirror image. Two nodes at a time, highest power first: even_j, even_{j+1}, odd_j, odd_{j+1}.
+ */
+function evenOdd(nodes: readonly number[]): Float64Array {
+  const half = nodes.length / 2;
+  const table = new Float64Array(2 * half * half);
+  for (let j = 0; j < half; j++) {
     let polynomial = [1]; // ascending powers
-    for (let m = 0; m < p; m++) {
-      if (m === j) continue;
-      const gain = 1 / (nodes[j]! - nodes[m]!);
+    nodes.forEach((node, m) => {
+      if (m === j) return;
+      const gain = 1 / (nodes[j]! - node);
       const next = new Array<number>(polynomial.length + 1).fill(0);
       polynomial.forEach((a, power) => {
         next[power + 1]! += gain * a;
-        next[power]! -= gain * nodes[m]! * a;
+        next[power]! -= gain * node * a;
       });
       polynomial = next;
-    }
-    polynomial.forEach((a, power) => {
-      table[(p - 1 - power) * p + j] = a;
     });
+    for (let power = 0; power < half; power++) {
+      const at = 4 * (half * Math.floor(j / 2) + half - 1 - power) + (j % 2);
+      table[at] = polynomial[2 * power]!;
+      table[at + 2] = polynomial[2 * power + 1]!;
+    }
   }
   return table;
 }
@@ -124,8 +129,18 @@ export function stencil(rule: Rule, u: number): { times: number[]; weights: Floa
     times = nodes.map((node) => cell + (low + high + node * (high - low)) / 2);
   }
   const weights = new Float64Array(points);
-  for (let power = 0; power < points; power++)
-    for (let j = 0; j < points; j++) weights[j] = weights[j]! * x + rule.polynomials[power * points + j]!;
+  const half = points / 2;
+  for (let j = 0; j < half; j++) {
+    let even = 0;
+    let odd = 0;
+    for (let power = 0; power < half; power++) {
+      const at = 4 * (half * Math.floor(j / 2) + power) + (j % 2);
+      even = even * x * x + rule.polynomials[at]!;
+      odd = odd * x * x + rule.polynomials[at + 2]!;
+    }
+    weights[j] = even + x * odd;
+    weights[points - 1 - j] = even - x * odd;
+  }
   return { times, weights };
 }
 
@@ -166,11 +181,8 @@ export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleE
 
 const CENTRED_RULES = [
   [4, 1],
-  [6, 1],
   [8, 1],
-  [10, 1],
   [12, 1],
-  [10, 2],
   [12, 2],
   [12, 4],
   [12, 8],
@@ -180,7 +192,6 @@ const CENTRED_RULES = [
 
 const IN_CELL_RULES = [
   [4, 1],
-  [6, 1],
   [8, 1],
   [8, 2],
   [8, 4],
@@ -216,9 +227,11 @@ export class ElementList {
   data = new Float64Array(4 * 256);
   lowest = Number.POSITIVE_INFINITY;
   highest = Number.NEGATIVE_INFINITY;
+  hasSlopes = false;
 
   clear(): void {
     this.count = 0;
+    this.hasSlopes = false;
     this.lowest = Number.POSITIVE_INFINITY;
     this.highest = Number.NEGATIVE_INFINITY;
   }
@@ -235,6 +248,7 @@ export class ElementList {
     this.data[at + 1] = q;
     this.data[at + 2] = w;
     this.data[at + 3] = slope;
+    if (slope !== 0) this.hasSlopes = true;
     if (place < this.lowest) this.lowest = place;
     if (place > this.highest) this.highest = place;
   }
@@ -338,53 +352,58 @@ export class DelayGrid {
   }
 
   /**
-   * The history of elements of one waveform: adds to out[n], n = 0 … count − 1. `fill` spreads the elements once their
-   * weights (3 kinds) are cleared and the window is set.
+   * The history of elements of one waveform, added to out[n], n = 0 … count − 1. `fill` spreads the elements once their
+   * weights are cleared and the window is set; `room` is memory it may use.
+   * @param doubles the two kinds (0 q, 1 w, 2 w′) that are interleaved; `singles`: whether w′ alone is used too
    */
   correlateInto(
     out: Float64Array,
     waveform: number,
     window: { first: number; cells: number },
-    kinds: readonly boolean[],
-    fill: (weights: number, room: number) => void,
+    doubles: readonly [number, number],
+    singles: boolean,
+    fill: (room: number) => void,
   ): void {
     const from = Math.max(0, -(window.first + window.cells - 1));
     if (from >= this.count) return;
     if (window.cells > this.#lead) this.#sample(2 * window.cells);
     const { phases } = this.rule;
-    const weights = this.#free;
-    const kindBytes = 16 * Math.ceil((window.cells * phases + this.rule.points) / 2);
-    const room = weights + 3 * kindBytes;
+    const doubleAt = this.#free;
+    const singleAt = doubleAt + 16 * window.cells * phases;
+    const room = singleAt + 16 * Math.ceil((window.cells * phases) / 2);
     this.reserve(room);
-    new Float64Array(this.kernel.memory.buffer, weights, (3 * kindBytes) / 8).fill(0);
-    this.kernel.setWindow(window.first, kindBytes);
-    fill(weights, room);
+    new Float64Array(this.kernel.memory.buffer, doubleAt, (room - doubleAt) / 8).fill(0);
+    this.kernel.setWindow(window.first, doubleAt, singleAt);
+    fill(room);
     const blocks = Math.ceil((this.count - from) / BLOCK);
     const result = new Float64Array(this.kernel.memory.buffer, this.#out, from + blocks * BLOCK);
     result.fill(0);
-    for (let kind = 0; kind < 3; kind++) {
-      if (!kinds[kind]) continue;
-      const samples = this.#samples + (waveform * 3 + kind) * phases * this.#sampleStride + 8 * this.#lead;
+    const correlate = (kind: number, weights: number, weightBytes: number) =>
       this.kernel.correlate(
-        weights + kind * kindBytes,
+        weights,
+        weightBytes,
         window.cells,
-        samples,
+        this.#samples + (waveform * 3 + kind) * phases * this.#sampleStride + 8 * this.#lead,
         this.#sampleStride,
         this.#out,
         from,
         blocks,
       );
-    }
+    correlate(doubles[0], doubleAt, 16);
+    correlate(doubles[1], doubleAt + 8, 16);
+    if (singles) correlate(SLOPE_KIND, singleAt, 8);
     for (let n = from; n < this.count; n++) out[n]! += result[n]!;
   }
 
   /** The history of listed elements of one waveform, added to `out`. */
   addHistory(out: Float64Array, waveform: number, list: ElementList): void {
     if (list.count === 0) return;
-    this.correlateInto(out, waveform, this.window(list.lowest, list.highest), [true, true, true], (weights, room) => {
+    this.correlateInto(out, waveform, this.window(list.lowest, list.highest), [0, 1], list.hasSlopes, (room) => {
       this.reserve(room + 32 * list.count);
       new Float64Array(this.kernel.memory.buffer, room, 4 * list.count).set(list.data.subarray(0, 4 * list.count));
-      this.kernel.spread(room, list.count, weights);
+      this.kernel.spread(room, list.count);
     });
   }
 }
+
+const SLOPE_KIND = 2;

@@ -161,21 +161,27 @@ export class GriddedIntegrator {
         lowest = Math.min(lowest, reach[0]!);
         highest = Math.max(highest, reach[1]!);
       }
-      const kinds = magnetic ? [false, true, true] : [used.includes(0), used.includes(0), used.includes(1 + a)];
-      this.#grid.correlateInto(out, w, this.#grid.window(lowest, highest), kinds, (weights) => {
-        for (const group of used) {
-          if (group === 0) kernel.spreadCharges(...range(0), a, perSpeed, k.electric, weights);
-          else {
-            const axis = group - 1;
-            const length = this.#cellSize[axis]!;
-            // (e_b × R)_a = R_c and (e_c × R)_a = −R_b for a, b, c cyclic
-            const across = axis === b ? c : b;
-            const sign = axis === b ? 1 : -1;
-            const scale = magnetic ? sign / (4 * Math.PI) : k.electric;
-            kernel.spreadEdges(...range(group), axis, across, magnetic, length, perSpeed, scale, weights);
+      this.#grid.correlateInto(
+        out,
+        w,
+        this.#grid.window(lowest, highest),
+        magnetic ? [1, 2] : [0, 1],
+        !magnetic,
+        () => {
+          for (const group of used) {
+            if (group === 0) kernel.spreadCharges(...range(0), a, perSpeed, k.electric);
+            else {
+              const axis = group - 1;
+              const length = this.#cellSize[axis]!;
+              // (e_b × R)_a = R_c and (e_c × R)_a = −R_b for a, b, c cyclic
+              const across = axis === b ? c : b;
+              const sign = axis === b ? 1 : -1;
+              const scale = magnetic ? sign / (4 * Math.PI) : k.electric;
+              kernel.spreadEdges(...range(group), axis, across, magnetic, length, perSpeed, scale);
+            }
           }
-        }
-      });
+        },
+      );
     }
   }
 
