@@ -36,11 +36,12 @@ export type Threshold =
   /** no bin had samples enough that count */
   | { readonly status: 'unmeasured'; readonly reason: string };
 
-export type Closest = Threshold & {
-  readonly bins: readonly ErrorBin[];
+export type ClosestOutcome = Threshold & {
   /** bootstrap interval (5th to 95th percentile) of a crossing, m; an end is null where replicates there have no crossing */
   readonly interval?: readonly [number | null, number | null];
 };
+
+export type Closest = ClosestOutcome & { readonly bins: readonly ErrorBin[] };
 
 /**
  * Walks inward from the best bin while the 95th percentile stays within the tolerance: the threshold is the smallest

@@ -9,17 +9,14 @@ const OUTER_BINS = 3;
 /** Directions in which the source radiates this much less than in its main lobe do not count: 20 dB. */
 const MAIN_LOBE_SHARE = 0.1;
 
-/** Extrapolation ends this many times farther than the outermost bin. */
-const REACH = 1e6;
-
-/** What the exact lattice relation predicts for one direction, and how strongly the source radiates there. */
+/** How far the exact lattice relation trusts one direction, and how strongly the source radiates there. */
 export interface DirectionModel {
   /** as it is to be printed: "along x", "along the diagonal", "along the main lobe" */
   readonly name: string;
   /** radiated amplitude relative to the main lobe's */
   readonly level: number;
-  /** predicted point error at a distance in m, a fraction */
-  readonly error: (distance: number) => number;
+  /** distance at which the predicted error reaches the tolerance, m; ∞ where it never does */
+  readonly distance: number;
 }
 
 export interface FarthestModel {
@@ -65,15 +62,12 @@ export function farthestDistance(bins: readonly ErrorBin[], tolerance: number, m
     return atEdge(
       `the prediction and the outermost distances differ by a factor of ${agreement.toPrecision(2)}, more than ${AGREEMENT}`,
     );
-  const crossings = model.directions
-    .filter(({ level }) => level >= MAIN_LOBE_SHARE)
-    .map((direction) => ({ direction: direction.name, distance: outwardCrossing(direction.error, edge, tolerance) }));
-  if (crossings.length === 0) return atEdge('no direction to extrapolate along');
-  const first = crossings.reduce((a, b) => (b.distance < a.distance ? b : a));
-  if (first.distance <= edge) return atEdge('the prediction reaches the tolerance at the edge of the box');
-  if (first.distance === Number.POSITIVE_INFINITY)
-    return atEdge(`the prediction stays within it to ${REACH} times as far`);
-  return { status: 'extrapolated', ...first, agreement };
+  const radiating = model.directions.filter(({ level }) => level >= MAIN_LOBE_SHARE);
+  if (radiating.length === 0) return atEdge('no direction to extrapolate along');
+  const { name, distance } = radiating.reduce((a, b) => (b.distance < a.distance ? b : a));
+  if (distance <= edge) return atEdge('the prediction reaches the tolerance at the edge of the box');
+  if (distance === Number.POSITIVE_INFINITY) return atEdge('the prediction never reaches the tolerance');
+  return { status: 'extrapolated', distance, direction: name, agreement };
 }
 
 /** The worst of predicted/measured and measured/predicted over the outermost bins. */
@@ -84,22 +78,4 @@ function modelAgreement(bins: readonly ErrorBin[], model: FarthestModel): number
       return Math.max(ratio, 1 / ratio);
     }),
   );
-}
-
-/** The first distance beyond `edge` at which a predicted error exceeds the tolerance, to a relative 1e-6; ∞ if none. */
-function outwardCrossing(error: (distance: number) => number, edge: number, tolerance: number): number {
-  let inside = edge;
-  if (error(inside) > tolerance) return inside;
-  let outside = inside * 1.25;
-  while (error(outside) <= tolerance) {
-    inside = outside;
-    outside *= 1.25;
-    if (outside > edge * REACH) return Number.POSITIVE_INFINITY;
-  }
-  while (outside / inside > 1 + 1e-6) {
-    const middle = Math.sqrt(inside * outside);
-    if (error(middle) > tolerance) outside = middle;
-    else inside = middle;
-  }
-  return inside;
 }

@@ -123,7 +123,7 @@ const bandSchema = z.object({
 const perField = <Each extends z.ZodType>(each: Each) => ({ field: fieldName, E: each, H: each });
 
 export const verdictSchema = z.object({
-  closest: thresholdWith(perField(closestOfField)).describe(
+  closest: thresholdWith({ ...perField(closestOfField), interval }).describe(
     'closest trusted distance from a source; the worse of E and H',
   ),
   farthest: farthestWith(perField(farthestOfField)).describe('farthest trusted distance from the source'),

@@ -66,3 +66,27 @@ export function magnitudes({ lines, re, im }: Spectrum): Float64Array {
     return Math.sqrt(sum);
   });
 }
+
+/** |exact|, |grid| and |grid − exact| by frequency: what a chart of spectra shows. */
+export interface Spectra {
+  /** Hz */
+  readonly frequency: Float64Array;
+  /** V/(m·Hz) or A/(m·Hz) */
+  readonly exact: Float64Array;
+  readonly grid: Float64Array;
+  readonly difference: Float64Array;
+}
+
+/** The spectra of a field of both solvers and of their difference at one point. */
+export function spectraOf(grid: FieldHistory, exact: FieldHistory, field: Field, point: number): Spectra {
+  const g = spectrumOf(grid, field, point);
+  const x = spectrumOf(exact, field, point);
+  const minus = (a: readonly Float64Array[], b: readonly Float64Array[]) =>
+    a.map((values, c) => values.map((v, k) => v - b[c]![k]!));
+  return {
+    frequency: Float64Array.from({ length: x.lines }, (_, k) => k / x.window),
+    exact: magnitudes(x),
+    grid: magnitudes(g),
+    difference: magnitudes({ ...x, re: minus(g.re, x.re), im: minus(g.im, x.im) }),
+  };
+}

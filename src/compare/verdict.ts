@@ -8,7 +8,7 @@ import {
 } from '../elementary/quantity.ts';
 import type { Band, BandLimit } from './band.ts';
 import type { BoundaryLevel, Budget, BudgetName } from './budget.ts';
-import type { Closest, Threshold } from './closest.ts';
+import type { Closest, ClosestOutcome, Threshold } from './closest.ts';
 import type { Farthest } from './farthest.ts';
 import type { Field } from './fields.ts';
 import type { WallClearance } from './wall.ts';
@@ -56,7 +56,7 @@ export type BandVerdict = BandLimit & {
 };
 
 export interface Verdict {
-  readonly closest: Headline<Threshold, Closest>;
+  readonly closest: Headline<ClosestOutcome, Closest>;
   readonly farthest: Headline<Farthest, Farthest>;
   readonly wallClearance: Headline<Threshold, WallClearance>;
   readonly band: BandVerdict;
@@ -96,8 +96,8 @@ function headline<Each, Outcome>(
   return { ...strip(both[field]), field, E: both.E, H: both.H };
 }
 
-/** A threshold alone: bins stay with the two fields. */
-function withoutBins({ bins: _, ...outcome }: Closest | WallClearance): Threshold {
+/** An outcome alone: bins stay with the two fields. */
+function withoutBins({ bins: _, ...outcome }: Closest | WallClearance): ClosestOutcome {
   return outcome;
 }
 

@@ -52,19 +52,23 @@ export function formatUpperBound(value: number): string {
   return formatScientific(Number(`${mantissa}e${exponent}`), 1);
 }
 
+/** The SI prefix that leaves one to three digits before the point, and its factor; the outermost ones beyond them. */
+export function prefixOf(value: number): { readonly factor: number; readonly prefix: string } {
+  const [factor, prefix] = PREFIXES.find(([f]) => Math.abs(value) >= f) ?? PREFIXES[PREFIXES.length - 1]!;
+  return { factor, prefix };
+}
+
 /**
- * A value with its SI unit and a prefix that leaves one to three digits before the point: (2.4e9, 'Hz') → "2.4 GHz".
- * Lengths from 0.1 m stay in metres, as people write them. The empty unit takes no prefix.
+ * A value with its SI unit and a prefix: (2.4e9, 'Hz') → "2.4 GHz". Lengths from 0.1 m to 1 km stay in metres, as people
+ * write them. Units that begin with no letter (none at all, 1/s) take no prefix.
  */
 export function formatQuantity(value: number, unit: string, digits = 3): string {
-  if (unit === '') return formatNumber(value, digits);
-  if (value === 0 || !Number.isFinite(value)) return `${formatNumber(value)} ${unit}`;
-  const rounded = Math.abs(Number(value.toPrecision(digits)));
-  const [factor, prefix] =
-    unit === 'm' && rounded >= 0.1 && rounded < 1000
-      ? ([1, ''] as const)
-      : (PREFIXES.find(([f]) => rounded >= f) ?? PREFIXES[PREFIXES.length - 1]!);
-  return `${formatNumber(Number((value / factor).toPrecision(digits)), digits)} ${prefix}${unit}`;
+  if (value === 0 || !Number.isFinite(value) || !/^[A-Za-zΩ]/.test(unit))
+    return `${formatNumber(value, digits)} ${unit}`.trimEnd();
+  const rounded = Number(value.toPrecision(digits));
+  const isPlainLength = unit === 'm' && Math.abs(rounded) >= 0.1 && Math.abs(rounded) < 1000;
+  const { factor, prefix } = isPlainLength ? { factor: 1, prefix: '' } : prefixOf(rounded);
+  return `${formatNumber(value / factor, digits)} ${prefix}${unit}`;
 }
 
 /** A fraction as a percentage with at most `digits` significant digits: 0.0312 → "3.1 %". */

@@ -176,29 +176,34 @@ describe('farthest trusted distance', () => {
   it('is the nearest crossing over directions that radiate, named', () => {
     const model = {
       directions: [
-        { name: 'along x', level: 1, error: (r: number) => 0.001 * r },
-        { name: 'along the diagonal', level: 0.5, error: (r: number) => 0.0005 * r },
-        { name: 'along z', level: 0.01, error: (r: number) => r },
+        { name: 'along x', level: 1, distance: 50 },
+        { name: 'along the diagonal', level: 0.5, distance: 100 },
+        { name: 'along z', level: 0.01, distance: 0.05 },
       ],
       percentile95: (r: number) => growing(1.1)(r),
     };
     const found = farthestDistance(bins, 0.05, model);
     expect(found).toMatchObject({ status: 'extrapolated', direction: 'along x' });
     if (found.status === 'extrapolated') {
-      expect(Math.abs(found.distance / 50 - 1)).toBeLessThan(1e-6);
+      expect(found.distance).toBe(50);
       // The bins grow a little faster or slower than r; the model's factor 1.1 is within 1.4 of all three.
       expect(found.agreement).toBeLessThan(1.4);
     }
   });
 
   it('is not extrapolated where the model misses the outer bins by more than 1.4', () => {
-    const directions = [{ name: 'along x', level: 1, error: (r: number) => 0.001 * r }];
+    const directions = [{ name: 'along x', level: 1, distance: 50 }];
     for (const factor of [1.5, 1 / 1.5]) {
       const found = farthestDistance(bins, 0.05, { directions, percentile95: growing(factor) });
       expect(found).toMatchObject({ status: 'boxEdge' });
       if (found.status === 'boxEdge') expect(found.distance).toBeCloseTo(edge, 12);
     }
-    expect(farthestDistance(bins, 0.05).status).toBe('boxEdge');
+    expect(farthestDistance(bins, 0.05)).toMatchObject({ status: 'boxEdge', reason: 'no prediction beyond the box' });
+    const never = [{ name: 'along the diagonal', level: 1, distance: Number.POSITIVE_INFINITY }];
+    expect(farthestDistance(bins, 0.05, { directions: never, percentile95: growing(1) })).toMatchObject({
+      status: 'boxEdge',
+      reason: 'the prediction never reaches the tolerance',
+    });
   });
 
   it('is measured where a bin in the box fails', () => {

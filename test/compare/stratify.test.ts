@@ -39,7 +39,7 @@ describe('stratified cells', () => {
           for (let k = 0; k < 20; k++)
             add(cells, distance([-0.15 + (i + 0.5) * 0.01, -0.12 + (j + 0.5) * 0.01, -0.1 + (k + 0.5) * 0.01]));
       for (const d of distances) add(drawn, d);
-        let compared = 0;
+      let compared = 0;
       for (const [bin, inBin] of cells) {
         const samples = drawn.get(bin) ?? 0;
         if (inBin < 30) continue;

@@ -1,0 +1,205 @@
+import { FIELDS } from '../compare/fields.ts';
+import { type ObserverResult, type Result, withinTolerance } from '../compare/result.ts';
+import { formatPercent, formatQuantity, formatUpperBound } from '../elementary/quantity.ts';
+import { type BudgetRow, budgetRows } from './budgetRows.ts';
+import { distanceChart, partsChart, spectrumChart, strongestTrace, traceChart, wallChart } from './charts.ts';
+import { Markup, markup } from './markup.ts';
+import { paletteCss } from './palette.ts';
+import type { Report } from './report.ts';
+import { CHART_CSS } from './svg.ts';
+import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
+
+const CSS = `${paletteCss()}
+*{box-sizing:border-box}
+body{margin:0;background:var(--background);color:var(--ink);font:15px/1.5 system-ui,sans-serif;font-variant-numeric:tabular-nums}
+main{max-width:1180px;margin:0 auto;padding:32px 24px 64px}
+h1{font-size:24px;line-height:1.3;font-weight:650;margin:4px 0 12px;text-wrap:balance}
+h2{font-size:15px;font-weight:650;margin:40px 0 12px;padding-top:12px;border-top:1px solid var(--line)}
+h3{font-size:15px;font-weight:600;margin:28px 0 4px}
+p{margin:0 0 8px;max-width:75ch}
+.muted,figcaption,th,dd{color:var(--muted)}
+.outside{color:var(--outside);font-weight:600}
+.charts{display:grid;grid-template-columns:repeat(auto-fit,minmax(min(100%,440px),1fr));gap:20px 28px;margin:12px 0}
+figure{margin:0}.scroll{overflow-x:auto;margin-bottom:8px}
+table{border-collapse:collapse}
+th{font-weight:400;text-align:left;font-size:13px;vertical-align:bottom}
+th,td{padding:4px 20px 4px 0;white-space:nowrap}
+.number{text-align:right}
+tbody th{color:var(--ink);font-size:15px}
+tr.total th,tr.total td{border-top:1px solid var(--line);font-weight:600}
+.bars{display:block;width:260px;height:16px}
+dl{display:grid;grid-template-columns:max-content 1fr;gap:4px 20px;margin:0;font-size:13px}
+dt{font-weight:600}dd{margin:0;max-width:90ch}
+pre{margin:0 0 12px;padding:12px;background:var(--trusted);border-radius:4px;font:13px/1.45 ui-monospace,monospace;white-space:pre-wrap;overflow-wrap:anywhere}
+.caution{margin-top:40px;padding:12px 16px;border:1px solid var(--line);border-radius:4px;max-width:none}
+${CHART_CSS}
+@media (max-width:640px){dl{grid-template-columns:1fr}dd{margin-bottom:8px}}
+@media print{main{max-width:none;padding:0}body{font-size:12px}h1{font-size:20px}.charts,table,h3{break-inside:avoid}h2,h3{break-after:avoid}.charts{grid-template-columns:1fr 1fr}}`;
+
+/** Nothing is fetched and nothing runs: only the style in the file itself is used. */
+const POLICY = "default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'";
+
+/**
+ * `report.html`: one file that needs nothing else. No script and no reference to any other place; every text of the
+ * scenario is escaped; light and dark by the system's theme; prints.
+ */
+export function reportHtml({ result, traces, spectra, command }: Report): string {
+  const { verdict } = result;
+  const title = result.title === '' ? 'Untitled scenario' : result.title;
+  const within = withinTolerance(result);
+  const page = markup`<!doctype html>
+<html lang="en">
+<head>
+<meta charset="utf-8">
+<meta http-equiv="Content-Security-Policy" content="${POLICY}">
+<meta name="referrer" content="no-referrer">
+<meta name="viewport" content="width=device-width,initial-scale=1">
+<title>${title} · Fieldassay</title>
+<style>${new Markup(CSS)}</style>
+</head>
+<body><main>
+<p class="muted">Fieldassay ${result.version} · <bdi>${title}</bdi></p>
+<h1>${verdict.sentence}</h1>
+${within ? null : markup`<p class="outside">Outside the tolerance of ${formatPercent(result.tolerance, 3)}.</p>`}
+${verdict.details.map((detail) => markup`<p>${detail}</p>`)}
+${budgetSection(result)}
+${section('How far, and how near', [distanceChart(result), wallChart(result)])}
+${observersSection(result)}
+${result.observers.map((observer) => observerCharts(observer, { result, traces, spectra, command }))}
+${normsSection(result)}
+${runSection(result)}
+${DEFINITIONS}
+${repeatSection(result, command)}
+<p class="caution">These figures are for checking field solvers. They are no basis for decisions about compliance or safety: there, local codes and licensed practice decide.</p>
+</main></body></html>
+`;
+  return page.text;
+}
+
+function section(title: string, charts: readonly (Markup | null)[]): Markup | null {
+  const shown = charts.filter((chart) => chart !== null);
+  return shown.length === 0 ? null : markup`<h2>${title}</h2>${figures(shown)}`;
+}
+
+const figures = (charts: readonly Markup[]): Markup =>
+  markup`<div class="charts">${charts.map((chart) => markup`<figure>${chart}</figure>`)}</div>`;
+
+function budgetSection(result: Result): Markup {
+  const rows = budgetRows(result.budget);
+  const over = result.observers.some(({ inside }) => inside)
+    ? 'pooled over the observers'
+    : 'over the box outside the mask';
+  return markup`<h2>Error budget of E, ${over}</h2>
+<div class="scroll"><table>
+<thead><tr><th scope="col">grid solver − exact</th><th scope="col" class="number">relative L2</th><th scope="col" class="number">share</th><th scope="col">shares, signed</th><th scope="col" class="number">floor</th></tr></thead>
+<tbody>${rows.map(
+    (row) => markup`<tr class="${row.name === 'total' ? 'total' : 'part'}"><th scope="row">${row.name}</th>
+<td class="number">${row.error}</td><td class="number">${row.shareText}</td><td>${bar(row, rows)}</td><td class="number muted">${row.floor}</td></tr>`,
+  )}</tbody></table></div>
+<p class="muted">Signals add, their sizes do not: shares say how much of the total each part makes, and sum to 100 %. A negative share cancels others.</p>`;
+}
+
+/** A bar from zero to the share, all on one scale. */
+function bar(row: BudgetRow, rows: readonly BudgetRow[]): Markup | null {
+  if (row.name === 'total') return null;
+  const shares = rows.filter(({ name }) => name !== 'total').map(({ share }) => share ?? 0);
+  const low = Math.min(0, ...shares);
+  const high = Math.max(0.01, ...shares);
+  const pixel = (share: number) => Math.round(((share - low) / (high - low)) * 2580) / 10 + 1;
+  const [from, to] = [Math.min(0, row.share ?? 0), Math.max(0, row.share ?? 0)].map(pixel) as [number, number];
+  return markup`<svg class="bars" viewBox="0 0 260 16" aria-hidden="true"><rect x="${from}" y="2" width="${Math.round((to - from) * 10) / 10}" height="12" fill="var(--${row.colour})"/><line x1="${pixel(0)}" x2="${pixel(0)}" y1="0" y2="16" stroke="var(--muted)"/></svg>`;
+}
+
+function observersSection(result: Result): Markup | null {
+  if (result.observers.length === 0) return null;
+  const columns = ['E', 'H', 'static rest', 'peak', 'rise time', 'shift', 'amplitude', 'band', 'from source'];
+  return markup`<h2>Observers</h2>
+<div class="scroll"><table>
+<thead><tr><th scope="col">name</th>${columns.map((c) => markup`<th scope="col" class="number">${c}</th>`)}<th scope="col">read at</th></tr></thead>
+<tbody>${result.observers.map((observer) => observerRow(observer, result.tolerance))}</tbody></table></div>
+<p class="muted">E and H: relative L2 of the trace. Peak, rise time, shift, amplitude and band are of E. An observer is read at its nearest node; each component lives up to half a cell from it.</p>`;
+}
+
+function observerRow({ name, E, H, snapped, distance, extrapolated }: ObserverResult, tolerance: number): Markup {
+  const place = snapped.map((x) => formatQuantity(x, 'm')).join(', ');
+  const head = markup`<th scope="row"><bdi>${name}</bdi></th>`;
+  if (!E || !H)
+    return markup`<tr>${head}<td colspan="9">outside the box: exact field only; predicted error ${percentOr(extrapolated?.error ?? null)}</td><td class="muted">${place}</td></tr>`;
+  const error = (value: number | null) =>
+    markup`<td class="number${value !== null && value > tolerance ? ' outside' : ''}">${percentOr(value)}</td>`;
+  const cells = [
+    percentOr(E.staticResidue),
+    signedPercentOr(E.peakError),
+    signedPercentOr(E.riseTimeError),
+    quantityOr(E.timeShift, 's'),
+    E.amplitudeRatio === null ? '—' : E.amplitudeRatio.toPrecision(3),
+    bandText(E),
+    formatQuantity(distance, 'm'),
+  ];
+  const status = E.status === 'counted' ? '' : ` (${E.status})`;
+  return markup`<tr>${head}${error(E.relativeL2)}${error(H.relativeL2)}${cells.map((c) => markup`<td class="number">${c}</td>`)}<td class="muted">${place}${status}</td></tr>`;
+}
+
+/** For each field its trace and what the difference is made of; then the two spectra. */
+function observerCharts(observer: ObserverResult, { traces, spectra }: Report): Markup | null {
+  const inTime = FIELDS.flatMap((field) => {
+    const trace = strongestTrace(observer, field, traces);
+    return trace ? [traceChart(trace), partsChart(trace)] : [];
+  });
+  const byFrequency = spectra
+    .filter(({ observer: name }) => name === observer.name)
+    .map(({ field, spectra: own }) => spectrumChart(observer, field, own));
+  const charts = [...inTime, ...byFrequency].filter((chart) => chart !== null);
+  return charts.length === 0 ? null : markup`<h3>Observer <bdi>${observer.name}</bdi></h3>${figures(charts)}`;
+}
+
+function normsSection({ norms }: Result): Markup {
+  const row = (field: 'E' | 'H') => {
+    const { relativeL1, relativeL2, relativeLinf, standardError, scale, samples, masked, largest } = norms[field];
+    const place = largest.at.map((x) => formatQuantity(x, 'm')).join(', ');
+    return markup`<tr><th scope="row">${field}</th><td class="number">${percentOr(relativeL1)}</td><td class="number">${percentOr(relativeL2)} ± ${percentOr(standardError)}</td><td class="number">${percentOr(relativeLinf)}</td><td class="number">${formatQuantity(scale.L2, scale.unit)}</td><td class="number">${samples}</td><td class="number">${masked}</td><td class="muted">${largest.component} at ${place}, ${formatQuantity(largest.time, 's')}</td></tr>`;
+  };
+  return markup`<h2>Over the box, outside the mask</h2>
+<div class="scroll"><table>
+<thead><tr><th scope="col">field</th>${['relative L1', 'relative L2', 'relative L∞', 'exact, rms', 'samples', 'points masked'].map((c) => markup`<th scope="col" class="number">${c}</th>`)}<th scope="col">largest difference</th></tr></thead>
+<tbody>${row('E')}${row('H')}</tbody></table></div>`;
+}
+
+function runSection(result: Result): Markup {
+  const { integral, environment, notes } = result;
+  return markup`<h2>The run</h2>
+<p>${gridText(result)}. The integral’s own error is ≤ ${formatUpperBound(integral.errorEstimate)}${
+    integral.gaugeResidual === null ? '' : `, its gauge residual ${formatUpperBound(integral.gaugeResidual)}`
+  }.</p>
+<div class="scroll"><table><tbody>${timingRows(result).map(
+    ([what, time, rate]) =>
+      markup`<tr><th scope="row">${what}</th><td class="number">${time}</td><td class="number muted">${rate}</td></tr>`,
+  )}</tbody></table></div>
+${notes.map((note) => markup`<p>Note: ${note}</p>`)}
+<p class="muted">Fieldassay ${result.version}${Object.entries(environment).map(([name, value]) => markup` · ${name} ${String(value)}`)}</p>`;
+}
+
+const DEFINITIONS = markup`<h2>What the figures are</h2>
+<dl>
+<dt>relative L2</dt><dd>√(Σ |grid − exact|²) / √(Σ |exact|²) over instants and the three components of a field, each at its own place and time.</dd>
+<dt>boundary</dt><dd>Grid solver in its box minus the same grid without walls: what the walls sent back.</dd>
+<dt>lattice</dt><dd>Grid solver without walls minus the exact field of the currents it was given: dispersion, near field and time stepping of the lattice.</dd>
+<dt>gridding</dt><dd>Exact field of the currents on the grid’s edges minus that of the designed source.</dd>
+<dt>quadrature</dt><dd>The integral as computed minus its closed form; where there is none, its bound is its floor.</dd>
+<dt>share</dt><dd>⟨part, total⟩ / ⟨total, total⟩, signed; the shares of the parts sum to 1.</dd>
+<dt>floor</dt><dd>What a figure cannot be told from: rounding, the free-space run’s own leftover, the quadrature’s bound. A part below it is shown as “&lt; floor”.</dd>
+<dt>closest distance</dt><dd>The smallest distance to a source from which 95 % of the points in every distance bin, outward to the best, are within the tolerance; without walls.</dd>
+<dt>farthest distance</dt><dd>Where the lattice’s dispersion alone reaches the tolerance, in the worst direction that radiates; “extrapolated” beyond the box, and only where prediction and measurement agree within 1.4.</dd>
+<dt>wall clearance</dt><dd>The distance to the walls within which more than 5 % of the points exceed the tolerance.</dd>
+<dt>band</dt><dd>Up to the first of two consecutive sixth-octave bands whose vector ratio exceeds the tolerance; bands within 40 dB of the strongest and 10 dB above the floor count; both signals with the same taper at the end.</dd>
+<dt>shift, amplitude</dt><dd>Lag and height of the cross-correlation of the two signals’ increments; a positive shift is a late grid.</dd>
+<dt>rise time</dt><dd>10 to 90 % of the strongest component’s peak, grid against exact.</dd>
+<dt>static rest</dt><dd>Relative error of the field that charge leaves behind after the last arrival.</dd>
+</dl>`;
+
+function repeatSection({ scenario }: Result, command: string): Markup {
+  return markup`<h2>To repeat it</h2>
+<p>Save the scenario below and run</p>
+<pre>${command}</pre>
+<pre>${JSON.stringify(scenario, null, 2)}</pre>`;
+}

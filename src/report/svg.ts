@@ -1,0 +1,195 @@
+import { scaleLinear, scaleLog } from 'd3-scale';
+import { line } from 'd3-shape';
+import { formatNumber, prefixOf } from '../elementary/quantity.ts';
+import { type Markup, markup } from './markup.ts';
+import type { ColourName } from './palette.ts';
+
+/**
+ * Charts as SVG text, for reports: no DOM, no script, colours by CSS variables of `palette.ts` so that one drawing serves
+ * both themes. Coordinates are pixels of the view box.
+ */
+export interface Axis {
+  readonly label: string;
+  /** SI unit; linear axes get a prefix that suits them. Empty: none */
+  readonly unit: string;
+  readonly scale: 'linear' | 'log';
+  readonly domain: readonly [number, number];
+  /** how a tick is written; absent: its number in the axis's unit */
+  readonly format?: (value: number) => string;
+}
+
+export interface Series {
+  readonly name: string;
+  readonly colour: ColourName;
+  readonly points: readonly (readonly [number, number])[];
+  readonly dashed?: boolean;
+  readonly thin?: boolean;
+  /** draws a dot at each point, in red where this holds */
+  readonly dots?: (point: readonly [number, number]) => 'within' | 'outside';
+}
+
+/** A line across the plot at a value of x or y. */
+export interface Mark {
+  readonly axis: 'x' | 'y';
+  readonly at: number;
+  readonly label: string;
+}
+
+export interface Chart {
+  readonly title: string;
+  /** what is seen, for those who do not see it */
+  readonly description: string;
+  readonly x: Axis;
+  readonly y: Axis;
+  readonly series: readonly Series[];
+  readonly marks?: readonly Mark[];
+  /** a range of x to shade: what is trusted */
+  readonly shaded?: readonly [number, number];
+}
+
+const WIDTH = 560;
+const HEIGHT = 280;
+const PLOT = { left: 62, right: WIDTH - 14, top: 54, bottom: HEIGHT - 42 } as const;
+
+type Position = (value: number) => number;
+
+/** The chart as one SVG element. */
+export function chartSvg(chart: Chart): Markup {
+  const x = positionOf(chart.x, PLOT.left, PLOT.right);
+  const y = positionOf(chart.y, PLOT.bottom, PLOT.top);
+  return markup`<svg class="chart" xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${WIDTH} ${HEIGHT}" role="img">
+<title>${chart.title}</title><desc>${chart.description}</desc>
+<text class="title" x="${PLOT.left}" y="16">${chart.title}</text>
+${legend(chart.series)}
+${shade(chart.shaded, x)}
+${xAxis(chart.x, x)}${yAxis(chart.y, y)}
+${chart.series.map((series) => path(series, chart, x, y))}
+${(chart.marks ?? []).map((mark, i) => markLine(mark, mark.axis === 'x' ? x : y, i))}
+</svg>`;
+}
+
+/** CSS of charts, to stand once beside them. */
+export const CHART_CSS = `.chart{display:block;width:100%;height:auto;font:12px system-ui,sans-serif;font-variant-numeric:tabular-nums}
+.chart text{fill:var(--muted)}.chart .title{fill:var(--ink);font-weight:600}
+.chart .rule{stroke:var(--line);stroke-width:1}.chart .zero{stroke:var(--muted)}
+.chart .series{fill:none;stroke-width:1.8;stroke-linejoin:round}.chart .thin{stroke-width:1}.chart .dashed{stroke-dasharray:6 4}
+.chart .mark{stroke:var(--ink);stroke-width:1;stroke-dasharray:2 3}.chart .mark-label{fill:var(--ink);paint-order:stroke;stroke:var(--background);stroke-width:3px}
+.chart .shaded{fill:var(--trusted)}
+.chart .dot{stroke:var(--background);stroke-width:1}`;
+
+const round = (pixels: number): number => Math.round(pixels * 10) / 10;
+
+function positionOf(axis: Axis, start: number, end: number): Position {
+  const scale = axis.scale === 'log' ? scaleLog() : scaleLinear();
+  const position = scale
+    .domain(axis.domain)
+    .range([start, end])
+    .clamp(axis.scale === 'log');
+  return (value) => round(position(value));
+}
+
+/** 1, 2 and 5 times powers of ten in a short range, powers of ten in a long one. */
+function logTicks([from, to]: readonly [number, number]): number[] {
+  const ticks = scaleLog().domain([from, to]).ticks(40);
+  const leading = (value: number) => Number(value.toExponential().split('e')[0]);
+  const round = ticks.filter((t) => leading(t) === 1);
+  return round.length > 2 ? round : ticks.filter((t) => [1, 2, 5].includes(leading(t)));
+}
+
+interface Tick {
+  readonly value: number;
+  readonly text: string;
+}
+
+function ticksOf(axis: Axis, count: number): { readonly ticks: readonly Tick[]; readonly unit: string } {
+  const largest = Math.max(Math.abs(axis.domain[0]), Math.abs(axis.domain[1]));
+  const { factor, prefix } = axis.unit === '' ? { factor: 1, prefix: '' } : prefixOf(largest);
+  const format = axis.format ?? ((value: number) => formatNumber(value / factor, 4));
+  const values = axis.scale === 'log' ? logTicks(axis.domain) : scaleLinear().domain(axis.domain).ticks(count);
+  return {
+    ticks: values.map((value) => ({ value, text: format(value) })),
+    unit: axis.format ? '' : prefix + axis.unit,
+  };
+}
+
+const withUnit = (label: string, unit: string): string => (unit === '' ? label : `${label} (${unit})`);
+
+function xAxis(axis: Axis, x: Position): Markup {
+  const { ticks, unit } = ticksOf(axis, 7);
+  return markup`${ticks.map(
+    ({ value, text }) =>
+      markup`<line class="rule" x1="${x(value)}" x2="${x(value)}" y1="${PLOT.bottom}" y2="${PLOT.bottom + 4}"/><text x="${x(value)}" y="${PLOT.bottom + 17}" text-anchor="middle">${text}</text>`,
+  )}<line class="rule" x1="${PLOT.left}" x2="${PLOT.right}" y1="${PLOT.bottom}" y2="${PLOT.bottom}"/><text x="${(PLOT.left + PLOT.right) / 2}" y="${HEIGHT - 8}" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
+}
+
+function yAxis(axis: Axis, y: Position): Markup {
+  const { ticks, unit } = ticksOf(axis, 5);
+  const middle = (PLOT.top + PLOT.bottom) / 2;
+  return markup`${ticks.map(
+    ({ value, text }) =>
+      markup`<line class="${value === 0 && axis.domain[0] < 0 ? 'rule zero' : 'rule'}" x1="${PLOT.left}" x2="${PLOT.right}" y1="${y(value)}" y2="${y(value)}"/><text x="${PLOT.left - 6}" y="${y(value) + 4}" text-anchor="end">${text}</text>`,
+  )}<text transform="translate(14 ${middle}) rotate(-90)" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
+}
+
+/** Names beside a stroke of their line, in a row under the title. A character is about 6.4 pixels wide. */
+function legend(series: readonly Series[]): Markup {
+  let left = PLOT.left;
+  const entries = series.map(({ name, colour, dashed, thin }) => {
+    const x = left;
+    left += 26 + name.length * 6.4 + 12;
+    return markup`<line class="series${dashed ? ' dashed' : ''}${thin ? ' thin' : ''}" stroke="var(--${colour})" x1="${x}" x2="${x + 20}" y1="34" y2="34"/><text x="${round(x + 26)}" y="38">${name}</text>`;
+  });
+  return markup`<g>${entries}</g>`;
+}
+
+function shade(range: Chart['shaded'], x: Position): Markup | null {
+  if (!range) return null;
+  const [from, to] = range.map((value) => Math.min(PLOT.right, Math.max(PLOT.left, x(value)))) as [number, number];
+  return markup`<rect class="shaded" x="${from}" y="${PLOT.top}" width="${round(Math.max(0, to - from))}" height="${PLOT.bottom - PLOT.top}"/>`;
+}
+
+function path(series: Series, chart: Chart, x: Position, y: Position): Markup {
+  const clampY = (value: number) => Math.min(PLOT.bottom, Math.max(PLOT.top, y(value)));
+  const pixels = thinned(series.points).map((p) => [x(p[0]), clampY(p[1])] as [number, number]);
+  const d = line()(pixels.filter(([px]) => px >= PLOT.left - 0.05 && px <= PLOT.right + 0.05)) ?? '';
+  const dots = series.dots
+    ? series.points.map(
+        (p) =>
+          markup`<circle class="dot" r="3.5" cx="${x(p[0])}" cy="${clampY(p[1])}" fill="var(--${series.dots!(p) === 'outside' ? 'outside' : series.colour})"><title>${readout(p, chart)}</title></circle>`,
+      )
+    : [];
+  return markup`<path class="series${series.dashed ? ' dashed' : ''}${series.thin ? ' thin' : ''}" stroke="var(--${series.colour})" d="${d}"/>${dots}`;
+}
+
+/** A point's figures in full, for hovering. */
+const readout = (point: readonly [number, number], { x, y }: Chart): string =>
+  `${x.label} ${point[0]}${x.unit && ` ${x.unit}`}, ${y.label} ${point[1]}${y.unit && ` ${y.unit}`}`;
+
+/** Points beyond three a pixel column: of each run, its first, lowest, highest and last. */
+function thinned(points: readonly (readonly [number, number])[]): readonly (readonly [number, number])[] {
+  const run = Math.ceil(points.length / WIDTH);
+  if (run <= 3) return points;
+  const kept: (readonly [number, number])[] = [];
+  for (let start = 0; start < points.length; start += run) {
+    const end = Math.min(points.length, start + run);
+    let low = start;
+    let high = start;
+    for (let i = start; i < end; i++) {
+      if (points[i]![1] < points[low]![1]) low = i;
+      if (points[i]![1] > points[high]![1]) high = i;
+    }
+    for (const i of [...new Set([start, low, high, end - 1])].sort((a, b) => a - b)) kept.push(points[i]!);
+  }
+  return kept;
+}
+
+function markLine({ axis, at, label }: Mark, position: Position, order: number): Markup {
+  const p = position(at);
+  if (axis === 'y')
+    return markup`<line class="mark" x1="${PLOT.left}" x2="${PLOT.right}" y1="${p}" y2="${p}"/><text class="mark-label" x="${PLOT.left + 4}" y="${p + 14}">${label}</text>`;
+  if (p < PLOT.left || p > PLOT.right) return markup``;
+  const anchor = p > (PLOT.left + PLOT.right) / 2 ? 'end' : 'start';
+  // Neighbouring labels step down, so that they do not lie on each other.
+  const y = PLOT.top + 12 + 14 * (order % 3);
+  return markup`<line class="mark" x1="${p}" x2="${p}" y1="${PLOT.top}" y2="${PLOT.bottom}"/><text class="mark-label" x="${anchor === 'end' ? p - 4 : p + 4}" y="${y}" text-anchor="${anchor}">${label}</text>`;
+}

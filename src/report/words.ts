@@ -1,0 +1,49 @@
+import type { ObserverFieldResult, Result } from '../compare/result.ts';
+import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
+
+/** Phrases that the terminal and the HTML report share. */
+
+/** A fraction that may have no value. */
+export const percentOr = (value: number | null): string => (value === null ? '—' : formatPercent(value));
+
+/** A signed fraction: a plus makes "too strong" plain. */
+export const signedPercentOr = (value: number | null): string =>
+  value !== null && value > 0 ? `+${formatPercent(value)}` : percentOr(value);
+
+export const quantityOr = (value: number | null, unit: string): string =>
+  value === null ? '—' : formatQuantity(value, unit);
+
+/** "up to 2.4 GHz", in a table's cell. */
+export function bandText({ band }: ObserverFieldResult): string {
+  const { limit } = band;
+  if (limit.status === 'limit') return formatQuantity(limit.frequency, 'Hz', 2);
+  if (limit.status === 'noEnergyAbove') return `≥ ${formatQuantity(limit.frequency, 'Hz', 2)}`;
+  return limit.status === 'none' ? 'none' : '—';
+}
+
+/** A whole number with thin spaces between thousands. */
+export const countText = (count: number): string => String(count).replace(/\B(?=(\d{3})+$)/g, ' ');
+
+/** What ran, how long it took and how fast: label, time, rate. */
+export function timingRows({ timings }: Result): (readonly [string, string, string])[] {
+  const { box, free, exact, comparison } = timings;
+  const rate = (work: number, seconds: number, unit: string) =>
+    seconds > 0 ? formatQuantity(work / seconds, unit) : '—';
+  const time = (seconds: number) => formatQuantity(seconds, 's');
+  return [
+    ['grid in its box', time(box.seconds), rate(box.cellUpdates, box.seconds, 'cells/s')],
+    ...(free
+      ? ([['grid in free space', time(free.seconds), rate(free.cellUpdates, free.seconds, 'cells/s')]] as const)
+      : []),
+    ['exact fields', time(exact.seconds), rate(exact.evaluations, exact.seconds, 'elements/s')],
+    ['comparison', time(comparison.seconds), ''],
+  ];
+}
+
+/** The grid in a line: cells, step, steps, memory. */
+export function gridText({ grid }: Result): string {
+  return (
+    `${grid.shape.join(' × ')} cells (${countText(grid.cells)}), ${countText(grid.steps)} steps of ` +
+    `${formatQuantity(grid.timeStep, 's')}, ${formatQuantity(grid.memoryBytes, 'B')}`
+  );
+}

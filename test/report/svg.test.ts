@@ -1,0 +1,116 @@
+import { describe, expect, it } from 'vitest';
+import { markup, printable } from '../../src/report/markup.ts';
+import { type Chart, chartSvg } from '../../src/report/svg.ts';
+
+const chart: Chart = {
+  title: 'Ez',
+  description: 'a line',
+  x: { label: 'time', unit: 's', scale: 'linear', domain: [0, 3e-9] },
+  y: { label: 'Ez', unit: 'V/m', scale: 'linear', domain: [-1, 1] },
+  series: [
+    {
+      name: 'exact',
+      colour: 'exact',
+      points: [
+        [0, -1],
+        [1.5e-9, 0],
+        [3e-9, 1],
+      ],
+    },
+  ],
+};
+const ticks = (svg: string): string[] =>
+  [...svg.matchAll(/<text x="[^"]*" y="[^"]*" text-anchor="[^"]*">([^<]*)</g)].map(([, t]) => t!);
+
+describe('charts', () => {
+  it('put points where the axes say: lower left, middle, upper right of the plot', () => {
+    expect(chartSvg(chart).text).toContain('d="M62,238L304,146L546,54"');
+  });
+
+  it('label a linear axis in a suitable prefix', () => {
+    const { text } = chartSvg(chart);
+    expect(text).toContain('>time (ns)<');
+    expect(ticks(text)).toEqual(expect.arrayContaining(['0', '0.5', '3', '−1', '1']));
+  });
+
+  it('label a logarithmic axis by 1, 2, 5 over a short range and by decades over a long one', () => {
+    const over = (domain: [number, number]) =>
+      ticks(chartSvg({ ...chart, x: { label: 'r', unit: '', scale: 'log', domain }, series: [] }).text).filter(
+        (t) => !t.startsWith('−') && t !== '0.5' && t !== 'r',
+      );
+    expect(over([1, 30])).toEqual(expect.arrayContaining(['1', '2', '5', '10', '20']));
+    const decades = over([0.01, 100]);
+    expect(decades).toEqual(expect.arrayContaining(['0.01', '0.1', '1', '10', '100']));
+    expect(decades).not.toContain('2');
+  });
+
+  it('halves a logarithmic decade at √10', () => {
+    const { text } = chartSvg({
+      ...chart,
+      x: { label: 'r', unit: 'm', scale: 'log', domain: [1, 10] },
+      series: [
+        {
+          name: 'e',
+          colour: 'ink',
+          points: [
+            [1, -1],
+            [Math.sqrt(10), 0],
+          ],
+        },
+      ],
+    });
+    expect(text).toContain('d="M62,238L304,146"');
+  });
+
+  it('tell grid from exact by dash as well as colour, and red means outside only', () => {
+    const { text } = chartSvg({
+      ...chart,
+      series: [
+        {
+          name: 'grid solver',
+          colour: 'grid',
+          dashed: true,
+          points: [
+            [0, 0],
+            [1e-9, 0],
+          ],
+        },
+        {
+          name: 'E',
+          colour: 'ink',
+          points: [
+            [0, 0],
+            [1e-9, 0.5],
+          ],
+          dots: ([, y]) => (y > 0.1 ? 'outside' : 'within'),
+        },
+      ],
+    });
+    expect(text).toContain('class="series dashed" stroke="var(--grid)"');
+    expect(text.match(/var\(--outside\)/g)).toHaveLength(1);
+  });
+
+  it('keep peaks when they thin out long signals', () => {
+    const points = Array.from({ length: 50_000 }, (_, n) => [(n / 50_000) * 3e-9, n === 31_234 ? 1 : 0] as const);
+    const { text } = chartSvg({ ...chart, series: [{ name: 'spike', colour: 'exact', points }] });
+    const path = text.match(/ d="([^"]*)"/)![1]!;
+    expect(path).toContain(',54L');
+    expect(path.length).toBeLessThan(40_000);
+  });
+
+  it('escape what they are given', () => {
+    const { text } = chartSvg({ ...chart, title: '<b>&"' });
+    expect(text).toContain('<title>&lt;b&gt;&amp;&quot;</title>');
+  });
+});
+
+describe('markup', () => {
+  it('escapes strings, not markup, in lists too; null is nothing', () => {
+    expect(markup`<p>${['<', markup`<b>${"'"}</b>`]}${null}${3}</p>`.text).toBe('<p>&lt;<b>&#39;</b>3</p>');
+  });
+
+  it('shows controls and writing marks by their codes, and keeps line breaks', () => {
+    expect(printable('a\u0000\u001b\u009b\u2066é中')).toBe('a\\u{0}\\u{1b}\\u{9b}\\u{2066}é中');
+    expect(markup`${'a\nb\r'}`.text).toBe('a\nb\\u{d}');
+  });
+});
