@@ -2,11 +2,12 @@ import { ticks } from 'd3-array';
 import type { Neutrals } from './colour.ts';
 import { type ImageLabel, lengthUnit, shortNumber } from './label.ts';
 import { GHOST, type ImageStroke } from './pen.ts';
-import { type Box, type Projection, pixelOf, type Vec3 } from './projection.ts';
+import { type Box, contains, type Projection, pixelOf, type Vec3 } from './projection.ts';
 
 const AXES = ['x', 'y', 'z'] as const;
 const TICK = 5;
-const TICK_SPACING = 28;
+/** room that a length takes, CSS pixels */
+const ROOM = { width: 28, height: 13 };
 
 /**
  * Ticks and lengths along three edges of a box, one for each axis: of the four edges the one that is lowest in the image,
@@ -23,6 +24,10 @@ export function axes(
   const { from, to } = box;
   const unit = lengthUnit(Math.max(...from.map(Math.abs), ...to.map(Math.abs)));
   const middle = pixelOf(projection, [0, 1, 2].map((k) => (from[k]! + to[k]!) / 2) as unknown as Vec3);
+  const visible = (point: Vec3) => {
+    const at = pixelOf(projection, point);
+    return at && contains(projection.view, at.x, at.y) ? at : undefined;
+  };
   const segments: number[] = [];
   const labels: ImageLabel[] = [];
   for (let axis = 0; middle && axis < 3; axis++) {
@@ -30,25 +35,30 @@ export function axes(
     if (!edge) continue;
     const { start, end, pointAt } = edge;
     const length = Math.hypot(end.x - start.x, end.y - start.y);
-    if (length < 2 * TICK_SPACING * pixelRatio) continue;
+    const spacing =
+      pixelRatio *
+      Math.min((ROOM.width * length) / Math.abs(end.x - start.x), (ROOM.height * length) / Math.abs(end.y - start.y));
+    if (length < 2 * spacing) continue;
     const outwards = awayFrom(middle, start, end, length);
+    const others = labels.slice();
     const label = (text: string, at: Pixel, distance: number) => {
       const place = beside(at, outwards, distance);
       // two axes may end in one corner: the second length there is left out
-      const crowded = labels.some(
-        ({ label: { x, y } }) => Math.abs(x - place.x) < 26 * pixelRatio && Math.abs(y - place.y) < 12 * pixelRatio,
+      const crowded = others.some(
+        ({ label: { x, y } }) =>
+          Math.abs(x - place.x) < ROOM.width * pixelRatio && Math.abs(y - place.y) < ROOM.height * pixelRatio,
       );
       if (!crowded) labels.push({ label: { pane, text, role: 'tick', hidden: false, ...place }, anchor: at });
     };
     const [low, high] = [from[axis]! / unit.size, to[axis]! / unit.size];
-    for (const value of spacedTicks(low, high, length / (TICK_SPACING * pixelRatio))) {
-      const at = pixelOf(projection, pointAt(value * unit.size));
+    for (const value of spacedTicks(low, high, length / spacing)) {
+      const at = visible(pointAt(value * unit.size));
       if (!at) continue;
       const tick = TICK * pixelRatio;
       segments.push(at.x, at.y, at.z, at.x + tick * outwards.x, at.y + tick * outwards.y, at.z);
       label(shortNumber(value), at, 9 * pixelRatio);
     }
-    const centre = pixelOf(projection, pointAt((from[axis]! + to[axis]!) / 2));
+    const centre = visible(pointAt((from[axis]! + to[axis]!) / 2));
     if (centre) label(`${AXES[axis]}, ${unit.name}`, centre, 34 * pixelRatio);
   }
   const colours = new Uint32Array(segments.length / 3).fill(line);

@@ -3,7 +3,15 @@ import { coloursOf, endsOf, NEUTRALS, type Scale } from './colour.ts';
 import { crossings, planeOutline } from './furniture.ts';
 import { type ImageLabel, type Label, shortNumber } from './label.ts';
 import { GHOST, type ImageStroke } from './pen.ts';
-import { type FacetMap, facetMap, type Projection, pixelOf, projectionOf, type Rectangle } from './projection.ts';
+import {
+  contains,
+  type FacetMap,
+  facetMap,
+  type Projection,
+  pixelOf,
+  projectionOf,
+  type Rectangle,
+} from './projection.ts';
 import type { Pane, Plane, Scene, Stroke } from './scene.ts';
 import type { Texture } from './surface.ts';
 
@@ -97,10 +105,6 @@ function paneList(scene: Scene, pane: Pane, n: number, colours: (plane: Plane) =
   const bar = pane.scale && colourBar(pane.scale, scene, area, n);
   if (bar) labels.push(...bar.labels.map((label) => ({ label })));
   return { area, view, layers, strokes: [...frame.strokes, ...strokes], markers, bar, labels };
-}
-
-export function contains({ x, y, width, height }: Rectangle, px: number, py: number): boolean {
-  return px >= x && px < x + width && py >= y && py < y + height;
 }
 
 /** A stroke in the image, cut at the near plane, where a line would otherwise come back from behind the eye. */

@@ -21,20 +21,32 @@ export interface ImageStroke {
 export const GHOST = 0.22;
 
 /**
- * Whether a point of this depth at this place is seen: nothing nearer covers *all* of the nine pixels around it. A stroke
- * that lies in a facet is neither before nor behind it; its neighbours' depths enclose its own however steep the facet
- * is seen, so that no offset has to be tuned.
+ * Whether a point of this depth at this place is seen. A stroke that lies in a facet is neither before nor behind it: the
+ * depth is known at the middles of pixels, and up to half a pixel aside a facet's depth differs by half its slope, however
+ * steep it is seen. So a point counts as seen down to a pixel's slope behind, and no offset has to be tuned.
  */
-export function isSeen({ depth, width }: Surface, clip: Clip, x: number, y: number, z: number): boolean {
-  const xc = Math.min(clip.right - 1, Math.max(clip.left, Math.floor(x)));
-  const yc = Math.min(clip.bottom - 1, Math.max(clip.top, Math.floor(y)));
-  // a facet seen square on has one depth everywhere, to the rounding of its single-precision store
-  const limit = z - 1e-6;
-  if (depth[yc * width + xc]! >= limit) return true;
-  for (let row = Math.max(clip.top, yc - 1); row <= Math.min(clip.bottom - 1, yc + 1); row++)
-    for (let column = Math.max(clip.left, xc - 1); column <= Math.min(clip.right - 1, xc + 1); column++)
-      if (depth[row * width + column]! >= limit) return true;
-  return false;
+export function isSeen(surface: Surface, clip: Clip, x: number, y: number, z: number): boolean {
+  const column = Math.min(clip.right - 1, Math.max(clip.left, Math.floor(x)));
+  const row = Math.min(clip.bottom - 1, Math.max(clip.top, Math.floor(y)));
+  const at = row * surface.width + column;
+  // a facet seen square on has no slope, but the rounding of its single-precision store
+  const behind = z - surface.depth[at]! - 1e-6;
+  if (behind <= 0) return true;
+  const left = column - 2 < clip.left ? 0 : slope(surface, at, -1);
+  const right = column + 2 >= clip.right ? 0 : slope(surface, at, 1);
+  const above = row - 2 < clip.top ? 0 : slope(surface, at, -surface.width);
+  const below = row + 2 >= clip.bottom ? 0 : slope(surface, at, surface.width);
+  return behind <= Math.max(left, right) + Math.max(above, below);
+}
+
+/**
+ * Depth gained over one pixel beside another, the smaller of two in a row: one of them may be a step to another facet, or
+ * cross the line where two facets meet. At the rim of all that was drawn it is unlimited, so that rims are seen whole.
+ */
+function slope({ depth }: Surface, at: number, step: number): number {
+  const [here, next, second] = [depth[at]!, depth[at + step]!, depth[at + 2 * step]!];
+  if (next === Number.POSITIVE_INFINITY) return next;
+  return Math.min(Math.abs(next - here), Math.abs(second - next));
 }
 
 /**

@@ -1,5 +1,5 @@
-import { contains, viewOf } from './display.ts';
-import { facetMap, linear, pixelOf, projectionOf, type Vec3 } from './projection.ts';
+import { viewOf } from './display.ts';
+import { contains, facetMap, linear, pixelOf, projectionOf, type Vec3 } from './projection.ts';
 import type { Marker, Pane, Plane, Scene } from './scene.ts';
 
 /** What lies under a pixel. */

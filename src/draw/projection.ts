@@ -8,6 +8,11 @@ export interface Rectangle {
   readonly height: number;
 }
 
+/** Whether a rectangle holds a place in the image. */
+export function contains({ x, y, width, height }: Rectangle, px: number, py: number): boolean {
+  return px >= x && px < x + width && py >= y && py < y + height;
+}
+
 /** A point or direction in space, m. */
 export type Vec3 = readonly [number, number, number];
 

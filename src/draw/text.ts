@@ -34,12 +34,13 @@ export class TextPainter {
       const { glyphs, width } = this.set(label.text, size);
       const left = label.x - width * { left: 0, center: 0.5, right: 1 }[label.align];
       const base = label.y + size * { top: 0.73, middle: 0.36, bottom: 0 }[label.baseline];
+      const weight = label.hidden ? 0.5 : 1;
       const quiet = label.role === 'tick' || label.role === 'scale';
       const masks = glyphs.map(({ x, edges }) => coverageOf(edges, left + x, base));
       const step = Math.max(1, Math.round(pixelRatio));
       for (const [dx, dy] of label.role === 'title' ? [] : AROUND)
-        for (const mask of masks) blendMask(surface, mask, dx * step, dy * step, background, 0.5);
-      for (const mask of masks) blendMask(surface, mask, 0, 0, quiet ? muted : ink, label.hidden ? 0.5 : 1);
+        for (const mask of masks) blendMask(surface, mask, dx * step, dy * step, background, weight / 2);
+      for (const mask of masks) blendMask(surface, mask, 0, 0, quiet ? muted : ink, weight);
     }
   }
 

@@ -111,6 +111,29 @@ describe('strokes', () => {
   });
 });
 
+test('a stroke where two planes cross is seen all along, from every side', () => {
+  const wall = (name: string, u: Plane['u']): Plane => ({
+    ...{ name, origin: [-u[0], -u[1], -1], u: [2 * u[0], 2 * u[1], 0], v: [0, 0, 2], nu: 1, nv: 1, scale: SCALE },
+    values: Float32Array.of(0),
+  });
+  const planes = [wall('xz', [1, 0, 0]), wall('yz', [0, 1, 0])];
+  const strokes: Stroke[] = [{ points: [0, 0, -0.5, 0, 0, 0.5], form: 'line', colour: BLACK, width: 3 }];
+  for (let n = 0; n < 24; n++)
+    for (const height of [-3, -0.7, 0.4, 2]) {
+      const camera = new PerspectiveCamera(30, 1, 0.1, 50);
+      camera.up.set(0, 0, 1);
+      camera.position.set(5 * Math.cos(0.26 * n + 0.05), 5 * Math.sin(0.26 * n + 0.05), height);
+      camera.lookAt(0, 0, 0);
+      camera.updateMatrixWorld();
+      const black = (shown: readonly Plane[]) => {
+        const picture = new Picture(200, 230);
+        picture.draw(sceneOf({ ...paneOf(camera, shown, 200, 230), strokes }));
+        return picture.surface.pixels.reduce((count, pixel) => count + (toBytes(pixel)[0] < 16 ? 1 : 0), 0);
+      };
+      expect(black(planes)).toBeGreaterThan(0.98 * black([]));
+    }
+});
+
 describe('contours', () => {
   const plane = (nu: number, nv: number, f: (x: number, y: number) => number): Plane => {
     const values = Float32Array.from({ length: nu * nv }, (_, n) => f(n % nu, Math.floor(n / nu)));
