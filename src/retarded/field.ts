@@ -208,8 +208,7 @@ function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: Pi
   const stations = [view.start, view.end];
   if (view.nearest > view.start && view.nearest < view.end) stations.push(view.nearest);
   for (const { delay, slowness } of integral.terms)
-    for (const kink of waveform.kinks.length > 0 ? waveform.kinks : [0])
-      stations.push(...fronts(view, delay, slowness, k.speed, t - kink));
+    for (const kink of waveform.kinks) stations.push(...fronts(view, delay, slowness, k.speed, t - kink));
   stations.sort((a, b) => a - b);
   const bend = steepestBend(integral, k.speed);
   for (let m = 1; m < stations.length; m++) {
@@ -282,16 +281,22 @@ function integrate(
     const s = (from + to) / 2 + half * kronrod.nodes[m]!;
     view.look(s);
     const base = m * QUANTITIES;
-    for (const { factor, delay, slowness } of integral.terms) {
+    let w = 0;
+    let slope = 0;
+    integral.terms.forEach(({ factor, delay, slowness }, n) => {
       const u = t - delay - slowness * s - view.r / k.speed;
-      if (u < 0) continue;
-      waveform.at(u, 2, wave);
+      if (u >= 0) {
+        w += factor * waveform.value(u);
+        slope += factor * waveform.slope(u);
+      }
+      // Terms come in order of slowness, and those of one slowness share their element.
+      if (integral.terms[n + 1]?.slowness === slowness || (w === 0 && slope === 0)) return;
       filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
-      const w = factor * wave[1]!;
-      const slope = factor * wave[2]!;
       for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++)
         samples[base + c]! += element[CURRENT + c]! * w + element[SLOPE + c]! * slope;
-    }
+      w = 0;
+      slope = 0;
+    });
     for (let c = 0; c < QUANTITIES; c++) {
       value[c]! += half * kronrod.weights[m]! * samples[base + c]!;
       difference[c]! += half * kronrod.differences[m]! * samples[base + c]!;

@@ -135,7 +135,8 @@ export class GriddedIntegrator {
       this.#refuseOnEdge(at);
       this.#site(at, m % 6, values.subarray(m * count, (m + 1) * count));
     }
-    return { values, difference: this.#check(points, values, checks), checks, evaluations: this.#pairs };
+    const difference = checks > 0 && points.count > 0 ? this.#check(points, values, checks) : 0;
+    return { values, difference, checks, evaluations: this.#pairs };
   }
 
   #site(at: Vec3, component: number, out: Float64Array): void {
@@ -191,7 +192,7 @@ export class GriddedIntegrator {
     const prepared = prepareGridded(this.#gridded, this.#origin, this.#cellSize, this.#medium);
     const field = fieldOf(prepared, { potentials: false, tolerance: 1e-11 });
     let worst = 0;
-    for (let n = 0; n < checks && points.count > 0; n++) {
+    for (let n = 0; n < checks; n++) {
       // Multiples of two irrational numbers spread over sites and instants without a pattern.
       const m = Math.floor((((n + 1) * 0.7548776662466927) % 1) * points.count * 6);
       const i = Math.floor((((n + 1) * 0.5698402909980532) % 1) * count);

@@ -1,6 +1,6 @@
 import type { GriddedSources, Pairs } from '../gridding/edges.ts';
 import { type ArcPiece, type LinePiece, linePiece } from '../scenario/curve.ts';
-import type { Filament, Medium, Source, Vec3 } from '../scenario/model.ts';
+import type { Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { WaveformSet } from './terms.ts';
 import type { Wave } from './waves.ts';
@@ -11,7 +11,8 @@ export type Method = 'best' | 'quadrature';
 /** Part of a filament whose field is an integral along it; its end charges are not part of it. */
 export interface Integral {
   readonly piece: LinePiece | ArcPiece;
-  readonly terms: readonly { readonly factor: number; readonly delay: number; readonly slowness: number }[];
+  /** in order of slowness */
+  readonly terms: readonly WaveTerm[];
   readonly waveform: number;
   /** in closed form elsewhere but for its potentials */
   readonly potentialsOnly: boolean;
@@ -86,9 +87,9 @@ function takeApart(
 ): void {
   source.curve.pieces.forEach((piece, n) => {
     const label = `source “${source.name}”, segment ${n + 1}`;
-    const others: Integral['terms'][number][] = [];
-    const fullSpeed: Integral['terms'][number][] = [];
-    for (const term of source.terms) {
+    const others: WaveTerm[] = [];
+    const fullSpeed: WaveTerm[] = [];
+    for (const term of source.terms.toSorted((p, q) => p.slowness - q.slowness)) {
       const full = Math.abs(Math.abs(term.slowness) * medium.speed - 1) <= FULL_SPEED;
       if (method === 'best' && piece.kind === 'line' && full) {
         fullSpeed.push(term);
@@ -168,7 +169,7 @@ export function prepareGridded(gridded: GriddedSources, origin: Vec3, cellSize: 
     const axis = edges.axis[e]!;
     const from = place(edges, e);
     const to: Vec3 = [from[0], from[1], from[2]].map((x, a) => (a === axis ? x + cellSize[a]! : x)) as unknown as Vec3;
-    const byWaveform = new Map<number, Integral['terms'][number][]>();
+    const byWaveform = new Map<number, WaveTerm[]>();
     for (let m = edges.pairStart[e]!; m < edges.pairStart[e + 1]!; m++) {
       const waveform = waveforms.index(edges.waveforms[edges.waveform[m]!]!);
       const terms = byWaveform.get(waveform) ?? [];
