@@ -34,9 +34,10 @@ export interface ErrorBin {
   readonly percentile95: number;
 }
 
-/** A bin with the samples it holds, for resampling. */
+/** A bin with the samples it holds, in order of their errors, for resampling. */
 export interface FilledBin extends ErrorBin {
-  readonly members: readonly number[];
+  readonly errors: readonly number[];
+  readonly weights: readonly number[];
 }
 
 /** Index of the logarithmic bin of a distance: ⌊binsPerDecade · log₁₀(distance / 1 m)⌋. */
@@ -50,28 +51,18 @@ export function binEdge(index: number, binsPerDecade: number): number {
 }
 
 /**
- * The weighted percentile: the least value such that values up to it hold at least that share of the weight.
- * NaN for no values.
+ * The weighted percentile of ascending values: the least one such that values up to it hold at least that share of the
+ * weight. NaN for no values.
  */
-export function percentile(values: readonly number[], weights: readonly number[], share: number): number {
-  const order = values.map((_, i) => i).sort((i, j) => values[i]! - values[j]!);
-  const total = weights.reduce((sum, w) => sum + w, 0);
+export function percentile(ascending: readonly number[], weights: readonly number[], share: number): number {
+  // A share such as 0.95 · 100 is not exact in binary: forgive rounding, far below one sample's weight.
+  const wanted = share * weights.reduce((sum, w) => sum + w, 0) * (1 - 1e-12);
   let held = 0;
-  for (const i of order) {
+  for (let i = 0; i < ascending.length; i++) {
     held += weights[i]!;
-    // A share such as 0.95 · 100 is not exact in binary: forgive rounding, far below one sample's weight.
-    if (held >= share * total * (1 - 1e-12)) return values[i]!;
+    if (held >= wanted) return ascending[i]!;
   }
   return Number.NaN;
-}
-
-/** 95th percentile of the point error over some samples. */
-export function percentileOf(samples: ErrorSamples, members: readonly number[]): number {
-  return percentile(
-    members.map((i) => samples.error[i]!),
-    members.map((i) => samples.weight?.[i] ?? 1),
-    PERCENTILE,
-  );
 }
 
 /**
@@ -90,15 +81,26 @@ export function errorBins(samples: ErrorSamples, binsPerDecade: number): FilledB
   return [...members]
     .filter(([, inside]) => inside.length >= MIN_SAMPLES)
     .sort(([a], [b]) => a - b)
-    .map(([index, inside]) => ({
-      from: binEdge(index, binsPerDecade),
-      to: binEdge(index + 1, binsPerDecade),
-      centre: binEdge(index + 0.5, binsPerDecade),
-      nearest: Math.min(...inside.map((i) => samples.distance[i]!)),
-      samples: inside.length,
-      percentile95: percentileOf(samples, inside),
-      members: inside,
-    }));
+    .map(([index, inside]) => {
+      inside.sort((i, j) => samples.error[i]! - samples.error[j]!);
+      const errors = inside.map((i) => samples.error[i]!);
+      const weights = inside.map((i) => samples.weight?.[i] ?? 1);
+      return {
+        from: binEdge(index, binsPerDecade),
+        to: binEdge(index + 1, binsPerDecade),
+        centre: binEdge(index + 0.5, binsPerDecade),
+        nearest: Math.min(...inside.map((i) => samples.distance[i]!)),
+        samples: inside.length,
+        percentile95: percentile(errors, weights, PERCENTILE),
+        errors,
+        weights,
+      };
+    });
+}
+
+/** A bin without its samples. */
+export function bare({ errors: _, weights: __, ...bin }: FilledBin): ErrorBin {
+  return bin;
 }
 
 /** Index of the bin with the lowest 95th percentile; the nearer of equals. */

@@ -115,8 +115,10 @@ function innerProduct([a, b]: Pair, [c, d]: Pair, field: Field, point: number): 
 /** Σ|field|² over the field's components and the instants, at one point. */
 export function energy(history: FieldHistory, field: Field, point: number): number {
   let sum = 0;
-  for (let k = FIRST_COMPONENT[field]; k < FIRST_COMPONENT[field] + 3; k++)
-    for (const v of samplesOf(history, point, k)) sum += v * v;
+  for (let k = FIRST_COMPONENT[field]; k < FIRST_COMPONENT[field] + 3; k++) {
+    const samples = samplesOf(history, point, k);
+    for (let n = 0; n < samples.length; n++) sum += samples[n]! * samples[n]!;
+  }
   return sum;
 }
 

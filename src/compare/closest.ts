@@ -1,14 +1,15 @@
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import {
+  bare,
   bestBin,
   type ErrorBin,
   type ErrorSamples,
   errorBins,
   type FilledBin,
   logCrossing,
+  PERCENTILE,
   percentile,
-  percentileOf,
   whyUnmeasured,
 } from './bins.ts';
 
@@ -68,7 +69,7 @@ export function threshold(bins: readonly ErrorBin[], tolerance: number, samples:
 export function closestDistance(samples: ErrorSamples, tolerance: number, seed: number): Closest {
   const bins = errorBins(samples, BINS_PER_DECADE);
   const found = threshold(bins, tolerance, samples);
-  const described = { ...found, bins: bins.map(({ members: _, ...bin }) => bin) };
+  const described = { ...found, bins: bins.map(bare) };
   if (found.status !== 'crossing') return described;
   return { ...described, interval: bootstrap(samples, bins, tolerance, seed) };
 }
@@ -83,8 +84,12 @@ function bootstrap(
   const distances: number[] = [];
   for (let r = 0; r < REPLICATES; r++) {
     const redrawn = bins.map((bin) => {
-      const members = bin.members.map(() => bin.members[uniformInt(random, 0, bin.members.length - 1)]!);
-      return { ...bin, percentile95: percentileOf(samples, members) };
+      const weights = bin.weights.map(() => 0);
+      for (let i = 0; i < bin.samples; i++) {
+        const drawn = uniformInt(random, 0, bin.samples - 1);
+        weights[drawn]! += bin.weights[drawn]!;
+      }
+      return { ...bin, percentile95: percentile(bin.errors, weights, PERCENTILE) };
     });
     const found = threshold(redrawn, tolerance, samples);
     // No crossing lies beyond every distance when nothing is within the tolerance, below every one when all is.
@@ -92,6 +97,7 @@ function bootstrap(
       found.status === 'crossing' ? found.distance : found.status === 'none' ? Infinity : Number.NEGATIVE_INFINITY,
     );
   }
+  distances.sort((a, b) => a - b);
   const equal = distances.map(() => 1);
   const end = (share: number): number | null => {
     const distance = percentile(distances, equal, share);

@@ -79,12 +79,18 @@ export function stratify(
       (Math.min(k, nz - 1 - k) + 0.5) * box.cellSize[2],
     );
 
+  // The nearest wall's bin is the lowest of three that depend on one index each.
+  const wallBinsOf = (a: 0 | 1 | 2) =>
+    Int32Array.from({ length: box.cells[a] }, (_, i) =>
+      binOf((Math.min(i, box.cells[a] - 1 - i) + 0.5) * box.cellSize[a], WALL_BINS_PER_DECADE),
+    );
+  const [wallBinX, wallBinY, wallBinZ] = [wallBinsOf(0), wallBinsOf(1), wallBinsOf(2)];
   const strata: Stratum[] = [];
   const known = new Map<number, number>();
   const stratumOf = new Uint16Array(nx * ny * nz);
   forEachCell(box.cells, (i, j, k, n) => {
     const bin = binOf(sourceDistance(i, j, k), BINS_PER_DECADE);
-    const wallBin = binOf(wallDistance(i, j, k), WALL_BINS_PER_DECADE);
+    const wallBin = Math.min(wallBinX[i]!, wallBinY[j]!, wallBinZ[k]!);
     const key = bin * 4096 + wallBin; // |wallBin| is far below 2048: unique
     let index = known.get(key);
     if (index === undefined) {

@@ -1,4 +1,4 @@
-import { type ErrorBin, type ErrorSamples, errorBins } from './bins.ts';
+import { bare, type ErrorBin, type ErrorSamples, errorBins } from './bins.ts';
 import { type Threshold, threshold } from './closest.ts';
 
 /** Bins of distance to the nearest wall of the working box. */
@@ -20,6 +20,6 @@ export function wallClearance(
   tolerance: number,
 ): WallClearance {
   const error = wall.error.map((e, i) => (sourceDistance[i]! < closest ? Number.NaN : e));
-  const bins = errorBins({ ...wall, error }, WALL_BINS_PER_DECADE).map(({ members: _, ...bin }) => bin);
+  const bins = errorBins({ ...wall, error }, WALL_BINS_PER_DECADE).map(bare);
   return { ...threshold(bins, tolerance, wall), bins };
 }
