@@ -1,4 +1,4 @@
-import { clampRgb, converter } from 'culori';
+import { clampRgb, modeOklch, modeRgb, useMode } from 'culori/fn';
 import { decibels } from '../elementary/elementary.ts';
 
 /**
@@ -58,7 +58,8 @@ interface Oklch {
   readonly h: number;
 }
 
-const toSrgb = converter('rgb');
+useMode(modeOklch);
+const toSrgb = useMode(modeRgb);
 
 function packedOklch({ l, c, h }: Oklch): number {
   const { r, g, b } = clampRgb(toSrgb({ mode: 'oklch', l, c, h }));

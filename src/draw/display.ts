@@ -12,12 +12,11 @@ import {
   projectionOf,
   type Rectangle,
 } from './projection.ts';
-import type { Pane, Plane, Scene, Stroke } from './scene.ts';
+import type { Marker, Pane, Plane, Scene, Stroke } from './scene.ts';
 import type { Texture } from './surface.ts';
 
 /** A pane as the rasteriser draws it: everything in image pixels, nothing left to decide but what hides what. */
 export interface PaneList {
-  readonly area: Rectangle;
   readonly view: Rectangle;
   readonly layers: readonly { readonly clip: Rectangle; readonly facets: readonly ImageFacet[] }[];
   readonly strokes: readonly ImageStroke[];
@@ -68,43 +67,63 @@ function paneList(scene: Scene, pane: Pane, n: number, colours: (plane: Plane) =
   const neutrals = NEUTRALS[theme];
   const view = viewOf(pane, pixelRatio);
   const projection = projectionOf(pane.camera, view);
+  const frame = pane.axes ? axes(pane.axes, projection, neutrals, pixelRatio, n) : { strokes: [], labels: [] };
+  const rims = [...pane.planes.map((plane) => planeOutline(plane, neutrals)), crossings(pane.planes, neutrals)];
+  const strokes = [...rims, ...pane.strokes].map((stroke) => imageStroke(stroke, projection, pixelRatio));
+  const divider = pane.overlay ? [dividerStroke(view, dividerOf(pane, view), neutrals.ink, pixelRatio)] : [];
+  const named = imageMarkers(pane.markers, projection, pixelRatio, n);
+  const bar = pane.scale && colourBar(pane.scale, scene, pane.area, n);
+  const own = [titleLabel(pane, pixelRatio, n), ...(bar?.labels ?? [])];
+  return {
+    view,
+    layers: layersOf(pane, projection, colours),
+    strokes: [...frame.strokes, ...strokes, ...divider],
+    markers: named.markers,
+    bar,
+    labels: [...frame.labels, ...named.labels, ...own.map((label) => ({ label }))],
+  };
+}
+
+/** Where the divider of a pane with an overlay stands, image pixels; the right end of the view without one. */
+export function dividerOf({ overlay }: Pane, view: Rectangle): number {
+  return view.x + Math.round(view.width * (overlay?.divider ?? 1));
+}
+
+/** The planes on the left of the divider, and those on its right; planes seen edge-on are left out. */
+function layersOf(pane: Pane, projection: Projection, colours: (plane: Plane) => Uint32Array): PaneList['layers'] {
+  const { view } = projection;
+  const divider = dividerOf(pane, view);
   const facets = (planes: readonly Plane[]) =>
     planes.flatMap((plane) => {
       const map = facetMap(projection, plane);
       return map ? [{ map, texture: { nu: plane.nu, nv: plane.nv, colours: colours(plane) } }] : [];
     });
-  const split = pane.overlay ? Math.round(view.width * pane.overlay.divider) : view.width;
-  const layers = [{ clip: { ...view, width: split }, facets: facets(pane.planes) }];
-  if (pane.overlay)
-    layers.push({
-      clip: { ...view, x: view.x + split, width: view.width - split },
-      facets: facets(pane.overlay.planes),
-    });
+  const left = { clip: { ...view, width: divider - view.x }, facets: facets(pane.planes) };
+  if (!pane.overlay) return [left];
+  const right = { ...view, x: divider, width: view.x + view.width - divider };
+  return [left, { clip: right, facets: facets(pane.overlay.planes) }];
+}
 
-  const rims = [...pane.planes.map((plane) => planeOutline(plane, neutrals)), crossings(pane.planes, neutrals)];
-  const strokes = [...rims, ...pane.strokes].map((stroke) => imageStroke(stroke, projection, pixelRatio));
-  const frame = pane.axes ? axes(pane.axes, projection, neutrals, pixelRatio, n) : { strokes: [], labels: [] };
-  if (pane.overlay) strokes.push(dividerStroke(view, view.x + split, neutrals.ink, pixelRatio));
-
-  const markers: ImageMarker[] = [];
-  const labels: ImageLabel[] = [...frame.labels];
-  for (const { at, name, colour } of pane.markers) {
+/** The markers that lie in the view, with their names beside them. */
+function imageMarkers(markers: readonly Marker[], projection: Projection, pixelRatio: number, pane: number) {
+  const radius = 4.5 * pixelRatio;
+  const seen = markers.flatMap(({ at, name, colour }) => {
     const anchor = pixelOf(projection, at);
-    if (!anchor || !contains(view, anchor.x, anchor.y)) continue;
-    const radius = 4.5 * pixelRatio;
-    markers.push({ ...anchor, radius, colour });
-    const place = { pane: n, x: anchor.x + radius + 4 * pixelRatio, y: anchor.y };
-    labels.push({
-      label: { ...place, text: name, align: 'left', baseline: 'middle', role: 'name', hidden: false },
-      anchor,
-    });
-  }
-  const { area } = pane;
-  const title = { pane: n, x: area.x + 10 * pixelRatio, y: area.y + (TITLE_HEIGHT / 2) * pixelRatio, text: pane.title };
-  labels.push({ label: { ...title, align: 'left', baseline: 'middle', role: 'title', hidden: false } });
-  const bar = pane.scale && colourBar(pane.scale, scene, area, n);
-  if (bar) labels.push(...bar.labels.map((label) => ({ label })));
-  return { area, view, layers, strokes: [...frame.strokes, ...strokes], markers, bar, labels };
+    return anchor && contains(projection.view, anchor.x, anchor.y) ? [{ anchor, name, colour }] : [];
+  });
+  const style = { pane, align: 'left', baseline: 'middle', role: 'name', hidden: false } as const;
+  return {
+    markers: seen.map(({ anchor, colour }): ImageMarker => ({ ...anchor, radius, colour })),
+    labels: seen.map(({ anchor, name }): ImageLabel => {
+      const label = { ...style, x: anchor.x + radius + 4 * pixelRatio, y: anchor.y, text: name };
+      return { label, anchor };
+    }),
+  };
+}
+
+function titleLabel({ area, title }: Pane, pixelRatio: number, pane: number): Label {
+  const place = { x: area.x + 10 * pixelRatio, y: area.y + (TITLE_HEIGHT / 2) * pixelRatio };
+  return { ...place, pane, text: title, align: 'left', baseline: 'middle', role: 'title', hidden: false };
 }
 
 /** A stroke in the image, cut at the near plane, where a line would otherwise come back from behind the eye. */

@@ -1,5 +1,5 @@
-import { viewOf } from './display.ts';
-import { contains, facetMap, linear, pixelOf, projectionOf, type Vec3 } from './projection.ts';
+import { dividerOf, viewOf } from './display.ts';
+import { contains, facetMap, linear, pixelOf, projectionOf, type Rectangle, type Vec3 } from './projection.ts';
 import type { Marker, Pane, Plane, Scene } from './scene.ts';
 
 /** What lies under a pixel. */
@@ -21,10 +21,8 @@ export function paneAt({ panes, pixelRatio }: Scene, x: number, y: number): numb
 }
 
 /** The planes a place in a pane shows: those on its side of the divider. */
-function planesAt(pane: Pane, x: number, pixelRatio: number): readonly Plane[] {
-  const view = viewOf(pane, pixelRatio);
-  const { overlay } = pane;
-  return overlay && x >= view.x + Math.round(view.width * overlay.divider) ? overlay.planes : pane.planes;
+function planesAt(pane: Pane, view: Rectangle, x: number): readonly Plane[] {
+  return pane.overlay && x >= dividerOf(pane, view) ? pane.overlay.planes : pane.planes;
 }
 
 /**
@@ -35,10 +33,11 @@ export function pick(scene: Scene, x: number, y: number): Hit | undefined {
   const n = paneAt(scene, x, y);
   if (n === undefined) return undefined;
   const pane = scene.panes[n]!;
-  const projection = projectionOf(pane.camera, viewOf(pane, scene.pixelRatio));
+  const view = viewOf(pane, scene.pixelRatio);
+  const projection = projectionOf(pane.camera, view);
   let nearest = Number.POSITIVE_INFINITY;
   let hit: Hit | undefined;
-  for (const plane of planesAt(pane, x, scene.pixelRatio)) {
+  for (const plane of planesAt(pane, view, x)) {
     const map = facetMap(projection, plane);
     if (!map) continue;
     const inverseW = linear(map.inverseW, x, y);
