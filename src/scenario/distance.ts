@@ -1,13 +1,19 @@
 import { type ArcPiece, type Curve, dot, type LinePiece, norm, sub } from './curve.ts';
 import type { Medium, Source, Vec3 } from './model.ts';
 
-/** The box around a source, parallel to the axes, m. */
-export function sourceBounds(source: Source): { from: Vec3; to: Vec3 } {
+/** A box parallel to the axes, m. */
+export interface Bounds {
+  readonly from: Vec3;
+  readonly to: Vec3;
+}
+
+/** The box around a source. */
+export function sourceBounds(source: Source): Bounds {
   if (source.type === 'dipole') return { from: source.at, to: source.at };
   return curveBounds(source.curve);
 }
 
-function curveBounds(curve: Curve): { from: Vec3; to: Vec3 } {
+function curveBounds(curve: Curve): Bounds {
   const from: [number, number, number] = [Infinity, Infinity, Infinity];
   const to: [number, number, number] = [-Infinity, -Infinity, -Infinity];
   for (const piece of curve.pieces)

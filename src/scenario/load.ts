@@ -3,7 +3,7 @@ import type { z } from 'zod';
 import { formatQuantity } from '../elementary/quantity.ts';
 import { mediumOf } from './constants.ts';
 import { circle, norm, polyline, scale, sub } from './curve.ts';
-import { distanceToSources, firstArrival, sourceBounds } from './distance.ts';
+import { type Bounds, distanceToSources, firstArrival, sourceBounds } from './distance.ts';
 import {
   type Axis,
   type Boundary,
@@ -202,13 +202,11 @@ function build(file: Record<string, unknown>, report: Report): Scenario | undefi
 
   const scenario = { title, medium, sources: all, grid, duration, observers, planes, tolerance, notes };
   noteResolution(scenario, notes);
-  for (const { name, at } of observers) {
-    const first = firstArrival(all, medium, at);
-    if (first >= duration)
+  for (const { name, at } of observers)
+    if (!all.some((source) => firstArrival([source], medium, at) < duration))
       notes.push(
-        `Observer “${name}” sees nothing: the first field arrives at ${formatQuantity(first, 's')}, the run ends at ${formatQuantity(duration, 's')}.`,
+        `Observer “${name}” sees nothing: the first field arrives at ${formatQuantity(firstArrival(all, medium, at), 's')}, the run ends at ${formatQuantity(duration, 's')}.`,
       );
-  }
   return scenario;
 }
 
@@ -483,20 +481,15 @@ function checkInside(index: number, source: Source, grid: Grid, report: Report):
 
 // ------------------------------------------------------------------------------------------------ observers and planes
 
-function buildObservers(
-  value: unknown,
-  grid: Grid | undefined,
-  sources: readonly Source[],
-  report: Report,
-): Observer[] {
+function buildObservers(value: unknown, grid: Grid | undefined, all: readonly Source[], report: Report): Observer[] {
   const given = parts(observerSchema, value, LIMITS.observers);
   const names = uniqueNames(given, () => 'observer', 'observers', report);
+  const sources = all.map((source) => ({ source, bounds: sourceBounds(source) }));
   return given.map(({ index, given: { at } }, k) => {
     const inside = grid !== undefined && at.every((x, a) => x >= grid.box.from[a]! && x <= grid.box.to[a]!);
     if (grid) {
       const places = inside ? yeeSites(grid, observerCell(grid, at)) : [at];
-      const slack = CELL_SLACK * Math.max(...grid.cellSize);
-      if (places.some((p) => distanceToSources(sources, p) < slack))
+      if (places.some((p) => isOnSource(p, sources, CELL_SLACK * Math.max(...grid.cellSize))))
         report(
           ['observers', index, 'at'],
           `puts “${names[k]}” on a source${inside ? ' (at least one component of its Yee cell)' : ''}, where the field is infinite; move it a cell away`,
@@ -504,6 +497,13 @@ function buildObservers(
     }
     return { name: names[k]!, at, inside };
   });
+}
+
+function isOnSource(p: Vec3, sources: readonly { source: Source; bounds: Bounds }[], slack: number): boolean {
+  return sources.some(
+    ({ source, bounds: { from, to } }) =>
+      p.every((x, a) => x > from[a]! - slack && x < to[a]! + slack) && distanceToSources([source], p) < slack,
+  );
 }
 
 /** Where the six components of a cell live. */
