@@ -202,6 +202,9 @@ export const resultSchema = z.object({
   }),
   timings: z.object({
     box: z.object({ seconds: z.number(), cellUpdates: z.number().describe('cells with absorber × steps') }),
+    rounding: z
+      .object({ seconds: z.number(), cellUpdates: z.number() })
+      .describe('the box once more, driven so that it rounds differently: it measures the rounding floor'),
     free: z.object({ seconds: z.number(), cellUpdates: z.number() }).nullable(),
     exact: z.object({ seconds: z.number(), evaluations: z.number() }),
     comparison: z.object({ seconds: z.number() }),

@@ -12,3 +12,6 @@ export const poolOptions = { workerType: 'web', workerOpts: { type: 'module' } }
 
 /** The host, for a result's `environment`. */
 export const hostName = (): string => `browser, ${navigator.userAgent}`;
+
+/** Bytes that one run may take: half of what the browser says the machine has (it says no more than 8 GiB), or 2 GiB. */
+export const memoryLimit = (): number => ((navigator as { deviceMemory?: number }).deviceMemory ?? 4) * 0.5 * 2 ** 30;

@@ -1,5 +1,5 @@
 import { existsSync } from 'node:fs';
-import { availableParallelism } from 'node:os';
+import { availableParallelism, totalmem } from 'node:os';
 import { version } from 'node:process';
 import { fileURLToPath } from 'node:url';
 
@@ -23,3 +23,6 @@ export const poolOptions = { workerType: 'thread' } as const;
 
 /** The host, for a result's `environment`. */
 export const hostName = (): string => `Node ${version.slice(1)}, ${process.platform} ${process.arch}`;
+
+/** Bytes that one run may take: most of the machine's memory, and no more than the rest can spare. */
+export const memoryLimit = (): number => 0.7 * totalmem();

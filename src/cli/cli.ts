@@ -1,0 +1,203 @@
+import { Command, CommanderError, InvalidArgumentError } from 'commander';
+import { partSignals } from '../compare/budget.ts';
+import { withinTolerance } from '../compare/result.ts';
+import { observerTraces, writeTraces } from '../files/traces.ts';
+import { reportHtml } from '../report/html.ts';
+import { resultJson } from '../report/json.ts';
+import { resultText } from '../report/text.ts';
+import { type Comparison, compareSolvers, Refusal } from '../run/compare.ts';
+import { VERSION } from '../run/version.ts';
+import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
+import { scenarioJsonSchema } from '../scenario/schema.ts';
+import { exactCommand } from './exact.ts';
+import { InputError, readScenario } from './input.ts';
+import { writeFolder, writeWhole } from './output.ts';
+import { progressLine } from './progress.ts';
+import { serveFolder } from './serve.ts';
+
+/** Exit statuses: 0 done and within tolerance, 1 done and outside it, 2 the input was refused, 3 something failed. */
+const DONE = 0;
+const OUTSIDE = 1;
+const REFUSED = 2;
+const FAILED = 3;
+/** Ended by Ctrl-C, as shells number it. */
+const INTERRUPTED = 130;
+
+/**
+ * Runs one command line and says with which status the process is to end. Results go to standard output, everything else
+ * to standard error.
+ */
+export async function runCli(args: readonly string[]): Promise<number> {
+  let status = DONE;
+  const interrupt = new AbortController();
+  const onSignal = () => interrupt.abort(new Interrupted());
+  process.on('SIGINT', onSignal);
+  process.on('SIGTERM', onSignal);
+  const program = commands(interrupt.signal, (code) => {
+    status = code;
+  });
+  try {
+    await program.parseAsync(args, { from: 'user' });
+    return status;
+  } catch (error) {
+    if (error instanceof CommanderError) return error.exitCode === 0 ? DONE : REFUSED;
+    if (error instanceof Interrupted) {
+      process.stderr.write('stopped; nothing was written\n');
+      return INTERRUPTED;
+    }
+    process.stderr.write(`${(error as Error)?.message ?? error}\n`);
+    return error instanceof Refusal || error instanceof InputError ? REFUSED : FAILED;
+  } finally {
+    process.off('SIGINT', onSignal);
+    process.off('SIGTERM', onSignal);
+  }
+}
+
+class Interrupted extends Error {}
+
+function threadCount(text: string): number {
+  const n = Number(text);
+  if (!Number.isInteger(n) || n < 1 || n > 64)
+    throw new InvalidArgumentError(`it is “${text}”; give a whole number from 1 to 64.`);
+  return n;
+}
+
+function portNumber(text: string): number {
+  const n = Number(text);
+  if (!Number.isInteger(n) || n < 0 || n > 65535)
+    throw new InvalidArgumentError(`it is “${text}”; give a port from 0 (any free one) to 65535.`);
+  return n;
+}
+
+function commands(signal: AbortSignal, end: (status: number) => void): Command {
+  const program = new Command('fieldassay')
+    .description(
+      'How far can a time-domain field solver be trusted, and where? The same prescribed currents through a Yee grid and\n' +
+        'through exact retarded integrals, and what their differences say.',
+    )
+    .version(VERSION)
+    .exitOverride()
+    .showHelpAfterError('(see --help)');
+
+  program
+    .command('compare')
+    .argument('[scenario]', 'a scenario file or a built-in scenario (see `examples`)', 'bench-cable-pulse')
+    .description('run both solvers on a scenario: error budget and verdict')
+    .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
+    .option('--json', 'print the result as JSON on standard output, and nothing else there')
+    .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
+    .option('--serve', 'with --out: serve the report on the loopback address until Ctrl-C')
+    .option('--port <n>', 'with --serve: the port', portNumber, 0)
+    .addHelpText('after', '\nExample: fieldassay compare bench-cable-pulse --out out\n')
+    .action(async (name: string, options: CompareFlags) => {
+      const comparison = await compared(name, options, signal);
+      const { result } = comparison;
+      if (options.out) writeFolder(options.out, filesOf(comparison, commandLine(name, options)));
+      if (options.json) process.stdout.write(resultJson(result));
+      else
+        process.stdout.write(
+          resultText(result, {
+            colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
+            written: options.out ? Object.keys(FILES).map((file) => `${options.out}/${file}`) : [],
+          }),
+        );
+      end(withinTolerance(result) ? DONE : OUTSIDE);
+      if (options.serve && options.out) await served(options.out, options.port, signal);
+    });
+
+  program
+    .command('exact')
+    .argument('<scenario>', 'a scenario file or a built-in scenario')
+    .description('the exact field alone, at any points and instants, inside the box or out')
+    .requiredOption('--points <file>', 'CSV with the header x,y,z,t (m and s)')
+    .requiredOption('--out <file>', 'CSV to write: x,y,z,t, then E, H, B, φ, A and bounds of their errors, SI units')
+    .addHelpText('after', '\nExample: fieldassay exact small-loop --points points.csv --out field.csv\n')
+    .action(async (name: string, options: { points: string; out: string }) => {
+      writeWhole(options.out, await exactCommand(readScenario(name), options.points, signal));
+    });
+
+  program
+    .command('schema')
+    .description('print the JSON Schema of scenario files')
+    .addHelpText('after', '\nExample: fieldassay schema > scenario.schema.json\n')
+    .action(() => {
+      process.stdout.write(`${JSON.stringify(scenarioJsonSchema(), null, 2)}\n`);
+    });
+
+  program
+    .command('examples')
+    .argument('[name]', 'print this one as JSON')
+    .description('list the built-in scenarios, or print one to start from')
+    .addHelpText('after', '\nExample: fieldassay examples small-loop > my-loop.json\n')
+    .action((name?: string) => {
+      if (name === undefined) {
+        for (const [key, { title }] of Object.entries(EXAMPLES)) process.stdout.write(`${key.padEnd(22)}${title}\n`);
+        return;
+      }
+      if (!Object.hasOwn(EXAMPLES, name))
+        throw new InputError(`there is no built-in scenario “${name}”; there are ${Object.keys(EXAMPLES).join(', ')}`);
+      process.stdout.write(`${JSON.stringify(EXAMPLES[name as ExampleName], null, 2)}\n`);
+    });
+  return program;
+}
+
+interface CompareFlags {
+  readonly out?: string;
+  readonly json?: boolean;
+  readonly threads?: number;
+  readonly serve?: boolean;
+  readonly port: number;
+}
+
+async function compared(name: string, options: CompareFlags, signal: AbortSignal): Promise<Comparison> {
+  if (options.serve && !options.out) throw new InputError('--serve needs --out: the folder that is to be served');
+  const line = progressLine(false);
+  try {
+    return await compareSolvers(readScenario(name), {
+      ...(options.threads ? { threads: options.threads } : {}),
+      signal,
+      onProgress: line.show,
+    });
+  } finally {
+    line.end();
+  }
+}
+
+/** Files of a result folder. */
+const FILES = { 'result.json': resultJson, 'traces.csv': null, 'report.html': null } as const;
+
+function filesOf({ result, signals, outside, spectra }: Comparison, command: string): Record<string, string> {
+  const inside = result.observers.filter((o) => o.inside).map(({ name }) => name);
+  const beyond = result.observers.filter((o) => !o.inside).map(({ name }) => name);
+  const traces = [
+    ...(signals
+      ? inside.flatMap((name, p) =>
+          observerTraces(name, { grid: signals.grid, exact: signals.exact, ...partSignals(signals) }, p),
+        )
+      : []),
+    ...beyond.flatMap((name, p) => observerTraces(name, { exact: outside }, p)),
+  ];
+  return {
+    'result.json': resultJson(result),
+    'traces.csv': writeTraces(traces),
+    'report.html': reportHtml({ result, traces, spectra, command }),
+  };
+}
+
+function commandLine(name: string, { out, threads }: CompareFlags): string {
+  const quoted = /^[\w./-]+$/.test(name) ? name : JSON.stringify(name);
+  return `npx fieldassay compare ${quoted}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
+}
+
+async function served(folder: string, port: number, signal: AbortSignal): Promise<void> {
+  const { server, url } = await serveFolder(folder, port);
+  process.stdout.write(`\nThe report: ${url}   (Ctrl-C ends)\n`);
+  await new Promise<void>((done) => {
+    const close = () => {
+      server.closeAllConnections();
+      server.close(() => done());
+    };
+    if (signal.aborted) close();
+    else signal.addEventListener('abort', close, { once: true });
+  });
+}

@@ -1,0 +1,44 @@
+import { mkdirSync, renameSync, rmSync, writeFileSync } from 'node:fs';
+import { basename, dirname, join } from 'node:path';
+
+/**
+ * Writes a file so that nobody ever reads half of it: under a temporary name beside its place, then renamed.
+ * @throws Error that names the file when the folder is missing, read-only or full
+ */
+export function writeWhole(path: string, text: string): void {
+  const temporary = join(dirname(path), `.${basename(path)}.${process.pid}.part`);
+  try {
+    writeFileSync(temporary, text);
+    renameSync(temporary, path);
+  } catch (error) {
+    rmSync(temporary, { force: true });
+    throw new Error(`${path} could not be written: ${reasonOf(error)}; choose another place with --out`);
+  }
+}
+
+/** Writes several files into a folder, which is made where it is missing. */
+export function writeFolder(folder: string, files: Readonly<Record<string, string>>): void {
+  try {
+    mkdirSync(folder, { recursive: true });
+  } catch (error) {
+    throw new Error(`the folder ${folder} could not be made: ${reasonOf(error)}; choose another place with --out`);
+  }
+  for (const [name, text] of Object.entries(files)) writeWhole(join(folder, name), text);
+}
+
+const REASONS: Readonly<Record<string, string>> = {
+  ENOENT: 'there is no such file or folder',
+  EACCES: 'permission denied',
+  EPERM: 'permission denied',
+  EROFS: 'the file system is read-only',
+  ENOSPC: 'the disk is full',
+  EISDIR: 'it is a folder',
+  ENOTDIR: 'a part of the path is not a folder',
+  EEXIST: 'a file of that name is in the way',
+};
+
+/** What went wrong, in words. */
+export function reasonOf(error: unknown): string {
+  const code = (error as NodeJS.ErrnoException)?.code;
+  return (code && REASONS[code]) ?? (error instanceof Error ? error.message : String(error));
+}

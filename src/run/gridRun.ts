@@ -1,0 +1,24 @@
+import { packProblem } from '../fdtd/pack.ts';
+import type { GridProblem } from '../fdtd/problem.ts';
+import { type GridResult, prepareGridRun } from '../fdtd/run.ts';
+import type { Team } from './pool.ts';
+
+/**
+ * Marches a grid problem with all threads of a team, one of which leads.
+ * @param stillLevel end the run when no sample moves more than this fraction of its peak any longer; null: never
+ * @throws RangeError where the problem cannot be run; Error where a worker died
+ */
+export async function runGrid(
+  team: Team,
+  problem: GridProblem,
+  stillLevel: number | null,
+  onSteps: (steps: number) => void,
+): Promise<GridResult> {
+  const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads: team.threads });
+  const leader = team.run('leadGrid', [packProblem(problem), prepared, stillLevel], (steps) =>
+    onSteps(steps as number),
+  );
+  const followers = Array.from({ length: team.threads - 1 }, () => team.run('followGrid', [prepared.setup]));
+  const [result] = await Promise.all([leader, ...followers]);
+  return result;
+}

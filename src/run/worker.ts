@@ -1,0 +1,78 @@
+import workerpool from 'workerpool';
+import { type PackedProblem, unpackProblem } from '../fdtd/pack.ts';
+import { follow, type GridResult, type GridRun, type GridSetup, lead } from '../fdtd/run.ts';
+import { gridSources, nodeGridOf } from '../gridding/gridding.ts';
+import { griddedHistory } from '../retarded/gridded.ts';
+import { exactHistory } from '../retarded/history.ts';
+import type { Method } from '../retarded/prepare.ts';
+import { loadScenario } from '../scenario/load.ts';
+import type { Scenario } from '../scenario/model.ts';
+import { type Instants, samplePoints } from '../trace/trace.ts';
+
+/** What a worker can do. Arguments and results are structured-cloneable; scenarios travel as the file's JSON. */
+export interface Tasks {
+  /** leads a grid run; emits the number of steps done */
+  leadGrid(packed: PackedProblem, prepared: PreparedGrid, stillLevel: number | null): GridResult;
+  /** helps a grid run until its leader is done */
+  followGrid(setup: GridSetup): void;
+  /** the exact field at the sites of some cells */
+  exactField(scenario: unknown, cells: Int32Array, instants: Instants, method: Method): ExactPiece;
+  /** the exact field of the gridded currents at the sites of some cells */
+  griddedField(scenario: unknown, cells: Int32Array, instants: Instants): GriddedPiece;
+}
+
+/** A prepared run as it travels: without what cannot be cloned. */
+export type PreparedGrid = Omit<GridRun, 'problem' | 'region'>;
+
+export interface ExactPiece {
+  readonly values: Float64Array;
+  /** one a site: point·6 + component */
+  readonly errorBound: Float64Array;
+  readonly evaluations: number;
+}
+
+export interface GriddedPiece {
+  readonly values: Float64Array;
+  /** found by checks, relative to the peak at a point */
+  readonly difference: number;
+  readonly evaluations: number;
+}
+
+/** The scenario that a task was sent; it was checked before it was sent. */
+function scenarioOf(json: unknown): Scenario {
+  const loaded = loadScenario(json);
+  if ('problems' in loaded)
+    throw new Error(`a worker was sent a scenario with problems: ${loaded.problems[0]!.message}`);
+  return loaded.scenario;
+}
+
+const tasks: Tasks = {
+  leadGrid(packed, prepared, stillLevel) {
+    const run: GridRun = { ...prepared, problem: unpackProblem(packed) };
+    return lead(run, {
+      onProgress: (steps) => workerpool.workerEmit(steps),
+      ...(stillLevel === null ? {} : { stopWhenStill: { level: stillLevel } }),
+    });
+  },
+  followGrid: follow,
+  exactField(json, cells, instants, method) {
+    const { sources, medium, grid } = scenarioOf(json);
+    return exactHistory(sources, medium, samplePoints(cells, grid.box.from, grid.cellSize), instants, { method });
+  },
+  griddedField(json, cells, instants) {
+    const { sources, medium, grid } = scenarioOf(json);
+    const points = samplePoints(cells, grid.box.from, grid.cellSize);
+    const gridded = gridSources(sources, nodeGridOf(grid));
+    const { values, difference, evaluations } = griddedHistory(
+      gridded,
+      grid.box.from,
+      grid.cellSize,
+      medium,
+      points,
+      instants,
+    );
+    return { values, difference, evaluations };
+  },
+};
+
+workerpool.worker(tasks as unknown as Record<string, (...args: never[]) => unknown>);
