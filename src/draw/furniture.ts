@@ -54,8 +54,18 @@ function corners({ origin, u, v }: Facet): number[][] {
   ].map(([a, b]) => origin.map((value, k) => value + a! * u[k]! + b! * v[k]!));
 }
 
-/** The twelve edges of a box; dashed for the outside of the absorbing layers. */
-export function boxEdges({ from, to }: Box, colour: number, dash?: readonly [number, number]): Stroke {
+/** The working box. */
+export function boxEdges(box: Box, { line }: Neutrals): Stroke {
+  return { points: edgesOf(box), form: 'segments', colour: line, width: 1 };
+}
+
+/** The outside of the absorbing layers, dotted: a dash beside a length would read as its minus sign. */
+export function absorberEdges(box: Box, { line }: Neutrals): Stroke {
+  return { points: edgesOf(box), form: 'segments', colour: line, width: 1, dash: [1, 3] };
+}
+
+/** The twelve edges of a box, two points each. */
+function edgesOf({ from, to }: Box): number[] {
   const points: number[] = [];
   for (let axis = 0; axis < 3; axis++)
     for (const corner of [0, 1, 2, 3]) {
@@ -68,7 +78,7 @@ export function boxEdges({ from, to }: Box, colour: number, dash?: readonly [num
       });
       points.push(...ends.flat());
     }
-  return { points, form: 'segments', colour, width: 1, ...(dash && { dash }) };
+  return points;
 }
 
 /**

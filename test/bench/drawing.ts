@@ -1,5 +1,5 @@
 import { NEUTRALS, packed } from '../../src/draw/colour.ts';
-import { boxEdges, wire } from '../../src/draw/furniture.ts';
+import { absorberEdges, boxEdges, wire } from '../../src/draw/furniture.ts';
 import { Picture } from '../../src/draw/picture.ts';
 import { cameraFor } from '../../src/draw/projection.ts';
 import { type Plane, planeOfSamples, type Scene } from '../../src/draw/scene.ts';
@@ -69,8 +69,8 @@ function sceneAt(
       camera,
       planes,
       strokes: [
-        boxEdges(OUTER, neutrals.line, [4, 4]),
-        boxEdges(BOX, neutrals.line),
+        absorberEdges(OUTER, neutrals),
+        boxEdges(BOX, neutrals),
         ...wire(points, current, scale, 'light', neutrals),
       ],
       markers: [{ at: [0.1, 0.02, 0.035], name: 'A', colour: packed('#009e73') }],

@@ -207,7 +207,7 @@ test('panes keep to their own view, whatever the camera sees', () => {
   for (let n = 0; n < 20; n++) {
     const planes = ['a', 'b', 'c'].map((name) => chance.plane(name));
     const bare = paneOf(chance.camera('perspective', 0.01, 1), planes);
-    const strokes = [boxEdges({ from: [-1, -1, -1], to: [1, 1, 1] }, NEUTRALS.light.ink)];
+    const strokes = [boxEdges({ from: [-1, -1, -1], to: [1, 1, 1] }, NEUTRALS.light)];
     const pane = { ...bare, strokes, area: { x: 40, y: 30, width: 60, height: 70 } };
     const picture = new Picture(150, 140);
     picture.draw(sceneOf(pane));

@@ -187,7 +187,7 @@ describe('contours', () => {
 
 describe('furniture', () => {
   test('a box has twelve edges, four along each axis', () => {
-    const { points } = boxEdges({ from: [0, 0, 0], to: [1, 2, 3] }, BLACK);
+    const { points } = boxEdges({ from: [0, 0, 0], to: [1, 2, 3] }, NEUTRALS.light);
     const lengths: number[] = [];
     for (let n = 0; n < points.length; n += 6)
       lengths.push(Math.hypot(...[0, 1, 2].map((k) => points[n + 3 + k]! - points[n + k]!)));
