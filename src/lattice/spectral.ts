@@ -157,13 +157,13 @@ class Bracket {
   }
 }
 
-/**
- * Lines beyond the last one at this level of the largest |ω W| are left out of the correction, which is itself a small part
- * of the field. Above the flat spectrum of the jump that a pulse makes at t = 0 when it starts 5 sigma before its peak.
- */
-const FAINTEST = 1e-4;
+/** Lines above the frequency where |ω W| has fallen to this level of its peak are left out of the correction. */
+const FAINTEST = 1e-6;
 
-/** The window's end is tapered over this fraction beyond the last instant, so that a current still flowing then has an end. */
+/** A current whose slope has fallen to this level of its peak radiates nothing that matters here. */
+const SPENT = 1e-6;
+
+/** Beyond its last instant of interest a current is tapered over this fraction, so that one still flowing has an end. */
 const TAPER = 0.25;
 
 /** Room for what the lattice delays beyond r/v, as a fraction of the period. */
@@ -187,13 +187,15 @@ class Lines {
   constructor(currents: EdgeCurrents, lattice: Lattice, instants: Instants, delays: readonly [number, number]) {
     this.#step = lattice.timeStep;
     this.#speed = lattice.medium.speed;
-    const last = instants.H[instants.count - 1]!;
+    const spent = Math.max(...currents.waveforms.map((waveform) => waveform.lastActivity(SPENT)));
+    const last = Math.min(instants.H[instants.count - 1]!, spent);
     const flowing = Math.ceil(((1 + TAPER) * last) / this.#step);
     this.#period = Math.ceil((1 + LAG) * (flowing + delays[1] / this.#step));
     this.#cosine = Float64Array.from({ length: this.#period }, (_, m) => cos((2 * Math.PI * m) / this.#period));
     this.#sine = Float64Array.from({ length: this.#period }, (_, m) => sin((2 * Math.PI * m) / this.#period));
+    const highest = Math.max(...currents.waveforms.map((waveform) => waveform.highestFrequency(FAINTEST)));
+    this.#count = 1 + Math.floor(Math.min(highest * this.#step, 0.5) * this.#period);
     const sampled = currents.waveforms.map((waveform) => this.#spectrum(waveform, last, flowing));
-    this.#count = 1 + Math.max(...sampled.map(({ re, im }) => lastLine(re, im)));
     this.#edgeRe = new Float64Array(currents.count * this.#count);
     this.#edgeIm = new Float64Array(currents.count * this.#count);
     this.#sumRe = new Float64Array(this.#count);
@@ -217,26 +219,22 @@ class Lines {
     return (2 * Math.PI * line) / (this.#period * this.#step);
   }
 
-  /**
-   * W(ω_m) = Δt Σ_n w((n + ½)Δt) e^(−jω_m (n + ½)Δt), of the very values that drive the lattice, for lines up to the
-   * highest that the time step resolves.
-   */
+  /** W(ω_m) = Δt Σ_n w((n + ½)Δt) e^(−jω_m (n + ½)Δt), of the very values that drive the lattice. */
   #spectrum(waveform: Waveform, last: number, flowing: number) {
-    const count = Math.floor(this.#period / 2) + 1;
-    const re = new Float64Array(count);
-    const im = new Float64Array(count);
+    const re = new Float64Array(this.#count);
+    const im = new Float64Array(this.#count);
     for (let n = 0; n < flowing; n++) {
       const t = (n + 0.5) * this.#step;
       const beyond = Math.max(0, (t - last) / (TAPER * last));
       const value = this.#step * waveform.value(t) * (0.5 + 0.5 * cos(Math.PI * beyond));
       if (value === 0) continue;
-      for (let m = 0, turn = 0; m < count; m++) {
+      for (let m = 0, turn = 0; m < this.#count; m++) {
         re[m]! += value * this.#cosine[turn]!;
         im[m]! -= value * this.#sine[turn]!;
         turn = (turn + n) % this.#period;
       }
     }
-    for (let m = 0; m < count; m++) {
+    for (let m = 0; m < this.#count; m++) {
       const phase = (this.#omega(m) * this.#step) / 2;
       const [x, y] = [re[m]!, im[m]!];
       re[m] = x * cos(phase) + y * sin(phase);
@@ -267,9 +265,13 @@ class Lines {
     }
   }
 
-  /** Adds (1/period) Σ_m S(ω_m) e^(jω_m t) at t = start + n·every steps to out[offset + n]. */
+  /**
+   * Adds (1/period) Σ_m S(ω_m) e^(jω_m t) at t = start + n·every steps to out[offset + n], as long as t lies within the
+   * period, after which nothing is left to add.
+   */
   addHistory(out: Float64Array, offset: number, instants: number, every: number, start: number): void {
     const seconds = this.#period * this.#step;
+    const within = Math.min(instants, Math.ceil((seconds - start) / (every * this.#step)));
     for (let m = 0; m < this.#count; m++) {
       const pair = (m === 0 ? 1 : 2) / seconds;
       const c = cos(this.#omega(m) * start);
@@ -277,20 +279,10 @@ class Lines {
       const re = pair * (this.#sumRe[m]! * c - this.#sumIm[m]! * s);
       const im = pair * (this.#sumIm[m]! * c + this.#sumRe[m]! * s);
       const advance = (m * every) % this.#period;
-      for (let n = 0, turn = 0; n < instants; n++) {
+      for (let n = 0, turn = 0; n < within; n++) {
         out[offset + n]! += re * this.#cosine[turn]! - im * this.#sine[turn]!;
         turn = (turn + advance) % this.#period;
       }
     }
   }
-}
-
-/** The last line whose |m W_m| is not faint. */
-function lastLine(re: Float64Array, im: Float64Array): number {
-  const level = (m: number) => m * m * (re[m]! * re[m]! + im[m]! * im[m]!);
-  let largest = 0;
-  for (let m = 0; m < re.length; m++) largest = Math.max(largest, level(m));
-  let last = re.length - 1;
-  while (last > 0 && level(last) < FAINTEST * FAINTEST * largest) last--;
-  return last;
 }

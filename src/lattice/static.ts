@@ -55,7 +55,7 @@ function tabulate(alpha: Vec3, reach: readonly [number, number, number]): Float6
   const slowest = 1 / Math.min(...alpha);
   const values = new Float64Array((reach[0] + 1) * (reach[1] + 1) * (reach[2] + 1));
   const { nodes, weights } = gaussLegendre(32);
-  const panels = 8;
+  const panels = 6;
   const bessel = reach.map((side) => new Float64Array(side + 1)) as [Float64Array, Float64Array, Float64Array];
   for (let panel = 0; panel < panels; panel++)
     for (let node = 0; node < nodes.length; node++) {

@@ -30,7 +30,7 @@ describe("the lattice's static Green's function", () => {
     const watson = 0.505462019717326 / 2;
     // Glasser & Boersma, J. Phys. A 33, 2000: u(1,1,0) = (5/12) u0 − 1/(2π² u0), u0 = 2g(0,0,0) (from memory).
     const diagonal = ((5 / 12) * 2 * watson - 1 / (4 * Math.PI ** 2 * watson)) / 2;
-    // 256 nodes of the rule, all terms positive: rounding grows as √256 at most.
+    // 192 nodes of the rule, all terms positive: rounding grows as √192 at most.
     expect(Math.abs(at(0, 0, 0) - watson)).toBeLessThan(4 * Number.EPSILON);
     expect(Math.abs(at(1, 0, 0) - (watson - 1 / 6))).toBeLessThan(4 * Number.EPSILON);
     expect(Math.abs(at(1, 1, 0) - diagonal)).toBeLessThan(4 * Number.EPSILON);
