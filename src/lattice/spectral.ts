@@ -21,7 +21,7 @@ import { SIX } from './radialOperator.ts';
  * the charge, 1/(jω), is left with the factor e^(−jκr) − 1, which removes it.
  *
  * The correction needs w alone, not its derivatives. Where a kink radiates more than a lattice resolves, the error's size
- * is still right (within 15 % for a double exponential of 5 steps' rise, 5 to 25 cells away), its shape is not.
+ * is still right (within 20 % for a double exponential of 5 steps' rise, 5 to 25 cells away), its shape is not.
  */
 
 /**

@@ -1,6 +1,9 @@
 import { expect, test } from 'vitest';
+import { predictLatticeErrorBySpectrum } from '../../src/lattice/spectral.ts';
 import { staticGreen } from '../../src/lattice/static.ts';
-import { type CaseSpec, latticeCase, randomCases } from '../lattice/cases.ts';
+import { makeWaveform } from '../../src/scenario/waveforms.ts';
+import { type CaseSpec, latticeCase, minus, normOf, randomCases } from '../lattice/cases.ts';
+import { griddedField, historyOf } from '../lattice/exactFields.ts';
 import { measure, type Outcome, print, summary } from '../lattice/measure.ts';
 import { yeeField } from '../lattice/yeeReference.ts';
 
@@ -24,23 +27,88 @@ test('random sources, lattices, media: predicted against measured error', () => 
   expect(spectrum['median factor']).toBeLessThanOrEqual(time['median factor']);
 });
 
-test("after a pulse with a net charge the run keeps the lattice's own static field", () => {
-  const spec: CaseSpec = {
-    source: 'edge',
-    cellSize: [1e-3, 1.3e-3, 0.8e-3],
-    relativePermittivity: 2,
-    courant: 0.95,
-    cellsPerWavelength: 8,
-    speed: 1,
-    wireLength: 0,
-    waveform: 'gaussian',
-    lead: 6,
+const oneEdge: CaseSpec = {
+  source: 'edge',
+  cellSize: [1e-3, 1.3e-3, 0.8e-3],
+  relativePermittivity: 2,
+  courant: 0.95,
+  cellsPerWavelength: 8,
+  speed: 1,
+  wireLength: 0,
+  waveform: 'gaussian',
+  lead: 6,
+  observers: [
+    [2, 0, 0],
+    [0, 0, 3],
+    [3, 2, -2],
+  ],
+};
+
+test('a kinked waveform: the spectrum still tells the size of the error', () => {
+  const rows: {
+    'rise, steps': number;
+    field: string;
+    'cells away': number;
+    'measured, %': number;
+    spectrum: number;
+  }[] = [];
+  for (const rise of [5, 15]) {
+    const c = latticeCase({
+      ...oneEdge,
+      cellSize: [1e-3, 1e-3, 1e-3],
+      observers: [
+        [5, 3, 2],
+        [12, 0, 4],
+        [16, 10, 10],
+      ],
+    });
+    const beta = 1 / (rise * c.lattice.timeStep);
+    const waveform = makeWaveform({ type: 'doubleExponential', amplitude: 1, alpha: beta / 20, beta });
+    const edges = { ...c.gridded.edges, waveforms: [waveform] };
+    const args = [edges, c.lattice, c.points, c.instants] as const;
+    const filaments = historyOf(griddedField(edges, c.lattice.cellSize, c.lattice.medium), c.points, c.instants);
+    const measured = minus(yeeField(...args), filaments);
+    const predicted = predictLatticeErrorBySpectrum(...args);
+    for (let point = 0; point < c.points.count; point++)
+      for (const first of [0, 3] as const) {
+        const size = (values: Float64Array) => normOf(values, c.instants.count, point, first);
+        rows.push({
+          'rise, steps': rise,
+          field: first === 0 ? 'E' : 'H',
+          'cells away': c.distances[point]!,
+          'measured, %': (100 * size(measured)) / size(filaments),
+          spectrum: size(predicted) / size(measured),
+        });
+      }
+  }
+  console.table(rows);
+  // Above some 5 cells a wavelength the amplitude is known to second order only, and a kink radiates there too.
+  for (const { spectrum } of rows) expect(Math.max(spectrum, 1 / spectrum)).toBeLessThan(1.25);
+});
+
+test('a dipole edge two to five cells away, 4 cells per shortest wavelength: still within 13 %', () => {
+  const result = measure({
+    ...oneEdge,
+    cellSize: [1e-3, 1e-3, 1e-3],
+    cellsPerWavelength: 4,
     observers: [
       [2, 0, 0],
-      [0, 0, 3],
-      [3, 2, -2],
+      [0, 0, 2],
+      [1, 1, 1],
+      [3, 0, 0],
+      [0, 3, 1],
+      [2, 2, 2],
+      [4, 0, 0],
+      [0, 0, 4],
     ],
-  };
+  });
+  print(result);
+  expect(summary(result.outcomes, 'time')['worst factor']).toBeLessThan(1.13);
+  expect(summary(result.outcomes, 'spectrum')['worst factor']).toBeLessThan(1.13);
+});
+
+test("after a pulse with a net charge the run keeps the lattice's own static field", () => {
+  const spec = oneEdge;
   const c = latticeCase(spec);
   const edges = c.gridded.edges;
   const values = yeeField(edges, c.lattice, c.points, c.instants);
