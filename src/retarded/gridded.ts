@@ -1,6 +1,7 @@
 import { exp, log } from '../elementary/elementary.ts';
 import type { GriddedSources, Pairs } from '../gridding/edges.ts';
-import type { Medium, Vec3 } from '../scenario/model.ts';
+import type { LinePiece } from '../scenario/curve.ts';
+import type { Axis, Medium, Vec3 } from '../scenario/model.ts';
 import type { Instants, SamplePoints } from '../trace/trace.ts';
 import { DelayGrid } from './delayGrid.ts';
 import { constantsOf } from './elements.ts';
@@ -51,6 +52,11 @@ export function griddedHistory(
     options.checks ?? 8,
   );
 }
+
+/** Of the adaptive quadrature that checks are made with; it is relative to the vector, of which one component is used. */
+const CHECK_TOLERANCE = 1e-11;
+
+const axisOf = ({ direction }: LinePiece): Axis => (direction[0] !== 0 ? 0 : direction[1] !== 0 ? 1 : 2);
 
 /** In cells. */
 const ON_EDGE = 1e-6;
@@ -190,14 +196,20 @@ export class GriddedIntegrator {
   #check(points: SamplePoints, values: Float64Array, checks: number): number {
     const { E, H, count } = this.#instants;
     const prepared = prepareGridded(this.#gridded, this.#origin, this.#cellSize, this.#medium);
-    const field = fieldOf(prepared, { potentials: false, tolerance: 1e-11 });
+    // E is fed by edges along itself, H by edges across it; charges feed E alone.
+    const fields = [0, 1, 2, 3, 4, 5].map((component) => {
+      const feeds = (axis: Axis) => (component < 3 ? axis === component : axis !== component - 3);
+      const integrals = prepared.integrals.filter(({ piece }) => feeds(axisOf(piece as LinePiece)));
+      const charges = component < 3 ? prepared.charges : [];
+      return fieldOf({ ...prepared, integrals, charges }, { potentials: false, tolerance: CHECK_TOLERANCE });
+    });
     let worst = 0;
     for (let n = 0; n < checks; n++) {
       // Multiples of two irrational numbers spread over sites and instants without a pattern.
       const m = Math.floor((((n + 1) * 0.7548776662466927) % 1) * points.count * 6);
       const i = Math.floor((((n + 1) * 0.5698402909980532) % 1) * count);
       const component = m % 6;
-      const exact = field(sitePosition(points, m), component < 3 ? E[i]! : H[i]!);
+      const exact = fields[component]!(sitePosition(points, m), component < 3 ? E[i]! : H[i]!);
       const own = (m - component) * count + (component < 3 ? 0 : 3 * count);
       let peak = 0;
       for (let j = own; j < own + 3 * count; j++) peak = Math.max(peak, Math.abs(values[j]!));
