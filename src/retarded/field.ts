@@ -1,4 +1,5 @@
 import type { Medium, Source, Vec3 } from '../scenario/model.ts';
+import type { Waveform } from '../scenario/waveform.ts';
 import {
   CHARGE,
   COEFFICIENTS,
@@ -135,16 +136,16 @@ function evaluate(
   const groups = settings.potentials ? [0, 1, 2, 3] : [0, 1];
   const sum = new Float64Array(QUANTITIES);
   const error = new Float64Array(4);
-  const noise = new Float64Array(4);
+  const floor = new Float64Array(4);
   for (;;) {
     sum.set(total);
     error.fill(0);
-    noise.set(rounding);
+    floor.set(rounding);
     for (const panel of panels) {
       for (let c = 0; c < QUANTITIES; c++) sum[c]! += panel.value[c]!;
       for (let g = 0; g < 4; g++) {
         error[g]! += panel.error[g]!;
-        noise[g]! += panel.rounding[g]!;
+        floor[g]! += panel.rounding[g]!;
       }
     }
     // B is measured against |E|/v and A against φ/v: after a pulse has passed they are zero to rounding.
@@ -154,7 +155,7 @@ function evaluate(
       Math.max(sizes[1]!, sizes[0]! / k.speed),
       Math.max(sizes[2]!, sizes[3]! * k.speed),
       Math.max(sizes[3]!, sizes[2]! / k.speed),
-    ].map((size, g) => Math.max(settings.tolerance * size - noise[g]!, noise[g]!));
+    ].map((size, g) => Math.max(settings.tolerance * size - floor[g]!, floor[g]!));
     const open = groups.filter((g) => error[g]! > limits[g]!);
     const worst = open.length === 0 ? -1 : worstPanel(panels, open, limits);
     const exhausted = evaluations + 2 * KRONROD_POINTS > settings.maxEvaluations;
@@ -167,10 +168,10 @@ function evaluate(
         H: [3, 4, 5].map((c) => sum[c]! / prepared.medium.permeability) as unknown as Vec3,
         phi: sum[SCALAR]! + no,
         A: [sum[VECTOR]! + no, sum[VECTOR + 1]! + no, sum[VECTOR + 2]! + no],
-        errorE: error[0]! + noise[0]!,
-        errorH: (error[1]! + noise[1]!) / prepared.medium.permeability,
-        errorPhi: error[2]! + noise[2]! + no,
-        errorA: error[3]! + noise[3]! + no,
+        errorE: error[0]! + floor[0]!,
+        errorH: (error[1]! + floor[1]!) / prepared.medium.permeability,
+        errorPhi: error[2]! + floor[2]! + no,
+        errorA: error[3]! + floor[3]! + no,
         evaluations,
         converged: open.length === 0,
         ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),
@@ -259,6 +260,7 @@ const terms = new TermList();
 const wave = new Float64Array(4);
 const samples = new Float64Array(KRONROD_POINTS * QUANTITIES);
 const difference = new Float64Array(QUANTITIES);
+const noise = new Float64Array(QUANTITIES);
 
 /** Gauss–Kronrod over one part of an integral. */
 function integrate(
@@ -277,6 +279,8 @@ function integrate(
   const rounding = new Float64Array(4);
   difference.fill(0);
   samples.fill(0);
+  noise.fill(0);
+  const [, noiseW, noiseSlope] = roundingsOf(waveform);
   for (let m = 0; m < KRONROD_POINTS; m++) {
     const s = (from + to) / 2 + half * kronrod.nodes[m]!;
     view.look(s);
@@ -292,8 +296,14 @@ function integrate(
       // Terms come in order of slowness, and those of one slowness share their element.
       if (integral.terms[n + 1]?.slowness === slowness || (w === 0 && slope === 0)) return;
       filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
-      for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++)
+      for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++) {
         samples[base + c]! += element[CURRENT + c]! * w + element[SLOPE + c]! * slope;
+        noise[c]! +=
+          half *
+          kronrod.weights[m]! *
+          Math.abs(factor) *
+          (Math.abs(element[CURRENT + c]!) * noiseW + Math.abs(element[SLOPE + c]!) * noiseSlope);
+      }
       w = 0;
       slope = 0;
     });
@@ -303,6 +313,7 @@ function integrate(
     }
   }
   const relative = ROUNDINGS + relativeRounding(view, from, to, t, waveform.timeScale);
+  let electric = 0;
   for (let g = 0; g < 4; g++) {
     const [first, last] = GROUPS[g]!;
     let size = 0;
@@ -319,7 +330,9 @@ function integrate(
       spread += half * kronrod.weights[m]! * Math.sqrt(off);
     }
     error[g] = kronrodError(groupNorm(difference, g), spread);
-    rounding[g] = relative * size;
+    electric = g === 0 ? size : electric;
+    if (g === 1) size = Math.max(size, electric / k.speed);
+    rounding[g] = relative * size + groupNorm(noise, g);
   }
   return { integral, view, from, to, value, error, rounding };
 }
@@ -340,24 +353,39 @@ function addTerm(
   rounding: Float64Array,
 ): void {
   const delay = list.delay[n]!;
-  prepared.waveforms[list.waveform[n]!]!.at(t - delay, 3, wave);
+  const waveform = prepared.waveforms[list.waveform[n]!]!;
+  if (t < delay) return;
+  waveform.at(t - delay, 3, wave);
   const base = n * COEFFICIENTS;
   const instant = Number.EPSILON * (Math.abs(t) + Math.abs(delay));
   const relative = ROUNDINGS + Number.EPSILON * list.geometry[n]!;
+  const [charge, current, slope] = roundingsOf(waveform);
+  const { speed } = prepared.medium;
+  // A rounding of a direction turns E into B: near an axis B is right relative to |E|/v only.
+  let electric = 0;
   for (let g = 0; g < 4; g++) {
     let own = 0;
     let shift = 0;
+    let sample = 0;
     for (let c = GROUPS[g]![0]; c < GROUPS[g]![1]; c++) {
       const q = list.coefficient[base + CHARGE + c]!;
       const w = list.coefficient[base + CURRENT + c]!;
       const d = list.coefficient[base + SLOPE + c]!;
-      const f = q * wave[0]! + w * wave[1]! + d * wave[2]!;
-      total[c]! += f;
+      total[c]! += q * wave[0]! + w * wave[1]! + d * wave[2]!;
       own += (Math.abs(q * wave[0]!) + Math.abs(w * wave[1]!) + Math.abs(d * wave[2]!)) ** 2;
       shift += (q * wave[1]! + w * wave[2]! + d * wave[3]!) ** 2;
+      sample += (Math.abs(q) * charge + Math.abs(w) * current + Math.abs(d) * slope) ** 2;
     }
-    rounding[g]! += relative * Math.sqrt(own) + instant * Math.sqrt(shift);
+    electric = g === 0 ? own : electric;
+    if (g === 1) own = Math.max(own, electric / (speed * speed));
+    rounding[g]! += relative * Math.sqrt(own) + instant * Math.sqrt(shift) + Math.sqrt(sample);
   }
+}
+
+/** What q, w and w′ of a waveform are rounded to: they are right relative to their peaks, not to their tails. */
+function roundingsOf({ peak, timeScale, finalCharge }: Waveform): readonly [number, number, number] {
+  const two = 2 * Number.EPSILON;
+  return [two * Math.max(Math.abs(finalCharge), peak * timeScale), two * peak, (two * peak) / timeScale];
 }
 
 /** All that has a closed form at `point`, as delayed waveforms. */
