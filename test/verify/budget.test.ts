@@ -107,8 +107,9 @@ describe('the parts can fail, each in its own way', () => {
     const bySpectrum = { ...free, values: predictGridFieldBySpectrum(...arguments_) };
     places.forEach((_, p) => {
       for (const field of ['E', 'H'] as const) {
-        const norm = Math.sqrt(sumOfSquares(exact.values, p, field, exact.instants.count));
-        if (norm < 1e-12) continue; // on the dipole's own axis there is no H
+        // On the dipole's own axis H vanishes but for the half cells its sites lie off it.
+        const strength = (f: 'E' | 'H') => Math.sqrt(sumOfSquares(exact.values, p, f, exact.instants.count));
+        if (field === 'H' && scenario.medium.impedance * strength('H') < 0.2 * strength('E')) continue;
         const measured = relative(free, ofGridded, exact, p, field);
         const ratio = relative(inTime, ofGridded, exact, p, field) / measured;
         const mismatch = relative(free, bySpectrum, exact, p, field);
