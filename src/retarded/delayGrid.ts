@@ -150,10 +150,11 @@ export interface RuleError {
   readonly error: readonly [number, number, number];
 }
 
-const TRIALS = 96;
+const TRIALS = 192;
 
 /**
- * Measures a rule on a waveform sampled every `step` seconds, at places spread evenly over its activity.
+ * Measures a rule on a waveform sampled every `step` seconds, at places spread over its activity, closer to each other the
+ * nearer to its start (a double exponential starts much faster than it ends).
  */
 export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleError {
   const peak: [number, number, number] = [0, 0, 0];
@@ -162,8 +163,9 @@ export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleE
   const sample = new Float64Array(3);
   const end = waveform.lastActivity(1e-3);
   for (let n = 0; n < TRIALS; n++) {
-    // Multiples of the golden ratio spread the places within a cell as evenly as those over the pulse.
-    const u = Math.floor((end * (n + 0.5)) / TRIALS / step) + ((n * 0.6180339887498949) % 1);
+    const part = (n + 0.5) / TRIALS;
+    // Multiples of the golden ratio spread the places within a cell, whatever cells they are in.
+    const u = Math.floor((end * part * part * part) / step) + ((n * 0.6180339887498949) % 1);
     waveform.at(u * step, 2, exact);
     const { times, weights } = stencil(rule, u);
     const sum = [0, 0, 0];

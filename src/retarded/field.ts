@@ -15,7 +15,7 @@ import {
   SLOPE,
   VECTOR,
 } from './elements.ts';
-import { delayRate, fronts, gradedCuts, onset, steepestBend } from './panels.ts';
+import { delayRate, frontRounding, fronts, gradedCuts, onset, steepestBend } from './panels.ts';
 import { type PieceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
 import { KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
@@ -126,7 +126,7 @@ function evaluate(
   for (const integral of prepared.integrals) {
     if (integral.potentialsOnly && !settings.potentials) continue;
     const view = viewOf(integral.piece, point);
-    addFronts(prepared, k, integral, view, t, total);
+    addFronts(prepared, k, integral, view, t, total, rounding);
     for (const [from, to] of partsOf(prepared, k, integral, view, t)) {
       panels.push(integrate(prepared, k, integral, view, from, to, t));
       evaluations += KRONROD_POINTS;
@@ -243,6 +243,7 @@ function addFronts(
   view: PieceView,
   t: number,
   total: Float64Array,
+  rounding: Float64Array,
 ): void {
   const jump = onset(prepared, integral);
   if (jump === 0 || integral.potentialsOnly) return;
@@ -251,7 +252,12 @@ function addFronts(
       const rate = delayRate(view, s, slowness, k.speed);
       if (rate === 0) continue;
       filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
-      for (let c = 0; c < QUANTITIES; c++) total[c]! += (factor * jump * element[SLOPE + c]!) / rate;
+      for (let c = 0; c < QUANTITIES; c++) {
+        front[c] = (factor * jump * element[SLOPE + c]!) / rate;
+        total[c]! += front[c]!;
+      }
+      const relative = frontRounding(view, rate, t, k.speed);
+      for (let g = 0; g < 4; g++) rounding[g]! += relative * groupNorm(front, g);
     }
 }
 
@@ -260,6 +266,7 @@ const terms = new TermList();
 const wave = new Float64Array(4);
 const samples = new Float64Array(KRONROD_POINTS * QUANTITIES);
 const difference = new Float64Array(QUANTITIES);
+const front = new Float64Array(QUANTITIES);
 const noise = new Float64Array(QUANTITIES);
 
 /** Gauss–Kronrod over one part of an integral. */

@@ -12,7 +12,7 @@ import {
   SLOPE,
 } from './elements.ts';
 import { addClosedTerms, refuseOnSource, SMALL_GAP } from './field.ts';
-import { delayRate, gradedCuts, onset } from './panels.ts';
+import { delayRate, frontRounding, gradedCuts, onset } from './panels.ts';
 import { crossing, type PieceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
 import { KRONROD_POINTS, kronrod } from './quadrature.ts';
@@ -104,6 +104,8 @@ class Site {
   #size = 0;
   #sampling = 0;
   #rounding = 0;
+  /** rounding of a jump's front, which one instant feels at a time */
+  #front = 0;
 
   /** roundings that an instant is worth, by waveform */
   readonly #instant: readonly number[];
@@ -160,7 +162,8 @@ class Site {
     for (let round = 0, grading = 1; ; round++, grading /= 2) {
       out.set(closed);
       [this.#size, this.#sampling, this.#rounding] = closedSize;
-      if (views.length === 0) break;
+      if (views.length === 0) return this.#sampling + this.#rounding;
+      this.#front = 0;
       for (const list of [...this.#nodes, ...this.#differences]) list.clear();
       for (const { integral, view } of views) this.#addNodes(integral, view, quantity, scale, first, grading, out);
       this.#addHistories(out, this.#nodes);
@@ -169,9 +172,9 @@ class Site {
       const quadrature = largest(error);
       // A component that vanishes by symmetry is measured against what cancels in it.
       const limit = this.tolerance * Math.max(largest(out), 1e-3 * this.#size);
-      if (quadrature <= limit || round === REFINEMENTS) return quadrature + this.#sampling + this.#rounding;
+      if (quadrature <= limit || round === REFINEMENTS)
+        return quadrature + this.#sampling + this.#rounding + this.#front;
     }
-    return this.#sampling + this.#rounding;
   }
 
   #addHistories(out: Float64Array, lists: readonly ElementList[]): void {
@@ -256,7 +259,9 @@ class Site {
         const rate = delayRate(view, s, slowness, speed);
         if (rate === 0) continue;
         filamentElement(this.#k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
-        out[n]! += (scale * factor * jump * element[SLOPE + quantity]!) / rate;
+        const front = (scale * factor * jump * element[SLOPE + quantity]!) / rate;
+        out[n]! += front;
+        this.#front = Math.max(this.#front, Math.abs(front) * frontRounding(view, rate, first + n * grid.step, speed));
       }
     }
   }

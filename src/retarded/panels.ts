@@ -50,5 +50,13 @@ export function delayRate(view: PieceView, s: number, slowness: number, speed: n
   return Math.abs(slowness - (view.x * view.sx + view.y * view.sy + view.z * view.sz) / (view.r * speed));
 }
 
+/**
+ * Relative rounding of a front's D/|dτ/ds| at the place left in `view`: a rounding of the instant moves the front by
+ * δt/|dτ/ds|, over which dτ/ds changes at a rate of about 1/(vR).
+ */
+export function frontRounding(view: PieceView, rate: number, t: number, speed: number): number {
+  return Number.EPSILON * (8 + (2 * Math.abs(t)) / (speed * view.r * rate * rate));
+}
+
 export const steepestBend = (integral: Integral, speed: number): number =>
   integral.terms.reduce((most, { slowness }) => Math.max(most, Math.abs(slowness * speed)), 0);
