@@ -6,8 +6,7 @@ import type { Spectra } from '../compare/spectrum.ts';
 import { decibels } from '../elementary/elementary.ts';
 import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import type { ObserverTrace } from '../files/traces.ts';
-import type { Markup } from './markup.ts';
-import { type Chart, chartSvg, type Mark, type Series } from './svg.ts';
+import type { Chart, Mark, Series } from './svg.ts';
 
 type Point = readonly [number, number];
 
@@ -46,23 +45,21 @@ function timeChart(
 }
 
 /** What both solvers saw of one component at an observer. */
-export function traceChart(trace: ObserverTrace): Markup {
+export function traceChart(trace: ObserverTrace): Chart {
   const { grid, exact } = trace.signals;
-  return chartSvg(
-    timeChart(
-      trace,
-      `${trace.component}, observer ${trace.observer}`,
-      'Field against time: exact solid, grid solver dashed.',
-      [
-        ...(exact ? [{ name: 'exact', colour: 'exact' as const, values: exact }] : []),
-        ...(grid ? [{ name: 'grid solver', colour: 'grid' as const, dashed: true, values: grid }] : []),
-      ],
-    ),
+  return timeChart(
+    trace,
+    `${trace.component}, observer ${trace.observer}`,
+    'Field against time: exact solid, grid solver dashed.',
+    [
+      ...(exact ? [{ name: 'exact', colour: 'exact' as const, values: exact }] : []),
+      ...(grid ? [{ name: 'grid solver', colour: 'grid' as const, dashed: true, values: grid }] : []),
+    ],
   );
 }
 
 /** The difference and the parts it is the sum of. */
-export function partsChart(trace: ObserverTrace): Markup | null {
+export function partsChart(trace: ObserverTrace): Chart | null {
   const { grid, exact } = trace.signals;
   if (!grid || !exact) return null;
   const parts = PARTS.flatMap((part) => {
@@ -75,18 +72,16 @@ export function partsChart(trace: ObserverTrace): Markup | null {
     thin: true,
     values: grid.map((g, n) => g - exact[n]!),
   };
-  return chartSvg(
-    timeChart(
-      trace,
-      `${trace.component}, observer ${trace.observer}: the difference and its parts`,
-      'The difference against time, and the parts that add up to it.',
-      [total, ...parts],
-    ),
+  return timeChart(
+    trace,
+    `${trace.component}, observer ${trace.observer}: the difference and its parts`,
+    'The difference against time, and the parts that add up to it.',
+    [total, ...parts],
   );
 }
 
 /** Spectra of both solvers and of their difference, in decibels of the exact peak, with the trusted band shaded. */
-export function spectrumChart(observer: ObserverResult, field: Field, spectra: Spectra): Markup | null {
+export function spectrumChart(observer: ObserverResult, field: Field, spectra: Spectra): Chart | null {
   const errors = observer[field];
   const peak = spectra.exact.reduce((a, b) => Math.max(a, b), 0);
   if (!errors || peak === 0) return null;
@@ -100,7 +95,7 @@ export function spectrumChart(observer: ObserverResult, field: Field, spectra: S
     limit.status === 'limit' || limit.status === 'noEnergyAbove'
       ? [{ axis: 'x', at: limit.frequency, label: formatQuantity(limit.frequency, 'Hz', 2) }]
       : [];
-  return chartSvg({
+  return {
     title: `${field} by frequency, observer ${observer.name}`,
     description: 'Spectra in decibels of the exact peak; shaded is the band within the tolerance.',
     x: { label: 'frequency', unit: 'Hz', scale: 'linear', domain: [0, highest[0] * 1.3] },
@@ -112,7 +107,7 @@ export function spectrumChart(observer: ObserverResult, field: Field, spectra: S
     ],
     marks,
     ...(marks.length > 0 ? { shaded: [lowEnd, marks[0]!.at] as const } : {}),
-  });
+  };
 }
 
 /** Points and lines of 95th percentiles in bins, against a logarithmic distance; red where outside the tolerance. */
@@ -121,7 +116,7 @@ function percentileChart(
   tolerance: number,
   words: Pick<Chart, 'title' | 'description'> & { readonly distance: string },
   extras: Pick<Chart, 'marks' | 'shaded'>,
-): Markup | null {
+): Chart | null {
   const all = [...bins.E, ...bins.H];
   if (all.length === 0) return null;
   const errors = [...all.map(({ percentile95 }) => percentile95), tolerance].filter((e) => e > 0);
@@ -134,7 +129,7 @@ function percentileChart(
   });
   const marks = extras.marks ?? [];
   const places = [...all.flatMap(({ from, to }) => [from, to]), ...marks.map(({ at }) => at)];
-  return chartSvg({
+  return {
     title: words.title,
     description: words.description,
     x: {
@@ -154,7 +149,7 @@ function percentileChart(
     series: [series('E'), series('H')],
     ...extras,
     marks: [{ axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }, ...marks],
-  });
+  };
 }
 
 const distanceMark = (at: number, word: string): Mark => ({
@@ -164,7 +159,7 @@ const distanceMark = (at: number, word: string): Mark => ({
 });
 
 /** The point error without walls against distance to the source, and what it trusts. */
-export function distanceChart({ verdict, tolerance }: Result): Markup | null {
+export function distanceChart({ verdict, tolerance }: Result): Chart | null {
   const { closest, farthest } = verdict;
   const trusted = 'distance' in closest && 'distance' in farthest && closest.distance < farthest.distance;
   return percentileChart(
@@ -185,7 +180,7 @@ export function distanceChart({ verdict, tolerance }: Result): Markup | null {
 }
 
 /** The total point error against distance to the walls. */
-export function wallChart({ verdict, tolerance }: Result): Markup | null {
+export function wallChart({ verdict, tolerance }: Result): Chart | null {
   const { wallClearance } = verdict;
   return percentileChart(
     { E: wallClearance.E.bins, H: wallClearance.H.bins },

@@ -6,7 +6,7 @@ import { distanceChart, partsChart, spectrumChart, strongestTrace, traceChart, w
 import { Markup, markup } from './markup.ts';
 import { paletteCss } from './palette.ts';
 import type { Report } from './report.ts';
-import { CHART_CSS } from './svg.ts';
+import { CHART_CSS, type Chart, chartSvg } from './svg.ts';
 import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
 
 const CSS = `${paletteCss()}
@@ -76,13 +76,13 @@ ${repeatSection(result, command)}
   return page.text;
 }
 
-function section(title: string, charts: readonly (Markup | null)[]): Markup | null {
+function section(title: string, charts: readonly (Chart | null)[]): Markup | null {
   const shown = charts.filter((chart) => chart !== null);
   return shown.length === 0 ? null : markup`<h2>${title}</h2>${figures(shown)}`;
 }
 
-const figures = (charts: readonly Markup[]): Markup =>
-  markup`<div class="charts">${charts.map((chart) => markup`<figure>${chart}</figure>`)}</div>`;
+const figures = (charts: readonly Chart[]): Markup =>
+  markup`<div class="charts">${charts.map((chart) => markup`<figure>${chartSvg(chart)}</figure>`)}</div>`;
 
 function budgetSection(result: Result): Markup {
   const rows = budgetRows(result.budget);

@@ -47,24 +47,52 @@ export interface Chart {
   readonly shaded?: readonly [number, number];
 }
 
-const WIDTH = 560;
-const HEIGHT = 280;
-const PLOT = { left: 62, right: WIDTH - 14, top: 54, bottom: HEIGHT - 42 } as const;
+/** Width and height of a chart, pixels of the view box. */
+export interface ChartSize {
+  readonly width: number;
+  readonly height: number;
+}
 
-type Position = (value: number) => number;
+const REPORT_SIZE: ChartSize = { width: 560, height: 280 };
+
+/** Where the plot lies in the chart, and what value lies where in it, pixels of the view box. */
+export interface ChartLayout extends ChartSize {
+  readonly left: number;
+  readonly right: number;
+  readonly top: number;
+  readonly bottom: number;
+  readonly x: Position;
+  readonly y: Position;
+}
+
+export type Position = (value: number) => number;
+
+/** The layout of a chart drawn at a size. */
+export function chartLayout(chart: Pick<Chart, 'x' | 'y'>, { width, height }: ChartSize = REPORT_SIZE): ChartLayout {
+  const [left, right, top, bottom] = [62, width - 14, 54, height - 42];
+  return {
+    width,
+    height,
+    left,
+    right,
+    top,
+    bottom,
+    x: positionOf(chart.x, left, right),
+    y: positionOf(chart.y, bottom, top),
+  };
+}
 
 /** The chart as one SVG element. */
-export function chartSvg(chart: Chart): Markup {
-  const x = positionOf(chart.x, PLOT.left, PLOT.right);
-  const y = positionOf(chart.y, PLOT.bottom, PLOT.top);
-  return markup`<svg class="chart" xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${WIDTH} ${HEIGHT}" role="img">
+export function chartSvg(chart: Chart, size: ChartSize = REPORT_SIZE): Markup {
+  const at = chartLayout(chart, size);
+  return markup`<svg class="chart" xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${at.width} ${at.height}" role="img">
 <title>${chart.title}</title><desc>${chart.description}</desc>
-<text class="title" x="${PLOT.left}" y="16">${chart.title}</text>
-${legend(chart.series)}
-${shade(chart.shaded, x)}
-${xAxis(chart.x, x)}${yAxis(chart.y, y)}
-${chart.series.map((series) => path(series, chart, x, y))}
-${(chart.marks ?? []).map((mark, i) => markLine(mark, mark.axis === 'x' ? x : y, i))}
+<text class="title" x="${at.left}" y="16">${chart.title}</text>
+${legend(chart.series, at)}
+${shade(chart.shaded, at)}
+${xAxis(chart.x, at)}${yAxis(chart.y, at)}
+${chart.series.map((series) => path(series, chart, at))}
+${(chart.marks ?? []).map((mark, i) => markLine(mark, at, i))}
 </svg>`;
 }
 
@@ -114,26 +142,26 @@ function ticksOf(axis: Axis, count: number): { readonly ticks: readonly Tick[]; 
 
 const withUnit = (label: string, unit: string): string => (unit === '' ? label : `${label} (${unit})`);
 
-function xAxis(axis: Axis, x: Position): Markup {
-  const { ticks, unit } = ticksOf(axis, 7);
+function xAxis(axis: Axis, { x, left, right, bottom, width, height }: ChartLayout): Markup {
+  const { ticks, unit } = ticksOf(axis, Math.round(width / 80));
   return markup`${ticks.map(
     ({ value, text }) =>
-      markup`<line class="rule" x1="${x(value)}" x2="${x(value)}" y1="${PLOT.bottom}" y2="${PLOT.bottom + 4}"/><text x="${x(value)}" y="${PLOT.bottom + 17}" text-anchor="middle">${text}</text>`,
-  )}<line class="rule" x1="${PLOT.left}" x2="${PLOT.right}" y1="${PLOT.bottom}" y2="${PLOT.bottom}"/><text x="${(PLOT.left + PLOT.right) / 2}" y="${HEIGHT - 8}" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
+      markup`<line class="rule" x1="${x(value)}" x2="${x(value)}" y1="${bottom}" y2="${bottom + 4}"/><text x="${x(value)}" y="${bottom + 17}" text-anchor="middle">${text}</text>`,
+  )}<line class="rule" x1="${left}" x2="${right}" y1="${bottom}" y2="${bottom}"/><text x="${(left + right) / 2}" y="${height - 8}" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
 }
 
-function yAxis(axis: Axis, y: Position): Markup {
+function yAxis(axis: Axis, { y, left, right, top, bottom }: ChartLayout): Markup {
   const { ticks, unit } = ticksOf(axis, 5);
-  const middle = (PLOT.top + PLOT.bottom) / 2;
+  const middle = (top + bottom) / 2;
   return markup`${ticks.map(
     ({ value, text }) =>
-      markup`<line class="${value === 0 && axis.domain[0] < 0 ? 'rule zero' : 'rule'}" x1="${PLOT.left}" x2="${PLOT.right}" y1="${y(value)}" y2="${y(value)}"/><text x="${PLOT.left - 6}" y="${y(value) + 4}" text-anchor="end">${text}</text>`,
+      markup`<line class="${value === 0 && axis.domain[0] < 0 ? 'rule zero' : 'rule'}" x1="${left}" x2="${right}" y1="${y(value)}" y2="${y(value)}"/><text x="${left - 6}" y="${y(value) + 4}" text-anchor="end">${text}</text>`,
   )}<text transform="translate(14 ${middle}) rotate(-90)" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
 }
 
 /** Names beside a stroke of their line, in a row under the title. A character is about 6.4 pixels wide. */
-function legend(series: readonly Series[]): Markup {
-  let left = PLOT.left;
+function legend(series: readonly Series[], { left: start }: ChartLayout): Markup {
+  let left = start;
   const entries = series.map(({ name, colour, dashed, thin }) => {
     const x = left;
     left += 26 + name.length * 6.4 + 12;
@@ -142,16 +170,16 @@ function legend(series: readonly Series[]): Markup {
   return markup`<g>${entries}</g>`;
 }
 
-function shade(range: Chart['shaded'], x: Position): Markup | null {
+function shade(range: Chart['shaded'], { x, left, right, top, bottom }: ChartLayout): Markup | null {
   if (!range) return null;
-  const [from, to] = range.map((value) => Math.min(PLOT.right, Math.max(PLOT.left, x(value)))) as [number, number];
-  return markup`<rect class="shaded" x="${from}" y="${PLOT.top}" width="${round(Math.max(0, to - from))}" height="${PLOT.bottom - PLOT.top}"/>`;
+  const [from, to] = range.map((value) => Math.min(right, Math.max(left, x(value)))) as [number, number];
+  return markup`<rect class="shaded" x="${from}" y="${top}" width="${round(Math.max(0, to - from))}" height="${bottom - top}"/>`;
 }
 
-function path(series: Series, chart: Chart, x: Position, y: Position): Markup {
-  const clampY = (value: number) => Math.min(PLOT.bottom, Math.max(PLOT.top, y(value)));
-  const pixels = thinned(series.points).map((p) => [x(p[0]), clampY(p[1])] as [number, number]);
-  const d = line()(pixels.filter(([px]) => px >= PLOT.left - 0.05 && px <= PLOT.right + 0.05)) ?? '';
+function path(series: Series, chart: Chart, { x, y, left, right, top, bottom, width }: ChartLayout): Markup {
+  const clampY = (value: number) => Math.min(bottom, Math.max(top, y(value)));
+  const pixels = thinned(series.points, width).map((p) => [x(p[0]), clampY(p[1])] as [number, number]);
+  const d = line()(pixels.filter(([px]) => px >= left - 0.05 && px <= right + 0.05)) ?? '';
   const dots = series.dots
     ? series.points.map(
         (p) =>
@@ -166,8 +194,11 @@ const readout = (point: readonly [number, number], { x, y }: Chart): string =>
   `${x.label} ${point[0]}${x.unit && ` ${x.unit}`}, ${y.label} ${point[1]}${y.unit && ` ${y.unit}`}`;
 
 /** Points beyond three a pixel column: of each run, its first, lowest, highest and last. */
-function thinned(points: readonly (readonly [number, number])[]): readonly (readonly [number, number])[] {
-  const run = Math.ceil(points.length / WIDTH);
+function thinned(
+  points: readonly (readonly [number, number])[],
+  width: number,
+): readonly (readonly [number, number])[] {
+  const run = Math.ceil(points.length / width);
   if (run <= 3) return points;
   const kept: (readonly [number, number])[] = [];
   for (let start = 0; start < points.length; start += run) {
@@ -183,13 +214,13 @@ function thinned(points: readonly (readonly [number, number])[]): readonly (read
   return kept;
 }
 
-function markLine({ axis, at, label }: Mark, position: Position, order: number): Markup {
-  const p = position(at);
+function markLine({ axis, at, label }: Mark, { x, y, left, right, top, bottom }: ChartLayout, order: number): Markup {
+  const p = (axis === 'x' ? x : y)(at);
   if (axis === 'y')
-    return markup`<line class="mark" x1="${PLOT.left}" x2="${PLOT.right}" y1="${p}" y2="${p}"/><text class="mark-label" x="${PLOT.left + 4}" y="${p + 14}">${label}</text>`;
-  if (p < PLOT.left || p > PLOT.right) return markup``;
-  const anchor = p > (PLOT.left + PLOT.right) / 2 ? 'end' : 'start';
+    return markup`<line class="mark" x1="${left}" x2="${right}" y1="${p}" y2="${p}"/><text class="mark-label" x="${left + 4}" y="${p + 14}">${label}</text>`;
+  if (p < left || p > right) return markup``;
+  const anchor = p > (left + right) / 2 ? 'end' : 'start';
   // Neighbouring labels step down, so that they do not lie on each other.
-  const y = PLOT.top + 12 + 14 * (order % 3);
-  return markup`<line class="mark" x1="${p}" x2="${p}" y1="${PLOT.top}" y2="${PLOT.bottom}"/><text class="mark-label" x="${anchor === 'end' ? p - 4 : p + 4}" y="${y}" text-anchor="${anchor}">${label}</text>`;
+  const row = top + 12 + 14 * (order % 3);
+  return markup`<line class="mark" x1="${p}" x2="${p}" y1="${top}" y2="${bottom}"/><text class="mark-label" x="${anchor === 'end' ? p - 4 : p + 4}" y="${row}" text-anchor="${anchor}">${label}</text>`;
 }
