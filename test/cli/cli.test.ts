@@ -1,0 +1,264 @@
+import { spawn, spawnSync } from 'node:child_process';
+import { existsSync, mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { get } from 'node:http';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { resultSchema } from '../../src/compare/result.ts';
+import { readTraces } from '../../src/files/traces.ts';
+import { EXAMPLES } from '../../src/scenario/examples.ts';
+
+/** The built command line, as it is installed. */
+const MAIN = new URL('../../dist/main.js', import.meta.url).pathname;
+
+let folder = '';
+beforeAll(() => {
+  folder = mkdtempSync(join(tmpdir(), 'fieldassay-'));
+});
+afterAll(() => rmSync(folder, { recursive: true, force: true }));
+
+const run = (...args: string[]) => {
+  const { status, stdout, stderr } = spawnSync(process.execPath, [MAIN, ...args], { cwd: folder, encoding: 'utf8' });
+  return { status, stdout, stderr };
+};
+
+/** A dipole in a small box: a second of work. */
+const small = (more: object = {}) => ({
+  title: 'Small <b>box</b>',
+  sources: [
+    {
+      type: 'dipole',
+      at: ['1 mm', '-2 mm', '3 mm'],
+      direction: [0.2, 0, 1],
+      length: '10 mm',
+      current: { waveform: { type: 'gaussianDerivative', amplitude: '1 A', delay: '1.8 ns', sigma: '0.2 ns' } },
+    },
+  ],
+  grid: { cellSize: '8 mm', box: { from: ['-88 mm', '-88 mm', '-88 mm'], to: ['88 mm', '88 mm', '88 mm'] } },
+  duration: '3.4 ns',
+  observers: [
+    { name: '=A1', at: ['70 mm', '20 mm', '10 mm'] },
+    { name: 'far', at: ['0.3 m', 0, 0] },
+  ],
+  ...more,
+});
+
+const write = (name: string, content: unknown) => {
+  const path = join(folder, name);
+  writeFileSync(path, typeof content === 'string' ? content : JSON.stringify(content));
+  return path;
+};
+
+describe('compare', () => {
+  test('writes result.json, traces.csv and report.html, which agree with each other', () => {
+    const { status, stdout, stderr } = run('compare', write('small.json', small()), '--out', 'out', '--threads', '2');
+    expect(stderr).toContain('the grid in its box');
+    expect(status).toBe(0);
+    expect(stdout).toMatch(/^Small .*\nWithin 5 %: /);
+    expect(readdirSync(join(folder, 'out')).sort()).toEqual(['report.html', 'result.json', 'traces.csv']);
+
+    const result = resultSchema.parse(JSON.parse(readFileSync(join(folder, 'out/result.json'), 'utf8')));
+    expect(stdout).toContain(result.verdict.sentence);
+    const [inside, far] = result.observers;
+    expect(far!.inside).toBe(false);
+    expect(far!.extrapolated!.exactPeakE).toBeGreaterThan(0);
+
+    // The four parts add up to the difference, in what a user reads back; and the traces give the observer's figures.
+    const traces = readTraces(readFileSync(join(folder, 'out/traces.csv'), 'utf8'));
+    expect(traces).toHaveLength(12);
+    let difference = 0;
+    let reference = 0;
+    for (const { observer, component, signals } of traces) {
+      const { grid, exact, boundary, lattice, gridding, quadrature } = signals;
+      if (observer !== '=A1') {
+        expect(grid).toBeUndefined();
+        continue;
+      }
+      const peak = exact!.reduce((most, x) => Math.max(most, Math.abs(x)), 0);
+      grid!.forEach((g, n) => {
+        const parts = boundary![n]! + lattice![n]! + gridding![n]! + quadrature![n]!;
+        expect(Math.abs(parts - (g - exact![n]!))).toBeLessThan(1e-13 * Math.max(peak, 1e-6));
+        if (component.startsWith('E')) {
+          difference += (g - exact![n]!) ** 2;
+          reference += exact![n]! ** 2;
+        }
+      });
+    }
+    expect(Math.abs(Math.sqrt(difference / reference) / inside!.E!.relativeL2! - 1)).toBeLessThan(1e-9);
+
+    const report = readFileSync(join(folder, 'out/report.html'), 'utf8');
+    expect(report).toContain('Small &lt;b&gt;box&lt;/b&gt;');
+    expect(report).not.toContain('<b>box');
+    expect(report).not.toMatch(/<script|src=|https?:/i);
+  });
+
+  test('one thread or three, and once more: the same numbers but for timings and environment', () => {
+    const scenario = write('again.json', small());
+    const results = ['1', '3', '3'].map((threads) => {
+      const { stdout } = run('compare', scenario, '--json', '--threads', threads);
+      const { timings: _, environment: __, ...rest } = JSON.parse(stdout);
+      return rest;
+    });
+    expect(results[1]).toEqual(results[0]);
+    expect(results[2]).toEqual(results[0]);
+  });
+
+  test('status 1 when the error is outside the tolerance', () => {
+    const { status, stdout } = run('compare', write('strict.json', small({ tolerance: '0.01 %' })));
+    expect(status).toBe(1);
+    expect(stdout).toContain('Within 0.01 %: ');
+  });
+
+  test('a finer grid is trusted nearer to the source', () => {
+    const closest = ['16 mm', '8 mm'].map((cellSize) => {
+      const scenario = small({ grid: { ...small().grid, cellSize }, observers: [] });
+      const { stdout } = run('compare', write('step.json', scenario), '--json');
+      return JSON.parse(stdout).verdict.closest.best.error as number;
+    });
+    expect(closest[1]).toBeLessThan(closest[0]! / 2);
+  });
+
+  test.each([
+    ['a broken file', '{ "sources": [', 'line 1'],
+    ['an unknown key', { ...small(), colour: 'red' }, 'colour'],
+    ['a Courant number above the limit', small({ grid: { ...small().grid, courant: 1.1 } }), 'grid.courant'],
+    ['an observer on the source', small({ observers: [{ name: 'A', at: [0.001, -0.002, 0.003] }] }), 'observers.0.at'],
+    ['a length without a number', small({ duration: 'ns' }), 'duration'],
+    ['a wrong unit', small({ duration: '3 mm' }), 'duration'],
+  ])('%s: refused with status 2, the place named, nothing written', (_, content, place) => {
+    const { status, stdout, stderr } = run('compare', write('bad.json', content), '--out', 'never');
+    expect(status).toBe(2);
+    expect(stdout).toBe('');
+    expect(stderr).toContain(place);
+    expect(existsSync(join(folder, 'never'))).toBe(false);
+  });
+
+  test('a missing file, an unknown option and a senseless thread count: status 2', () => {
+    expect(run('compare', 'no-such-file.json').stderr).toContain('no-such-file.json could not be read');
+    for (const args of [
+      ['compare', 'no-such-file.json'],
+      ['compare', '--colour'],
+      ['compare', '--threads', '0'],
+      ['fly'],
+    ])
+      expect(run(...args).status).toBe(2);
+  });
+
+  test('a folder that cannot be made: status 3 and the reason', () => {
+    write('in-the-way', 'a file');
+    const { status, stderr } = run('compare', write('small2.json', small()), '--out', 'in-the-way/out');
+    expect(status).toBe(3);
+    expect(stderr).toContain('could not be made');
+  });
+
+  test('Ctrl-C ends it within a second, writing nothing', async () => {
+    const slow = small({ grid: { ...small().grid, cellSize: '2 mm' } });
+    const child = spawn(process.execPath, [MAIN, 'compare', write('slow.json', slow), '--out', 'stopped'], {
+      cwd: folder,
+    });
+    await new Promise<void>((started) => child.stderr.once('data', () => started()));
+    const asked = performance.now();
+    child.kill('SIGINT');
+    const status = await new Promise((ended) => child.once('exit', ended));
+    expect(performance.now() - asked).toBeLessThan(1500);
+    expect(status).toBe(130);
+    expect(existsSync(join(folder, 'stopped'))).toBe(false);
+  });
+});
+
+describe('exact', () => {
+  test('gives the field in input order, and refuses a point on a source with its row', () => {
+    const scenario = write('loop.json', EXAMPLES['small-loop']);
+    const points = write('points.csv', 'x,y,z,t\n0.1,0,0.02,1e-9\n0.5,0.5,0.5,3e-9\n');
+    expect(run('exact', scenario, '--points', points, '--out', 'field.csv').status).toBe(0);
+    const [header, first] = readFileSync(join(folder, 'field.csv'), 'utf8').split('\n');
+    expect(header).toBe('x,y,z,t,Ex,Ey,Ez,Hx,Hy,Hz,Bx,By,Bz,phi,Ax,Ay,Az,errorE,errorH');
+    expect(first!.split(',').slice(0, 4)).toEqual(['0.1', '0', '0.02', '1e-9']);
+
+    const onWire = write('on.csv', 'x,y,z,t\n0.3,0,0,1e-9\n0,0,0.01,1e-9\n');
+    const refused = run(
+      'exact',
+      write('cable.json', EXAMPLES['bench-cable-pulse']),
+      '--points',
+      onWire,
+      '--out',
+      'no.csv',
+    );
+    expect(refused.status).toBe(2);
+    expect(refused.stderr).toMatch(/row 3.*“cable”/s);
+    expect(existsSync(join(folder, 'no.csv'))).toBe(false);
+  });
+
+  test.each([
+    ['x,y,t\n1,2,3\n', 'x,y,z,t'],
+    ['x,y,z,t\n1,2,abc,4\n', 'row 2: z is “abc”'],
+    ['x,y,z,t\n1,2,,4\n', 'row 2: z is “”'],
+  ])('a points file that cannot be used is refused: %s', (content, said) => {
+    const { status, stderr } = run('exact', 'small-loop', '--points', write('p.csv', content), '--out', 'no.csv');
+    expect(status).toBe(2);
+    expect(stderr).toContain(said);
+  });
+});
+
+describe('schema and examples', () => {
+  test('the schema is JSON with titles and units; every example loads from what is printed', () => {
+    expect(JSON.parse(run('schema').stdout).type).toBe('object');
+    const names = run('examples')
+      .stdout.trim()
+      .split('\n')
+      .map((line) => line.split(/\s/)[0]!);
+    expect(names).toEqual(Object.keys(EXAMPLES));
+    expect(names).toHaveLength(5);
+    expect(JSON.parse(run('examples', names[2]!).stdout)).toEqual(EXAMPLES['small-loop']);
+    expect(run('examples', 'no-such').status).toBe(2);
+  });
+
+  test('every command has help with an example', () => {
+    for (const command of ['compare', 'exact', 'schema', 'examples']) {
+      const { status, stdout } = run(command, '--help');
+      expect(status).toBe(0);
+      expect(stdout).toContain('Example: ');
+    }
+  });
+});
+
+describe('serve', () => {
+  test('the report, on the loopback address, to its own host only, files of the folder only', async () => {
+    const child = spawn(process.execPath, [MAIN, 'compare', write('s.json', small()), '--out', 'served', '--serve'], {
+      cwd: folder,
+    });
+    try {
+      const url = await new Promise<URL>((found) => {
+        let text = '';
+        child.stdout.on('data', (chunk) => {
+          text += chunk;
+          const match = /http:\/\/[\d.]+:\d+\//.exec(text);
+          if (match) found(new URL(match[0]));
+        });
+      });
+      expect(url.hostname).toBe('127.0.0.1');
+      const ask = (path: string, headers = {}) =>
+        new Promise<{ status: number; headers: Record<string, unknown>; body: string }>((done) => {
+          get({ host: url.hostname, port: url.port, path, headers }, (response) => {
+            let body = '';
+            response.on('data', (chunk) => {
+              body += chunk;
+            });
+            response.on('end', () => done({ status: response.statusCode!, headers: response.headers, body }));
+          });
+        });
+      const page = await ask('/');
+      expect(page.status).toBe(200);
+      expect(page.body).toContain('Within 5 %');
+      expect(page.headers['content-security-policy']).toContain("default-src 'none'");
+      expect(page.headers['cross-origin-opener-policy']).toBe('same-origin');
+      expect((await ask('/result.json')).status).toBe(200);
+      expect((await ask('/', { host: 'example.org' })).status).toBe(421);
+      for (const path of ['/../s.json', '/%2e%2e/s.json', '/..%2fs.json', '/nothing'])
+        expect((await ask(path)).status).toBe(404);
+    } finally {
+      child.kill('SIGINT');
+      await new Promise((ended) => child.once('exit', ended));
+    }
+  });
+});
