@@ -1,8 +1,6 @@
 import { Command, CommanderError, InvalidArgumentError } from 'commander';
-import { partSignals } from '../compare/budget.ts';
 import { withinTolerance } from '../compare/result.ts';
-import { observerTraces, writeTraces } from '../files/traces.ts';
-import { reportHtml } from '../report/html.ts';
+import { RESULT_FILES, resultFile } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
 import { resultText } from '../report/text.ts';
 import { type Comparison, compareSolvers, Refusal } from '../run/compare.ts';
@@ -98,7 +96,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
         process.stdout.write(
           resultText(result, {
             colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
-            written: options.out ? Object.keys(FILES).map((file) => `${options.out}/${file}`) : [],
+            written: options.out ? RESULT_FILES.map((file) => `${options.out}/${file}`) : [],
           }),
         );
       end(withinTolerance(result) ? DONE : OUTSIDE);
@@ -163,26 +161,8 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
   }
 }
 
-/** Files of a result folder. */
-const FILES = { 'result.json': resultJson, 'traces.csv': null, 'report.html': null } as const;
-
-function filesOf({ result, signals, outside, spectra }: Comparison, command: string): Record<string, string> {
-  const inside = result.observers.filter((o) => o.inside).map(({ name }) => name);
-  const beyond = result.observers.filter((o) => !o.inside).map(({ name }) => name);
-  const traces = [
-    ...(signals
-      ? inside.flatMap((name, p) =>
-          observerTraces(name, { grid: signals.grid, exact: signals.exact, ...partSignals(signals) }, p),
-        )
-      : []),
-    ...beyond.flatMap((name, p) => observerTraces(name, { exact: outside }, p)),
-  ];
-  return {
-    'result.json': resultJson(result),
-    'traces.csv': writeTraces(traces),
-    'report.html': reportHtml({ result, traces, spectra, command }),
-  };
-}
+const filesOf = (comparison: Comparison, command: string): Record<string, string> =>
+  Object.fromEntries(RESULT_FILES.map((file) => [file, resultFile(file, comparison, command)]));
 
 function commandLine(name: string, { out, threads }: CompareFlags): string {
   const quoted = /^[\w./-]+$/.test(name) ? name : JSON.stringify(name);

@@ -65,6 +65,8 @@ export interface GridRun {
 export interface LeadHooks {
   /** called after each batch */
   readonly onProgress?: (stepsDone: number) => void;
+  /** called after each batch with every group's samples so far, of which the first `taken` instants are filled */
+  readonly onSamples?: (groups: readonly { readonly values: Float64Array; readonly taken: number }[]) => void;
   /** asked about once a plane; true ends the run */
   readonly cancelled?: () => boolean;
   /** end the run once no sample's field moves any more by more than this fraction of its own peak, and hold the values */
@@ -293,6 +295,7 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
         c.take(reals, tables.sampleBuffers[g]! / layout.real, kept[g]!);
       });
       done += count;
+      hooks.onSamples?.(collectors);
       hooks.onProgress?.(done);
       if (hooks.stopWhenStill) {
         const restless = Math.max(0, ...collectors.map((c, g) => c.restlessness(Math.max(2, kept[g]! + 1))));

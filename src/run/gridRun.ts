@@ -14,10 +14,11 @@ export async function runGrid(
   stillLevel: number | null,
   onSteps: (steps: number) => void,
 ): Promise<GridResult> {
+  const onEvent = (steps: unknown) => onSteps(steps as number);
+  // A memory of one thread need not be shared, which a page that is not isolated could not.
+  if (team.threads === 1) return await team.run('marchGrid', [packProblem(problem), stillLevel], onEvent);
   const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads: team.threads });
-  const leader = team.run('leadGrid', [packProblem(problem), prepared, stillLevel], (steps) =>
-    onSteps(steps as number),
-  );
+  const leader = team.run('leadGrid', [packProblem(problem), prepared, stillLevel], onEvent);
   const followers = Array.from({ length: team.threads - 1 }, () => team.run('followGrid', [prepared.setup]));
   const [result] = await Promise.all([leader, ...followers]);
   return result;

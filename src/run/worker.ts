@@ -1,18 +1,32 @@
 import workerpool from 'workerpool';
 import { type PackedProblem, unpackProblem } from '../fdtd/pack.ts';
-import { follow, type GridResult, type GridRun, type GridSetup, lead } from '../fdtd/run.ts';
+import { follow, type GridResult, type GridRun, type GridSetup, lead, prepareGridRun } from '../fdtd/run.ts';
 import { gridSources, nodeGridOf } from '../gridding/gridding.ts';
 import { griddedHistory } from '../retarded/gridded.ts';
 import { exactHistory } from '../retarded/history.ts';
 import type { Method } from '../retarded/prepare.ts';
 import { loadScenario } from '../scenario/load.ts';
-import type { Scenario } from '../scenario/model.ts';
+import type { Axis, Scenario } from '../scenario/model.ts';
 import { type Instants, samplePoints } from '../trace/trace.ts';
+import { framesOf, type SliceShape, withBelow } from './planes.ts';
 
 /** What a worker can do. Arguments and results are structured-cloneable; scenarios travel as the file's JSON. */
 export interface Tasks {
   /** leads a grid run; emits the number of steps done */
   leadGrid(packed: PackedProblem, prepared: PreparedGrid, stillLevel: number | null): GridResult;
+  /** the same on this thread alone, where memory cannot be shared */
+  marchGrid(packed: PackedProblem, stillLevel: number | null): GridResult;
+  /** leads a grid run whose second group of samples is a film; emits `GridFrames`, returns the first group's samples */
+  leadFilm(packed: PackedProblem, prepared: PreparedGrid, shapes: readonly SliceShape[]): Float64Array;
+  filmAlone(packed: PackedProblem, shapes: readonly SliceShape[]): Float64Array;
+  /** the exact field of designed or gridded currents at cells of a slice: data[(frame·9 + channel)·cells + cell] */
+  filmExact(
+    scenario: unknown,
+    cells: Int32Array,
+    normal: Axis,
+    instants: Instants,
+    of: 'designed' | 'gridded',
+  ): Float32Array;
   /** helps a grid run until its leader is done */
   followGrid(setup: GridSetup): void;
   /** the exact field at the sites of some cells */
@@ -46,13 +60,46 @@ function scenarioOf(json: unknown): Scenario {
   return loaded.scenario;
 }
 
+function march(run: GridRun, stillLevel: number | null): GridResult {
+  return lead(run, {
+    onProgress: (steps) => workerpool.workerEmit(steps),
+    ...(stillLevel === null ? {} : { stopWhenStill: { level: stillLevel } }),
+  });
+}
+
+function film(run: GridRun, shapes: readonly SliceShape[]): Float64Array {
+  let shown = 0;
+  const { samples } = lead(run, {
+    onSamples: ([, slices]) => {
+      const { values, taken } = slices!;
+      const count = values.length / (12 * shapes.reduce((sum, { cells }) => sum + cells, 0));
+      if (taken > shown) workerpool.workerEmit(framesOf(values, count, shown, taken, shapes));
+      shown = taken;
+    },
+  });
+  return samples[0]!;
+}
+
 const tasks: Tasks = {
-  leadGrid(packed, prepared, stillLevel) {
-    const run: GridRun = { ...prepared, problem: unpackProblem(packed) };
-    return lead(run, {
-      onProgress: (steps) => workerpool.workerEmit(steps),
-      ...(stillLevel === null ? {} : { stopWhenStill: { level: stillLevel } }),
-    });
+  leadGrid: (packed, prepared, stillLevel) => march({ ...prepared, problem: unpackProblem(packed) }, stillLevel),
+  marchGrid: (packed, stillLevel) => march(prepareGridRun(unpackProblem(packed)), stillLevel),
+  leadFilm: (packed, prepared, shapes) => film({ ...prepared, problem: unpackProblem(packed) }, shapes),
+  filmAlone: (packed, shapes) => film(prepareGridRun(unpackProblem(packed)), shapes),
+  filmExact(json, cells, normal, instants, of) {
+    const { sources, medium, grid } = scenarioOf(json);
+    const points = samplePoints(withBelow(cells, normal), grid.box.from, grid.cellSize);
+    const { values } =
+      of === 'designed'
+        ? exactHistory(sources, medium, points, instants)
+        : griddedHistory(
+            gridSources(sources, nodeGridOf(grid)),
+            grid.box.from,
+            grid.cellSize,
+            medium,
+            points,
+            instants,
+          );
+    return framesOf(values, instants.count, 0, instants.count, [{ cells: cells.length / 3, normal }]).slices[0]!;
   },
   followGrid: follow,
   exactField(json, cells, instants, method) {

@@ -1,0 +1,106 @@
+import { memoryNeeded } from '../fdtd/layout.ts';
+import type { GridProblem } from '../fdtd/problem.ts';
+import type { GridResult } from '../fdtd/run.ts';
+import { prepareSources } from '../retarded/prepare.ts';
+import { instantsOf } from '../trace/trace.ts';
+import type { FreeSpacePlan } from './freeSpace.ts';
+import { runGrid } from './gridRun.ts';
+import { exactField, griddedField, type IntegralField } from './integrals.ts';
+import type { Places } from './places.ts';
+import type { Team } from './pool.ts';
+import { type Progress, ProgressMeter } from './progress.ts';
+import type { Question } from './question.ts';
+
+/** Runs end when no sample moves more than this fraction of its peak any longer. */
+const STILL = { single: 1e-6, double: 1e-9 };
+
+/** A factor whose products round differently: the same run driven with it shows what rounding does. */
+export const ROUNDING_PROBE = 0.7315;
+
+/** What the solvers say: budget points and volume, from each of the runs. */
+export interface Answers {
+  readonly box: GridResult;
+  readonly probe: GridResult;
+  readonly free: GridResult | null;
+  readonly exact: IntegralField;
+  readonly computed: IntegralField;
+  readonly gridded: IntegralField;
+  readonly volumeExact: IntegralField;
+  readonly outsideExact: IntegralField;
+  readonly seconds: { readonly exact: number; readonly started: number };
+}
+
+/** Asks both solvers, one run after another, each with the whole team. */
+export async function answer(
+  team: Team,
+  question: Question,
+  json: unknown,
+  places: Places,
+  box: GridProblem,
+  free: FreeSpacePlan | null,
+  onProgress: (progress: Progress) => void,
+): Promise<Answers> {
+  const { scenario, steps, timeStep } = question;
+  const still = STILL[scenario.grid.precision];
+  const instants = instantsOf(steps, timeStep);
+  const volumeInstants = instantsOf(steps, timeStep, places.every);
+  const updates = (p: GridProblem) => memoryNeeded(p).cells * steps;
+  const cells = {
+    budget: places.budgetCells.length / 3,
+    volume: places.volume.cell.length / 3,
+    outside: places.outside.length,
+  };
+  const meter = new ProgressMeter(onProgress, [
+    ['the grid in its box', updates(box) / GRID_RATE],
+    ['the same grid driven with other roundings', updates(box) / GRID_RATE],
+    ['the grid without walls', (free?.cellUpdates ?? 0) / GRID_RATE],
+    ['the exact field', (2 * cells.budget + cells.volume + cells.outside) / CELL_RATE],
+    ['the exact field of the gridded currents', cells.budget / CELL_RATE],
+  ]);
+  const grid = (stage: number, problem: GridProblem) => {
+    meter.enter(stage);
+    return runGrid(team, problem, still, (done) => meter.at(done / steps));
+  };
+  const boxRun = await grid(0, box);
+  const probe = await grid(1, driven(box, ROUNDING_PROBE));
+  const freeRun = free ? await grid(2, free.problem) : null;
+
+  const started = performance.now();
+  meter.enter(3);
+  const hasClosedForm = prepareSources(scenario.sources, scenario.medium, 'best').waves.length > 0;
+  let doneCells = 0;
+  const total = cells.volume + cells.outside + cells.budget * (hasClosedForm ? 2 : 1);
+  const count = (n: number) => {
+    doneCells += n;
+    meter.at(doneCells / total);
+  };
+  const [volumeExact, outsideExact, exact, byQuadrature] = await Promise.all([
+    exactField(team, scenario, json, places.volume.cell, volumeInstants, 'best', count),
+    exactField(team, scenario, json, places.outsideCells, instants, 'best', count),
+    exactField(team, scenario, json, places.budgetCells, instants, 'best', count),
+    hasClosedForm ? exactField(team, scenario, json, places.budgetCells, instants, 'quadrature', count) : null,
+  ]);
+  meter.enter(4);
+  const gridded = await griddedField(team, scenario, json, places.budgetCells, instants, () => {});
+  return {
+    box: boxRun,
+    probe,
+    free: freeRun,
+    exact,
+    computed: byQuadrature ?? exact,
+    gridded,
+    volumeExact,
+    outsideExact,
+    seconds: { exact: (performance.now() - started) / 1000, started: performance.now() },
+  };
+}
+
+/** Cell updates, and cells of exact histories, that a second is guessed to hold: they only weight the progress bar. */
+const GRID_RATE = 5e8;
+const CELL_RATE = 2e3;
+
+/** The same problem with all currents times a factor. */
+function driven(problem: GridProblem, factor: number): GridProblem {
+  const { currents } = problem;
+  return { ...problem, currents: { ...currents, weight: currents.weight.map((w) => w * factor) } };
+}
