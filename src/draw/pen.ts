@@ -44,9 +44,9 @@ export function isSeen(surface: Surface, clip: Clip, x: number, y: number, z: nu
  * cross the line where two facets meet. At the rim of all that was drawn it is unlimited, so that rims are seen whole.
  */
 function slope({ depth }: Surface, at: number, step: number): number {
-  const [here, next, second] = [depth[at]!, depth[at + step]!, depth[at + 2 * step]!];
+  const next = depth[at + step]!;
   if (next === Number.POSITIVE_INFINITY) return next;
-  return Math.min(Math.abs(next - here), Math.abs(second - next));
+  return Math.min(Math.abs(next - depth[at]!), Math.abs(depth[at + 2 * step]! - next));
 }
 
 /**
@@ -112,8 +112,9 @@ export class Pen {
         const t = squared === 0 ? 0 : Math.min(1, Math.max(0, (px * dx + py * dy) / squared));
         const ex = px - t * dx;
         const ey = py - t * dy;
-        const coverage = Math.min(1, reach - Math.sqrt(ex * ex + ey * ey));
-        if (coverage <= 0) continue;
+        const apart = ex * ex + ey * ey;
+        if (apart >= reach * reach) continue;
+        const coverage = Math.min(1, reach - Math.sqrt(apart));
         if (dash && (travelled + t * length) % (dash[0] + dash[1]) > dash[0]) continue;
         const seen = isSeen(this.surface, clip, x0 + t * dx, y0 + t * dy, z0 + t * dz);
         const colour = colour0 === colour1 ? colour0 : blend(colour0, colour1, t);
