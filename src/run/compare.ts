@@ -1,37 +1,19 @@
-import { hostName, memoryLimit, threadsAvailable } from '#platform';
-import { bandOf } from '../compare/band.ts';
-import { boundaryLevel, budgetAt, budgetOf, type Histories, type Levels } from '../compare/budget.ts';
-import { closestDistance } from '../compare/closest.ts';
-import { farthestDistance } from '../compare/farthest.ts';
-import { FIELDS, FIRST_COMPONENT, type Field, type Level, samplesOf } from '../compare/fields.ts';
-import { relativeL1, relativeL2, relativeLinf } from '../compare/norms.ts';
-import { observerErrors } from '../compare/observer.ts';
-import { pointErrors, pointStatus } from '../compare/pointError.ts';
-import { budgetResult, normsResult, type ObserverResult, observerFieldResult, type Result } from '../compare/result.ts';
-import { type Spectra, spectraOf } from '../compare/spectrum.ts';
-import { stratify } from '../compare/stratify.ts';
-import { verdictOf } from '../compare/verdict.ts';
-import { wallClearance } from '../compare/wall.ts';
-import { decibels } from '../elementary/elementary.ts';
-import { formatDecibels, formatQuantity } from '../elementary/quantity.ts';
+import { memoryLimit, threadsAvailable } from '#platform';
+import { formatQuantity } from '../elementary/quantity.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
-import type { GridResult } from '../fdtd/run.ts';
-import { prepareSources } from '../retarded/prepare.ts';
-import { distanceToSources, lastArrival } from '../scenario/distance.ts';
-import { loadScenario, type Problem } from '../scenario/load.ts';
-import { type Boundary, FACES, type Observer, type Scenario, type Vec3 } from '../scenario/model.ts';
-import { observerCell } from '../scenario/sites.ts';
-import { COMPONENTS, type FieldHistory, type Instants, instantsOf, type SamplePoints } from '../trace/trace.ts';
-import { dispersionErrorAt, farthestModel } from './farthest.ts';
-import { type FreeSpacePlan, planFreeSpace } from './freeSpace.ts';
-import { gaugeResidual } from './gauge.ts';
-import { runGrid } from './gridRun.ts';
-import { exactField, griddedField, type IntegralField } from './integrals.ts';
+import { loadScenario } from '../scenario/load.ts';
+import { answer } from './answers.ts';
+import { type Comparison, conclude } from './conclude.ts';
+import { planFreeSpace } from './freeSpace.ts';
+import { placesOf } from './places.ts';
 import { Team } from './pool.ts';
-import { type Progress, ProgressMeter } from './progress.ts';
-import { boxProblem, type Question, questionOf, sampleInterval } from './question.ts';
-import { VERSION } from './version.ts';
+import type { Progress } from './progress.ts';
+import { boxProblem, questionOf } from './question.ts';
+import { Refusal } from './refusal.ts';
+
+export type { Comparison } from './conclude.ts';
+export { Refusal } from './refusal.ts';
 
 export interface CompareOptions {
   /** worker threads; all that the machine has by default */
@@ -39,17 +21,6 @@ export interface CompareOptions {
   readonly onProgress?: (progress: Progress) => void;
   /** aborting it ends all workers at once and rejects with its reason */
   readonly signal?: AbortSignal;
-}
-
-/** A result with the signals behind it. */
-export interface Comparison {
-  readonly result: Result;
-  /** the fields at observers inside the box, one point an observer in their order; null without any */
-  readonly signals: Histories | null;
-  /** exact fields of observers outside the box */
-  readonly outside: FieldHistory;
-  readonly observers: readonly Observer[];
-  readonly spectra: readonly { readonly observer: string; readonly field: Field; readonly spectra: Spectra }[];
 }
 
 /**
@@ -82,10 +53,11 @@ export async function compareSolvers(input: unknown, options: CompareOptions = {
   aborted.catch(() => {});
   options.signal?.addEventListener('abort', abort, { once: true });
   try {
-    const answers = answer(team, question, json, places, box, free, options.onProgress ?? (() => {}));
+    const asked = answer(team, question, json, places, box, free, options.onProgress ?? (() => {}));
     // Once aborted, the workers' own ends are of no interest.
-    answers.catch(() => {});
-    return conclude(question, json, places, await Promise.race([answers, aborted]), free, box, team.threads);
+    asked.catch(() => {});
+    const answers = await Promise.race([asked, aborted]);
+    return conclude({ question, json, places, box, free, answers, threads: team.threads });
   } finally {
     options.signal?.removeEventListener('abort', abort);
     await team.end();
@@ -102,23 +74,17 @@ function parsed(text: string): unknown {
 }
 
 function refuseTooLarge(box: GridProblem, limit: number): void {
+  const refuse = (message: string) => new Refusal([{ path: 'grid.cellSize', value: box.cellSize, message }]);
   let bytes: number;
   try {
     bytes = memoryNeeded(box).bytes;
   } catch (error) {
-    if (error instanceof RangeError)
-      throw new Refusal([{ path: 'grid.cellSize', value: box.cellSize, message: error.message }]);
+    if (error instanceof RangeError) throw refuse(error.message);
     throw error;
   }
   if (bytes > limit)
-    throw new Refusal([
-      {
-        path: 'grid.cellSize',
-        value: box.cellSize,
-        message:
-          `The grid needs ${formatQuantity(bytes, 'B')}; this machine has ${formatQuantity(limit, 'B')} to give. ` +
-          'Raise grid.cellSize or shrink grid.box.',
-      },
-    ]);
+    throw refuse(
+      `The grid needs ${formatQuantity(bytes, 'B')}; this machine has ${formatQuantity(limit, 'B')} to give. ` +
+        'Raise grid.cellSize or shrink grid.box.',
+    );
 }
-

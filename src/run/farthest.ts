@@ -3,8 +3,7 @@ import type { DirectionModel, FarthestModel } from '../compare/farthest.ts';
 import { cos, sin } from '../elementary/elementary.ts';
 import { dispersionError, type FarField, farthestWithin } from '../lattice/farthest.ts';
 import type { Lattice } from '../lattice/lattice.ts';
-import { fieldOf } from '../retarded/field.ts';
-import { prepareSources } from '../retarded/prepare.ts';
+import { farField } from '../retarded/farField.ts';
 import type { Vec3 } from '../scenario/model.ts';
 import type { Question } from './question.ts';
 
@@ -49,9 +48,10 @@ export function farthestModel(question: Question): FarthestModel {
   };
 }
 
-/** The predicted error of the lattice at a distance along one direction; NaN where nothing is radiated that way. */
-export function dispersionErrorAt(question: Question, direction: Vec3, distance: number): number {
-  const field = spectrumAlong(question)(direction);
+/** The predicted error of the lattice at a distance along a vector; NaN where nothing is radiated that way. */
+export function dispersionErrorAt(question: Question, along: Vec3, distance: number): number {
+  const length = Math.sqrt(along[0] * along[0] + along[1] * along[1] + along[2] * along[2]);
+  const field = spectrumAlong(question)([along[0] / length, along[1] / length, along[2] / length]);
   if (!field.amplitude.some((x) => x > 0)) return Number.NaN;
   const { scenario, timeStep } = question;
   return dispersionError(field, { cellSize: scenario.grid.cellSize, timeStep, medium: scenario.medium }, distance);
@@ -106,13 +106,7 @@ function spectrumAlong({ scenario, highestFrequency, timeStep, steps }: Question
     sin(omega[Math.floor(m / count)]! * times[m % count]!),
   );
   return (direction) => {
-    const R = 1e4;
-    const f = fieldOf(prepareSources(sources, medium, 'best'), { tolerance: 1e-6, potentials: false });
-    const values = new Float64Array(3 * count);
-    times.forEach((t, n) => {
-      const { E } = f([R * direction[0], R * direction[1], R * direction[2]], t + R / medium.speed);
-      for (let c = 0; c < 3; c++) values[c * count + n] = E[c]! * R;
-    });
+    const { values } = farField(sources, medium, direction, times);
     const amplitude = omega.map((_, k) => {
       let square = 0;
       for (let c = 0; c < 3; c++) {
