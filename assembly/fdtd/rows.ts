@@ -18,7 +18,7 @@ export type Off = i32;
 export type Electric = f32;
 export type Magnetic = i32;
 
-/** Byte offsets as type arguments: `offsetof` of one may be an immediate of a load, a parameter may not. */
+/** Which of a pair of memory variables: `offsetof` of a type argument may be an immediate of a load, a parameter may not. */
 class First {}
 class Second {
   low: u64;
@@ -97,19 +97,19 @@ export function layersZ(
   memoryMagneticZ = memoryMagnetic;
 }
 
-/** Δ → Δ/κ + ψ with ψ ← bψ + aΔ; ψ lies at q, the vector O of a row and component C of its pair. */
+/** Δ → Δ/κ + ψ with ψ ← bψ + aΔ; ψ is member C of the pair at q. */
 // @ts-ignore: decorator
 @inline
-function stretched<O, C>(difference: v128, q: usize, b: v128, a: v128, inverseKappa: v128): v128 {
+function stretched<C>(difference: v128, q: usize, b: v128, a: v128, inverseKappa: v128): v128 {
   const psi = v128.add<Real>(
-    v128.mul<Real>(b, v128.load(q, 2 * offsetof<O>() + offsetof<C>())),
+    v128.mul<Real>(b, v128.load(q, offsetof<C>())),
     v128.mul<Real>(a, difference),
   );
-  v128.store(q, psi, 2 * offsetof<O>() + offsetof<C>());
+  v128.store(q, psi, offsetof<C>());
   return v128.add<Real>(v128.mul<Real>(difference, inverseKappa), psi);
 }
 
-/** a ← a + c·curl at the vector O of p. */
+/** a + c (first − second). */
 // @ts-ignore: decorator
 @inline
 function accumulated(a: v128, c: v128, first: v128, second: v128): v128 {
@@ -117,40 +117,25 @@ function accumulated(a: v128, c: v128, first: v128, second: v128): v128 {
 }
 
 /**
- * One vector of all three components. F: which fields change; O: first or second vector at p; W: the vector lies in a
- * window, whose entry is at w; X, Y, Z: the coordinate is stretched, with ψ at qx, qy, qz.
+ * One vector of all three components at p, its neighbours across rows and planes at py and pz. F: which fields change;
+ * W: the vector lies in a window, whose entry is at w; X, Y, Z: the coordinate is stretched, with ψ at qx, qy, qz. The
+ * three components are done one after the other, each stored before the next is begun: measured 8 % faster than
+ * taking all differences first.
  */
 // @ts-ignore: decorator
 @inline
-function advance<F, O, W, X, Y, Z>(
+function advance<F, W, X, Y, Z>(
   p: usize, py: usize, pz: usize, cx: v128, cy: v128, cz: v128, w: usize,
   qx: usize, qy: usize, bY: v128, aY: v128, iY: v128, qz: usize, bZ: v128, aZ: v128, iZ: v128,
 ): void {
-  const bx = v128.load(p, (isFloat<F>() ? HX : EX) + offsetof<O>());
-  const by = v128.load(p, (isFloat<F>() ? HY : EY) + offsetof<O>());
-  const bz = v128.load(p, (isFloat<F>() ? HZ : EZ) + offsetof<O>());
-
-  let dyBz = v128.sub<Real>(bz, v128.load(py, (isFloat<F>() ? HZ : EZ) + offsetof<O>()));
-  let dzBy = v128.sub<Real>(by, v128.load(pz, (isFloat<F>() ? HY : EY) + offsetof<O>()));
-  let dzBx = v128.sub<Real>(bx, v128.load(pz, (isFloat<F>() ? HX : EX) + offsetof<O>()));
-  let dxBz = v128.sub<Real>(bz, v128.load(p, (isFloat<F>() ? HZ - CELL : EZ + CELL) + offsetof<O>()));
-  let dxBy = v128.sub<Real>(by, v128.load(p, (isFloat<F>() ? HY - CELL : EY + CELL) + offsetof<O>()));
-  let dyBx = v128.sub<Real>(bx, v128.load(py, (isFloat<F>() ? HX : EX) + offsetof<O>()));
-
+  const bx = v128.load(p, isFloat<F>() ? HX : EX);
+  const by = v128.load(p, isFloat<F>() ? HY : EY);
+  const bz = v128.load(p, isFloat<F>() ? HZ : EZ);
+  let bX = cx, aX = cx, iX = cx;
   if (isFloat<X>()) {
-    const b = v128.load(w, 2 * VECTOR);
-    const a = v128.load(w, 3 * VECTOR);
-    const inverseKappa = v128.load(w, 4 * VECTOR);
-    dxBz = stretched<O, First>(dxBz, qx, b, a, inverseKappa);
-    dxBy = stretched<O, Second>(dxBy, qx, b, a, inverseKappa);
-  }
-  if (isFloat<Y>()) {
-    dyBz = stretched<O, First>(dyBz, qy, bY, aY, iY);
-    dyBx = stretched<O, Second>(dyBx, qy, bY, aY, iY);
-  }
-  if (isFloat<Z>()) {
-    dzBy = stretched<O, First>(dzBy, qz, bZ, aZ, iZ);
-    dzBx = stretched<O, Second>(dzBx, qz, bZ, aZ, iZ);
+    bX = v128.load(w, 2 * VECTOR);
+    aX = v128.load(w, 3 * VECTOR);
+    iX = v128.load(w, 4 * VECTOR);
   }
   if (isFloat<W>()) {
     cx = v128.mul<Real>(cx, v128.load(w));
@@ -158,15 +143,29 @@ function advance<F, O, W, X, Y, Z>(
     cz = v128.mul<Real>(cz, v128.load(w, VECTOR));
   }
 
-  const ax = v128.load(p, (isFloat<F>() ? EX : HX) + offsetof<O>());
-  const ay = v128.load(p, (isFloat<F>() ? EY : HY) + offsetof<O>());
-  const az = v128.load(p, (isFloat<F>() ? EZ : HZ) + offsetof<O>());
-  v128.store(p, accumulated(ax, cx, dyBz, dzBy), (isFloat<F>() ? EX : HX) + offsetof<O>());
-  v128.store(p, accumulated(ay, cy, dzBx, dxBz), (isFloat<F>() ? EY : HY) + offsetof<O>());
-  v128.store(p, accumulated(az, cz, dxBy, dyBx), (isFloat<F>() ? EZ : HZ) + offsetof<O>());
+  let dyBz = v128.sub<Real>(bz, v128.load(py, isFloat<F>() ? HZ : EZ));
+  let dzBy = v128.sub<Real>(by, v128.load(pz, isFloat<F>() ? HY : EY));
+  if (isFloat<Y>()) dyBz = stretched<First>(dyBz, qy, bY, aY, iY);
+  if (isFloat<Z>()) dzBy = stretched<First>(dzBy, qz, bZ, aZ, iZ);
+  const ax = v128.load(p, isFloat<F>() ? EX : HX);
+  v128.store(p, accumulated(ax, cx, dyBz, dzBy), isFloat<F>() ? EX : HX);
+
+  let dzBx = v128.sub<Real>(bx, v128.load(pz, isFloat<F>() ? HX : EX));
+  let dxBz = v128.sub<Real>(bz, v128.load(p, isFloat<F>() ? HZ - CELL : EZ + CELL));
+  if (isFloat<Z>()) dzBx = stretched<Second>(dzBx, qz, bZ, aZ, iZ);
+  if (isFloat<X>()) dxBz = stretched<First>(dxBz, qx, bX, aX, iX);
+  const ay = v128.load(p, isFloat<F>() ? EY : HY);
+  v128.store(p, accumulated(ay, cy, dzBx, dxBz), isFloat<F>() ? EY : HY);
+
+  let dxBy = v128.sub<Real>(by, v128.load(p, isFloat<F>() ? HY - CELL : EY + CELL));
+  let dyBx = v128.sub<Real>(bx, v128.load(py, isFloat<F>() ? HX : EX));
+  if (isFloat<X>()) dxBy = stretched<Second>(dxBy, qx, bX, aX, iX);
+  if (isFloat<Y>()) dyBx = stretched<Second>(dyBx, qy, bY, aY, iY);
+  const az = v128.load(p, isFloat<F>() ? EZ : HZ);
+  v128.store(p, accumulated(az, cz, dxBy, dyBx), isFloat<F>() ? EZ : HZ);
 }
 
-/** Vectors [x0, x1) of rows [j0, j1) of plane k, all with the same switches. x0 and x1 lie a whole number of pairs of vectors from windowLow where they fall between the windows. */
+/** Vectors [x0, x1) of rows [j0, j1) of plane k, all with the same switches. */
 function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Real, cellY: Real, cellZ: Real): void {
   const cx = v128.splat<Real>(cellX);
   const cy = v128.splat<Real>(cellY);
@@ -218,7 +217,7 @@ function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Rea
       let qx = memoryX + (<usize>x0 << 5);
       const end = p + <usize>low;
       while (p < end) {
-        advance<F, First, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
+        advance<F, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
         p += VECTOR;
         w += WINDOW_BYTES;
         if (isFloat<X>()) qx += PAIR;
@@ -231,11 +230,10 @@ function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Rea
       while (p < end) {
         const py = p + toY;
         const pz = p + toZ;
-        advance<F, First, Off, Off, Y, Z>(p, py, pz, cx, cy, cz, 0, 0, qy, bY, aY, iY, qz, bZ, aZ, iZ);
-        advance<F, Second, Off, Off, Y, Z>(p, py, pz, cx, cy, cz, 0, 0, qy, bY, aY, iY, qz, bZ, aZ, iZ);
-        p += 2 * VECTOR;
-        if (isFloat<Y>()) qy += 2 * PAIR;
-        if (isFloat<Z>()) qz += 2 * PAIR;
+        advance<F, Off, Off, Y, Z>(p, py, pz, cx, cy, cz, 0, 0, qy, bY, aY, iY, qz, bZ, aZ, iZ);
+        p += VECTOR;
+        if (isFloat<Y>()) qy += PAIR;
+        if (isFloat<Z>()) qz += PAIR;
       }
     }
     if (high > 0) {
@@ -243,7 +241,7 @@ function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Rea
       let qx = memoryX + (<usize>(windowLow + skipped) << 5);
       const end = p + <usize>high;
       while (p < end) {
-        advance<F, First, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
+        advance<F, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
         p += VECTOR;
         w += WINDOW_BYTES;
         if (isFloat<X>()) qx += PAIR;

@@ -1,6 +1,6 @@
 /**
- * In which order planes are updated: `sweep`, the plain order, whole lattice after whole lattice; and `march`, the
- * wavefront, several steps in one pass through memory. Both give the same bits.
+ * In which order planes are updated: `sweep`, one step after the other; and `march`, the wavefront, several steps in
+ * one pass through memory. Both give the same bits.
  *
  * The wavefront. A block is T steps (t = 1 … T). Wavefront s does, for each t in turn, E^t on plane s − t + 1 and then
  * H^t on plane s − t:
@@ -28,16 +28,23 @@ import { electric, magnetic } from './plane';
 import { STEP_BYTES } from './step';
 import { gathered, reached, stopped } from './threads';
 
-/** `count` steps in the plain order, planes divided among the threads; false when the run was called off. */
+/**
+ * `count` steps one by one, the planes divided among the threads; false when the run was called off. Each plane of h
+ * follows close upon the plane of e above it, so that a step moves every field through memory once, not twice.
+ */
 export function sweep(thread: i32, threads: i32, steps: usize, count: i32, gatheredBefore: i32): bool {
   const from = (nz * thread) / threads;
   const to = (nz * (thread + 1)) / threads;
   let gatherings = gatheredBefore;
   for (let n = 0; n < count; n++) {
     const step = steps + <usize>n * STEP_BYTES;
-    for (let k = from; k < to; k++) electric(k, 0, ny, step);
+    for (let k = from; k < to; k++) {
+      electric(k, 0, ny, step);
+      if (k > from) magnetic(k - 1, 0, ny, step);
+    }
+    // The last plane of h needs the first plane of e of the next thread, which in turn needs the old h.
     if (!gathered(thread, threads, ++gatherings)) return false;
-    for (let k = from; k < to; k++) magnetic(k, 0, ny, step);
+    if (from < to) magnetic(to - 1, 0, ny, step);
     if (!gathered(thread, threads, ++gatherings) || stopped(thread)) return false;
   }
   return true;

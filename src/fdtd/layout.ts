@@ -151,11 +151,10 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
 
   const [lowX, highX] = layerCounts[0]!;
   const absorbsX = lowX + highX > 0;
-  // Whole vectors that hold the layers and the lanes beyond the walls; an even number of vectors lies between them.
+  // Whole vectors that hold the layers and the lanes beyond the walls.
   const highStart = highX > 0 ? Math.floor((nx - highX) / lanes) : nx % lanes === 0 ? rowVectors : rowVectors - 1;
-  let windowLow = Math.min(Math.max(1, Math.ceil(lowX / lanes)), rowVectors);
+  const windowLow = Math.min(Math.max(1, Math.ceil(lowX / lanes)), rowVectors);
   const windowHigh = Math.max(windowLow, highStart);
-  windowLow += (windowHigh - windowLow) % 2;
   const windowVectors = windowLow + rowVectors - windowHigh;
 
   const bump = new Bump(FIELDS + 6 * build.stride);

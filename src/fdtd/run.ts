@@ -20,7 +20,7 @@ import { Bump, configure, type Layout, layoutOf, realsOf, writeProfiles } from '
 import type { GridProblem } from './problem.ts';
 import { type CellBox, type Region, regionOf } from './region.ts';
 import { Collector, keptIndex } from './samples.ts';
-import { type Block, blocksOf, type Schedule, scheduleOf, vectorsOf, writeBlocks } from './schedule.ts';
+import { type Block, blocksOf, type Schedule, scheduleOf, writeBlocks } from './schedule.ts';
 import { earliestStill } from './still.ts';
 
 export interface GridOptions {
@@ -314,13 +314,22 @@ function writeSteps(run: GridRun, boxes: readonly CellBox[], first: number): voi
   const { problem, setup, sourceOrder } = run;
   const { layout, tables, memory } = setup;
   const reals = realsOf(layout, memory);
+  const lanes = VECTOR / layout.real;
   const edges = sourceOrder.length;
   const used = problem.samples.map(() => 0);
   boxes.forEach(({ from, to }, n) => {
     const values = tables.sourceValues + n * edges * layout.real;
-    const [x0, x1] = vectorsOf(layout, from[0], to[0]);
     // Rows 0 and 1 go together, see assembly/fdtd/plane.ts.
-    const record = [from[2], to[2], from[1], Math.max(2, to[1]), x0, x1, values, 0];
+    const record = [
+      from[2],
+      to[2],
+      from[1],
+      Math.max(2, to[1]),
+      Math.floor(from[0] / lanes),
+      Math.ceil(to[0] / lanes),
+      values,
+      0,
+    ];
     problem.samples.forEach((group, g) => {
       const keeps = keptIndex(group, problem.steps, first + n) >= 0;
       const bytes = run.sampleOrders[g]!.length * 6 * layout.real;

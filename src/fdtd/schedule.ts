@@ -107,19 +107,3 @@ export function writeBlocks(
     ]);
   });
 }
-
-/**
- * The vectors [x0, x1) that hold cells [from, to) of a row, widened so that between the windows of the row a whole
- * number of pairs is updated.
- */
-export function vectorsOf(layout: Layout, from: number, to: number): [number, number] {
-  const { windowLow, windowHigh, rowVectors } = layout;
-  const lanes = 16 / layout.real;
-  const first = Math.floor(from / lanes);
-  const last = Math.min(rowVectors, Math.ceil(to / lanes));
-  const between = (v: number) => v > windowLow && v < windowHigh;
-  return [
-    between(first) ? first - ((first - windowLow) % 2) : first,
-    between(last) ? last + ((last - windowLow) % 2) : last,
-  ];
-}
