@@ -1,3 +1,4 @@
+import { log1p } from '../elementary/elementary.ts';
 import type { Axis, Vec3 } from '../scenario/model.ts';
 import type { Lattice } from './lattice.ts';
 import { type Orders, Position, RadialOperator, SIX } from './radialOperator.ts';
@@ -18,14 +19,12 @@ import { type StaticGreen, staticGreen } from './static.ts';
  *   (Δt²/24) Σ_k p_k [k D^{k+2} − (r/v) D^{k+3}],
  * because the spatially continuous field depends on time through D_t only, the delay e^(−D_t r/v) included.
  *
- * Near the edge the lattice's static field is known to all orders, D_a D_e g_static or D_c g_static from the tabulated
- * static Green's function, and replaces the expansion in the lowest coefficient. It fixes the next one as well: g as a
- * power series in D has no linear term that differences do not remove, so before the delay is taken out the next
- * coefficient vanishes, and after it equals r/v times the lowest.
- *
  * The edge as a uniform filament with charges at its nodes, which is what the retarded integral takes it for, is
- *   E_a = (d_e/ε) M_e (∂_a ∂_e D⁻¹ − δ_ae D/v²) G,   H_a = d_e ε_ace M_e ∂_c G,   M_e = D_e/∂_e = 1 + (d_e²/24) ∂_e²,
- * its static field in closed form.
+ *   E_a = (d_e/ε) M_e (∂_a ∂_e D⁻¹ − δ_ae D/v²) G,   H_a = d_e ε_ace M_e ∂_c G,   M_e = D_e/∂_e = 1 + (d_e²/24) ∂_e².
+ *
+ * Near the edge both are known to all orders of the cell size in their first four powers of D: the second and fourth are
+ * those of the point element, the first and third come from the tables of static.ts or, for the filament, in
+ * closed form. The coefficients here belong to the delayed waveform, that is, to the series times e^(Dr/v).
  */
 export class EdgeResponse {
   /** r, m */
@@ -40,14 +39,14 @@ export class EdgeResponse {
   readonly direction: [number, number, number] = [0, 0, 0];
 
   readonly #lattice: Lattice;
-  readonly #static: StaticGreen;
+  readonly #green: StaticGreen;
   readonly #position = new Position();
   /** by edge axis, then by site */
   readonly #operators: readonly Operators[];
 
   constructor(lattice: Lattice) {
     this.#lattice = lattice;
-    this.#static = staticGreen(lattice.cellSize);
+    this.#green = staticGreen(lattice.cellSize);
     this.#operators = AXES.flatMap((edge) => SITES.map((site) => operatorsFor(site, edge, lattice)));
   }
 
@@ -72,89 +71,119 @@ export class EdgeResponse {
     operators.element.coefficients(position, medium.speed, this.element);
     operators.lattice.coefficients(position, medium.speed, this.lattice);
     operators.filament.coefficients(position, medium.speed, this.filament);
-    this.#exactStatics(edge, site, x, y, z);
-    this.#timeStep((timeStep * timeStep) / 24, r / medium.speed);
+    const delay = r / medium.speed;
+    if (site < 3) this.#slowE(edge, site as Axis, x, y, z, delay);
+    else this.#slowH(edge, (site - 3) as Axis, x, y, z, delay);
+    this.#timeStep((timeStep * timeStep) / 24, delay);
     return true;
   }
 
-  /** (Δt²/24) Σ_k p_k [k D^{k+2} − (r/v) D^{k+3}] */
+  /** (Δt²/24) Σ_k p_k [k D^{k+2} − (r/v) D^{k+3}], p the lattice's coefficients so far; downwards, so as not to see itself. */
   #timeStep(factor: number, delay: number): void {
-    for (let k = -1; k <= 1; k++) {
-      const p = factor * this.element[k + 1]!;
+    for (let k = 1; k >= -1; k--) {
+      const p = factor * (this.element[k + 1]! + this.lattice[k + 1]!);
       this.lattice[k + 3]! += k * p;
       this.lattice[k + 4]! -= delay * p;
     }
   }
 
-  /** The lowest coefficient to all orders in the cell size, and the next, which is r/v times it. */
-  #exactStatics(edge: Axis, site: Site, x: number, y: number, z: number): void {
-    const electric = site < 3;
-    const lowest = electric ? 0 : 1;
-    const point = this.element[lowest]!;
-    const delay = this.distance / this.#lattice.medium.speed;
-    const replace = (part: 'lattice' | 'filament', field: number) => {
-      const change = field - point - this[part][lowest]!;
-      this[part][lowest] = field - point;
-      this[part][lowest + 1]! += delay * change;
-    };
-    replace('filament', electric ? this.#filamentE(edge, site as Axis) : this.#filamentH(edge, (site - 3) as Axis));
-    const { reach } = this.#static;
-    if (Math.abs(x) + 0.5 > reach[0] || Math.abs(y) + 0.5 > reach[1] || Math.abs(z) + 0.5 > reach[2]) return;
-    replace(
-      'lattice',
-      electric ? this.#latticeE(edge, site as Axis, x, y, z) : this.#latticeH(edge, (site - 3) as Axis, x, y, z),
-    );
+  /**
+   * Puts exact slow fields into a part: its first four coefficients from `first` on, given the first and third of the
+   * whole field before the delay. With A and B what they exceed the point element's by, the series (A + B D²) e^(Dr/v).
+   */
+  #replace(part: Float64Array, first: 0 | 1, whole0: number, whole2: number, delay: number): void {
+    const { element } = this;
+    const e0 = element[first]!;
+    const e2 = element[first + 2]! - delay * (element[first + 1]! - (delay / 2) * e0);
+    const a = whole0 - e0;
+    const b = whole2 - e2;
+    part[first] = a;
+    part[first + 1] = delay * a;
+    part[first + 2] = (delay * delay * a) / 2 + b;
+    part[first + 3] = delay * ((delay * delay * a) / 6 + b);
   }
 
-  /** (d_e/ε) D_a D_e g, V/m for 1 A·s */
-  #latticeE(edge: Axis, a: Axis, x: number, y: number, z: number): number {
+  #tabulated(x: number, y: number, z: number): boolean {
+    const { reach } = this.#green;
+    return Math.abs(x) + 0.5 <= reach[0] && Math.abs(y) + 0.5 <= reach[1] && Math.abs(z) + 0.5 <= reach[2];
+  }
+
+  /** E, V/m for 1 A·s and for 1 A/s: d_e/ε times D_a D_e g0 and (D_a D_e g2 − δ_ae g0)/v². */
+  #slowE(edge: Axis, a: Axis, x: number, y: number, z: number, delay: number): void {
     const { cellSize, medium } = this.#lattice;
-    let sum = 0;
+    const square = medium.speed * medium.speed;
+    const ends = this.#ends(edge);
+    // Charges ±1 at the edge's nodes, their potential's second-order part r/(8π), and the current between them.
+    const here = this.direction[a] * this.distance;
+    const upper = a === edge ? ends.upper : here;
+    const lower = a === edge ? ends.lower : here;
+    const cube = (r: number) => r * r * r;
+    const charges = upper / cube(ends.rUpper) - lower / cube(ends.rLower);
+    const bent = (lower / ends.rLower - upper / ends.rUpper) / 2 - (a === edge ? ends.inverse : 0);
+    const gain = 1 / (4 * Math.PI * medium.permittivity);
+    this.#replace(this.filament, 0, gain * charges, (gain * bent) / square, delay);
+    if (!this.#tabulated(x, y, z)) return;
+    const green = this.#green;
+    let first = 0;
+    let third = a === edge ? -cellSize[a] * cellSize[edge] * green.at(x, y, z) : 0;
     for (const p of HALVES)
       for (const q of HALVES) {
-        const shift = (axis: Axis) => (axis === a ? p : 0) + (axis === edge ? q : 0);
-        sum += 4 * p * q * this.#static.at(x + shift(0), y + shift(1), z + shift(2));
+        const i = x + shift(0, a, p) + shift(0, edge, q);
+        const j = y + shift(1, a, p) + shift(1, edge, q);
+        const k = z + shift(2, a, p) + shift(2, edge, q);
+        first += 4 * p * q * green.at(i, j, k);
+        third += 4 * p * q * green.second(i, j, k);
       }
-    return sum / (cellSize[a] * medium.permittivity);
+    const scale = 1 / (cellSize[a] * medium.permittivity);
+    this.#replace(this.lattice, 0, scale * first, (scale * third) / square, delay);
   }
 
-  /** d_e ε_ace D_c g, A/m for 1 A */
-  #latticeH(edge: Axis, a: Axis, x: number, y: number, z: number): number {
-    const { cellSize } = this.#lattice;
-    const c = (3 - edge - a) as Axis;
-    let sum = 0;
-    for (const p of HALVES)
-      sum += 2 * p * this.#static.at(x + (c === 0 ? p : 0), y + (c === 1 ? p : 0), z + (c === 2 ? p : 0));
-    return (cyclicSign(a, c) * cellSize[edge] * sum) / cellSize[c]!;
-  }
-
-  /** Two point charges at the edge's nodes: −x_a/(4πε r³) at the upper node minus the same at the lower, V/m for 1 A·s. */
-  #filamentE(edge: Axis, a: Axis): number {
+  /** H, A/m for 1 A and for 1 A/s²: d_e ε_ace times D_c g0 and D_c g2/v². */
+  #slowH(edge: Axis, a: Axis, x: number, y: number, z: number, delay: number): void {
     const { cellSize, medium } = this.#lattice;
-    let sum = 0;
-    for (const p of HALVES) {
-      const end = (axis: Axis) => this.direction[axis] * this.distance + (axis === edge ? p * cellSize[edge] : 0);
-      const [x, y, z] = [end(0), end(1), end(2)];
-      const r = Math.sqrt(x * x + y * y + z * z);
-      sum -= (2 * p * end(a)) / (r * r * r);
-    }
-    return sum / (4 * Math.PI * medium.permittivity);
-  }
-
-  /** Biot–Savart of a straight piece: −ε_ace x_c/(4πρ²) [(z + d/2)/r₊ − (z − d/2)/r₋], z along the edge; A/m for 1 A. */
-  #filamentH(edge: Axis, a: Axis): number {
-    const { cellSize } = this.#lattice;
+    const square = medium.speed * medium.speed;
     const c = (3 - edge - a) as Axis;
+    const sign = cyclicSign(a, c);
+    const ends = this.#ends(edge);
+    // Biot–Savart of a straight piece; ∂_c r/(8π) integrated along it.
     const across = this.direction[c] * this.distance;
     const other = this.direction[a] * this.distance;
-    const along = this.direction[edge] * this.distance;
-    const square = across * across + other * other;
-    let sum = 0;
+    const biot = (ends.upper / ends.rUpper - ends.lower / ends.rLower) / (across * across + other * other);
+    const gain = (sign * across) / (4 * Math.PI);
+    this.#replace(this.filament, 1, gain * biot, (gain * ends.inverse) / (2 * square), delay);
+    if (!this.#tabulated(x, y, z)) return;
+    const green = this.#green;
+    let first = 0;
+    let third = 0;
     for (const p of HALVES) {
-      const end = along + p * cellSize[edge];
-      sum += (2 * p * end) / Math.sqrt(square + end * end);
+      const i = x + shift(0, c, p);
+      const j = y + shift(1, c, p);
+      const k = z + shift(2, c, p);
+      first += 2 * p * green.at(i, j, k);
+      third += 2 * p * green.second(i, j, k);
     }
-    return (-cyclicSign(a, c) * across * sum) / (4 * Math.PI * square);
+    const scale = (sign * cellSize[edge]) / cellSize[c];
+    this.#replace(this.lattice, 1, scale * first, (scale * third) / square, delay);
+  }
+
+  /**
+   * The site seen from the edge's lower and upper node: coordinates along the edge, distances, and over the edge
+   * ∫ ds/R = log((z + d/2 + r₊)/(z − d/2 + r₋)), z ≥ 0 (else of the mirror image), r± from z ± d/2.
+   */
+  #ends(edge: Axis) {
+    const half = this.#lattice.cellSize[edge] / 2;
+    const z = this.direction[edge] * this.distance;
+    const b = this.direction[(edge + 1) % 3]! * this.distance;
+    const c = this.direction[(edge + 2) % 3]! * this.distance;
+    const from = (along: number) => Math.sqrt(along * along + b * b + c * c);
+    const upper = z - half;
+    const lower = z + half;
+    const rUpper = from(upper);
+    const rLower = from(lower);
+    // r₊ − r₋ without cancellation.
+    const gap = (4 * half * Math.abs(z)) / (rUpper + rLower);
+    const near = Math.abs(z) - half + Math.min(rUpper, rLower);
+    return { upper, lower, rUpper, rLower, inverse: log1p((2 * half + gap) / near) };
   }
 }
 
@@ -164,6 +193,9 @@ export type Site = 0 | 1 | 2 | 3 | 4 | 5;
 const AXES = [0, 1, 2] as const;
 const SITES = [0, 1, 2, 3, 4, 5] as const;
 const HALVES = [-0.5, 0.5] as const;
+
+/** How far a half step p along one axis moves along another. */
+const shift = (axis: Axis, along: Axis, p: number) => (axis === along ? p : 0);
 
 /** The point element, and what the lattice and the filament add to it, to second order. */
 interface Operators {

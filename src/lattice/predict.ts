@@ -11,7 +11,7 @@ export type Quantity = 'field' | 'error';
 
 /**
  * The field that an unbounded Yee lattice is expected to show of known edge currents, to second order in cell size and
- * time step and with exact statics (see EdgeResponse), without a run: six delayed derivatives an edge.
+ * time step and exact for slow fields near the source (see EdgeResponse), without a run: six delayed derivatives an edge.
  *
  * For waveforms whose four derivatives the time step resolves: 8 or more cells per shortest wavelength, and expected order
  * 2 (one with kinks wants `predictGridFieldBySpectrum`). The phase error enters to first order, so that the predicted

@@ -5,7 +5,7 @@ import { gridSources } from '../../src/gridding/gridding.ts';
 import type { Lattice } from '../../src/lattice/lattice.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
 import { polyline } from '../../src/scenario/curve.ts';
-import type { Dipole, Filament, Vec3 } from '../../src/scenario/model.ts';
+import type { Axis, Dipole, Filament, Vec3 } from '../../src/scenario/model.ts';
 import { timeStepOf } from '../../src/scenario/sites.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
 import { type Instants, instantsOf, type SamplePoints, samplePoints } from '../../src/trace/trace.ts';
@@ -18,7 +18,7 @@ export interface LatticeCase {
   readonly source: Dipole | Filament;
   readonly gridded: GriddedSources;
   readonly points: SamplePoints;
-  /** distance of each point from the source, in cells (of the geometric mean of the sides) */
+  /** distance of each point from the source, in cells (their longest side) */
   readonly distances: readonly number[];
   readonly instants: Instants;
 }
@@ -64,11 +64,13 @@ export function latticeCase(spec: CaseSpec): LatticeCase {
     [0, 0, 0],
     cellSize,
   );
-  const mean = Math.cbrt(cellSize[0] * cellSize[1] * cellSize[2]);
-  const distances = spec.observers.map((o) => distanceTo(source, place(o[0] + 0.5, o[1] + 0.5, o[2] + 0.5)) / mean);
+  const longest = Math.max(...cellSize);
+  const distances = spec.observers.map((o) => distanceTo(source, place(o[0] + 0.5, o[1] + 0.5, o[2] + 0.5)) / longest);
   const wire = source.type === 'dipole' ? 0 : source.curve.length;
   const duration =
-    10 * sigma + wire / (medium.speed * speed) + ((Math.max(...distances) + 3) * mean + wire) / medium.speed;
+    (spec.lead + 5) * sigma +
+    wire / (medium.speed * speed) +
+    ((Math.max(...distances) + 3) * longest + wire) / medium.speed;
   return {
     label: [
       spec.source.padEnd(10),
@@ -145,7 +147,7 @@ export function randomCases(seed: number, runs: number, observers: number, fewes
   const pick = <T>(list: readonly T[]): T => list[Math.floor(uniform(0, list.length))]!;
   const sources = ['edge', 'dipole', 'axisWire', 'tiltedWire'] as const;
   return Array.from({ length: runs }, (_, run) => {
-    const equal = run % 2 === 0;
+    const equal = pick([true, false]);
     const side = () => 1e-3 * (equal ? 1 : uniform(0.6, 1.4));
     const source = sources[run % 4]!;
     const wireLength = Math.round(uniform(4, 16));
@@ -165,10 +167,11 @@ export function randomCases(seed: number, runs: number, observers: number, fewes
         const z = uniform(-1, 1);
         const turn = uniform(0, 2 * Math.PI);
         const across = Math.sqrt(1 - z * z);
+        const cells = (length: number, a: Axis) => Math.round((length * Math.max(...cellSize)) / cellSize[a]);
         return [
-          Math.round(distance * across * Math.cos(turn)),
-          Math.round(distance * across * Math.sin(turn)),
-          Math.round(distance * z),
+          cells(distance * across * Math.cos(turn), 0),
+          cells(distance * across * Math.sin(turn), 1),
+          cells(distance * z, 2),
         ] as const;
       }),
     };
