@@ -149,11 +149,13 @@ export function spread(elements: usize, count: i32): void {
 }
 
 /**
- * out[n] += Σ_c Σ_g W[c][g] S[g][n + firstCell + c] for n from `from` to `from + 8·blocks − 1`.
+ * out[n] += Σ_c Σ_g W[c][g] S[g][n + firstCell + c] for n from `from` to `from + 8·blocks − 1`. Weights that are 0 (between
+ * the ends of a long wire, or of phases that no element has) are left out beforehand.
  * @param weights address of W[0][0]
  * @param weightBytes from one phase of W to the next: 16 where two kinds are interleaved, else 8
  * @param samples address of S[0][0]
  * @param sampleStride bytes from one phase of S to the next
+ * @param taps room for 16 bytes for each weight
  */
 export function correlate(
   weights: usize,
@@ -164,32 +166,43 @@ export function correlate(
   out: usize,
   from: i32,
   blocks: i32,
+  taps: usize,
 ): void {
-  const cellBytes = <usize>phases * weightBytes;
-  for (let block = 0; block < blocks; block++) {
-    const n = from + 8 * block;
-    let sum0 = f64x2.splat(0);
-    let sum1 = sum0;
-    let sum2 = sum0;
-    let sum3 = sum0;
-    for (let g: usize = 0; g < <usize>phases; g++) {
-      let at = samples + g * sampleStride + (<usize>(n + firstCell) << 3);
-      let weight = weights + g * weightBytes;
-      for (let c = 0; c < cells; c++) {
-        const a = v128.load_splat<f64>(weight);
-        sum0 = f64x2.add(sum0, f64x2.mul(a, v128.load(at)));
-        sum1 = f64x2.add(sum1, f64x2.mul(a, v128.load(at, 16)));
-        sum2 = f64x2.add(sum2, f64x2.mul(a, v128.load(at, 32)));
-        sum3 = f64x2.add(sum3, f64x2.mul(a, v128.load(at, 48)));
-        at += 8;
-        weight += cellBytes;
+  let end = taps;
+  for (let c = 0; c < cells; c++) {
+    let sample = samples + (<usize>(from + firstCell + c) << 3);
+    for (let g = 0; g < phases; g++) {
+      const weight = load<f64>(weights);
+      if (weight != 0) {
+        store<f64>(end, weight);
+        store<usize>(end, sample, 8);
+        end += 16;
       }
+      weights += weightBytes;
+      sample += sampleStride;
     }
-    const to = out + (<usize>n << 3);
-    v128.store(to, f64x2.add(v128.load(to), sum0));
-    v128.store(to, f64x2.add(v128.load(to, 16), sum1), 16);
-    v128.store(to, f64x2.add(v128.load(to, 32), sum2), 32);
-    v128.store(to, f64x2.add(v128.load(to, 48), sum3), 48);
+  }
+  let to = out + (<usize>from << 3);
+  let shift: usize = 0;
+  for (let block = 0; block < blocks; block++) {
+    let sum0 = v128.load(to);
+    let sum1 = v128.load(to, 16);
+    let sum2 = v128.load(to, 32);
+    let sum3 = v128.load(to, 48);
+    for (let tap = taps; tap < end; tap += 16) {
+      const weight = v128.load_splat<f64>(tap);
+      const at = load<usize>(tap, 8) + shift;
+      sum0 = f64x2.add(sum0, f64x2.mul(weight, v128.load(at)));
+      sum1 = f64x2.add(sum1, f64x2.mul(weight, v128.load(at, 16)));
+      sum2 = f64x2.add(sum2, f64x2.mul(weight, v128.load(at, 32)));
+      sum3 = f64x2.add(sum3, f64x2.mul(weight, v128.load(at, 48)));
+    }
+    v128.store(to, sum0);
+    v128.store(to, sum1, 16);
+    v128.store(to, sum2, 32);
+    v128.store(to, sum3, 48);
+    to += 64;
+    shift += 64;
   }
 }
 

@@ -33,6 +33,7 @@ export interface Kernel {
     out: number,
     from: number,
     blocks: number,
+    taps: number,
   ): void;
 }
 
@@ -256,6 +257,9 @@ export class ElementList {
   }
 }
 
+/** Kernels that no grid uses: their memory, once touched, is used again. */
+const idle: Kernel[] = [];
+
 /** Outputs that one round of `correlate` makes. */
 const BLOCK = 8;
 
@@ -295,7 +299,7 @@ export class DelayGrid {
     this.rule = chosen.rule;
     this.errors = chosen.errors;
     this.#cells = Math.ceil(latest / step) + this.rule.points + 2 * BLOCK;
-    this.kernel = instantiate(bytes, {}) as unknown as Kernel;
+    this.kernel = idle.pop() ?? (instantiate(bytes, {}) as unknown as Kernel);
     const { points, phases, bounds } = this.rule;
     let at = Math.ceil(this.kernel.heapBase() / 16) * 16;
     const polynomials = at;
@@ -313,6 +317,11 @@ export class DelayGrid {
     memory.set(bounds, boundsAt / 8);
     this.kernel.setRule(points, phases, polynomials, boundsAt, Math.max(0, bounds.length - 1), scratch);
     this.#sample(64);
+  }
+
+  /** Gives the kernel back for the next grid; this one must not be used any more. */
+  release(): void {
+    idle.push(this.kernel);
   }
 
   /** Grows memory to hold `bytes`. */
@@ -373,7 +382,7 @@ export class DelayGrid {
     const doubleAt = this.#free;
     const singleAt = doubleAt + 16 * window.cells * phases;
     const room = singleAt + 16 * Math.ceil((window.cells * phases) / 2);
-    this.reserve(room);
+    this.reserve(room + 16 * window.cells * phases);
     new Float64Array(this.kernel.memory.buffer, doubleAt, (room - doubleAt) / 8).fill(0);
     this.kernel.setWindow(window.first, doubleAt, singleAt);
     fill(room);
@@ -390,6 +399,7 @@ export class DelayGrid {
         this.#out,
         from,
         blocks,
+        room,
       );
     correlate(doubles[0], doubleAt, 16);
     correlate(doubles[1], doubleAt + 8, 16);

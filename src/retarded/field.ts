@@ -161,17 +161,20 @@ function evaluate(
     const exhausted = evaluations + 2 * KRONROD_POINTS > settings.maxEvaluations;
     if (worst < 0 || exhausted) {
       const bad = worst < 0 ? undefined : panels[worst]!;
-      const no = settings.potentials ? 0 : Number.NaN;
+      if (!settings.potentials) {
+        sum.fill(Number.NaN, SCALAR);
+        error.fill(Number.NaN, 2);
+      }
       return {
         E: [sum[0]!, sum[1]!, sum[2]!],
         B: [sum[3]!, sum[4]!, sum[5]!],
         H: [3, 4, 5].map((c) => sum[c]! / prepared.medium.permeability) as unknown as Vec3,
-        phi: sum[SCALAR]! + no,
-        A: [sum[VECTOR]! + no, sum[VECTOR + 1]! + no, sum[VECTOR + 2]! + no],
+        phi: sum[SCALAR]!,
+        A: [sum[VECTOR]!, sum[VECTOR + 1]!, sum[VECTOR + 2]!],
         errorE: error[0]! + floor[0]!,
         errorH: (error[1]! + floor[1]!) / prepared.medium.permeability,
-        errorPhi: error[2]! + floor[2]! + no,
-        errorA: error[3]! + floor[3]! + no,
+        errorPhi: error[2]! + floor[2]!,
+        errorA: error[3]! + floor[3]!,
         evaluations,
         converged: open.length === 0,
         ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),

@@ -47,10 +47,12 @@ export function griddedHistory(
   instants: Instants,
   options: GriddedOptions = {},
 ): GriddedHistory {
-  return new GriddedIntegrator(gridded, origin, cellSize, medium, instants, options.accuracy ?? 1e-8).history(
-    points,
-    options.checks ?? 8,
-  );
+  const integrator = new GriddedIntegrator(gridded, origin, cellSize, medium, instants, options.accuracy ?? 1e-8);
+  try {
+    return integrator.history(points, options.checks ?? 8);
+  } finally {
+    integrator.release();
+  }
 }
 
 /** Of the adaptive quadrature that checks are made with; it is relative to the vector, of which one component is used. */
@@ -71,7 +73,7 @@ const RULE_BYTES = 24;
 /** Points of the rules along an edge, from far to near. */
 const EDGE_POINTS = [4, 6, 8, 12, 16, 24, 32, 48, 64, 96, 128];
 
-/** Gridded currents laid out for the kernel, for one run of instants. */
+/** Gridded currents laid out for the kernel, for one run of instants. Call `release` when done. */
 export class GriddedIntegrator {
   readonly #gridded: GriddedSources;
   readonly #origin: Vec3;
@@ -143,6 +145,10 @@ export class GriddedIntegrator {
     }
     const difference = checks > 0 && points.count > 0 ? this.#check(points, values, checks) : 0;
     return { values, difference, checks, evaluations: this.#pairs };
+  }
+
+  release(): void {
+    this.#grid.release();
   }
 
   #site(at: Vec3, component: number, out: Float64Array): void {

@@ -62,16 +62,20 @@ export function historyOf(
   const step = stepOf(instants, prepared);
   const latest = Math.max(instants.E.at(-1) ?? 0, instants.H.at(-1) ?? 0);
   const grid = new DelayGrid(prepared.waveforms, step, instants.count, latest, CLOSED_ACCURACY);
-  const site = new Site(prepared, grid, tolerance, latest);
-  const values = new Float64Array(points.count * 6 * instants.count);
-  const errorBound = new Float64Array(points.count * 6);
-  for (let m = 0; m < points.count * 6; m++) {
-    const component = m % 6;
-    const at: Vec3 = [points.position[3 * m]!, points.position[3 * m + 1]!, points.position[3 * m + 2]!];
-    const first = (component < 3 ? instants.E : instants.H)[0]!;
-    errorBound[m] = site.history(at, component, first, values.subarray(m * instants.count, (m + 1) * instants.count));
+  try {
+    const site = new Site(prepared, grid, tolerance, latest);
+    const values = new Float64Array(points.count * 6 * instants.count);
+    const errorBound = new Float64Array(points.count * 6);
+    for (let m = 0; m < points.count * 6; m++) {
+      const component = m % 6;
+      const at: Vec3 = [points.position[3 * m]!, points.position[3 * m + 1]!, points.position[3 * m + 2]!];
+      const first = (component < 3 ? instants.E : instants.H)[0]!;
+      errorBound[m] = site.history(at, component, first, values.subarray(m * instants.count, (m + 1) * instants.count));
+    }
+    return { values, errorBound, evaluations: site.evaluations };
+  } finally {
+    grid.release();
   }
-  return { values, errorBound, evaluations: site.evaluations };
 }
 
 /** The common step of E and H instants. */

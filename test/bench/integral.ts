@@ -1,0 +1,198 @@
+import type { GriddedSources } from '../../src/gridding/edges.ts';
+import { DelayGrid, ElementList } from '../../src/retarded/delayGrid.ts';
+import { fieldOf } from '../../src/retarded/field.ts';
+import { GriddedIntegrator } from '../../src/retarded/gridded.ts';
+import { exactHistory } from '../../src/retarded/history.ts';
+import { prepareSources } from '../../src/retarded/prepare.ts';
+import { mediumOf } from '../../src/scenario/constants.ts';
+import { polyline } from '../../src/scenario/curve.ts';
+import type { Source, Vec3 } from '../../src/scenario/model.ts';
+import type { Waveform } from '../../src/scenario/waveform.ts';
+import { makeWaveform } from '../../src/scenario/waveforms.ts';
+import { instantsOf, samplePoints } from '../../src/trace/trace.ts';
+
+/** One round of one job: how long it took, how much of it there was, and a sum that keeps it from being left out. */
+export interface Round {
+  readonly seconds: number;
+  readonly work: number;
+  readonly checksum: number;
+}
+
+export interface Job {
+  readonly case: string;
+  /** what `work` counts */
+  readonly unit: string;
+  round(): Round;
+}
+
+const vacuum = mediumOf(1, 1);
+const h = 5e-3;
+const SIGMA = 0.19e-9;
+const timeStep = (0.99 * h) / (vacuum.speed * Math.sqrt(3));
+const smooth = makeWaveform({ type: 'gaussianDerivative', amplitude: 1, sigma: SIGMA, delay: 9 * SIGMA });
+const kinked = makeWaveform({ type: 'doubleExponential', amplitude: 1, alpha: 1e9, beta: 1e10 });
+
+/**
+ * An invented wire of 228 edges and 1008 pairs: columns of twelve edges that climb along the diagonal of a grid, each
+ * edge with four or five pairs, delays growing along it; charges by continuity.
+ */
+export function inventedWire(waveform: Waveform): GriddedSources {
+  const count = 228;
+  const axis = new Uint8Array(count);
+  const node = new Int32Array(3 * count);
+  const pairStart = [0];
+  const weight: number[] = [];
+  const delay: number[] = [];
+  const charges = new Map<string, Map<number, number>>();
+  for (let e = 0; e < count; e++) {
+    const column = Math.floor(e / 12);
+    axis[e] = e % 3;
+    node[3 * e] = 20 + Math.floor(0.6 * column) + ((e >> 1) & 1);
+    node[3 * e + 1] = 20 + Math.floor(0.45 * column) + ((e >> 2) & 1);
+    node[3 * e + 2] = 20 + column + ((e >> 3) & 1);
+    const pairs = e === 0 || e % 12 >= 7 ? 5 : 4;
+    const lower = [...node.subarray(3 * e, 3 * e + 3)];
+    const upper = lower.map((i, a) => (a === axis[e] ? i + 1 : i));
+    for (let m = 0; m < pairs; m++) {
+      const w = 0.1 + 0.01 * m;
+      const t = ((column + m / 5) * h) / vacuum.speed;
+      weight.push(w);
+      delay.push(t);
+      for (const [place, sign] of [
+        [lower, -1],
+        [upper, 1],
+      ] as const) {
+        const here = charges.get(place.join()) ?? new Map<number, number>();
+        charges.set(place.join(), here);
+        here.set(t, (here.get(t) ?? 0) + sign * w);
+      }
+    }
+    pairStart.push(weight.length);
+  }
+  const chargeStart = [0];
+  const chargeNode: number[] = [];
+  const chargeWeight: number[] = [];
+  const chargeDelay: number[] = [];
+  for (const [place, here] of charges) {
+    chargeNode.push(...place.split(',').map(Number));
+    for (const [t, w] of here)
+      if (Math.abs(w) > 1e-12) {
+        chargeWeight.push(w);
+        chargeDelay.push(t);
+      }
+    chargeStart.push(chargeWeight.length);
+  }
+  const waveforms = [waveform];
+  return {
+    edges: {
+      count,
+      axis,
+      node,
+      pairStart: Int32Array.from(pairStart),
+      weight: Float64Array.from(weight),
+      delay: Float64Array.from(delay),
+      waveform: new Uint16Array(weight.length),
+      waveforms,
+    },
+    charges: {
+      count: charges.size,
+      node: Int32Array.from(chargeNode),
+      pairStart: Int32Array.from(chargeStart),
+      weight: Float64Array.from(chargeWeight),
+      delay: Float64Array.from(chargeDelay),
+      waveform: new Uint16Array(chargeWeight.length),
+      waveforms,
+    },
+  };
+}
+
+function timed(work: number, run: () => number): Round {
+  const start = performance.now();
+  const checksum = run();
+  return { seconds: (performance.now() - start) / 1000, work, checksum };
+}
+
+/** Six components of the invented wire at one point, 1000 instants; the kernel is prepared, as for many points. */
+function griddedJob(name: string, waveform: Waveform): Job {
+  const origin: Vec3 = [-0.15, -0.15, -0.15];
+  const gridded = inventedWire(waveform);
+  const integrator = new GriddedIntegrator(gridded, origin, [h, h, h], vacuum, instantsOf(1000, timeStep), 1e-8);
+  const point = samplePoints(Int32Array.of(45, 30, 34), origin, [h, h, h]);
+  return {
+    case: `history of 228 gridded edges, ${name} pulse`,
+    unit: 'histories of six components, 1000 instants',
+    round: () => timed(1, () => integrator.history(point, 0).values[700]!),
+  };
+}
+
+/** Terms × instants, which a direct sum would have to evaluate one by one. */
+export const TERMS = 2500;
+export const INSTANTS = 1000;
+
+function spreadingJob(): Job {
+  const step = SIGMA / 20;
+  const grid = new DelayGrid([smooth], step, INSTANTS, INSTANTS * step, 1e-8);
+  const list = new ElementList();
+  for (let n = 0; n < TERMS; n++) list.add(-(n * 7.31) % 60, 1e10 * (n % 3), n % 5, 1e-10 * (n % 7));
+  const out = new Float64Array(INSTANTS);
+  return {
+    case: `sum of ${TERMS} delayed terms (q, w, w′) at ${INSTANTS} instants by delay spreading`,
+    unit: 'terms × instants',
+    round: () =>
+      timed(TERMS * INSTANTS, () => {
+        out.fill(0);
+        grid.addHistory(out, 0, list);
+        return out[INSTANTS / 2]!;
+      }),
+  };
+}
+
+function centreFed(): Source[] {
+  const arm = 0.05;
+  return [1, -1].map((sign) => ({
+    type: 'wire',
+    name: `arm ${sign}`,
+    curve: polyline([
+      [0, 0, 0],
+      [0, 0, sign * arm],
+    ]),
+    terms: [
+      { factor: sign, delay: 0, slowness: 1 / vacuum.speed },
+      { factor: -sign, delay: (2 * arm) / vacuum.speed, slowness: -1 / vacuum.speed },
+    ],
+    waveform: smooth,
+  }));
+}
+
+function closedFormJobs(): Job[] {
+  const sources = centreFed();
+  const field = fieldOf(prepareSources(sources, vacuum, 'best'), { potentials: false });
+  const calls = 2000;
+  const cells = Int32Array.from({ length: 3 * 100 }, (_, m) => 5 + ((m * 37) % 23));
+  const points = samplePoints(cells, [1e-3, 0.7e-3, 2e-3], [h, h, h]);
+  const instants = instantsOf(300, timeStep);
+  const history = (method: 'best' | 'quadrature'): Job => ({
+    case: `centre-fed wire, 600 sites × 300 instants, ${method === 'best' ? 'closed form' : 'quadrature'}`,
+    unit: 'values',
+    round: () =>
+      timed(600 * 300, () => exactHistory(sources, vacuum, points, instants, { method }).values[200 * 300 + 200]!),
+  });
+  return [
+    {
+      case: 'centre-fed wire, closed form, one place and instant at a time',
+      unit: 'fields (E and H)',
+      round: () =>
+        timed(calls, () => {
+          let sum = 0;
+          for (let n = 0; n < calls; n++) sum += field([0.05 + 1e-5 * n, 0.02, 0.01], 1.9e-9).E[2];
+          return sum;
+        }),
+    },
+    history('best'),
+    history('quadrature'),
+  ];
+}
+
+export function jobs(): Job[] {
+  return [griddedJob('smooth', smooth), griddedJob('kinked', kinked), spreadingJob(), ...closedFormJobs()];
+}
