@@ -27,6 +27,7 @@ export interface CaseSpec {
   readonly source: 'edge' | 'dipole' | 'axisWire' | 'tiltedWire';
   readonly cellSize: Vec3;
   readonly relativePermittivity: number;
+  readonly relativePermeability: number;
   readonly courant: number;
   /** largest cells per shortest wavelength, where |ω W| is −40 dB of its peak */
   readonly cellsPerWavelength: number;
@@ -45,7 +46,7 @@ export interface CaseSpec {
 const HOME = 60;
 
 export function latticeCase(spec: CaseSpec): LatticeCase {
-  const medium = mediumOf(spec.relativePermittivity, 1);
+  const medium = mediumOf(spec.relativePermittivity, spec.relativePermeability);
   const { cellSize, speed } = spec;
   const wavelength = spec.cellsPerWavelength * Math.max(...cellSize);
   const unit = makeWaveform({ type: spec.waveform, amplitude: 1, delay: 5, sigma: 1 });
@@ -156,6 +157,7 @@ export function randomCases(seed: number, runs: number, observers: number, fewes
       source,
       cellSize,
       relativePermittivity: pick([1, 4]),
+      relativePermeability: 1,
       courant: uniform(0.7, 0.99),
       cellsPerWavelength: fewest * (most / fewest) ** uniform(0, 1),
       speed: source.endsWith('Wire') ? pick([1, 0.5]) : 1,

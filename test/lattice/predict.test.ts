@@ -12,6 +12,7 @@ const base: CaseSpec = {
   source: 'dipole',
   cellSize: [1e-3, 1.3e-3, 0.8e-3],
   relativePermittivity: 2,
+  relativePermeability: 1.5,
   courant: 0.9,
   cellsPerWavelength: 10,
   speed: 1,
@@ -42,7 +43,7 @@ function farApart(a: Float64Array, b: Float64Array, count: number): number {
 }
 
 describe('predictions of the lattice', () => {
-  test("show the field of Yee's scheme, E and H, unequal cells, εr 2", () => {
+  test("show the field of Yee's scheme, E and H, unequal cells, εr 2, μr 1.5", () => {
     const c = latticeCase({ ...base, cellsPerWavelength: 8, lead: 5, observers: [[8, -5, 6]] });
     const edges = c.gridded.edges;
     const args = [edges, c.lattice, c.points, c.instants] as const;

@@ -31,6 +31,7 @@ const oneEdge: CaseSpec = {
   source: 'edge',
   cellSize: [1e-3, 1.3e-3, 0.8e-3],
   relativePermittivity: 2,
+  relativePermeability: 1.5,
   courant: 0.95,
   cellsPerWavelength: 8,
   speed: 1,
