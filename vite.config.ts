@@ -1,14 +1,15 @@
-import { defineConfig } from 'vitest/config';
+/// <reference types="vitest/config" />
+import { defineConfig } from 'vite';
 
-/**
- * One configuration for the two jobs: bundling the command line with its worker (`vite build --ssr`), and running the
- * tests. The projects are the three depths of `DEVELOPERS.md`: unit (under a minute), verify (ladders and published
- * checks), stress (the long counts, run on request only).
- */
 /** Where a build server wants the runner's own report. */
 const report = process.env.FIELDASSAY_TEST_REPORT;
 const stress = process.argv.includes('stress');
 
+/**
+ * One configuration for the two jobs: bundling the command line with its worker (`vite build --ssr`), and running the
+ * tests. The projects are the depths of `DEVELOPERS.md`: unit, verify (ladders and published checks), and stress (the long
+ * counts, on request only). It imports vite alone, so that building needs no development package.
+ */
 export default defineConfig({
   build: {
     ssr: true,
