@@ -277,8 +277,8 @@ export class DelayGrid {
   /** address of the `held` bytes */
   readonly held: number;
   readonly #waveforms: readonly Waveform[];
-  /** cells of samples after source time 0, and zeros before it */
-  readonly #cells: number;
+  /** cells of samples from source time 0 on, and zeros before it */
+  #cells = 0;
   #lead = 0;
   #samples = 0;
   #sampleStride = 0;
@@ -298,7 +298,6 @@ export class DelayGrid {
     const chosen = chooseRule(waveforms, step, accuracy);
     this.rule = chosen.rule;
     this.errors = chosen.errors;
-    this.#cells = Math.ceil(latest / step) + this.rule.points + 2 * BLOCK;
     this.kernel = idle.pop() ?? (instantiate(bytes, {}) as unknown as Kernel);
     const { points, phases, bounds } = this.rule;
     let at = Math.ceil(this.kernel.heapBase() / 16) * 16;
@@ -316,7 +315,7 @@ export class DelayGrid {
     memory.set(this.rule.polynomials, polynomials / 8);
     memory.set(bounds, boundsAt / 8);
     this.kernel.setRule(points, phases, polynomials, boundsAt, Math.max(0, bounds.length - 1), scratch);
-    this.#sample(64);
+    this.#sample(64, Math.ceil(latest / step) + points + 2 * BLOCK);
   }
 
   /** Gives the kernel back for the next grid; this one must not be used any more. */
@@ -330,10 +329,11 @@ export class DelayGrid {
     if (missing > 0) this.kernel.memory.grow(Math.ceil(missing / 65536));
   }
 
-  /** Samples the waveforms, with room for elements that span `lead` cells. */
-  #sample(lead: number): void {
+  /** Samples the waveforms for `cells` cells, with room for elements that span `lead` cells. */
+  #sample(lead: number, cells: number): void {
     const { phases, offsets } = this.rule;
     this.#lead = lead;
+    this.#cells = cells;
     const length = 2 * Math.ceil((lead + this.#cells) / 2);
     this.#sampleStride = 8 * length;
     this.#samples = this.#fixed;
@@ -377,7 +377,10 @@ export class DelayGrid {
   ): void {
     const from = Math.max(0, -(window.first + window.cells - 1));
     if (from >= this.count) return;
-    if (window.cells > this.#lead) this.#sample(2 * window.cells);
+    // Delays are not below 0, unless a wave is told to be launched before it.
+    const last = window.first + window.cells + this.count + BLOCK;
+    if (window.cells > this.#lead || last > this.#cells)
+      this.#sample(Math.max(this.#lead, 2 * window.cells), Math.max(this.#cells, last));
     const { phases } = this.rule;
     const doubleAt = this.#free;
     const singleAt = doubleAt + 16 * window.cells * phases;
