@@ -26,10 +26,11 @@ class Second {
 }
 
 /**
- * Ends of a row: vectors [0, windowLow) and from windowHigh on. Each has WINDOW_BYTES in a table: which lanes are
- * inside the lattice for the x component and for the other two (1 or 0), then b, a and 1/κ of the stretch along x.
+ * Ends of a row: vectors [0, windowLow) and from windowHigh on. Each has WINDOW_BYTES in a table: 1 for lanes whose y
+ * and z components lie inside the lattice and 0 for the others, then b, a and 1/κ of the stretch along x. (The x
+ * component of a lane beyond the wall may change: nothing inside reads it.)
  */
-const WINDOW_BYTES: usize = 5 * VECTOR;
+const WINDOW_BYTES: usize = 4 * VECTOR;
 let windowLow: i32 = 0;
 let windowHigh: i32 = 0;
 let windowsElectric: usize = 0;
@@ -133,14 +134,14 @@ function advance<F, W, X, Y, Z>(
   const bz = v128.load(p, isFloat<F>() ? HZ : EZ);
   let bX = cx, aX = cx, iX = cx;
   if (isFloat<X>()) {
-    bX = v128.load(w, 2 * VECTOR);
-    aX = v128.load(w, 3 * VECTOR);
-    iX = v128.load(w, 4 * VECTOR);
+    bX = v128.load(w, VECTOR);
+    aX = v128.load(w, 2 * VECTOR);
+    iX = v128.load(w, 3 * VECTOR);
   }
   if (isFloat<W>()) {
-    cx = v128.mul<Real>(cx, v128.load(w));
-    cy = v128.mul<Real>(cy, v128.load(w, VECTOR));
-    cz = v128.mul<Real>(cz, v128.load(w, VECTOR));
+    const inside = v128.load(w);
+    cy = v128.mul<Real>(cy, inside);
+    cz = v128.mul<Real>(cz, inside);
   }
 
   let dyBz = v128.sub<Real>(bz, v128.load(py, isFloat<F>() ? HZ : EZ));

@@ -6,9 +6,10 @@ import singleLarge from '../kernels/fdtd-single-large.ts';
 import singleMedium from '../kernels/fdtd-single-medium.ts';
 import singleSmall from '../kernels/fdtd-single-small.ts';
 
-/** Addresses and sizes fixed in assembly/fdtd/memory.ts and assembly/fdtd/step.ts, bytes. */
+/** Addresses and sizes fixed in assembly/fdtd/, bytes. */
 export const FIELDS = 131072;
 export const VECTOR = 16;
+export const WINDOW_BYTES = 64;
 export const STEP_BYTES = 64;
 export const SAMPLE_GROUPS = 8;
 export const BLOCK_BYTES = 64;

@@ -1,7 +1,7 @@
 import type { Axis, Boundary, Face } from '../scenario/model.ts';
 import { type FaceLattice, PLAIN, type Stretch, type Wall } from './boundaries/boundary.ts';
 import { methodOf } from './boundaries/catalogue.ts';
-import { ADDRESS_LIMIT, BUILDS, type BuildSize, FIELDS, type GridKernel, VECTOR } from './kernel.ts';
+import { ADDRESS_LIMIT, BUILDS, type BuildSize, FIELDS, type GridKernel, VECTOR, WINDOW_BYTES } from './kernel.ts';
 import type { GridProblem } from './problem.ts';
 
 /** Faces by axis: the low one and the high one. */
@@ -158,7 +158,7 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
   const windowVectors = windowLow + rowVectors - windowHigh;
 
   const bump = new Bump(FIELDS + 6 * build.stride);
-  const windows = [bump.take(windowVectors * 5 * VECTOR), bump.take(windowVectors * 5 * VECTOR)] as const;
+  const windows = [bump.take(windowVectors * WINDOW_BYTES), bump.take(windowVectors * WINDOW_BYTES)] as const;
   const memoryRowX = absorbsX ? windowVectors * 2 * VECTOR : 0;
   const memoryRow = rowVectors * 2 * VECTOR;
   const layers = AXES.map((a) => {
@@ -270,14 +270,13 @@ export function writeProfiles(problem: GridProblem, layout: Layout, memory: WebA
   for (const [set, drives] of (['E', 'H'] as const).entries()) {
     for (let entry = 0; entry < layout.windowLow + layout.rowVectors - layout.windowHigh; entry++) {
       const vector = entry < layout.windowLow ? entry : entry - layout.windowLow + layout.windowHigh;
-      const at = (layout.windows[set]! + entry * 5 * VECTOR) / layout.real;
+      const at = (layout.windows[set]! + entry * WINDOW_BYTES) / layout.real;
       for (let lane = 0; lane < lanes; lane++) {
         const i = vector * lanes + lane;
         const { b, a, inverseKappa } = i < nx ? stretchAt(problem, 0, drives, i) : PLAIN;
-        const inside = i < nx ? 1 : 0;
         // e_y and e_z of cell 0 lie on the wall.
-        const insideYZ = drives === 'E' && i === 0 ? 0 : inside;
-        [inside, insideYZ, b, a, inverseKappa].forEach((value, row) => {
+        const inside = i < nx && !(drives === 'E' && i === 0) ? 1 : 0;
+        [inside, b, a, inverseKappa].forEach((value, row) => {
           reals[at + row * lanes + lane] = value;
         });
       }

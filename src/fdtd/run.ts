@@ -119,7 +119,7 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
 
   const sampleBytes = (g: number) => samples[g]!.order.length * 6 * layout.real;
   const perStep = problem.samples.reduce((sum, { every }, g) => sum + sampleBytes(g) / every, 0);
-  const schedule = scheduleOf(layout, perStep, options.schedule);
+  const schedule = scheduleOf(layout, threads, perStep, options.schedule);
   const { batchSteps, blockSteps } = schedule;
 
   const bump = new Bump(layout.end);

@@ -29,18 +29,34 @@ export async function bundle(input) {
 }
 
 /**
- * Starts followers on threads of their own.
+ * Threads that follow runs, one run after another.
  * @param {string} entry URL of the bundled src/fdtd/run.ts
- * @param {{ threads: number }} setup
- * @returns {Promise<unknown>} resolved when all have left
+ * @param {number} count
  */
-export function startFollowers(entry, setup) {
-  const followers = Array.from({ length: setup.threads - 1 }, () => {
-    const worker = new Worker(new URL('./follower.mjs', import.meta.url), { workerData: { entry, setup } });
-    return new Promise((resolve, reject) => {
-      worker.once('error', reject);
-      worker.once('exit', resolve);
-    });
+export function startFollowers(entry, count) {
+  const workers = Array.from({ length: count }, () => {
+    const worker = new Worker(new URL('./follower.mjs', import.meta.url), { workerData: { entry } });
+    worker.unref();
+    return worker;
   });
-  return Promise.all(followers);
+  return {
+    /** Has threads − 1 of them follow a run; the caller leads it. Resolved when they have left. */
+    follow: (setup) =>
+      Promise.all(
+        workers.slice(0, setup.threads - 1).map(
+          (worker) =>
+            new Promise((resolve, reject) => {
+              worker.ref();
+              worker.once('error', reject);
+              worker.once('message', () => {
+                worker.off('error', reject);
+                worker.unref();
+                resolve(undefined);
+              });
+              worker.postMessage(setup);
+            }),
+        ),
+      ),
+    stop: () => Promise.all(workers.map((worker) => worker.terminate())),
+  };
 }

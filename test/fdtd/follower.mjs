@@ -1,4 +1,8 @@
-import { workerData } from 'node:worker_threads';
+/** A thread that follows one run after another. */
+import { parentPort, workerData } from 'node:worker_threads';
 
 const { follow } = await import(workerData.entry);
-follow(workerData.setup);
+parentPort.on('message', (setup) => {
+  follow(setup);
+  parentPort.postMessage('left');
+});

@@ -49,10 +49,14 @@ export function compareWithReference(
   const starts = randomFields(problem, nodes, seed);
   respectWalls(problem, starts, run.setup.layout.bias);
   help(run);
-  const result = lead(run, { onStart: (setup) => starts.forEach((values, f) => writeField(setup, f, values)) });
+  const result = lead(run, {
+    onStart(setup) {
+      for (const [f, values] of starts.entries()) writeField(setup, f, values);
+    },
+  });
 
   const plain = reference(problem);
-  plain.fields.forEach((field, f) => field.set(starts[f]!));
+  for (const [f, field] of plain.fields.entries()) field.set(starts[f]!);
   const samples = problem.samples.map((g) => new Float64Array((g.cell.length / 3) * 6 * keptCount(g, problem.steps)));
   for (let step = 0; step < problem.steps; step++) {
     plain.step();

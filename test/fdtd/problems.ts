@@ -111,7 +111,7 @@ export function randomProblem(seed: number): GridProblem {
   const dice = new Dice(seed);
   const cellSize: Triple = [dice.real(1e-3, 4e-3), dice.real(1e-3, 4e-3), dice.real(1e-3, 4e-3)];
   const medium = mediumOf(dice.real(1, 5), dice.real(1, 2));
-  const boxCells: Triple = [dice.whole(2, 24), dice.whole(2, 16), dice.whole(2, 16)];
+  const boxCells: Triple = [dice.whole(2, 15), dice.whole(2, 10), dice.whole(2, 10)];
   const same = dice.pick([undefined, undefined, PEC, MUR, cpml(dice.whole(1, 10))]);
   const boundary = Object.fromEntries(FACES.map((face) => [face, same ?? randomBoundary(dice, 7)])) as Record<
     Face,
@@ -132,7 +132,7 @@ export function randomProblem(seed: number): GridProblem {
     const node = ([0, 1, 2] as const).map((a) => within(a, a === axis ? 0 : 1));
     return { axis, node, weight: dice.real(-1, 1), delay: dice.real(0, 1e-10) };
   });
-  const steps = dice.whole(1, 40);
+  const steps = dice.whole(1, 24);
   const samples: SampleGroup[] = Array.from({ length: dice.whole(0, 3) }, () => ({
     cell: Int32Array.from(
       Array.from({ length: dice.whole(1, 30) }, () => ([0, 1, 2] as const).map((a) => within(a, 0))).flat(),

@@ -6,6 +6,7 @@ import type { Stretch, Wall } from '../../src/fdtd/boundaries/boundary.ts';
 import { sourceVoltage } from '../../src/fdtd/currents.ts';
 import { AXES, FACES_OF, type Layout, layoutOf, stretchAt, wallOf } from '../../src/fdtd/layout.ts';
 import type { GridProblem } from '../../src/fdtd/problem.ts';
+import type { Axis } from '../../src/scenario/model.ts';
 
 type Reals = Float32Array | Float64Array;
 
@@ -37,45 +38,36 @@ export function reference(problem: GridProblem): Reference {
   );
   const walls = AXES.map((a) => FACES_OF[a].map((face) => wallOf(problem, face)));
 
-  /** own − neighbour, stretched where the axis is */
-  const difference = (field: Reals, psi: Reals, cell: number, neighbour: number, s: Stretch): number => {
-    const plain = round(field[cell]! - field[neighbour]!);
-    psi[cell] = round(round(s.b * psi[cell]!) + round(s.a * plain));
-    return round(round(plain * s.inverseKappa) + psi[cell]!);
-  };
-
   const update = (half: 0 | 1) => {
     const changing = half === 0 ? 0 : 3;
     const driving = 3 - changing;
     const towards = half === 0 ? -1 : 1;
-    for (let k = 0; k < n[2]; k++)
-      for (let j = 0; j < n[1]; j++)
-        for (let i = 0; i < n[0]; i++) {
-          const where = [i, j, k];
-          const cell = at(i, j, k);
-          for (const x of AXES) {
-            const y = (x + 1) % 3;
-            const z = (x + 2) % 3;
-            // Tangential e on a wall is not the stencil's business.
-            if (half === 0 && (where[y] === 0 || where[z] === 0)) continue;
-            const dy = difference(
-              fields[driving + z]!,
-              memory[changing + x]![y]!,
-              cell,
-              cell + towards * stride[y]!,
-              stretches[half]![y]![where[y]!]!,
-            );
-            const dz = difference(
-              fields[driving + y]!,
-              memory[changing + x]![z]!,
-              cell,
-              cell + towards * stride[z]!,
-              stretches[half]![z]![where[z]!]!,
-            );
-            const field = fields[changing + x]!;
-            field[cell] = round(field[cell]! + round(c[x]! * round(dy - dz)));
+    for (const x of AXES) {
+      const [y, z] = [(x + 1) % 3, (x + 2) % 3] as [Axis, Axis];
+      const a = fields[changing + x]!;
+      const by = fields[driving + y]!;
+      const bz = fields[driving + z]!;
+      const psiY = memory[changing + x]![y]!;
+      const psiZ = memory[changing + x]![z]!;
+      const stretchesY = stretches[half]![y]!;
+      const stretchesZ = stretches[half]![z]!;
+      // Tangential e on a wall is not the stencil's business.
+      const from = AXES.map((axis) => (half === 0 && axis !== x ? 1 : 0));
+      for (let k = from[2]!; k < n[2]; k++)
+        for (let j = from[1]!; j < n[1]; j++)
+          for (let i = from[0]!; i < n[0]; i++) {
+            const cell = at(i, j, k);
+            const sy = stretchesY[y === 0 ? i : y === 1 ? j : k]!;
+            const sz = stretchesZ[z === 0 ? i : z === 1 ? j : k]!;
+            let dyBz = round(bz[cell]! - bz[cell + towards * stride[y]]!);
+            psiY[cell] = round(round(sy.b * psiY[cell]!) + round(sy.a * dyBz));
+            dyBz = round(round(dyBz * sy.inverseKappa) + psiY[cell]!);
+            let dzBy = round(by[cell]! - by[cell + towards * stride[z]]!);
+            psiZ[cell] = round(round(sz.b * psiZ[cell]!) + round(sz.a * dzBy));
+            dzBy = round(round(dzBy * sz.inverseKappa) + psiZ[cell]!);
+            a[cell] = round(a[cell]! + round(c[x]! * round(dyBz - dzBy)));
           }
-        }
+    }
   };
 
   /** Calls back for every edge in the wall of a face that the face owns: rims belong to the later axis. */
