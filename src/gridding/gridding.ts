@@ -1,5 +1,5 @@
 import type { Curve } from '../scenario/curve.ts';
-import type { Axis, Dipole, Filament, Grid, Source, Vec3 } from '../scenario/model.ts';
+import type { Axis, Dipole, Filament, Grid, Gridding, Source, Vec3 } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import type { GriddedSources, NodeCharges, Pairs } from './edges.ts';
 import { gaussLegendre } from './gaussLegendre.ts';
@@ -9,12 +9,15 @@ export interface NodeGrid {
   readonly origin: Vec3;
   readonly cellSize: Vec3;
   readonly cells: readonly [number, number, number];
+  /** how currents are put on its edges; trilinear when absent */
+  readonly gridding?: Gridding;
 }
 
 export const nodeGridOf = (grid: Grid): NodeGrid => ({
   origin: grid.box.from,
   cellSize: grid.cellSize,
   cells: grid.cells,
+  gridding: grid.gridding,
 });
 
 /** A coordinate nearer than this (in cells) to a grid plane is taken to lie on it, so that a wire on a grid line stays on it. */
@@ -24,13 +27,18 @@ const SNAP = 1e-9;
 const CANCELLED = 1e-13;
 
 /**
- * Puts the designed currents on grid edges, charge conserving.
+ * Puts the designed currents on grid edges.
  *
- * A filament is cut at every grid plane; each piece drives, along each axis a, the four edges around it with
+ * Trilinear, the default, conserves charge. A filament is cut at every grid plane; each piece drives, along each axis a, the four edges around it with
  *   I_e = (1/h_a) ∫ I(s, t) w_b w_c (t̂·â) ds,  w = 1 − |Δ|/h
  * (the lowest-order edge element: Whitney 1957; Bossavit, IEE Proc. A 135, 1988, from memory). The integral is a
  * Gauss–Legendre sum whose nodes become (weight, delay) pairs. A point dipole is spread linearly along its own axis over
  * the two nearest collinear edges and bilinearly across, so that its centroid is where it was designed to be.
+ *
+ * Two cruder ways stand in for solvers that use them (common practice, no source): `nearest` drops the current of every
+ * piece on the nearest edge of its direction, w = 1 there and 0 elsewhere, and so leaves charge wherever it changes edge;
+ * `staircase` walks along edges from nearest node to nearest node, and so conserves charge but moves the wire by up to
+ * half a cell. Both put a point dipole on the nearest edges.
  *
  * The charges at the nodes follow from the edge currents by continuity, Σ_out I_e = −dQ/dt, term by term.
  */
@@ -39,6 +47,7 @@ export function gridSources(sources: readonly Source[], grid: NodeGrid): Gridded
   const edges = new PairCollector(grid, 3);
   sources.forEach((source, index) => {
     if (source.type === 'dipole') gridDipole(source, index, grid, edges);
+    else if (grid.gridding === 'staircase') gridStaircase(source, index, grid, edges);
     else gridFilament(source, index, grid, edges);
   });
   const collected = edges.finish(waveforms);
@@ -51,8 +60,13 @@ function gridFilament(filament: Filament, index: number, grid: NodeGrid, edges: 
   const tangent = new Float64Array(3);
   const cell = [0, 0, 0] as [number, number, number];
   const fraction = [0, 0, 0] as [number, number, number];
+  const nearest = grid.gridding === 'nearest';
+  const weightOf = (upper: 0 | 1, f: number) => {
+    if (nearest) return upper === (f > 0.5 ? 1 : 0) ? 1 : 0;
+    return upper ? f : 1 - f;
+  };
   const slowest = Math.max(...filament.terms.map((term) => Math.abs(term.slowness)));
-  for (const { piece, from, to } of cutAtPlanes(filament.curve, grid)) {
+  for (const { piece, from, to } of cutAtPlanes(filament.curve, grid, nearest ? [0, 0.5] : [0])) {
     const { nodes, weights } = gaussLegendre(
       pointsFor(piece.kind, ((to - from) * slowest) / filament.waveform.timeScale),
     );
@@ -70,7 +84,7 @@ function gridFilament(filament: Filament, index: number, grid: NodeGrid, edges: 
         const c = ((axis + 2) % 3) as Axis;
         for (const db of UPPER)
           for (const dc of UPPER) {
-            const across = (db ? fraction[b] : 1 - fraction[b]) * (dc ? fraction[c] : 1 - fraction[c]);
+            const across = weightOf(db, fraction[b]) * weightOf(dc, fraction[c]);
             if (across === 0) continue;
             const node: [number, number, number] = [cell[0], cell[1], cell[2]];
             node[b] += db;
@@ -83,7 +97,39 @@ function gridFilament(filament: Filament, index: number, grid: NodeGrid, edges: 
   }
 }
 
+/**
+ * The staircase of a filament: it is cut where its nearest node changes, and there the edge between the two nodes carries
+ * I(s, t) of the cut, so that the charge at a node is what flows in less what flows out. Where two or three coordinates
+ * change at once, x goes before y before z.
+ */
+function gridStaircase(filament: Filament, index: number, grid: NodeGrid, edges: PairCollector): void {
+  const point = new Float64Array(3);
+  const walk = (from: readonly number[], to: readonly number[], s: number) => {
+    const node = [...from] as [number, number, number];
+    for (const axis of AXES)
+      while (node[axis] !== to[axis]) {
+        const sign = to[axis]! > node[axis] ? 1 : -1;
+        if (sign < 0) node[axis]--;
+        for (const term of filament.terms)
+          edges.add(axis, node, sign * term.factor, term.delay + term.slowness * s, index);
+        if (sign > 0) node[axis]++;
+      }
+  };
+  let first: number[] | null = null;
+  let last: number[] = [];
+  for (const { piece, from, to } of cutAtPlanes(filament.curve, grid, [0.5])) {
+    piece.point((from + to) / 2, point);
+    const node = AXES.map((a) => Math.round(snap((point[a]! - grid.origin[a]) / grid.cellSize[a])));
+    if (first === null) first = node;
+    else walk(last, node, from);
+    last = node;
+  }
+  // A closed curve whose first point lies on a cut begins and ends at different nodes.
+  if (filament.curve.closed) walk(last, first!, filament.curve.length);
+}
+
 function gridDipole(dipole: Dipole, index: number, grid: NodeGrid, edges: PairCollector): void {
+  const linear = grid.gridding === undefined || grid.gridding === 'trilinear';
   for (const axis of AXES) {
     const moment = dipole.length * dipole.direction[axis];
     if (moment === 0) continue;
@@ -91,6 +137,7 @@ function gridDipole(dipole: Dipole, index: number, grid: NodeGrid, edges: PairCo
       const u = snap((dipole.at[a] - grid.origin[a]) / grid.cellSize[a] - (a === axis ? 0.5 : 0));
       // Edges end at the box: nearer than half a cell to a wall the linear rule is continued, which keeps the centroid.
       const last = a === axis ? grid.cells[a] - 1 : grid.cells[a];
+      if (!linear) return { lower: Math.min(Math.max(Math.round(u), 0), last), fraction: 0 };
       const lower = Math.min(Math.max(Math.floor(u), 0), Math.max(last - 1, 0));
       return { lower, fraction: u - lower };
     });
@@ -125,8 +172,11 @@ function chargesOf(edges: Pairs & { readonly axis: Uint8Array }, grid: NodeGrid)
   return collector.finish(edges.waveforms).pairs;
 }
 
-/** The curve in intervals of arc length that each lie in one cell. */
-function* cutAtPlanes(curve: Curve, grid: NodeGrid) {
+/**
+ * The curve in intervals of arc length that no plane cuts: planes through the nodes (offset 0, so that each interval lies
+ * in one cell), half a cell beside them (0.5, so that each has one nearest node), or both.
+ */
+function* cutAtPlanes(curve: Curve, grid: NodeGrid, offsets: readonly number[]) {
   const end = new Float64Array(3);
   for (const piece of curve.pieces) {
     const cuts = [piece.s0, piece.s0 + piece.length];
@@ -145,9 +195,11 @@ function* cutAtPlanes(curve: Curve, grid: NodeGrid) {
         lower = piece.centre[axis] - reach;
         upper = piece.centre[axis] + reach;
       }
-      const last = Math.floor((upper - grid.origin[axis]) / h + SNAP);
-      for (let i = Math.ceil((lower - grid.origin[axis]) / h - SNAP); i <= last; i++)
-        cuts.push(...piece.crossings(axis, grid.origin[axis] + i * h));
+      for (const offset of offsets) {
+        const last = Math.floor((upper - grid.origin[axis]) / h - offset + SNAP);
+        for (let i = Math.ceil((lower - grid.origin[axis]) / h - offset - SNAP); i <= last; i++)
+          cuts.push(...piece.crossings(axis, grid.origin[axis] + (i + offset) * h));
+      }
     }
     cuts.sort((a, b) => a - b);
     const least = SNAP * Math.min(...grid.cellSize);

@@ -270,8 +270,9 @@ function buildGrid(
         `is ${formatQuantity(duration, 's')}, less than one time step, ${formatQuantity(timeStep, 's')}; lengthen it or use smaller cells`,
       );
   }
+  const gridding = given.gridding ?? 'trilinear';
   const mask = given.mask ?? 8 * Math.max(...cellSize);
-  return { cellSize, courant, box: { from: box.from, to }, cells, boundary, precision, mask };
+  return { cellSize, courant, box: { from: box.from, to }, cells, boundary, precision, gridding, mask };
 }
 
 /** The box with its upper corner rounded outwards to whole cells. */

@@ -76,6 +76,13 @@ export type Boundary =
       readonly sigmaFactor: number;
     };
 
+/**
+ * How designed currents are put on grid edges: `trilinear` conserves charge and is of second order; `nearest` drops every
+ * piece on the nearest edge and leaves charge along the way; `staircase` walks from node to node and conserves charge.
+ */
+export const GRIDDINGS = ['trilinear', 'nearest', 'staircase'] as const;
+export type Gridding = (typeof GRIDDINGS)[number];
+
 export interface Grid {
   /** dx, dy, dz */
   readonly cellSize: Vec3;
@@ -87,6 +94,7 @@ export interface Grid {
   readonly cells: readonly [number, number, number];
   readonly boundary: Readonly<Record<Face, Boundary>>;
   readonly precision: 'single' | 'double';
+  readonly gridding: Gridding;
   /** samples nearer to a source than this (m) are left out of box norms */
   readonly mask: number;
 }

@@ -5,7 +5,7 @@
  * Messages are predicates, "is -1; it must be …": the name of the key is put before them by whoever knows its path.
  */
 import { z } from 'zod';
-import { FACES } from './model.ts';
+import { FACES, GRIDDINGS } from './model.ts';
 import { nearest } from './nearest.ts';
 import { KINDS, type Kind, type Parsed, parseFraction, parseQuantity, show } from './units.ts';
 
@@ -339,6 +339,11 @@ export const gridSchema = record('the grid', {
   precision: choice(['single', 'double'])
     .optional()
     .describe('Precision of the fields on the grid (default single; double to measure below −80 dB).'),
+  gridding: choice(GRIDDINGS)
+    .optional()
+    .describe(
+      'How currents are put on edges: trilinear (default, second order), nearest or staircase, as other solvers may do it.',
+    ),
   mask: quantity('length', 'not negative')
     .optional()
     .describe('Samples nearer to a source than this are left out of box norms, m (default: 8 of the largest cell).'),

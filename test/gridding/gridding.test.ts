@@ -1,9 +1,18 @@
+import { uniformFloat64 } from 'pure-rand/distribution/uniformFloat64';
+import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import { describe, expect, test } from 'vitest';
 import type { EdgeCurrents, NodeCharges } from '../../src/gridding/edges.ts';
 import { gaussLegendre } from '../../src/gridding/gaussLegendre.ts';
 import { gridSources, type NodeGrid } from '../../src/gridding/gridding.ts';
 import { type Curve, circle, polyline } from '../../src/scenario/curve.ts';
-import type { Dipole, Filament, Vec3, WaveTerm } from '../../src/scenario/model.ts';
+import {
+  type Dipole,
+  type Filament,
+  GRIDDINGS,
+  type Gridding,
+  type Vec3,
+  type WaveTerm,
+} from '../../src/scenario/model.ts';
 import type { Waveform } from '../../src/scenario/waveform.ts';
 
 /** A polynomial pulse: its charge and derivatives are known exactly, which is all that gridding needs of a waveform. */
@@ -199,6 +208,164 @@ describe('charge-conserving gridding', () => {
         for (let b = 0; b < 3; b++) expect(Math.abs(centroid[a]![b]! / total[a]! - at0[b]!)).toBeLessThan(1e-13);
       }
       expect(total[1]).toBe(0);
+    }
+  });
+});
+
+describe('cruder griddings, as other solvers have them', () => {
+  const h = 5e-3;
+  const cubes = (cellSize: number, gridding: Gridding): NodeGrid => ({
+    origin: [-0.1, -0.1, -0.1],
+    cellSize: [cellSize, cellSize, cellSize],
+    cells: [0.2 / cellSize, 0.2 / cellSize, 0.2 / cellSize],
+    gridding,
+  });
+  const tilted: [Vec3, Vec3] = [
+    [-0.0228, -0.0201, -0.0393],
+    [0.0252, 0.0159, 0.0407],
+  ];
+  const step = (x: number) => (x > 0 ? 1 : 0);
+
+  test('a staircase is a path of edges: the whole current on each, charge at its two ends alone', () => {
+    const { edges, charges } = gridSources([filament(polyline(tilted), uniform)], cubes(h, 'staircase'));
+    for (let e = 0; e < edges.count; e++) expect(Math.abs(at(edges, e, step, 1e-9))).toBe(1);
+    // From the node nearest to the start to that nearest to the end: as many edges as nodes lie between, axis by axis.
+    const nodes = tilted.map((p) => p.map((x) => Math.round((x + 0.1) / h)));
+    expect(edges.count).toBe([0, 1, 2].reduce((sum, a) => sum + Math.abs(nodes[1]![a]! - nodes[0]![a]!), 0));
+    const held = new Map<string, number>();
+    for (let n = 0; n < charges.count; n++) {
+      const q = at(charges, n, step, 1e-9);
+      if (q !== 0) held.set(charges.node.subarray(3 * n, 3 * n + 3).join(), q);
+    }
+    expect(held).toEqual(
+      new Map([
+        [nodes[0]!.join(), -1],
+        [nodes[1]!.join(), 1],
+      ]),
+    );
+  });
+
+  test.each([0, 0.0025])('a closed loop leaves no charge on a staircase, wherever it begins (centre at %d)', (x) => {
+    for (const normal of [
+      [0, 0, 1],
+      [0.48, 0.36, 0.8],
+    ] as Vec3[]) {
+      const loop = { ...filament(circle([x, x, 0.003], normal, 0.03), uniform), type: 'loop' as const };
+      const { edges, charges } = gridSources([loop], cubes(h, 'staircase'));
+      expect(edges.count).toBeGreaterThan(20);
+      for (let n = 0; n < charges.count; n++) expect(at(charges, n, step, 1e-9)).toBe(0);
+    }
+  });
+
+  test('on a grid line all three are the same wire', () => {
+    const wire = polyline([
+      [0, 0, -0.03],
+      [0, 0, 0.03],
+    ]);
+    const [trilinear, nearest, staircase] = GRIDDINGS.map(
+      (gridding) => gridSources([filament(wire, uniform)], cubes(h, gridding)).edges,
+    );
+    for (const other of [nearest!, staircase!]) {
+      expect([...other.node]).toEqual([...trilinear!.node]);
+      expect([...other.axis]).toEqual([...trilinear!.axis]);
+      other.weight.forEach((w, e) => {
+        expect(Math.abs(w - trilinear!.weight[e]!)).toBeLessThan(1e-12);
+      });
+    }
+  });
+
+  test('a dipole goes on one edge for each of its components', () => {
+    const dipole: Dipole = {
+      type: 'dipole',
+      name: 'd',
+      at: [0.0013, -0.0007, 0.0021],
+      direction: [0.6, 0, 0.8],
+      length: 1e-3,
+      waveform: pulse,
+    };
+    for (const gridding of ['nearest', 'staircase'] as const) {
+      const { edges } = gridSources([dipole], cubes(h, gridding));
+      expect(edges.count).toBe(2);
+      const along = [...edges.axis].map((axis, e) => [axis, edges.weight[e]! * h]);
+      expect(along).toEqual([
+        [0, expect.closeTo(0.6e-3, 15)],
+        [2, expect.closeTo(0.8e-3, 15)],
+      ]);
+    }
+  });
+
+  /** Coulomb's field of charges, up to 1/(4πε). */
+  const coulomb = (charges: readonly (readonly [Vec3, number])[], p: Vec3) =>
+    charges.reduce(
+      (sum, [place, q]) => {
+        const d = [p[0] - place[0], p[1] - place[1], p[2] - place[2]];
+        const r = Math.sqrt(d[0]! ** 2 + d[1]! ** 2 + d[2]! ** 2);
+        return sum.map((e, a) => e + (q * d[a]!) / r ** 3);
+      },
+      [0, 0, 0],
+    );
+
+  /** Error of the static field that a uniform current leaves, the worst of places `cells` from a wire's middle. */
+  function staticError(gridding: Gridding, cellSize: number, distance: number, shift: Vec3): number {
+    const ends = tilted.map((p) => p.map((x, a) => x + shift[a]!) as unknown as Vec3);
+    const lattice = cubes(cellSize, gridding);
+    const { charges } = gridSources([filament(polyline(ends), uniform)], lattice);
+    const gridded = Array.from({ length: charges.count }, (_, n) => {
+      const node = [0, 1, 2].map((a) => lattice.origin[a]! + charges.node[3 * n + a]! * cellSize);
+      return [node as unknown as Vec3, at(charges, n, step, 1e-9)] as const;
+    });
+    const designed = [[ends[0]!, -1] as const, [ends[1]!, 1] as const];
+    const middle = ends[0]!.map((x, a) => (x + ends[1]![a]!) / 2);
+    // Across the wire, whose direction is (0.48, 0.36, 0.8).
+    const across: Vec3[] = [
+      [0.6, -0.8, 0],
+      [-0.6, 0.8, 0],
+      [0.64, 0.48, -0.6],
+      [-0.64, -0.48, 0.6],
+    ];
+    return Math.max(
+      ...across.map((v) => {
+        const p = middle.map((x, a) => x + distance * v[a]!) as unknown as Vec3;
+        const [a, b] = [coulomb(gridded, p), coulomb(designed, p)];
+        return Math.sqrt(a.reduce((sum, e, i) => sum + (e - b[i]!) ** 2, 0) / b.reduce((sum, e) => sum + e * e, 0));
+      }),
+    );
+  }
+
+  test('static field at three cells: nearest edges are wrong by far more than a staircase or trilinear weights', () => {
+    const error = (gridding: Gridding) => staticError(gridding, h, 3 * h, [0, 0, 0]);
+    const [trilinear, nearest, staircase] = GRIDDINGS.map(error) as [number, number, number];
+    console.log(
+      `static error at 3 cells: trilinear ${(100 * trilinear).toFixed(2)} %, nearest ${(100 * nearest).toFixed(1)} %, staircase ${(100 * staircase).toFixed(2)} %`,
+    );
+    expect(trilinear).toBeLessThan(0.01);
+    expect(nearest).toBeGreaterThan(0.1);
+    expect(staircase).toBeLessThan(nearest);
+  });
+
+  test('far off, a staircase is of an order between a half and one and a half, trilinear of second', () => {
+    // Where the wire lies in the cells decides a single error: the root mean square over places of it is refined.
+    const random = xoroshiro128plus(7);
+    const shifts = Array.from(
+      { length: 200 },
+      () => [0, 0, 0].map(() => h * (uniformFloat64(random) - 0.5)) as unknown as Vec3,
+    );
+    const rms = (gridding: Gridding, cellSize: number) =>
+      Math.sqrt(shifts.reduce((sum, s) => sum + staticError(gridding, cellSize, 0.08, s) ** 2, 0) / shifts.length);
+    const sizes = [5e-3, 2.5e-3, 1.25e-3];
+    for (const [gridding, low, high] of [
+      ['staircase', 0.5, 1.5],
+      ['trilinear', 1.7, 2.3],
+    ] as const) {
+      const errors = sizes.map((size) => rms(gridding, size));
+      const found = errors.slice(1).map((e, m) => Math.log2(errors[m]! / e));
+      console.log(
+        `${gridding}: ${errors.map((e) => `${(100 * e).toFixed(3)} %`).join(', ')}; orders ${found.map((p) => p.toFixed(2)).join(', ')}`,
+      );
+      for (const order of found) {
+        expect(order).toBeGreaterThan(low);
+        expect(order).toBeLessThan(high);
+      }
     }
   });
 });
