@@ -1,6 +1,6 @@
 /**
  * Builds everything that is not in the repository: the WebAssembly kernels (as TypeScript modules that hold their bytes
- * in base64, in src/kernels/) and the bundle in dist/ (command line, worker, library).
+ * in base64, in src/kernels/) and the bundles in dist/ (command line, worker, library; the page in dist/page/).
  *
  *   node assembly/build.mjs             build what is out of date
  *   node assembly/build.mjs --kernels   the kernels alone
@@ -76,11 +76,13 @@ function buildKernels(folder) {
   return lines;
 }
 
-const common = ['package.json', 'package-lock.json', 'asconfig.json', 'vite.config.ts'].map((name) => join(root, name));
+const common = ['package.json', 'package-lock.json', 'asconfig.json', 'vite.config.ts', 'vite.page.ts'].map((name) => join(root, name));
 refresh(join(root, 'src/kernels'), [...common, ...filesBelow(join(root, 'assembly'))], buildKernels);
 
 if (!process.argv.includes('--kernels')) {
   refresh(join(root, 'dist'), [...common, ...filesBelow(join(root, 'src'))], (folder) => {
-    run('vite build', 'vite/bin/vite.js', ['build', '--outDir', folder, '--emptyOutDir', '--logLevel', 'warn']);
+    const vite = ['vite/bin/vite.js', ['build', '--emptyOutDir', '--logLevel', 'warn', '--outDir']];
+    run('vite build', vite[0], [...vite[1], folder]);
+    run('vite build of the page', vite[0], [...vite[1], join(folder, 'page'), '--config', 'vite.page.ts']);
   });
 }

@@ -11,7 +11,7 @@ import { exactCommand } from './exact.ts';
 import { InputError, readScenario } from './input.ts';
 import { writeFolder, writeWhole } from './output.ts';
 import { progressLine } from './progress.ts';
-import { serveFolder } from './serve.ts';
+import { servePage } from './serve.ts';
 
 /** Exit statuses: 0 done and within tolerance, 1 done and outside it, 2 the input was refused, 3 something failed. */
 const DONE = 0;
@@ -84,7 +84,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
-    .option('--serve', 'with --out: serve the report on the loopback address until Ctrl-C')
+    .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
     .option('--port <n>', 'with --serve: the port', portNumber, 0)
     .addHelpText('after', '\nExample: fieldassay compare bench-cable-pulse --out out\n')
     .action(async (name: string, options: CompareFlags) => {
@@ -100,7 +100,13 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
           }),
         );
       end(withinTolerance(result) ? DONE : OUTSIDE);
-      if (options.serve && options.out) await served(options.out, options.port, signal);
+      if (options.serve && options.out)
+        await served(
+          options.out,
+          options.port,
+          signal,
+          (url) => `\nThe page:   ${url}\nThe report: ${url}report.html   (Ctrl-C ends)\n`,
+        );
     });
 
   program
@@ -112,6 +118,16 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .addHelpText('after', '\nExample: fieldassay exact small-loop --points points.csv --out field.csv\n')
     .action(async (name: string, options: { points: string; out: string }) => {
       writeWhole(options.out, await exactCommand(readScenario(name), options.points, signal));
+    });
+
+  program
+    .command('view')
+    .argument('[dir]', 'a result folder: its report is served at /report.html, its files under /results/')
+    .description('serve the page on the loopback address, until Ctrl-C')
+    .option('--port <n>', 'the port (default: any free one)', portNumber, 0)
+    .addHelpText('after', '\nExample: fieldassay view out\n')
+    .action(async (folder: string | undefined, { port }: { port: number }) => {
+      await served(folder ?? null, port, signal, (url) => `${url}\n`);
     });
 
   program
@@ -169,9 +185,14 @@ function commandLine(name: string, { out, threads }: CompareFlags): string {
   return `npx fieldassay compare ${quoted}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
 }
 
-async function served(folder: string, port: number, signal: AbortSignal): Promise<void> {
-  const { server, url } = await serveFolder(folder, port);
-  process.stdout.write(`\nThe report: ${url}   (Ctrl-C ends)\n`);
+async function served(
+  folder: string | null,
+  port: number,
+  signal: AbortSignal,
+  say: (url: string) => string,
+): Promise<void> {
+  const { server, url } = await servePage(folder, port);
+  process.stdout.write(say(url));
   await new Promise<void>((done) => {
     const close = () => {
       server.closeAllConnections();

@@ -1,12 +1,11 @@
 import { existsSync } from 'node:fs';
-import { createServer, type Server } from 'node:http';
+import { createServer, type IncomingMessage, type Server, type ServerResponse } from 'node:http';
 import { resolve } from 'node:path';
+import { fileURLToPath } from 'node:url';
 import sirv from 'sirv';
 
-/** Headers of every answer: no script, nothing from elsewhere, no embedding, isolated from other origins. */
+/** Headers of every answer: not embedded, not guessed at, not kept, isolated from other origins. */
 const HEADERS = {
-  'Content-Security-Policy':
-    "default-src 'none'; style-src 'unsafe-inline'; img-src data:; base-uri 'none'; form-action 'none'; frame-ancestors 'none'",
   'Cross-Origin-Opener-Policy': 'same-origin',
   'Cross-Origin-Embedder-Policy': 'require-corp',
   'Cross-Origin-Resource-Policy': 'same-origin',
@@ -15,19 +14,47 @@ const HEADERS = {
   'Cache-Control': 'no-store',
 };
 
+const ALWAYS = "base-uri 'none'; form-action 'none'; frame-ancestors 'none'";
+
+/** The page runs its own scripts, workers and WebAssembly, and nothing else; it asks nobody but this server. */
+const PAGE_POLICY =
+  "default-src 'none'; script-src 'self' 'wasm-unsafe-eval'; worker-src 'self'; style-src 'self'; " +
+  `img-src 'self' data: blob:; media-src blob:; connect-src 'self'; ${ALWAYS}`;
+
+/** A report runs nothing and asks nobody: its style is its own. */
+const REPORT_POLICY = `default-src 'none'; style-src 'unsafe-inline'; img-src data:; ${ALWAYS}`;
+
+/** Where the built page lies: beside the bundle that runs, or, from sources, in dist/. */
+function pageFolder(): string {
+  for (const place of ['./page', '../page', '../../dist/page']) {
+    const path = fileURLToPath(new URL(place, import.meta.url));
+    if (existsSync(`${path}/index.html`)) return path;
+  }
+  throw new Error('the page (dist/page) is missing: run `npm run build`');
+}
+
+type Answer = (request: IncomingMessage, response: ServerResponse, refuse: () => void) => void;
+
 /**
- * Serves the result folder on the loopback address: files of that folder only, and only to requests that name the
- * loopback host, so that no other site can reach it through a browser (DNS rebinding).
+ * Serves the page on the loopback address at /, and the files of a result folder: its report at /report.html, all of them
+ * under /results/. Only to requests that name the loopback host, so that no other site can reach it through a browser
+ * (DNS rebinding).
+ * @param folder of results; null for none
  * @param port 0 for any free one
- * @throws Error when the folder is missing or the port is taken
+ * @throws Error when a folder is missing or the port is taken
  */
-export async function serveFolder(folder: string, port: number): Promise<{ server: Server; url: string }> {
-  if (!existsSync(folder))
+export async function servePage(folder: string | null, port: number): Promise<{ server: Server; url: string }> {
+  if (folder !== null && !existsSync(folder))
     throw new Error(`there is no folder ${folder}: run \`fieldassay compare --out ${folder}\` first`);
-  const files = sirv(resolve(folder), { dev: true, dotfiles: false, etag: false });
+  const options = { dev: true, dotfiles: false, etag: false };
+  const page: Answer = sirv(pageFolder(), options);
+  const results: Answer = folder === null ? (_request, _response, refuse) => refuse() : sirv(resolve(folder), options);
   const server = createServer((request, response) => {
     const { port: own } = server.address() as { port: number };
     for (const [name, value] of Object.entries(HEADERS)) response.setHeader(name, value);
+    const [path] = (request.url ?? '/').split('?') as [string];
+    const ofResults = path === '/report.html' || path.startsWith('/results/');
+    response.setHeader('Content-Security-Policy', ofResults ? REPORT_POLICY : PAGE_POLICY);
     const refuse = (status: number, text: string) => {
       response.writeHead(status, { 'Content-Type': 'text/plain; charset=utf-8' });
       response.end(`${text}\n`);
@@ -35,8 +62,9 @@ export async function serveFolder(folder: string, port: number): Promise<{ serve
     if (![`127.0.0.1:${own}`, `localhost:${own}`, `[::1]:${own}`].includes(request.headers.host ?? ''))
       return refuse(421, 'This address serves the loopback host only.');
     if (request.method !== 'GET' && request.method !== 'HEAD') return refuse(405, 'Only GET and HEAD.');
-    if (request.url === '/') request.url = '/report.html';
-    files(request, response, () => refuse(404, 'No such file in the result folder.'));
+    if (path.startsWith('/results/')) request.url = path.slice('/results'.length);
+    const answer = ofResults ? results : page;
+    answer(request, response, () => refuse(404, 'No such file here.'));
   });
   await new Promise<void>((done, fail) => {
     server.once('error', (error: NodeJS.ErrnoException) =>

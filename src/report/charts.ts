@@ -74,7 +74,7 @@ export function partsChart(trace: ObserverTrace): Chart | null {
   };
   return timeChart(
     trace,
-    `${trace.component}, observer ${trace.observer}: the difference and its parts`,
+    `${trace.component}, observer ${trace.observer}: difference and parts`,
     'The difference against time, and the parts that add up to it.',
     [total, ...parts],
   );

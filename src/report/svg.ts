@@ -68,8 +68,9 @@ export interface ChartLayout extends ChartSize {
 export type Position = (value: number) => number;
 
 /** The layout of a chart drawn at a size. */
-export function chartLayout(chart: Pick<Chart, 'x' | 'y'>, { width, height }: ChartSize = REPORT_SIZE): ChartLayout {
-  const [left, right, top, bottom] = [62, width - 14, 54, height - 42];
+export function chartLayout(chart: Chart, { width, height }: ChartSize = REPORT_SIZE): ChartLayout {
+  const [left, right, bottom] = [62, width - 14, height - 42];
+  const top = 54 + LEGEND_LINE * Math.max(0, ...legendPlaces(chart.series, width).map(({ line }) => line));
   return {
     width,
     height,
@@ -87,7 +88,7 @@ export function chartSvg(chart: Chart, size: ChartSize = REPORT_SIZE): Markup {
   const at = chartLayout(chart, size);
   return markup`<svg class="chart" xmlns="http://www.w3.org/2000/svg" viewBox="0 0 ${at.width} ${at.height}" role="img">
 <title>${chart.title}</title><desc>${chart.description}</desc>
-<text class="title" x="${at.left}" y="16">${chart.title}</text>
+<text class="title" x="${LEGEND_LEFT}" y="16">${chart.title}</text>
 ${legend(chart.series, at)}
 ${shade(chart.shaded, at)}
 ${xAxis(chart.x, at)}${yAxis(chart.y, at)}
@@ -159,13 +160,32 @@ function yAxis(axis: Axis, { y, left, right, top, bottom }: ChartLayout): Markup
   )}<text transform="translate(14 ${middle}) rotate(-90)" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
 }
 
-/** Names beside a stroke of their line, in a row under the title. A character is about 6.4 pixels wide. */
-function legend(series: readonly Series[], { left: start }: ChartLayout): Markup {
-  let left = start;
-  const entries = series.map(({ name, colour, dashed, thin }) => {
-    const x = left;
-    left += 26 + name.length * 6.4 + 12;
-    return markup`<line class="series${dashed ? ' dashed' : ''}${thin ? ' thin' : ''}" stroke="var(--${colour})" x1="${x}" x2="${x + 20}" y1="34" y2="34"/><text x="${round(x + 26)}" y="38">${name}</text>`;
+/** Where titles and legends begin, and the height of a line of a legend. */
+const LEGEND_LEFT = 14;
+const LEGEND_LINE = 16;
+
+/** Names beside a stroke of their line, in rows under the title. A character is about 6.4 pixels wide. */
+function legendPlaces(series: readonly Series[], width: number): { readonly x: number; readonly line: number }[] {
+  let left = LEGEND_LEFT;
+  let line = 0;
+  return series.map(({ name }) => {
+    const length = 26 + name.length * 6.4;
+    if (left > LEGEND_LEFT && left + length > width) {
+      left = LEGEND_LEFT;
+      line++;
+    }
+    const x = round(left);
+    left += length + 12;
+    return { x, line };
+  });
+}
+
+function legend(series: readonly Series[], { width }: ChartLayout): Markup {
+  const places = legendPlaces(series, width);
+  const entries = series.map(({ name, colour, dashed, thin }, n) => {
+    const { x, line } = places[n]!;
+    const y = 34 + LEGEND_LINE * line;
+    return markup`<line class="series${dashed ? ' dashed' : ''}${thin ? ' thin' : ''}" stroke="var(--${colour})" x1="${x}" x2="${x + 20}" y1="${y}" y2="${y}"/><text x="${round(x + 26)}" y="${y + 4}">${name}</text>`;
   });
   return markup`<g>${entries}</g>`;
 }

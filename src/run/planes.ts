@@ -120,8 +120,8 @@ export async function filmGrid(
     at += list.length;
   }
   const problem = problemOf(question, [
-    { cell: cells, every: 1 },
     { cell: joined, every },
+    ...(cells.length > 0 ? [{ cell: cells, every: 1 }] : []),
   ]);
   const shapes = slices.map(({ nu, nv, normal }) => ({ cells: nu * nv, normal }));
   const packed = packProblem(problem);

@@ -16,7 +16,7 @@ export interface Tasks {
   leadGrid(packed: PackedProblem, prepared: PreparedGrid, stillLevel: number | null): GridResult;
   /** the same on this thread alone, where memory cannot be shared */
   marchGrid(packed: PackedProblem, stillLevel: number | null): GridResult;
-  /** leads a grid run whose second group of samples is a film; emits `GridFrames`, returns the first group's samples */
+  /** leads a grid run whose first group of samples is a film; emits `GridFrames`, returns the second group's samples */
   leadFilm(packed: PackedProblem, prepared: PreparedGrid, shapes: readonly SliceShape[]): Float64Array;
   filmAlone(packed: PackedProblem, shapes: readonly SliceShape[]): Float64Array;
   /** the exact field of designed or gridded currents at cells of a slice: data[(frame·9 + channel)·cells + cell] */
@@ -70,14 +70,14 @@ function march(run: GridRun, stillLevel: number | null): GridResult {
 function film(run: GridRun, shapes: readonly SliceShape[]): Float64Array {
   let shown = 0;
   const { samples } = lead(run, {
-    onSamples: ([, slices]) => {
+    onSamples: ([slices]) => {
       const { values, taken } = slices!;
       const count = values.length / (12 * shapes.reduce((sum, { cells }) => sum + cells, 0));
       if (taken > shown) workerpool.workerEmit(framesOf(values, count, shown, taken, shapes));
       shown = taken;
     },
   });
-  return samples[0]!;
+  return samples[1] ?? new Float64Array(0);
 }
 
 const tasks: Tasks = {

@@ -1,0 +1,564 @@
+import { OrthographicCamera, PerspectiveCamera, Vector3 } from 'three';
+import { OrbitControls } from 'three/addons/controls/OrbitControls.js';
+import { NEUTRALS, packed, type Scale, type SignedScale } from '../draw/colour.ts';
+import { contours } from '../draw/contour.ts';
+import { absorberEdges, boxEdges, contourLines, maskOutline, planeOutline, wire } from '../draw/furniture.ts';
+import { type Hit, paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
+import { Picture } from '../draw/picture.ts';
+import { type Box, cameraFor, type Camera as PaneCamera, type Rectangle } from '../draw/projection.ts';
+import type { Marker, Pane, Plane, Scene, Stroke } from '../draw/scene.ts';
+import { formatQuantity } from '../elementary/quantity.ts';
+import { PALETTE } from '../report/palette.ts';
+import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
+import { byId } from './dom.ts';
+import { paintLabels } from './labels.ts';
+import { Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
+import { quantityOf } from './quantity.ts';
+import { planesShown, type Runner } from './runner.ts';
+import type { Store } from './store.ts';
+import { currentOn, type DrawnSource, drawnSources, largestCurrent } from './wires.ts';
+
+/** Image pixels that are drawn at most: beyond, the image is drawn smaller and stretched, the texts are not. */
+const MOST_PIXELS = 2.4e6;
+
+/** Below this width, CSS pixels, the panes stand one above the other. */
+const STACKED = 620;
+
+const TITLES: Readonly<Record<Side, string>> = { grid: 'Grid field', exact: 'Exact field', difference: 'Difference' };
+
+/** The box's sphere leaves room around the box in a pane: the first view is this much nearer. */
+const CLOSER = 1.12;
+
+/** Views along the axes and the one that a run begins with: direction from the middle of the box to the eye. */
+export const VIEWS = {
+  corner: [0.9, -1.3, 0.75],
+  x: [1, 0, 0.0001],
+  y: [0, -1, 0.0001],
+  z: [0, -0.0001, 1],
+} as const satisfies Record<string, Vec3>;
+export type ViewName = keyof typeof VIEWS;
+
+/** What lies under the pointer, with the values of all three pictures there. */
+export interface Reading {
+  readonly hit: Hit;
+  readonly unit: string;
+  readonly label: string;
+  readonly grid: number;
+  readonly exact: number;
+}
+
+interface Furniture {
+  readonly scenario: Scenario;
+  readonly sources: readonly DrawnSource[];
+  readonly outer: Box;
+  readonly current: SignedScale;
+}
+
+/** The panes: one image for all, drawn when something in it has changed. */
+export class Panes {
+  private readonly canvas = byId<HTMLCanvasElement>('panes-image');
+  private readonly texts = byId<HTMLCanvasElement>('panes-texts');
+  private readonly host = byId('panes');
+  private readonly pictures = new Pictures();
+  private picture = new Picture(1, 1);
+  private ratio = 1;
+  private camera: PaneCamera = new PerspectiveCamera();
+  private controls: OrbitControls | undefined;
+  private furniture: Furniture | undefined;
+  private masks: { readonly film: unknown; readonly strokes: Stroke[] } | undefined;
+  private dirty = false;
+  private drag:
+    | { readonly plane: number; readonly from: Vec3; readonly normal: Vec3; at: number; readonly pane: number }
+    | undefined;
+  private dividing = false;
+  private pressed: { readonly x: number; readonly y: number; readonly time: number } | undefined;
+  scene: Scene | undefined;
+  /** milliseconds that the last pictures took */
+  readonly costs: number[] = [];
+
+  constructor(
+    private readonly store: Store,
+    private readonly runner: Runner,
+    private readonly onRead: (reading: Reading | undefined) => void,
+    private readonly onPick: (place: Vec3, x: number, y: number) => void,
+  ) {
+    new ResizeObserver(() => this.resize()).observe(this.host);
+    store.on(['view', 'frame', 'film', 'theme', 'scenario', 'result'], () => this.invalidate());
+    this.listen();
+  }
+
+  /** Draws again at the next opportunity. */
+  invalidate(): void {
+    if (this.dirty) return;
+    this.dirty = true;
+    requestAnimationFrame(() => {
+      this.dirty = false;
+      this.draw();
+    });
+  }
+
+  /** Turns the camera to one of the named views, keeping its kind. */
+  look(name: ViewName): void {
+    this.setCamera(VIEWS[name]);
+  }
+
+  /** Turns or tips the camera by some degrees, and brings it nearer by a factor: for the keyboard. */
+  turn(degreesRight: number, degreesUp: number, nearer = 1): void {
+    const target = this.controls?.target ?? new Vector3();
+    const arm = this.camera.position.clone().sub(target);
+    const up = new Vector3(0, 0, 1);
+    arm.applyAxisAngle(up, (-degreesRight * Math.PI) / 180);
+    const side = new Vector3().crossVectors(up, arm).normalize();
+    const tipped = arm.clone().applyAxisAngle(side, (-degreesUp * Math.PI) / 180);
+    if (Math.abs(tipped.clone().normalize().z) < 0.9999) arm.copy(tipped);
+    if (this.camera instanceof OrthographicCamera) this.camera.zoom *= nearer;
+    else arm.divideScalar(nearer);
+    this.camera.position.copy(target).add(arm);
+    this.camera.lookAt(target);
+    this.controls?.update();
+    this.invalidate();
+  }
+
+  private setCamera(from?: Vec3): void {
+    const { scenario } = this.store.state;
+    if (!scenario) return;
+    const { projection } = this.store.state.view;
+    const old = this.controls?.target.clone();
+    const direction = from ?? (old ? this.camera.position.clone().sub(old).toArray() : VIEWS.corner);
+    const [area] = this.areas(this.paneCount());
+    this.camera = cameraFor(
+      scenario.grid.box,
+      projection,
+      area!.width / Math.max(1, area!.height - 80),
+      direction as Vec3,
+    );
+    this.camera.zoom = CLOSER;
+    this.camera.updateProjectionMatrix();
+    this.controls?.dispose();
+    const controls = new OrbitControls(this.camera, this.canvas);
+    controls.target.set(
+      ...([0, 1, 2].map((a) => (scenario.grid.box.from[a]! + scenario.grid.box.to[a]!) / 2) as [
+        number,
+        number,
+        number,
+      ]),
+    );
+    const distance = this.camera.position.distanceTo(controls.target);
+    controls.minDistance = distance / 20;
+    controls.maxDistance = distance * 4;
+    controls.minZoom = 0.25;
+    controls.maxZoom = 20;
+    controls.update();
+    controls.addEventListener('change', () => this.invalidate());
+    this.controls = controls;
+    this.invalidate();
+  }
+
+  private resize(): void {
+    const { clientWidth: width, clientHeight: height } = this.host;
+    if (width === 0 || height === 0) return;
+    this.ratio = Math.min(devicePixelRatio, Math.sqrt(MOST_PIXELS / (width * height)));
+    this.canvas.width = Math.round(width * this.ratio);
+    this.canvas.height = Math.round(height * this.ratio);
+    this.texts.width = Math.round(width * devicePixelRatio);
+    this.texts.height = Math.round(height * devicePixelRatio);
+    this.picture = new Picture(this.canvas.width, this.canvas.height);
+    this.invalidate();
+  }
+
+  private paneCount(): number {
+    return this.store.state.view.layout === 'overlay' ? 1 : 3;
+  }
+
+  private areas(count: number): Rectangle[] {
+    const { width, height } = this.canvas;
+    const stacked = this.host.clientWidth < STACKED;
+    const gap = Math.round(this.ratio);
+    return Array.from({ length: count }, (_, n) => {
+      const [from, to] = [n, n + 1].map((k) => Math.round(((stacked ? height : width) * k) / count)) as [
+        number,
+        number,
+      ];
+      return stacked
+        ? { x: 0, y: from, width, height: to - from - gap }
+        : { x: from, y: 0, width: to - from - gap, height };
+    });
+  }
+
+  private ready(): Furniture | undefined {
+    const { scenario } = this.store.state;
+    if (!scenario) return undefined;
+    if (this.furniture?.scenario === scenario) return this.furniture;
+    const { from, to } = scenario.grid.box;
+    const layers = (face: number, a: number) => {
+      const wall = scenario.grid.boundary[FACES[face]!];
+      return wall.type === 'cpml' ? wall.layers * scenario.grid.cellSize[a]! : 0;
+    };
+    const outer: Box = {
+      from: [0, 1, 2].map((a) => from[a]! - layers(2 * a, a)) as unknown as Vec3,
+      to: [0, 1, 2].map((a) => to[a]! + layers(2 * a + 1, a)) as unknown as Vec3,
+    };
+    const before = this.furniture?.scenario.grid.box;
+    this.furniture = {
+      scenario,
+      sources: drawnSources(scenario),
+      outer,
+      current: { kind: 'signed', limit: largestCurrent(scenario), label: 'I, A' },
+    };
+    if (!before || JSON.stringify(before) !== JSON.stringify(scenario.grid.box))
+      this.setCamera(before ? undefined : VIEWS.corner);
+    return this.furniture;
+  }
+
+  private draw(): void {
+    const furniture = this.ready();
+    if (!furniture || this.canvas.width < 2) return;
+    const started = performance.now();
+    const kind = this.camera instanceof PerspectiveCamera ? 'perspective' : 'orthographic';
+    if (kind !== this.store.state.view.projection) this.setCamera();
+    this.scene = this.sceneOf(furniture);
+    const labels = this.picture.draw(this.scene);
+    const { bytes, width, height } = this.picture.surface;
+    this.canvas.getContext('2d')!.putImageData(new ImageData(bytes, width, height), 0, 0);
+    paintLabels(this.texts, labels, this.store.state.theme, this.ratio);
+    this.costs.push(performance.now() - started);
+    if (this.costs.length > 600) this.costs.shift();
+    performance.mark('picture');
+  }
+
+  private sceneOf(furniture: Furniture): Scene {
+    const { view, theme } = this.store.state;
+    const panes = view.layout === 'trust' ? this.trustPanes(furniture) : this.fieldPanes(furniture);
+    return { theme, pixelRatio: this.ratio, panes };
+  }
+
+  private fieldPanes(furniture: Furniture): Pane[] {
+    const { film, view, frame } = this.store.state;
+    const { scenario } = furniture;
+    const quantity = quantityOf(view.quantity);
+    if (film && quantity.kind === 'potential') this.runner.wantPotentials(frame);
+    const scales = film && this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
+    const planes = (side: Side): Plane[] =>
+      film && scales && film.films[0] ? this.pictures.planes(film, scenario, quantity, frame, side, scales[side]) : [];
+    const strokes = this.strokesOf(furniture);
+    const common = { camera: this.camera, markers: this.markersOf(scenario), axes: scenario.grid.box };
+    const lines = (exact: readonly Plane[]): Stroke[] => {
+      if (!scales || scales.exact.kind !== 'signed') return [];
+      const { limit } = scales.exact;
+      return exact.map((plane) =>
+        contourLines(
+          plane,
+          [0.1, 0.3, 0.5, 0.7, 0.9].map((s) => s * limit),
+          NEUTRALS[this.store.state.theme],
+        ),
+      );
+    };
+    const withScale = (scale: Scale | undefined) => (scale ? { scale } : {});
+    const quantityTitle = (side: Side) => `${TITLES[side]}, ${quantity.label}`;
+    if (view.layout === 'overlay') {
+      const [grid, exact] = [planes('grid'), planes('exact')];
+      return [
+        {
+          ...common,
+          area: this.areas(1)[0]!,
+          title: `${quantity.label}: grid on the left of the divider, exact on its right; lines are the exact field’s contours`,
+          planes: grid,
+          overlay: { divider: view.divider, planes: exact },
+          strokes: [...strokes, ...lines(exact)],
+          ...withScale(scales?.grid),
+        },
+      ];
+    }
+    return (['grid', 'exact', 'difference'] as const).map((side, n) => ({
+      ...common,
+      area: this.areas(3)[n]!,
+      title: quantityTitle(side),
+      planes: planes(side),
+      strokes: side === 'grid' && view.contours ? [...strokes, ...lines(planes('exact'))] : strokes,
+      ...withScale(scales?.[side]),
+    }));
+  }
+
+  private trustPanes(furniture: Furniture): Pane[] {
+    const { film, result, theme } = this.store.state;
+    const { scenario } = furniture;
+    const scales = {
+      E: trustScale(scenario.tolerance, 'E'),
+      H: trustScale(scenario.tolerance, 'H'),
+      largest: partScale(theme),
+    };
+    const outside = packed(PALETTE.outside[theme]);
+    const { ink, muted } = NEUTRALS[theme];
+    const polylines = furniture.sources.map(({ points }) => points);
+    const verdict = result?.verdict;
+    const bound = (plane: Plane, distance: number, colour: number): Stroke => ({
+      ...maskOutline(plane, polylines, distance, colour),
+      width: 1.6,
+      dash: [5, 3],
+    });
+    const strokesOn = (planes: readonly Plane[]): Stroke[] =>
+      planes.flatMap((plane) => [
+        { points: contours(plane, [scenario.tolerance]), form: 'segments' as const, colour: outside, width: 1.8 },
+        ...(verdict && 'distance' in verdict.closest ? [bound(plane, verdict.closest.distance, ink)] : []),
+        ...(verdict && 'distance' in verdict.farthest ? [bound(plane, verdict.farthest.distance, muted)] : []),
+      ]);
+    const clearance =
+      verdict && 'distance' in verdict.wallClearance
+        ? [clearanceBox(scenario, verdict.wallClearance.distance, outside)]
+        : [];
+    const titles = { E: 'Error of E', H: 'Error of H', largest: 'Largest part of E’s error' };
+    return (['E', 'H', 'largest'] as const).map((which, n) => {
+      const planes = film ? trustPlanes(film, scenario, which, scales[which]) : [];
+      return {
+        camera: this.camera,
+        markers: this.markersOf(scenario),
+        axes: scenario.grid.box,
+        area: this.areas(3)[n]!,
+        title: planes.length > 0 ? titles[which] : `${titles[which]}: not known yet`,
+        planes,
+        strokes: [...this.strokesOf(furniture), ...clearance, ...(which === 'largest' ? [] : strokesOn(planes))],
+        scale: scales[which],
+      };
+    });
+  }
+
+  private strokesOf({ scenario, sources, outer, current }: Furniture): Stroke[] {
+    const { film, frame, theme } = this.store.state;
+    const neutrals = NEUTRALS[theme];
+    const t = film ? film.instants.E[frame]! : 0;
+    const absorber =
+      JSON.stringify(outer) === JSON.stringify(scenario.grid.box) ? [] : [absorberEdges(outer, neutrals)];
+    const wires = sources.flatMap((source) => wire(source.points, currentOn(source, t), current, theme, neutrals));
+    const dragged = this.drag ? this.draggedRim() : [];
+    return [
+      ...absorber,
+      boxEdges(scenario.grid.box, neutrals),
+      ...this.maskStrokes(sources, scenario),
+      ...wires,
+      ...dragged,
+    ];
+  }
+
+  private maskStrokes(sources: readonly DrawnSource[], { grid }: Scenario): Stroke[] {
+    const { film, scenario, theme } = this.store.state;
+    if (!film || !scenario) return [];
+    const key = `${theme} ${film.films.map(({ slice }) => `${slice.normal}${slice.layer}`).join()} ${grid.mask}`;
+    if (this.masks?.film === key) return this.masks.strokes;
+    const scale: SignedScale = { kind: 'signed', limit: 1, label: '' };
+    const strokes = this.pictures.planes(film, scenario, quantityOf('Ez'), 0, 'grid', scale).map((plane) => ({
+      ...maskOutline(
+        plane,
+        sources.map(({ points }) => points),
+        grid.mask,
+        NEUTRALS[theme].muted,
+      ),
+      dash: [2, 3] as const,
+    }));
+    this.masks = { film: key, strokes };
+    return strokes;
+  }
+
+  private markersOf(scenario: Scenario): Marker[] {
+    const { theme, view } = this.store.state;
+    const { ink, muted } = NEUTRALS[theme];
+    const observers = scenario.observers.map(({ at, name }) => ({
+      at,
+      name,
+      colour: name === view.observer ? ink : muted,
+    }));
+    const grips = planesShown(scenario).map((plane, n) => ({
+      at: this.gripOf(scenario, n),
+      name: `${'xyz'[plane.normal]} = ${formatQuantity(this.drag?.plane === n ? this.drag.at : plane.at, 'm')}`,
+      colour: muted,
+    }));
+    return [...observers, ...grips];
+  }
+
+  /** The corner of a plane by which it is taken. */
+  private gripOf({ grid, ...scenario }: Scenario, n: number): Vec3 {
+    const plane = planesShown({ grid, ...scenario })[n]!;
+    return [0, 1, 2].map((a) =>
+      a === plane.normal ? (this.drag?.plane === n ? this.drag.at : plane.at) : grid.box.to[a]!,
+    ) as unknown as Vec3;
+  }
+
+  private draggedRim(): Stroke[] {
+    const { scenario } = this.store.state;
+    const { drag } = this;
+    if (!scenario || !drag) return [];
+    const { normal } = planesShown(scenario)[drag.plane]!;
+    const [u, v] = [0, 1, 2].filter((a) => a !== normal) as [number, number];
+    const { from, to } = scenario.grid.box;
+    const edge = (axis: number) => [0, 1, 2].map((a) => (a === axis ? to[a]! - from[a]! : 0)) as unknown as Vec3;
+    const origin = from.map((x, a) => (a === normal ? drag.at : x)) as unknown as Vec3;
+    return [{ ...planeOutline({ origin, u: edge(u), v: edge(v) }, NEUTRALS[this.store.state.theme]), width: 2 }];
+  }
+
+  // ------------------------------------------------------------------------------------------------------------ pointer
+
+  private place(event: PointerEvent): [number, number] {
+    const bounds = this.canvas.getBoundingClientRect();
+    return [(event.clientX - bounds.left) * this.ratio, (event.clientY - bounds.top) * this.ratio];
+  }
+
+  private listen(): void {
+    const { canvas } = this;
+    canvas.addEventListener('pointerdown', (event) => this.press(event), { capture: true });
+    canvas.addEventListener('pointermove', (event) => this.move(event));
+    canvas.addEventListener('pointerup', (event) => this.release(event));
+    canvas.addEventListener('pointerleave', () => this.onRead(undefined));
+    // The page must not scroll while the wheel zooms.
+    canvas.addEventListener('wheel', (event) => event.preventDefault(), { passive: false });
+  }
+
+  private press(event: PointerEvent): void {
+    const { scene } = this;
+    const { scenario, view } = this.store.state;
+    if (!scene || !scenario || event.button !== 0) return;
+    const [x, y] = this.place(event);
+    this.pressed = { x: event.clientX, y: event.clientY, time: event.timeStamp };
+    if (view.layout === 'overlay' && Math.abs(x - this.dividerPixel()) < 8 * this.ratio) {
+      this.dividing = true;
+      if (this.controls) this.controls.enabled = false;
+      return;
+    }
+    const marker = pickMarker(scene, x, y, 12 * this.ratio);
+    const pane = paneAt(scene, x, y);
+    const n = planesShown(scenario).findIndex(
+      (_, k) => marker !== undefined && sameVec(this.gripOf(scenario, k), marker.at),
+    );
+    if (n < 0 || pane === undefined) return;
+    const { normal, at } = planesShown(scenario)[n]!;
+    this.drag = {
+      plane: n,
+      pane,
+      from: this.gripOf(scenario, n),
+      normal: [0, 1, 2].map((a) => (a === normal ? 1 : 0)) as unknown as Vec3,
+      at,
+    };
+    if (this.controls) this.controls.enabled = false;
+    canvasCapture(this.canvas, event.pointerId);
+  }
+
+  private dividerPixel(): number {
+    const [area] = this.areas(1);
+    return area!.x + this.store.state.view.divider * area!.width;
+  }
+
+  private move(event: PointerEvent): void {
+    const { scene, drag } = this;
+    if (!scene) return;
+    const [x, y] = this.place(event);
+    if (this.dividing) {
+      const [area] = this.areas(1);
+      this.store.setView({ divider: Math.min(1, Math.max(0, (x - area!.x) / area!.width)) });
+      return;
+    }
+    if (drag) {
+      const { scenario } = this.store.state;
+      const moved = slide(scene, drag.pane, drag.from, drag.normal, x, y);
+      if (!scenario || moved === undefined) return;
+      const axis = drag.normal.indexOf(1);
+      const { box, cellSize } = scenario.grid;
+      const nodes = Math.round((drag.from[axis]! + moved - box.from[axis]!) / cellSize[axis]!);
+      const last = scenario.grid.cells[axis]! - 1;
+      drag.at = box.from[axis]! + Math.min(last, Math.max(1, nodes)) * cellSize[axis]!;
+      this.invalidate();
+      return;
+    }
+    if (event.buttons === 0) this.onRead(this.readingAt(x, y));
+  }
+
+  private release(event: PointerEvent): void {
+    const { drag, pressed, scene } = this;
+    this.pressed = undefined;
+    if (this.controls) this.controls.enabled = true;
+    if (this.dividing) {
+      this.dividing = false;
+      return;
+    }
+    if (drag) {
+      this.drag = undefined;
+      this.movePlane(drag.plane, drag.at);
+      this.invalidate();
+      return;
+    }
+    if (!pressed || !scene || event.button !== 0) return;
+    if (Math.hypot(event.clientX - pressed.x, event.clientY - pressed.y) > 4 || event.timeStamp - pressed.time > 500)
+      return;
+    const [x, y] = this.place(event);
+    const marker = pickMarker(scene, x, y, 10 * this.ratio);
+    if (marker && this.store.state.scenario?.observers.some(({ name }) => name === marker.name)) {
+      this.store.setView({ observer: marker.name });
+      return;
+    }
+    const hit = pick(scene, x, y);
+    if (hit) this.onPick(hit.point, event.clientX, event.clientY);
+  }
+
+  /** Puts a plane elsewhere in the scenario. */
+  movePlane(index: number, at: number): void {
+    const { scenario } = this.store.state;
+    if (!scenario) return;
+    const shown = planesShown(scenario);
+    this.store.edit((draft) => {
+      if (!Array.isArray(draft.planes) || draft.planes.length === 0)
+        draft.planes = shown.map(({ name, normal, at: where }) => ({ name, normal: 'xyz'[normal], at: where }));
+      draft.planes[index].at = `${Number((at * 1000).toPrecision(6))} mm`;
+    });
+  }
+
+  /** The values of all pictures under a place in the image. */
+  readingAt(x: number, y: number): Reading | undefined {
+    const { scene, store } = this;
+    const { film, scenario, view, frame } = store.state;
+    if (!scene || !film || !scenario) return undefined;
+    const hit = pick(scene, x, y);
+    if (!hit) return undefined;
+    const n = film.films.findIndex(({ slice }) => slice.name === hit.plane.name);
+    if (view.layout === 'trust') {
+      const map = film.films[n]?.trust;
+      const p = hit.j * hit.plane.nu + hit.i;
+      return map && { hit, unit: '', label: 'error', grid: map.E[p]!, exact: map.H[p]! };
+    }
+    const quantity = quantityOf(view.quantity);
+    const scales = this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
+    const value = (side: 'grid' | 'exact') =>
+      this.pictures.planes(film, scenario, quantity, frame, side, scales[side])[n]!.values[
+        hit.j * hit.plane.nu + hit.i
+      ]!;
+    return { hit, unit: quantity.unit, label: quantity.label, grid: value('grid'), exact: value('exact') };
+  }
+
+  /** The image with its texts, as it stands, for files. */
+  still(): HTMLCanvasElement {
+    const copy = document.createElement('canvas');
+    copy.width = this.canvas.width;
+    copy.height = this.canvas.height;
+    const context = copy.getContext('2d')!;
+    context.drawImage(this.canvas, 0, 0);
+    context.drawImage(this.texts, 0, 0, copy.width, copy.height);
+    return copy;
+  }
+
+  /** Draws at once, for films that are being saved. */
+  drawNow(): void {
+    this.draw();
+  }
+}
+
+function canvasCapture(canvas: HTMLCanvasElement, pointer: number): void {
+  // A pointer that has left by then cannot be captured, which is no harm.
+  if (canvas.hasPointerCapture?.(pointer) === false) canvas.setPointerCapture(pointer);
+}
+
+const sameVec = (a: Vec3, b: Vec3): boolean => a.every((x, k) => x === b[k]);
+
+/** What the walls leave: the box without the clearance on every side. */
+function clearanceBox({ grid }: Scenario, clearance: number, colour: number): Stroke {
+  const inner: Box = {
+    from: grid.box.from.map((x) => x + clearance) as unknown as Vec3,
+    to: grid.box.to.map((x) => x - clearance) as unknown as Vec3,
+  };
+  return { ...boxEdges(inner, { line: colour, background: 0, ink: colour, muted: colour }), dash: [6, 4] };
+}

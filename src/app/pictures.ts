@@ -1,0 +1,186 @@
+import { PARTS } from '../compare/budget.ts';
+import { type DecibelScale, type KindScale, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
+import { type Plane, planeOfSamples } from '../draw/scene.ts';
+import { PALETTE } from '../report/palette.ts';
+import type { Scenario, Vec3 } from '../scenario/model.ts';
+import type { Film, SliceFilm } from './film.ts';
+import { layerOf, type Quantity, sampleQuantity } from './quantity.ts';
+
+/** The three pictures of a film: grid, exact, difference. */
+export type Side = 'grid' | 'exact' | 'difference';
+
+/** Frames looked at to find a scale: as many as show the pulse wherever it is. */
+const LOOKS = 24;
+
+/** Largest |value| of a quantity beyond the mask: what the colours span. */
+export interface Limits {
+  readonly field: number;
+  readonly difference: number;
+}
+
+/** Two significant digits, upwards: the end of a scale that people can read. */
+function rounded(value: number): number {
+  if (!(value > 0)) return 1;
+  const power = 10 ** (Math.floor(Math.log10(value)) - 1);
+  return Math.ceil(value / power) * power;
+}
+
+/**
+ * Makes the planes that the panes draw: samples of a quantity at an instant, with their scale. Buffers are kept, so that
+ * playing allocates nothing; what has not changed is not computed again.
+ */
+export class Pictures {
+  private readonly buffers = new Map<string, { values: Float32Array; stamp: string; revision: number }>();
+  private limits: { readonly key: string; readonly value: Limits } | undefined;
+  private scales: { readonly key: string; readonly value: Record<Side, Scale> } | undefined;
+
+  /** The scales of the three pictures: one for grid and exact, one for their difference. */
+  scalesOf(
+    film: Film,
+    quantity: Quantity,
+    frame: number,
+    gain: number,
+    difference: 'signed' | 'decibels',
+  ): Record<Side, Scale> {
+    const limits = this.limitsOf(film, quantity, frame);
+    const { label, unit } = quantity;
+    const key = `${limits.field} ${limits.difference} ${gain} ${difference} ${label}`;
+    if (this.scales?.key === key) return this.scales.value;
+    const field: SignedScale = { kind: 'signed', limit: limits.field / gain, label: `${label}, ${unit}` };
+    const signed: SignedScale = {
+      kind: 'signed',
+      limit: limits.difference / gain,
+      label: `${label}, grid − exact, ${unit}`,
+    };
+    const decibels: DecibelScale = {
+      kind: 'decibels',
+      reference: limits.field,
+      from: -80,
+      to: 0,
+      label: `|grid − exact| of ${label}, dB of ${Number(limits.field.toPrecision(2))} ${unit}`,
+    };
+    const value = { grid: field, exact: field, difference: difference === 'signed' ? signed : decibels };
+    this.scales = { key, value };
+    return value;
+  }
+
+  private limitsOf(film: Film, quantity: Quantity, frame: number): Limits {
+    const potential = quantity.kind === 'potential';
+    const key = `${quantity.key} ${film.gridFrames} ${film.exactKnown} ${potential ? `${frame} ${film.revision}` : ''} ${film.films.length} ${film.films[0]?.slice.layer}`;
+    if (this.limits?.key === key) return this.limits.value;
+    const step = Math.max(1, Math.floor(film.frames / LOOKS));
+    let [field, difference] = [0, 0];
+    for (const one of film.films) {
+      const { nu, nv } = layerOf(one, quantity);
+      const { beyondMask, nu: across } = one.slice;
+      const [a, b] = [new Float32Array(nu * nv), new Float32Array(nu * nv)];
+      const look = (at: number) => {
+        if (potential) a.fill(Number.NaN);
+        else sampleQuantity(one, 'grid', at, film.every, quantity, a);
+        if (film.exactKnown || potential) sampleQuantity(one, 'exact', at, film.every, quantity, b);
+        else b.fill(Number.NaN);
+        for (let j = 0, n = 0; j < nv; j++)
+          for (let i = 0; i < nu; i++, n++) {
+            if (!beyondMask[j * across + i]) continue;
+            const value = potential ? b[n]! : a[n]!;
+            field = Math.max(field, Math.abs(value) || 0);
+            difference = Math.max(difference, Math.abs(a[n]! - b[n]!) || 0);
+          }
+      };
+      if (potential) look(frame);
+      else for (let at = step >> 1; at < film.gridFrames; at += step) look(at);
+    }
+    const value = { field: rounded(field), difference: rounded(difference > 0 ? difference : field / 10) };
+    this.limits = { key, value };
+    return value;
+  }
+
+  /** The planes of one picture of the film. */
+  planes(film: Film, scenario: Scenario, quantity: Quantity, frame: number, side: Side, scale: Scale): Plane[] {
+    return film.films.map((one) => {
+      const layer = layerOf(one, quantity);
+      const buffer = this.buffer(`${side} ${one.slice.name}`, layer.nu * layer.nv);
+      const stamp = `${quantity.key} ${frame} ${film.revision} ${one.potentials.has(frame)}`;
+      if (buffer.stamp !== stamp) {
+        this.fill(one, film.every, quantity, frame, side, buffer.values);
+        buffer.stamp = stamp;
+        buffer.revision++;
+      }
+      return {
+        ...planeAt(one, scenario, layer.offset, layer.nu, layer.nv, buffer.values, scale),
+        revision: buffer.revision,
+      };
+    });
+  }
+
+  private fill(one: SliceFilm, every: number, quantity: Quantity, frame: number, side: Side, out: Float32Array): void {
+    if (side !== 'difference') {
+      sampleQuantity(one, side, frame, every, quantity, out);
+      return;
+    }
+    const exact = this.buffer(`exact of ${one.slice.name}`, out.length).values;
+    sampleQuantity(one, 'grid', frame, every, quantity, out);
+    sampleQuantity(one, 'exact', frame, every, quantity, exact);
+    const { nu } = layerOf(one, quantity);
+    for (let n = 0; n < out.length; n++) {
+      const cell = Math.floor(n / nu) * one.slice.nu + (n % nu);
+      out[n] = one.known[cell] ? out[n]! - exact[n]! : Number.NaN;
+    }
+  }
+
+  private buffer(name: string, size: number) {
+    const known = this.buffers.get(name);
+    if (known?.values.length === size) return known;
+    const fresh = { values: new Float32Array(size), stamp: '', revision: 0 };
+    this.buffers.set(name, fresh);
+    return fresh;
+  }
+}
+
+/** The plane of samples on a slice, at their true places. */
+function planeAt(
+  { slice }: SliceFilm,
+  { grid }: Scenario,
+  offset: readonly [number, number, number],
+  nu: number,
+  nv: number,
+  values: Float32Array,
+  scale: Scale,
+): Plane {
+  const { axes, normal, layer, stride, name } = slice;
+  const { box, cellSize } = grid;
+  const first = [0, 1, 2].map(
+    (a) => box.from[a]! + ((a === normal ? layer : 0) + offset[a]!) * cellSize[a]!,
+  ) as unknown as Vec3;
+  const step = (axis: number) => [0, 1, 2].map((a) => (a === axis ? stride * cellSize[a]! : 0)) as unknown as Vec3;
+  return planeOfSamples(name, first, step(axes[0]), step(axes[1]), nu, nv, values, scale);
+}
+
+/** The scale of a trust map: point error relative to the tolerance, which lies in its middle. */
+export function trustScale(tolerance: number, field: string): DecibelScale {
+  const percent = Number((100 * tolerance).toPrecision(3));
+  return {
+    kind: 'decibels',
+    reference: tolerance,
+    from: -30,
+    to: 30,
+    label: `error of ${field}, dB of the tolerance (${percent} %)`,
+  };
+}
+
+export function partScale(theme: Theme): KindScale {
+  return {
+    kind: 'kinds',
+    kinds: PARTS.slice(0, 3).map((part) => ({ name: part, colour: packed(PALETTE[part][theme]) })),
+    label: 'largest part',
+  };
+}
+
+/** The planes of a trust map: the errors of E or H, or which part is the largest. */
+export function trustPlanes(film: Film, scenario: Scenario, which: 'E' | 'H' | 'largest', scale: Scale): Plane[] {
+  return film.films.flatMap((one) => {
+    const values = one.trust?.[which];
+    if (!values) return [];
+    return [planeAt(one, scenario, [0, 0, 0], one.slice.nu, one.slice.nv, values, scale)];
+  });
+}

@@ -1,0 +1,171 @@
+import { withinTolerance } from '../compare/result.ts';
+import type { ResultFile } from '../report/folder.ts';
+import type { Axis, Plane, Scenario } from '../scenario/model.ts';
+import { Film } from './film.ts';
+import type { Report, Request } from './messages.ts';
+import type { Store } from './store.ts';
+
+/** At most so many planes are shown. */
+export const MOST_PLANES = 3;
+
+/** The planes to show: the scenario's first three, or one through the middle of the box where it has none. */
+export function planesShown({ planes, grid }: Scenario): Plane[] {
+  if (planes.length > 0) return planes.slice(0, MOST_PLANES);
+  const normal: Axis = 1;
+  return [{ name: 'xz', normal, at: (grid.box.from[normal] + grid.box.to[normal]) / 2 }];
+}
+
+/** What decides a comparison's numbers: everything but title and planes. Runs are not repeated for those. */
+function decisive(json: unknown): string {
+  if (typeof json !== 'object' || json === null) return '';
+  const { title: _, planes: __, ...rest } = json as Record<string, unknown>;
+  return JSON.stringify(rest);
+}
+
+/** The address of a script that the build put beside this one. */
+const beside = (name: string): string => new URL(name, import.meta.url).href;
+
+/** Runs scenarios in a worker and puts what it tells into the store. One run at a time. */
+export class Runner {
+  private worker: Worker | null = null;
+  private ran = '';
+  private readonly files = new Map<ResultFile, (text: string) => void>();
+  private readonly asked = new Set<string>();
+
+  constructor(private readonly store: Store) {}
+
+  /** Runs the store's scenario, or only films it anew where nothing but its planes has changed since the last run. */
+  update(): void {
+    const { json, scenario, problems, run } = this.store.state;
+    if (problems.length > 0 || !scenario) return;
+    const wanted = decisive(json);
+    if (this.worker && run.status === 'done' && wanted === this.ran)
+      this.ask({ kind: 'planes', planes: planesShown(scenario) }, 'the grid, for the pictures');
+    else this.start();
+  }
+
+  /** Ends what runs and begins anew. */
+  start(): void {
+    const { json, scenario } = this.store.state;
+    if (!scenario) return;
+    this.stop();
+    this.worker = new Worker(beside('./coordinator.js'), { type: 'module' });
+    this.worker.addEventListener('message', ({ data }: MessageEvent<Report>) => this.take(data));
+    this.worker.addEventListener('error', ({ message }) =>
+      this.take({ kind: 'failed', message: message || 'A worker could not be started.' }),
+    );
+    this.ran = decisive(json);
+    this.store.state.result = null;
+    this.store.state.traces = [];
+    this.store.state.spectra = [];
+    this.store.tell('result');
+    this.ask({ kind: 'run', scenario: json, planes: planesShown(scenario) }, 'starting the workers');
+  }
+
+  private ask(request: Request, stage: string): void {
+    this.store.setRun({ status: 'running', stage, fraction: 0, secondsLeft: undefined, message: '' });
+    this.worker!.postMessage(request);
+  }
+
+  /** Ends the run at once; what is known already stays. */
+  cancel(): void {
+    this.stop();
+    this.store.setRun({ status: 'cancelled', stage: '', message: '' });
+  }
+
+  private stop(): void {
+    this.worker?.terminate();
+    this.worker = null;
+    this.files.clear();
+    this.asked.clear();
+  }
+
+  /** One of the files of the result, once there is one. */
+  file(file: ResultFile, command: string): Promise<string> {
+    return new Promise((resolve) => {
+      this.files.set(file, resolve);
+      this.worker?.postMessage({ kind: 'file', file, command } satisfies Request);
+    });
+  }
+
+  /** Has φ and A computed at a picture of the film, unless that has been asked already. */
+  wantPotentials(frame: number): void {
+    this.store.state.film?.films.forEach((film, slice) => {
+      const key = `${slice} ${frame}`;
+      if (film.potentials.has(frame) || this.asked.has(key)) return;
+      this.asked.add(key);
+      this.worker?.postMessage({ kind: 'potentials', slice, frame } satisfies Request);
+    });
+  }
+
+  private take(report: Report): void {
+    const { store } = this;
+    const { state } = store;
+    switch (report.kind) {
+      case 'progress': {
+        const { stage, fraction, secondsLeft } = report;
+        store.setRun({ stage, fraction, secondsLeft });
+        break;
+      }
+      case 'film': {
+        const first = state.film === null;
+        const share = state.film && state.film.frames > 1 ? state.frame / (state.film.frames - 1) : 0;
+        state.film = new Film(report);
+        state.frame = Math.round(share * (state.film.frames - 1));
+        this.asked.clear();
+        if (first) state.playing = !matchMedia('(prefers-reduced-motion: reduce)').matches;
+        store.tell('film');
+        store.tell('frame');
+        break;
+      }
+      case 'grid':
+        state.film?.addGrid(report);
+        store.tell('film');
+        break;
+      case 'exact':
+        state.film?.addExact(report);
+        store.tell('film');
+        break;
+      case 'exactKnown':
+        if (state.film) state.film.exactKnown = true;
+        store.tell('film');
+        break;
+      case 'traces':
+        state.traces = report.traces;
+        store.tell('result');
+        break;
+      case 'result':
+        state.result = report.result;
+        state.traces = report.traces;
+        state.spectra = report.spectra;
+        performance.mark('verdict', { detail: withinTolerance(report.result) });
+        store.tell('result');
+        break;
+      case 'trust':
+        state.film?.addTrust(report);
+        store.tell('film');
+        break;
+      case 'potentials':
+        state.film?.addPotentials(report);
+        store.tell('film');
+        break;
+      case 'file':
+        this.files.get(report.file)?.(report.text);
+        break;
+      case 'refused':
+        store.setRun({
+          status: 'refused',
+          stage: '',
+          message: report.problems.map(({ path, message }) => (path ? `${path}: ${message}` : message)).join('\n'),
+        });
+        break;
+      case 'failed':
+        this.stop();
+        store.setRun({ status: 'failed', stage: '', message: report.message });
+        break;
+      case 'done':
+        store.setRun({ status: 'done', stage: '', fraction: 1, secondsLeft: undefined });
+        break;
+    }
+  }
+}

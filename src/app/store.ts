@@ -1,0 +1,192 @@
+import type { Result } from '../compare/result.ts';
+import type { Theme } from '../draw/colour.ts';
+import type { ObserverTrace } from '../files/traces.ts';
+import type { ObserverSpectra } from '../report/report.ts';
+import { loadScenario, type Problem } from '../scenario/load.ts';
+import type { Scenario } from '../scenario/model.ts';
+import type { Film } from './film.ts';
+import type { QuantityKey } from './quantity.ts';
+
+/** How a run stands. */
+export interface RunState {
+  readonly status: 'idle' | 'running' | 'done' | 'cancelled' | 'refused' | 'failed';
+  /** what is being done, while it runs */
+  readonly stage: string;
+  readonly fraction: number;
+  readonly secondsLeft?: number | undefined;
+  /** why it was refused or failed */
+  readonly message: string;
+}
+
+/** What is looked at, and how. */
+export interface View {
+  readonly layout: 'panes' | 'overlay' | 'trust';
+  readonly quantity: QuantityKey;
+  readonly difference: 'signed' | 'decibels';
+  /** contour lines of the exact field over the grid's colours */
+  readonly contours: boolean;
+  /** of the colour scale: values times this */
+  readonly gain: number;
+  readonly projection: 'perspective' | 'orthographic';
+  /** place of the divider between grid and exact, 0…1 */
+  readonly divider: number;
+  /** whose traces are shown */
+  readonly observer: string;
+  /** instants a second when playing */
+  readonly speed: number;
+}
+
+export interface State {
+  /** the scenario as text, as it is edited and saved */
+  text: string;
+  /** what JSON.parse makes of it; undefined where it is no JSON */
+  json: unknown;
+  /** the last sound scenario; null before there is any */
+  scenario: Scenario | null;
+  problems: readonly Problem[];
+  view: View;
+  theme: Theme;
+  frame: number;
+  playing: boolean;
+  run: RunState;
+  film: Film | null;
+  result: Result | null;
+  traces: readonly ObserverTrace[];
+  spectra: readonly ObserverSpectra[];
+}
+
+/** What of the state has changed. */
+export type Topic = 'scenario' | 'view' | 'frame' | 'run' | 'film' | 'result' | 'theme';
+
+const HISTORY = 200;
+
+/** The state of the page, and who is told of its changes. There is one. */
+export class Store {
+  readonly state: State;
+  private readonly listeners = new Map<Topic, (() => void)[]>();
+  private readonly past: string[] = [];
+  private readonly future: string[] = [];
+
+  constructor(theme: Theme) {
+    this.state = {
+      text: '',
+      json: undefined,
+      scenario: null,
+      problems: [],
+      view: {
+        layout: 'panes',
+        quantity: 'Ez',
+        difference: 'signed',
+        contours: false,
+        gain: 1,
+        projection: 'perspective',
+        divider: 0.5,
+        observer: '',
+        speed: 20,
+      },
+      theme,
+      frame: 0,
+      playing: false,
+      run: { status: 'idle', stage: '', fraction: 0, message: '' },
+      film: null,
+      result: null,
+      traces: [],
+      spectra: [],
+    };
+  }
+
+  on(topics: readonly Topic[], listener: () => void): void {
+    for (const topic of topics) this.listeners.set(topic, [...(this.listeners.get(topic) ?? []), listener]);
+  }
+
+  tell(topic: Topic): void {
+    for (const listener of this.listeners.get(topic) ?? []) listener();
+  }
+
+  setView(change: Partial<View>): void {
+    this.state.view = { ...this.state.view, ...change };
+    this.tell('view');
+  }
+
+  setFrame(frame: number): void {
+    const last = (this.state.film?.frames ?? 1) - 1;
+    const within = Math.min(last, Math.max(0, Math.round(frame)));
+    if (within === this.state.frame) return;
+    this.state.frame = within;
+    this.tell('frame');
+  }
+
+  setRun(change: Partial<RunState>): void {
+    this.state.run = { ...this.state.run, ...change };
+    this.tell('run');
+  }
+
+  /**
+   * Another scenario, as text. An unsound one is kept with its problems; the run and the pictures stay those of the last
+   * sound one.
+   */
+  setText(text: string, keepHistory = true): void {
+    const { state } = this;
+    if (text === state.text) return;
+    if (keepHistory && state.text !== '') {
+      this.past.push(state.text);
+      if (this.past.length > HISTORY) this.past.shift();
+      this.future.length = 0;
+    }
+    state.text = text;
+    try {
+      state.json = JSON.parse(text);
+    } catch {
+      state.json = undefined;
+    }
+    const loaded = loadScenario(state.json === undefined ? text : state.json);
+    state.problems = 'problems' in loaded ? loaded.problems : [];
+    if ('scenario' in loaded) {
+      state.scenario = loaded.scenario;
+      const names = loaded.scenario.observers.map(({ name }) => name);
+      if (!names.includes(state.view.observer)) state.view = { ...state.view, observer: names[0] ?? '' };
+    }
+    this.tell('scenario');
+  }
+
+  /** Another scenario, as an edit of what JSON.parse made of the present one. */
+  edit(change: (draft: Draft) => void): void {
+    const draft = structuredClone(this.state.json ?? {}) as Draft;
+    change(draft);
+    this.setText(textOf(draft));
+  }
+
+  get canUndo(): boolean {
+    return this.past.length > 0;
+  }
+
+  get canRedo(): boolean {
+    return this.future.length > 0;
+  }
+
+  undo(): void {
+    const text = this.past.pop();
+    if (text === undefined) return;
+    this.future.push(this.state.text);
+    this.setText(text, false);
+  }
+
+  redo(): void {
+    const text = this.future.pop();
+    if (text === undefined) return;
+    this.past.push(this.state.text);
+    this.setText(text, false);
+  }
+}
+
+/** A scenario file's content, of any shape. */
+// biome-ignore lint/suspicious/noExplicitAny: what a user typed may hold anything; loadScenario judges it
+export type Draft = any;
+
+/** A scenario as the text of its file: short lists in one line, so that points read as points. */
+export function textOf(json: unknown): string {
+  return `${JSON.stringify(json, null, 2).replace(
+    /\[\n\s+((?:"[^"\n]*"|-?[\d.eE+-]+)(?:,\n\s+(?:"[^"\n]*"|-?[\d.eE+-]+))*)\n\s+\]/g,
+    (_, items: string) => `[${items.replace(/,\n\s+/g, ', ')}]`,
+  )}\n`;
+}
