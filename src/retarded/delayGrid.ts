@@ -145,13 +145,16 @@ export function stencil(rule: Rule, u: number): { times: number[]; weights: Floa
   return { times, weights };
 }
 
-/** Largest values of q, w, w′, and the largest errors of a rule on each of them. */
+/** Largest values of q, w, w′, and a bound on the errors of a rule on each of them. */
 export interface RuleError {
   readonly peak: readonly [number, number, number];
   readonly error: readonly [number, number, number];
 }
 
 const TRIALS = 192;
+
+/** Of the largest error found, for what lies between the trials. */
+const BETWEEN_TRIALS = 2;
 
 /**
  * Measures a rule on a waveform sampled every `step` seconds, at places spread over its activity, closer to each other the
@@ -176,7 +179,7 @@ export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleE
     });
     for (let kind = 0; kind < 3; kind++) {
       peak[kind] = Math.max(peak[kind]!, Math.abs(exact[kind]!));
-      error[kind] = Math.max(error[kind]!, Math.abs(sum[kind]! - exact[kind]!));
+      error[kind] = Math.max(error[kind]!, BETWEEN_TRIALS * Math.abs(sum[kind]! - exact[kind]!));
     }
   }
   return { peak, error };

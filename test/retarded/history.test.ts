@@ -65,6 +65,20 @@ describe('a history is the field at every instant', () => {
     ],
     ['loop', 'best', (w) => [loop([1e-3, 0, 0], [0, 0.6, 0.8], 0.03, w)]],
     ['wave on a loop', 'best', (w) => [{ ...loop([1e-3, 0, 0], [0, 0.6, 0.8], 0.03, w), terms: travelling(0.7) }]],
+    [
+      'wave launched before t = 0',
+      'best',
+      (w) => [
+        wire(
+          [
+            [0, 0, -0.05],
+            [0.01, 0, 0.05],
+          ],
+          [{ factor: 1, delay: -0.4e-9, slowness: 0 }],
+          w,
+        ),
+      ],
+    ],
     ['dipole', 'best', (w) => [dipole([1e-3, 2e-3, 3e-3], [0.6, 0, 0.8], 2e-3, w)]],
     [
       'two pulses',

@@ -408,8 +408,9 @@ describe('delay spreading', () => {
       for (const samples of [10, 20, 40]) {
         const predicted = gain * samples ** -points;
         const measured = levels[points]![samples]!;
-        expect(measured).toBeLessThan(1.05 * predicted + 16 * Number.EPSILON);
-        if (predicted > 1e-13) expect(measured).toBeGreaterThan(0.5 * predicted);
+        // What is measured counts twice, for places between those tried.
+        expect(measured).toBeLessThan(2.1 * predicted + 32 * Number.EPSILON);
+        if (predicted > 1e-13) expect(measured).toBeGreaterThan(predicted);
       }
   });
 
