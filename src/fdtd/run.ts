@@ -16,7 +16,7 @@ import {
   STEP_BYTES,
   VECTOR,
 } from './kernel.ts';
-import { Bump, configure, type Layout, layoutOf, realsOf, writeProfiles } from './layout.ts';
+import { AXES, Bump, configure, type Layout, layoutOf, realsOf, writeProfiles } from './layout.ts';
 import type { GridProblem } from './problem.ts';
 import { type CellBox, type Region, regionOf } from './region.ts';
 import { Collector, keptIndex } from './samples.ts';
@@ -332,9 +332,14 @@ function writeSteps(run: GridRun, boxes: readonly CellBox[], first: number): voi
     ];
     problem.samples.forEach((group, g) => {
       const keeps = keptIndex(group, problem.steps, first + n) >= 0;
-      const bytes = run.sampleOrders[g]!.length * 6 * layout.real;
-      record.push(keeps ? tables.sampleBuffers[g]! + used[g]! * bytes : 0);
-      if (keeps) used[g]!++;
+      const numbers = run.sampleOrders[g]!.length * 6;
+      const buffer = tables.sampleBuffers[g]! + used[g]! * numbers * layout.real;
+      record.push(keeps ? buffer : 0);
+      if (!keeps) return;
+      used[g]!++;
+      // Samples in cells that the front has not reached are not read; they have their start value.
+      const part = AXES.some((a) => from[a]! > 0 || to[a]! < layout.cells[a]!);
+      if (part) reals.fill(layout.bias, buffer / layout.real, buffer / layout.real + numbers);
     });
     new Uint32Array(memory.buffer, tables.steps + n * STEP_BYTES, record.length).set(record);
     for (let e = 0; e < edges; e++)

@@ -25,7 +25,12 @@ const BATCH_STEPS = 64;
  * A schedule from the working set: 2T + 4 planes of a tile, six fields each, for every thread.
  * @param sampleBytes bytes that one step's samples take, on average
  */
-export function scheduleOf(layout: Layout, threads: number, sampleBytes: number, wish: Partial<Schedule> = {}): Schedule {
+export function scheduleOf(
+  layout: Layout,
+  threads: number,
+  sampleBytes: number,
+  wish: Partial<Schedule> = {},
+): Schedule {
   const blockSteps = Math.min(MOST_TILES, wish.blockSteps ?? BLOCK_STEPS);
   const rows = Math.floor(SHARED_CACHE / threads / (6 * layout.rowBytes * (2 * blockSteps + 4)));
   const tileRows = wish.tileRows ?? Math.max(blockSteps, rows);
