@@ -27,7 +27,10 @@ export function exactField(
   return assemble(scenario, cells, instants, onCells, (part) => team.run('exactField', [json, part, instants, method]));
 }
 
-/** The exact field of the gridded currents; its bound is what the checks found, relative to each point's peak. */
+/** Accuracy that histories of gridded currents are asked for, relative to the peak at a point. */
+const GRIDDED_ACCURACY = 1e-8;
+
+/** The exact field of the gridded currents; its bound is what was asked for, or what the checks found if that is more. */
 export function griddedField(
   team: Team,
   scenario: Scenario,
@@ -37,8 +40,13 @@ export function griddedField(
   onCells: (cells: number) => void,
 ): Promise<IntegralField> {
   return assemble(scenario, cells, instants, onCells, async (part) => {
-    const piece = await team.run('griddedField', [json, part, instants]);
-    return { ...piece, errorBound: peaks(piece.values, instants.count).map((peak) => peak * piece.difference) };
+    const piece = await team.run('griddedField', [json, part, instants, GRIDDED_ACCURACY]);
+    return {
+      ...piece,
+      errorBound: peaks(piece.values, instants.count).map(
+        (peak) => peak * Math.max(GRIDDED_ACCURACY, piece.difference),
+      ),
+    };
   });
 }
 

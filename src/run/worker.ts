@@ -32,7 +32,7 @@ export interface Tasks {
   /** the exact field at the sites of some cells */
   exactField(scenario: unknown, cells: Int32Array, instants: Instants, method: Method): ExactPiece;
   /** the exact field of the gridded currents at the sites of some cells */
-  griddedField(scenario: unknown, cells: Int32Array, instants: Instants): GriddedPiece;
+  griddedField(scenario: unknown, cells: Int32Array, instants: Instants, accuracy: number): GriddedPiece;
 }
 
 /** A prepared run as it travels: without what cannot be cloned. */
@@ -106,7 +106,7 @@ const tasks: Tasks = {
     const { sources, medium, grid } = scenarioOf(json);
     return exactHistory(sources, medium, samplePoints(cells, grid.box.from, grid.cellSize), instants, { method });
   },
-  griddedField(json, cells, instants) {
+  griddedField(json, cells, instants, accuracy) {
     const { sources, medium, grid } = scenarioOf(json);
     const points = samplePoints(cells, grid.box.from, grid.cellSize);
     const gridded = gridSources(sources, nodeGridOf(grid));
@@ -117,6 +117,7 @@ const tasks: Tasks = {
       medium,
       points,
       instants,
+      { accuracy },
     );
     return { values, difference, evaluations };
   },
