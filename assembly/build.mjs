@@ -8,9 +8,10 @@
  * Each output folder carries a stamp, the hash of all that went into it; a build whose stamp is current does nothing.
  * A folder is filled under a temporary name beside its place and then renamed, so that no reader sees half of one.
  */
-import { spawnSync } from 'node:child_process';
+import { spawn } from 'node:child_process';
 import { createHash } from 'node:crypto';
 import { existsSync, mkdirSync, readdirSync, readFileSync, renameSync, rmSync, writeFileSync } from 'node:fs';
+import { availableParallelism } from 'node:os';
 import { dirname, join, relative } from 'node:path';
 import { fileURLToPath } from 'node:url';
 
@@ -32,57 +33,80 @@ function hashOf(files) {
 
 /** Runs a tool of node_modules with this Node; its output is shown only when it fails. */
 function run(what, script, args) {
-  const { status, stdout, stderr, error } = spawnSync(process.execPath, [join(root, 'node_modules', script), ...args], {
-    cwd: root,
-    encoding: 'utf8',
+  return new Promise((done, fail) => {
+    const child = spawn(process.execPath, [join(root, 'node_modules', script), ...args], { cwd: root });
+    let output = '';
+    for (const stream of [child.stdout, child.stderr])
+      stream.setEncoding('utf8').on('data', (text) => {
+        output += text;
+      });
+    child.on('error', fail);
+    child.on('close', (status) => (status === 0 ? done() : fail(new Error(`${what} failed\n${output}`))));
   });
-  if (status !== 0) {
-    process.stderr.write(`${what} failed\n${stdout ?? ''}${stderr ?? ''}${error?.message ?? ''}\n`);
-    process.exit(3);
-  }
+}
+
+/** Does something with each of a list, as many at a time as the machine has processors. */
+async function forEachAtOnce(list, act) {
+  const left = [...list];
+  const take = async () => {
+    for (let item = left.shift(); item; item = left.shift()) await act(item);
+  };
+  await Promise.all(Array.from({ length: availableParallelism() }, take));
 }
 
 /** Fills `target` by `fill(folder)` unless its stamp says that it is current. */
-function refresh(target, inputs, fill) {
+async function refresh(target, inputs, fill) {
   const stamp = hashOf(inputs);
-  const stampFile = join(target, '.stamp');
-  if (existsSync(stampFile) && readFileSync(stampFile, 'utf8') === stamp) return;
+  const isCurrent = (folder) => {
+    const file = join(folder, '.stamp');
+    return existsSync(file) && readFileSync(file, 'utf8') === stamp;
+  };
+  if (isCurrent(target)) return;
   const fresh = `${target}.${process.pid}.new`;
   const old = `${target}.${process.pid}.old`;
   mkdirSync(fresh, { recursive: true });
   try {
-    fill(fresh);
+    await fill(fresh);
     writeFileSync(join(fresh, '.stamp'), stamp);
     if (existsSync(target)) renameSync(target, old);
     renameSync(fresh, target);
+  } catch (error) {
+    // Another build may have put the very same folder there meanwhile.
+    if (!isCurrent(target)) throw error;
   } finally {
     rmSync(fresh, { recursive: true, force: true });
     rmSync(old, { recursive: true, force: true });
   }
 }
 
-function buildKernels(folder) {
-  const lines = [];
-  for (const [name, { entry, args }] of Object.entries(config.kernels)) {
+const inRoot = (...names) => names.map((name) => join(root, name));
+
+async function buildKernels(folder) {
+  await forEachAtOnce(Object.entries(config.kernels), async ([name, { entry, args }]) => {
     const wasm = join(folder, `${name}.wasm`);
-    run(`asc ${name}`, 'assemblyscript/bin/asc.js', [join(root, entry), '--outFile', wasm, ...config.flags, ...args]);
-    writeFileSync(
-      join(folder, `${name}.ts`),
-      `/** The bytes of ${entry}, compiled. */\nexport default '${readFileSync(wasm).toString('base64')}';\n`,
-    );
+    const given = [join(root, entry), '--outFile', wasm, ...config.flags, ...args];
+    await run(`asc ${name}`, 'assemblyscript/bin/asc.js', given);
+    const bytes = readFileSync(wasm).toString('base64');
+    writeFileSync(join(folder, `${name}.ts`), `/** The bytes of ${entry}, compiled. */\nexport default '${bytes}';\n`);
     rmSync(wasm);
-    lines.push(name);
-  }
-  return lines;
+  });
 }
 
-const common = ['package.json', 'package-lock.json', 'asconfig.json', 'vite.config.ts', 'vite.page.ts'].map((name) => join(root, name));
-refresh(join(root, 'src/kernels'), [...common, ...filesBelow(join(root, 'assembly'))], buildKernels);
+async function buildBundles(folder) {
+  const build = ['build', '--emptyOutDir', '--logLevel', 'warn', '--outDir'];
+  await run('vite build', 'vite/bin/vite.js', [...build, folder]);
+  const page = [...build, join(folder, 'page'), '--config', 'src/app/vite.config.ts'];
+  await run('vite build of the page', 'vite/bin/vite.js', page);
+}
 
-if (!process.argv.includes('--kernels')) {
-  refresh(join(root, 'dist'), [...common, ...filesBelow(join(root, 'src'))], (folder) => {
-    const vite = ['vite/bin/vite.js', ['build', '--emptyOutDir', '--logLevel', 'warn', '--outDir']];
-    run('vite build', vite[0], [...vite[1], folder]);
-    run('vite build of the page', vite[0], [...vite[1], join(folder, 'page'), '--config', 'vite.page.ts']);
-  });
+try {
+  const compiler = inRoot('asconfig.json', 'node_modules/assemblyscript/package.json');
+  await refresh(join(root, 'src/kernels'), [...compiler, ...filesBelow(join(root, 'assembly'))], buildKernels);
+  if (!process.argv.includes('--kernels')) {
+    const common = inRoot('package.json', 'package-lock.json', 'vite.config.ts');
+    await refresh(join(root, 'dist'), [...common, ...filesBelow(join(root, 'src'))], buildBundles);
+  }
+} catch (error) {
+  process.stderr.write(`${error.message}\n`);
+  process.exitCode = 3;
 }
