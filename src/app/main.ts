@@ -1,37 +1,81 @@
-import './page.css';
 import { canShareMemory } from '#platform';
-import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
+import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { Charts } from './charts.ts';
 import { byId, h } from './dom.ts';
+import { acceptFiles } from './files.ts';
+import { listenToKeys } from './keys.ts';
 import { linkOf, scenarioOfLink } from './link.ts';
+import { nameObserver } from './naming.ts';
 import { notify } from './notice.ts';
 import { Panes, type Reading } from './panes.ts';
 import { Runner } from './runner.ts';
+import { Saving } from './save.ts';
+import { Side } from './side.ts';
 import { Store, textOf } from './store.ts';
-import { firstTheme, followTheme } from './theme.ts';
+import { firstTheme, followTheme, switchTheme } from './theme.ts';
 import { Timeline } from './timeline.ts';
 import { buildToolbar } from './toolbar.ts';
 import { showVerdict } from './verdict.ts';
+
+/** An edit of a scenario that runs is let settle so long before the run begins anew. */
+const SETTLE = 250;
 
 const store = new Store(firstTheme());
 followTheme(store);
 const runner = new Runner(store);
 showVerdict(store, runner);
-const panes = new Panes(store, runner, showReading, () => {});
+const panes = new Panes(store, runner, showReading, (place, x, y) => nameObserver(store, place, x, y));
 buildToolbar(store, panes);
 const timeline = new Timeline(store);
-new Charts(store);
+const charts = new Charts(store);
+const side = new Side(store);
+const { choose } = acceptFiles(store, side);
+buildActions();
+const saving = new Saving(store, runner, panes, charts);
+const { help } = listenToKeys({ store, runner, panes, timeline, side, saving, choose });
+
+function buildActions(): void {
+  const button = (name: string, title: string, run: () => void) =>
+    h('button', { type: 'button', title, 'aria-label': title, onclick: run }, name);
+  const undo = button('↶', 'Undo (Ctrl Z)', () => store.undo());
+  const redo = button('↷', 'Redo (Ctrl Shift Z)', () => store.redo());
+  store.on(['scenario'], () => {
+    undo.disabled = !store.canUndo;
+    redo.disabled = !store.canRedo;
+  });
+  byId('actions').append(
+    h('span', { className: 'group' }, undo, redo),
+    h(
+      'button',
+      {
+        type: 'button',
+        title: 'Open a scenario or a result (Ctrl O); files can be dropped, too',
+        onclick: () => choose(),
+      },
+      'Open…',
+    ),
+    button('◐', 'Light or dark (t)', () => switchTheme(store)),
+    button('?', 'Keys, and how to read the page (?)', () => help()),
+  );
+}
 
 function showReading(reading: Reading | undefined): void {
   const line = byId('reading');
   if (!reading) {
-    line.textContent = 'Point at a plane to read both fields there.';
+    line.textContent = 'Point at a plane to read both fields there; click to add an observer; drag to turn.';
     return;
   }
-  const { hit, unit, label, grid, exact } = reading;
+  const { hit, unit, label, grid, exact, trust } = reading;
   const place = hit.point.map((x, a) => `${'xyz'[a]} ${formatQuantity(x, 'm')}`).join(', ');
-  line.textContent = `${label} at ${place}: grid ${formatQuantity(grid, unit)}, exact ${formatQuantity(exact, unit)}, difference ${formatQuantity(grid - exact, unit)} (${formatNumber((100 * (grid - exact)) / exact)} % of exact)`;
+  if (trust) {
+    const error = (e: number) => (Number.isNaN(e) ? 'not told here' : formatPercent(e));
+    line.textContent = `At ${place}: error of E ${error(trust.E)}, of H ${error(trust.H)}, relative to the exact field there`;
+    return;
+  }
+  const share =
+    exact === 0 || Number.isNaN(exact) ? '' : ` (${formatNumber((100 * (grid - exact)) / exact, 2)} % of exact)`;
+  line.textContent = `${label} at ${place}: grid ${formatQuantity(grid, unit)}, exact ${formatQuantity(exact, unit)}, difference ${formatQuantity(grid - exact, unit)}${share}`;
 }
 
 const refresh = (now: number) => {
@@ -41,31 +85,42 @@ const refresh = (now: number) => {
 requestAnimationFrame(refresh);
 
 let pending = 0;
+let address = '';
 store.on(['scenario'], () => {
+  const { state } = store;
   clearTimeout(pending);
-  if (store.state.problems.length > 0) return;
-  void linkOf(store.state.text).then((hash) => history.replaceState(null, '', hash));
-  pending = setTimeout(() => runner.update(), store.state.run.status === 'idle' ? 0 : 400) as unknown as number;
+  const example = (Object.keys(EXAMPLES) as ExampleName[]).find((name) => textOf(EXAMPLES[name]) === state.text);
+  byId<HTMLSelectElement>('examples').value = example ?? '';
+  if (state.problems.length > 0) return;
+  void linkOf(state.text).then((hash) => {
+    address = hash;
+    history.replaceState(null, '', hash);
+  });
+  pending = setTimeout(() => runner.update(), state.run.status === 'idle' ? 0 : SETTLE) as unknown as number;
 });
 
-async function open(): Promise<void> {
+async function openAddress(): Promise<void> {
   const fallback = textOf(EXAMPLES['bench-cable-pulse']);
   try {
-    store.setText((await scenarioOfLink(location.hash)) ?? fallback);
+    const text = await scenarioOfLink(location.hash);
+    if (text !== null || store.state.text === '') store.setText(text ?? fallback);
   } catch (error) {
     notify((error as Error).message, 'bad');
-    store.setText(fallback);
+    if (store.state.text === '') store.setText(fallback);
   }
 }
-addEventListener('hashchange', () => void open());
+window.addEventListener('hashchange', () => {
+  if (location.hash !== address) void openAddress();
+});
 
 const examples = byId<HTMLSelectElement>('examples');
+examples.append(h('option', { value: '', hidden: true }, 'Your own'));
 for (const [name, { title }] of Object.entries(EXAMPLES)) examples.append(h('option', { value: name }, title));
 examples.addEventListener('change', () => store.setText(textOf(EXAMPLES[examples.value as ExampleName])));
 
 showReading(undefined);
 if (!canShareMemory())
   notify(
-    'This page is not cross-origin isolated, so its workers cannot share memory: everything runs on one thread, and takes longer. `fieldassay view` serves it isolated.',
+    'This page is not cross-origin isolated, so its workers cannot share memory: everything runs on one thread and takes longer. `fieldassay view` serves it isolated.',
   );
-void open();
+void openAddress();

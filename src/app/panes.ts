@@ -45,6 +45,8 @@ export interface Reading {
   readonly label: string;
   readonly grid: number;
   readonly exact: number;
+  /** point errors, where a trust map is shown */
+  readonly trust?: { readonly E: number; readonly H: number };
 }
 
 interface Furniture {
@@ -239,12 +241,13 @@ export class Panes {
     if (film && quantity.kind === 'potential') this.runner.wantPotentials(frame);
     const scales = film && this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
     const planes = (side: Side): Plane[] =>
-      film && scales && film.films[0] ? this.pictures.planes(film, scenario, quantity, frame, side, scales[side]) : [];
+      scales && film?.films[0] ? this.pictures.planes(film, scenario, quantity, frame, side, scales[side]) : [];
     const strokes = this.strokesOf(furniture);
     const common = { camera: this.camera, markers: this.markersOf(scenario), axes: scenario.grid.box };
     const lines = (exact: readonly Plane[]): Stroke[] => {
-      if (!scales || scales.exact.kind !== 'signed') return [];
-      const { limit } = scales.exact;
+      const field = scales?.exact;
+      if (field?.kind !== 'signed') return [];
+      const { limit } = field;
       return exact.map((plane) =>
         contourLines(
           plane,
@@ -424,9 +427,7 @@ export class Panes {
     }
     const marker = pickMarker(scene, x, y, 12 * this.ratio);
     const pane = paneAt(scene, x, y);
-    const n = planesShown(scenario).findIndex(
-      (_, k) => marker !== undefined && sameVec(this.gripOf(scenario, k), marker.at),
-    );
+    const n = planesShown(scenario).findIndex((_, k) => sameVec(this.gripOf(scenario, k), marker?.at));
     if (n < 0 || pane === undefined) return;
     const { normal, at } = planesShown(scenario)[n]!;
     this.drag = {
@@ -519,7 +520,9 @@ export class Panes {
     if (view.layout === 'trust') {
       const map = film.films[n]?.trust;
       const p = hit.j * hit.plane.nu + hit.i;
-      return map && { hit, unit: '', label: 'error', grid: map.E[p]!, exact: map.H[p]! };
+      return (
+        map && { hit, unit: '', label: '', grid: Number.NaN, exact: Number.NaN, trust: { E: map.E[p]!, H: map.H[p]! } }
+      );
     }
     const quantity = quantityOf(view.quantity);
     const scales = this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
@@ -552,7 +555,7 @@ function canvasCapture(canvas: HTMLCanvasElement, pointer: number): void {
   if (canvas.hasPointerCapture?.(pointer) === false) canvas.setPointerCapture(pointer);
 }
 
-const sameVec = (a: Vec3, b: Vec3): boolean => a.every((x, k) => x === b[k]);
+const sameVec = (a: Vec3, b: Vec3 | undefined): boolean => a.every((x, k) => x === b?.[k]);
 
 /** What the walls leave: the box without the clearance on every side. */
 function clearanceBox({ grid }: Scenario, clearance: number, colour: number): Stroke {

@@ -23,7 +23,7 @@ function decisive(json: unknown): string {
 }
 
 /** The address of a script that the build put beside this one. */
-const beside = (name: string): string => new URL(name, import.meta.url).href;
+export const beside = (name: string): string => new URL(name, import.meta.url).href;
 
 /** Runs scenarios in a worker and puts what it tells into the store. One run at a time. */
 export class Runner {

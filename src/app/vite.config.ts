@@ -16,6 +16,7 @@ export default defineConfig({
         index: 'src/app/index.html',
         coordinator: 'src/app/coordinator.ts',
         worker: 'src/run/worker.ts',
+        encoder: 'src/app/encoder.ts',
       },
       output: {
         format: 'es',

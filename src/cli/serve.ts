@@ -19,7 +19,7 @@ const ALWAYS = "base-uri 'none'; form-action 'none'; frame-ancestors 'none'";
 /** The page runs its own scripts, workers and WebAssembly, and nothing else; it asks nobody but this server. */
 const PAGE_POLICY =
   "default-src 'none'; script-src 'self' 'wasm-unsafe-eval'; worker-src 'self'; style-src 'self'; " +
-  `img-src 'self' data: blob:; media-src blob:; connect-src 'self'; ${ALWAYS}`;
+  `img-src 'self' data: blob:; font-src data:; media-src blob:; connect-src 'self'; ${ALWAYS}`;
 
 /** A report runs nothing and asks nobody: its style is its own. */
 const REPORT_POLICY = `default-src 'none'; style-src 'unsafe-inline'; img-src data:; ${ALWAYS}`;

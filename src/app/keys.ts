@@ -1,0 +1,188 @@
+import { h } from './dom.ts';
+import type { Panes } from './panes.ts';
+import { QUANTITIES } from './quantity.ts';
+import type { Runner } from './runner.ts';
+import type { Saving } from './save.ts';
+import type { Side } from './side.ts';
+import type { Store } from './store.ts';
+import { switchTheme } from './theme.ts';
+import type { Timeline } from './timeline.ts';
+
+interface Key {
+  /** as KeyboardEvent.key has it; with Ctrl+ and Shift+ in front */
+  readonly keys: readonly string[];
+  readonly help: string;
+  readonly run: () => void;
+}
+
+const GAINS = [0.5, 1, 2, 5, 10, 30, 100];
+
+/** What the page is made of, for its keys. */
+interface Parts {
+  readonly store: Store;
+  readonly runner: Runner;
+  readonly panes: Panes;
+  readonly timeline: Timeline;
+  readonly side: Side;
+  readonly saving: Saving;
+  readonly choose: () => void;
+}
+
+function table({ store, runner, panes, timeline, side, saving, choose }: Parts): Key[] {
+  const view = () => store.state.view;
+  const turnTo = (list: readonly string[], at: string, by: number) =>
+    list[(list.indexOf(at) + by + list.length) % list.length]!;
+  const quantity = (by: number) => () =>
+    store.setView({
+      quantity: turnTo(
+        QUANTITIES.map(({ key }) => key),
+        view().quantity,
+        by,
+      ) as never,
+    });
+  const gain = (by: number) => () =>
+    store.setView({ gain: GAINS[Math.min(GAINS.length - 1, Math.max(0, GAINS.indexOf(view().gain) + by))]! });
+  return [
+    { keys: [' '], help: 'play or pause', run: () => timeline.toggle() },
+    { keys: ['ArrowLeft'], help: 'one picture back', run: () => timeline.stepBy(-1) },
+    { keys: ['ArrowRight'], help: 'one picture on', run: () => timeline.stepBy(1) },
+    { keys: ['Home'], help: 'first picture', run: () => timeline.stepBy(-1e6) },
+    { keys: ['End'], help: 'last picture', run: () => timeline.stepBy(1e6) },
+    { keys: ['Shift+ArrowLeft'], help: 'turn the camera left', run: () => panes.turn(-10, 0) },
+    { keys: ['Shift+ArrowRight'], help: 'turn the camera right', run: () => panes.turn(10, 0) },
+    { keys: ['Shift+ArrowUp'], help: 'tip the camera up', run: () => panes.turn(0, 10) },
+    { keys: ['Shift+ArrowDown'], help: 'tip the camera down', run: () => panes.turn(0, -10) },
+    { keys: ['+', '='], help: 'nearer', run: () => panes.turn(0, 0, 1.2) },
+    { keys: ['-'], help: 'farther', run: () => panes.turn(0, 0, 1 / 1.2) },
+    { keys: ['x'], help: 'look along x', run: () => panes.look('x') },
+    { keys: ['y'], help: 'look along y', run: () => panes.look('y') },
+    { keys: ['z'], help: 'look along z', run: () => panes.look('z') },
+    { keys: ['0'], help: 'look from a corner', run: () => panes.look('corner') },
+    {
+      keys: ['o'],
+      help: 'parallel or perspective view',
+      run: () => store.setView({ projection: view().projection === 'perspective' ? 'orthographic' : 'perspective' }),
+    },
+    { keys: ['1'], help: 'fields side by side', run: () => store.setView({ layout: 'panes' }) },
+    { keys: ['2'], help: 'overlay', run: () => store.setView({ layout: 'overlay' }) },
+    { keys: ['3'], help: 'trust map', run: () => store.setView({ layout: 'trust' }) },
+    { keys: ['q'], help: 'next quantity', run: quantity(1) },
+    { keys: ['Q', 'Shift+Q'], help: 'previous quantity', run: quantity(-1) },
+    {
+      keys: ['d'],
+      help: 'difference signed or in dB',
+      run: () => store.setView({ difference: view().difference === 'signed' ? 'decibels' : 'signed' }),
+    },
+    { keys: ['c'], help: 'contours of the exact field', run: () => store.setView({ contours: !view().contours }) },
+    { keys: [']'], help: 'stronger colours', run: gain(1) },
+    { keys: ['['], help: 'weaker colours', run: gain(-1) },
+    {
+      keys: ['{'],
+      help: 'divider of the overlay to the left',
+      run: () => store.setView({ divider: Math.max(0, view().divider - 0.05) }),
+    },
+    {
+      keys: ['}'],
+      help: 'divider of the overlay to the right',
+      run: () => store.setView({ divider: Math.min(1, view().divider + 0.05) }),
+    },
+    {
+      keys: ['n'],
+      help: 'next observer',
+      run: () => {
+        const names = store.state.scenario?.observers.map(({ name }) => name) ?? [];
+        if (names.length > 0) store.setView({ observer: turnTo(names, view().observer, 1) });
+      },
+    },
+    { keys: ['e'], help: 'scenario as text, or panels', run: () => side.toggle() },
+    { keys: ['t'], help: 'light or dark', run: () => switchTheme(store) },
+    { keys: ['r'], help: 'run again', run: () => runner.start() },
+    { keys: ['Escape'], help: 'cancel the run', run: () => store.state.run.status === 'running' && runner.cancel() },
+    { keys: ['Ctrl+z'], help: 'undo', run: () => store.undo() },
+    { keys: ['Ctrl+Shift+Z', 'Ctrl+y'], help: 'redo', run: () => store.redo() },
+    { keys: ['Ctrl+o'], help: 'open a file', run: choose },
+    { keys: ['Ctrl+s'], help: 'save the scenario', run: () => saving.scenario() },
+  ];
+}
+
+const NAMES: Readonly<Record<string, string>> = {
+  ' ': 'Space',
+  ArrowLeft: '←',
+  ArrowRight: '→',
+  ArrowUp: '↑',
+  ArrowDown: '↓',
+  Escape: 'Esc',
+};
+
+const shown = (key: string): string =>
+  key
+    .split(/\+(?=.)/)
+    .map((part) => NAMES[part] ?? part)
+    .join(' ');
+
+/** Listens to the keyboard, and lists all keys on `?`. */
+export function listenToKeys(parts: Parts): { readonly help: () => void } {
+  const keys = table(parts);
+  const dialog = h(
+    'dialog',
+    { 'aria-label': 'Keys and how to read the page' },
+    h('h2', {}, 'Keys'),
+    h(
+      'table',
+      {},
+      ...halves(keys).map((row) =>
+        h(
+          'tr',
+          {},
+          ...row.flatMap(({ keys: [first], help }) => [h('td', {}, h('kbd', {}, shown(first!))), h('td', {}, help)]),
+        ),
+      ),
+    ),
+    h('h2', {}, 'Reading the panes'),
+    h(
+      'p',
+      {},
+      'Drag turns the camera of all panes, the wheel brings it nearer, dragging with the right button shifts it. A plane is moved by the disc at its corner. A click on a plane adds an observer there; a click on an observer selects it.',
+    ),
+    h(
+      'p',
+      {},
+      'Grid and exact field share one symmetric colour scale; the difference has its own. Near a source nothing is drawn where a sample would lie on it. The dotted outline on a plane is the mask, the dotted box the outside of the absorbing layers.',
+    ),
+    h(
+      'p',
+      {},
+      'The trust map shows e(p) = √(Σ|grid − exact|²)/√(Σ|exact|²) over the instants of the film, each component at its own place and time. The red line is the tolerance; dashed lines are the closest and the farthest trusted distance, the dashed box what the walls leave.',
+    ),
+    h('form', { method: 'dialog' }, h('button', {}, 'Close')),
+  );
+  document.body.append(dialog);
+  const help = () => (dialog.open ? dialog.close() : dialog.showModal());
+
+  window.addEventListener('keydown', (event) => {
+    if (event.defaultPrevented || event.altKey || dialog.open) return;
+    const target = event.target as HTMLElement;
+    const typing = target.matches('input:not([type=checkbox]):not([type=range]), select, textarea, [contenteditable]');
+    const control = event.ctrlKey || event.metaKey;
+    // In a text field the browser's own undo and arrows hold; only files are ours there.
+    if (typing && !(control && /^[os]$/i.test(event.key))) return;
+    if (target.matches('input[type=range]') && /^(Arrow|Home|End|Page)/.test(event.key) && !event.shiftKey) return;
+    if (event.key === ' ' && target.matches('button, input[type=checkbox], summary, .lil-title')) return;
+    if (event.key === '?') {
+      help();
+      return;
+    }
+    const plain = `${control ? 'Ctrl+' : ''}${event.shiftKey && event.key.length > 1 ? 'Shift+' : ''}${event.key}`;
+    const shifted = control && event.shiftKey ? `Ctrl+Shift+${event.key.toUpperCase()}` : plain;
+    const found = keys.find((key) => key.keys.includes(shifted));
+    if (!found) return;
+    event.preventDefault();
+    found.run();
+  });
+  return { help };
+}
+
+function halves<T>(list: readonly T[]): T[][] {
+  const half = Math.ceil(list.length / 2);
+  return list.slice(0, half).map((one, n) => [one, ...list.slice(half + n, half + n + 1)]);
+}

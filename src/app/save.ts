@@ -1,0 +1,243 @@
+import type { ResultFile } from '../report/folder.ts';
+import { PALETTE } from '../report/palette.ts';
+import { CHART_CSS } from '../report/svg.ts';
+import type { Charts } from './charts.ts';
+import { byId, h } from './dom.ts';
+import type { EncoderRequest } from './encoder.ts';
+import { notify } from './notice.ts';
+import type { Panes } from './panes.ts';
+import { beside, type Runner } from './runner.ts';
+import type { Store } from './store.ts';
+
+/** A file's name from the scenario's title. */
+function nameOf(store: Store): string {
+  const title = (store.state.json as { title?: unknown } | undefined)?.title;
+  const slug = String(title ?? '')
+    .toLowerCase()
+    .replace(/[^\p{L}\p{N}]+/gu, '-')
+    .replace(/^-|-$/g, '');
+  return slug || 'scenario';
+}
+
+/** Hands a file to the browser's downloads. */
+function download(name: string, content: Blob): void {
+  const url = URL.createObjectURL(content);
+  h('a', { href: url, download: name }).click();
+  setTimeout(() => URL.revokeObjectURL(url), 60_000);
+}
+
+const textBlob = (text: string, type: string) => new Blob([text], { type: `${type};charset=utf-8` });
+
+const asBlob = (canvas: HTMLCanvasElement) =>
+  new Promise<Blob>((resolve, reject) =>
+    canvas.toBlob((blob) => (blob ? resolve(blob) : reject(new Error('The browser made no picture.'))), 'image/png'),
+  );
+
+const TYPES: Readonly<Record<ResultFile, string>> = {
+  'result.json': 'application/json',
+  'traces.csv': 'text/csv',
+  'report.html': 'text/html',
+};
+
+/** The menu of everything that can be taken away. */
+export class Saving {
+  private readonly menu = h('div', { className: 'menu', role: 'menu', id: 'save-menu', hidden: true });
+  private readonly button = h(
+    'button',
+    { type: 'button', 'aria-haspopup': 'menu', 'aria-expanded': 'false', 'aria-controls': 'save-menu' },
+    'Save ▾',
+  );
+  private busy = false;
+
+  constructor(
+    private readonly store: Store,
+    private readonly runner: Runner,
+    private readonly panes: Panes,
+    private readonly charts: Charts,
+  ) {
+    const item = (name: string, help: string, run: () => void | Promise<void>) => {
+      const element = h('button', { type: 'button', role: 'menuitem' }, h('span', {}, name), h('small', {}, help));
+      element.addEventListener('click', () => {
+        this.close();
+        void Promise.resolve(run()).catch((error: Error) => notify(`Nothing was saved: ${error.message}`, 'bad'));
+      });
+      return element;
+    };
+    this.menu.append(
+      item('Scenario', 'the file, JSON (Ctrl S)', () => this.scenario()),
+      item('Report', 'verdict, budget and charts in one HTML file', () => this.result('report.html')),
+      item('Result', 'all figures, result.json', () => this.result('result.json')),
+      item('Traces', 'every observer and part, CSV', () => this.result('traces.csv')),
+      item('Picture of the panes', 'as shown, PNG', () => this.picture()),
+      item('Pictures of the charts', 'as shown, one PNG', () => this.chartsPicture()),
+      item('Film of the panes', 'all instants, WebM', () => this.film()),
+      item('Film of the panes', 'all instants, animated PNG: exact colours, larger', () => this.animation()),
+    );
+    this.button.addEventListener('click', () => (this.menu.hidden ? this.open() : this.close()));
+    this.menu.addEventListener('keydown', (event) => this.move(event));
+    window.addEventListener('pointerdown', (event) => {
+      if (!this.menu.hidden && !byId('actions').contains(event.target as Node)) this.close();
+    });
+    byId('actions').append(this.button, this.menu);
+  }
+
+  private open(): void {
+    this.menu.hidden = false;
+    this.button.setAttribute('aria-expanded', 'true');
+    (this.menu.firstElementChild as HTMLElement).focus();
+  }
+
+  private close(): void {
+    if (this.menu.hidden) return;
+    this.menu.hidden = true;
+    this.button.setAttribute('aria-expanded', 'false');
+    this.button.focus();
+  }
+
+  private move(event: KeyboardEvent): void {
+    const items = [...this.menu.children] as HTMLElement[];
+    const at = items.indexOf(document.activeElement as HTMLElement);
+    if (event.key === 'Escape') this.close();
+    else if (event.key === 'ArrowDown') items[(at + 1) % items.length]!.focus();
+    else if (event.key === 'ArrowUp') items[(at + items.length - 1) % items.length]!.focus();
+    else return;
+    event.preventDefault();
+    event.stopPropagation();
+  }
+
+  scenario(): void {
+    download(`${nameOf(this.store)}.json`, textBlob(this.store.state.text, 'application/json'));
+  }
+
+  private async result(file: ResultFile): Promise<void> {
+    if (!this.store.state.result) throw new Error('there is no result yet; wait for the verdict.');
+    const name = nameOf(this.store);
+    const text = await this.runner.file(file, `npx fieldassay compare ${name}.json --out out`);
+    download(`${name}-${file}`, textBlob(text, TYPES[file]));
+  }
+
+  private async picture(): Promise<void> {
+    this.panes.drawNow();
+    download(`${nameOf(this.store)}-panes.png`, await asBlob(this.panes.still()));
+  }
+
+  /** All charts one beside the other, at twice their size. */
+  private async chartsPicture(): Promise<void> {
+    const images = await Promise.all(
+      this.charts.figures.flatMap((figure) => {
+        const svg = figure.querySelector('svg');
+        return svg ? [imageOf(svg, this.store)] : [];
+      }),
+    );
+    if (images.length === 0) throw new Error('there are no charts yet; wait for the verdict.');
+    const canvas = document.createElement('canvas');
+    canvas.width = images.reduce((sum, { width }) => sum + 2 * width, 0);
+    canvas.height = Math.max(...images.map(({ height }) => 2 * height));
+    const context = canvas.getContext('2d')!;
+    context.fillStyle = PALETTE.background[this.store.state.theme];
+    context.fillRect(0, 0, canvas.width, canvas.height);
+    let x = 0;
+    for (const { image, width, height } of images) {
+      context.drawImage(image, x, 0, 2 * width, 2 * height);
+      x += 2 * width;
+    }
+    download(`${nameOf(this.store)}-charts.png`, await asBlob(canvas));
+  }
+
+  /** Shows every instant once, giving each to `take`; the page stays usable, the time line runs along. */
+  private async eachPicture(
+    perSecond: number,
+    take: (still: HTMLCanvasElement) => Promise<void> | void,
+  ): Promise<void> {
+    const { state } = this.store;
+    if (!state.film || this.busy)
+      throw new Error(this.busy ? 'a film is being made already.' : 'there are no pictures yet.');
+    this.busy = true;
+    state.playing = false;
+    const before = state.frame;
+    try {
+      for (let frame = 0; frame < state.film.frames; frame++) {
+        this.store.setFrame(frame);
+        this.panes.drawNow();
+        await take(this.panes.still());
+        await new Promise((done) => setTimeout(done, perSecond > 0 ? 1000 / perSecond : 0));
+      }
+    } finally {
+      this.busy = false;
+      this.store.setFrame(before);
+    }
+  }
+
+  private async film(): Promise<void> {
+    const type = ['video/webm;codecs=vp9', 'video/webm;codecs=vp8', 'video/webm'].find((each) =>
+      globalThis.MediaRecorder?.isTypeSupported(each),
+    );
+    if (!type) {
+      notify('This browser records no WebM; an animated PNG is made instead.');
+      return this.animation();
+    }
+    const canvas = this.panes.still();
+    const context = canvas.getContext('2d')!;
+    const stream = canvas.captureStream(0);
+    const track = stream.getVideoTracks()[0] as CanvasCaptureMediaStreamTrack;
+    const recorder = new MediaRecorder(stream, { mimeType: type, videoBitsPerSecond: 8e6 });
+    const parts: Blob[] = [];
+    recorder.addEventListener('dataavailable', ({ data }) => parts.push(data));
+    const ended = new Promise((done) => recorder.addEventListener('stop', done));
+    notify('Recording the film; it takes as long as it will play.');
+    recorder.start();
+    await this.eachPicture(this.store.state.view.speed, (still) => {
+      context.drawImage(still, 0, 0);
+      track.requestFrame();
+    });
+    recorder.stop();
+    await ended;
+    download(`${nameOf(this.store)}.webm`, new Blob(parts, { type: 'video/webm' }));
+  }
+
+  private async animation(): Promise<void> {
+    const encoder = new Worker(beside('./encoder.js'), { type: 'module' });
+    const answer = () =>
+      new Promise<{ kind: string; bytes?: Uint8Array<ArrayBuffer> }>((resolve, reject) => {
+        encoder.onmessage = ({ data }) => resolve(data);
+        encoder.onerror = ({ message }) => reject(new Error(message));
+      });
+    const ask = (request: EncoderRequest, transfer: Transferable[] = []) => {
+      const answered = answer();
+      encoder.postMessage(request, transfer);
+      return answered;
+    };
+    notify('Making the film; the time line runs along.');
+    try {
+      await this.eachPicture(0, async (still) => {
+        const { data, width, height } = still.getContext('2d')!.getImageData(0, 0, still.width, still.height);
+        await ask({ kind: 'picture', bytes: data, width, height }, [data.buffer]);
+      });
+      const { bytes } = await ask({ kind: 'end', perSecond: this.store.state.view.speed });
+      download(`${nameOf(this.store)}.png`, new Blob([bytes!], { type: 'image/png' }));
+    } finally {
+      encoder.terminate();
+    }
+  }
+}
+
+/** A chart as an image, its colours those of the theme. */
+async function imageOf(svg: SVGSVGElement, store: Store) {
+  const copy = svg.cloneNode(true) as SVGSVGElement;
+  const { width, height } = svg.viewBox.baseVal;
+  copy.setAttribute('width', String(width));
+  copy.setAttribute('height', String(height));
+  const style = document.createElementNS('http://www.w3.org/2000/svg', 'style');
+  const colours = Object.entries(PALETTE).map(([name, themes]) => `--${name}:${themes[store.state.theme]}`);
+  style.textContent = `svg{${colours.join(';')}}${CHART_CSS}.cursor,.hover{display:none}`;
+  copy.prepend(style);
+  const url = URL.createObjectURL(new Blob([new XMLSerializer().serializeToString(copy)], { type: 'image/svg+xml' }));
+  try {
+    const image = new Image(width, height);
+    image.src = url;
+    await image.decode();
+    return { image, width, height };
+  } finally {
+    URL.revokeObjectURL(url);
+  }
+}
