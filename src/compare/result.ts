@@ -181,6 +181,19 @@ export const observerSchema = z.object({
     .describe('for observers outside the box'),
 });
 
+const checkSchema = z.object({
+  name: z.string(),
+  status: z.enum(['agrees', 'differs', 'not judged']),
+  reason: z.string().nullable().describe('why it was not judged; else null'),
+  points: z.int().describe('points judged'),
+  of: z.int().describe('points of the budget'),
+  observer: z.string().nullable().describe('the worst point, where it is an observer'),
+  field: z.enum(['E', 'H']).nullable(),
+  mismatch: fraction('‖free − gridded − predicted‖/‖field‖, the worst, the field being E or ηH, the larger').nullable(),
+  limit: fraction('what it may be: 0.1 %, or three floors').nullable(),
+  sentence: z.string(),
+});
+
 export const resultSchema = z.object({
   title: z.string(),
   version: z.string().describe('of Fieldassay'),
@@ -189,6 +202,7 @@ export const resultSchema = z.object({
   budget: budgetSchema.describe('of E, pooled over observers; with none, over box samples outside the mask'),
   observers: z.array(observerSchema).readonly(),
   verdict: verdictSchema,
+  checks: z.array(checkSchema).readonly().describe('what every comparison is held against; a difference is a fault'),
   integral: z.object({
     errorEstimate: fraction('bound of the integral’s own relative error'),
     gaugeResidual: z.number().nullable().describe('|∇·A + με ∂φ/∂t| relative to its terms'),
@@ -216,6 +230,7 @@ export const resultSchema = z.object({
 
 export type Result = z.infer<typeof resultSchema>;
 export type ObserverResult = z.infer<typeof observerSchema>;
+export type Check = z.infer<typeof checkSchema>;
 export type BudgetResult = z.infer<typeof budgetSchema>;
 export type ObserverFieldResult = z.infer<typeof observerField>;
 

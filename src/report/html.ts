@@ -62,6 +62,7 @@ export function reportHtml({ result, traces, spectra, command }: Report): string
 <h1>${verdict.sentence}</h1>
 ${within ? null : markup`<p class="outside">Outside the tolerance of ${formatPercent(result.tolerance, 3)}.</p>`}
 ${verdict.details.map((detail) => markup`<p>${detail}</p>`)}
+${result.checks.map(({ status, sentence }) => markup`<p${status === 'differs' ? markup` class="outside"` : null}>${sentence}</p>`)}
 ${budgetSection(result)}
 ${section('How far, and how near', [distanceChart(result), wallChart(result)])}
 ${observersSection(result)}

@@ -32,7 +32,7 @@ export function resultText(result: Result, { colour, written = [] }: TextOptions
   const paint = (text: string, name: ColourName): string =>
     colour && ANSI[name] ? `\u001b[38;5;${ANSI[name]}m${text}\u001b[0m` : text;
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
-  const { verdict, tolerance } = result;
+  const { verdict, tolerance, checks } = result;
   const outside = `Outside the tolerance of ${formatPercent(tolerance, 3)}.`;
   const sections = [
     [
@@ -40,6 +40,7 @@ export function resultText(result: Result, { colour, written = [] }: TextOptions
       strong(printable(verdict.sentence)),
       ...(withinTolerance(result) ? [] : [paint(outside, 'outside')]),
       ...verdict.details.map(printable),
+      ...checks.map(({ status, sentence }) => paint(printable(sentence), status === 'differs' ? 'outside' : 'ink')),
     ],
     ['Error budget of E (relative L2; share of the total, signed; floor)', ...budgetLines(result, paint)],
     result.observers.length === 0 ? [] : ['Observers', ...observerLines(result, paint)],

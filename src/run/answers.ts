@@ -1,3 +1,4 @@
+import type { NotPredicted, PredictedLattice } from '../compare/agreement.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import type { GridResult } from '../fdtd/run.ts';
@@ -6,6 +7,7 @@ import { instantsOf } from '../trace/trace.ts';
 import type { FreeSpacePlan } from './freeSpace.ts';
 import { runGrid } from './gridRun.ts';
 import { exactField, griddedField, type IntegralField } from './integrals.ts';
+import { predictLattice } from './latticeCheck.ts';
 import type { Places } from './places.ts';
 import type { Team } from './pool.ts';
 import { type Progress, ProgressMeter } from './progress.ts';
@@ -27,6 +29,8 @@ export interface Answers {
   readonly gridded: IntegralField;
   readonly volumeExact: IntegralField;
   readonly outsideExact: IntegralField;
+  /** what the lattice part ought to be */
+  readonly lattice: PredictedLattice | NotPredicted;
   /** wall time of all integrals, s */
   readonly exactSeconds: number;
 }
@@ -83,6 +87,8 @@ export async function answer(
   ]);
   meter.enter(4);
   const gridded = await griddedField(team, scenario, json, places.budgetCells, instants, () => {});
+  const exactSeconds = (performance.now() - started) / 1000;
+  const freeHistory = freeRun && { ...gridded.history, values: freeRun.samples[0]! };
   return {
     box: boxRun,
     probe,
@@ -92,7 +98,8 @@ export async function answer(
     gridded,
     volumeExact,
     outsideExact,
-    exactSeconds: (performance.now() - started) / 1000,
+    exactSeconds,
+    lattice: await predictLattice(team, question, json, places, freeHistory, gridded.history),
   };
 }
 

@@ -22,6 +22,7 @@ import { describeBoundary, notesOf } from './describe.ts';
 import { dispersionErrorAt, farthestModel } from './farthest.ts';
 import type { FreeSpacePlan } from './freeSpace.ts';
 import { gaugeResidual } from './gauge.ts';
+import { latticeCheck } from './latticeCheck.ts';
 import { budgetLevels, relativeBound, volumeLevels } from './levels.ts';
 import { type Places, SEED } from './places.ts';
 import type { Question } from './question.ts';
@@ -91,6 +92,7 @@ export function conclude(given: Case): Comparison {
     budget: budgetResult(budget),
     observers: scenario.observers.map(({ name }) => [...inside, ...outside].find((o) => o.name === name)!),
     verdict,
+    checks: [latticeCheck(signals, answers.lattice, levels, places, medium.impedance)],
     integral: {
       errorEstimate: integralError,
       gaugeResidual: gaugeResidual(sources, medium, gaugePlaces, steps * timeStep),

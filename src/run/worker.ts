@@ -2,11 +2,14 @@ import workerpool from 'workerpool';
 import { type PackedProblem, unpackProblem } from '../fdtd/pack.ts';
 import { follow, type GridResult, type GridRun, type GridSetup, lead, prepareGridRun } from '../fdtd/run.ts';
 import { gridSources, nodeGridOf } from '../gridding/gridding.ts';
+import { predictLatticeError } from '../lattice/predict.ts';
+import { predictLatticeErrorBySpectrum } from '../lattice/spectral.ts';
 import { griddedHistory } from '../retarded/gridded.ts';
 import { exactHistory } from '../retarded/history.ts';
 import type { Method } from '../retarded/prepare.ts';
 import { loadScenario } from '../scenario/load.ts';
 import type { Axis, Scenario } from '../scenario/model.ts';
+import { timeStepOf } from '../scenario/sites.ts';
 import { type Instants, samplePoints } from '../trace/trace.ts';
 import { framesOf, type SliceShape, withBelow } from './planes.ts';
 
@@ -33,7 +36,12 @@ export interface Tasks {
   exactField(scenario: unknown, cells: Int32Array, instants: Instants, method: Method): ExactPiece;
   /** the exact field of the gridded currents at the sites of some cells */
   griddedField(scenario: unknown, cells: Int32Array, instants: Instants, accuracy: number): GriddedPiece;
+  /** what the lattice is predicted to add at the sites of some cells: values as in `FieldHistory` */
+  predictLattice(scenario: unknown, cells: Int32Array, instants: Instants, form: LatticeForm): Float64Array;
 }
+
+/** How a prediction is made: in time, or with the exact numerical phase, some thirty times dearer. */
+export type LatticeForm = 'time' | 'spectrum';
 
 /** A prepared run as it travels: without what cannot be cloned. */
 export type PreparedGrid = Omit<GridRun, 'problem' | 'region'>;
@@ -120,6 +128,13 @@ const tasks: Tasks = {
       { accuracy },
     );
     return { values, difference, evaluations };
+  },
+  predictLattice(json, cells, instants, form) {
+    const { sources, medium, grid } = scenarioOf(json);
+    const { edges } = gridSources(sources, nodeGridOf(grid));
+    const lattice = { cellSize: grid.cellSize, timeStep: timeStepOf(grid, medium), medium };
+    const predict = form === 'time' ? predictLatticeError : predictLatticeErrorBySpectrum;
+    return predict(edges, lattice, samplePoints(cells, grid.box.from, grid.cellSize), instants);
   },
 };
 
