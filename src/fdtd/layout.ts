@@ -41,6 +41,8 @@ export interface Layout {
   readonly memoryRowX: number;
   /** by axis: layers at the low and high face, profiles and ψ of the electric and the magnetic update */
   readonly layers: readonly [AxisLayers, AxisLayers, AxisLayers];
+  /** where all ψ lies */
+  readonly memory: readonly [number, number];
   readonly walls: { readonly murFaces: number; readonly murFactor: readonly [number, number, number] };
   /** one thread's notes of the fields beside the walls */
   readonly notes: number;
@@ -161,18 +163,18 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
   const windows = [bump.take(windowVectors * WINDOW_BYTES), bump.take(windowVectors * WINDOW_BYTES)] as const;
   const memoryRowX = absorbsX ? windowVectors * 2 * VECTOR : 0;
   const memoryRow = rowVectors * 2 * VECTOR;
+  const profiles = AXES.map((a) => {
+    const bytes = a === 0 ? 0 : (layerCounts[a]![0] + layerCounts[a]![1]) * 4 * real;
+    return [bump.take(bytes), bump.take(bytes)] as const;
+  });
+  const memoryFrom = bump.take(0);
   const layers = AXES.map((a) => {
     const [low, high] = layerCounts[a]!;
     const rows = a === 0 ? ny * nz : (low + high) * (a === 1 ? nz : ny);
     const bytes = rows * (a === 0 ? memoryRowX : memoryRow);
-    const profileBytes = a === 0 ? 0 : (low + high) * 4 * real;
-    return {
-      low,
-      high,
-      profile: [bump.take(profileBytes), bump.take(profileBytes)],
-      memory: [bump.take(bytes), bump.take(bytes)],
-    };
+    return { low, high, profile: profiles[a]!, memory: [bump.take(bytes), bump.take(bytes)] };
   }) as unknown as [AxisLayers, AxisLayers, AxisLayers];
+  const memoryTo = bump.take(0);
 
   const walls = AXES.map((a) => FACES_OF[a].map((face) => wallOf(problem, face)));
   const murFaces = walls.flat().reduce((bits, wall, face) => bits | (wall.type === 'mur' ? 1 << face : 0), 0);
@@ -203,6 +205,7 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
     windows,
     memoryRowX,
     layers,
+    memory: [memoryFrom, memoryTo],
     walls: { murFaces, murFactor },
     notes,
     notesBytes,

@@ -181,15 +181,18 @@ function readyKernel(setup: GridSetup, thread: number, interrupted: () => boolea
   return kernel;
 }
 
-/** Fills this thread's share of the fields with the start value: it is also the first to touch that memory. */
+/**
+ * Gives this thread's share of the fields and of ψ their start value. It is also the first to touch that memory, which
+ * costs more than writing it: better by all threads at once, and before the clock of the march runs.
+ */
 function fillShare(kernel: GridKernel, { layout, threads }: GridSetup, thread: number): void {
-  const vectors = layout.fieldBytes / VECTOR;
-  const from = Math.floor((vectors * thread) / threads) * VECTOR;
-  const to = Math.floor((vectors * (thread + 1)) / threads) * VECTOR;
-  for (let field = 0; field < 6; field++) {
-    const base = FIELDS + field * layout.stride;
-    kernel.fill(base + from, base + to, layout.bias);
-  }
+  const share = (from: number, bytes: number, value: number) => {
+    const vectors = bytes / VECTOR;
+    const bound = (t: number) => from + Math.floor((vectors * t) / threads) * VECTOR;
+    kernel.fill(bound(thread), bound(thread + 1), value);
+  };
+  for (let field = 0; field < 6; field++) share(FIELDS + field * layout.stride, layout.fieldBytes, layout.bias);
+  share(layout.memory[0], layout.memory[1] - layout.memory[0], 0);
 }
 
 /** What every thread does at a command; false when the run was called off meanwhile. */
