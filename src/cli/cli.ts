@@ -1,7 +1,10 @@
 import { Command, CommanderError, InvalidArgumentError } from 'commander';
 import { withinTolerance } from '../compare/result.ts';
+import type { SurveyResult } from '../compare/surveyResult.ts';
 import { RESULT_FILES, resultFile } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
+import { surveyFiles } from '../report/surveyFolder.ts';
+import { surveyText } from '../report/surveyText.ts';
 import { resultText } from '../report/text.ts';
 import { type Comparison, compareSolvers, Refusal } from '../run/compare.ts';
 import { VERSION } from '../run/version.ts';
@@ -12,6 +15,7 @@ import { InputError, readScenario } from './input.ts';
 import { writeFolder, writeWhole } from './output.ts';
 import { progressLine } from './progress.ts';
 import { servePage } from './serve.ts';
+import { type SurveyFlags, surveyCommand } from './survey.ts';
 
 /** Exit statuses: 0 done and within tolerance, 1 done and outside it, 2 the input was refused, 3 something failed. */
 const DONE = 0;
@@ -40,7 +44,7 @@ export async function runCli(args: readonly string[]): Promise<number> {
   } catch (error) {
     if (error instanceof CommanderError) return error.exitCode === 0 ? DONE : REFUSED;
     if (error instanceof Interrupted) {
-      process.stderr.write('stopped; nothing was written\n');
+      process.stderr.write(`${error.message}\n`);
       return INTERRUPTED;
     }
     process.stderr.write(`${(error as Error)?.message ?? error}\n`);
@@ -51,7 +55,11 @@ export async function runCli(args: readonly string[]): Promise<number> {
   }
 }
 
-class Interrupted extends Error {}
+class Interrupted extends Error {
+  constructor(message = 'stopped; nothing was written') {
+    super(message);
+  }
+}
 
 function threadCount(text: string): number {
   const n = Number(text);
@@ -131,6 +139,42 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     });
 
   program
+    .command('survey')
+    .argument('<survey>', 'a survey file: a scenario and what to vary in it')
+    .description('many cases: order of convergence, reflections of walls, what an error costs')
+    .requiredOption('--out <dir>', 'write survey-result.json, survey.csv, survey.html and charts into this folder')
+    .option('--json', 'print the result as JSON on standard output, and nothing else there')
+    .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
+    .addHelpText(
+      'after',
+      '\nFinished cases are kept in DIR/cases: the same command goes on where it was stopped.\n' +
+        '\nExample: fieldassay survey survey.json --out survey\n',
+    )
+    .action(async (file: string, options: SurveyFlags) => {
+      let result: SurveyResult;
+      try {
+        result = await surveyCommand(file, options, signal);
+      } catch (error) {
+        if (error instanceof Interrupted)
+          throw new Interrupted(
+            `stopped; finished cases are kept in ${options.out}/cases, and the same command goes on from there`,
+          );
+        throw error;
+      }
+      const files = surveyFiles(result, surveyCommandLine(file, options));
+      writeFolder(options.out, files);
+      if (options.json) process.stdout.write(files['survey-result.json']!);
+      else
+        process.stdout.write(
+          surveyText(
+            result,
+            Object.keys(files).map((name) => `${options.out}/${name}`),
+          ),
+        );
+      end(result.cases.some(({ status }) => status === 'failed') ? FAILED : DONE);
+    });
+
+  program
     .command('schema')
     .description('print the JSON Schema of scenario files')
     .addHelpText('after', '\nExample: fieldassay schema > scenario.schema.json\n')
@@ -180,9 +224,14 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
 const filesOf = (comparison: Comparison, command: string): Record<string, string> =>
   Object.fromEntries(RESULT_FILES.map((file) => [file, resultFile(file, comparison, command)]));
 
+const quotedWord = (word: string): string => (/^[\w./-]+$/.test(word) ? word : JSON.stringify(word));
+
+function surveyCommandLine(file: string, { out, threads }: SurveyFlags): string {
+  return `npx fieldassay survey ${quotedWord(file)} --out ${quotedWord(out)}${threads ? ` --threads ${threads}` : ''}`;
+}
+
 function commandLine(name: string, { out, threads }: CompareFlags): string {
-  const quoted = /^[\w./-]+$/.test(name) ? name : JSON.stringify(name);
-  return `npx fieldassay compare ${quoted}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
+  return `npx fieldassay compare ${quotedWord(name)}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
 }
 
 async function served(

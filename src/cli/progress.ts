@@ -7,8 +7,8 @@ export function progressLine(quiet: boolean): { show: (progress: Progress) => vo
   if (!process.stderr.isTTY) {
     let last = '';
     return {
-      show: ({ stage }) => {
-        if (stage !== last) process.stderr.write(`${stage} …\n`);
+      show: ({ stage, secondsLeft }) => {
+        if (stage !== last) process.stderr.write(`${stage}${leftText(secondsLeft)} …\n`);
         last = stage;
       },
       end: () => {},
@@ -28,8 +28,11 @@ export function progressLine(quiet: boolean): { show: (progress: Progress) => vo
     show: ({ stage, fraction, secondsLeft }) =>
       bar.update(fraction, {
         stage,
-        left: secondsLeft === undefined ? '' : `, ${Math.max(1, Math.round(secondsLeft))} s left`,
+        left: leftText(secondsLeft),
       }),
     end: () => bar.stop(),
   };
 }
+
+const leftText = (seconds: number | undefined): string =>
+  seconds === undefined ? '' : `, ${Math.max(1, Math.round(seconds))} s left`;

@@ -31,7 +31,7 @@ export interface ObserverTrace {
  * A spreadsheet takes a cell that begins like this for a formula, so a name that does is written with an apostrophe in
  * front. One that begins with an apostrophe gets another, so that reading takes off exactly what writing put on.
  */
-const FORMULA = /^['=+\-@\t\r]/;
+export const FORMULA = /^['=+\-@\t\r]/;
 
 /** The six traces of one observer: a point of fields that all have the same points and instants. */
 export function observerTraces(

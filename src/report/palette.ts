@@ -1,7 +1,8 @@
 /**
  * Colours with one meaning each, in both themes. The four parts are from Okabe & Ito's set for every kind of colour
  * vision ("Color Universal Design", 2008); grid and exact lie on the blue–brown axis, which all kinds keep, and are told
- * apart by dash as well. Red means outside the tolerance and nothing else.
+ * apart by dash as well. Red means outside the tolerance and nothing else. The choices of a survey (walls, cell sizes) have
+ * eight more, by their order.
  */
 export const PALETTE = {
   exact: { light: '#3450c8', dark: '#8fa2ff' },
@@ -11,6 +12,14 @@ export const PALETTE = {
   gridding: { light: '#009e73', dark: '#009e73' },
   quadrature: { light: '#cc79a7', dark: '#cc79a7' },
   outside: { light: '#c4162a', dark: '#ff6b6b' },
+  choice1: { light: '#0072b2', dark: '#5fb4e6' },
+  choice2: { light: '#d55e00', dark: '#ff9248' },
+  choice3: { light: '#00795a', dark: '#35c79b' },
+  choice4: { light: '#a8518a', dark: '#e59cc8' },
+  choice5: { light: '#7d6a00', dark: '#d8c14a' },
+  choice6: { light: '#6247aa', dark: '#b7a2f2' },
+  choice7: { light: '#5f636b', dark: '#a3a8b0' },
+  choice8: { light: '#8c5a3c', dark: '#c9a184' },
   background: { light: '#fcfcfb', dark: '#131518' },
   ink: { light: '#1b1d21', dark: '#eceef1' },
   muted: { light: '#5f636b', dark: '#a3a8b0' },

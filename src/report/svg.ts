@@ -2,7 +2,7 @@ import { scaleLinear, scaleLog } from 'd3-scale';
 import { line } from 'd3-shape';
 import { formatNumber, prefixOf } from '../elementary/quantity.ts';
 import { type Markup, markup } from './markup.ts';
-import type { ColourName } from './palette.ts';
+import { type ColourName, paletteCss } from './palette.ts';
 
 /**
  * Charts as SVG text, for reports: no DOM, no script, colours by CSS variables of `palette.ts` so that one drawing serves
@@ -24,6 +24,8 @@ export interface Series {
   readonly points: readonly (readonly [number, number])[];
   readonly dashed?: boolean;
   readonly thin?: boolean;
+  /** dots alone, no line between them */
+  readonly scatter?: boolean;
   /** draws a dot at each point, in red where this holds */
   readonly dots?: (point: readonly [number, number]) => 'within' | 'outside';
 }
@@ -95,6 +97,12 @@ ${xAxis(chart.x, at)}${yAxis(chart.y, at)}
 ${chart.series.map((series) => path(series, chart, at))}
 ${(chart.marks ?? []).map((mark, i) => markLine(mark, at, i))}
 </svg>`;
+}
+
+/** The chart as a file of its own, with the style it needs. */
+export function chartFile(chart: Chart, size?: ChartSize): string {
+  const { text } = chartSvg(chart, size);
+  return `${text.replace('>', `><style>${paletteCss()}${CHART_CSS}svg{background:var(--background)}</style>`)}\n`;
 }
 
 /** CSS of charts, to stand once beside them. */
@@ -206,6 +214,7 @@ function path(series: Series, chart: Chart, { x, y, left, right, top, bottom, wi
           markup`<circle class="dot" r="3.5" cx="${x(p[0])}" cy="${clampY(p[1])}" fill="var(--${series.dots!(p) === 'outside' ? 'outside' : series.colour})"><title>${readout(p, chart)}</title></circle>`,
       )
     : [];
+  if (series.scatter) return markup`${dots}`;
   return markup`<path class="series${series.dashed ? ' dashed' : ''}${series.thin ? ' thin' : ''}" stroke="var(--${series.colour})" d="${d}"/>${dots}`;
 }
 

@@ -3,7 +3,7 @@ import { formatPercent } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
 import { printable } from './markup.ts';
 import type { ColourName } from './palette.ts';
-import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
+import { bandText, columns, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
 
 /** Nearest entries of the 256-colour set to the palette's colours. */
 const ANSI: Readonly<Partial<Record<ColourName, number>>> = {
@@ -114,20 +114,4 @@ function observerLines(result: Result, paint: Paint): string[] {
     const error = i === 0 ? null : (result.observers[i - 1]!.E?.relativeL2 ?? null);
     return error !== null && error > result.tolerance ? paint(line.trimEnd(), 'outside') : line.trimEnd();
   });
-}
-
-/** Rows as lines, cells padded to their columns' widths, two spaces in front and between. */
-function columns(rows: readonly (readonly string[])[], align: readonly ('left' | 'right')[] = []): string[] {
-  const width = (text: string) => [...text].length;
-  const widths = rows[0]!.map((_, c) => Math.max(...rows.map((row) => width(row[c]!))));
-  return rows.map((row) =>
-    row
-      .map((cell, c) => {
-        const padding = ' '.repeat(widths[c]! - width(cell));
-        return `  ${align[c] === 'right' ? padding + cell : cell + padding}`;
-      })
-      .join('')
-      .trimEnd()
-      .padEnd(widths.reduce((sum, w) => sum + w + 2, 0)),
-  );
 }

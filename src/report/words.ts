@@ -47,3 +47,19 @@ export function gridText({ grid }: Result): string {
     `${formatQuantity(grid.timeStep, 's')}, ${formatQuantity(grid.memoryBytes, 'B')}`
   );
 }
+
+/** Rows as lines, cells padded to their columns' widths, two spaces in front and between. */
+export function columns(rows: readonly (readonly string[])[], align: readonly ('left' | 'right')[] = []): string[] {
+  const width = (text: string) => [...text].length;
+  const widths = rows[0]!.map((_, c) => Math.max(...rows.map((row) => width(row[c]!))));
+  return rows.map((row) =>
+    row
+      .map((cell, c) => {
+        const padding = ' '.repeat(widths[c]! - width(cell));
+        return `  ${align[c] === 'right' ? padding + cell : cell + padding}`;
+      })
+      .join('')
+      .trimEnd()
+      .padEnd(widths.reduce((sum, w) => sum + w + 2, 0)),
+  );
+}

@@ -35,15 +35,39 @@ export interface Answers {
   readonly exactSeconds: number;
 }
 
-/** Asks both solvers, one run after another, each with the whole team. */
+/** With what a case is run. */
+export interface Means {
+  readonly team: Team;
+  /** threads of a grid run: all of the team, or one where cases run beside each other */
+  readonly gridThreads: number;
+  readonly onProgress: (progress: Progress) => void;
+  /** where cases ask for the same thing, does it once */
+  readonly share?: Share;
+}
+
+/**
+ * Does a piece of work, or hands out what it gave before: the grid without walls (for reflections, in double precision), or
+ * the exact fields.
+ * None of them knows what the walls of the box are.
+ */
+export type Share = <T>(work: 'free' | 'reflectionFree' | 'integrals' | 'lattice', make: () => Promise<T>) => Promise<T>;
+
+const alone: Share = (_, make) => make();
+
+/** What is asked. */
+export interface Asked {
+  readonly question: Question;
+  /** the scenario as it was given */
+  readonly json: unknown;
+  readonly places: Places;
+  readonly box: GridProblem;
+  readonly free: FreeSpacePlan | null;
+}
+
+/** Asks both solvers, one run after another. */
 export async function answer(
-  team: Team,
-  question: Question,
-  json: unknown,
-  places: Places,
-  box: GridProblem,
-  free: FreeSpacePlan | null,
-  onProgress: (progress: Progress) => void,
+  { question, json, places, box, free }: Asked,
+  { team, gridThreads, onProgress, share = alone }: Means,
 ): Promise<Answers> {
   const { scenario, steps, timeStep } = question;
   const still = STILL[scenario.grid.precision];
@@ -64,48 +88,42 @@ export async function answer(
   ]);
   const grid = (stage: number, problem: GridProblem) => {
     meter.enter(stage);
-    return runGrid(team, problem, still, (done) => meter.at(done / steps));
+    return runGrid(team, problem, still, (done) => meter.at(done / steps), gridThreads);
   };
   const boxRun = await grid(0, box);
   const probe = await grid(1, driven(box, ROUNDING_PROBE));
-  const freeRun = free ? await grid(2, free.problem) : null;
-
-  const started = performance.now();
-  meter.enter(3);
-  const hasClosedForm = prepareSources(scenario.sources, scenario.medium, 'best').waves.length > 0;
-  let doneCells = 0;
-  const total = cells.volume + cells.outside + cells.budget * (hasClosedForm ? 2 : 1);
-  const count = (n: number) => {
-    doneCells += n;
-    meter.at(doneCells / total);
-  };
-  const [volumeExact, outsideExact, exact, byQuadrature] = await Promise.all([
-    exactField(team, scenario, json, places.volume.cell, volumeInstants, 'best', count),
-    exactField(team, scenario, json, places.outsideCells, instants, 'best', count),
-    exactField(team, scenario, json, places.budgetCells, instants, 'best', count),
-    hasClosedForm ? exactField(team, scenario, json, places.budgetCells, instants, 'quadrature', count) : null,
-  ]);
-  meter.enter(4);
-  const gridded = await griddedField(team, scenario, json, places.budgetCells, instants, () => {});
-  const exactSeconds = (performance.now() - started) / 1000;
-  const freeHistory = freeRun && { ...gridded.history, values: freeRun.samples[0]! };
-  return {
-    box: boxRun,
-    probe,
-    free: freeRun,
-    exact,
-    computed: byQuadrature ?? exact,
-    gridded,
-    volumeExact,
-    outsideExact,
-    exactSeconds,
-    lattice: await predictLattice(team, question, json, places, freeHistory, gridded.history),
-  };
+  const freeRun = free ? await share('free', () => grid(2, free.problem)) : null;
+  const integrals = await share('integrals', async () => {
+    const started = performance.now();
+    meter.enter(3);
+    const hasClosedForm = prepareSources(scenario.sources, scenario.medium, 'best').waves.length > 0;
+    let doneCells = 0;
+    const total = cells.volume + cells.outside + cells.budget * (hasClosedForm ? 2 : 1);
+    const count = (n: number) => {
+      doneCells += n;
+      meter.at(doneCells / total);
+    };
+    const [volumeExact, outsideExact, exact, byQuadrature] = await Promise.all([
+      exactField(team, scenario, json, places.volume.cell, volumeInstants, 'best', count),
+      exactField(team, scenario, json, places.outsideCells, instants, 'best', count),
+      exactField(team, scenario, json, places.budgetCells, instants, 'best', count),
+      hasClosedForm ? exactField(team, scenario, json, places.budgetCells, instants, 'quadrature', count) : null,
+    ]);
+    meter.enter(4);
+    const gridded = await griddedField(team, scenario, json, places.budgetCells, instants, () => {});
+    const exactSeconds = (performance.now() - started) / 1000;
+    return { exact, computed: byQuadrature ?? exact, gridded, volumeExact, outsideExact, exactSeconds };
+  });
+  const lattice = await share('lattice', () => {
+    const freeHistory = freeRun && { ...integrals.gridded.history, values: freeRun.samples[0]! };
+    return predictLattice(team, question, json, places, freeHistory, integrals.gridded.history);
+  });
+  return { box: boxRun, probe, free: freeRun, ...integrals, lattice };
 }
 
-/** Cell updates, and cells of exact histories, that a second is guessed to hold: they only weight the progress bar. */
-const GRID_RATE = 5e8;
-const CELL_RATE = 2e3;
+/** Cell updates, and cells of exact histories, that a second is guessed to hold: they only weight progress and order. */
+export const GRID_RATE = 5e8;
+export const CELL_RATE = 2e3;
 
 /** The same problem with all currents times a factor. */
 function driven(problem: GridProblem, factor: number): GridProblem {

@@ -3,7 +3,7 @@ import { formatQuantity } from '../elementary/quantity.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import { loadScenario } from '../scenario/load.ts';
-import { answer } from './answers.ts';
+import { type Asked, answer, type Means } from './answers.ts';
 import { type Comparison, conclude } from './conclude.ts';
 import { planFreeSpace } from './freeSpace.ts';
 import { placesOf } from './places.ts';
@@ -30,36 +30,62 @@ export interface CompareOptions {
  * @throws Refusal naming every problem of the scenario; Error where a worker died; the signal's reason when aborted
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
-  const json = typeof input === 'string' ? parsed(input) : input;
+  const prepared = prepareCase(typeof input === 'string' ? parsed(input) : input);
+  return await withTeam(options.threads ?? threadsAvailable(), options.signal, (team) =>
+    solvePrepared(prepared, { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) }),
+  );
+}
+
+/**
+ * What is asked of both solvers, where they are read, and how free space is marched.
+ * @throws Refusal naming every problem of the scenario
+ */
+export function prepareCase(json: unknown): Asked {
   const loaded = loadScenario(json);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
-  options.signal?.throwIfAborted();
-
   const question = questionOf(loaded.scenario);
   const places = placesOf(question);
   const box = boxProblem(question, places.groups);
   const limit = memoryLimit();
   refuseTooLarge(box, limit);
-  const free = planFreeSpace(box, limit);
+  return { question, json, places, box, free: planFreeSpace(box, limit) };
+}
 
-  const team = new Team(options.threads ?? threadsAvailable());
+/**
+ * Answers and what they say.
+ * @throws Error where a worker died
+ */
+export async function solvePrepared(prepared: Asked, means: Means): Promise<Comparison> {
+  return conclude({ ...prepared, answers: await answer(prepared, means), threads: means.gridThreads });
+}
+
+/**
+ * A job with a team of its own, which ends with it.
+ * @throws what the job throws; the signal's reason when aborted, after all workers were ended at once
+ */
+export async function withTeam<T>(
+  threads: number,
+  signal: AbortSignal | undefined,
+  job: (team: Team) => Promise<T>,
+): Promise<T> {
+  signal?.throwIfAborted();
+  const team = new Team(threads);
   let abort = () => {};
   const aborted = new Promise<never>((_, reject) => {
     abort = () => {
-      reject(options.signal!.reason);
+      reject(signal!.reason);
       void team.end();
     };
   });
   aborted.catch(() => {});
-  options.signal?.addEventListener('abort', abort, { once: true });
+  signal?.addEventListener('abort', abort, { once: true });
   try {
-    const asked = answer(team, question, json, places, box, free, options.onProgress ?? (() => {}));
+    const done = job(team);
     // Once aborted, the workers' own ends are of no interest.
-    asked.catch(() => {});
-    const answers = await Promise.race([asked, aborted]);
-    return conclude({ question, json, places, box, free, answers, threads: team.threads });
+    done.catch(() => {});
+    return await Promise.race([done, aborted]);
   } finally {
-    options.signal?.removeEventListener('abort', abort);
+    signal?.removeEventListener('abort', abort);
     await team.end();
   }
 }
@@ -73,7 +99,8 @@ function parsed(text: string): unknown {
   }
 }
 
-function refuseTooLarge(box: GridProblem, limit: number): void {
+/** @throws Refusal where the grid in its box fits neither the machine nor the kernel */
+export function refuseTooLarge(box: GridProblem, limit: number): void {
   const refuse = (message: string) => new Refusal([{ path: 'grid.cellSize', value: box.cellSize, message }]);
   let bytes: number;
   try {

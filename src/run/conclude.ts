@@ -12,20 +12,17 @@ import { type Spectra, spectraOf } from '../compare/spectrum.ts';
 import { verdictOf } from '../compare/verdict.ts';
 import { wallClearance } from '../compare/wall.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
-import type { GridProblem } from '../fdtd/problem.ts';
 import type { GridResult } from '../fdtd/run.ts';
 import { distanceToSources, lastArrival } from '../scenario/distance.ts';
 import type { Observer, Vec3 } from '../scenario/model.ts';
 import { COMPONENTS, type FieldHistory } from '../trace/trace.ts';
-import type { Answers } from './answers.ts';
+import type { Answers, Asked } from './answers.ts';
 import { describeBoundary, notesOf } from './describe.ts';
 import { dispersionErrorAt, farthestModel } from './farthest.ts';
-import type { FreeSpacePlan } from './freeSpace.ts';
 import { gaugeResidual } from './gauge.ts';
 import { latticeCheck } from './latticeCheck.ts';
 import { budgetLevels, relativeBound, volumeLevels } from './levels.ts';
-import { type Places, SEED } from './places.ts';
-import type { Question } from './question.ts';
+import { SEED } from './places.ts';
 import { VERSION } from './version.ts';
 
 /** A result with the signals behind it. */
@@ -40,19 +37,13 @@ export interface Comparison {
 }
 
 /** Everything that a comparison is concluded from. */
-export interface Case {
-  readonly question: Question;
-  /** the scenario as it was given */
-  readonly json: unknown;
-  readonly places: Places;
-  readonly box: GridProblem;
-  readonly free: FreeSpacePlan | null;
+export interface Case extends Asked {
   readonly answers: Answers;
   readonly threads: number;
 }
 
 /** What still radiates (1 % of the peak of w′) must have passed a point for its error to be counted. */
-const ACTIVE = 0.01;
+export const ACTIVE = 0.01;
 
 const perField = <T>(find: (field: Field) => T): Record<Field, T> => ({ E: find('E'), H: find('H') });
 

@@ -24,9 +24,12 @@ export interface FreeSpacePlan {
   readonly description: string;
 }
 
-/** Cells around the active region, and what they let through of a smooth pulse, dB (test/verify/freeSpace.test.ts). */
-const MARGIN = 6;
-const OPEN_FLOOR = -107;
+/**
+ * Cells around the active region, and what they let through of a smooth pulse, dB (test/verify/freeSpace.test.ts): for
+ * budgets, and for reflections, which are looked for further down.
+ */
+const MARGINS = { budget: { margin: 6, floor: -107 }, reflection: { margin: 10, floor: -145 } } as const;
+type Purpose = keyof typeof MARGINS;
 
 const CLEARANCE = 10;
 const LAYERS = 16;
@@ -35,11 +38,22 @@ const LAYERS = 16;
 const ABSORBED_FLOOR = -97;
 
 /**
+ * The lattice against which reflections are told: the open one, which can be had with a floor below any absorber's, or
+ * where it does not fit the absorbed one.
+ */
+export function planReflectionFree(box: GridProblem, memoryLimit: number): FreeSpacePlan | null {
+  const open = openPlan(box, 'reflection');
+  if (open && open.memoryBytes <= memoryLimit) return open;
+  const absorbed = absorbedPlan(box);
+  return absorbed && absorbed.memoryBytes <= memoryLimit ? absorbed : null;
+}
+
+/**
  * The cheaper of the two ways, or null where neither fits into `memoryLimit` bytes and the kernel's address space: a
  * normal outcome, boundary and lattice are then known by their sum alone.
  */
 export function planFreeSpace(box: GridProblem, memoryLimit: number): FreeSpacePlan | null {
-  const plans = [openPlan(box), absorbedPlan(box)].filter(
+  const plans = [openPlan(box, 'budget'), absorbedPlan(box)].filter(
     (plan) => plan !== null && plan.memoryBytes <= memoryLimit,
   ) as FreeSpacePlan[];
   return plans.reduce<FreeSpacePlan | null>(
@@ -48,14 +62,15 @@ export function planFreeSpace(box: GridProblem, memoryLimit: number): FreeSpaceP
   );
 }
 
-function openPlan(box: GridProblem): FreeSpacePlan | null {
+function openPlan(box: GridProblem, purpose: Purpose): FreeSpacePlan | null {
+  const { margin, floor } = MARGINS[purpose];
   const problem: GridProblem = {
     ...box,
-    pad: openPad(box),
+    pad: openPad(box, margin),
     boundary: everyFace({ type: 'pec' }),
-    activeRegion: { margin: MARGIN },
+    activeRegion: { margin },
   };
-  return planOf('open', problem, fromDecibels(OPEN_FLOOR), 'an open lattice, only what can reach the samples marched');
+  return planOf('open', problem, fromDecibels(floor), 'an open lattice, only what can reach the samples marched');
 }
 
 function absorbedPlan(box: GridProblem): FreeSpacePlan | null {
@@ -73,7 +88,7 @@ function absorbedPlan(box: GridProblem): FreeSpacePlan | null {
     ...box,
     pad: Object.fromEntries(FACES.map((face) => [face, CLEARANCE + LAYERS])) as Record<Face, number>,
     boundary: everyFace(boundary),
-    activeRegion: { margin: MARGIN },
+    activeRegion: { margin: MARGINS.budget.margin },
   };
   return planOf(
     'absorbed',
@@ -100,13 +115,13 @@ function planOf(
 }
 
 /** How far the active region reaches beyond the box on each face, and a cell more: no marched cell meets a wall. */
-function openPad(box: GridProblem): Record<Face, number> {
+function openPad(box: GridProblem, margin: number): Record<Face, number> {
   const room = box.steps + 4;
   const wide: GridProblem = {
     ...box,
     pad: Object.fromEntries(FACES.map((face) => [face, room])) as Record<Face, number>,
   };
-  const region = activeRegion(wide, MARGIN);
+  const region = activeRegion(wide, margin);
   const reach = Object.fromEntries(FACES.map((face) => [face, 1])) as Record<Face, number>;
   for (let n = 0; n < box.steps; n++) {
     const { from, to } = region(n);

@@ -4,7 +4,8 @@ import { type GridResult, prepareGridRun } from '../fdtd/run.ts';
 import type { Team } from './pool.ts';
 
 /**
- * Marches a grid problem with all threads of a team, one of which leads.
+ * Marches a grid problem with several threads of a team, one of which leads. Runs of several threads must not be started
+ * beside each other: their leaders could fill the team and wait for each other's followers.
  * @param stillLevel end the run when no sample moves more than this fraction of its peak any longer; null: never
  * @throws RangeError where the problem cannot be run; Error where a worker died
  */
@@ -13,13 +14,14 @@ export async function runGrid(
   problem: GridProblem,
   stillLevel: number | null,
   onSteps: (steps: number) => void,
+  threads = team.threads,
 ): Promise<GridResult> {
   const onEvent = (steps: unknown) => onSteps(steps as number);
   // A memory of one thread need not be shared, which a page that is not isolated could not.
-  if (team.threads === 1) return await team.run('marchGrid', [packProblem(problem), stillLevel], onEvent);
-  const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads: team.threads });
+  if (threads === 1) return await team.run('marchGrid', [packProblem(problem), stillLevel], onEvent);
+  const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads });
   const leader = team.run('leadGrid', [packProblem(problem), prepared, stillLevel], onEvent);
-  const followers = Array.from({ length: team.threads - 1 }, () => team.run('followGrid', [prepared.setup]));
+  const followers = Array.from({ length: threads - 1 }, () => team.run('followGrid', [prepared.setup]));
   const [result] = await Promise.all([leader, ...followers]);
   return result;
 }

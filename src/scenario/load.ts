@@ -62,8 +62,8 @@ const MIN_CELLS = 3;
 /** Below this the grid's dispersion alone is some 3 %. */
 const CELLS_PER_WAVELENGTH_NOTED = 10;
 
-type Path = readonly (string | number)[];
-type Report = (path: Path, predicate: string) => void;
+export type Path = readonly (string | number)[];
+export type Report = (path: Path, predicate: string) => void;
 
 /**
  * Reads and checks a scenario.
@@ -72,35 +72,11 @@ type Report = (path: Path, predicate: string) => void;
  *   sections. It throws nothing.
  */
 export function loadScenario(input: unknown): Loaded {
-  let raw = input;
-  if (typeof input === 'string') {
-    if (input.length > MAX_TEXT)
-      return refused(
-        '',
-        undefined,
-        `The file has ${input.length} characters; the limit is ${MAX_TEXT}. Use fewer points.`,
-      );
-    try {
-      raw = JSON.parse(input);
-    } catch {
-      return refused('', undefined, syntaxError(input));
-    }
-  }
-  if (typeof raw !== 'object' || raw === null || Array.isArray(raw))
-    return refused(
-      '',
-      raw,
-      `The scenario is ${show(raw)}; it must be an object with at least sources, grid and duration.`,
-    );
-  const file = raw as Record<string, unknown>;
-
+  const read = readObject(input, 'The scenario', 'sources, grid and duration');
+  if ('problems' in read) return read;
+  const { file } = read;
   const problems: Problem[] = [];
-  const report: Report = (path, predicate) =>
-    problems.push({
-      path: path.join('.'),
-      value: valueAt(file, path),
-      message: `${subjectOf(path)} ${predicate}.`,
-    });
+  const report = reporter(file, 'The scenario', problems);
   for (const issue of scenarioSchema.safeParse(file).error?.issues ?? []) reportIssue(issue, [], file, report);
   const scenario = build(file, report);
   return problems.length === 0 && scenario ? { scenario } : { problems };
@@ -111,8 +87,40 @@ export function describeProblem({ path, message }: Problem): string {
   return path === '' ? message : `${path}: ${message}`;
 }
 
-function refused(path: string, value: unknown, message: string): Loaded {
-  return { problems: [{ path, value, message }] };
+/**
+ * The object that a file holds.
+ * @param input the text of the file, or what JSON.parse made of it
+ * @param whole names the object, "The scenario"; `keys` those it needs at least
+ */
+export function readObject(
+  input: unknown,
+  whole: string,
+  keys: string,
+): { readonly file: Record<string, unknown> } | { readonly problems: readonly Problem[] } {
+  const refused = (value: unknown, message: string) => ({ problems: [{ path: '', value, message }] });
+  let raw = input;
+  if (typeof input === 'string') {
+    if (input.length > MAX_TEXT)
+      return refused(undefined, `The file has ${input.length} characters; the limit is ${MAX_TEXT}. Use fewer points.`);
+    try {
+      raw = JSON.parse(input);
+    } catch {
+      return refused(undefined, syntaxError(input));
+    }
+  }
+  if (typeof raw !== 'object' || raw === null || Array.isArray(raw))
+    return refused(raw, `${whole} is ${show(raw)}; it must be an object with at least ${keys}.`);
+  return { file: raw as Record<string, unknown> };
+}
+
+/** Gathers what is wrong with a file: predicates become sentences about the key at their path. */
+export function reporter(file: unknown, whole: string, problems: Problem[]): Report {
+  return (path, predicate) =>
+    problems.push({
+      path: path.join('.'),
+      value: valueAt(file, path),
+      message: `${path.length === 0 ? whole : subjectOf(path)} ${predicate}.`,
+    });
 }
 
 /** Where a text stops being JSON. The host's own message differs from one to the next; this one does not. */
@@ -131,10 +139,10 @@ function syntaxError(text: string): string {
 /** `points.1.2` of a path: from the last key on, so that a message can be read without its path. */
 function subjectOf(path: Path): string {
   const last = path.findLastIndex((key) => typeof key === 'string');
-  return path.length === 0 ? 'The scenario' : path.slice(Math.max(0, last)).join('.');
+  return path.slice(Math.max(0, last)).join('.');
 }
 
-function valueAt(root: unknown, path: Path): unknown {
+export function valueAt(root: unknown, path: Path): unknown {
   let value = root;
   for (const key of path) {
     if (typeof value !== 'object' || value === null || !Object.hasOwn(value, key)) return undefined;
@@ -144,7 +152,7 @@ function valueAt(root: unknown, path: Path): unknown {
 }
 
 /** An issue of the schema as problems: one for each unknown key, and of two forms those of the one that was meant. */
-function reportIssue(issue: z.core.$ZodIssue, parent: Path, file: unknown, report: Report): void {
+export function reportIssue(issue: z.core.$ZodIssue, parent: Path, file: unknown, report: Report): void {
   const path = [...parent, ...(issue.path as Path)];
   if (issue.code === 'unrecognized_keys') {
     const lines = issue.message.split('\n');
@@ -373,6 +381,11 @@ function buildSources(
     const built = buildSource(source, name, waveform, medium, path, report);
     return built ? [{ index, source: built }] : [];
   });
+}
+
+/** The sound sources of a scenario file that need not be sound itself: where they lie. */
+export function readSources(value: unknown): Source[] {
+  return buildSources(value, mediumOf(1, 1), true, [], () => {}).map(({ source }) => source);
 }
 
 function buildSource(

@@ -25,7 +25,7 @@ export const LIMITS = {
 } as const;
 
 /** An error function for zod: one predicate for a value that is missing or of the wrong sort. */
-const expected =
+export const expected =
   (wanted: string) =>
   ({ input }: { readonly input?: unknown }): string =>
     input === undefined ? `is missing; it must be ${wanted}` : `is ${show(input)}; it must be ${wanted}`;
@@ -34,7 +34,7 @@ const expected =
  * An object that refuses unknown keys; one line of its message for each.
  * @param what names the object in the message
  */
-function record<Shape extends z.core.$ZodLooseShape>(what: string, shape: Shape) {
+export function record<Shape extends z.core.$ZodLooseShape>(what: string, shape: Shape) {
   const known = Object.keys(shape);
   return z.strictObject(shape, {
     error: (issue) =>
@@ -44,7 +44,7 @@ function record<Shape extends z.core.$ZodLooseShape>(what: string, shape: Shape)
   });
 }
 
-function unknownKey(key: string, what: string, known: readonly string[]): string {
+export function unknownKey(key: string, what: string, known: readonly string[]): string {
   return `is not a key of ${what}${nearest(key, known)}; it may have ${known.join(', ')}`;
 }
 
@@ -111,14 +111,14 @@ const direction = z
     error: 'is [0, 0, 0], which points nowhere; give a vector that is not zero',
   });
 
-const text = (limit: number, wanted: string) =>
+export const text = (limit: number, wanted: string) =>
   z.string({ error: expected(wanted) }).max(limit, { error: `is too long; it must be at most ${limit} characters` });
 
 const name = text(LIMITS.name, `a name of at most ${LIMITS.name} characters`)
   .refine((given) => given.trim() !== '', { error: 'is empty; give a name, or leave the key out' })
   .optional();
 
-const choice = <const Names extends readonly [string, ...string[]]>(names: Names) =>
+export const choice = <const Names extends readonly [string, ...string[]]>(names: Names) =>
   z.enum(names, {
     error: ({ input }) =>
       input === undefined

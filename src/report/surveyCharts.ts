@@ -1,0 +1,307 @@
+import type { CaseResult, LadderResult, Outcome, SurveyResult } from '../compare/surveyResult.ts';
+import { isDone } from '../compare/surveyResult.ts';
+import { pow } from '../elementary/elementary.ts';
+import { formatNumber, formatPercent, formatQuantity, formatScientific } from '../elementary/quantity.ts';
+import type { ColourName } from './palette.ts';
+import { caseName, choicesOf } from './surveyWords.ts';
+import type { Chart, Mark, Series } from './svg.ts';
+
+type Point = readonly [number, number];
+
+/** Curves of one chart, at most: more cannot be told apart. */
+const MOST_CHOICES = 8;
+
+export const choiceColour = (n: number): ColourName => `choice${(n % MOST_CHOICES) + 1}` as ColourName;
+
+const PART_COLOUR: Readonly<Record<string, ColourName>> = {
+  boundary: 'boundary',
+  lattice: 'lattice',
+  boundaryAndLattice: 'muted',
+  gridding: 'gridding',
+  quadrature: 'quadrature',
+};
+
+/** A logarithmic axis around positive values. */
+function logDomain(values: readonly number[], room: number): [number, number] {
+  const sound = values.filter((v) => v > 0 && Number.isFinite(v));
+  return [Math.min(...sound) / room, Math.max(...sound) * room];
+}
+
+const pairs = (x: readonly number[], y: readonly (number | null)[]): Point[] =>
+  x.flatMap((v, n) => (y[n] !== null && y[n]! > 0 ? [[v, y[n]!] as const] : []));
+
+/** Errors, total and parts, against cell size; a slope for comparison; what the grid convergence index would have said. */
+export function ladderChart(ladder: LadderResult, tolerance: number | null): Chart | null {
+  const { sizes, errors, parts, gci, expectedOrder } = ladder;
+  const total = pairs(sizes, errors);
+  if (total.length < 2) return null;
+  const finest = total[total.length - 1]!;
+  const slope = (h: number): Point => [h, finest[1] * pow(h / finest[0], expectedOrder)];
+  const series: Series[] = [
+    {
+      name: `slope ${formatNumber(expectedOrder)}`,
+      colour: 'muted',
+      thin: true,
+      dashed: true,
+      points: sizes.map(slope),
+    },
+    ...parts.flatMap(({ part, errors: own, floors }): Series[] => {
+      const points = pairs(
+        sizes,
+        own.map((e, n) => (e !== null && e >= (floors[n] ?? 0) ? e : null)),
+      );
+      if (points.length === 0) return [];
+      return [{ name: PART_NAMES[part] ?? part, colour: PART_COLOUR[part] ?? 'muted', points, dots: () => 'within' }];
+    }),
+    {
+      name: 'total',
+      colour: 'ink',
+      points: total,
+      dots: ([, e]) => (tolerance !== null && e > tolerance ? 'outside' : 'within'),
+    },
+  ];
+  const marks: Mark[] = [
+    ...(tolerance === null
+      ? []
+      : [{ axis: 'y' as const, at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }]),
+    ...(gci.value === null
+      ? []
+      : [{ axis: 'y' as const, at: gci.value, label: `index of the finest grid ${formatPercent(gci.value)}` }]),
+  ];
+  const all = [...series.flatMap(({ points }) => points.map(([, e]) => e)), ...marks.map(({ at }) => at)];
+  return {
+    title: `Error against cell size${named(ladder.settings)}`,
+    description:
+      'Relative L2 of E pooled over the observers, total and parts above their floors, both axes logarithmic.',
+    x: {
+      label: 'cell size',
+      unit: 'm',
+      scale: 'log',
+      domain: logDomain(sizes, 1.08),
+      format: (value) => formatQuantity(value, 'm'),
+    },
+    y: { label: 'relative L2', unit: '', scale: 'log', domain: logDomain(all, 1.5), format: (v) => formatPercent(v) },
+    series,
+    marks,
+  };
+}
+
+export const PART_NAMES: Readonly<Record<string, string>> = { boundaryAndLattice: 'boundary and lattice' };
+
+const named = (settings: CaseResult['settings']): string => {
+  const name = caseName(settings);
+  return name === '' ? '' : `: ${name}`;
+};
+
+/** The reflection seen at the worst observer over time, every choice, with the exact field and the floor. */
+export function reflectionTimeChart(result: SurveyResult): Chart | null {
+  const shown = reflected(result);
+  if (shown.length === 0) return null;
+  const [first] = shown;
+  const end = Math.max(...shown.map(({ seen }) => seen.time.t[seen.time.t.length - 1] ?? 0));
+  const low = depthOf(shown.map(({ floor }) => floor));
+  return {
+    title: 'What the walls send back, over time',
+    description:
+      'Largest component of what came back at each case’s worst observer, in decibels of the peak of the exact field.',
+    x: { label: 'time', unit: 's', scale: 'linear', domain: [0, end] },
+    y: { label: 'dB of the exact peak', unit: '', scale: 'linear', domain: [low, 5] },
+    series: [
+      { name: 'exact', colour: 'exact', thin: true, points: curve(first!.seen.time.t, first!.seen.time.exact, low) },
+      ...shown.map(({ name, colour, seen }) => ({
+        name,
+        colour,
+        points: curve(seen.time.t, seen.time.reflected, low),
+      })),
+    ],
+    marks: floorMarks(shown.map(({ floor }) => floor)),
+  };
+}
+
+/** The same by frequency. */
+export function reflectionFrequencyChart(result: SurveyResult): Chart | null {
+  const shown = reflected(result).filter(({ seen }) => seen.frequency.f.length > 1);
+  if (shown.length === 0) return null;
+  const ends = shown.flatMap(({ seen }) => [seen.frequency.f[0]!, seen.frequency.f[seen.frequency.f.length - 1]!]);
+  const low = depthOf(shown.map(({ floor }) => floor));
+  return {
+    title: 'What the walls send back, by frequency',
+    description:
+      'Spectrum of what came back over that of the exact field, where that is within 40 dB of its strongest.',
+    x: { label: 'frequency', unit: 'Hz', scale: 'linear', domain: [0, Math.max(...(ends as number[]))] },
+    y: { label: 'dB of the exact field', unit: '', scale: 'linear', domain: [low, 5] },
+    series: shown.map(({ name, colour, seen }) => ({
+      name,
+      colour,
+      points: curve(seen.frequency.f, seen.frequency.ratio, low),
+    })),
+    marks: floorMarks(shown.map(({ floor }) => floor)),
+  };
+}
+
+/** Plane waves by their angle to the wall's normal. */
+export function reflectionAngleChart(result: SurveyResult): Chart | null {
+  const curves = reflected(result).flatMap(({ angles, name, colour }) =>
+    angles.map((each) => ({ name: angles.length > 1 ? each.wall : name, colour, each })),
+  );
+  const distinct = curves.filter(
+    ({ name, each }, n) => curves.findIndex((o) => o.name === name && o.each.wall === each.wall) === n,
+  );
+  if (distinct.length === 0) return null;
+  const low = depthOf(distinct.map(({ each }) => each.floor));
+  const [first] = distinct;
+  return {
+    title: `What a wall sends back, by angle, at ${formatQuantity(first!.each.frequency, 'Hz')}`,
+    description: 'Reflection of plane waves with E along the wall, against the angle from its normal.',
+    x: { label: 'angle from the normal (°)', unit: '', scale: 'linear', domain: [0, 90] },
+    y: { label: '|R| (dB)', unit: '', scale: 'linear', domain: [low, 5] },
+    series: distinct.map(({ name, colour, each }) => ({
+      name,
+      colour,
+      points: curve(each.angle, each.reflected, low),
+    })),
+    marks: floorMarks(distinct.map(({ each }) => each.floor)),
+  };
+}
+
+const curve = (x: readonly (number | null)[], y: readonly (number | null)[], low: number): Point[] =>
+  x.map((v, n) => [v!, Math.max(y[n] ?? low, low)] as const);
+
+/** Down to twenty decibels below the floor, but no further than can be seen. */
+const depthOf = (floors: readonly (number | null)[]): number =>
+  Math.max(-170, Math.min(...floors.map((f) => f ?? -100)) - 15);
+
+function floorMarks(floors: readonly (number | null)[]): Mark[] {
+  const sound = floors.filter((f) => f !== null);
+  if (sound.length === 0) return [];
+  const highest = Math.max(...sound);
+  return [{ axis: 'y', at: highest, label: 'floor: below it nothing is called a reflection' }];
+}
+
+/** Cases with a reflection, each seen at its worst observer; of many, those spread evenly. */
+function reflected(result: SurveyResult) {
+  const all = result.cases.flatMap((each) => {
+    if (!isDone(each) || !each.reflection || each.reflection.observers.length === 0) return [];
+    const { observers, floor, angles } = each.reflection;
+    const seen = observers.reduce((a, b) => ((b.peak ?? -Infinity) > (a.peak ?? -Infinity) ? b : a));
+    return [{ name: choiceName(each, result), seen, floor, angles }];
+  });
+  const stride = Math.max(1, all.length / MOST_CHOICES);
+  return Array.from({ length: Math.min(all.length, MOST_CHOICES) }, (_, n) => ({
+    ...all[Math.floor(n * stride)]!,
+    colour: choiceColour(n),
+  }));
+}
+
+/** A case's walls, and whatever else is varied. */
+export function choiceName(each: CaseResult & Outcome, { vary }: Pick<SurveyResult, 'vary'>): string {
+  const others = Object.fromEntries(
+    Object.entries(each.settings).filter(([key]) => !key.startsWith('grid.boundary') && vary.length > 1),
+  );
+  const rest = caseName(others);
+  const walls = vary.some((key) => key.startsWith('grid.boundary'));
+  if (!walls) return caseName(each.settings);
+  return rest === '' ? each.walls.description : `${each.walls.description}, ${rest}`;
+}
+
+/** Total error against what it costs; the line joins what nothing beats. */
+export function costChart(result: SurveyResult, tolerance: number | null): Chart | null {
+  const points = result.cases.flatMap((each) =>
+    isDone(each) && each.budget.total.relativeL2
+      ? [{ at: [each.cost.cellUpdates, each.budget.total.relativeL2] as const, each }]
+      : [],
+  );
+  if (points.length < 2) return null;
+  const front = frontOf(points.map(({ at }) => at));
+  const errors = [...points.map(({ at }) => at[1]), ...(tolerance === null ? [] : [tolerance])];
+  return {
+    title: 'Error against cost',
+    description: 'Every case: total relative L2 of E against cell updates; the line joins those that no other beats.',
+    x: {
+      label: 'cell updates of the grid in its box',
+      unit: '',
+      scale: 'log',
+      domain: logDomain(
+        points.map(({ at }) => at[0]),
+        1.3,
+      ),
+      format: (v) => formatScientific(v, 1),
+    },
+    y: {
+      label: 'relative L2',
+      unit: '',
+      scale: 'log',
+      domain: logDomain(errors, 1.5),
+      format: (v) => formatPercent(v),
+    },
+    series: [
+      { name: 'no other is better and cheaper', colour: 'ink', points: front, dots: () => 'within' },
+      {
+        name: 'beaten by another',
+        colour: 'muted',
+        thin: true,
+        scatter: true,
+        points: points.map(({ at }) => at).filter((at) => !front.includes(at)),
+        dots: () => 'within',
+      },
+    ],
+    marks: tolerance === null ? [] : [{ axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }],
+  };
+}
+
+function frontOf(points: readonly Point[]): Point[] {
+  const order = [...points].sort((a, b) => a[0] - b[0] || a[1] - b[1]);
+  let best = Number.POSITIVE_INFINITY;
+  return order.filter(([, error]) => {
+    if (error >= best) return false;
+    best = error;
+    return true;
+  });
+}
+
+/** Against the clearance, one curve for each combination of the other settings: the boundary's part of the error. */
+export function clearanceChart(result: SurveyResult): Chart | null {
+  if (!result.vary.includes('grid.clearance')) return null;
+  const series = choicesOf(result.cases.filter(isDone), 'grid.clearance').flatMap(({ name, cases }, n): Series[] => {
+    const points = cases
+      .flatMap((each) => {
+        const part = each.budget.boundary;
+        return part?.relativeL2 && part.relativeL2 >= (part.floor ?? 0)
+          ? [[each.walls.clearance, part.relativeL2] as const]
+          : [];
+      })
+      .sort((a, b) => a[0] - b[0]);
+    const label = name === '' ? cases[0]!.walls.description : name;
+    return points.length === 0 || n >= MOST_CHOICES
+      ? []
+      : [{ name: label, colour: choiceColour(n), points, dots: () => 'within' }];
+  });
+  const all = series.flatMap(({ points }) => points);
+  if (new Set(all.map(([x]) => x)).size < 2) return null;
+  return {
+    title: 'The walls’ part of the error against their clearance',
+    description:
+      'Relative L2 of the boundary part of E against the distance from the box around the sources to the walls.',
+    x: {
+      label: 'clearance',
+      unit: 'm',
+      scale: 'log',
+      domain: logDomain(
+        all.map(([x]) => x),
+        1.08,
+      ),
+      format: (v) => formatQuantity(v, 'm'),
+    },
+    y: {
+      label: 'boundary part',
+      unit: '',
+      scale: 'log',
+      domain: logDomain(
+        all.map(([, y]) => y),
+        1.5,
+      ),
+      format: (v) => formatPercent(v),
+    },
+    series,
+  };
+}

@@ -1,0 +1,79 @@
+import { isDone, type SurveyResult } from '../compare/surveyResult.ts';
+import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
+import { printable } from './markup.ts';
+import { caseName, countsText, headline, ladderSentences, levelText } from './surveyWords.ts';
+import { columns, percentOr } from './words.ts';
+
+/** What `survey` prints: the choice, ladders, walls, what went wrong, and where the rest lies. */
+export function surveyText(result: SurveyResult, written: readonly string[]): string {
+  const trouble = result.cases.filter((each) => !isDone(each));
+  const sections = [
+    [...(result.title === '' ? [] : [printable(result.title)]), printable(headline(result)), `${countsText(result)}.`],
+    ...result.ladders.map((ladder) => {
+      const name = caseName(ladder.settings);
+      return [
+        `Convergence${name === '' ? '' : `, ${printable(name)}`}`,
+        ...columns(
+          [
+            ['cells', 'total', 'order'],
+            ...ladder.sizes.map((size, n) => {
+              const order = n === 0 ? null : (ladder.orders[n - 1] ?? null);
+              return [
+                formatQuantity(size, 'm'),
+                percentOr(ladder.errors[n] ?? null),
+                order === null ? '' : formatNumber(order, 3),
+              ];
+            }),
+          ],
+          ['right', 'right', 'right'],
+        ),
+        ...ladderSentences(ladder).slice(1),
+      ];
+    }),
+    result.boundaries.length === 0
+      ? []
+      : [
+          'Walls (reflection at the worst observer, dB of the exact peak)',
+          ...columns(
+            [
+              ['', 'reflection', 'late', 'total', 'memory', 'time', ''],
+              ...result.boundaries.map((row) => {
+                const each = result.cases[row.case]!;
+                return [
+                  printable(caseName(row.settings)),
+                  levelText(row.reflection, row.floor),
+                  levelText(row.late, row.floor),
+                  percentOr(row.totalError),
+                  each.cost ? formatQuantity(each.cost.memoryBytes, 'B') : '',
+                  each.timings ? formatQuantity(each.timings.box.seconds, 's') : '',
+                  row.front ? 'on the front' : '',
+                ];
+              }),
+            ],
+            ['left', 'right', 'right', 'right', 'right', 'right', 'left'],
+          ),
+        ],
+    result.ladders.length > 0 || result.boundaries.length > 0
+      ? []
+      : columns(
+          [
+            ['', 'total', 'memory', 'time'],
+            ...result.cases
+              .filter(isDone)
+              .map((each) => [
+                printable(caseName(each.settings)),
+                percentOr(each.budget.total.relativeL2),
+                formatQuantity(each.cost.memoryBytes, 'B'),
+                formatQuantity(each.timings.box.seconds, 's'),
+              ]),
+          ],
+          ['left', 'right', 'right', 'right'],
+        ),
+    trouble.map((each) => `${each.status}: ${printable(caseName(each.settings))}: ${printable(each.reason ?? '')}`),
+    written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],
+  ];
+  return `${sections
+    .filter((lines) => lines.length > 0)
+    .map((lines) => lines.map((line) => line.trimEnd()).join('\n'))
+    .join('\n\n')}\n`;
+}

@@ -1,0 +1,129 @@
+import type { CaseResult, LadderResult, Outcome, SurveyResult } from '../compare/surveyResult.ts';
+import { isDone } from '../compare/surveyResult.ts';
+import { formatDecibels, formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
+import { countText } from './words.ts';
+
+/** Phrases that the terminal and the HTML report of a survey share. */
+
+/** Keys as people call them. */
+const KEY_WORDS: Readonly<Record<string, string>> = {
+  'grid.cellSize': 'cells',
+  'grid.courant': 'Courant number',
+  'grid.boundary': '',
+  'grid.boundary.layers': 'layers',
+  'grid.clearance': 'clearance',
+  'grid.gridding': 'gridding',
+  'grid.precision': 'precision',
+  duration: 'duration',
+};
+
+/** A value of a survey file in few words; objects by their `type`, or else as JSON. */
+function valueWord(value: unknown): string {
+  if (typeof value === 'string') return value;
+  if (Array.isArray(value)) return value.map(valueWord).join(' × ');
+  if (typeof value !== 'object' || value === null) return String(value);
+  const { type, ...others } = value as Record<string, unknown>;
+  if (typeof type !== 'string') return JSON.stringify(value);
+  return [type, ...Object.entries(others).map(([key, each]) => `${key} ${valueWord(each)}`)].join(', ');
+}
+
+/** "cells 5 mm, cpml, layers 8": what tells a case from the others. */
+export function caseName(settings: CaseResult['settings']): string {
+  return Object.entries(settings)
+    .map(([key, value]) => `${KEY_WORDS[key] ?? key} ${valueWord(value)}`.trim())
+    .join(', ');
+}
+
+export const keyWord = (key: string): string => KEY_WORDS[key] || (key === 'grid.boundary' ? 'walls' : key);
+export const settingWord = (value: unknown): string => valueWord(value);
+
+/** Cases gathered by all settings but one, in the order they come. */
+export function choicesOf<C extends CaseResult>(cases: readonly C[], except: string): { name: string; cases: C[] }[] {
+  const groups = new Map<string, C[]>();
+  for (const each of cases) {
+    const { [except]: _, ...others } = each.settings;
+    const name = caseName(others);
+    groups.set(name, [...(groups.get(name) ?? []), each]);
+  }
+  return [...groups].map(([name, group]) => ({ name, cases: group }));
+}
+
+/** Decibels, or that they lie below the floor. */
+export function levelText(level: number | null, floor: number | null): string {
+  if (level === null) return '—';
+  return floor !== null && level < floor ? `< ${formatDecibels(floor)} (floor)` : formatDecibels(level);
+}
+
+const HELD: Readonly<Record<LadderResult['held'], string>> = {
+  layers:
+    'the number of absorbing layers is held, so that the absorber gets thinner with the cells and its part of the error need not fall',
+  thickness: 'the thickness of the absorber is held, its layers grow in number',
+  'layers and thickness': 'layers and thickness of the absorber are held',
+  neither: 'neither the number of absorbing layers nor their thickness is held',
+  'no layers': 'the walls have no layers',
+};
+
+/** What a ladder says: how errors fall, what the index would have said, what is held. */
+export function ladderSentences({
+  sizes,
+  errors,
+  orders,
+  richardson,
+  gci,
+  held,
+  expectedOrder,
+}: LadderResult): string[] {
+  const last = sizes.length - 1;
+  const error = (n: number) => `${formatPercent(errors[n] ?? Number.NaN)} at ${formatQuantity(sizes[n]!, 'm')}`;
+  const list = orders.map((order) => (order === null ? '—' : formatNumber(order, 3))).join(', ');
+  const first = `The error goes from ${error(0)} to ${error(last)}: order ${list}, coarse to fine (${formatNumber(expectedOrder)} expected).`;
+  const limit =
+    richardson.limit === null
+      ? `Richardson’s extrapolation gives nothing: ${richardson.reason}.`
+      : `Extrapolated to vanishing cells (order ${formatNumber(richardson.order, 3)} from ${richardson.orderFrom === 'three grids' ? 'the three finest grids' : 'the scheme, two grids tell none'}) ${formatPercent(Math.abs(richardson.limit))} would be left.`;
+  const index =
+    gci.value === null
+      ? `There is no grid convergence index: ${gci.reason}.`
+      : `The grid convergence index of the finest grid is ${formatPercent(gci.value)} (factor ${gci.safetyFactor}); its true error is ${formatPercent(gci.trueError)}: the index ${gci.covered ? 'covers it' : 'would not have covered it'}.`;
+  return [first, index, limit, `On this ladder ${HELD[held]}.`];
+}
+
+/** The scenario's tolerance; null where the survey varies it. */
+export function toleranceOf({ survey, vary }: SurveyResult): number | null {
+  if (vary.includes('tolerance')) return null;
+  const given = (survey as { scenario?: { tolerance?: unknown } }).scenario?.tolerance;
+  if (typeof given === 'number') return given;
+  const percent = typeof given === 'string' ? /^\s*([\d.eE+-]+)\s*%\s*$/.exec(given)?.[1] : undefined;
+  return percent === undefined ? 0.05 : Number(percent) / 100;
+}
+
+/** "12 cases: 10 done, 1 refused, 1 failed". */
+export function countsText({ cases }: SurveyResult): string {
+  const count = (status: CaseResult['status']) => cases.filter((each) => each.status === status).length;
+  const parts = (['done', 'refused', 'failed'] as const).flatMap((status) =>
+    count(status) > 0 ? [`${count(status)} ${status}`] : [],
+  );
+  return `${cases.length} ${cases.length === 1 ? 'case' : 'cases'}: ${parts.join(', ')}`;
+}
+
+/** The cheapest case within the tolerance, or the best there is: which walls, which step, at what cost. */
+export function headline(result: SurveyResult): string {
+  const tolerance = toleranceOf(result);
+  const done = result.cases.filter(isDone).filter(({ budget }) => budget.total.relativeL2 !== null);
+  if (done.length === 0) return 'No case gives an error to choose by.';
+  const error = (each: Outcome) => each.budget.total.relativeL2!;
+  const best = done.reduce((a, b) => (error(b) < error(a) ? b : a));
+  const told = (each: CaseResult & Outcome) =>
+    `${caseName(each.settings)}: total error ${formatPercent(error(each))}, ${costText(each)}`;
+  if (tolerance === null) return `Least error: ${told(best)}.`;
+  const within = `Within ${formatPercent(tolerance, 3)}`;
+  const good = done.filter((each) => error(each) <= tolerance);
+  if (good.length === 0) return `${within}: no case; best is ${told(best)}.`;
+  const cheapest = good.reduce((a, b) => (b.cost.cellUpdates < a.cost.cellUpdates ? b : a));
+  return `${within} at least cost: ${told(cheapest)}.`;
+}
+
+/** "21 600 cells, 4.1 MB, 80 ms". */
+export function costText({ cost, timings }: Outcome): string {
+  return `${countText(cost.cells)} cells, ${formatQuantity(cost.memoryBytes, 'B')}, ${formatQuantity(timings.box.seconds, 's')}`;
+}

@@ -1,0 +1,95 @@
+import type { Reflection } from '../compare/reflection.ts';
+import type { Outcome, ReflectionResult } from '../compare/surveyResult.ts';
+import { decibels } from '../elementary/elementary.ts';
+import { methodOf } from '../fdtd/boundaries/catalogue.ts';
+import { memoryNeeded } from '../fdtd/layout.ts';
+import { sourceBounds } from '../scenario/distance.ts';
+import { FACES, type Scenario } from '../scenario/model.ts';
+import { type Asked, answer, type Means } from './answers.ts';
+import { prepareCase } from './compare.ts';
+import { conclude } from './conclude.ts';
+import { describeBoundary } from './describe.ts';
+import { measureReflection } from './reflection.ts';
+
+/**
+ * One case of a survey: the comparison, and where asked what its walls send back.
+ * @throws Refusal for a scenario with problems; Error where a worker died
+ */
+export async function runCase(json: unknown, means: Means, withReflection: boolean): Promise<Outcome> {
+  const asked = prepareCase(json);
+  const { scenario, steps } = asked.question;
+  const answers = await answer(asked, means);
+  const { result } = conclude({ ...asked, answers, threads: means.gridThreads });
+  const measured = withReflection ? await measureReflection(asked, answers.exact.history, means) : null;
+  const { cells, bytes } = memoryNeeded(asked.box);
+  return {
+    norms: result.norms,
+    budget: result.budget,
+    grid: result.grid,
+    timings: result.timings,
+    observers: result.observers,
+    verdict: result.verdict.sentence,
+    notes: result.notes,
+    environment: result.environment,
+    walls: wallsOf(scenario),
+    cost: { cells, cellUpdates: cells * steps, memoryBytes: bytes },
+    cellSize: [...scenario.grid.cellSize],
+    expectedOrder: Math.min(...scenario.sources.map(({ waveform }) => waveform.expectedOrder.order)),
+    reflection: measured && reflectionResult(asked, measured),
+  };
+}
+
+function wallsOf(scenario: Scenario): Outcome['walls'] {
+  const { grid, sources } = scenario;
+  const layers = FACES.map((face) => methodOf(grid.boundary[face]).layers(grid.boundary[face]));
+  const bounds = sources.map(sourceBounds);
+  const clearance = Math.min(
+    ...bounds.flatMap(({ from, to }) =>
+      [0, 1, 2].flatMap((a) => [from[a]! - grid.box.from[a]!, grid.box.to[a]! - to[a]!]),
+    ),
+  );
+  return {
+    description: describeBoundary(scenario),
+    layers,
+    thickness: layers.map((n, f) => n * grid.cellSize[f >> 1]!),
+    clearance,
+  };
+}
+
+const dB = (ratio: number): number | null => {
+  const value = decibels(ratio);
+  return Number.isFinite(value) ? value : null;
+};
+
+const levels = (ratios: Float64Array): (number | null)[] => Array.from(ratios, (v) => rounded(dB(v)));
+
+/** Curves are for looking at: a hundredth of a decibel is enough. */
+const rounded = (value: number | null): number | null => (value === null ? null : Math.round(value * 100) / 100);
+
+/** Every observer's reflection; of places that stand in for observers, the worst alone. */
+function reflectionResult(
+  { places }: Asked,
+  { points, echoesPast, floor }: NonNullable<Awaited<ReturnType<typeof measureReflection>>>,
+): ReflectionResult {
+  const written = (point: Reflection, p: number, observer: string | null) => ({
+    observer,
+    peak: dB(point.peak),
+    transient: dB(point.transient),
+    late: dB(point.late),
+    static: dB(point.static),
+    echoesPast: echoesPast[p]!,
+    time: { t: [...point.time.t], reflected: levels(point.time.reflected), exact: levels(point.time.exact) },
+    frequency: { f: [...point.frequency.f], ratio: levels(point.frequency.ratio) },
+  });
+  const worst = points.reduce((a, point, p) => (point.peak > points[a]!.peak ? p : a), 0);
+  return {
+    floor: dB(floor),
+    observers:
+      places.inside.length > 0
+        ? points.map((point, p) => written(point, p, places.inside[p]!.name))
+        : points.length > 0
+          ? [written(points[worst]!, worst, null)]
+          : [],
+    angles: [],
+  };
+}
