@@ -50,7 +50,10 @@ export interface Means {
  * the exact fields.
  * None of them knows what the walls of the box are.
  */
-export type Share = <T>(work: 'free' | 'reflectionFree' | 'integrals' | 'lattice', make: () => Promise<T>) => Promise<T>;
+export type Share = <T>(
+  work: 'free' | 'reflectionFree' | 'integrals' | 'lattice',
+  make: () => Promise<T>,
+) => Promise<T>;
 
 const alone: Share = (_, make) => make();
 
