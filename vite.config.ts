@@ -35,6 +35,18 @@ export default defineConfig({
           testTimeout: 60_000,
         },
       },
+      {
+        extends: true,
+        test: {
+          name: 'page',
+          include: ['test/page/**/*.test.ts'],
+          testTimeout: 120_000,
+          hookTimeout: 240_000,
+          fileParallelism: false,
+          // After the others: what a page takes is measured while nothing else runs.
+          sequence: { groupOrder: 1 },
+        },
+      },
       { extends: true, test: { name: 'verify', include: ['test/verify/**/*.test.ts'], testTimeout: 600_000 } },
       ...(stress
         ? [

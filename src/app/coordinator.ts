@@ -9,7 +9,7 @@ import { type Findings, resultFile, tracesOf } from '../report/folder.ts';
 import { compareSolvers, Refusal } from '../run/compare.ts';
 import { planFreeSpace } from '../run/freeSpace.ts';
 import { exactField } from '../run/integrals.ts';
-import { CHANNELS, filmExact, filmGrid, filmOf, type GridFrames, sliceOf } from '../run/planes.ts';
+import { CHANNELS, filmExact, filmGrid, filmOf, type GridFrames, type Slice, sliceOf } from '../run/planes.ts';
 import { Team } from '../run/pool.ts';
 import { boxProblem, type Question, questionOf } from '../run/question.ts';
 import { distanceToSources, lastArrival } from '../scenario/distance.ts';
@@ -116,7 +116,7 @@ async function firstLook(run: Run, shown: readonly Plane[], onStage: Stage): Pro
   const { every, instants } = filmOf(question);
   const slices = shown.map((plane): ShownSlice => {
     const slice = sliceOf(scenario, plane);
-    return { ...slice, beyondMask: cellsBeyond(scenario, slice, scenario.grid.mask) };
+    return { ...slice, distance: distancesOn(scenario, slice) };
   });
   run.films = slices.map((slice) => {
     const size = instants.count * CHANNELS * slice.nu * slice.nv;
@@ -275,12 +275,12 @@ function floorOf({ budget, norms }: Result): number {
   return (budget.total.floor ?? 0) * norms.E.scale.L2 * Math.sqrt(3);
 }
 
-const cellCentre = ({ grid }: Scenario, { cells }: ShownSlice, p: number): Vec3 =>
+const cellCentre = ({ grid }: Scenario, { cells }: Slice, p: number): Vec3 =>
   [0, 1, 2].map((a) => grid.box.from[a]! + (cells[3 * p + a]! + 0.5) * grid.cellSize[a]!) as unknown as Vec3;
 
-function cellsBeyond(scenario: Scenario, slice: Omit<ShownSlice, 'beyondMask'>, distance: number): Uint8Array {
-  return Uint8Array.from({ length: slice.nu * slice.nv }, (_, p) =>
-    distanceToSources(scenario.sources, cellCentre(scenario, slice as ShownSlice, p)) >= distance ? 1 : 0,
+function distancesOn(scenario: Scenario, slice: Slice): Float32Array {
+  return Float32Array.from({ length: slice.nu * slice.nv }, (_, p) =>
+    distanceToSources(scenario.sources, cellCentre(scenario, slice, p)),
   );
 }
 

@@ -6,6 +6,9 @@ import type { Store } from './store.ts';
 /** How long typing must pause before the text is judged. */
 const SETTLE = 350;
 
+/** Height of a line, CSS pixels: page.css has the same. */
+const LINE = 18;
+
 /** The line, from 1, of a place in a JSON text; of its nearest enclosing thing where the place itself is missing. */
 export function lineOf(text: string, path: string): number {
   let node: Node;
@@ -76,7 +79,10 @@ export class Editor {
 
   private show(): void {
     const { text, problems } = this.store.state;
-    if (this.area.value !== text) this.area.value = text;
+    if (this.area.value !== text) {
+      this.area.value = text;
+      this.area.setSelectionRange(0, 0);
+    }
     const placed = problems.map((problem) => ({ problem, line: this.line(problem) }));
     this.number(placed.map(({ line }) => line));
     this.list.replaceChildren(
@@ -96,7 +102,7 @@ export class Editor {
   /** Numbers the lines; those with a problem stand out. */
   private number(bad: readonly number[]): void {
     const count = this.area.value.split('\n').length;
-    this.area.rows = count;
+    this.area.style.height = `${count * LINE + 14}px`;
     this.gutter.replaceChildren();
     for (let line = 1; line <= count; line++)
       this.gutter.append(bad.includes(line) ? h('b', {}, `▸${line}\n`) : `${line}\n`);
@@ -107,6 +113,6 @@ export class Editor {
     const from = lines.slice(0, line - 1).reduce((sum, each) => sum + each.length + 1, 0);
     this.area.focus();
     this.area.setSelectionRange(from, from + (lines[line - 1]?.length ?? 0));
-    this.area.parentElement!.scrollTop = (line - 4) * 18;
+    this.area.parentElement!.scrollTop = (line - 4) * LINE;
   }
 }

@@ -2,12 +2,12 @@ import { CHANNELS } from '../run/planes.ts';
 import type { Instants } from '../trace/trace.ts';
 import type { Report, ShownSlice, TrustMap } from './messages.ts';
 
-/** What is known so far of the fields on one slice: data[(frame·CHANNELS + channel)·cells + cell]; NaN is not known. */
+/** What is known so far of the fields on one slice: data[(frame·CHANNELS + channel)·cells + cell]. */
 export interface SliceFilm {
   readonly slice: ShownSlice;
   readonly grid: Float32Array;
   readonly exact: Float32Array;
-  /** 1 where the exact field is the cell's own and not a neighbour's */
+  /** of the exact field at each cell: 0 nothing yet, 1 a neighbour's, 2 its own */
   readonly known: Uint8Array;
   trust: TrustMap | undefined;
   /** φ, Ax, Ay, Az by frame: values[quantity·cells + cell] */
@@ -34,8 +34,8 @@ export class Film {
       const size = instants.count * CHANNELS * cells;
       return {
         slice,
-        grid: new Float32Array(size).fill(Number.NaN),
-        exact: new Float32Array(size).fill(Number.NaN),
+        grid: new Float32Array(size),
+        exact: new Float32Array(size),
         known: new Uint8Array(cells),
         trust: undefined,
         potentials: new Map(),
@@ -51,10 +51,6 @@ export class Film {
     slices.forEach((data, n) => {
       const { grid, slice } = this.films[n]!;
       grid.set(data, first * CHANNELS * slice.nu * slice.nv);
-      slice.hole.forEach((hole, p) => {
-        if (hole)
-          for (let k = 0; k < count * CHANNELS; k++) grid[(first * CHANNELS + k) * slice.nu * slice.nv + p] = NaN;
-      });
     });
     this.gridFrames = first + count;
     this.revision++;
@@ -62,24 +58,30 @@ export class Film {
 
   addExact({ slice: index, cells, coarse, data }: Extract<Report, { kind: 'exact' }>): void {
     const { slice, exact, known } = this.films[index]!;
-    const { nu, nv, hole } = slice;
-    const all = nu * nv;
-    const lines = this.frames * CHANNELS;
-    cells.forEach((p, n) => {
-      if (coarse === 1) {
-        known[p] = 1;
-        for (let line = 0; line < lines; line++) exact[line * all + p] = data[line * cells.length + n]!;
-        return;
-      }
-      const [i0, j0] = [Math.floor((p % nu) / coarse) * coarse, Math.floor(p / nu / coarse) * coarse];
-      for (let j = j0; j < Math.min(nv, j0 + coarse); j++)
-        for (let i = i0; i < Math.min(nu, i0 + coarse); i++) {
-          const q = j * nu + i;
-          if (hole[q] || known[q]) continue;
-          for (let line = 0; line < lines; line++) exact[line * all + q] = data[line * cells.length + n]!;
-        }
-    });
+    const all = slice.nu * slice.nv;
+    // each target, and which of the cells it shows
+    const targets = cells.flatMap((p, n) =>
+      (coarse === 1 ? [p] : this.around(index, p, coarse)).map((q) => [q, n] as const),
+    );
+    const to = Int32Array.from(targets, ([q]) => q);
+    const from = Int32Array.from(targets, ([, n]) => n);
+    for (const q of to) known[q] = coarse === 1 ? 2 : 1;
+    for (let line = 0; line < this.frames * CHANNELS; line++) {
+      const [target, source] = [line * all, line * cells.length];
+      for (let k = 0; k < to.length; k++) exact[target + to[k]!] = data[source + from[k]!]!;
+    }
     this.revision++;
+  }
+
+  /** The cells that a coarse one stands for: its block, without what is known better. */
+  private around(index: number, p: number, coarse: number): number[] {
+    const { slice, known } = this.films[index]!;
+    const { nu, nv } = slice;
+    const [i0, j0] = [Math.floor((p % nu) / coarse) * coarse, Math.floor(p / nu / coarse) * coarse];
+    const block: number[] = [];
+    for (let j = j0; j < Math.min(nv, j0 + coarse); j++)
+      for (let i = i0; i < Math.min(nu, i0 + coarse); i++) if (known[j * nu + i] !== 2) block.push(j * nu + i);
+    return block;
   }
 
   addTrust({ slice, map }: Extract<Report, { kind: 'trust' }>): void {

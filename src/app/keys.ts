@@ -130,7 +130,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
     h(
       'table',
       {},
-      ...halves(keys).map((row) =>
+      ...columnsOf(keys, 3).map((row) =>
         h(
           'tr',
           {},
@@ -157,7 +157,13 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
     h('form', { method: 'dialog' }, h('button', {}, 'Close')),
   );
   document.body.append(dialog);
-  const help = () => (dialog.open ? dialog.close() : dialog.showModal());
+  const help = () => {
+    if (dialog.open) dialog.close();
+    else {
+      dialog.showModal();
+      dialog.scrollTop = 0;
+    }
+  };
 
   window.addEventListener('keydown', (event) => {
     if (event.defaultPrevented || event.altKey || dialog.open) return;
@@ -182,7 +188,8 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
   return { help };
 }
 
-function halves<T>(list: readonly T[]): T[][] {
-  const half = Math.ceil(list.length / 2);
-  return list.slice(0, half).map((one, n) => [one, ...list.slice(half + n, half + n + 1)]);
+/** A list in columns, read downwards. */
+function columnsOf<T>(list: readonly T[], columns: number): T[][] {
+  const rows = Math.ceil(list.length / columns);
+  return Array.from({ length: rows }, (_, n) => list.filter((_one, k) => k % rows === n));
 }

@@ -124,3 +124,6 @@ if (!canShareMemory())
     'This page is not cross-origin isolated, so its workers cannot share memory: everything runs on one thread and takes longer. `fieldassay view` serves it isolated.',
   );
 void openAddress();
+
+/** What scripts and tests may look at. */
+Object.assign(globalThis, { fieldassay: { store, panes } });

@@ -19,8 +19,8 @@ export type Request =
 
 /** A slice with what the page needs to know of its cells. */
 export interface ShownSlice extends Slice {
-  /** 1 where a cell is farther from every source than the mask */
-  readonly beyondMask: Uint8Array;
+  /** of each cell's middle from the nearest source, m */
+  readonly distance: Float32Array;
 }
 
 /** Point errors on a slice; NaN where a point does not count or is not known yet. */

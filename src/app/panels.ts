@@ -79,7 +79,7 @@ export class Panels {
     private readonly store: Store,
     private readonly help: HTMLElement,
   ) {
-    this.element.append(this.host, this.preview);
+    this.element.append(this.host);
     store.on(['scenario'], () => this.follow());
     store.on(['theme'], () => this.showPreview());
   }
@@ -242,6 +242,7 @@ export class Panels {
   }
 
   private sourcesFolder(gui: GUI, json: Draft): void {
+    gui.$children.prepend(this.preview);
     const sources: Draft[] = Array.isArray(json.sources) ? json.sources : [];
     sources.forEach((source, n) => {
       const title = `${source?.name ?? `${source?.type} ${n + 1}`} (${source?.type})`;

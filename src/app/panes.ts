@@ -1,8 +1,8 @@
 import { OrthographicCamera, PerspectiveCamera, Vector3 } from 'three';
 import { OrbitControls } from 'three/addons/controls/OrbitControls.js';
-import { NEUTRALS, packed, type Scale, type SignedScale } from '../draw/colour.ts';
+import { NEUTRALS, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
 import { contours } from '../draw/contour.ts';
-import { absorberEdges, boxEdges, contourLines, maskOutline, planeOutline, wire } from '../draw/furniture.ts';
+import { absorberEdges, boxEdges, contourLines, planeOutline, wire } from '../draw/furniture.ts';
 import { type Hit, paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
 import { Picture } from '../draw/picture.ts';
 import { type Box, cameraFor, type Camera as PaneCamera, type Rectangle } from '../draw/projection.ts';
@@ -11,8 +11,9 @@ import { formatQuantity } from '../elementary/quantity.ts';
 import { PALETTE } from '../report/palette.ts';
 import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
 import { byId } from './dom.ts';
+import type { Film } from './film.ts';
 import { paintLabels } from './labels.ts';
-import { Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
+import { distanceOutlines, Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
 import { quantityOf } from './quantity.ts';
 import { planesShown, type Runner } from './runner.ts';
 import type { Store } from './store.ts';
@@ -27,7 +28,7 @@ const STACKED = 620;
 const TITLES: Readonly<Record<Side, string>> = { grid: 'Grid field', exact: 'Exact field', difference: 'Difference' };
 
 /** The box's sphere leaves room around the box in a pane: the first view is this much nearer. */
-const CLOSER = 1.12;
+const CLOSER = 1.04;
 
 /** Views along the axes and the one that a run begins with: direction from the middle of the box to the eye. */
 export const VIEWS = {
@@ -67,7 +68,9 @@ export class Panes {
   private camera: PaneCamera = new PerspectiveCamera();
   private controls: OrbitControls | undefined;
   private furniture: Furniture | undefined;
-  private masks: { readonly film: unknown; readonly strokes: Stroke[] } | undefined;
+  private masks:
+    | { readonly film: Film; readonly mask: number; readonly theme: Theme; readonly strokes: Stroke[] }
+    | undefined;
   private dirty = false;
   private drag:
     | { readonly plane: number; readonly from: Vec3; readonly normal: Vec3; at: number; readonly pane: number }
@@ -239,7 +242,8 @@ export class Panes {
     const { scenario } = furniture;
     const quantity = quantityOf(view.quantity);
     if (film && quantity.kind === 'potential') this.runner.wantPotentials(frame);
-    const scales = film && this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
+    const scales =
+      film && this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);
     const planes = (side: Side): Plane[] =>
       scales && film?.films[0] ? this.pictures.planes(film, scenario, quantity, frame, side, scales[side]) : [];
     const strokes = this.strokesOf(furniture);
@@ -292,23 +296,25 @@ export class Panes {
     };
     const outside = packed(PALETTE.outside[theme]);
     const { ink, muted } = NEUTRALS[theme];
-    const polylines = furniture.sources.map(({ points }) => points);
     const verdict = result?.verdict;
-    const bound = (plane: Plane, distance: number, colour: number): Stroke => ({
-      ...maskOutline(plane, polylines, distance, colour),
-      width: 1.6,
-      dash: [5, 3],
-    });
-    const strokesOn = (planes: readonly Plane[]): Stroke[] =>
-      planes.flatMap((plane) => [
-        { points: contours(plane, [scenario.tolerance]), form: 'segments' as const, colour: outside, width: 1.8 },
-        ...(verdict && 'distance' in verdict.closest ? [bound(plane, verdict.closest.distance, ink)] : []),
-        ...(verdict && 'distance' in verdict.farthest ? [bound(plane, verdict.farthest.distance, muted)] : []),
-      ]);
-    const clearance =
-      verdict && 'distance' in verdict.wallClearance
-        ? [clearanceBox(scenario, verdict.wallClearance.distance, outside)]
+    const bounds = (limit: object | undefined, colour: number): Stroke[] =>
+      film && limit && 'distance' in limit
+        ? distanceOutlines(film, scenario, limit.distance as number, colour).map((s) => ({
+            ...s,
+            width: 1.6,
+            dash: [5, 3],
+          }))
         : [];
+    const distances = [...bounds(verdict?.closest, ink), ...bounds(verdict?.farthest, muted)];
+    const strokesOn = (planes: readonly Plane[]): Stroke[] => [
+      ...planes.map((plane): Stroke => {
+        const points = contours(plane, [scenario.tolerance]);
+        return { points, form: 'segments', colour: outside, width: 1.8 };
+      }),
+      ...distances,
+    ];
+    const clearance =
+      verdict?.wallClearance.status === 'crossing' ? [clearanceBox(scenario, verdict.wallClearance.distance, ink)] : [];
     const titles = { E: 'Error of E', H: 'Error of H', largest: 'Largest part of E’s error' };
     return (['E', 'H', 'largest'] as const).map((which, n) => {
       const planes = film ? trustPlanes(film, scenario, which, scales[which]) : [];
@@ -333,31 +339,19 @@ export class Panes {
       JSON.stringify(outer) === JSON.stringify(scenario.grid.box) ? [] : [absorberEdges(outer, neutrals)];
     const wires = sources.flatMap((source) => wire(source.points, currentOn(source, t), current, theme, neutrals));
     const dragged = this.drag ? this.draggedRim() : [];
-    return [
-      ...absorber,
-      boxEdges(scenario.grid.box, neutrals),
-      ...this.maskStrokes(sources, scenario),
-      ...wires,
-      ...dragged,
-    ];
+    return [...absorber, boxEdges(scenario.grid.box, neutrals), ...this.maskStrokes(scenario), ...wires, ...dragged];
   }
 
-  private maskStrokes(sources: readonly DrawnSource[], { grid }: Scenario): Stroke[] {
-    const { film, scenario, theme } = this.store.state;
-    if (!film || !scenario) return [];
-    const key = `${theme} ${film.films.map(({ slice }) => `${slice.normal}${slice.layer}`).join()} ${grid.mask}`;
-    if (this.masks?.film === key) return this.masks.strokes;
-    const scale: SignedScale = { kind: 'signed', limit: 1, label: '' };
-    const strokes = this.pictures.planes(film, scenario, quantityOf('Ez'), 0, 'grid', scale).map((plane) => ({
-      ...maskOutline(
-        plane,
-        sources.map(({ points }) => points),
-        grid.mask,
-        NEUTRALS[theme].muted,
-      ),
-      dash: [2, 3] as const,
-    }));
-    this.masks = { film: key, strokes };
+  /** The outlines of the mask, kept while film and mask are the same. */
+  private maskStrokes(scenario: Scenario): Stroke[] {
+    const { film, theme } = this.store.state;
+    if (!film) return [];
+    const { mask } = scenario.grid;
+    if (this.masks?.film === film && this.masks.mask === mask && this.masks.theme === theme) return this.masks.strokes;
+    const strokes = distanceOutlines(film, scenario, mask, NEUTRALS[theme].muted).map(
+      (stroke): Stroke => ({ ...stroke, dash: [2, 3] }),
+    );
+    this.masks = { film, mask, theme, strokes };
     return strokes;
   }
 
@@ -371,7 +365,7 @@ export class Panes {
     }));
     const grips = planesShown(scenario).map((plane, n) => ({
       at: this.gripOf(scenario, n),
-      name: `${'xyz'[plane.normal]} = ${formatQuantity(this.drag?.plane === n ? this.drag.at : plane.at, 'm')}`,
+      name: `↔ ${'xyz'[plane.normal]} = ${formatQuantity(this.drag?.plane === n ? this.drag.at : plane.at, 'm')}`,
       colour: muted,
     }));
     return [...observers, ...grips];
@@ -525,7 +519,7 @@ export class Panes {
       );
     }
     const quantity = quantityOf(view.quantity);
-    const scales = this.pictures.scalesOf(film, quantity, frame, view.gain, view.difference);
+    const scales = this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);
     const value = (side: 'grid' | 'exact') =>
       this.pictures.planes(film, scenario, quantity, frame, side, scales[side])[n]!.values[
         hit.j * hit.plane.nu + hit.i

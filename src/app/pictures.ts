@@ -1,6 +1,7 @@
 import { PARTS } from '../compare/budget.ts';
 import { type DecibelScale, type KindScale, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
-import { type Plane, planeOfSamples } from '../draw/scene.ts';
+import { contours } from '../draw/contour.ts';
+import { type Plane, planeOfSamples, type Stroke } from '../draw/scene.ts';
 import { PALETTE } from '../report/palette.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
 import type { Film, SliceFilm } from './film.ts';
@@ -9,8 +10,9 @@ import { layerOf, type Quantity, sampleQuantity } from './quantity.ts';
 /** The three pictures of a film: grid, exact, difference. */
 export type Side = 'grid' | 'exact' | 'difference';
 
-/** Frames looked at to find a scale: as many as show the pulse wherever it is. */
-const LOOKS = 24;
+/** Frames looked at to find a scale, as many as show the pulse wherever it is; and of each so many-th cell. */
+const LOOKS = 16;
+const SPARSE = 2;
 
 /** Largest |value| of a quantity beyond the mask: what the colours span. */
 export interface Limits {
@@ -37,12 +39,13 @@ export class Pictures {
   /** The scales of the three pictures: one for grid and exact, one for their difference. */
   scalesOf(
     film: Film,
+    mask: number,
     quantity: Quantity,
     frame: number,
     gain: number,
     difference: 'signed' | 'decibels',
   ): Record<Side, Scale> {
-    const limits = this.limitsOf(film, quantity, frame);
+    const limits = this.limitsOf(film, mask, quantity, frame);
     const { label, unit } = quantity;
     const key = `${limits.field} ${limits.difference} ${gain} ${difference} ${label}`;
     if (this.scales?.key === key) return this.scales.value;
@@ -64,27 +67,28 @@ export class Pictures {
     return value;
   }
 
-  private limitsOf(film: Film, quantity: Quantity, frame: number): Limits {
+  private limitsOf(film: Film, mask: number, quantity: Quantity, frame: number): Limits {
     const potential = quantity.kind === 'potential';
-    const key = `${quantity.key} ${film.gridFrames} ${film.exactKnown} ${potential ? `${frame} ${film.revision}` : ''} ${film.films.length} ${film.films[0]?.slice.layer}`;
+    const key = `${quantity.key} ${mask} ${film.gridFrames} ${film.exactKnown} ${potential ? `${frame} ${film.revision}` : ''} ${film.films.length} ${film.films[0]?.slice.layer}`;
     if (this.limits?.key === key) return this.limits.value;
     const step = Math.max(1, Math.floor(film.frames / LOOKS));
     let [field, difference] = [0, 0];
     for (const one of film.films) {
       const { nu, nv } = layerOf(one, quantity);
-      const { beyondMask, nu: across } = one.slice;
+      const { distance, nu: across } = one.slice;
       const [a, b] = [new Float32Array(nu * nv), new Float32Array(nu * nv)];
+      const exactToo = film.exactKnown || potential;
       const look = (at: number) => {
-        if (potential) a.fill(Number.NaN);
-        else sampleQuantity(one, 'grid', at, film.every, quantity, a);
-        if (film.exactKnown || potential) sampleQuantity(one, 'exact', at, film.every, quantity, b);
-        else b.fill(Number.NaN);
-        for (let j = 0, n = 0; j < nv; j++)
-          for (let i = 0; i < nu; i++, n++) {
-            if (!beyondMask[j * across + i]) continue;
-            const value = potential ? b[n]! : a[n]!;
-            field = Math.max(field, Math.abs(value) || 0);
-            difference = Math.max(difference, Math.abs(a[n]! - b[n]!) || 0);
+        if (!potential) sampleQuantity(one, 'grid', at, film.every, quantity, a);
+        if (exactToo) sampleQuantity(one, 'exact', at, film.every, quantity, b);
+        for (let j = 0; j < nv; j += SPARSE)
+          for (let i = 0; i < nu; i += SPARSE) {
+            if (distance[j * across + i]! < mask) continue;
+            const n = j * nu + i;
+            const value = Math.abs(potential ? b[n]! : a[n]!);
+            // false for NaN
+            if (value > field) field = value;
+            if (exactToo && !potential && Math.abs(a[n]! - b[n]!) > difference) difference = Math.abs(a[n]! - b[n]!);
           }
       };
       if (potential) look(frame);
@@ -124,7 +128,7 @@ export class Pictures {
     const { nu } = layerOf(one, quantity);
     for (let n = 0; n < out.length; n++) {
       const cell = Math.floor(n / nu) * one.slice.nu + (n % nu);
-      out[n] = one.known[cell] ? out[n]! - exact[n]! : Number.NaN;
+      out[n] = one.known[cell] === 2 ? out[n]! - exact[n]! : Number.NaN;
     }
   }
 
@@ -182,5 +186,16 @@ export function trustPlanes(film: Film, scenario: Scenario, which: 'E' | 'H' | '
     const values = one.trust?.[which];
     if (!values) return [];
     return [planeAt(one, scenario, [0, 0, 0], one.slice.nu, one.slice.nv, values, scale)];
+  });
+}
+
+/** Outlines, on every slice, of the points that are nearer to a source than a distance (m). */
+export function distanceOutlines(film: Film, scenario: Scenario, distance: number, colour: number): Stroke[] {
+  const scale: SignedScale = { kind: 'signed', limit: 1, label: '' };
+  return film.films.map((one) => {
+    const offset: [number, number, number] = [0.5, 0.5, 0.5];
+    offset[one.slice.normal] = 0;
+    const plane = planeAt(one, scenario, offset, one.slice.nu, one.slice.nv, one.slice.distance, scale);
+    return { points: contours(plane, [distance]), form: 'segments', colour, width: 1 };
   });
 }

@@ -62,11 +62,30 @@ export function sampleQuantity(
   if (kind === 'component') {
     const from = (frame * CHANNELS + COMPONENTS.indexOf(key as never)) * cells;
     out.set(data.subarray(from, from + cells));
+    blank(film, side, slice.nu, slice.nv, [0], out);
     return;
   }
   const field = (first: number, component: number) => averaged(film, data, frame, every, first + component);
   const [E, H] = [key !== 'H', key !== 'E'].map((needed, f) => (needed ? [0, 1, 2].map((c) => field(3 * f, c)) : []));
   for (let n = 0; n < out.length; n++) out[n] = fromComponents(key, E!, H!, n);
+  blank(film, side, slice.nu - 1, slice.nv - 1, [0, 1, slice.nu, slice.nu + 1], out);
+}
+
+/** NaN where one of the cells that a sample is made of has no field to show: on a source, or not known yet. */
+function blank(
+  { slice, known }: SliceFilm,
+  side: 'grid' | 'exact',
+  nu: number,
+  nv: number,
+  neighbours: readonly number[],
+  out: Float32Array,
+): void {
+  for (let j = 0; j < nv; j++)
+    for (let i = 0; i < nu; i++)
+      for (const neighbour of neighbours) {
+        const p = j * slice.nu + i + neighbour;
+        if (slice.hole[p] || (side === 'exact' && !known[p])) out[j * nu + i] = Number.NaN;
+      }
 }
 
 /** |E|, |H|, the Poynting vector S = E × H or its magnitude. */

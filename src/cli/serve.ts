@@ -62,6 +62,8 @@ export async function servePage(folder: string | null, port: number): Promise<{ 
     if (![`127.0.0.1:${own}`, `localhost:${own}`, `[::1]:${own}`].includes(request.headers.host ?? ''))
       return refuse(421, 'This address serves the loopback host only.');
     if (request.method !== 'GET' && request.method !== 'HEAD') return refuse(405, 'Only GET and HEAD.');
+    // A folder's hidden files are nobody's, however their names are written.
+    if (/\/(\.|%2e)/i.test(path)) return refuse(404, 'No such file here.');
     if (path.startsWith('/results/')) request.url = path.slice('/results'.length);
     const answer = ofResults ? results : page;
     answer(request, response, () => refuse(404, 'No such file here.'));

@@ -1,0 +1,63 @@
+import type { Browser, BrowserContextOptions, Page } from 'playwright-core';
+import type { Panes } from '../../src/app/panes.ts';
+import type { Store } from '../../src/app/store.ts';
+
+/** What the page offers to scripts: src/app/main.ts. */
+declare global {
+  var fieldassay: { readonly store: Store; readonly panes: Panes };
+}
+
+export interface Opened {
+  readonly page: Page;
+  /** errors and warnings of the console, uncaught exceptions, failed requests */
+  readonly troubles: string[];
+  /** addresses asked for */
+  readonly requests: string[];
+}
+
+/**
+ * Opens the page and writes down everything that goes wrong in it.
+ * @param script run before the page's own
+ */
+export async function openPage(
+  browser: Browser,
+  url: string,
+  options: BrowserContextOptions = {},
+  script?: string,
+): Promise<Opened> {
+  const context = await browser.newContext({
+    viewport: { width: 1280, height: 800 },
+    acceptDownloads: true,
+    ...options,
+  });
+  const page = await context.newPage();
+  // Comes through the debugger: the page's own policy lets no foreign script in.
+  if (script) await page.addInitScript(script);
+  const troubles: string[] = [];
+  const requests: string[] = [];
+  page.on('console', (message) => {
+    if (message.type() === 'error' || message.type() === 'warning')
+      troubles.push(`${message.type()}: ${message.text()}`);
+  });
+  page.on('pageerror', (error) => troubles.push(`exception: ${error.message}`));
+  page.on('requestfailed', (request) => troubles.push(`failed: ${request.url()} ${request.failure()?.errorText}`));
+  page.on('request', (request) => requests.push(request.url()));
+  await page.goto(url);
+  return { page, troubles, requests };
+}
+
+/** Waits until the run has come to its end. */
+export async function finished(page: Page): Promise<void> {
+  await page.waitForFunction(
+    () => globalThis.fieldassay && !['idle', 'running'].includes(fieldassay.store.state.run.status),
+    undefined,
+    { timeout: 90_000 },
+  );
+}
+
+/** Waits for the verdict alone. */
+export async function judged(page: Page): Promise<void> {
+  await page.waitForFunction(() => globalThis.fieldassay?.store.state.result, undefined, { timeout: 90_000 });
+}
+
+export const textOfPage = (page: Page, selector: string): Promise<string> => page.locator(selector).first().innerText();

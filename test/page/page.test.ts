@@ -1,0 +1,531 @@
+import { spawnSync } from 'node:child_process';
+import { mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { createServer } from 'node:http';
+import type { AddressInfo } from 'node:net';
+import { tmpdir } from 'node:os';
+import { join, resolve } from 'node:path';
+import type { Browser, Page } from 'playwright-core';
+import sirv from 'sirv';
+import { afterAll, beforeAll, describe, expect, test } from 'vitest';
+import { linkOf } from '../../src/app/link.ts';
+import { textOf } from '../../src/app/store.ts';
+import { type Result, resultSchema } from '../../src/compare/result.ts';
+import { NEUTRALS, type Scale, type Theme, valueAt } from '../../src/draw/colour.ts';
+import { marchAlone } from '../../src/fdtd/run.ts';
+import { readTraces } from '../../src/files/traces.ts';
+import { budgetRows } from '../../src/report/budgetRows.ts';
+import { fieldAt } from '../../src/retarded/field.ts';
+import { boxProblem, questionOf } from '../../src/run/question.ts';
+import { EXAMPLES } from '../../src/scenario/examples.ts';
+import { loadScenario } from '../../src/scenario/load.ts';
+import { COMPONENTS, samplePoints } from '../../src/trace/trace.ts';
+import { launchBrowser } from './browser.ts';
+import { finished, judged, openPage, textOfPage } from './open.ts';
+import { COMMAND, type Served, serveBuiltPage } from './server.ts';
+
+let browser: Browser;
+let served: Served;
+/** the address of the page with the small scenario */
+let small: string;
+
+beforeAll(async () => {
+  [browser, served] = await Promise.all([launchBrowser(), serveBuiltPage()]);
+  small = served.url + (await linkOf(textOf(SMALL)));
+});
+afterAll(async () => {
+  await browser?.close();
+  served?.end();
+});
+
+/** A scenario that runs in a moment. */
+const SMALL = {
+  ...EXAMPLES['dipole-near-corner'],
+  title: 'Small',
+  grid: { cellSize: '10 mm', box: EXAMPLES['dipole-near-corner'].grid.box, boundary: { type: 'cpml', layers: 6 } },
+  duration: '3 ns',
+  observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
+};
+
+async function enter(page: Page, scenario: unknown): Promise<void> {
+  await page.evaluate((text) => fieldassay.store.setText(text), JSON.stringify(scenario, null, 2));
+}
+
+describe('the page with its own scenario', () => {
+  test('says what the command line says, to every printed digit, with no GPU and no complaint', async () => {
+    const { page, troubles, requests } = await openPage(browser, served.url);
+    const promise = await page.evaluate(() => ({
+      isolated: crossOriginIsolated,
+      webgl2: document.createElement('canvas').getContext('webgl2'),
+      webgl: document.createElement('canvas').getContext('webgl'),
+    }));
+    expect(promise).toEqual({ isolated: true, webgl2: null, webgl: null });
+    await finished(page);
+    const command = spawnSync(process.execPath, [COMMAND, 'compare', '--json'], { encoding: 'utf8' });
+    const result: Result = JSON.parse(command.stdout);
+    expect(await textOfPage(page, '#sentence')).toBe(result.verdict.sentence);
+    const details = await page.locator('#details').textContent();
+    for (const line of result.verdict.details) expect(details).toContain(line);
+    const rows = await page.locator('#budget tbody tr').allInnerTexts();
+    const cells = rows.map((row) => row.split('\t').map((cell) => cell.trim()));
+    const printed = budgetRows(result.budget);
+    expect(cells[0]!.slice(1)).toEqual(printed.map(({ error }) => error));
+    expect(cells[1]!.slice(1)).toEqual(printed.map(({ name, shareText }) => (name === 'total' ? '' : shareText)));
+    expect(cells[2]!.slice(1)).toEqual(printed.map(({ floor }) => floor));
+    // and not to printed digits alone: one source, one arithmetic
+    const own = await page.evaluate(() => fieldassay.store.state.result);
+    expect(own!.verdict).toEqual(result.verdict);
+    expect(own!.budget).toEqual(result.budget);
+    expect(own!.norms).toEqual(result.norms);
+    expect(own!.observers).toEqual(result.observers);
+
+    expect(requests.filter((url) => !url.startsWith(served.url) && !url.startsWith('data:'))).toEqual([]);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('colours are the fields: grid by a run of its own, exact by the integral, difference by both', async () => {
+    const { page } = await openPage(browser, served.url);
+    await finished(page);
+    await page.evaluate(() => {
+      fieldassay.store.state.playing = false;
+      fieldassay.store.setFrame(40);
+    });
+    await page.waitForTimeout(200);
+    const theme = (await page.evaluate(() => fieldassay.store.state.theme)) as Theme;
+    const pixels = await page.evaluate(() => {
+      const { panes, store } = fieldassay;
+      const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
+      const context = canvas.getContext('2d')!;
+      const found = [];
+      for (let x = 7; x < canvas.width; x += 11)
+        for (let y = 9; y < canvas.height; y += 13) {
+          const reading = panes.readingAt(x + 0.5, y + 0.5);
+          if (!reading) continue;
+          const { hit } = reading;
+          const [r, g, b, a] = context.getImageData(x, y, 1, 1).data;
+          const scale = panes.scene!.panes[hit.pane]!.scale!;
+          found.push({
+            pane: hit.pane,
+            i: hit.i,
+            j: hit.j,
+            colour: ((a! << 24) | (b! << 16) | (g! << 8) | r!) >>> 0,
+            scale,
+          });
+        }
+      const { slice } = store.state.film!.films[0]!;
+      const { E } = store.state.film!.instants;
+      return { found, layer: slice.layer, nu: slice.nu, time: E[store.state.frame]! };
+    });
+
+    const loaded = loadScenario(EXAMPLES['bench-cable-pulse']);
+    if (!('scenario' in loaded)) throw new Error('the built-in scenario does not load');
+    const { scenario } = loaded;
+    const question = questionOf(scenario);
+    const step = Math.round(pixels.time / question.timeStep) - 1;
+    const component = COMPONENTS.indexOf('Ez');
+    // lines, labels and what is nearer than a few cells to the wire lie over some; the planes' own colours are kept
+    const shown = pixels.found.flatMap(({ pane, i, j, colour, scale }) => {
+      const value = valueAt(colour, scale as Scale, theme);
+      return value === undefined || colour === NEUTRALS[theme].background
+        ? []
+        : [{ pane, i, j, value, scale: scale as Extract<Scale, { kind: 'signed' }> }];
+    });
+    const cells = Int32Array.from(shown.flatMap(({ i, j }) => [i, pixels.layer, j]));
+    const { position } = samplePoints(cells, scenario.grid.box.from, scenario.grid.cellSize);
+    const run = marchAlone({ ...boxProblem(question, [{ cell: cells, every: 1 }]), steps: step + 1 });
+    const count = step + 1;
+    const tally = [0, 0, 0];
+    const worst = [0, 0, 0];
+    shown.forEach(({ pane, value, scale }, p) => {
+      const site = (p * 6 + component) * 3;
+      const exact = fieldAt(
+        scenario.sources,
+        scenario.medium,
+        [position[site]!, position[site + 1]!, position[site + 2]!],
+        pixels.time,
+        { potentials: false },
+      ).E[2];
+      const grid = run.samples[0]![(p * 6 + component) * count + step]!;
+      const expected = [grid, exact, grid - exact][pane]!;
+      // the map has 255 colours; values beyond its ends take the ends; the grid's own rounding is far below
+      const within = Math.min(scale.limit, Math.max(-scale.limit, expected));
+      const error = Math.abs(value - within) / (scale.limit / 127);
+      tally[pane]!++;
+      worst[pane] = Math.max(worst[pane]!, error);
+    });
+    console.log(
+      `pixels compared in each pane: ${tally.join(', ')}; worst, in steps of the colour map: ${worst.map((w) => w.toFixed(3)).join(', ')}`,
+    );
+    for (const n of [0, 1, 2]) {
+      expect(tally[n]).toBeGreaterThan(30);
+      expect(worst[n]).toBeLessThan(0.51);
+    }
+    await page.context().close();
+  }, 240_000);
+});
+
+describe('the page, used', () => {
+  test('scrubs at once, plays, steps and seeks by keyboard and pointer', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await finished(page);
+    await page.keyboard.press('Home');
+    expect(await page.evaluate(() => fieldassay.store.state.frame)).toBe(0);
+    const before = await textOfPage(page, '#timeline output');
+    const milliseconds = await page.evaluate(async () => {
+      const slider = document.querySelector<HTMLInputElement>('#timeline input[type=range]')!;
+      const drawn = performance.getEntriesByName('picture').length;
+      const start = performance.now();
+      slider.value = '60';
+      slider.dispatchEvent(new Event('input'));
+      while (performance.getEntriesByName('picture').length === drawn) await new Promise(requestAnimationFrame);
+      return performance.now() - start;
+    });
+    console.log(`from a scrub to its picture: ${milliseconds.toFixed(1)} ms`);
+    expect(milliseconds).toBeLessThan(250);
+    expect(await page.evaluate(() => fieldassay.store.state.frame)).toBe(60);
+    expect(await textOfPage(page, '#timeline output')).not.toBe(before);
+    await page.keyboard.press('ArrowRight');
+    expect(await page.evaluate(() => fieldassay.store.state.frame)).toBe(61);
+    await page.keyboard.press(' ');
+    expect(await page.evaluate(() => fieldassay.store.state.playing)).toBe(true);
+    await page.waitForFunction(() => fieldassay.store.state.frame !== 61);
+    await page.keyboard.press(' ');
+    await page.keyboard.press('?');
+    await page.getByRole('dialog').waitFor();
+    expect(await page.getByRole('dialog').innerText()).toContain('play or pause');
+    await page.keyboard.press('Escape');
+    for (const key of ['2', '3', '1', 'd', 'c', 'o', 'x', '0', 'q', 't', 'n', ']', 'Shift+ArrowLeft', '+'])
+      await page.keyboard.press(key);
+    await page.waitForTimeout(200);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('cancels within 200 ms, keeps what is known, and begins anew when the scenario changes', async () => {
+    const { page, troubles } = await openPage(browser, served.url);
+    await page.waitForFunction(() => (globalThis.fieldassay?.store.state.film?.gridFrames ?? 0) > 0);
+    const milliseconds = await page.evaluate(async () => {
+      const button = [...document.querySelectorAll('button')].find(({ textContent }) => textContent === 'Cancel')!;
+      const start = performance.now();
+      button.click();
+      while (fieldassay.store.state.run.status === 'running') await new Promise(requestAnimationFrame);
+      return performance.now() - start;
+    });
+    console.log(`cancelled within ${milliseconds.toFixed(1)} ms`);
+    expect(milliseconds).toBeLessThan(200);
+    expect(await textOfPage(page, '#sentence')).toContain('cancelled');
+    expect(await page.evaluate(() => fieldassay.store.state.film!.gridFrames)).toBeGreaterThan(0);
+
+    await enter(page, SMALL);
+    await page.waitForFunction(() => fieldassay.store.state.run.status === 'running');
+    await enter(page, { ...SMALL, duration: '2.5 ns' });
+    await finished(page);
+    const { duration, run } = await page.evaluate(() => ({
+      duration: (fieldassay.store.state.result!.scenario as { duration: string }).duration,
+      run: fieldassay.store.state.run.status,
+    }));
+    expect([duration, run]).toEqual(['2.5 ns', 'done']);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('a bad file is refused in words and changes nothing; an unsound one is shown with its lines', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await judged(page);
+    const drop = (name: string, text: string) =>
+      page.evaluate(
+        ([file, content]) => {
+          const data = new DataTransfer();
+          data.items.add(new File([content!], file!));
+          document.body.dispatchEvent(new DragEvent('drop', { dataTransfer: data, bubbles: true, cancelable: true }));
+        },
+        [name, text],
+      );
+    const before = await page.evaluate(() => fieldassay.store.state.text);
+    await drop('broken.json', '{ "sources": [ }');
+    await page.getByRole('alert').waitFor();
+    expect(await page.getByRole('alert').innerText()).toMatch(/broken\.json was not opened.*line 1/s);
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+    await drop('list.json', '[1, 2]');
+    await page.getByRole('alert').nth(1).waitFor();
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+
+    const unsound = JSON.stringify({ ...SMALL, duration: 'long' }, null, 2);
+    await drop('unsound.json', unsound);
+    await page.locator('.problems button').first().waitFor();
+    const line = unsound.split('\n').findIndex((text) => text.includes('"duration"')) + 1;
+    expect(await textOfPage(page, '.problems')).toContain(`Line ${line}:`);
+    await page.keyboard.press('Control+z');
+    await page.locator('#sentence').click();
+    await page.keyboard.press('Control+z');
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('a link, a saved scenario and a saved result all bring the scenario back', async () => {
+    const { page, troubles } = await openPage(browser, served.url);
+    await enter(page, SMALL);
+    await page.waitForFunction(() => location.hash.startsWith('#scenario='));
+    await page.waitForFunction(() => fieldassay.store.state.result?.title === 'Small', undefined, { timeout: 60_000 });
+    await finished(page);
+    const sentence = await textOfPage(page, '#sentence');
+    const text = await page.evaluate(() => fieldassay.store.state.text);
+
+    const linked = await openPage(browser, page.url());
+    await judged(linked.page);
+    expect(await linked.page.evaluate(() => fieldassay.store.state.text)).toBe(text);
+    expect(await textOfPage(linked.page, '#sentence')).toBe(sentence);
+
+    const folder = mkdtempSync(join(tmpdir(), 'page-'));
+    try {
+      const save = async (name: string) => {
+        await page.getByRole('button', { name: 'Save ▾' }).click();
+        const [download] = await Promise.all([
+          page.waitForEvent('download'),
+          page.getByRole('menuitem', { name }).first().click(),
+        ]);
+        const path = join(folder, download.suggestedFilename());
+        await download.saveAs(path);
+        return path;
+      };
+      const scenario = await save('Scenario');
+      expect(readFileSync(scenario, 'utf8')).toBe(text);
+      const resultFile = await save('Result');
+      const result = resultSchema.parse(JSON.parse(readFileSync(resultFile, 'utf8')));
+      expect(result.verdict.sentence).toBe(sentence);
+      const traces = readTraces(readFileSync(await save('Traces'), 'utf8'));
+      expect(traces.map(({ component }) => component)).toEqual([...COMPONENTS]);
+      const report = readFileSync(await save('Report'), 'utf8');
+      expect(report).toContain(sentence);
+      const png = readFileSync(await save('Picture of the panes'));
+      expect([...png.subarray(0, 8)]).toEqual([137, 80, 78, 71, 13, 10, 26, 10]);
+      const charts = readFileSync(await save('Pictures of the charts'));
+      expect(charts.length).toBeGreaterThan(5000);
+
+      for (const file of [scenario, resultFile]) {
+        await linked.page.evaluate(() => fieldassay.store.setText('{}'));
+        await linked.page.locator('input[type=file]').setInputFiles(file);
+        await linked.page.waitForFunction(() => fieldassay.store.state.problems.length === 0);
+        expect(await linked.page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
+      }
+    } finally {
+      rmSync(folder, { recursive: true, force: true });
+    }
+    expect([...troubles, ...linked.troubles]).toEqual([]);
+    await page.context().close();
+    await linked.page.context().close();
+  });
+
+  test('films are saved as WebM and as animated PNG', async () => {
+    const { page, troubles } = await openPage(browser, small, {
+      viewport: { width: 1024, height: 700 },
+    });
+    await finished(page);
+    await page.evaluate(() => fieldassay.store.setView({ speed: 80 }));
+    const folder = mkdtempSync(join(tmpdir(), 'page-'));
+    try {
+      for (const [item, start] of [
+        [6, [0x1a, 0x45, 0xdf, 0xa3]],
+        [7, [137, 80, 78, 71]],
+      ] as const) {
+        await page.getByRole('button', { name: 'Save ▾' }).click();
+        const [download] = await Promise.all([
+          page.waitForEvent('download', { timeout: 110_000 }),
+          page.getByRole('menuitem').nth(item).click(),
+        ]);
+        const path = join(folder, download.suggestedFilename());
+        await download.saveAs(path);
+        const bytes = readFileSync(path);
+        expect([...bytes.subarray(0, 4)]).toEqual([...start]);
+        expect(bytes.length).toBeGreaterThan(10_000);
+        if (item === 7) expect(bytes.includes('acTL')).toBe(true);
+      }
+    } finally {
+      rmSync(folder, { recursive: true, force: true });
+    }
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  }, 240_000);
+
+  test('a click adds and names an observer, whose traces are then shown', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await finished(page);
+    const place = await page.evaluate(() => {
+      const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
+      for (let x = 60; x < canvas.width / 3; x += 7)
+        for (let y = 60; y < canvas.height - 60; y += 7) {
+          const hit = fieldassay.panes.readingAt(x, y)?.hit;
+          if (hit && Math.abs(hit.point[0] + 0.05) < 0.01 && Math.abs(hit.point[2]) < 0.02) {
+            const bounds = canvas.getBoundingClientRect();
+            const ratio = canvas.width / bounds.width;
+            return { x: bounds.left + x / ratio, y: bounds.top + y / ratio, point: [...hit.point] };
+          }
+        }
+      throw new Error('no plane was found under the pane');
+    });
+    await page.mouse.click(place.x, place.y);
+    await page.getByLabel('Name of the new observer').fill('probe');
+    await page.getByRole('button', { name: 'Add observer' }).click();
+    await page.waitForFunction(
+      () => fieldassay.store.state.result?.observers.some(({ name }) => name === 'probe'),
+      undefined,
+      { timeout: 60_000 },
+    );
+    const { at, shown } = await page.evaluate(() => ({
+      at: fieldassay.store.state.scenario!.observers.find(({ name }) => name === 'probe')!.at,
+      shown: fieldassay.store.state.view.observer,
+    }));
+    expect(shown).toBe('probe');
+    place.point.forEach((x, a) => {
+      // the pointer stands on whole pixels, of which the box's 200 mm take more than a hundred
+      expect(Math.abs(at[a]! - x)).toBeLessThan(2e-3);
+    });
+    await page.waitForFunction(() => document.querySelector('#charts')?.textContent?.includes('observer probe'));
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+});
+
+describe('the page on poorer hosts', () => {
+  test('without WebAssembly SIMD it says what is missing and what to do', async () => {
+    const context = await browser.newContext();
+    const page = await context.newPage();
+    await page.addInitScript(() => {
+      WebAssembly.validate = () => false;
+    });
+    await page.goto(served.url);
+    await page.waitForFunction(() => document.querySelector('#sentence')!.textContent!.includes('SIMD'));
+    expect(await textOfPage(page, '#details')).toContain('npx fieldassay compare');
+    await context.close();
+  });
+
+  test('where it is not cross-origin isolated it says so, and one thread gives the same verdict', async () => {
+    const files = sirv(resolve('dist/page'), { dev: true });
+    const server = createServer((request, response) => files(request, response));
+    await new Promise<void>((done) => server.listen(0, '127.0.0.1', done));
+    const url = `http://127.0.0.1:${(server.address() as AddressInfo).port}/${new URL(small).hash}`;
+    const [alone, isolated] = await Promise.all([openPage(browser, url), openPage(browser, small)]);
+    expect(await alone.page.evaluate(() => crossOriginIsolated)).toBe(false);
+    await alone.page.waitForFunction(() => document.querySelector('#notices')?.textContent?.includes('one thread'));
+    await Promise.all([judged(alone.page), judged(isolated.page)]);
+    expect(await textOfPage(alone.page, '#sentence')).toBe(await textOfPage(isolated.page, '#sentence'));
+    expect(await alone.page.evaluate(() => fieldassay.store.state.result!.environment.threads)).toBe(1);
+    expect(alone.troubles).toEqual([]);
+    await alone.page.context().close();
+    await isolated.page.context().close();
+    server.close();
+  });
+
+  test('reduced motion: nothing plays by itself', async () => {
+    const { page } = await openPage(browser, small, { reducedMotion: 'reduce' });
+    await judged(page);
+    expect(await page.evaluate(() => [fieldassay.store.state.playing, fieldassay.store.state.frame])).toEqual([
+      false,
+      0,
+    ]);
+    await page.context().close();
+  });
+});
+
+/** What of axe-core is used. */
+interface Scanner {
+  run(): Promise<{ violations: { id: string; nodes: { html: string; failureSummary: string }[] }[] }>;
+}
+
+describe('the page for everybody', () => {
+  for (const colorScheme of ['light', 'dark'] as const)
+    test(`an accessibility scan finds nothing, ${colorScheme}`, async () => {
+      const axe = readFileSync(resolve('node_modules/axe-core/axe.min.js'), 'utf8');
+      const { page } = await openPage(browser, small, { colorScheme }, axe);
+      await finished(page);
+      for (const state of ['panels', 'text', 'menu']) {
+        if (state === 'text') await page.getByRole('button', { name: 'Text', exact: true }).click();
+        if (state === 'menu') await page.getByRole('button', { name: 'Save ▾' }).click();
+        const violations = await page.evaluate(async () => {
+          const { violations: found } = await (globalThis as unknown as { axe: Scanner }).axe.run();
+          return found.flatMap(({ id, nodes }) =>
+            nodes.map(({ html, failureSummary }) => `${id}: ${html} ${failureSummary}`),
+          );
+        });
+        expect(violations, `${state}, ${colorScheme}`).toEqual([]);
+      }
+      await page.context().close();
+    });
+
+  for (const [width, height] of [
+    [1024, 700],
+    [1280, 800],
+    [3840, 2160],
+  ] as const)
+    test(`at ${width} × ${height} nothing is cut off`, async () => {
+      const { page } = await openPage(browser, small, {
+        viewport: { width, height },
+      });
+      await finished(page);
+      const wide = await page.evaluate(() => document.documentElement.scrollWidth - innerWidth);
+      expect(wide).toBeLessThanOrEqual(0);
+      const { panes, timeline } = await page.evaluate(() => ({
+        panes: document.querySelector('#panes')!.getBoundingClientRect().height,
+        timeline: document.querySelector('#timeline')!.getBoundingClientRect().bottom,
+      }));
+      expect(panes).toBeGreaterThanOrEqual(240);
+      expect(timeline).toBeLessThanOrEqual(height);
+      await page.context().close();
+    });
+});
+
+test('the bundle holds no WebGL renderer', () => {
+  const folder = resolve('dist/page/assets');
+  const scripts = readdirSync(folder).filter((name) => name.endsWith('.js'));
+  expect(scripts.length).toBeGreaterThan(3);
+  for (const name of scripts) {
+    const text = readFileSync(join(folder, name), 'utf8');
+    expect(text.includes('WebGLRenderer'), name).toBe(false);
+    expect(/getContext\(["'`]webgl/.test(text), name).toBe(false);
+  }
+});
+
+describe('what is served', () => {
+  test('only the page and the result folder, to the loopback host alone, with a strict policy', async () => {
+    const folder = mkdtempSync(join(tmpdir(), 'results-'));
+    writeFileSync(join(folder, 'report.html'), '<!doctype html><title>r</title>');
+    writeFileSync(join(folder, '.secret'), 'no');
+    const own = await serveBuiltPage(folder);
+    try {
+      const at = (path: string, init?: RequestInit) => fetch(`${own.url}${path}`, init);
+      const page = await at('');
+      expect(page.status).toBe(200);
+      const policy = page.headers.get('content-security-policy')!;
+      expect(policy).toContain("default-src 'none'");
+      expect(policy).toContain("script-src 'self' 'wasm-unsafe-eval'");
+      expect(policy).not.toContain('unsafe-inline');
+      expect(policy).not.toMatch(/'unsafe-eval'/);
+      expect(page.headers.get('cross-origin-opener-policy')).toBe('same-origin');
+      expect(page.headers.get('cross-origin-embedder-policy')).toBe('require-corp');
+      expect((await at('report.html')).status).toBe(200);
+      expect((await at('results/report.html')).status).toBe(200);
+      for (const path of [
+        'results/.secret',
+        'results/../package.json',
+        'results/%2e%2e/%2e%2e/etc/passwd',
+        '..%2f..%2fpackage.json',
+        'worker.js',
+      ])
+        expect((await at(path)).status, path).toBe(404);
+      expect((await at('', { method: 'POST' })).status).toBe(405);
+      const strange = spawnSync(
+        process.execPath,
+        [
+          '-e',
+          `require('node:http').get(${JSON.stringify(own.url)}, { headers: { host: 'elsewhere.example' } }, (r) => console.log(r.statusCode))`,
+        ],
+        { encoding: 'utf8' },
+      );
+      expect(strange.stdout.trim()).toBe('421');
+    } finally {
+      own.end();
+      rmSync(folder, { recursive: true, force: true });
+    }
+  });
+});
