@@ -12,7 +12,8 @@ import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { exactCommand } from './exact.ts';
 import { InputError, readScenario } from './input.ts';
-import { writeFolder, writeWhole } from './output.ts';
+import { quoted, writeFolder, writeWhole } from './output.ts';
+import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
 import { servePage } from './serve.ts';
 import { type SurveyFlags, surveyCommand } from './survey.ts';
@@ -116,6 +117,8 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
           (url) => `\nThe page:   ${url}\nThe report: ${url}report.html   (Ctrl-C ends)\n`,
         );
     });
+
+  addPlanCommand(program, threadCount, signal, (met) => end(met ? DONE : OUTSIDE));
 
   program
     .command('exact')
@@ -224,14 +227,12 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
 const filesOf = (comparison: Comparison, command: string): Record<string, string> =>
   Object.fromEntries(RESULT_FILES.map((file) => [file, resultFile(file, comparison, command)]));
 
-const quotedWord = (word: string): string => (/^[\w./-]+$/.test(word) ? word : JSON.stringify(word));
-
 function surveyCommandLine(file: string, { out, threads }: SurveyFlags): string {
-  return `npx fieldassay survey ${quotedWord(file)} --out ${quotedWord(out)}${threads ? ` --threads ${threads}` : ''}`;
+  return `npx fieldassay survey ${quoted(file)} --out ${quoted(out)}${threads ? ` --threads ${threads}` : ''}`;
 }
 
 function commandLine(name: string, { out, threads }: CompareFlags): string {
-  return `npx fieldassay compare ${quotedWord(name)}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
+  return `npx fieldassay compare ${quoted(name)}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
 }
 
 async function served(

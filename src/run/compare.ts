@@ -6,6 +6,7 @@ import { loadScenario } from '../scenario/load.ts';
 import { type Asked, answer, type Means } from './answers.ts';
 import { type Comparison, conclude } from './conclude.ts';
 import { planFreeSpace } from './freeSpace.ts';
+import { jsonOf } from './given.ts';
 import { placesOf } from './places.ts';
 import { Team } from './pool.ts';
 import type { Progress } from './progress.ts';
@@ -30,7 +31,7 @@ export interface CompareOptions {
  * @throws Refusal naming every problem of the scenario; Error where a worker died; the signal's reason when aborted
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
-  const prepared = prepareCase(typeof input === 'string' ? parsed(input) : input);
+  const prepared = prepareCase(jsonOf(input));
   return await withTeam(options.threads ?? threadsAvailable(), options.signal, (team) =>
     solvePrepared(prepared, { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) }),
   );
@@ -87,15 +88,6 @@ export async function withTeam<T>(
   } finally {
     signal?.removeEventListener('abort', abort);
     await team.end();
-  }
-}
-
-/** JSON.parse of a text that may be no JSON: the loader tells where, so the text itself goes on to it. */
-function parsed(text: string): unknown {
-  try {
-    return JSON.parse(text);
-  } catch {
-    return text;
   }
 }
 

@@ -12,6 +12,7 @@ import type { Axis, Scenario } from '../scenario/model.ts';
 import { timeStepOf } from '../scenario/sites.ts';
 import { type Instants, samplePoints } from '../trace/trace.ts';
 import { framesOf, type SliceShape, withBelow } from './planes.ts';
+import { type Found, type Frame, type Goal, searchPlan } from './planSearch.ts';
 
 /** What a worker can do. Arguments and results are structured-cloneable; scenarios travel as the file's JSON. */
 export interface Tasks {
@@ -38,6 +39,8 @@ export interface Tasks {
   griddedField(scenario: unknown, cells: Int32Array, instants: Instants, accuracy: number): GriddedPiece;
   /** what the lattice is predicted to add at the sites of some cells: values as in `FieldHistory` */
   predictLattice(scenario: unknown, cells: Int32Array, instants: Instants, form: LatticeForm): Float64Array;
+  /** the cheapest set-up that is predicted to meet a goal */
+  searchPlan(scenario: unknown, goal: Goal, frame: Frame): Found;
 }
 
 /** How a prediction is made: in time, or with the exact numerical phase, some thirty times dearer. */
@@ -136,6 +139,7 @@ const tasks: Tasks = {
     const predict = form === 'time' ? predictLatticeError : predictLatticeErrorBySpectrum;
     return predict(edges, lattice, samplePoints(cells, grid.box.from, grid.cellSize), instants);
   },
+  searchPlan: (json, goal, frame) => searchPlan(scenarioOf(json), goal, frame),
 };
 
 workerpool.worker(tasks as unknown as Record<string, (...args: never[]) => unknown>);
