@@ -247,18 +247,13 @@ async function trust(run: Run, onStage: Stage): Promise<void> {
   await Promise.all(
     run.films.map(async (film, n) => {
       const map = maps[n]!;
-      await filmExact(
-        run.team,
-        run.json,
-        film.slice,
-        film.instants,
-        coarseCells(film.slice),
-        'gridded',
-        (cells, data) => {
-          largestParts(film, freeFilms[n]!, cells, data, map);
-          tell({ kind: 'trust', slice: n, map });
-        },
-      );
+      // Beside a source a site may lie on an edge that carries its current.
+      const clear = 2 * Math.max(...scenario.grid.cellSize);
+      const cells = coarseCells(film.slice).filter((p) => film.slice.distance[p]! > clear);
+      await filmExact(run.team, run.json, film.slice, film.instants, cells, 'gridded', (part, data) => {
+        largestParts(film, freeFilms[n]!, part, data, map);
+        tell({ kind: 'trust', slice: n, map });
+      });
     }),
   );
 }

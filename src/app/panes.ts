@@ -2,6 +2,7 @@ import { OrthographicCamera, PerspectiveCamera, Vector3 } from 'three';
 import { OrbitControls } from 'three/addons/controls/OrbitControls.js';
 import { NEUTRALS, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
 import { contours } from '../draw/contour.ts';
+import { viewOf } from '../draw/display.ts';
 import { absorberEdges, boxEdges, contourLines, planeOutline, wire } from '../draw/furniture.ts';
 import { type Hit, paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
 import { Picture } from '../draw/picture.ts';
@@ -22,13 +23,13 @@ import { currentOn, type DrawnSource, drawnSources, largestCurrent } from './wir
 /** Image pixels that are drawn at most: beyond, the image is drawn smaller and stretched, the texts are not. */
 const MOST_PIXELS = 2.4e6;
 
-/** Below this width, CSS pixels, the panes stand one above the other. */
-const STACKED = 620;
+/** In narrow windows the panes stand one above the other; page.css makes room for them. */
+const NARROW = '(max-width: 900px)';
 
 const TITLES: Readonly<Record<Side, string>> = { grid: 'Grid field', exact: 'Exact field', difference: 'Difference' };
 
-/** The box's sphere leaves room around the box in a pane: the first view is this much nearer. */
-const CLOSER = 1.04;
+/** Panes lower than this, CSS pixels, leave the lengths below the box less room. */
+const LOW = 330;
 
 /** Views along the axes and the one that a run begins with: direction from the middle of the box to the eye. */
 export const VIEWS = {
@@ -65,6 +66,7 @@ export class Panes {
   private readonly pictures = new Pictures();
   private picture = new Picture(1, 1);
   private ratio = 1;
+  private narrowness = 1;
   private camera: PaneCamera = new PerspectiveCamera();
   private controls: OrbitControls | undefined;
   private furniture: Furniture | undefined;
@@ -89,6 +91,7 @@ export class Panes {
   ) {
     new ResizeObserver(() => this.resize()).observe(this.host);
     store.on(['view', 'frame', 'film', 'theme', 'scenario', 'result'], () => this.invalidate());
+    store.on(['view'], () => this.fit());
     this.listen();
   }
 
@@ -131,13 +134,9 @@ export class Panes {
     const old = this.controls?.target.clone();
     const direction = from ?? (old ? this.camera.position.clone().sub(old).toArray() : VIEWS.corner);
     const [area] = this.areas(this.paneCount());
-    this.camera = cameraFor(
-      scenario.grid.box,
-      projection,
-      area!.width / Math.max(1, area!.height - 80),
-      direction as Vec3,
-    );
-    this.camera.zoom = CLOSER;
+    this.camera = cameraFor(scenario.grid.box, projection, this.aspect(), direction as Vec3);
+    this.narrowness = Math.min(1, this.aspect());
+    this.camera.zoom = area!.height / this.ratio < LOW ? 0.92 : 1.04;
     this.camera.updateProjectionMatrix();
     this.controls?.dispose();
     const controls = new OrbitControls(this.camera, this.canvas);
@@ -150,7 +149,7 @@ export class Panes {
     );
     const distance = this.camera.position.distanceTo(controls.target);
     controls.minDistance = distance / 20;
-    controls.maxDistance = distance * 4;
+    controls.maxDistance = distance * 8;
     controls.minZoom = 0.25;
     controls.maxZoom = 20;
     controls.update();
@@ -168,7 +167,23 @@ export class Panes {
     this.texts.width = Math.round(width * devicePixelRatio);
     this.texts.height = Math.round(height * devicePixelRatio);
     this.picture = new Picture(this.canvas.width, this.canvas.height);
+    this.fit();
     this.invalidate();
+  }
+
+  /** Width over height of the part of a pane that shows space. */
+  private aspect(): number {
+    const [area] = this.areas(this.paneCount());
+    return area!.width / Math.max(1, area!.height - 74 * this.ratio);
+  }
+
+  /** Keeps the box in sight when a pane becomes narrower, and as large as it was when it becomes wider again. */
+  private fit(): void {
+    const narrowness = Math.min(1, this.aspect());
+    const factor = narrowness / this.narrowness;
+    if (Math.abs(factor - 1) < 0.01) return;
+    this.narrowness = narrowness;
+    this.turn(0, 0, factor);
   }
 
   private paneCount(): number {
@@ -177,7 +192,7 @@ export class Panes {
 
   private areas(count: number): Rectangle[] {
     const { width, height } = this.canvas;
-    const stacked = this.host.clientWidth < STACKED;
+    const stacked = count > 1 && matchMedia(NARROW).matches;
     const gap = Math.round(this.ratio);
     return Array.from({ length: count }, (_, n) => {
       const [from, to] = [n, n + 1].map((k) => Math.round(((stacked ? height : width) * k) / count)) as [
@@ -225,7 +240,11 @@ export class Panes {
     const labels = this.picture.draw(this.scene);
     const { bytes, width, height } = this.picture.surface;
     this.canvas.getContext('2d')!.putImageData(new ImageData(bytes, width, height), 0, 0);
-    paintLabels(this.texts, labels, this.store.state.theme, this.ratio);
+    const { panes, pixelRatio } = this.scene;
+    const ends = panes.map((pane) => viewOf(pane, pixelRatio)).map(({ y, height: h }) => y + h);
+    // a length that would lie over the colour bar is left out
+    const shown = labels.filter(({ role, pane, y }) => role !== 'tick' || y < ends[pane]! - 3 * pixelRatio);
+    paintLabels(this.texts, shown, this.store.state.theme, this.ratio);
     this.costs.push(performance.now() - started);
     if (this.costs.length > 600) this.costs.shift();
     performance.mark('picture');
@@ -261,7 +280,11 @@ export class Panes {
       );
     };
     const withScale = (scale: Scale | undefined) => (scale ? { scale } : {});
-    const quantityTitle = (side: Side) => `${TITLES[side]}, ${quantity.label}`;
+    const onOneSide = quantity.kind === 'potential';
+    const quantityTitle = (side: Side) =>
+      onOneSide && side !== 'exact'
+        ? `${TITLES[side]}: the grid has no ${quantity.label}`
+        : `${TITLES[side]}, ${quantity.label}`;
     if (view.layout === 'overlay') {
       const [grid, exact] = [planes('grid'), planes('exact')];
       return [
@@ -281,7 +304,8 @@ export class Panes {
       area: this.areas(3)[n]!,
       title: quantityTitle(side),
       planes: planes(side),
-      strokes: side === 'grid' && view.contours ? [...strokes, ...lines(planes('exact'))] : strokes,
+      strokes:
+        side === (onOneSide ? 'exact' : 'grid') && view.contours ? [...strokes, ...lines(planes('exact'))] : strokes,
       ...withScale(scales?.[side]),
     }));
   }

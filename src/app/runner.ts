@@ -131,6 +131,8 @@ export class Runner {
         store.tell('film');
         break;
       case 'traces':
+        // those of the comparison, with their parts, stand
+        if (state.result) break;
         state.traces = report.traces;
         store.tell('result');
         break;
