@@ -5,7 +5,7 @@
  *   prepareGridRun ──> lead(run, …) on one thread          marchAlone(problem) does both in the calling thread
  *                └──> follow(run.setup) on the others
  */
-import { type ByRow, sampleTable, sourceTable, sourceVoltage } from './currents.ts';
+import { sampleTable, sourceTable, sourceVoltage } from './currents.ts';
 import {
   BLOCK_BYTES,
   FIELDS,
@@ -19,7 +19,7 @@ import {
 import { AXES, Bump, configure, type Layout, layoutOf, realsOf, writeProfiles } from './layout.ts';
 import type { GridProblem } from './problem.ts';
 import { type CellBox, type Region, regionOf } from './region.ts';
-import { Collector, keptIndex } from './samples.ts';
+import { type Collection, collect, collectionOf, holdFrom, keptBetween, keptIndex, Watch } from './samples.ts';
 import { type Block, blocksOf, type Schedule, scheduleOf, writeBlocks } from './schedule.ts';
 import { earliestStill } from './still.ts';
 
@@ -39,6 +39,7 @@ export interface GridSetup {
   readonly threads: number;
   readonly schedule: Schedule;
   readonly tables: Tables;
+  readonly collections: readonly Collection[];
 }
 
 /** Addresses of what the driver prepares: once for the run, and anew for each batch. */
@@ -58,7 +59,6 @@ export interface GridRun {
   readonly problem: GridProblem;
   readonly setup: GridSetup;
   readonly sourceOrder: Uint32Array;
-  readonly sampleOrders: readonly Uint32Array[];
   readonly region?: Region;
 }
 
@@ -77,7 +77,10 @@ export interface LeadHooks {
 
 export interface GridResult {
   readonly outcome: 'done' | 'still' | 'cancelled';
-  /** for each group of samples: values[(point·6 + component)·count + m], V/m and A/m */
+  /**
+   * for each group of samples: values[(point·6 + component)·count + m], V/m and A/m; in a SharedArrayBuffer when more
+   * than one thread worked on the run
+   */
   readonly samples: readonly Float64Array[];
   /** less than the problem's steps when the field was still or the run cancelled */
   readonly stepsMarched: number;
@@ -99,7 +102,8 @@ const WORDS = 1024;
 const FILL = 1;
 const MARCH = 2;
 const SWEEP = 3;
-const LEAVE = 4;
+const COLLECT = 4;
+const LEAVE = 5;
 
 /**
  * Allocates the memory of a run and writes what does not change while it marches.
@@ -147,11 +151,13 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
     words(groupTables[g]![0], s.rowStart);
     words(groupTables[g]![1], s.offsets);
   });
+  const collections = problem.samples.map((group, g) =>
+    collectionOf(problem, group, samples[g]!.order, layout.bias, tables.sampleBuffers[g]!, threads > 1),
+  );
   return {
     problem,
-    setup: { memory, layout, threads, schedule, tables },
+    setup: { memory, layout, threads, schedule, tables, collections },
     sourceOrder: sources.order,
-    sampleOrders: samples.map((s: ByRow) => s.order),
     ...(options.region ? { region: options.region } : {}),
   };
 }
@@ -195,7 +201,10 @@ function fillShare(kernel: GridKernel, { layout, threads }: GridSetup, thread: n
   share(layout.memory[0], layout.memory[1] - layout.memory[0], 0);
 }
 
-/** What every thread does at a command; false when the run was called off meanwhile. */
+/**
+ * What every thread does at a command; false when the run was called off meanwhile.
+ * @param address of blocks (MARCH) or steps (SWEEP), or the first step of the batch (COLLECT)
+ */
 function perform(
   kernel: GridKernel,
   setup: GridSetup,
@@ -207,7 +216,10 @@ function perform(
 ): boolean {
   if (command === MARCH) return kernel.march(thread, setup.threads, address, count) !== 0;
   if (command === SWEEP) return kernel.sweep(thread, setup.threads, address, count, gatherings) !== 0;
-  fillShare(kernel, setup, thread);
+  if (command === COLLECT) {
+    const reals = realsOf(setup.layout, setup.memory);
+    for (const collection of setup.collections) collect(collection, reals, address, count, thread, setup.threads);
+  } else fillShare(kernel, setup, thread);
   return true;
 }
 
@@ -236,7 +248,7 @@ export function follow(setup: GridSetup): void {
  */
 export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
   const { problem, setup } = run;
-  const { layout, schedule, threads, memory, tables } = setup;
+  const { schedule, threads, memory, tables } = setup;
   const cancelled = hooks.cancelled ?? (() => false);
   const kernel = readyKernel(setup, 0, cancelled);
   const words = new Int32Array(memory.buffer, 0, WORDS);
@@ -262,8 +274,7 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
     return finished;
   };
 
-  const reals = realsOf(layout, memory);
-  const collectors = problem.samples.map((group, g) => new Collector(problem, group, layout, run.sampleOrders[g]!));
+  const watches = hooks.stopWhenStill ? setup.collections.map((collection) => new Watch(collection)) : [];
   const region = run.region ?? regionOf(problem);
   const stillFrom = hooks.stopWhenStill ? earliestStill(problem, hooks.stopWhenStill.level) : Infinity;
   let cellUpdates = 0;
@@ -291,25 +302,21 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
         break;
       }
       for (const { from, to } of boxes) cellUpdates += (to[0] - from[0]) * (to[1] - from[1]) * (to[2] - from[2]);
-      const kept = problem.samples.map(
-        (group) => boxes.filter((_, n) => keptIndex(group, problem.steps, done + n) >= 0).length,
-      );
-      collectors.forEach((c, g) => {
-        c.take(reals, tables.sampleBuffers[g]! / layout.real, kept[g]!);
-      });
-      done += count;
-      hooks.onSamples?.(collectors);
-      hooks.onProgress?.(done);
-      if (hooks.stopWhenStill) {
-        const restless = Math.max(0, ...collectors.map((c, g) => c.restlessness(Math.max(2, kept[g]! + 1))));
-        if (done >= stillFrom && done < problem.steps && restless <= hooks.stopWhenStill.level) outcome = 'still';
+      if (!order(COLLECT, done, count)) {
+        outcome = 'cancelled';
+        break;
       }
+      const restless = Math.max(0, ...watches.map((watch) => watch.restlessness(done, count)));
+      done += count;
+      hooks.onProgress?.(done);
+      if (hooks.stopWhenStill && done >= stillFrom && done < problem.steps && restless <= hooks.stopWhenStill.level)
+        outcome = 'still';
     }
   } finally {
     order(LEAVE, 0, 0);
   }
-  for (const collector of collectors) collector.hold();
-  return { outcome, samples: collectors.map((c) => c.values), stepsMarched: done, cellUpdates, seconds };
+  for (const collection of setup.collections) holdFrom(collection, keptBetween(collection, 0, done)[1]);
+  return { outcome, samples: setup.collections.map((c) => c.values), stepsMarched: done, cellUpdates, seconds };
 }
 
 /** Writes the records of a batch's steps (assembly/fdtd/step.ts) and the values of its sources. */
@@ -335,7 +342,7 @@ function writeSteps(run: GridRun, boxes: readonly CellBox[], first: number): voi
     ];
     problem.samples.forEach((group, g) => {
       const keeps = keptIndex(group, problem.steps, first + n) >= 0;
-      const numbers = run.sampleOrders[g]!.length * 6;
+      const numbers = setup.collections[g]!.order.length * 6;
       const buffer = tables.sampleBuffers[g]! + used[g]! * numbers * layout.real;
       record.push(keeps ? buffer : 0);
       if (!keeps) return;
