@@ -3,7 +3,8 @@ import { textOf } from './store.ts';
 
 /**
  * The address bar holds the scenario: `#example=NAME` for a built-in one as it is, else `#scenario=` and the text,
- * deflated and in URL-safe base64, so that a link reproduces what its sender saw.
+ * deflated and in URL-safe base64, so that a link reproduces what its sender saw. `#results` is the scenario of the
+ * result folder that is served with the page.
  */
 export async function linkOf(text: string): Promise<string> {
   const name = (Object.keys(EXAMPLES) as ExampleName[]).find((key) => textOf(EXAMPLES[key]) === text);
@@ -18,6 +19,7 @@ export async function linkOf(text: string): Promise<string> {
  * @throws Error where what it holds is damaged or names no example
  */
 export async function scenarioOfLink(hash: string): Promise<string | null> {
+  if (hash === '#results') return await scenarioOfResults();
   const [, key, value] = /^#(example|scenario)=(.*)$/.exec(hash) ?? [];
   if (key === undefined || value === undefined) return null;
   if (key === 'example') {
@@ -36,6 +38,13 @@ export async function scenarioOfLink(hash: string): Promise<string | null> {
       'The scenario in this link is damaged: it may have been cut off. Ask for the link or the file again.',
     );
   }
+}
+
+async function scenarioOfResults(): Promise<string> {
+  const answer = await fetch('results/result.json');
+  if (!answer.ok)
+    throw new Error('The result folder holds no result.json: run `fieldassay compare SCENARIO --out DIR`.');
+  return textOf(((await answer.json()) as { scenario: unknown }).scenario);
 }
 
 async function through(

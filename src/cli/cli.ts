@@ -1,3 +1,5 @@
+import { existsSync } from 'node:fs';
+import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError } from 'commander';
 import { withinTolerance } from '../compare/result.ts';
 import type { SurveyResult } from '../compare/surveyResult.ts';
@@ -114,7 +116,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
           options.out,
           options.port,
           signal,
-          (url) => `\nThe page:   ${url}\nThe report: ${url}report.html   (Ctrl-C ends)\n`,
+          (url) => `\nThe page:   ${url}#results\nThe report: ${url}report.html   (Ctrl-C ends)\n`,
         );
     });
 
@@ -133,12 +135,16 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 
   program
     .command('view')
-    .argument('[dir]', 'a result folder: its report is served at /report.html, its files under /results/')
+    .argument(
+      '[dir]',
+      'a result folder: its scenario is opened, its report served at /report.html, its files under /results/',
+    )
     .description('serve the page on the loopback address, until Ctrl-C')
     .option('--port <n>', 'the port (default: any free one)', portNumber, 0)
     .addHelpText('after', '\nExample: fieldassay view out\n')
     .action(async (folder: string | undefined, { port }: { port: number }) => {
-      await served(folder ?? null, port, signal, (url) => `${url}\n`);
+      const results = folder !== undefined && existsSync(join(folder, 'result.json'));
+      await served(folder ?? null, port, signal, (url) => `${url}${results ? '#results' : ''}\n`);
     });
 
   program

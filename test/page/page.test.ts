@@ -491,9 +491,12 @@ describe('what is served', () => {
     const folder = mkdtempSync(join(tmpdir(), 'results-'));
     writeFileSync(join(folder, 'report.html'), '<!doctype html><title>r</title>');
     writeFileSync(join(folder, '.secret'), 'no');
+    writeFileSync(join(folder, 'result.json'), JSON.stringify({ scenario: SMALL }));
     const own = await serveBuiltPage(folder);
     try {
-      const at = (path: string, init?: RequestInit) => fetch(`${own.url}${path}`, init);
+      expect(own.url.endsWith('/#results')).toBe(true);
+      const origin = own.url.replace('#results', '');
+      const at = (path: string, init?: RequestInit) => fetch(`${origin}${path}`, init);
       const page = await at('');
       expect(page.status).toBe(200);
       const policy = page.headers.get('content-security-policy')!;
@@ -523,6 +526,12 @@ describe('what is served', () => {
         { encoding: 'utf8' },
       );
       expect(strange.stdout.trim()).toBe('421');
+
+      const { page: opened, troubles } = await openPage(browser, own.url);
+      await judged(opened);
+      expect(await opened.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
+      expect(troubles).toEqual([]);
+      await opened.context().close();
     } finally {
       own.end();
       rmSync(folder, { recursive: true, force: true });
