@@ -61,13 +61,18 @@ export async function runSurvey(survey: Survey, options: SurveyOptions = {}): Pr
   const unique = [...new Map(entries.map((entry) => [entry.hash, entry])).values()];
   const waiting = unique.filter(({ status }) => status === 'waiting');
   const shared = new Shared();
-  const jobs = waiting.map((entry) => planned(entry, reflections));
+  const jobs: Job[] = [];
+  for (const entry of waiting) {
+    await breathe(signal);
+    jobs.push(planned(entry, reflections));
+  }
   for (const { json, status } of waiting)
     if (status === 'waiting') for (const work of SHARED) shared.expect(shareKey(work, json));
 
   const meter = new SurveyMeter(onProgress, unique.length, jobs);
   const run = async (index: number, means: Pick<Means, 'team' | 'gridThreads'>) => {
     const entry = waiting[index]!;
+    await breathe(signal);
     if (entry.status === 'waiting')
       try {
         const outcome = await runCase(
@@ -104,6 +109,12 @@ export async function runSurvey(survey: Survey, options: SurveyOptions = {}): Pr
   const cases = entries.map(({ settings, hash }) => caseResult(settings, found.get(hash)!));
   if (cases.every(({ status }) => status === 'refused')) throw new Refusal(problemsOf(cases));
   return resultOf(survey, cases, mask, threads);
+}
+
+/** Lets an interruption be heard: preparing a case is long and unbroken. */
+async function breathe(signal: AbortSignal | undefined): Promise<void> {
+  await new Promise((next) => setTimeout(next));
+  signal?.throwIfAborted();
 }
 
 const SHARED = ['free', 'reflectionFree', 'integrals', 'lattice'] as const;
