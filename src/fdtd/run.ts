@@ -308,6 +308,7 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
       }
       const restless = Math.max(0, ...watches.map((watch) => watch.restlessness(done, count)));
       done += count;
+      hooks.onSamples?.(setup.collections.map((c) => ({ values: c.values, taken: keptBetween(c, 0, done)[1] })));
       hooks.onProgress?.(done);
       if (hooks.stopWhenStill && done >= stillFrom && done < problem.steps && restless <= hooks.stopWhenStill.level)
         outcome = 'still';
