@@ -191,14 +191,23 @@ function readyKernel(setup: GridSetup, thread: number, interrupted: () => boolea
  * Gives this thread's share of the fields and of ψ their start value. It is also the first to touch that memory, which
  * costs more than writing it: better by all threads at once, and before the clock of the march runs.
  */
-function fillShare(kernel: GridKernel, { layout, threads }: GridSetup, thread: number): void {
+function fillShare(
+  kernel: GridKernel,
+  { layout, threads }: GridSetup,
+  thread: number,
+  interrupted: () => boolean,
+): boolean {
   const share = (from: number, bytes: number, value: number) => {
     const vectors = bytes / VECTOR;
     const bound = (t: number) => from + Math.floor((vectors * t) / threads) * VECTOR;
     kernel.fill(bound(thread), bound(thread + 1), value);
   };
-  for (let field = 0; field < 6; field++) share(FIELDS + field * layout.stride, layout.fieldBytes, layout.bias);
+  for (let field = 0; field < 6; field++) {
+    if (interrupted()) return false;
+    share(FIELDS + field * layout.stride, layout.fieldBytes, layout.bias);
+  }
   share(layout.memory[0], layout.memory[1] - layout.memory[0], 0);
+  return true;
 }
 
 /**
@@ -213,14 +222,16 @@ function perform(
   address: number,
   count: number,
   gatherings: number,
+  interrupted: () => boolean,
 ): boolean {
   if (command === MARCH) return kernel.march(thread, setup.threads, address, count) !== 0;
   if (command === SWEEP) return kernel.sweep(thread, setup.threads, address, count, gatherings) !== 0;
   if (command === COLLECT) {
     const reals = realsOf(setup.layout, setup.memory);
     for (const collection of setup.collections) collect(collection, reals, address, count, thread, setup.threads);
-  } else fillShare(kernel, setup, thread);
-  return true;
+    return true;
+  }
+  return fillShare(kernel, setup, thread, interrupted);
 }
 
 /** Helps a leading thread until it is done; blocks the calling thread, which must not be a page's main thread. */
@@ -235,7 +246,7 @@ export function follow(setup: GridSetup): void {
     const command = words[COMMAND]!;
     const count = words[COUNT]!;
     if (command === LEAVE) return;
-    perform(kernel, setup, thread, command, words[ADDRESS]! >>> 0, count, gatherings);
+    perform(kernel, setup, thread, command, words[ADDRESS]! >>> 0, count, gatherings, () => false);
     if (command === SWEEP) gatherings += 2 * count;
     Atomics.add(words, DONE, 1);
     Atomics.notify(words, DONE);
@@ -262,7 +273,7 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
     const orders = Atomics.add(words, ORDERS, 1) + 1;
     Atomics.notify(words, ORDERS);
     if (command === LEAVE) return true;
-    const finished = perform(kernel, setup, 0, command, address, count, gatherings);
+    const finished = perform(kernel, setup, 0, command, address, count, gatherings, cancelled);
     if (command === SWEEP) gatherings += 2 * count;
     for (let done = 0; done < orders * (threads - 1); ) {
       done = Atomics.load(words, DONE);

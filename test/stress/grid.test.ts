@@ -1,8 +1,9 @@
 import { expect, test } from 'vitest';
 import type { GridRun } from '../../src/fdtd/run.ts';
+import { marchAlone } from '../../src/fdtd/run.ts';
 import { bundle, startFollowers } from '../fdtd/bundle.mjs';
 import { compareWithReference } from '../fdtd/identity.ts';
-import { randomProblem, randomSchedule } from '../fdtd/problems.ts';
+import { cpml, edgesOf, everyFace, MUR, PULSE, plainProblem, randomProblem, randomSchedule } from '../fdtd/problems.ts';
 
 test('2000 random problems give the bits of the plain reference on one to four threads', async () => {
   const followers = startFollowers((await bundle({ run: 'src/fdtd/run.ts' }))('run'), 3);
@@ -19,4 +20,29 @@ test('2000 random problems give the bits of the plain reference on one to four t
     expect(difference, `seed ${seed}, ${threads} threads, ${JSON.stringify(schedule)}`).toBeUndefined();
   }
   await followers.stop();
+});
+
+test.each([
+  ['single', 440],
+  ['double', 320],
+] as const)('the last cells of the largest lattices march like those of a small one (%s, %i³)', (precision, size) => {
+  // Information moves one cell a step, so within 14 steps a source near the high corner sees the same surroundings.
+  const steps = 14;
+  const far = (cells: number, boundary: typeof MUR, layers: number) => {
+    const node = [cells - 5, cells - 4, cells - 6];
+    const cell = [cells - 1, cells - 2, cells - 1, cells - 4, cells - 1, cells - 9];
+    const problem = plainProblem([cells, cells, cells], {
+      precision,
+      steps,
+      boundary: everyFace(boundary),
+      pad: everyFace(layers),
+      currents: edgesOf([{ axis: 1, node, delay: -0.8e-9 }], PULSE),
+      samples: [{ cell: Int32Array.from(cell), every: 1 }],
+    });
+    return marchAlone(problem).samples;
+  };
+  const layered = far(size, cpml(10), 10);
+  expect(Math.max(...layered[0]!)).toBeGreaterThan(1e-3);
+  expect(layered).toEqual(far(40, cpml(10), 10));
+  expect(far(size, MUR, 0)).toEqual(far(40, MUR, 0));
 });
