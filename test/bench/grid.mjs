@@ -156,18 +156,24 @@ export async function benchGrid({ rounds = 7, sizes = [64, 128, 200, 256, 320] }
   }
 }
 
+/** One line a result. */
+export function printGrid({ title, environment, results }) {
+  console.log(title, environment);
+  for (const r of results) {
+    const rates = r.size && `${r.median.toFixed(0).padStart(5)} (${r.least.toFixed(0)} to ${r.most.toFixed(0)})`;
+    const ratios = r.ofNative2 && `  of native: ${r.ofNative1.toFixed(2)} (1 thread), ${r.ofNative2.toFixed(2)} (2)`;
+    console.log(
+      r.size ? `${String(r.size).padStart(4)}³ ${r.case.padEnd(48)} ${rates}${ratios ?? ''}` : JSON.stringify(r),
+    );
+  }
+}
+
 if (process.argv[1] === fileURLToPath(import.meta.url)) {
   const { values } = parseArgs({ options: { rounds: { type: 'string' }, sizes: { type: 'string' } } });
-  const { title, environment, results } = await benchGrid({
-    ...(values.rounds ? { rounds: Number(values.rounds) } : {}),
-    ...(values.sizes ? { sizes: values.sizes.split(',').map(Number) } : {}),
-  });
-  console.log(title, environment);
-  for (const r of results)
-    console.log(
-      r.size
-        ? `${String(r.size).padStart(4)}³ ${r.case.padEnd(48)} ${r.median.toFixed(0).padStart(5)} (${r.least.toFixed(0)} to ${r.most.toFixed(0)})` +
-            (r.ofNative2 ? `  of native: ${r.ofNative1.toFixed(2)} (1 thread), ${r.ofNative2.toFixed(2)} (2)` : '')
-        : JSON.stringify(r),
-    );
+  printGrid(
+    await benchGrid({
+      ...(values.rounds ? { rounds: Number(values.rounds) } : {}),
+      ...(values.sizes ? { sizes: values.sizes.split(',').map(Number) } : {}),
+    }),
+  );
 }
