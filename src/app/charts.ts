@@ -162,14 +162,14 @@ export class Charts {
         },
       },
       {
-        live: new LiveChart('The parts of the error in time: known once both solvers are done.', seek),
+        live: new LiveChart('The parts of the error in time, at an observer: known once both solvers are done.', seek),
         chart: () => {
           const own = trace();
           return own && store.state.result ? partsChart(own) : null;
         },
       },
       {
-        live: new LiveChart('Spectrum and trusted band: known once both solvers are done.'),
+        live: new LiveChart('Spectrum and trusted band, at an observer: known once both solvers are done.'),
         chart: () => {
           const own = observer();
           const field = FIELDS.find((f) => trace()?.component.startsWith(f)) ?? 'E';

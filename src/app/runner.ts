@@ -158,8 +158,9 @@ export class Runner {
         store.setRun({
           status: 'refused',
           stage: '',
-          message: report.problems.map(({ path, message }) => (path ? `${path}: ${message}` : message)).join('\n'),
+          message: report.problems.map(({ message }) => message).join('\n'),
         });
+        store.refuse(report.problems);
         break;
       case 'failed':
         this.stop();

@@ -10,7 +10,7 @@ export class Side {
   readonly editor: Editor;
   private readonly panels: Panels;
   private readonly buttons: Readonly<Record<SideView, HTMLButtonElement>>;
-  private readonly trouble = h('p', { className: 'help outside', hidden: true });
+  private readonly trouble = h('p', { className: 'help trouble', hidden: true });
   private shown: SideView = 'panels';
 
   constructor(store: Store) {

@@ -149,6 +149,12 @@ export class Store {
     this.tell('scenario');
   }
 
+  /** What a run found wrong with the scenario, though it had seemed sound. */
+  refuse(problems: readonly Problem[]): void {
+    this.state.problems = problems;
+    this.tell('scenario');
+  }
+
   /** Another scenario, as an edit of what JSON.parse made of the present one. */
   edit(change: (draft: Draft) => void): void {
     const draft = structuredClone(this.state.json ?? {}) as Draft;

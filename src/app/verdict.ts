@@ -7,7 +7,7 @@ import type { Runner } from './runner.ts';
 import type { Store } from './store.ts';
 
 /** The headline: the verdict in one sentence, what supports it, the budget, and how the run stands. */
-export function showVerdict(store: Store, runner: Runner): void {
+export function showVerdict(store: Store, runner: Runner, toText: () => void): void {
   const sentence = byId('sentence');
   const details = byId('details');
   const budget = byId('budget');
@@ -19,7 +19,9 @@ export function showVerdict(store: Store, runner: Runner): void {
     if (store.state.run.status === 'running') runner.cancel();
     else runner.start();
   });
-  run.append(bar, stage, button);
+  const mend = h('button', { type: 'button' }, 'Show where in the text');
+  mend.addEventListener('click', toText);
+  run.append(bar, stage, button, mend);
 
   const showResult = () => {
     const { result } = store.state;
@@ -27,9 +29,10 @@ export function showVerdict(store: Store, runner: Runner): void {
     details.replaceChildren();
     if (!result) return showRun();
     sentence.textContent = result.verdict.sentence;
-    const outside = withinTolerance(result)
-      ? null
-      : h('span', { className: 'outside' }, `Outside the tolerance of ${formatPercent(result.tolerance, 3)}. `);
+    const outside =
+      withinTolerance(result) || !isMeasured(result)
+        ? null
+        : h('span', { className: 'outside' }, `Outside the tolerance of ${formatPercent(result.tolerance, 3)}. `);
     details.append(
       ...[outside, [...result.verdict.details, ...result.notes].join(' ')].filter((part) => part !== null),
     );
@@ -53,7 +56,8 @@ export function showVerdict(store: Store, runner: Runner): void {
         : result && state.status === 'failed'
           ? state.message
           : '';
-    run.hidden = stage.textContent === '' && button.hidden;
+    mend.hidden = problems.length === 0;
+    run.hidden = stage.textContent === '' && button.hidden && mend.hidden;
     if (result) return;
     if (state.status === 'refused' || state.status === 'failed') sentence.textContent = state.message;
     else if (problems.length > 0 && !film) sentence.textContent = problems[0]!.message;
@@ -65,6 +69,10 @@ export function showVerdict(store: Store, runner: Runner): void {
   store.on(['result'], showResult);
   store.on(['run', 'scenario'], showRun);
 }
+
+/** Whether anything was found that is within the tolerance or outside it. */
+const isMeasured = ({ observers, verdict }: Result): boolean =>
+  observers.some(({ E }) => E !== null && E.relativeL2 !== null) || 'best' in verdict.closest;
 
 /** The parts of the error with their signed shares as bars, and the floors below which nothing is told. */
 function budgetTable(result: Result): HTMLElement {

@@ -43,6 +43,7 @@ export async function openPage(
   page.on('requestfailed', (request) => troubles.push(`failed: ${request.url()} ${request.failure()?.errorText}`));
   page.on('request', (request) => requests.push(request.url()));
   await page.goto(url);
+  await page.waitForFunction(() => 'fieldassay' in globalThis);
   return { page, troubles, requests };
 }
 
