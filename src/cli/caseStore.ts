@@ -1,7 +1,7 @@
 import { mkdirSync, readdirSync, readFileSync, rmSync } from 'node:fs';
 import { join } from 'node:path';
 import type { CaseStore } from '../run/survey.ts';
-import { reasonOf, writeWhole } from './output.ts';
+import { writeWhole } from './output.ts';
 
 /** Finished cases as files of a folder, which is made when the first is kept. */
 export function folderStore(folder: string): CaseStore {
@@ -10,9 +10,9 @@ export function folderStore(folder: string): CaseStore {
     load(hash) {
       try {
         return readFileSync(path(hash), 'utf8');
-      } catch (error) {
-        if ((error as NodeJS.ErrnoException).code === 'ENOENT') return null;
-        throw new Error(`${path(hash)} could not be read: ${reasonOf(error)}; remove it, or choose another --out`);
+      } catch {
+        // Not there, or not to be read: it is run, and where it cannot be kept either the case fails.
+        return null;
       }
     },
     save(hash, text) {

@@ -6,7 +6,8 @@ import type { FreeSpacePlan } from './freeSpace.ts';
 import type { Places } from './places.ts';
 import type { Question } from './question.ts';
 
-function describeWall(boundary: Boundary): string {
+/** A wall in a few words. */
+export function describeWall(boundary: Boundary): string {
   switch (boundary.type) {
     case 'pec':
       return 'perfect conductor';

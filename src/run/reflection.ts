@@ -2,12 +2,13 @@ import { memoryLimit } from '#platform';
 import { type Reflection, reflectionAt } from '../compare/reflection.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import { lastArrival } from '../scenario/distance.ts';
-import type { Vec3 } from '../scenario/model.ts';
+import type { Boundary, Face, Vec3 } from '../scenario/model.ts';
 import { type FieldHistory, samplePoints } from '../trace/trace.ts';
 import type { Asked, Means } from './answers.ts';
 import { ACTIVE } from './conclude.ts';
 import { type FreeSpacePlan, planReflectionFree } from './freeSpace.ts';
 import { runGrid } from './gridRun.ts';
+import { type AngleMeasurement, angleReflections, distinctWalls, guideFor } from './guide.ts';
 import { boxProblem } from './question.ts';
 
 /** What the walls send back at the points of the budget, in double precision whatever the scenario's own is. */
@@ -72,4 +73,25 @@ export async function measureReflection(
     echoesPast,
     floor: runs.free.floor,
   };
+}
+
+/** What each of the scenario's distinct walls sends back of plane waves, by their angle. */
+export async function measureAngles({ question }: Asked, { team, gridThreads }: Means): Promise<WallAngles[]> {
+  const found: WallAngles[] = [];
+  for (const { wall, axis, faces } of distinctWalls(question.scenario)) {
+    const guide = guideFor(question, wall, axis);
+    const march = async (problem: GridProblem) =>
+      (await runGrid(team, problem, null, () => {}, gridThreads)).samples[0]!;
+    const withWall = await march(guide.withWall);
+    const measured = angleReflections(guide, withWall, await march(guide.endless));
+    found.push({ wall, faces, frequency: guide.frequency, ...measured });
+  }
+  return found;
+}
+
+export interface WallAngles extends AngleMeasurement {
+  readonly wall: Boundary;
+  readonly faces: readonly Face[];
+  /** Hz */
+  readonly frequency: number;
 }

@@ -8,8 +8,8 @@ import { FACES, type Scenario } from '../scenario/model.ts';
 import { type Asked, answer, type Means } from './answers.ts';
 import { prepareCase } from './compare.ts';
 import { conclude } from './conclude.ts';
-import { describeBoundary } from './describe.ts';
-import { measureReflection } from './reflection.ts';
+import { describeBoundary, describeWall } from './describe.ts';
+import { measureAngles, measureReflection, type WallAngles } from './reflection.ts';
 
 /**
  * One case of a survey: the comparison, and where asked what its walls send back.
@@ -21,6 +21,7 @@ export async function runCase(json: unknown, means: Means, withReflection: boole
   const answers = await answer(asked, means);
   const { result } = conclude({ ...asked, answers, threads: means.gridThreads });
   const measured = withReflection ? await measureReflection(asked, answers.exact.history, means) : null;
+  const angles = withReflection ? await measureAngles(asked, means) : [];
   const { cells, bytes } = memoryNeeded(asked.box);
   return {
     norms: result.norms,
@@ -35,7 +36,7 @@ export async function runCase(json: unknown, means: Means, withReflection: boole
     cost: { cells, cellUpdates: cells * steps, memoryBytes: bytes },
     cellSize: [...scenario.grid.cellSize],
     expectedOrder: Math.min(...scenario.sources.map(({ waveform }) => waveform.expectedOrder.order)),
-    reflection: measured && reflectionResult(asked, measured),
+    reflection: measured && reflectionResult(asked, measured, angles),
   };
 }
 
@@ -68,8 +69,9 @@ const rounded = (value: number | null): number | null => (value === null ? null 
 
 /** Every observer's reflection; of places that stand in for observers, the worst alone. */
 function reflectionResult(
-  { places }: Asked,
+  { places, question }: Asked,
   { points, echoesPast, floor }: NonNullable<Awaited<ReturnType<typeof measureReflection>>>,
+  angles: readonly WallAngles[],
 ): ReflectionResult {
   const written = (point: Reflection, p: number, observer: string | null) => ({
     observer,
@@ -90,6 +92,14 @@ function reflectionResult(
         : points.length > 0
           ? [written(points[worst]!, worst, null)]
           : [],
-    angles: [],
+    angles: angles.map(({ wall, faces, frequency, floor: own, angles: theta, reflected }) => ({
+      wall: describeWall(wall),
+      faces,
+      frequency,
+      cellsPerWavelength: (question.cellsPerWavelength * question.highestFrequency) / frequency,
+      floor: dB(own),
+      angle: theta.map((angle) => (angle * 180) / Math.PI),
+      reflected: reflected.map((r) => rounded(dB(r))),
+    })),
   };
 }

@@ -123,9 +123,11 @@ describe('survey', () => {
     // A folder in the place of a case's file: the case can be run, and not be kept.
     const [name] = folder.cases('fails').keys();
     folder.obstruct(`fails/cases/${name}`);
-    const { status, stderr } = folder.run(survey, '--out', 'fails');
-    expect(stderr).toContain('could not be read');
+    const { status, stdout } = folder.run(survey, '--out', 'fails');
     expect(status).toBe(3);
+    expect(stdout).toContain('2 cases: 1 done, 1 failed');
+    const failed = timeless(folder.read('fails/survey-result.json')).cases.filter((each) => each.status === 'failed');
+    expect(failed.map(({ reason }) => reason)).toEqual([expect.stringContaining('could not be written')]);
   });
 
   test('a missing survey, a missing scenario and a broken file: status 2, the place named', () => {
