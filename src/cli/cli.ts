@@ -12,6 +12,7 @@ import { type Comparison, compareSolvers, Refusal } from '../run/compare.ts';
 import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
+import { surveyJsonSchema } from '../scenario/survey.ts';
 import { exactCommand } from './exact.ts';
 import { InputError, readScenario } from './input.ts';
 import { quoted, writeFolder, writeWhole } from './output.ts';
@@ -57,6 +58,8 @@ export async function runCli(args: readonly string[]): Promise<number> {
     process.off('SIGTERM', onSignal);
   }
 }
+
+const SCHEMAS = { scenario: scenarioJsonSchema, survey: surveyJsonSchema } as const;
 
 class Interrupted extends Error {
   constructor(message = 'stopped; nothing was written') {
@@ -185,10 +188,13 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 
   program
     .command('schema')
-    .description('print the JSON Schema of scenario files')
+    .argument('[of]', `what to describe: ${Object.keys(SCHEMAS).join(', ')}`, 'scenario')
+    .description('print the JSON Schema of scenario or survey files')
     .addHelpText('after', '\nExample: fieldassay schema > scenario.schema.json\n')
-    .action(() => {
-      process.stdout.write(`${JSON.stringify(scenarioJsonSchema(), null, 2)}\n`);
+    .action((of: string) => {
+      if (!Object.hasOwn(SCHEMAS, of))
+        throw new InputError(`there is no schema of “${of}”; there are ${Object.keys(SCHEMAS).join(', ')}`);
+      process.stdout.write(`${JSON.stringify(SCHEMAS[of as keyof typeof SCHEMAS](), null, 2)}\n`);
     });
 
   program

@@ -13,7 +13,9 @@ p{margin:0 0 8px;max-width:75ch}
 .muted,figcaption,th,dd{color:var(--muted)}
 .outside{color:var(--outside);font-weight:600}
 .charts{display:grid;grid-template-columns:repeat(auto-fit,minmax(min(100%,440px),1fr));gap:20px 28px;margin:12px 0}
-figure{margin:0}.scroll{overflow-x:auto;margin-bottom:8px}
+figure{margin:0;max-width:680px}.charts:has(>:only-child){grid-template-columns:1fr}
+details{margin:0 0 8px}summary{cursor:pointer;padding:4px 0;font-weight:600}details>*:not(summary){margin-left:16px}
+.scroll{overflow-x:auto;margin-bottom:8px}
 table{border-collapse:collapse}
 th{font-weight:400;text-align:left;font-size:13px;vertical-align:bottom}
 th,td{padding:4px 20px 4px 0;white-space:nowrap}

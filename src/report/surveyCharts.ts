@@ -3,7 +3,7 @@ import { isDone } from '../compare/surveyResult.ts';
 import { pow } from '../elementary/elementary.ts';
 import { formatNumber, formatPercent, formatQuantity, formatScientific } from '../elementary/quantity.ts';
 import type { ColourName } from './palette.ts';
-import { caseName, choicesOf } from './surveyWords.ts';
+import { caseName, choicesOf, frontCases } from './surveyWords.ts';
 import type { Chart, Mark, Series } from './svg.ts';
 
 type Point = readonly [number, number];
@@ -78,6 +78,7 @@ export function ladderChart(ladder: LadderResult, tolerance: number | null): Cha
       unit: 'm',
       scale: 'log',
       domain: logDomain(sizes, 1.08),
+      ticks: sizes,
       format: (value) => formatQuantity(value, 'm'),
     },
     y: { label: 'relative L2', unit: '', scale: 'log', domain: logDomain(all, 1.5), format: (v) => formatPercent(v) },
@@ -93,6 +94,56 @@ const named = (settings: CaseResult['settings']): string => {
   return name === '' ? '' : `: ${name}`;
 };
 
+/** Total errors of all ladders in one. */
+export function laddersChart({ ladders }: SurveyResult, tolerance: number | null): Chart | null {
+  const series = ladders.slice(0, MOST_CHOICES).flatMap(({ settings, sizes, errors }, n): Series[] => {
+    const points = pairs(sizes, errors);
+    return points.length < 2
+      ? []
+      : [
+          {
+            name: caseName(settings),
+            colour: choiceColour(n),
+            points,
+            dots: ([, e]) => (tolerance !== null && e > tolerance ? 'outside' : 'within'),
+          },
+        ];
+  });
+  if (series.length < 2) return null;
+  const sizes = [...new Set(ladders.flatMap((ladder) => ladder.sizes))].sort((a, b) => a - b);
+  const errors = [
+    ...series.flatMap(({ points }) => points.map(([, e]) => e)),
+    ...(tolerance === null ? [] : [tolerance]),
+  ];
+  return {
+    title: 'Total error against cell size',
+    description: 'Relative L2 of E pooled over the observers, one curve a ladder, both axes logarithmic.',
+    x: {
+      label: 'cell size',
+      unit: 'm',
+      scale: 'log',
+      domain: logDomain(sizes, 1.08),
+      ticks: spread(sizes, 8),
+      format: (value) => formatQuantity(value, 'm'),
+    },
+    y: {
+      label: 'relative L2',
+      unit: '',
+      scale: 'log',
+      domain: logDomain(errors, 1.5),
+      format: (v) => formatPercent(v),
+    },
+    series,
+    marks: tolerance === null ? [] : [{ axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }],
+  };
+}
+
+/** A list, or so many of it, evenly. */
+const spread = <T>(list: readonly T[], most: number): readonly T[] =>
+  list.length <= most
+    ? list
+    : Array.from({ length: most }, (_, n) => list[Math.floor((n * (list.length - 1)) / (most - 1))]!);
+
 /** The reflection seen at the worst observer over time, every choice, with the exact field and the floor. */
 export function reflectionTimeChart(result: SurveyResult): Chart | null {
   const shown = reflected(result);
@@ -101,7 +152,7 @@ export function reflectionTimeChart(result: SurveyResult): Chart | null {
   const end = Math.max(...shown.map(({ seen }) => seen.time.t[seen.time.t.length - 1] ?? 0));
   const low = depthOf(shown.map(({ floor }) => floor));
   return {
-    title: 'What the walls send back, over time',
+    title: `What the walls send back, over time${onFinest(result)}`,
     description:
       'Largest component of what came back at each case’s worst observer, in decibels of the peak of the exact field.',
     x: { label: 'time', unit: 's', scale: 'linear', domain: [0, end] },
@@ -125,7 +176,7 @@ export function reflectionFrequencyChart(result: SurveyResult): Chart | null {
   const ends = shown.flatMap(({ seen }) => [seen.frequency.f[0]!, seen.frequency.f[seen.frequency.f.length - 1]!]);
   const low = depthOf(shown.map(({ floor }) => floor));
   return {
-    title: 'What the walls send back, by frequency',
+    title: `What the walls send back, by frequency${onFinest(result)}`,
     description:
       'Spectrum of what came back over that of the exact field, where that is within 40 dB of its strongest.',
     x: { label: 'frequency', unit: 'Hz', scale: 'linear', domain: [0, Math.max(...(ends as number[]))] },
@@ -141,12 +192,15 @@ export function reflectionFrequencyChart(result: SurveyResult): Chart | null {
 
 /** Plane waves by their angle to the wall's normal. */
 export function reflectionAngleChart(result: SurveyResult): Chart | null {
-  const curves = reflected(result).flatMap(({ angles, name, colour }) =>
-    angles.map((each) => ({ name: angles.length > 1 ? each.wall : name, colour, each })),
+  // A wall is the same wall at any clearance.
+  const walls = new Map(
+    reflected(result).flatMap(({ angles }) =>
+      angles.map((each) => [JSON.stringify({ ...each, faces: [] }), each] as const),
+    ),
   );
-  const distinct = curves.filter(
-    ({ name, each }, n) => curves.findIndex((o) => o.name === name && o.each.wall === each.wall) === n,
-  );
+  const distinct = [...walls.values()]
+    .slice(0, MOST_CHOICES)
+    .map((each, n) => ({ name: each.wall, colour: choiceColour(n), each }));
   if (distinct.length === 0) return null;
   const low = depthOf(distinct.map(({ each }) => each.floor));
   const [first] = distinct;
@@ -164,12 +218,19 @@ export function reflectionAngleChart(result: SurveyResult): Chart | null {
   };
 }
 
+/** "; cells 5 mm", where cells are varied. */
+function onFinest({ vary, cases }: SurveyResult): string {
+  if (!vary.includes('grid.cellSize')) return '';
+  const sizes = cases.filter(isDone).map(({ cellSize }) => Math.max(...cellSize));
+  return `; cells ${formatQuantity(Math.min(...sizes), 'm')}`;
+}
+
 const curve = (x: readonly (number | null)[], y: readonly (number | null)[], low: number): Point[] =>
   x.map((v, n) => [v!, Math.max(y[n] ?? low, low)] as const);
 
-/** Down to twenty decibels below the floor, but no further than can be seen. */
+/** Some way below the floor. */
 const depthOf = (floors: readonly (number | null)[]): number =>
-  Math.max(-170, Math.min(...floors.map((f) => f ?? -100)) - 15);
+  Math.max(-190, Math.min(...floors.map((f) => f ?? -100)) - 25);
 
 function floorMarks(floors: readonly (number | null)[]): Mark[] {
   const sound = floors.filter((f) => f !== null);
@@ -178,10 +239,16 @@ function floorMarks(floors: readonly (number | null)[]): Mark[] {
   return [{ axis: 'y', at: highest, label: 'floor: below it nothing is called a reflection' }];
 }
 
-/** Cases with a reflection, each seen at its worst observer; of many, those spread evenly. */
+/**
+ * Cases with a reflection, each seen at its worst observer; where cell sizes are varied, those on the finest alone; of many,
+ * some spread evenly.
+ */
 function reflected(result: SurveyResult) {
+  const volume = ({ cellSize: [dx, dy, dz] }: Outcome) => dx * dy * dz;
+  const finest = Math.min(...result.cases.filter(isDone).map(volume));
   const all = result.cases.flatMap((each) => {
     if (!isDone(each) || !each.reflection || each.reflection.observers.length === 0) return [];
+    if (volume(each) > finest * (1 + 1e-9)) return [];
     const { observers, floor, angles } = each.reflection;
     const seen = observers.reduce((a, b) => ((b.peak ?? -Infinity) > (a.peak ?? -Infinity) ? b : a));
     return [{ name: choiceName(each, result), seen, floor, angles }];
@@ -193,10 +260,10 @@ function reflected(result: SurveyResult) {
   }));
 }
 
-/** A case's walls, and whatever else is varied. */
-export function choiceName(each: CaseResult & Outcome, { vary }: Pick<SurveyResult, 'vary'>): string {
+/** A case's walls, and whatever else is varied but cell sizes. */
+function choiceName(each: CaseResult & Outcome, { vary }: Pick<SurveyResult, 'vary'>): string {
   const others = Object.fromEntries(
-    Object.entries(each.settings).filter(([key]) => !key.startsWith('grid.boundary') && vary.length > 1),
+    Object.entries(each.settings).filter(([key]) => !key.startsWith('grid.boundary') && key !== 'grid.cellSize'),
   );
   const rest = caseName(others);
   const walls = vary.some((key) => key.startsWith('grid.boundary'));
@@ -212,7 +279,8 @@ export function costChart(result: SurveyResult, tolerance: number | null): Chart
       : [],
   );
   if (points.length < 2) return null;
-  const front = frontOf(points.map(({ at }) => at));
+  const front = frontCases(result).map(({ cost, budget }) => [cost.cellUpdates, budget.total.relativeL2!] as const);
+  const onFront = new Set(frontCases(result));
   const errors = [...points.map(({ at }) => at[1]), ...(tolerance === null ? [] : [tolerance])];
   return {
     title: 'Error against cost',
@@ -241,22 +309,12 @@ export function costChart(result: SurveyResult, tolerance: number | null): Chart
         colour: 'muted',
         thin: true,
         scatter: true,
-        points: points.map(({ at }) => at).filter((at) => !front.includes(at)),
+        points: points.filter(({ each }) => !onFront.has(each)).map(({ at }) => at),
         dots: () => 'within',
       },
     ],
     marks: tolerance === null ? [] : [{ axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }],
   };
-}
-
-function frontOf(points: readonly Point[]): Point[] {
-  const order = [...points].sort((a, b) => a[0] - b[0] || a[1] - b[1]);
-  let best = Number.POSITIVE_INFINITY;
-  return order.filter(([, error]) => {
-    if (error >= best) return false;
-    best = error;
-    return true;
-  });
 }
 
 /** Against the clearance, one curve for each combination of the other settings: the boundary's part of the error. */
@@ -289,6 +347,10 @@ export function clearanceChart(result: SurveyResult): Chart | null {
       domain: logDomain(
         all.map(([x]) => x),
         1.08,
+      ),
+      ticks: spread(
+        [...new Set(all.map(([x]) => x))].sort((a, b) => a - b),
+        8,
       ),
       format: (v) => formatQuantity(v, 'm'),
     },

@@ -3,6 +3,7 @@ import {
   type CaseResult,
   isDone,
   type LadderResult,
+  type Outcome,
   type SurveyResult,
 } from '../compare/surveyResult.ts';
 import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
@@ -13,6 +14,7 @@ import {
   clearanceChart,
   costChart,
   ladderChart,
+  laddersChart,
   PART_NAMES,
   reflectionAngleChart,
   reflectionFrequencyChart,
@@ -20,13 +22,16 @@ import {
 } from './surveyCharts.ts';
 import {
   caseName,
+  cautions,
   countsText,
+  frontCases,
   headline,
   keyWord,
   ladderSentences,
   levelText,
   settingWord,
   toleranceOf,
+  wallsSentences,
 } from './surveyWords.ts';
 import { type Chart, chartSvg } from './svg.ts';
 import { countText, percentOr } from './words.ts';
@@ -38,9 +43,11 @@ export function surveyHtml(result: SurveyResult, command: string): string {
     title,
     markup`<p class="muted">Fieldassay ${result.version} · survey · <bdi>${title}</bdi></p>
 <h1>${headline(result)}</h1>
+${wallsSentences(result).map((sentence) => markup`<p>${sentence}</p>`)}
+${cautions(result).map((sentence) => markup`<p class="outside">${sentence}</p>`)}
 <p>${countsText(result)}.</p>
 ${choiceSection(result)}
-${result.ladders.map((ladder) => ladderSection(ladder, result))}
+${ladderSection(result)}
 ${boundarySection(result)}
 ${casesSection(result)}
 ${trouble(result)}
@@ -57,12 +64,57 @@ const figures = (charts: readonly (Chart | null)[]): Markup | null => {
 };
 
 function choiceSection(result: SurveyResult): Markup | null {
-  const charts = figures([costChart(result, toleranceOf(result)), clearanceChart(result)]);
-  return charts && markup`<h2>What an error costs</h2>${charts}`;
+  const tolerance = toleranceOf(result);
+  const front = frontCases(result);
+  if (front.length === 0) return null;
+  return markup`<h2>What an error costs</h2>
+${figures([costChart(result, tolerance), clearanceChart(result)])}
+<div class="scroll"><table>
+<thead><tr><th scope="col">no other is better and cheaper</th>${['total error', 'cells', 'steps', 'memory', 'time'].map((c) => markup`<th scope="col" class="number">${c}</th>`)}</tr></thead>
+<tbody>${front.map((each) => {
+    const error = each.budget.total.relativeL2!;
+    const outside = tolerance !== null && error > tolerance;
+    return markup`<tr><th scope="row">${caseName(each.settings)}</th><td class="number${outside ? ' outside' : ''}">${percentOr(error)}</td>${costCells(each).map((c) => markup`<td class="number">${c}</td>`)}</tr>`;
+  })}</tbody></table></div>`;
 }
 
-function ladderSection(ladder: LadderResult, result: SurveyResult): Markup {
-  const name = caseName(ladder.settings);
+/** Cells, steps, memory, time. */
+const costCells = ({ cost, grid, timings }: Outcome): string[] => [
+  countText(cost.cells),
+  countText(grid.steps),
+  formatQuantity(cost.memoryBytes, 'B'),
+  formatQuantity(timings.box.seconds, 's'),
+];
+
+/** One ladder in full; several in a table, each in full below it. */
+function ladderSection(result: SurveyResult): Markup | null {
+  const { ladders } = result;
+  if (ladders.length === 0) return null;
+  if (ladders.length === 1) return markup`<h2>Convergence</h2>${ladderDetails(ladders[0]!, result)}`;
+  return markup`<h2>Convergence</h2>
+<div class="scroll"><table>
+<thead><tr><th scope="col">ladder</th>${['coarsest', 'finest', 'orders', 'index', 'covers the truth', 'left as h → 0'].map((c) => markup`<th scope="col" class="number">${c}</th>`)}</tr></thead>
+<tbody>${ladders.map((ladder) => ladderRow(ladder, toleranceOf(result)))}</tbody></table></div>
+<p class="muted">Total error of the coarsest and the finest grid, the orders between consecutive grids, and the grid convergence index of the finest: whether it covers the true error beside it. Red: outside the tolerance, or not covered.</p>
+${figures([laddersChart(result, toleranceOf(result))])}
+${ladders.map((ladder) => markup`<details><summary>${caseName(ladder.settings)}</summary>${ladderDetails(ladder, result)}</details>`)}`;
+}
+
+function ladderRow(ladder: LadderResult, tolerance: number | null): Markup {
+  const { settings, sizes, errors, orders, gci, richardson } = ladder;
+  const error = (n: number) => {
+    const value = errors[n] ?? null;
+    const outside = tolerance !== null && value !== null && value > tolerance;
+    return markup`<td class="number${outside ? ' outside' : ''}">${percentOr(value)} at ${formatQuantity(sizes[n]!, 'm')}</td>`;
+  };
+  const list = orders.map((order) => (order === null ? '—' : formatNumber(order, 2))).join(', ');
+  const index = gci.value === null ? '—' : percentOr(gci.value);
+  const covered = gci.value === null ? '—' : gci.covered ? 'yes' : 'no';
+  const left = richardson.limit === null ? '—' : percentOr(Math.abs(richardson.limit));
+  return markup`<tr><th scope="row">${caseName(settings)}</th>${error(0)}${error(sizes.length - 1)}<td class="number">${list}</td><td class="number">${index}</td><td class="number${covered === 'no' ? ' outside' : ''}">${covered}</td><td class="number muted">${left}</td></tr>`;
+}
+
+function ladderDetails(ladder: LadderResult, result: SurveyResult): Markup {
   const parts = [
     { part: 'total', errors: ladder.errors, floors: ladder.errors.map(() => 0), orders: ladder.orders },
     ...ladder.parts,
@@ -72,8 +124,7 @@ function ladderSection(ladder: LadderResult, result: SurveyResult): Markup {
       markup`<th scope="col" class="number">${PART_NAMES[part] ?? part}</th><th scope="col" class="number">order</th>`,
   );
   const tolerance = toleranceOf(result);
-  return markup`<h2>Convergence${name === '' ? '' : `: ${name}`}</h2>
-${ladderSentences(ladder).map((sentence) => markup`<p>${sentence}</p>`)}
+  return markup`${ladderSentences(ladder).map((sentence) => markup`<p>${sentence}</p>`)}
 <div class="scroll"><table>
 <thead><tr><th scope="col">cell size</th>${columns}</tr></thead>
 <tbody>${ladder.sizes.map(
@@ -147,14 +198,8 @@ function caseRow(each: CaseResult, vary: readonly string[], tolerance: number | 
   const part = (name: string) => rows.find((row) => row.name === name)?.error ?? '—';
   const total = each.budget.total.relativeL2;
   const cells = [part('boundary'), part('lattice'), part('gridding'), percentOr(each.norms.E.relativeL2)];
-  const cost = [
-    countText(each.cost.cells),
-    countText(each.grid.steps),
-    formatQuantity(each.cost.memoryBytes, 'B'),
-    formatQuantity(each.timings.box.seconds, 's'),
-  ];
   const outside = total !== null && tolerance !== null && total > tolerance;
-  return markup`<tr>${names}<td class="number${outside ? ' outside' : ''}">${percentOr(total)}</td>${[...cells, ...cost].map((c) => markup`<td class="number">${c}</td>`)}</tr>`;
+  return markup`<tr>${names}<td class="number${outside ? ' outside' : ''}">${percentOr(total)}</td>${[...cells, ...costCells(each)].map((c) => markup`<td class="number">${c}</td>`)}</tr>`;
 }
 
 /** What was refused, which the survey's author can mend, apart from what failed, which he cannot. */

@@ -1,35 +1,21 @@
-import { isDone, type SurveyResult } from '../compare/surveyResult.ts';
+import { isDone, type LadderResult, type SurveyResult } from '../compare/surveyResult.ts';
 import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
 import { printable } from './markup.ts';
-import { caseName, countsText, headline, ladderSentences, levelText } from './surveyWords.ts';
+import { caseName, cautions, countsText, headline, ladderSentences, levelText, wallsSentences } from './surveyWords.ts';
 import { columns, percentOr } from './words.ts';
 
 /** What `survey` prints: the choice, ladders, walls, what went wrong, and where the rest lies. */
 export function surveyText(result: SurveyResult, written: readonly string[]): string {
   const trouble = result.cases.filter((each) => !isDone(each));
   const sections = [
-    [...(result.title === '' ? [] : [printable(result.title)]), printable(headline(result)), `${countsText(result)}.`],
-    ...result.ladders.map((ladder) => {
-      const name = caseName(ladder.settings);
-      return [
-        `Convergence${name === '' ? '' : `, ${printable(name)}`}`,
-        ...columns(
-          [
-            ['cells', 'total', 'order'],
-            ...ladder.sizes.map((size, n) => {
-              const order = n === 0 ? null : (ladder.orders[n - 1] ?? null);
-              return [
-                formatQuantity(size, 'm'),
-                percentOr(ladder.errors[n] ?? null),
-                order === null ? '' : formatNumber(order, 3),
-              ];
-            }),
-          ],
-          ['right', 'right', 'right'],
-        ),
-        ...ladderSentences(ladder).slice(1),
-      ];
-    }),
+    [
+      ...(result.title === '' ? [] : [printable(result.title)]),
+      printable(headline(result)),
+      ...wallsSentences(result).map(printable),
+      ...cautions(result),
+      `${countsText(result)}.`,
+    ],
+    ...ladderLines(result),
     result.boundaries.length === 0
       ? []
       : [
@@ -76,4 +62,48 @@ export function surveyText(result: SurveyResult, written: readonly string[]): st
     .filter((lines) => lines.length > 0)
     .map((lines) => lines.map((line) => line.trimEnd()).join('\n'))
     .join('\n\n')}\n`;
+}
+
+/** One ladder in full; of several a line each. */
+function ladderLines({ ladders }: SurveyResult): string[][] {
+  if (ladders.length === 0) return [];
+  const order = (value: number | null) => (value === null ? '—' : formatNumber(value, 3));
+  const error = ({ errors, sizes }: LadderResult, n: number) =>
+    `${percentOr(errors[n] ?? null)} at ${formatQuantity(sizes[n]!, 'm')}`;
+  const index = ({ gci }: LadderResult) =>
+    gci.value === null ? '—' : `${percentOr(gci.value)} ${gci.covered ? 'covers' : 'misses'}`;
+  if (ladders.length > 1)
+    return [
+      [
+        'Convergence (error of the coarsest and the finest grid, orders, grid convergence index and whether it covers the true error)',
+        ...columns(
+          ladders.map((ladder) => [
+            printable(caseName(ladder.settings)),
+            error(ladder, 0),
+            error(ladder, ladder.sizes.length - 1),
+            ladder.orders.map(order).join(', '),
+            index(ladder),
+          ]),
+          ['left', 'right', 'right', 'right', 'right'],
+        ),
+      ],
+    ];
+  const [ladder] = ladders;
+  return [
+    [
+      'Convergence',
+      ...columns(
+        [
+          ['cells', 'total', 'order'],
+          ...ladder!.sizes.map((size, n) => [
+            formatQuantity(size, 'm'),
+            percentOr(ladder!.errors[n] ?? null),
+            n === 0 ? '' : order(ladder!.orders[n - 1] ?? null),
+          ]),
+        ],
+        ['right', 'right', 'right'],
+      ),
+      ...ladderSentences(ladder!).slice(1),
+    ],
+  ];
 }

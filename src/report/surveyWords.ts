@@ -1,3 +1,4 @@
+import { paretoFront } from '../compare/front.ts';
 import type { CaseResult, LadderResult, Outcome, SurveyResult } from '../compare/surveyResult.ts';
 import { isDone } from '../compare/surveyResult.ts';
 import { formatDecibels, formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
@@ -80,7 +81,7 @@ export function ladderSentences({
   const limit =
     richardson.limit === null
       ? `Richardson’s extrapolation gives nothing: ${richardson.reason}.`
-      : `Extrapolated to vanishing cells (order ${formatNumber(richardson.order, 3)} from ${richardson.orderFrom === 'three grids' ? 'the three finest grids' : 'the scheme, two grids tell none'}) ${formatPercent(Math.abs(richardson.limit))} would be left.`;
+      : `With vanishing cells, by Richardson’s extrapolation (order ${formatNumber(richardson.order, 3)} from ${richardson.orderFrom === 'three grids' ? 'the three finest grids' : 'the scheme, two grids tell none'}) the error would be ${formatPercent(Math.abs(richardson.limit))}.`;
   const index =
     gci.value === null
       ? `There is no grid convergence index: ${gci.reason}.`
@@ -122,6 +123,52 @@ export function headline(result: SurveyResult): string {
   const cheapest = good.reduce((a, b) => (b.cost.cellUpdates < a.cost.cellUpdates ? b : a));
   return `${within} at least cost: ${told(cheapest)}.`;
 }
+
+/** Where errors are not over the same places, which makes them poor to compare. */
+export function cautions({ cases }: SurveyResult): string[] {
+  const inside = (each: Outcome) => each.observers.filter((o) => o.inside).map(({ name }) => name);
+  const pooled = new Set(cases.filter(isDone).map((each) => JSON.stringify(inside(each))));
+  return pooled.size > 1
+    ? [
+        'Not all boxes hold the same observers, so that total errors are pooled over different places (over the box where none is inside): compare them with care, or put the observers inside the smallest box.',
+      ]
+    : [];
+}
+
+/** The cases that no other beats in both cell updates and total error, the cheapest first. */
+export function frontCases({ cases }: SurveyResult): (CaseResult & Outcome)[] {
+  const done = cases.filter(isDone);
+  const choices = done.map(({ cost, budget }) => ({
+    cost: cost.cellUpdates,
+    error: budget.total.relativeL2 ?? Number.NaN,
+  }));
+  return paretoFront(choices).map((n) => done[n]!);
+}
+
+/** Which walls: the cheapest whose own part of the error does not matter, and those that send back least. */
+export function wallsSentences(result: SurveyResult): string[] {
+  const rows = result.boundaries.flatMap((row) => {
+    const each = result.cases[row.case]!;
+    return isDone(each) && each.budget.boundary?.relativeL2 != null
+      ? [{ row, each, part: each.budget.boundary.relativeL2 }]
+      : [];
+  });
+  if (rows.length < 2) return [];
+  const limit = SMALL_SHARE * (toleranceOf(result) ?? 0.05);
+  const good = rows.filter(({ part }) => part <= limit);
+  const cost = ({ each }: (typeof rows)[number]) => each.cost.cellUpdates;
+  const least = rows.reduce((a, b) => ((b.row.reflection ?? 0) < (a.row.reflection ?? 0) ? b : a));
+  const cheapest = good.length > 0 ? good.reduce((a, b) => (cost(b) < cost(a) ? b : a)) : null;
+  return [
+    cheapest
+      ? `Walls that do not matter (their own part of the error ≤ ${formatPercent(limit, 2)}, a tenth of the tolerance), the cheapest: ${caseName(cheapest.row.settings)}, ${formatPercent(cheapest.part)}.`
+      : `All walls matter: none keeps its own part of the error to a tenth of the tolerance, ${formatPercent(limit, 2)}.`,
+    `Least comes back from ${caseName(least.row.settings)}: ${levelText(least.row.reflection, least.row.floor)} of the exact peak.`,
+  ];
+}
+
+/** A part this small beside the tolerance is no reason to change anything. */
+const SMALL_SHARE = 0.1;
 
 /** "21 600 cells, 4.1 MB, 80 ms". */
 export function costText({ cost, timings }: Outcome): string {

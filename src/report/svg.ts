@@ -14,6 +14,8 @@ export interface Axis {
   readonly unit: string;
   readonly scale: 'linear' | 'log';
   readonly domain: readonly [number, number];
+  /** where ticks stand; absent: at round values */
+  readonly ticks?: readonly number[];
   /** how a tick is written; absent: its number in the axis's unit */
   readonly format?: (value: number) => string;
 }
@@ -142,7 +144,8 @@ function ticksOf(axis: Axis, count: number): { readonly ticks: readonly Tick[]; 
   const largest = Math.max(Math.abs(axis.domain[0]), Math.abs(axis.domain[1]));
   const { factor, prefix } = axis.unit === '' ? { factor: 1, prefix: '' } : prefixOf(largest);
   const format = axis.format ?? ((value: number) => formatNumber(value / factor, 4));
-  const values = axis.scale === 'log' ? logTicks(axis.domain) : scaleLinear().domain(axis.domain).ticks(count);
+  const values =
+    axis.ticks ?? (axis.scale === 'log' ? logTicks(axis.domain) : scaleLinear().domain(axis.domain).ticks(count));
   return {
     ticks: values.map((value) => ({ value, text: format(value) })),
     unit: axis.format ? '' : prefix + axis.unit,

@@ -46,12 +46,12 @@ export interface Means {
 }
 
 /**
- * Does a piece of work, or hands out what it gave before: the grid without walls (for reflections, in double precision), or
- * the exact fields.
+ * Does a piece of work, or hands out what it gave before: the grid without walls (for reflections, in double precision), the
+ * guide without an end, or the exact fields.
  * None of them knows what the walls of the box are.
  */
 export type Share = <T>(
-  work: 'free' | 'reflectionFree' | 'integrals' | 'lattice',
+  work: 'free' | 'reflectionFree' | 'guide' | 'integrals' | 'lattice',
   make: () => Promise<T>,
 ) => Promise<T>;
 

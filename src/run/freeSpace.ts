@@ -31,6 +31,10 @@ export interface FreeSpacePlan {
 const MARGINS = { budget: { margin: 6, floor: -107 }, reflection: { margin: 10, floor: -145 } } as const;
 type Purpose = keyof typeof MARGINS;
 
+/** How reflections are marched: cells around the active region, and what of the exact field they let through. */
+export const REFLECTION_MARGIN = MARGINS.reflection.margin;
+export const reflectionFloor = (): number => fromDecibels(MARGINS.reflection.floor);
+
 const CLEARANCE = 10;
 const LAYERS = 16;
 

@@ -4,6 +4,7 @@ import type { GridProblem } from '../fdtd/problem.ts';
 import type { EdgeCurrents } from '../gridding/edges.ts';
 import { type Axis, type Boundary, FACES, type Face, type Medium, type Scenario } from '../scenario/model.ts';
 import { makeWaveform } from '../scenario/waveforms.ts';
+import { REFLECTION_MARGIN, reflectionFloor } from './freeSpace.ts';
 import type { Question } from './question.ts';
 
 /**
@@ -40,9 +41,6 @@ const PERIODS = 2.4;
 
 /** Sigmas from the start of the window to the middle of the pulse: its start is below rounding. */
 const LEAD = 8.6;
-
-/** Cells around the active region: they let through less than −190 dB (test/verify/freeSpace.test.ts). */
-const MARGIN = 10;
 
 /** Modes nearer to grazing than this travel so slowly that the window would have to be much longer. */
 const STEEPEST = (60 * Math.PI) / 180;
@@ -95,7 +93,7 @@ export function guideFor(
       precision: 'double',
       currents: { ...sheet(long, across, angles.length), waveforms: [waveform] },
       scale: medium.impedance,
-      activeRegion: { margin: MARGIN },
+      activeRegion: { margin: REFLECTION_MARGIN },
       samples: [
         { cell: Int32Array.from({ length: 3 * (across - 1) }, (_, n) => crossSection(long + SHEET, n)), every: 1 },
       ],
@@ -161,7 +159,7 @@ export interface AngleMeasurement {
   readonly angles: readonly number[];
   /** |R|, one an angle */
   readonly reflected: readonly number[];
-  /** how far these may be off, a ratio too: what leaving out the end of the window changes */
+  /** a ratio that these cannot be told from */
   readonly floor: number;
 }
 
@@ -205,7 +203,7 @@ export function angleReflections(
   return {
     angles: steady.map(({ angle }) => angle),
     reflected: steady.map(({ whole }) => whole),
-    floor: Math.max(0, ...steady.map(({ change }) => change)),
+    floor: reflectionFloor(),
   };
 }
 

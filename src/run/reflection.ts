@@ -76,15 +76,26 @@ export async function measureReflection(
 }
 
 /** What each of the scenario's distinct walls sends back of plane waves, by their angle. */
-export async function measureAngles({ question }: Asked, { team, gridThreads }: Means): Promise<WallAngles[]> {
+export async function measureAngles(
+  { question }: Asked,
+  { team, gridThreads, share = (_, make) => make() }: Means,
+): Promise<WallAngles[]> {
+  const march = async (problem: GridProblem) => (await runGrid(team, problem, null, () => {}, gridThreads)).samples[0]!;
+  const walls = distinctWalls(question.scenario);
+  const guides = walls.map(({ wall, axis }) => guideFor(question, wall, axis));
+  // Cubic cells make one guide without an end for all walls of all cases.
+  const [dx, dy, dz] = question.scenario.grid.cellSize;
+  const common = dx === dy && dy === dz ? await share('guide', () => march(guides[0]!.endless)) : null;
   const found: WallAngles[] = [];
-  for (const { wall, axis, faces } of distinctWalls(question.scenario)) {
-    const guide = guideFor(question, wall, axis);
-    const march = async (problem: GridProblem) =>
-      (await runGrid(team, problem, null, () => {}, gridThreads)).samples[0]!;
-    const withWall = await march(guide.withWall);
-    const measured = angleReflections(guide, withWall, await march(guide.endless));
-    found.push({ wall, faces, frequency: guide.frequency, ...measured });
+  for (const [n, { wall, faces }] of walls.entries()) {
+    const guide = guides[n]!;
+    const endless = common ?? (await march(guide.endless));
+    found.push({
+      wall,
+      faces,
+      frequency: guide.frequency,
+      ...angleReflections(guide, await march(guide.withWall), endless),
+    });
   }
   return found;
 }

@@ -117,7 +117,7 @@ async function breathe(signal: AbortSignal | undefined): Promise<void> {
   signal?.throwIfAborted();
 }
 
-const SHARED = ['free', 'reflectionFree', 'integrals', 'lattice'] as const;
+const SHARED = ['free', 'reflectionFree', 'guide', 'integrals', 'lattice'] as const;
 
 /** Keys of a scenario that none of the shared work depends on. */
 const UNSHARED = new Set(['title', 'tolerance', 'planes', 'grid.boundary']);

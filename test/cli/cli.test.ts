@@ -204,6 +204,8 @@ describe('exact', () => {
 describe('schema and examples', () => {
   test('the schema is JSON with titles and units; every example loads from what is printed', () => {
     expect(JSON.parse(run('schema').stdout).type).toBe('object');
+    expect(JSON.parse(run('schema', 'survey').stdout).required).toEqual(['scenario', 'vary']);
+    expect(run('schema', 'nothing').status).toBe(2);
     const names = run('examples')
       .stdout.trim()
       .split('\n')
@@ -215,7 +217,7 @@ describe('schema and examples', () => {
   });
 
   test('every command has help with an example', () => {
-    for (const command of ['compare', 'exact', 'schema', 'examples']) {
+    for (const command of ['compare', 'exact', 'survey', 'schema', 'examples']) {
       const { status, stdout } = run(command, '--help');
       expect(status).toBe(0);
       expect(stdout).toContain('Example: ');

@@ -13,6 +13,7 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
+import type { Result } from '../../src/compare/result.ts';
 import type { SurveyResult } from '../../src/compare/surveyResult.ts';
 
 /** The built command line, as it is installed. */
@@ -53,6 +54,15 @@ export class SurveyFolder {
 
   run(...args: string[]): { status: number | null; stdout: string; stderr: string } {
     return spawnSync(process.execPath, [MAIN, 'survey', ...args], { cwd: this.path, encoding: 'utf8' });
+  }
+
+  /** What `compare` prints of a scenario. */
+  compare(scenario: string): Result {
+    const { stdout } = spawnSync(process.execPath, [MAIN, 'compare', scenario, '--json'], {
+      cwd: this.path,
+      encoding: 'utf8',
+    });
+    return JSON.parse(stdout);
   }
 
   start(...args: string[]) {
