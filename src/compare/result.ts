@@ -122,6 +122,24 @@ const bandSchema = z.object({
 
 const perField = <Each extends z.ZodType>(each: Each) => ({ field: fieldName, E: each, H: each });
 
+export const remedySchema = z.object({
+  sentence: z.string(),
+  change: z
+    .object({
+      cellSize: vector('dx, dy, dz'),
+      boundary: z.object({ type: z.enum(['cpml', 'mur1', 'pec']), layers: z.int().optional() }),
+      clearance: z.int().describe('cells by which the walls move outwards'),
+      box: z.object({ from: vector('lower corner'), to: vector('upper corner') }),
+      cells: z.number().describe('cells, absorbing layers included'),
+      steps: z.int(),
+      work: z.number().describe('cells × steps, as a multiple of this run’s'),
+      predicted: fraction('the largest predicted error of E'),
+    })
+    .nullable()
+    .describe('the cheapest change whose predicted total meets the tolerance; null where none was found'),
+});
+export type Remedy = z.infer<typeof remedySchema>;
+
 export const verdictSchema = z.object({
   closest: thresholdWith({ ...perField(closestOfField), interval }).describe(
     'closest trusted distance from a source; the worse of E and H',
@@ -135,7 +153,7 @@ export const verdictSchema = z.object({
     field: z.enum(['E', 'H']).nullable(),
     lowEnd: inUnit('Hz', '2/T').nullable(),
   }).describe('the band of the worst observer inside the trusted distances'),
-  remedy: z.unknown().optional().describe('the cheapest change predicted to meet the tolerance'),
+  remedy: remedySchema.optional().describe('absent where the tolerance is met or nothing could be predicted'),
   largestPart: z.enum(['boundary', 'lattice', 'boundaryAndLattice', 'gridding', 'quadrature']).nullable(),
   boundary: z.object({
     description: z.string(),
@@ -190,7 +208,7 @@ const checkSchema = z.object({
   observer: z.string().nullable().describe('the worst point, where it is an observer'),
   field: z.enum(['E', 'H']).nullable(),
   mismatch: fraction('‖free − gridded − predicted‖/‖field‖, the worst, the field being E or ηH, the larger').nullable(),
-  limit: fraction('what it may be: 0.1 %, or three floors').nullable(),
+  limit: fraction('what it may be: 0.1 %, three floors, or what the next order of the prediction may add').nullable(),
   sentence: z.string(),
 });
 

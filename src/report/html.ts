@@ -19,6 +19,7 @@ export function reportHtml({ result, traces, spectra, command }: Report): string
     markup`<p class="muted">Fieldassay ${result.version} · <bdi>${title}</bdi></p>
 <h1>${verdict.sentence}</h1>
 ${within ? null : markup`<p class="outside">Outside the tolerance of ${formatPercent(result.tolerance, 3)}.</p>`}
+${verdict.remedy ? markup`<p>${verdict.remedy.sentence}</p>` : null}
 ${verdict.details.map((detail) => markup`<p>${detail}</p>`)}
 ${result.checks.map(({ status, sentence }) => markup`<p${status === 'differs' ? markup` class="outside"` : null}>${sentence}</p>`)}
 ${budgetSection(result)}

@@ -39,6 +39,7 @@ export function resultText(result: Result, { colour, written = [] }: TextOptions
       ...(result.title === '' ? [] : [printable(result.title)]),
       strong(printable(verdict.sentence)),
       ...(withinTolerance(result) ? [] : [paint(outside, 'outside')]),
+      ...(verdict.remedy ? [printable(verdict.remedy.sentence)] : []),
       ...verdict.details.map(printable),
       ...checks.map(({ status, sentence }) => paint(printable(sentence), status === 'differs' ? 'outside' : 'ink')),
     ],

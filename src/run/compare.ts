@@ -12,6 +12,7 @@ import { Team } from './pool.ts';
 import type { Progress } from './progress.ts';
 import { boxProblem, questionOf } from './question.ts';
 import { Refusal } from './refusal.ts';
+import { withRemedy } from './remedy.ts';
 
 export type { Comparison } from './conclude.ts';
 export { Refusal } from './refusal.ts';
@@ -32,9 +33,10 @@ export interface CompareOptions {
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
   const prepared = prepareCase(jsonOf(input));
-  return await withTeam(options.threads ?? threadsAvailable(), options.signal, (team) =>
-    solvePrepared(prepared, { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) }),
-  );
+  return await withTeam(options.threads ?? threadsAvailable(), options.signal, async (team) => {
+    const means = { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) };
+    return await withRemedy(team, prepared, await solvePrepared(prepared, means));
+  });
 }
 
 /**

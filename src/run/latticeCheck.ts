@@ -28,6 +28,12 @@ const LARGEST_JUMP = 1e-4;
 const MOST_RESPONSES = 60_000;
 
 /**
+ * The next order of a prediction, in units of (kh)² of the part itself, k that of the shortest significant wavelength:
+ * bursts, which have most of their energy near it, leave up to 0.3 of that at 8 cells a wavelength (measured on 40 cases).
+ */
+const NEXT_ORDER = 0.5;
+
+/**
  * The time form leaves out the square of the phase error: half of (what the lattice adds)², relative to the field. Up to
  * here that is below 0.05 %.
  */
@@ -90,7 +96,8 @@ export async function predictLattice(
     values.set(piece, at);
     at += piece.length;
   }
-  return { points, every, values };
+  const perCell = (2 * Math.PI) / cellsPerWavelength;
+  return { points, every, remainder: NEXT_ORDER * perCell * perCell, values };
 }
 
 /** How the measured lattice part compares with its prediction, as it is written. */

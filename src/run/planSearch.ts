@@ -4,7 +4,15 @@ import { distanceToSources } from '../scenario/distance.ts';
 import type { Axis, Scenario, Vec3 } from '../scenario/model.ts';
 import { shortestWavelength } from '../scenario/shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from '../scenario/sites.ts';
-import { type ErrorList, imageLevels, type PlaceErrors, predictFree, reflectionOf } from './predict.ts';
+import {
+  boundaryErrors,
+  type ErrorList,
+  type PlaceErrors,
+  predictFree,
+  predictWalls,
+  type Wall,
+  type WallErrors,
+} from './predict.ts';
 
 /** Where which error is wanted. */
 export interface Goal {
@@ -14,10 +22,8 @@ export interface Goal {
   readonly band: number | null;
 }
 
-export type WallChoice = { readonly type: 'cpml'; readonly layers: number } | { readonly type: 'mur1' };
-
 /** Absorbers of six layers and more, and the simplest wall. */
-export const WALLS: readonly WallChoice[] = [
+export const WALLS: readonly Wall[] = [
   ...[6, 8, 10, 12].map((layers) => ({ type: 'cpml' as const, layers })),
   { type: 'mur1' },
 ];
@@ -28,9 +34,9 @@ export interface Frame {
   readonly holds: Bounds;
   /** a place that is to be a node, m */
   readonly anchor: Vec3;
-  /** ascending, in cells */
+  /** ascending, in cells; the first leaves room for the edges of sources: 1 or more where one ends on what is held */
   readonly clearances: readonly number[];
-  readonly walls: readonly WallChoice[];
+  readonly walls: readonly Wall[];
   /** cells no coarser than the scenario's own, which are tried too: else round ones as coarse as predictions hold for */
   readonly keepsCells: boolean;
 }
@@ -60,8 +66,8 @@ const MOST_FOR_TIME_FORM = 0.04;
 /** Cells with absorber beyond which no plan is made. */
 const MOST_CELLS = 1e12;
 
-/** Round cell sizes tried below the first guess: down to less than half of it. */
-const MOST_STEPS = 12;
+/** Round cell sizes tried below the first guess: down to a third of it or less. */
+const MOST_STEPS = 25;
 
 /**
  * The cheapest set-up (cells × steps, absorber included) whose predicted error meets the goal at every place. For each
@@ -79,7 +85,7 @@ class Search {
   readonly #limit: string;
   readonly #free = new Map<number, PlaceErrors[]>();
   readonly #rough = new Map<number, number>();
-  readonly #images = new Map<string, ErrorList[]>();
+  readonly #walls = new Map<string, WallErrors[]>();
 
   constructor(
     readonly scenario: Scenario,
@@ -111,7 +117,7 @@ class Search {
         // Every wider clearance costs more still.
         if (own !== null && least >= own.work) break;
         if (cheapest !== null && least >= DEAREST * cheapest.work) break;
-        const h = this.#largest(first, (size) => ALLOWED.walls * this.#walls(size, wall, clearance));
+        const h = this.#largest(first, (size) => ALLOWED.walls * this.#boundaryError(size, wall, clearance));
         if (h === null) continue;
         const setup = this.#setup(h, wall, clearance);
         if (own === null || setup.work < own.work) own = setup;
@@ -189,7 +195,7 @@ class Search {
   #roughError(size: number): number {
     let error = this.#rough.get(size);
     if (error === undefined) {
-      const errors = predictFree(...this.#asked(size, 0), 'time');
+      const errors = predictFree(...this.#inFreeSpace(size), 'time');
       error = largestOf(errors.map(({ free }) => free));
       this.#rough.set(size, error);
       if (this.#timeFormServes(error)) this.#free.set(size, errors);
@@ -206,7 +212,7 @@ class Search {
     this.#roughError(size);
     let errors = this.#free.get(size);
     if (!errors) {
-      errors = predictFree(...this.#asked(size, 0), 'spectrum');
+      errors = predictFree(...this.#inFreeSpace(size), 'spectrum');
       this.#free.set(size, errors);
     }
     return errors;
@@ -217,19 +223,24 @@ class Search {
     return largestOf(this.#errors(size).map(({ free }) => free));
   }
 
-  #imagesAt(size: number, clearance: number): ErrorList[] {
+  #wallsAt(size: number, clearance: number): WallErrors[] {
     const key = `${size} ${clearance}`;
-    let images = this.#images.get(key);
-    if (!images) {
-      images = imageLevels(...this.#asked(size, clearance));
-      this.#images.set(key, images);
+    let walls = this.#walls.get(key);
+    if (!walls) {
+      walls = predictWalls(...this.#asked(size, clearance));
+      this.#walls.set(key, walls);
     }
-    return images;
+    return walls;
   }
 
   /** The largest boundary part. */
-  #walls(size: number, wall: WallChoice, clearance: number): number {
-    return reflectionOf(wall)! * largestOf(this.#imagesAt(size, clearance));
+  #boundaryError(size: number, wall: Wall, clearance: number): number {
+    return largestOf(this.#wallsAt(size, clearance).map((errors) => boundaryErrors(errors, wall)));
+  }
+
+  /** Walls play no part, but the box must hold all the edges of a source that ends on what it is to hold. */
+  #inFreeSpace(size: number) {
+    return this.#asked(size, this.frame.clearances[0]!);
   }
 
   #asked(size: number, clearance: number) {
@@ -243,14 +254,14 @@ class Search {
     return nx * ny * nz;
   }
 
-  #setup(size: number, wall: WallChoice, clearance: number): PlannedSetup {
+  #setup(size: number, wall: Wall, clearance: number): PlannedSetup {
     const { grid } = gridded(this.scenario, size / this.#base, this.frame, clearance);
     const places = this.#errors(size);
-    const images = this.#imagesAt(size, clearance);
-    const predicted = Math.max(...places.map(({ free }, p) => totalOf(free, images[p]!, reflectionOf(wall)!)));
+    const walls = this.#wallsAt(size, clearance);
+    const predicted = Math.max(...places.map(({ free }, p) => totalOf(free, boundaryErrors(walls[p]!, wall))));
     const timeStep = timeStepOf(grid, this.scenario.medium);
     const steps = Math.max(1, stepsOf(this.scenario.duration, timeStep));
-    const layers = wall.type === 'cpml' ? wall.layers : 0;
+    const layers = wall.layers ?? 0;
     const sides = grid.cells.map((n) => n + 2 * layers);
     const cells = sides.reduce((product, n) => product * n, 1);
     const real = grid.precision === 'single' ? 4 : 8;
@@ -258,7 +269,7 @@ class Search {
     const layered = sides.reduce((sum, n) => sum + (2 * layers * cells) / n, 0);
     return {
       cellSize: grid.cellSize,
-      boundary: wall.type === 'cpml' ? { type: 'cpml', layers: wall.layers } : { type: wall.type },
+      boundary: { ...wall },
       clearance,
       box: grid.box,
       shape: grid.cells,
@@ -273,22 +284,22 @@ class Search {
 
   #places({ cellSize, clearance, boundary }: PlannedSetup): PlannedPlace[] {
     const size = Math.max(...cellSize);
-    const share = reflectionOf(boundary)!;
     const [{ grid }, { cells }] = this.#asked(size, clearance);
     const errors = this.#errors(size);
-    const images = this.#imagesAt(size, clearance);
+    const walls = this.#wallsAt(size, clearance);
     return this.goal.places.map(({ name, at }, p) => {
       const { free, lattice, gridding } = errors[p]!;
+      const sentBack = boundaryErrors(walls[p]!, boundary);
       const node = (a: Axis) => grid.box.from[a] + cells[3 * p + a]! * grid.cellSize[a];
       return {
         name,
         at,
         snapped: [node(0), node(1), node(2)],
-        total: totalOf(free, images[p]!, share),
+        total: totalOf(free, sentBack),
         free: Math.max(...free),
         lattice: Math.max(...lattice),
         gridding: Math.max(...gridding),
-        boundary: share * Math.max(...images[p]!),
+        boundary: Math.max(...sentBack),
         measured: null,
       };
     });
@@ -298,8 +309,7 @@ class Search {
   #curve({ cellSize, clearance, boundary }: PlannedSetup): PlannedSetup[] {
     const chosen = Math.max(...cellSize);
     const sizes = CURVE.map((factor) => roundDown(factor * chosen)).filter((size) => size <= this.#coarsest);
-    const wall = boundary as WallChoice;
-    return [...new Set([...sizes, chosen])].sort((a, b) => b - a).map((size) => this.#setup(size, wall, clearance));
+    return [...new Set([...sizes, chosen])].sort((a, b) => b - a).map((size) => this.#setup(size, boundary, clearance));
   }
 }
 
@@ -316,8 +326,8 @@ const DEAREST = 30;
 const NEXT = 1.1;
 
 /** Errors of two parts whose signs towards each other are unknown, added: the largest over places and bands. */
-const totalOf = (free: ErrorList, images: ErrorList, share: number): number =>
-  free.reduce((most, e, m) => Math.max(most, e + share * images[m]!), 0);
+const totalOf = (free: ErrorList, boundary: ErrorList): number =>
+  free.reduce((most, e, m) => Math.max(most, e + boundary[m]!), 0);
 
 const largestOf = (lists: readonly ErrorList[]): number => Math.max(...lists.map((list) => Math.max(...list)));
 

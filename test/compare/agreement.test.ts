@@ -1,6 +1,5 @@
 import { describe, expect, it } from 'vitest';
 import { agreementSentence, latticeAgreement, type PredictedLattice } from '../../src/compare/agreement.ts';
-import type { FieldHistory } from '../../src/trace/trace.ts';
 import { fieldOf, gaussian, levelsOf, scaled, sum } from './synthetic.ts';
 
 const gridded = fieldOf(3, 150, (p, c, t) => (c + 1 + p) * gaussian(t, 70, 12));
@@ -8,7 +7,7 @@ const lattice = scaled(gridded, 0.02);
 const free = sum(gridded, lattice);
 
 /** A prediction of some points at every third instant, off by a fraction of the field. */
-function predicted(points: readonly number[], off: number, of: FieldHistory = lattice): PredictedLattice {
+function predicted(points: readonly number[], off: number, remainder = 0): PredictedLattice {
   const every = 3;
   const thinned = 50;
   const values = new Float64Array(points.length * 6 * thinned);
@@ -16,10 +15,10 @@ function predicted(points: readonly number[], off: number, of: FieldHistory = la
     for (let c = 0; c < 6; c++)
       for (let m = 0; m < thinned; m++) {
         const n = (point * 6 + c) * 150 + 149 - (thinned - 1 - m) * every;
-        values[(index * 6 + c) * thinned + m] = of.values[n]! + off * gridded.values[n]!;
+        values[(index * 6 + c) * thinned + m] = lattice.values[n]! + off * gridded.values[n]!;
       }
   });
-  return { points: Int32Array.from(points), every, values };
+  return { points: Int32Array.from(points), every, remainder, values };
 }
 
 describe('agreement of the lattice part with its prediction', () => {
@@ -44,7 +43,7 @@ describe('agreement of the lattice part with its prediction', () => {
       magnetic,
       fieldOf(1, 150, (_, c, t) => (c < 3 ? 0.1 * gaussian(t, 75, 12) : 0)),
     );
-    const nothing = { points: Int32Array.of(0), every: 1, values: new Float64Array(900) };
+    const nothing = { points: Int32Array.of(0), every: 1, remainder: 0, values: new Float64Array(900) };
     // E of amplitude 0.1 against ηH of amplitude 377.
     const found = latticeAgreement({ free: stray, gridded: magnetic }, nothing, levelsOf(), 377);
     expect(found.status).toBe('agrees');
@@ -59,6 +58,12 @@ describe('agreement of the lattice part with its prediction', () => {
     expect(latticeAgreement({ free, gridded }, predicted([1], 0.2), levelsOf({ rounding: 0.01 }), 1).status).toBe(
       'differs',
     );
+  });
+
+  it('allows for the next order of the prediction, a fraction of what is predicted', () => {
+    // The lattice part is 2 % of the field: a tenth of it is 0.2 %.
+    const at = (off: number) => latticeAgreement({ free, gridded }, predicted([1], off, 0.1), levelsOf(), 1).status;
+    expect([at(0.0018), at(0.0023)]).toEqual(['agrees', 'differs']);
   });
 
   it('is not judged without a prediction, without free space, or without a field; and says why', () => {

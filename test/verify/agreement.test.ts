@@ -21,6 +21,7 @@ test('half a time step, a current of 1 % too much and a missing edge are seen; a
   const predicted = {
     points: Int32Array.of(0, 1),
     every: 1,
+    remainder: 0.5 * ((2 * Math.PI) / question.cellsPerWavelength) ** 2,
     values: predictLatticeError(gridded.edges, lattice, solver.points, solver.instants),
   };
   const filaments = solver.gridded();
