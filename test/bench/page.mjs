@@ -61,7 +61,7 @@ async function visit(browser, url) {
     timeout: 120_000,
   });
   const seen = await page.evaluate(() => ({
-    first: performance.getEntriesByName('picture')[0].startTime,
+    first: performance.getEntriesByName('first picture')[0].startTime,
     verdict: performance.getEntriesByName('verdict')[0].startTime,
   }));
   return { page, context, ...seen };
@@ -78,7 +78,7 @@ async function longestTask(browser, url) {
   });
   const { traceEvents } = JSON.parse(String(await browser.stopTracing()));
   await context.close();
-  const first = traceEvents.filter(({ name }) => name === 'picture').toSorted((a, b) => a.ts - b.ts)[0];
+  const first = traceEvents.filter(({ name }) => name === 'first picture').toSorted((a, b) => a.ts - b.ts)[0];
   const tasks = traceEvents.filter(
     ({ name, pid, tid, ts, tdur }) =>
       name.endsWith('RunTask') && pid === first.pid && tid === first.tid && ts > first.ts && tdur,

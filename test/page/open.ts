@@ -61,4 +61,5 @@ export async function judged(page: Page): Promise<void> {
   await page.waitForFunction(() => globalThis.fieldassay?.store.state.result, undefined, { timeout: 90_000 });
 }
 
-export const textOfPage = (page: Page, selector: string): Promise<string> => page.locator(selector).first().innerText();
+export const textOfPage = async (page: Page, selector: string): Promise<string> =>
+  (await page.locator(selector).first().textContent()) ?? '';

@@ -173,11 +173,11 @@ describe('the page, used', () => {
     const before = await textOfPage(page, '#timeline output');
     const milliseconds = await page.evaluate(async () => {
       const slider = document.querySelector<HTMLInputElement>('#timeline input[type=range]')!;
-      const drawn = performance.getEntriesByName('picture').length;
+      const { drawn } = fieldassay.panes;
       const start = performance.now();
       slider.value = '60';
       slider.dispatchEvent(new Event('input'));
-      while (performance.getEntriesByName('picture').length === drawn) await new Promise(requestAnimationFrame);
+      while (fieldassay.panes.drawn === drawn) await new Promise(requestAnimationFrame);
       return performance.now() - start;
     });
     console.log(`from a scrub to its picture: ${milliseconds.toFixed(1)} ms`);
@@ -192,7 +192,7 @@ describe('the page, used', () => {
     await page.keyboard.press(' ');
     await page.keyboard.press('?');
     await page.getByRole('dialog').waitFor();
-    expect(await page.getByRole('dialog').innerText()).toContain('play or pause');
+    expect(await page.getByRole('dialog').textContent()).toContain('play or pause');
     await page.keyboard.press('Escape');
     for (const key of ['2', '3', '1', 'd', 'c', 'o', 'x', '0', 'q', 't', 'n', ']', 'Shift+ArrowLeft', '+'])
       await page.keyboard.press(key);
@@ -244,7 +244,7 @@ describe('the page, used', () => {
     const before = await page.evaluate(() => fieldassay.store.state.text);
     await drop('broken.json', '{ "sources": [ }');
     await page.getByRole('alert').waitFor();
-    expect(await page.getByRole('alert').innerText()).toMatch(/broken\.json was not opened.*line 1/s);
+    expect(await page.getByRole('alert').textContent()).toMatch(/broken\.json was not opened.*line 1/s);
     expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
     await drop('list.json', '[1, 2]');
     await page.getByRole('alert').nth(1).waitFor();
@@ -351,6 +351,9 @@ describe('the page, used', () => {
   test('a click adds and names an observer, whose traces are then shown', async () => {
     const { page, troubles } = await openPage(browser, small);
     await finished(page);
+    // the progress row has gone, and the panes have taken its room
+    await page.waitForFunction(() => document.querySelector<HTMLElement>('#run')!.hidden);
+    await page.waitForTimeout(300);
     const place = await page.evaluate(() => {
       const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
       for (let x = 60; x < canvas.width / 3; x += 7)
@@ -384,6 +387,88 @@ describe('the page, used', () => {
     });
     await page.waitForFunction(() => document.querySelector('#charts')?.textContent?.includes('observer probe'));
     expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+});
+
+describe('planes', () => {
+  /** Where a pane shows a point, CSS pixels of the window: by the camera's own matrices. */
+  const placeOf = (page: Page, pane: number, marker: string) =>
+    page.evaluate(
+      ([n, name]) => {
+        const { area, markers, camera } = fieldassay.panes.scene!.panes[n as number]!;
+        const { at } = markers.find(({ name: each }) => each.startsWith(name as string))!;
+        const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
+        const bounds = canvas.getBoundingClientRect();
+        const ratio = canvas.width / bounds.width;
+        const height = area.height - 74 * ratio;
+        const seen = camera.position
+          .clone()
+          .set(...(at as [number, number, number]))
+          .project(camera);
+        const aspect = 'aspect' in camera ? camera.aspect : 1;
+        const x = area.x + area.width / 2 + (seen.x * aspect * height) / 2;
+        const y = area.y + 30 * ratio + ((1 - seen.y) * height) / 2;
+        return { x: bounds.left + x / ratio, y: bounds.top + y / ratio };
+      },
+      [pane, marker] as const,
+    );
+
+  test('are dragged by their corner: the films follow, the verdict stands; undo brings them back', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await finished(page);
+    await page.waitForTimeout(300);
+    const before = await page.evaluate(() => ({
+      layer: fieldassay.store.state.film!.films[0]!.slice.layer,
+      seconds: fieldassay.store.state.result!.timings.box.seconds,
+    }));
+    const grip = await placeOf(page, 1, '↔');
+    await page.mouse.move(grip.x, grip.y);
+    await page.mouse.down();
+    await page.mouse.move(grip.x - 10, grip.y + 6, { steps: 4 });
+    await page.mouse.move(grip.x - 24, grip.y + 14, { steps: 4 });
+    await page.mouse.up();
+    await page.waitForFunction(
+      (layer) =>
+        fieldassay.store.state.film!.films[0]!.slice.layer !== layer && fieldassay.store.state.film!.exactKnown,
+      before.layer,
+    );
+    await finished(page);
+    const after = await page.evaluate(() => ({
+      at: fieldassay.store.state.scenario!.planes[0]!.at,
+      layer: fieldassay.store.state.film!.films[0]!.slice.layer,
+      seconds: fieldassay.store.state.result!.timings.box.seconds,
+    }));
+    expect(after.seconds).toBe(before.seconds);
+    expect(after.layer).toBe(Math.round((after.at + 0.1) / 0.01));
+    await page.locator('#sentence').click();
+    await page.keyboard.press('Control+z');
+    await page.waitForFunction((layer) => fieldassay.store.state.film!.films[0]!.slice.layer === layer, before.layer);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('the trust map agrees with the errors that the comparison found at an observer', async () => {
+    const { page } = await openPage(
+      browser,
+      served.url + (await linkOf(textOf({ ...SMALL, planes: [{ name: 'through A', normal: 'y', at: '-20 mm' }] }))),
+    );
+    await finished(page);
+    const { E, H, largest, result } = await page.evaluate(() => {
+      const { film, result: found } = fieldassay.store.state;
+      const { trust, slice } = film!.films[0]!;
+      // node (7, 8, 11) of the box, 10 mm apart from −100 mm
+      const p = 11 * slice.nu + 7;
+      return { E: trust!.E[p]!, H: trust!.H[p]!, largest: trust!.largest[p]!, result: found! };
+    });
+    const [observer] = result.observers;
+    console.log(`E: map ${E}, observer ${observer!.E!.relativeL2}; H: map ${H}, observer ${observer!.H!.relativeL2}`);
+    // the film keeps every second instant, at a sixth of the pulse's shortest period: its sums differ by far less than this
+    expect(E / observer!.E!.relativeL2!).toBeCloseTo(1, 3);
+    expect(H / observer!.H!.relativeL2!).toBeCloseTo(1, 3);
+    const parts = ['boundary', 'lattice', 'gridding'] as const;
+    const shares = parts.map((part) => observer!.budget![part]!.share!);
+    expect(parts[largest]).toBe(parts[shares.indexOf(Math.max(...shares))]);
     await page.context().close();
   });
 });
