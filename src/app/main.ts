@@ -8,9 +8,10 @@ import { listenToKeys } from './keys.ts';
 import { linkOf, scenarioOfLink } from './link.ts';
 import { nameObserver } from './naming.ts';
 import { notify } from './notice.ts';
-import { Panes, type Reading } from './panes.ts';
+import { Panes } from './panes.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
+import { type Reading, Scenery } from './scenery.ts';
 import { Side } from './side.ts';
 import { Store, textOf } from './store.ts';
 import { firstTheme, followTheme, switchTheme } from './theme.ts';
@@ -24,7 +25,9 @@ const SETTLE = 250;
 const store = new Store(firstTheme());
 followTheme(store);
 const runner = new Runner(store);
-const panes = new Panes(store, runner, showReading, (place, x, y) => nameObserver(store, place, x, y));
+const panes = new Panes(store, new Scenery(store, runner), showReading, (place, x, y) =>
+  nameObserver(store, place, x, y),
+);
 buildToolbar(store, panes);
 const timeline = new Timeline(store);
 const charts = new Charts(store);

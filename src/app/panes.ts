@@ -1,32 +1,22 @@
 import { OrthographicCamera, PerspectiveCamera, Vector3 } from 'three';
 import { OrbitControls } from 'three/addons/controls/OrbitControls.js';
-import { NEUTRALS, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
-import { contours } from '../draw/contour.ts';
 import { viewOf } from '../draw/display.ts';
-import { absorberEdges, boxEdges, contourLines, planeOutline, wire } from '../draw/furniture.ts';
-import { type Hit, paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
+import { paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
 import { Picture } from '../draw/picture.ts';
 import { type Box, cameraFor, type Camera as PaneCamera, type Rectangle } from '../draw/projection.ts';
-import type { Marker, Pane, Plane, Scene, Stroke } from '../draw/scene.ts';
-import { formatQuantity } from '../elementary/quantity.ts';
-import { PALETTE } from '../report/palette.ts';
-import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
+import type { Scene } from '../draw/scene.ts';
+import type { Vec3 } from '../scenario/model.ts';
 import { byId } from './dom.ts';
-import type { Film } from './film.ts';
 import { paintLabels } from './labels.ts';
-import { distanceOutlines, Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
-import { quantityOf } from './quantity.ts';
-import { planesShown, type Runner } from './runner.ts';
+import { planesShown } from './runner.ts';
+import { gripOf, type Reading, type Scenery } from './scenery.ts';
 import type { Store } from './store.ts';
-import { currentOn, type DrawnSource, drawnSources, largestCurrent } from './wires.ts';
 
 /** Image pixels that are drawn at most: beyond, the image is drawn smaller and stretched, the texts are not. */
 const MOST_PIXELS = 2.4e6;
 
 /** In narrow windows the panes stand one above the other; page.css makes room for them. */
 const NARROW = '(max-width: 900px)';
-
-const TITLES: Readonly<Record<Side, string>> = { grid: 'Grid field', exact: 'Exact field', difference: 'Difference' };
 
 /** Panes lower than this, CSS pixels, leave the lengths below the box less room. */
 const LOW = 330;
@@ -40,39 +30,18 @@ export const VIEWS = {
 } as const satisfies Record<string, Vec3>;
 export type ViewName = keyof typeof VIEWS;
 
-/** What lies under the pointer, with the values of all three pictures there. */
-export interface Reading {
-  readonly hit: Hit;
-  readonly unit: string;
-  readonly label: string;
-  readonly grid: number;
-  readonly exact: number;
-  /** point errors, where a trust map is shown */
-  readonly trust?: { readonly E: number; readonly H: number };
-}
-
-interface Furniture {
-  readonly scenario: Scenario;
-  readonly sources: readonly DrawnSource[];
-  readonly outer: Box;
-  readonly current: SignedScale;
-}
-
 /** The panes: one image for all, drawn when something in it has changed. */
 export class Panes {
   private readonly canvas = byId<HTMLCanvasElement>('panes-image');
   private readonly texts = byId<HTMLCanvasElement>('panes-texts');
   private readonly host = byId('panes');
-  private readonly pictures = new Pictures();
   private picture = new Picture(1, 1);
   private ratio = 1;
   private narrowness = 1;
   private camera: PaneCamera = new PerspectiveCamera();
   private controls: OrbitControls | undefined;
-  private furniture: Furniture | undefined;
-  private masks:
-    | { readonly film: Film; readonly mask: number; readonly theme: Theme; readonly strokes: Stroke[] }
-    | undefined;
+  /** the box that the camera was set up for */
+  private box: Box | undefined;
   private dirty = false;
   private drag:
     | { readonly plane: number; readonly from: Vec3; readonly normal: Vec3; at: number; readonly pane: number }
@@ -87,7 +56,7 @@ export class Panes {
 
   constructor(
     private readonly store: Store,
-    private readonly runner: Runner,
+    private readonly scenery: Scenery,
     private readonly onRead: (reading: Reading | undefined) => void,
     private readonly onPick: (place: Vec3, x: number, y: number) => void,
   ) {
@@ -207,38 +176,18 @@ export class Panes {
     });
   }
 
-  private ready(): Furniture | undefined {
-    const { scenario } = this.store.state;
-    if (!scenario) return undefined;
-    if (this.furniture?.scenario === scenario) return this.furniture;
-    const { from, to } = scenario.grid.box;
-    const layers = (face: number, a: number) => {
-      const wall = scenario.grid.boundary[FACES[face]!];
-      return wall.type === 'cpml' ? wall.layers * scenario.grid.cellSize[a]! : 0;
-    };
-    const outer: Box = {
-      from: [0, 1, 2].map((a) => from[a]! - layers(2 * a, a)) as unknown as Vec3,
-      to: [0, 1, 2].map((a) => to[a]! + layers(2 * a + 1, a)) as unknown as Vec3,
-    };
-    const before = this.furniture?.scenario.grid.box;
-    this.furniture = {
-      scenario,
-      sources: drawnSources(scenario),
-      outer,
-      current: { kind: 'signed', limit: largestCurrent(scenario), label: 'I, A' },
-    };
-    if (!before || JSON.stringify(before) !== JSON.stringify(scenario.grid.box))
-      this.setCamera(before ? undefined : VIEWS.corner);
-    return this.furniture;
-  }
-
   private draw(): void {
-    const furniture = this.ready();
-    if (!furniture || this.canvas.width < 2) return;
+    const { scenario, theme, view } = this.store.state;
+    if (!scenario || this.canvas.width < 2) return;
+    if (!sameBox(this.box, scenario.grid.box)) {
+      this.setCamera(this.box ? undefined : VIEWS.corner);
+      this.box = scenario.grid.box;
+    }
     const started = performance.now();
     const kind = this.camera instanceof PerspectiveCamera ? 'perspective' : 'orthographic';
-    if (kind !== this.store.state.view.projection) this.setCamera();
-    this.scene = this.sceneOf(furniture);
+    if (kind !== view.projection) this.setCamera();
+    const areas = this.areas(this.paneCount());
+    this.scene = { theme, pixelRatio: this.ratio, panes: this.scenery.panes(this.camera, areas) };
     const labels = this.picture.draw(this.scene);
     const { bytes, width, height } = this.picture.surface;
     this.canvas.getContext('2d')!.putImageData(new ImageData(bytes, width, height), 0, 0);
@@ -246,176 +195,11 @@ export class Panes {
     const ends = panes.map((pane) => viewOf(pane, pixelRatio)).map(({ y, height: h }) => y + h);
     // a length that would lie over the colour bar is left out
     const shown = labels.filter(({ role, pane, y }) => role !== 'tick' || y < ends[pane]! - 3 * pixelRatio);
-    paintLabels(this.texts, shown, this.store.state.theme, this.ratio);
+    paintLabels(this.texts, shown, theme, this.ratio);
     this.costs.push(performance.now() - started);
     if (this.costs.length > 600) this.costs.shift();
     this.drawn++;
     if (this.drawn === 1) performance.mark('first picture');
-  }
-
-  private sceneOf(furniture: Furniture): Scene {
-    const { view, theme } = this.store.state;
-    const panes = view.layout === 'trust' ? this.trustPanes(furniture) : this.fieldPanes(furniture);
-    return { theme, pixelRatio: this.ratio, panes };
-  }
-
-  private fieldPanes(furniture: Furniture): Pane[] {
-    const { film, view, frame } = this.store.state;
-    const { scenario } = furniture;
-    const quantity = quantityOf(view.quantity);
-    if (film && quantity.kind === 'potential') this.runner.wantPotentials(frame);
-    const scales =
-      film && this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);
-    const planes = (side: Side): Plane[] =>
-      scales && film?.films[0] ? this.pictures.planes(film, scenario, quantity, frame, side, scales[side]) : [];
-    const strokes = this.strokesOf(furniture);
-    const common = { camera: this.camera, markers: this.markersOf(scenario), axes: scenario.grid.box };
-    const lines = (exact: readonly Plane[]): Stroke[] => {
-      const field = scales?.exact;
-      if (field?.kind !== 'signed') return [];
-      const { limit } = field;
-      return exact.map((plane) =>
-        contourLines(
-          plane,
-          [0.1, 0.3, 0.5, 0.7, 0.9].map((s) => s * limit),
-          NEUTRALS[this.store.state.theme],
-        ),
-      );
-    };
-    const withScale = (scale: Scale | undefined) => (scale ? { scale } : {});
-    const onOneSide = quantity.kind === 'potential';
-    const quantityTitle = (side: Side) =>
-      onOneSide && side !== 'exact'
-        ? `${TITLES[side]}: the grid has no ${quantity.label}`
-        : `${TITLES[side]}, ${quantity.label}`;
-    if (view.layout === 'overlay') {
-      const [grid, exact] = [planes('grid'), planes('exact')];
-      return [
-        {
-          ...common,
-          area: this.areas(1)[0]!,
-          title: `${quantity.label}: grid on the left of the divider, exact on its right; lines are the exact field’s contours`,
-          planes: grid,
-          overlay: { divider: view.divider, planes: exact },
-          strokes: [...strokes, ...lines(exact)],
-          ...withScale(scales?.grid),
-        },
-      ];
-    }
-    return (['grid', 'exact', 'difference'] as const).map((side, n) => ({
-      ...common,
-      area: this.areas(3)[n]!,
-      title: quantityTitle(side),
-      planes: planes(side),
-      strokes:
-        side === (onOneSide ? 'exact' : 'grid') && view.contours ? [...strokes, ...lines(planes('exact'))] : strokes,
-      ...withScale(scales?.[side]),
-    }));
-  }
-
-  private trustPanes(furniture: Furniture): Pane[] {
-    const { film, result, theme } = this.store.state;
-    const { scenario } = furniture;
-    const scales = {
-      E: trustScale(scenario.tolerance, 'E'),
-      H: trustScale(scenario.tolerance, 'H'),
-      largest: partScale(theme),
-    };
-    const outside = packed(PALETTE.outside[theme]);
-    const { ink, muted } = NEUTRALS[theme];
-    const verdict = result?.verdict;
-    const bounds = (limit: object | undefined, colour: number): Stroke[] =>
-      film && limit && 'distance' in limit
-        ? distanceOutlines(film, scenario, limit.distance as number, colour).map((s) => ({
-            ...s,
-            width: 1.6,
-            dash: [5, 3],
-          }))
-        : [];
-    const distances = [...bounds(verdict?.closest, ink), ...bounds(verdict?.farthest, muted)];
-    const strokesOn = (planes: readonly Plane[]): Stroke[] => [
-      ...planes.map((plane): Stroke => {
-        const points = contours(plane, [scenario.tolerance]);
-        return { points, form: 'segments', colour: outside, width: 1.8 };
-      }),
-      ...distances,
-    ];
-    const clearance =
-      verdict?.wallClearance.status === 'crossing' ? [clearanceBox(scenario, verdict.wallClearance.distance, ink)] : [];
-    const titles = { E: 'Error of E', H: 'Error of H', largest: 'Largest part of E’s error' };
-    return (['E', 'H', 'largest'] as const).map((which, n) => {
-      const planes = film ? trustPlanes(film, scenario, which, scales[which]) : [];
-      return {
-        camera: this.camera,
-        markers: this.markersOf(scenario),
-        axes: scenario.grid.box,
-        area: this.areas(3)[n]!,
-        title: planes.length > 0 ? titles[which] : `${titles[which]}: not known yet`,
-        planes,
-        strokes: [...this.strokesOf(furniture), ...clearance, ...(which === 'largest' ? [] : strokesOn(planes))],
-        scale: scales[which],
-      };
-    });
-  }
-
-  private strokesOf({ scenario, sources, outer, current }: Furniture): Stroke[] {
-    const { film, frame, theme } = this.store.state;
-    const neutrals = NEUTRALS[theme];
-    const t = film ? film.instants.E[frame]! : 0;
-    const absorber =
-      JSON.stringify(outer) === JSON.stringify(scenario.grid.box) ? [] : [absorberEdges(outer, neutrals)];
-    const wires = sources.flatMap((source) => wire(source.points, currentOn(source, t), current, theme, neutrals));
-    const dragged = this.drag ? this.draggedRim() : [];
-    return [...absorber, boxEdges(scenario.grid.box, neutrals), ...this.maskStrokes(scenario), ...wires, ...dragged];
-  }
-
-  /** The outlines of the mask, kept while film and mask are the same. */
-  private maskStrokes(scenario: Scenario): Stroke[] {
-    const { film, theme } = this.store.state;
-    if (!film) return [];
-    const { mask } = scenario.grid;
-    if (this.masks?.film === film && this.masks.mask === mask && this.masks.theme === theme) return this.masks.strokes;
-    const strokes = distanceOutlines(film, scenario, mask, NEUTRALS[theme].muted).map(
-      (stroke): Stroke => ({ ...stroke, dash: [2, 3] }),
-    );
-    this.masks = { film, mask, theme, strokes };
-    return strokes;
-  }
-
-  private markersOf(scenario: Scenario): Marker[] {
-    const { theme, view } = this.store.state;
-    const { ink, muted } = NEUTRALS[theme];
-    const observers = scenario.observers.map(({ at, name }) => ({
-      at,
-      name,
-      colour: name === view.observer ? ink : muted,
-    }));
-    const grips = planesShown(scenario).map((plane, n) => ({
-      at: this.gripOf(scenario, n),
-      name: `↔ ${'xyz'[plane.normal]} = ${formatQuantity(this.drag?.plane === n ? this.drag.at : plane.at, 'm')}`,
-      colour: muted,
-    }));
-    return [...observers, ...grips];
-  }
-
-  /** The corner of a plane by which it is taken. */
-  private gripOf({ grid, ...scenario }: Scenario, n: number): Vec3 {
-    const plane = planesShown({ grid, ...scenario })[n]!;
-    return [0, 1, 2].map((a) =>
-      a === plane.normal ? (this.drag?.plane === n ? this.drag.at : plane.at) : grid.box.to[a]!,
-    ) as unknown as Vec3;
-  }
-
-  private draggedRim(): Stroke[] {
-    const { scenario } = this.store.state;
-    const { drag } = this;
-    if (!scenario || !drag) return [];
-    const { normal } = planesShown(scenario)[drag.plane]!;
-    const [u, v] = [0, 1, 2].filter((a) => a !== normal) as [number, number];
-    const { from, to } = scenario.grid.box;
-    const edge = (axis: number) => [0, 1, 2].map((a) => (a === axis ? to[a]! - from[a]! : 0)) as unknown as Vec3;
-    const origin = from.map((x, a) => (a === normal ? drag.at : x)) as unknown as Vec3;
-    return [{ ...planeOutline({ origin, u: edge(u), v: edge(v) }, NEUTRALS[this.store.state.theme]), width: 2 }];
   }
 
   // ------------------------------------------------------------------------------------------------------------ pointer
@@ -448,13 +232,13 @@ export class Panes {
     }
     const marker = pickMarker(scene, x, y, 12 * this.ratio);
     const pane = paneAt(scene, x, y);
-    const n = planesShown(scenario).findIndex((_, k) => sameVec(this.gripOf(scenario, k), marker?.at));
+    const n = planesShown(scenario).findIndex((_, k) => sameVec(gripOf(scenario, k), marker?.at));
     if (n < 0 || pane === undefined) return;
     const { normal, at } = planesShown(scenario)[n]!;
     this.drag = {
       plane: n,
       pane,
-      from: this.gripOf(scenario, n),
+      from: gripOf(scenario, n),
       normal: [0, 1, 2].map((a) => (a === normal ? 1 : 0)) as unknown as Vec3,
       at,
     };
@@ -485,6 +269,7 @@ export class Panes {
       const nodes = Math.round((drag.from[axis]! + moved - box.from[axis]!) / cellSize[axis]!);
       const last = scenario.grid.cells[axis]! - 1;
       drag.at = box.from[axis]! + Math.min(last, Math.max(1, nodes)) * cellSize[axis]!;
+      this.scenery.moving = drag;
       this.invalidate();
       return;
     }
@@ -501,6 +286,7 @@ export class Panes {
     }
     if (drag) {
       this.drag = undefined;
+      this.scenery.moving = undefined;
       this.movePlane(drag.plane, drag.at);
       this.invalidate();
       return;
@@ -532,26 +318,7 @@ export class Panes {
 
   /** The values of all pictures under a place in the image. */
   readingAt(x: number, y: number): Reading | undefined {
-    const { scene, store } = this;
-    const { film, scenario, view, frame } = store.state;
-    if (!scene || !film || !scenario) return undefined;
-    const hit = pick(scene, x, y);
-    if (!hit) return undefined;
-    const n = film.films.findIndex(({ slice }) => slice.name === hit.plane.name);
-    if (view.layout === 'trust') {
-      const map = film.films[n]?.trust;
-      const p = hit.j * hit.plane.nu + hit.i;
-      return (
-        map && { hit, unit: '', label: '', grid: Number.NaN, exact: Number.NaN, trust: { E: map.E[p]!, H: map.H[p]! } }
-      );
-    }
-    const quantity = quantityOf(view.quantity);
-    const scales = this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);
-    const value = (side: 'grid' | 'exact') =>
-      this.pictures.planes(film, scenario, quantity, frame, side, scales[side])[n]!.values[
-        hit.j * hit.plane.nu + hit.i
-      ]!;
-    return { hit, unit: quantity.unit, label: quantity.label, grid: value('grid'), exact: value('exact') };
+    return this.scene && this.scenery.readingAt(this.scene, x, y);
   }
 
   /** The image with its texts, as it stands, for files. */
@@ -576,13 +343,7 @@ function canvasCapture(canvas: HTMLCanvasElement, pointer: number): void {
   if (canvas.hasPointerCapture?.(pointer) === false) canvas.setPointerCapture(pointer);
 }
 
-const sameVec = (a: Vec3, b: Vec3 | undefined): boolean => a.every((x, k) => x === b?.[k]);
+const sameBox = (a: Box | undefined, b: Box): boolean =>
+  a !== undefined && sameVec(a.from, b.from) && sameVec(a.to, b.to);
 
-/** What the walls leave: the box without the clearance on every side. */
-function clearanceBox({ grid }: Scenario, clearance: number, colour: number): Stroke {
-  const inner: Box = {
-    from: grid.box.from.map((x) => x + clearance) as unknown as Vec3,
-    to: grid.box.to.map((x) => x - clearance) as unknown as Vec3,
-  };
-  return { ...boxEdges(inner, { line: colour, background: 0, ink: colour, muted: colour }), dash: [6, 4] };
-}
+const sameVec = (a: Vec3, b: Vec3 | undefined): boolean => a.every((x, k) => x === b?.[k]);
