@@ -166,34 +166,52 @@ function advance<F, W, X, Y, Z>(
   v128.store(p, accumulated(az, cz, dxBy, dyBx), isFloat<F>() ? EZ : HZ);
 }
 
+/** `bytes` of a row from p on, all with the same switches; nothing when there are none. */
+// @ts-ignore: decorator
+@inline
+function span<F, W, X, Y, Z>(
+  p: usize, bytes: i32, cx: v128, cy: v128, cz: v128, w: usize,
+  qx: usize, qy: usize, bY: v128, aY: v128, iY: v128, qz: usize, bZ: v128, aZ: v128, iZ: v128,
+): void {
+  const toY = isFloat<F>() ? <usize>0 - rowBytes : rowBytes;
+  const toZ = isFloat<F>() ? <usize>0 - planeBytes : planeBytes;
+  for (const end = p + <usize>max(bytes, 0); p < end; p += VECTOR) {
+    advance<F, W, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
+    if (isFloat<W>()) w += WINDOW_BYTES;
+    if (isFloat<X>()) qx += PAIR;
+    if (isFloat<Y>()) qy += PAIR;
+    if (isFloat<Z>()) qz += PAIR;
+  }
+}
+
 /** Vectors [x0, x1) of rows [j0, j1) of plane k, all with the same switches. */
 function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Real, cellY: Real, cellZ: Real): void {
   const cx = v128.splat<Real>(cellX);
   const cy = v128.splat<Real>(cellY);
   const cz = v128.splat<Real>(cellZ);
-  const toY = isFloat<F>() ? <usize>0 - rowBytes : rowBytes;
-  const toZ = isFloat<F>() ? <usize>0 - planeBytes : planeBytes;
 
-  // The three parts of a row, in bytes; those that are empty have a negative length.
+  // Where low window, middle and high window of these vectors start, and their bytes (none where not positive).
+  const fromMiddle = max(x0, windowLow);
+  const fromHigh = max(x0, windowHigh);
   const low = (min(x1, windowLow) - x0) << 4;
-  const middle = (min(x1, windowHigh) - max(x0, windowLow)) << 4;
-  const skipped = max(x0, windowHigh) - windowHigh;
-  const high = (x1 - windowHigh - skipped) << 4;
-  const table = isFloat<F>() ? windowsElectric : windowsMagnetic;
-  const tableLow = table + <usize>x0 * WINDOW_BYTES;
-  const tableHigh = table + <usize>(windowLow + skipped) * WINDOW_BYTES;
+  const middle = (min(x1, windowHigh) - fromMiddle) << 4;
+  const high = (x1 - fromHigh) << 4;
+  // Entries of the high window follow those of the low one.
+  const entryHigh = fromHigh - windowHigh + windowLow;
+  const entries = isFloat<F>() ? windowsElectric : windowsMagnetic;
 
-  let row = rowOffset(j0, k) + (<usize>x0 << 4);
-  let memoryX: usize = 0;
-  if (isFloat<X>()) memoryX = (isFloat<F>() ? memoryElectricX : memoryMagneticX) + <usize>(k * ny + j0) * memoryRowX;
-
-  const memoryRow = <usize>(rowBytes - VECTOR) * 2;
+  let memoryX: usize = 0, memoryY: usize = 0, memoryZ: usize = 0, profileY: usize = 0;
   let bY = cx, aY = cx, iY = cx, bZ = cx, aZ = cx, iZ = cx;
-  let profileY: usize = 0, memoryY: usize = 0, memoryZ: usize = 0;
+  const memoryRow = (rowBytes - VECTOR) << 1;
+  if (isFloat<X>()) {
+    memoryX = isFloat<F>() ? memoryElectricX : memoryMagneticX;
+    memoryX += <usize>(k * ny + j0) * memoryRowX;
+  }
   if (isFloat<Y>()) {
     const layer = j0 < lowY ? j0 : j0 - ny + lowY + highY;
     profileY = (isFloat<F>() ? profileElectricY : profileMagneticY) + <usize>layer * PROFILE_BYTES;
-    memoryY = (isFloat<F>() ? memoryElectricY : memoryMagneticY) + <usize>(k * (lowY + highY) + layer) * memoryRow + (<usize>x0 << 5);
+    memoryY = isFloat<F>() ? memoryElectricY : memoryMagneticY;
+    memoryY += <usize>(k * (lowY + highY) + layer) * memoryRow;
   }
   if (isFloat<Z>()) {
     const layer = k < lowZ ? k : k - nz + lowZ + highZ;
@@ -201,55 +219,32 @@ function rows<F, X, Y, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cellX: Rea
     bZ = v128.load_splat<Real>(profile);
     aZ = v128.load_splat<Real>(profile, CELL);
     iZ = v128.load_splat<Real>(profile, 2 * CELL);
-    memoryZ = (isFloat<F>() ? memoryElectricZ : memoryMagneticZ) + <usize>(layer * ny + j0) * memoryRow + (<usize>x0 << 5);
+    memoryZ = isFloat<F>() ? memoryElectricZ : memoryMagneticZ;
+    memoryZ += <usize>(layer * ny + j0) * memoryRow;
   }
 
+  let row = rowOffset(j0, k);
   for (let j = j0; j < j1; j++) {
-    let p = row;
-    let qy = memoryY;
-    let qz = memoryZ;
     if (isFloat<Y>()) {
       bY = v128.load_splat<Real>(profileY);
       aY = v128.load_splat<Real>(profileY, CELL);
       iY = v128.load_splat<Real>(profileY, 2 * CELL);
     }
-    if (low > 0) {
-      let w = tableLow;
-      let qx = memoryX + (<usize>x0 << 5);
-      const end = p + <usize>low;
-      while (p < end) {
-        advance<F, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
-        p += VECTOR;
-        w += WINDOW_BYTES;
-        if (isFloat<X>()) qx += PAIR;
-        if (isFloat<Y>()) qy += PAIR;
-        if (isFloat<Z>()) qz += PAIR;
-      }
-    }
-    if (middle > 0) {
-      const end = p + <usize>middle;
-      while (p < end) {
-        const py = p + toY;
-        const pz = p + toZ;
-        advance<F, Off, Off, Y, Z>(p, py, pz, cx, cy, cz, 0, 0, qy, bY, aY, iY, qz, bZ, aZ, iZ);
-        p += VECTOR;
-        if (isFloat<Y>()) qy += PAIR;
-        if (isFloat<Z>()) qz += PAIR;
-      }
-    }
-    if (high > 0) {
-      let w = tableHigh;
-      let qx = memoryX + (<usize>(windowLow + skipped) << 5);
-      const end = p + <usize>high;
-      while (p < end) {
-        advance<F, On, X, Y, Z>(p, p + toY, p + toZ, cx, cy, cz, w, qx, qy, bY, aY, iY, qz, bZ, aZ, iZ);
-        p += VECTOR;
-        w += WINDOW_BYTES;
-        if (isFloat<X>()) qx += PAIR;
-        if (isFloat<Y>()) qy += PAIR;
-        if (isFloat<Z>()) qz += PAIR;
-      }
-    }
+    let v = <usize>x0;
+    span<F, On, X, Y, Z>(
+      row + (v << 4), low, cx, cy, cz, entries + v * WINDOW_BYTES,
+      memoryX + (v << 5), memoryY + (v << 5), bY, aY, iY, memoryZ + (v << 5), bZ, aZ, iZ,
+    );
+    v = <usize>fromMiddle;
+    span<F, Off, Off, Y, Z>(
+      row + (v << 4), middle, cx, cy, cz, 0,
+      0, memoryY + (v << 5), bY, aY, iY, memoryZ + (v << 5), bZ, aZ, iZ,
+    );
+    v = <usize>fromHigh;
+    span<F, On, X, Y, Z>(
+      row + (v << 4), high, cx, cy, cz, entries + <usize>entryHigh * WINDOW_BYTES,
+      memoryX + (<usize>entryHigh << 5), memoryY + (v << 5), bY, aY, iY, memoryZ + (v << 5), bZ, aZ, iZ,
+    );
     row += rowBytes;
     if (isFloat<X>()) memoryX += memoryRowX;
     if (isFloat<Y>()) {
