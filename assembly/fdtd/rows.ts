@@ -18,7 +18,7 @@ export type Off = i32;
 export type Electric = f32;
 export type Magnetic = i32;
 
-/** Which of a pair of memory variables: `offsetof` of a type argument may be an immediate of a load, a parameter may not. */
+/** Which of a pair of memory variables: `offsetof` of a type may be an immediate of a load, a parameter may not. */
 class First {}
 class Second {
   low: u64;

@@ -21,7 +21,7 @@
  * Threads take the tiles in turn. Wavefront s of tile m may start when
  *   - tile m − 1 of its block has done wavefront s, and
  *   - the previous block (T′ steps) has done wavefront s + T′ on every tile that touches the rows of this one, for then
- *     all its work on planes up to s is over. Since tiles wait for their left neighbour, asking the rightmost is enough.
+ *     all its work on planes up to s is over. Tiles wait for their left neighbours, so asking the rightmost is enough.
  */
 import { PROGRESS, PROGRESS_BLOCKS, PROGRESS_TILES, nz, ny } from './memory';
 import { electric, magnetic } from './plane';
