@@ -20,6 +20,8 @@ export default defineConfig({
       output: { format: 'es', entryFileNames: '[name].js', chunkFileNames: 'shared/[name]-[hash].js' },
     },
   },
+  // One file to read instead of hundreds: half the time until the command line and its workers are there.
+  ssr: { noExternal: true },
   cacheDir: '.cache/vite',
   test: {
     environment: 'node',
