@@ -196,6 +196,7 @@ export class Panes {
     // a length that would lie over the colour bar is left out
     const shown = labels.filter(({ role, pane, y }) => role !== 'tick' || y < ends[pane]! - 3 * pixelRatio);
     paintLabels(this.texts, shown, theme, this.ratio);
+    if (this.scenery.settling) this.invalidate();
     this.costs.push(performance.now() - started);
     if (this.costs.length > 600) this.costs.shift();
     this.drawn++;

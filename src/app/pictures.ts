@@ -27,6 +27,26 @@ function rounded(value: number): number {
   return Math.ceil(value / power) * power;
 }
 
+/** Limits on the way to be found: so many of the frames have been looked at. */
+interface Search {
+  readonly key: string;
+  /** film and quantity: while those stay, limits only grow */
+  readonly of: readonly [Film, Quantity];
+  done: number;
+  field: number;
+  difference: number;
+}
+
+/** How long a picture may spend on finding its scale, ms; the next ones go on with it. */
+const SEARCH = 6;
+
+function framesToLookAt({ frames, gridFrames }: Film): number[] {
+  const step = Math.max(1, Math.floor(frames / LOOKS));
+  const looks: number[] = [];
+  for (let at = step >> 1; at < gridFrames; at += step) looks.push(at);
+  return looks;
+}
+
 /**
  * Makes the planes that the panes draw: samples of a quantity at an instant, with their scale. Buffers are kept, so that
  * playing allocates nothing; what has not changed is not computed again.
@@ -34,6 +54,7 @@ function rounded(value: number): number {
 export class Pictures {
   private readonly buffers = new Map<string, { values: Float32Array; stamp: string; revision: number }>();
   private limits: { readonly key: string; readonly value: Limits } | undefined;
+  private search: Search | undefined;
   private scales: { readonly key: string; readonly value: Record<Side, Scale> } | undefined;
 
   /** The scales of the three pictures: one for grid and exact, one for their difference. */
@@ -71,32 +92,56 @@ export class Pictures {
     const potential = quantity.kind === 'potential';
     const key = `${quantity.key} ${mask} ${film.gridFrames} ${film.exactKnown} ${potential ? `${frame} ${film.revision}` : ''} ${film.films.length} ${film.films[0]?.slice.layer}`;
     if (this.limits?.key === key) return this.limits.value;
-    const step = Math.max(1, Math.floor(film.frames / LOOKS));
-    let [field, difference] = [0, 0];
-    for (const one of film.films) {
-      const { nu, nv } = layerOf(one, quantity);
-      const { distance, nu: across } = one.slice;
-      const [a, b] = [new Float32Array(nu * nv), new Float32Array(nu * nv)];
-      const exactToo = film.exactKnown || potential;
-      const look = (at: number) => {
-        if (!potential) sampleQuantity(one, 'grid', at, film.every, quantity, a);
-        if (exactToo) sampleQuantity(one, 'exact', at, film.every, quantity, b);
-        for (let j = 0; j < nv; j += SPARSE)
-          for (let i = 0; i < nu; i += SPARSE) {
-            if (distance[j * across + i]! < mask) continue;
-            const n = j * nu + i;
-            const value = Math.abs(potential ? b[n]! : a[n]!);
-            // false for NaN
-            if (value > field) field = value;
-            if (exactToo && !potential && Math.abs(a[n]! - b[n]!) > difference) difference = Math.abs(a[n]! - b[n]!);
-          }
+    const looks = potential ? [frame] : framesToLookAt(film);
+    if (this.search?.key !== key) {
+      const before = this.search;
+      const grows = before?.of[0] === film && before.of[1] === quantity && !potential;
+      this.search = {
+        key,
+        of: [film, quantity],
+        done: 0,
+        field: grows ? before.field : 0,
+        difference: grows ? before.difference : 0,
       };
-      if (potential) look(frame);
-      else for (let at = step >> 1; at < film.gridFrames; at += step) look(at);
     }
+    const { search } = this;
+    const until = performance.now() + SEARCH;
+    while (search.done < looks.length) {
+      for (const one of film.films) this.look(one, film, mask, quantity, looks[search.done]!, search);
+      search.done++;
+      if (performance.now() > until) break;
+    }
+    const { field, difference } = search;
     const value = { field: rounded(field), difference: rounded(difference > 0 ? difference : field / 10) };
-    this.limits = { key, value };
+    if (search.done === looks.length) this.limits = { key, value };
     return value;
+  }
+
+  /** Whether a scale is still being found, so that the next picture may have another. */
+  get settling(): boolean {
+    return this.search !== undefined && this.search.key !== this.limits?.key;
+  }
+
+  /** Widens the limits that are being found by what one slice shows at one instant. */
+  private look(one: SliceFilm, film: Film, mask: number, quantity: Quantity, at: number, limits: Search): void {
+    const { nu, nv } = layerOf(one, quantity);
+    const { distance, nu: across } = one.slice;
+    const potential = quantity.kind === 'potential';
+    const [a, b] = ['grid', 'exact'].map((side) => this.buffer(`${side} looked at`, nu * nv).values);
+    const exactToo = film.exactKnown || potential;
+    if (!potential) sampleQuantity(one, 'grid', at, film.every, quantity, a!);
+    if (exactToo) sampleQuantity(one, 'exact', at, film.every, quantity, b!);
+    for (let j = 0; j < nv; j += SPARSE)
+      for (let i = 0; i < nu; i += SPARSE) {
+        if (distance[j * across + i]! < mask) continue;
+        const n = j * nu + i;
+        const value = Math.abs(potential ? b![n]! : a![n]!);
+        // false for NaN
+        if (value > limits.field) limits.field = value;
+        if (!exactToo || potential) continue;
+        const difference = Math.abs(a![n]! - b![n]!);
+        if (difference > limits.difference) limits.difference = difference;
+      }
   }
 
   /** The planes of one picture of the film. */

@@ -70,8 +70,8 @@ export class Saving {
       item('Traces', 'every observer and part, CSV', () => this.result('traces.csv')),
       item('Picture of the panes', 'as shown, PNG', () => this.picture()),
       item('Pictures of the charts', 'as shown, one PNG', () => this.chartsPicture()),
-      item('Film of the panes', 'all instants, WebM', () => this.film()),
-      item('Film of the panes', 'all instants, animated PNG: exact colours, larger', () => this.animation()),
+      item('Film, WebM', 'the panes at all instants; takes as long as it will play', () => this.film()),
+      item('Film, animated PNG', 'the panes at all instants, colours exact; a larger file', () => this.animation()),
     );
     this.button.addEventListener('click', () => (this.menu.hidden ? this.open() : this.close()));
     this.menu.addEventListener('keydown', (event) => this.move(event));

@@ -56,6 +56,11 @@ export class Scenery {
     private readonly runner: Runner,
   ) {}
 
+  /** Whether the next picture would look different, though nothing has happened. */
+  get settling(): boolean {
+    return this.pictures.settling;
+  }
+
   /** The panes of the present view, one for each area; none before there is a scenario. */
   panes(camera: Camera, areas: readonly Rectangle[]): Pane[] {
     const { scenario, view } = this.store.state;
