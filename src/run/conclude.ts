@@ -21,7 +21,7 @@ import { describeBoundary, notesOf } from './describe.ts';
 import { dispersionErrorAt, farthestModel } from './farthest.ts';
 import { gaugeResidual } from './gauge.ts';
 import { latticeCheck } from './latticeCheck.ts';
-import { budgetLevels, relativeBound, volumeLevels } from './levels.ts';
+import { budgetLevels, relativeBound, vanishes, volumeLevels } from './levels.ts';
 import { SEED } from './places.ts';
 import { VERSION } from './version.ts';
 
@@ -60,7 +60,7 @@ export function conclude(given: Case): Comparison {
   const budget = budgetOf(signals, levels, 'E', places.budgetWeights);
   const inside = places.inside.map((observer, p) => observerInside(given, signals, levels, observer, p));
   const outside = places.outside.map((observer, p) => observerOutside(given, observer, p));
-  const integralError = Math.max(0, ...points.map((p) => relativeBound(answers.exact, 'E', p)));
+  const integralError = Math.max(0, ...points.map((p) => relativeBound(answers.exact, 'E', p, medium.impedance)));
   const trusted = trustedDistances(given);
   const verdict = verdictOf({
     tolerance,
@@ -68,7 +68,12 @@ export function conclude(given: Case): Comparison {
     bands: inside.map(({ name, distance, E, H }) => ({ observer: name, distance, E: E!.band, H: H!.band })),
     budget,
     boundary: describeBoundary(scenario),
-    boundaryLevel: boundaryLevel(signals, levels, 'E', points),
+    boundaryLevel: boundaryLevel(
+      signals,
+      levels,
+      'E',
+      points.filter((p) => !vanishes(signals.exact, 'E', p, medium.impedance)),
+    ),
     integralError,
   });
   const gaugePlaces = points.slice(0, 3).map((p) => cellCentre(given, places.budgetCells, p));
@@ -187,6 +192,18 @@ function volumeNorms({ question, places, answers }: Case): Result['norms'] {
   );
 }
 
+/** Figures of a field that vanishes: relative to nothing. */
+const NO_RELATIVE_ERROR = {
+  status: 'below floor',
+  relativeL2: null,
+  transient: null,
+  staticResidue: null,
+  peakError: null,
+  riseTimeError: null,
+  timeShift: null,
+  amplitudeRatio: null,
+} as const;
+
 function observerInside(
   given: Case,
   signals: Histories,
@@ -199,11 +216,12 @@ function observerInside(
   const arrival = lastArrival(sources, medium, place, ACTIVE);
   const perObserver = (field: Field) => {
     const floor = levels.rounding(field, p) + levels.exact(field, p);
-    return observerFieldResult(
+    const found = observerFieldResult(
       observerErrors(signals.grid, signals.exact, field, p, arrival),
       pointStatus(signals.exact, field, p, arrival, levels),
       bandOf(signals.grid, signals.exact, field, p, floor, tolerance),
     );
+    return vanishes(signals.exact, field, p, medium.impedance) ? { ...found, ...NO_RELATIVE_ERROR } : found;
   };
   const { position } = signals.exact.points;
   const site = (c: number): Vec3 => {
@@ -218,7 +236,7 @@ function observerInside(
     inside: true,
     distance: distanceToSources(sources, place),
     ...perField(perObserver),
-    budget: budgetResult(budgetAt(signals, levels, 'E', p)),
+    budget: vanishes(signals.exact, 'E', p, medium.impedance) ? null : budgetResult(budgetAt(signals, levels, 'E', p)),
     extrapolated: null,
   };
 }

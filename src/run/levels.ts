@@ -20,10 +20,27 @@ export function boundLevel({ errorBound }: IntegralField): Level {
   };
 }
 
-/** The bound of the exact field's error at a point, relative to its root mean square; 0 where there is no field. */
-export function relativeBound(exact: IntegralField, field: Field, point: number): number {
-  const amplitude = rootMeanSquare(exact.history, field, point);
-  return amplitude > 0 ? boundLevel(exact)(field, point) / amplitude : 0;
+/**
+ * The strength of the field at a point in units of E or H: the larger of E and ηH, root mean square. What vanishes by
+ * symmetry at one point has no scale of its own.
+ */
+export function strengthAt(history: FieldHistory, field: Field, point: number, impedance: number): number {
+  const strength = Math.max(rootMeanSquare(history, 'E', point), impedance * rootMeanSquare(history, 'H', point));
+  return field === 'E' ? strength : strength / impedance;
+}
+
+/** Below this share of the field's strength (−120 dB) E or H is taken to vanish: it has no relative error. */
+const VANISHES = 1e-6;
+
+/** Whether E (or H) vanishes at a point where the other does not, on a symmetry plane or an axis. */
+export function vanishes(history: FieldHistory, field: Field, point: number, impedance: number): boolean {
+  return rootMeanSquare(history, field, point) <= VANISHES * strengthAt(history, field, point, impedance);
+}
+
+/** The bound of the exact field's error at a point, relative to the field's strength; 0 where there is no field. */
+export function relativeBound(exact: IntegralField, field: Field, point: number, impedance: number): number {
+  const strength = strengthAt(exact.history, field, point, impedance);
+  return strength > 0 ? boundLevel(exact)(field, point) / strength : 0;
 }
 
 /** Rounding of a grid run: its difference to the run of other roundings, scaled back. */
