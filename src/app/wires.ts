@@ -38,7 +38,8 @@ export function currentOn({ source, places }: DrawnSource, t: number): Float64Ar
   if (source.type === 'dipole') return new Float64Array(places.length).fill(source.waveform.value(t));
   return places.map((s) =>
     source.terms.reduce(
-      (sum, { factor, delay, slowness }) => sum + factor * source.waveform.value(t - delay - slowness * s),
+      (sum, { factor, delay, slowness, profile }) =>
+        sum + factor * (profile ? profile.value(s) : 1) * source.waveform.value(t - delay - slowness * s),
       0,
     ),
   );

@@ -1,5 +1,5 @@
 import type { Curve } from '../scenario/curve.ts';
-import type { Axis, Dipole, Filament, Grid, Gridding, Source, Vec3 } from '../scenario/model.ts';
+import type { Axis, Dipole, Filament, Grid, Gridding, Source, Vec3, WaveTerm } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import type { GriddedSources, NodeCharges, Pairs } from './edges.ts';
 import { gaussLegendre } from './gaussLegendre.ts';
@@ -66,10 +66,12 @@ function gridFilament(filament: Filament, index: number, grid: NodeGrid, edges: 
     return upper ? f : 1 - f;
   };
   const slowest = Math.max(...filament.terms.map((term) => Math.abs(term.slowness)));
-  for (const { piece, from, to } of cutAtPlanes(filament.curve, grid, nearest ? [0, 0.5] : [0])) {
-    const { nodes, weights } = gaussLegendre(
-      pointsFor(piece.kind, ((to - from) * slowest) / filament.waveform.timeScale),
-    );
+  const finest = Math.min(...filament.terms.map(({ profile }) => profile?.scale ?? Number.POSITIVE_INFINITY));
+  const breaks = filament.terms.flatMap(({ profile }) => profile?.breaks ?? []);
+  for (const { piece, from, to } of cutAtPlanes(filament.curve, grid, nearest ? [0, 0.5] : [0], breaks)) {
+    // Points are cheap where a profile is all that varies: pairs of one delay are merged.
+    const change = (to - from) * (slowest / filament.waveform.timeScale + 2 / finest);
+    const { nodes, weights } = gaussLegendre(pointsFor(piece.kind, change));
     piece.point((from + to) / 2, point);
     for (let a = 0; a < 3; a++) cell[a] = Math.floor(snap((point[a]! - grid.origin[a]!) / grid.cellSize[a]!));
     for (let m = 0; m < nodes.length; m++) {
@@ -90,12 +92,15 @@ function gridFilament(filament: Filament, index: number, grid: NodeGrid, edges: 
             node[b] += db;
             node[c] += dc;
             for (const term of filament.terms)
-              edges.add(axis, node, along * across * term.factor, term.delay + term.slowness * s, index);
+              edges.add(axis, node, along * across * factorAt(term, s), term.delay + term.slowness * s, index);
           }
       }
     }
   }
 }
+
+/** factor · a(s) */
+const factorAt = ({ factor, profile }: WaveTerm, s: number): number => (profile ? factor * profile.value(s) : factor);
 
 /**
  * The staircase of a filament: it is cut where its nearest node changes, and there the edge between the two nodes carries
@@ -111,7 +116,7 @@ function gridStaircase(filament: Filament, index: number, grid: NodeGrid, edges:
         const sign = to[axis]! > node[axis] ? 1 : -1;
         if (sign < 0) node[axis]--;
         for (const term of filament.terms)
-          edges.add(axis, node, sign * term.factor, term.delay + term.slowness * s, index);
+          edges.add(axis, node, sign * factorAt(term, s), term.delay + term.slowness * s, index);
         if (sign > 0) node[axis]++;
       }
   };
@@ -174,12 +179,13 @@ function chargesOf(edges: Pairs & { readonly axis: Uint8Array }, grid: NodeGrid)
 
 /**
  * The curve in intervals of arc length that no plane cuts: planes through the nodes (offset 0, so that each interval lies
- * in one cell), half a cell beside them (0.5, so that each has one nearest node), or both.
+ * in one cell), half a cell beside them (0.5, so that each has one nearest node), or both; and cut at `breaks`.
  */
-function* cutAtPlanes(curve: Curve, grid: NodeGrid, offsets: readonly number[]) {
+function* cutAtPlanes(curve: Curve, grid: NodeGrid, offsets: readonly number[], breaks: readonly number[] = []) {
   const end = new Float64Array(3);
   for (const piece of curve.pieces) {
-    const cuts = [piece.s0, piece.s0 + piece.length];
+    const inside = breaks.filter((s) => s > piece.s0 && s < piece.s0 + piece.length);
+    const cuts = [piece.s0, piece.s0 + piece.length, ...inside];
     for (const axis of AXES) {
       const h = grid.cellSize[axis];
       let lower = Number.POSITIVE_INFINITY;
@@ -215,7 +221,7 @@ function* cutAtPlanes(curve: Curve, grid: NodeGrid, offsets: readonly number[]) 
 
 /**
  * Gauss–Legendre points for one cut of a filament: on a line the weights are quadratics in s, so that two points suffice
- * but for the travelling waveform, whose variation over the cut is `change` in units of its own time scale; on an arc the
+ * but for the travelling waveform and the profile, whose variation over the cut is `change` in units of their own scales; on an arc the
  * weights are trigonometric. The charges are exact by construction, whatever this number is.
  */
 function pointsFor(kind: 'line' | 'arc', change: number): number {
@@ -236,6 +242,7 @@ class PairCollector {
   }
 
   add(kind: number, [i, j, k]: readonly [number, number, number], weight: number, delay: number, waveform: number) {
+    if (weight === 0) return;
     const key = kind + this.kinds * (i + this.#size[0] * (j + this.#size[1] * k));
     const list = this.#entries.get(key);
     if (list) list.push({ delay, waveform, weight });

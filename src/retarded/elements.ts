@@ -57,11 +57,13 @@ export function chargeElement(k: Constants, x: number, y: number, z: number, out
 }
 
 /**
- * One metre of filament with tangent ŝ that carries I = w(t − p s), hence λ = p w (by λ̇ = −∂I/∂s):
+ * One metre of filament with tangent ŝ that carries I = a(s) w(t − p s), hence λ = a p w − a′ q (by λ̇ = −∂I/∂s):
  *   4πε E = (λ/R³ + λ̇/(vR²)) R − ŝ İ/(v²R)
  *   4π/μ B = (I/R³ + İ/(vR²)) ŝ×R,   4πε φ = λ/R,   4π/μ A = ŝ I/R
- * Overwrites the coefficients of w and w′; those of q are 0 and are left alone.
+ * Overwrites `out`.
  * @param slowness p, s/m
+ * @param amplitude a
+ * @param gradient a′, 1/m
  */
 export function filamentElement(
   k: Constants,
@@ -72,33 +74,52 @@ export function filamentElement(
   sy: number,
   sz: number,
   slowness: number,
+  amplitude: number,
+  gradient: number,
   out: Float64Array,
 ): void {
   const inverse = 1 / Math.sqrt(x * x + y * y + z * z);
   const perSpeed = 1 / k.speed;
   const near = inverse * inverse * inverse;
   const far = inverse * inverse * perSpeed;
-  const lineCharge = k.electric * slowness;
-  const induced = k.electric * inverse * perSpeed * perSpeed;
+  const carried = k.electric * amplitude * slowness;
+  const left = -k.electric * gradient;
+  const induced = k.electric * amplitude * inverse * perSpeed * perSpeed;
+  const moved = carried * near + left * far;
+  const magnetic = k.magnetic * amplitude;
   const cx = sy * z - sz * y;
   const cy = sz * x - sx * z;
   const cz = sx * y - sy * x;
-  out[CURRENT] = lineCharge * near * x;
-  out[CURRENT + 1] = lineCharge * near * y;
-  out[CURRENT + 2] = lineCharge * near * z;
-  out[SLOPE] = lineCharge * far * x - induced * sx;
-  out[SLOPE + 1] = lineCharge * far * y - induced * sy;
-  out[SLOPE + 2] = lineCharge * far * z - induced * sz;
-  out[CURRENT + MAGNETIC] = k.magnetic * near * cx;
-  out[CURRENT + MAGNETIC + 1] = k.magnetic * near * cy;
-  out[CURRENT + MAGNETIC + 2] = k.magnetic * near * cz;
-  out[SLOPE + MAGNETIC] = k.magnetic * far * cx;
-  out[SLOPE + MAGNETIC + 1] = k.magnetic * far * cy;
-  out[SLOPE + MAGNETIC + 2] = k.magnetic * far * cz;
-  out[CURRENT + SCALAR] = lineCharge * inverse;
-  out[CURRENT + VECTOR] = k.magnetic * inverse * sx;
-  out[CURRENT + VECTOR + 1] = k.magnetic * inverse * sy;
-  out[CURRENT + VECTOR + 2] = k.magnetic * inverse * sz;
+  out[CHARGE] = left * near * x;
+  out[CHARGE + 1] = left * near * y;
+  out[CHARGE + 2] = left * near * z;
+  out[CURRENT] = moved * x;
+  out[CURRENT + 1] = moved * y;
+  out[CURRENT + 2] = moved * z;
+  out[SLOPE] = carried * far * x - induced * sx;
+  out[SLOPE + 1] = carried * far * y - induced * sy;
+  out[SLOPE + 2] = carried * far * z - induced * sz;
+  out[CHARGE + MAGNETIC] = 0;
+  out[CHARGE + MAGNETIC + 1] = 0;
+  out[CHARGE + MAGNETIC + 2] = 0;
+  out[CURRENT + MAGNETIC] = magnetic * near * cx;
+  out[CURRENT + MAGNETIC + 1] = magnetic * near * cy;
+  out[CURRENT + MAGNETIC + 2] = magnetic * near * cz;
+  out[SLOPE + MAGNETIC] = magnetic * far * cx;
+  out[SLOPE + MAGNETIC + 1] = magnetic * far * cy;
+  out[SLOPE + MAGNETIC + 2] = magnetic * far * cz;
+  out[CHARGE + SCALAR] = left * inverse;
+  out[CURRENT + SCALAR] = carried * inverse;
+  out[SLOPE + SCALAR] = 0;
+  out[CHARGE + VECTOR] = 0;
+  out[CHARGE + VECTOR + 1] = 0;
+  out[CHARGE + VECTOR + 2] = 0;
+  out[CURRENT + VECTOR] = magnetic * inverse * sx;
+  out[CURRENT + VECTOR + 1] = magnetic * inverse * sy;
+  out[CURRENT + VECTOR + 2] = magnetic * inverse * sz;
+  out[SLOPE + VECTOR] = 0;
+  out[SLOPE + VECTOR + 1] = 0;
+  out[SLOPE + VECTOR + 2] = 0;
 }
 
 /**

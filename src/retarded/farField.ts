@@ -3,7 +3,7 @@ import { type ArcPiece, dot, type LinePiece } from '../scenario/curve.ts';
 import type { Dipole, Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { SMALL_GAP } from './field.ts';
-import { fronts, gradedCuts } from './panels.ts';
+import { fronts, gradedCuts, longestPart } from './panels.ts';
 import type { PieceView } from './pieceView.ts';
 import { gaussLegendre, KRONROD_POINTS, kronrod } from './quadrature.ts';
 
@@ -18,8 +18,9 @@ export interface FarField {
 /**
  * What a source radiates along a direction n, where r → ∞ and t′ = t − r/v (r from the origin):
  *   r E = −μ/(4π) (1 − n n·) ∫ ŝ İ(s, t′ + n·x(s)/v) ds
- * (the 1/R part of Jefimenko's equations; the charges' part is along n). On a straight piece the integral is
- * (w(t′ − τ₀) − w(t′ − τ₁))/(dτ/ds), τ = delay + slowness s − n·x(s)/v; on a circle it is taken by Gauss–Kronrod.
+ * (the 1/R part of Jefimenko's equations; the charges' part is along n). On a straight piece the integral
+ * of a term without profile is (w(t′ − τ₀) − w(t′ − τ₁))/(dτ/ds), τ = delay + slowness s − n·x(s)/v; others are taken by
+ * Gauss–Kronrod.
  * @param direction unit vector
  * @param times values of t′, s; they may be negative, and parts of the source towards n are felt before t′ = 0
  */
@@ -37,8 +38,8 @@ export function farField(sources: readonly Source[], medium: Medium, direction: 
     else
       for (const piece of source.curve.pieces)
         for (const term of source.terms)
-          if (piece.kind === 'line') addLine(source, piece, term, sum);
-          else addArc(source, piece, term, sum);
+          if (piece.kind === 'line' && !term.profile) addLine(source, piece, term, sum);
+          else addByQuadrature(source, piece, term, sum);
   const gain = -medium.permeability / (4 * Math.PI);
   for (let m = 0; m < sum.values.length; m++) sum.values[m]! *= gain;
   return { values: sum.values, error: sum.error * Math.abs(gain), evaluations: sum.evaluations };
@@ -110,23 +111,24 @@ function addLine(source: Filament, piece: LinePiece, term: WaveTerm, sum: FarSum
 
 const GAP_POINTS = 4;
 
-function addArc(source: Filament, piece: ArcPiece, term: WaveTerm, sum: FarSum): void {
+function addByQuadrature(source: Filament, piece: LinePiece | ArcPiece, term: WaveTerm, sum: FarSum): void {
   const { waveform } = source;
-  const view = new FarArcView(piece, sum.direction);
-  const { factor, delay, slowness } = term;
+  const view = piece.kind === 'line' ? new FarLineView(piece, sum.direction) : new FarArcView(piece, sum.direction);
+  const { factor, delay, slowness, profile } = term;
   const jump = waveform.kinks.length > 0 ? waveform.value(0) : 0;
-  const bend = slowness * sum.speed;
+  const amplitude = (s: number) => (profile ? profile.value(s) : 1);
+  const breaks = (profile?.breaks ?? []).filter((s) => s > view.start && s < view.end);
+  const longest = longestPart(term, waveform.timeScale / 2, sum.speed);
   const total = [0, 0, 0];
   const difference = [0, 0, 0];
   let worst = 0;
   let peak = 0;
   sum.times.forEach((t, n) => {
-    const stations = [view.start, view.end];
+    const stations = [view.start, view.end, ...breaks];
     for (const kink of waveform.kinks) stations.push(...fronts(view, delay, slowness, sum.speed, t - kink));
     stations.sort((p, q) => p - q);
     const cuts: number[] = [];
-    for (let m = 1; m < stations.length; m++)
-      gradedCuts(view, stations[m - 1]!, stations[m]!, 1, waveform.timeScale, Math.abs(bend), sum.speed, cuts);
+    for (let m = 1; m < stations.length; m++) gradedCuts(view, stations[m - 1]!, stations[m]!, 1, longest, cuts);
     total.fill(0);
     difference.fill(0);
     let from = view.start;
@@ -135,7 +137,7 @@ function addArc(source: Filament, piece: ArcPiece, term: WaveTerm, sum: FarSum):
       for (let m = 0; half > 0 && m < KRONROD_POINTS; m++) {
         const s = from + half * (1 + kronrod.nodes[m]!);
         view.look(s);
-        const slope = half * waveform.slope(t - delay - slowness * s - view.r / sum.speed);
+        const slope = half * amplitude(s) * waveform.slope(t - delay - slowness * s - view.r / sum.speed);
         const tangent = [view.sx, view.sy, view.sz];
         for (let a = 0; a < 3; a++) {
           total[a]! += kronrod.weights[m]! * slope * tangent[a]!;
@@ -150,15 +152,56 @@ function addArc(source: Filament, piece: ArcPiece, term: WaveTerm, sum: FarSum):
         view.look(s);
         const rate = Math.abs(slowness - (view.sx * view.x + view.sy * view.y + view.sz * view.z) / sum.speed);
         if (rate === 0) continue;
-        total[0]! += (jump * view.sx) / rate;
-        total[1]! += (jump * view.sy) / rate;
-        total[2]! += (jump * view.sz) / rate;
+        const size = (jump * amplitude(s)) / rate;
+        total[0]! += size * view.sx;
+        total[1]! += size * view.sy;
+        total[2]! += size * view.sz;
       }
     worst = Math.max(worst, Math.abs(difference[0]!) + Math.abs(difference[1]!) + Math.abs(difference[2]!));
     peak = Math.max(peak, Math.abs(total[0]!) + Math.abs(total[1]!) + Math.abs(total[2]!));
     addTo(sum, n, across([total[0]!, total[1]!, total[2]!], sum.direction), factor);
   });
   sum.error += Math.abs(factor) * (worst + rounding(waveform, sum.times) * peak);
+}
+
+/** A straight piece seen from infinity along n: R less the distance of the origin, −n·x(s); (x, y, z) is n. */
+class FarLineView implements PieceView {
+  readonly start: number;
+  readonly end: number;
+  readonly nearest: number;
+  readonly x: number;
+  readonly y: number;
+  readonly z: number;
+  readonly sx: number;
+  readonly sy: number;
+  readonly sz: number;
+  r = 0;
+  /** −n·x at the start, and its slope */
+  readonly #first: number;
+  readonly #slope: number;
+
+  constructor(piece: LinePiece, direction: Vec3) {
+    this.start = piece.s0;
+    this.end = piece.s0 + piece.length;
+    this.nearest = piece.s0;
+    [this.x, this.y, this.z] = direction;
+    [this.sx, this.sy, this.sz] = piece.direction;
+    this.#first = -dot(piece.from, direction);
+    this.#slope = -dot(piece.direction, direction);
+  }
+
+  look(s: number): void {
+    this.r = this.#first + (s - this.start) * this.#slope;
+  }
+
+  distance(): number {
+    return Number.POSITIVE_INFINITY;
+  }
+
+  /** s·bend + R is a straight line in s. */
+  turns(): number[] {
+    return [];
+  }
 }
 
 /** A circle seen from infinity along n: R less the distance of the origin, −n·x(s); (x, y, z) is n. */

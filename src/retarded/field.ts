@@ -15,7 +15,7 @@ import {
   SLOPE,
   VECTOR,
 } from './elements.ts';
-import { delayRate, frontRounding, fronts, gradedCuts, onset, steepestBend } from './panels.ts';
+import { delayRate, frontRounding, fronts, gradedCuts, longestPart, onset } from './panels.ts';
 import { type PieceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
 import { KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
@@ -211,16 +211,18 @@ function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: Pi
   const waveform = prepared.waveforms[integral.waveform]!;
   const stations = [view.start, view.end];
   if (view.nearest > view.start && view.nearest < view.end) stations.push(view.nearest);
-  for (const { delay, slowness } of integral.terms)
+  for (const { delay, slowness, profile } of integral.terms) {
     for (const kink of waveform.kinks) stations.push(...fronts(view, delay, slowness, k.speed, t - kink));
+    for (const s of profile?.breaks ?? []) if (s > view.start && s < view.end) stations.push(s);
+  }
   stations.sort((a, b) => a - b);
-  const bend = steepestBend(integral, k.speed);
+  const longest = Math.min(...integral.terms.map((term) => longestPart(term, waveform.timeScale, k.speed)));
   for (let m = 1; m < stations.length; m++) {
     const from = stations[m - 1]!;
     const to = stations[m]!;
     if (!(to > from)) continue;
     const cuts: number[] = [];
-    gradedCuts(view, from, to, 1, 2 * waveform.timeScale, bend, k.speed, cuts);
+    gradedCuts(view, from, to, 1, longest, cuts);
     let start = from;
     for (const cut of cuts) {
       if (reached(integral, view, start, cut, t, k.speed)) yield [start, cut] as const;
@@ -250,11 +252,12 @@ function addFronts(
 ): void {
   const jump = onset(prepared, integral);
   if (jump === 0 || integral.potentialsOnly) return;
-  for (const { factor, delay, slowness } of integral.terms)
+  for (const { factor, delay, slowness, profile } of integral.terms)
     for (const s of fronts(view, delay, slowness, k.speed, t)) {
       const rate = delayRate(view, s, slowness, k.speed);
       if (rate === 0) continue;
-      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+      const amplitude = profile ? profile.value(s) : 1;
+      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, 0, element);
       for (let c = 0; c < QUANTITIES; c++) {
         front[c] = (factor * jump * element[SLOPE + c]!) / rate;
         total[c]! += front[c]!;
@@ -290,30 +293,37 @@ function integrate(
   difference.fill(0);
   samples.fill(0);
   noise.fill(0);
-  const [, noiseW, noiseSlope] = roundingsOf(waveform);
+  const [noiseCharge, noiseW, noiseSlope] = roundingsOf(waveform);
   for (let m = 0; m < KRONROD_POINTS; m++) {
     const s = (from + to) / 2 + half * kronrod.nodes[m]!;
     view.look(s);
     const base = m * QUANTITIES;
+    let charge = 0;
     let w = 0;
     let slope = 0;
-    integral.terms.forEach(({ factor, delay, slowness }, n) => {
+    integral.terms.forEach(({ factor, delay, slowness, profile }, n) => {
       const u = t - delay - slowness * s - view.r / k.speed;
       if (u >= 0) {
+        if (profile) charge += factor * waveform.charge(u);
         w += factor * waveform.value(u);
         slope += factor * waveform.slope(u);
       }
       // Terms come in order of slowness, and those of one slowness share their element.
-      if (integral.terms[n + 1]?.slowness === slowness || (w === 0 && slope === 0)) return;
-      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+      const next = integral.terms[n + 1];
+      if (next?.slowness === slowness && next.profile === profile) return;
+      if (charge === 0 && w === 0 && slope === 0) return;
+      const [amplitude, gradient] = profile ? [profile.value(s), profile.slope(s)] : [1, 0];
+      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, gradient, element);
       for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++) {
-        samples[base + c]! += element[CURRENT + c]! * w + element[SLOPE + c]! * slope;
+        const [q, i, d] = [element[CHARGE + c]!, element[CURRENT + c]!, element[SLOPE + c]!];
+        samples[base + c]! += q * charge + i * w + d * slope;
         noise[c]! +=
           half *
           kronrod.weights[m]! *
           Math.abs(factor) *
-          (Math.abs(element[CURRENT + c]!) * noiseW + Math.abs(element[SLOPE + c]!) * noiseSlope);
+          (Math.abs(q) * noiseCharge + Math.abs(i) * noiseW + Math.abs(d) * noiseSlope);
       }
+      charge = 0;
       w = 0;
       slope = 0;
     });

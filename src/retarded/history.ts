@@ -1,4 +1,4 @@
-import type { Medium, Source, Vec3 } from '../scenario/model.ts';
+import type { Medium, Profile, Source, Vec3 } from '../scenario/model.ts';
 import type { Instants, SamplePoints } from '../trace/trace.ts';
 import { DelayGrid, ElementList } from './delayGrid.ts';
 import {
@@ -12,7 +12,7 @@ import {
   SLOPE,
 } from './elements.ts';
 import { addClosedTerms, refuseOnSource, SMALL_GAP } from './field.ts';
-import { delayRate, frontRounding, gradedCuts, onset } from './panels.ts';
+import { delayRate, frontRounding, gradedCuts, longestPart, onset } from './panels.ts';
 import { crossing, type PieceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
 import { KRONROD_POINTS, kronrod } from './quadrature.ts';
@@ -195,6 +195,12 @@ class Site {
     this.#rounding += Number.EPSILON * (8 + geometry + this.#instant[waveform]!) * size;
   }
 
+  /** The element at the place that `view` looks at, arc length s. */
+  #look({ x, y, z, sx, sy, sz }: PieceView, slowness: number, profile: Profile | undefined, s: number): void {
+    const [amplitude, gradient] = profile ? [profile.value(s), profile.slope(s)] : [1, 0];
+    filamentElement(this.#k, x, y, z, sx, sy, sz, slowness, amplitude, gradient, this.#element);
+  }
+
   /** Nodes of one integral, and the fronts of a jump, which go to `out` directly. */
   #addNodes(
     integral: Integral,
@@ -212,7 +218,8 @@ class Site {
     const kept = this.#nodes[integral.waveform]!;
     const differing = this.#differences[integral.waveform]!;
     const jump = onset(this.prepared, integral);
-    for (const { factor, delay, slowness } of integral.terms) {
+    for (const term of integral.terms) {
+      const { factor, delay, slowness, profile } = term;
       const place = (s: number) => {
         view.look(s);
         return (first - delay - slowness * s - view.r / speed) / grid.step;
@@ -221,18 +228,12 @@ class Site {
         grid.rule.kind === 'centred'
           ? [view.start, view.end]
           : cellBounds(view, place, grid.rule.bounds, slowness * speed, (first - delay) * speed, grid.step * speed);
+      const breaks = (profile?.breaks ?? []).filter((s) => s > view.start && s < view.end);
+      const bounds = breaks.length === 0 ? stations : [...stations, ...breaks].sort((a, b) => a - b);
+      const longest = grading * longestPart(term, waveform.timeScale, speed);
       const cuts: number[] = [];
-      for (let m = 1; m < stations.length; m++)
-        gradedCuts(
-          view,
-          stations[m - 1]!,
-          stations[m]!,
-          grading,
-          2 * grading * waveform.timeScale,
-          Math.abs(slowness * speed),
-          speed,
-          cuts,
-        );
+      for (let m = 1; m < bounds.length; m++)
+        if (bounds[m]! > bounds[m - 1]!) gradedCuts(view, bounds[m - 1]!, bounds[m]!, grading, longest, cuts);
       let from = view.start;
       for (const to of cuts) {
         const half = (to - from) / 2;
@@ -241,15 +242,18 @@ class Site {
         if (half > 0 && reach < grid.count) {
           const extent = (Math.abs(from) + Math.abs(to)) / view.distance(from, to);
           for (let m = 0; m < KRONROD_POINTS; m++) {
-            const at = place(from + half * (1 + kronrod.nodes[m]!));
-            filamentElement(this.#k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+            const s = from + half * (1 + kronrod.nodes[m]!);
+            const at = place(s);
+            this.#look(view, slowness, profile, s);
             const gain = scale * factor * half;
+            const q = gain * element[CHARGE + quantity]!;
             const w = gain * element[CURRENT + quantity]!;
             const slope = gain * element[SLOPE + quantity]!;
             const weight = kronrod.weights[m]!;
-            kept.add(at, 0, weight * w, weight * slope);
-            differing.add(at, 0, kronrod.differences[m]! * w, kronrod.differences[m]! * slope);
-            this.#count(integral.waveform, 0, weight * w, weight * slope, extent);
+            const off = kronrod.differences[m]!;
+            kept.add(at, weight * q, weight * w, weight * slope);
+            differing.add(at, off * q, off * w, off * slope);
+            this.#count(integral.waveform, weight * q, weight * w, weight * slope, extent);
           }
           this.evaluations += KRONROD_POINTS;
         }
@@ -262,7 +266,7 @@ class Site {
         if (Math.abs(at + n) > 1e-6 || n < 0 || n >= grid.count) continue;
         const rate = delayRate(view, s, slowness, speed);
         if (rate === 0) continue;
-        filamentElement(this.#k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, element);
+        this.#look(view, slowness, profile, s);
         const front = (scale * factor * jump * element[SLOPE + quantity]!) / rate;
         out[n]! += front;
         this.#front = Math.max(this.#front, Math.abs(front) * frontRounding(view, rate, first + n * grid.step, speed));

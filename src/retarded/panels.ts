@@ -1,10 +1,11 @@
+import type { WaveTerm } from '../scenario/model.ts';
 import { crossing, type PieceView } from './pieceView.ts';
 import type { Integral, Prepared } from './prepare.ts';
 
 /**
- * Cuts [from, to] in halves until each part is no longer than `grading` times its distance from the observer, and its
- * delay s·|slowness| + R/v varies by no more than `longest` (s). On such a part the integrand is analytic within an
- * ellipse that the distance sets, whatever the distance is. Appends the upper ends of the parts, ascending.
+ * Cuts [from, to] in halves until each part is no longer than `grading` times its distance from the observer, nor than
+ * `longest` (m). On such a part the integrand is analytic within an ellipse that the distance sets, whatever the distance
+ * is. Appends the upper ends of the parts, ascending.
  */
 export function gradedCuts(
   view: PieceView,
@@ -12,17 +13,24 @@ export function gradedCuts(
   to: number,
   grading: number,
   longest: number,
-  bend: number,
-  speed: number,
   cuts: number[],
 ): void {
   const length = to - from;
   const middle = from + length / 2;
-  const tooLong = length > grading * view.distance(from, to) || (length * (1 + Math.abs(bend))) / speed > longest;
+  const tooLong = length > grading * view.distance(from, to) || length > longest;
   if (tooLong && middle > from && middle < to) {
-    gradedCuts(view, from, middle, grading, longest, bend, speed, cuts);
-    gradedCuts(view, middle, to, grading, longest, bend, speed, cuts);
+    gradedCuts(view, from, middle, grading, longest, cuts);
+    gradedCuts(view, middle, to, grading, longest, cuts);
   } else cuts.push(to);
+}
+
+/**
+ * The longest part on which a term varies little, m: its delay s·slowness + R/v by two of the waveform's time scales, its
+ * profile by one of its own.
+ */
+export function longestPart({ slowness, profile }: WaveTerm, timeScale: number, speed: number): number {
+  const byDelay = (2 * timeScale * speed) / (1 + Math.abs(slowness * speed));
+  return profile ? Math.min(byDelay, profile.scale) : byDelay;
 }
 
 /** Where a wave term's delay, delay + slowness·s + R(s)/v, equals `target`: arc lengths, ascending. */
@@ -57,6 +65,3 @@ export function delayRate(view: PieceView, s: number, slowness: number, speed: n
 export function frontRounding(view: PieceView, rate: number, t: number, speed: number): number {
   return Number.EPSILON * (8 + (2 * Math.abs(t)) / (speed * view.r * rate * rate));
 }
-
-export const steepestBend = (integral: Integral, speed: number): number =>
-  integral.terms.reduce((most, { slowness }) => Math.max(most, Math.abs(slowness * speed)), 0);

@@ -90,8 +90,9 @@ function takeApart(
     const others: WaveTerm[] = [];
     const fullSpeed: WaveTerm[] = [];
     for (const term of source.terms.toSorted((p, q) => p.slowness - q.slowness)) {
+      if (isOff(term, piece)) continue;
       const full = Math.abs(Math.abs(term.slowness) * medium.speed - 1) <= FULL_SPEED;
-      if (method === 'best' && piece.kind === 'line' && full) {
+      if (method === 'best' && piece.kind === 'line' && full && !term.profile) {
         fullSpeed.push(term);
         const { s0, length, from, to, direction } = piece;
         const common = { length, waveform, label };
@@ -118,6 +119,10 @@ function takeApart(
   });
 }
 
+/** Whether a term's profile is 0 all along a piece. */
+const isOff = ({ profile }: WaveTerm, { s0, length }: LinePiece | ArcPiece): boolean =>
+  profile !== undefined && (profile.support[1] <= s0 || profile.support[0] >= s0 + length);
+
 /** Q = −∫I at the first point and +∫I at the last: what flows off an end was there before with the other sign. */
 function endCharges(source: Filament, waveform: number): PointCharge[] {
   const { pieces, length, closed } = source.curve;
@@ -130,10 +135,19 @@ function endCharges(source: Filament, waveform: number): PointCharge[] {
   const last = pieces.at(-1)!;
   const start = first.kind === 'line' ? first.from : pointAt(first, 0);
   const stop = closed ? start : last.kind === 'line' ? last.to : pointAt(last, length);
-  return source.terms.flatMap(({ factor, delay, slowness }) => [
-    { at: start, factor: -factor, delay, waveform, label: `source “${source.name}”, first point` },
-    { at: stop, factor, delay: delay + slowness * length, waveform, label: `source “${source.name}”, last point` },
-  ]);
+  return source.terms.flatMap(({ factor, delay, slowness, profile }) => {
+    const [left, arrived] = profile ? [factor * profile.value(0), factor * profile.value(length)] : [factor, factor];
+    return [
+      { at: start, factor: -left, delay, waveform, label: `source “${source.name}”, first point` },
+      {
+        at: stop,
+        factor: arrived,
+        delay: delay + slowness * length,
+        waveform,
+        label: `source “${source.name}”, last point`,
+      },
+    ];
+  });
 }
 
 /** Charges at the same place, delays equal to rounding, summed; what cancels is dropped. */

@@ -45,12 +45,16 @@ export class TermList {
 export class WaveformSet {
   readonly list: Waveform[] = [];
   readonly #known = new Map<string, number>();
+  /** by identity, so that a long table is not spelt out for every edge that carries it */
+  readonly #met = new Map<Waveform, number>();
 
   index(waveform: Waveform): number {
+    const met = this.#met.get(waveform);
+    if (met !== undefined) return met;
     const key = JSON.stringify(waveform.spec);
-    const known = this.#known.get(key);
-    if (known !== undefined) return known;
-    this.#known.set(key, this.list.length);
-    return this.list.push(waveform) - 1;
+    const index = this.#known.get(key) ?? this.list.push(waveform) - 1;
+    this.#known.set(key, index);
+    this.#met.set(waveform, index);
+    return index;
   }
 }

@@ -160,6 +160,65 @@ export const EXAMPLES = {
     ],
     planes: [{ name: 'xz', normal: 'y', at: '0 mm' }],
   },
+  'resonant-wire': {
+    title: 'Half-wave wire with a sinusoidal current, switched on and off over three periods',
+    sources: [
+      {
+        type: 'wire',
+        name: 'half-wave',
+        points: [
+          ['0 mm', '0 mm', '-75 mm'],
+          ['0 mm', '0 mm', '75 mm'],
+        ],
+        current: {
+          profile: 'sinusoidal',
+          wavenumber: '20.944 rad/m',
+          waveform: { type: 'rampedSine', amplitude: '1 A', frequency: '999 MHz', ramp: 3, hold: 1 },
+        },
+      },
+    ],
+    grid: {
+      cellSize: '10 mm',
+      box: { from: ['-200 mm', '-200 mm', '-200 mm'], to: ['200 mm', '200 mm', '200 mm'] },
+      boundary: { type: 'cpml', layers: 10 },
+    },
+    duration: '8.5 ns',
+    observers: [
+      { name: 'beside', at: ['120 mm', '0 mm', '20 mm'] },
+      { name: 'off the end', at: ['20 mm', '10 mm', '160 mm'] },
+    ],
+    planes: [{ name: 'xz', normal: 'y', at: '0 mm' }],
+  },
+  'lossy-strap': {
+    title: 'Steep pulse along a lossy strap with a bend, reflected at its end',
+    sources: [
+      {
+        type: 'wire',
+        name: 'strap',
+        points: [
+          ['-80 mm', '5 mm', '0 mm'],
+          ['60 mm', '5 mm', '0 mm'],
+          ['60 mm', '5 mm', '-70 mm'],
+        ],
+        current: {
+          waves: [{ direction: 'forward', speed: 0.8, decayLength: '0.9 m' }],
+          reflection: { end: -0.5 },
+          waveform: { type: 'heidler', terms: [{ amplitude: '15 A', tau1: '1.2 ns', tau2: '0.5 ns', n: 5 }] },
+        },
+      },
+    ],
+    grid: {
+      cellSize: '10 mm',
+      box: { from: ['-150 mm', '-120 mm', '-150 mm'], to: ['150 mm', '120 mm', '120 mm'] },
+      boundary: { type: 'cpml', layers: 10 },
+    },
+    duration: '9 ns',
+    observers: [
+      { name: 'above', at: ['0 mm', '70 mm', '60 mm'] },
+      { name: 'below', at: ['-40 mm', '-60 mm', '-80 mm'] },
+    ],
+    planes: [{ name: 'xz', normal: 'y', at: '0 mm' }],
+  },
 } as const;
 
 export type ExampleName = keyof typeof EXAMPLES;

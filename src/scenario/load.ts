@@ -1,9 +1,12 @@
 import { parse as parseWithLocations } from '@humanwhocodes/momoa';
 import type { z } from 'zod';
+import { exp } from '../elementary/elementary.ts';
 import { formatQuantity } from '../elementary/quantity.ts';
 import { mediumOf } from './constants.ts';
-import { circle, norm, polyline, scale, sub } from './curve.ts';
+import { type Curve, circle, norm, polyline, scale, sub } from './curve.ts';
 import { type Bounds, distanceToSources, firstArrival, sourceBounds } from './distance.ts';
+import { HEIDLER_PRESETS } from './heidler.ts';
+import { JUMP_NOTED, JUMP_REFUSED } from './jump.ts';
 import {
   type Axis,
   type Boundary,
@@ -18,6 +21,7 @@ import {
   type Vec3,
   type WaveTerm,
 } from './model.ts';
+import { decaying, hat, standing } from './profiles.ts';
 import {
   CPML_DEFAULTS,
   gridSchema,
@@ -29,11 +33,12 @@ import {
   sourceSchema,
   TWO_FORMS,
 } from './schema.ts';
-import { shortestWavelength } from './shortest.ts';
+import { SIGNIFICANT, shortestWavelength } from './shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
-import { show } from './units.ts';
+import { resolved } from './table.ts';
+import { parseQuantity, show } from './units.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
-import { JUMP_NOTED, JUMP_REFUSED, makeWaveform } from './waveforms.ts';
+import { makeWaveform } from './waveforms.ts';
 
 /** Why a scenario is refused. */
 export interface Problem {
@@ -202,7 +207,9 @@ function build(file: Record<string, unknown>, report: Report): Scenario | undefi
   const givenGrid = part(gridSchema, file.grid);
   const grid = givenGrid && buildGrid(givenGrid, medium, duration, notes, report);
   const sources = buildSources(file.sources, medium, allowJump, notes, report);
-  if (grid) for (const { index, source } of sources) checkInside(index, source, grid, report);
+  if (grid)
+    for (const [n, { index, source }] of sources.entries())
+      if (sources[n - 1]?.index !== index) checkInside(index, source, grid, report);
   const all = sources.map(({ source }) => source);
   const observers = buildObservers(file.observers, grid, all, report);
   const planes = buildPlanes(file.planes, grid, report);
@@ -356,6 +363,7 @@ function defaultAlphaFrequency(h: number, medium: Medium): number {
 
 type GivenSource = z.output<typeof sourceSchema>;
 type GivenWire = Extract<GivenSource, { type: 'wire' }>;
+type GivenWaveform = NonNullable<GivenSource['current']['waveform']>;
 
 function buildSources(
   value: unknown,
@@ -369,14 +377,11 @@ function buildSources(
   return given.flatMap(({ index, given: source }, k) => {
     const path = ['sources', index];
     const name = names[k]!;
-    const waveform = buildWaveform(
-      source.current.waveform,
-      allowJump,
-      name,
-      [...path, 'current', 'waveform'],
-      notes,
-      report,
-    );
+    if (source.type === 'wire' && source.current.profile === 'sampled')
+      return buildSampled(source, name, allowJump, path, notes, report).map((built) => ({ index, source: built }));
+    const givenWaveform = source.current.waveform;
+    if (!givenWaveform) return [];
+    const waveform = buildWaveform(givenWaveform, allowJump, name, [...path, 'current', 'waveform'], notes, report);
     if (!waveform) return [];
     const built = buildSource(source, name, waveform, medium, path, report);
     return built ? [{ index, source: built }] : [];
@@ -404,6 +409,11 @@ function buildSource(
     const curve = circle(given.centre, unit(given.normal), given.radius);
     return { type: 'loop', name, curve, terms: [{ factor: 1, delay: 0, slowness: 0 }], waveform };
   }
+  const curve = curveOf(given, path, report);
+  return curve && { type: 'wire', name, curve, terms: termsOf(given.current, curve.length, medium.speed), waveform };
+}
+
+function curveOf(given: GivenWire, path: Path, report: Report): Curve | undefined {
   let sound = true;
   for (let k = 1; k < given.points.length; k++) {
     if (norm(sub(given.points[k]!, given.points[k - 1]!)) > 0) continue;
@@ -413,25 +423,133 @@ function buildSource(
     );
     sound = false;
   }
-  if (!sound) return undefined;
-  const curve = polyline(given.points);
-  return { type: 'wire', name, curve, terms: termsOf(given.current, curve.length, medium.speed), waveform };
+  return sound ? polyline(given.points) : undefined;
+}
+
+/** Of the wire's length: how far the first and last position of a sampled current may be off its ends. */
+const END_SLACK = 1e-6;
+
+/**
+ * A wire whose current is given at arc lengths, straight lines between them: I(s, t) = Σ hat_m(s) w_m(t), one filament for
+ * each position at which current flows, all along the same curve.
+ */
+function buildSampled(
+  given: GivenWire,
+  name: string,
+  allowJump: boolean,
+  path: Path,
+  notes: string[],
+  report: Report,
+): Source[] {
+  const { positions, samples } = given.current;
+  const curve = curveOf(given, path, report);
+  if (!curve || !positions || !samples) return [];
+  const where = [...path, 'current', 'positions'];
+  const { length } = curve;
+  const slack = END_SLACK * length;
+  if (Math.abs(positions[0]!) > slack || Math.abs(positions.at(-1)! - length) > slack) {
+    report(
+      where,
+      `run from ${formatQuantity(positions[0]!, 'm')} to ${formatQuantity(positions.at(-1)!, 'm')}; they must begin at 0 and end at the wire’s length, ${formatQuantity(length, 'm')}; add the ends (with 0 A where no current flows)`,
+    );
+    return [];
+  }
+  const falling = positions.findIndex((s, m) => m > 0 && !(s > positions[m - 1]!));
+  if (falling > 0) {
+    report(
+      [...where, falling],
+      `is ${formatQuantity(positions[falling]!, 'm')}, not beyond the one before it; positions must rise; sort the columns`,
+    );
+    return [];
+  }
+  const stations = positions.map((s, m) => (m === 0 ? 0 : m === positions.length - 1 ? length : s));
+  const rows = samples.map((row, n) => sampleRow(row, stations.length, [...path, 'current', 'samples', n], report));
+  if (rows.some((row) => row === undefined)) return [];
+  const table = rows as number[][];
+  return stations.flatMap((s, m): Source[] => {
+    const currents = table.map((row) => row[m + 1]!);
+    if (currents.every((i) => i === 0)) return [];
+    const column = { type: 'table' as const, samples: table.map((row): [number, number] => [row[0]!, row[m + 1]!]) };
+    const label = `${name}, s = ${formatQuantity(s, 'm')}`;
+    const waveform = buildWaveform(column, allowJump, label, [...path, 'current', 'samples'], notes, report);
+    const terms = [{ factor: 1, delay: 0, slowness: 0, profile: hat(stations, m) }];
+    return waveform ? [{ type: 'wire', name: label, curve, terms, waveform }] : [];
+  });
+}
+
+/** An instant and the currents of one row, in SI units. */
+function sampleRow(
+  row: readonly (number | string)[],
+  stations: number,
+  path: Path,
+  report: Report,
+): number[] | undefined {
+  if (row.length !== stations + 1) {
+    report(path, `has ${row.length} numbers; it must have an instant and ${stations} currents, one for each position`);
+    return undefined;
+  }
+  const parsed = row.map((value, n) => parseQuantity(value, n === 0 ? 'time' : 'current'));
+  const wrong = parsed.findIndex((each) => 'reason' in each);
+  if (wrong < 0) return parsed.map((each) => (each as { value: number }).value);
+  report([...path, wrong], (parsed[wrong] as { reason: string }).reason);
+  return undefined;
 }
 
 /**
- * The current's terms factor · w(t − delay − slowness·s): forward waves have slowness 1/v; backward ones,
+ * The current's terms factor · a(s) · w(t − delay − slowness·s): forward waves have slowness 1/v; backward ones,
  * w(t − delay − (L − s)/v), slowness −1/v and the delay L/v more.
  */
 function termsOf(current: GivenWire['current'], length: number, mediumSpeed: number): WaveTerm[] {
-  if (current.waves)
-    return current.waves.map(({ direction, speed = 1, delay = 0, factor = 1 }) => {
-      const slowness = 1 / (speed * mediumSpeed);
-      return direction === 'forward'
-        ? { factor, delay, slowness }
-        : { factor, delay: delay + length * slowness, slowness: -slowness };
+  const profile = current.profile ?? (current.waves ? 'waves' : 'uniform');
+  if (profile === 'sinusoidal')
+    return [{ factor: 1, delay: 0, slowness: 0, profile: standing(length, current.wavenumber!) }];
+  if (profile === 'uniform') return [{ factor: 1, delay: 0, slowness: 0 }];
+  const waves = current.waves ?? [{ direction: 'forward' as const, speed: current.speed }];
+  return waves
+    .flatMap((wave) => bounced(wave, current.reflection, length, mediumSpeed))
+    .map((wave) => termOf(wave, length));
+}
+
+/** A wave with its speed in m/s. */
+interface GoingWave {
+  readonly direction: 'forward' | 'backward';
+  readonly speed: number;
+  readonly delay: number;
+  readonly factor: number;
+  readonly decayLength: number | undefined;
+}
+
+function termOf({ direction, speed, delay, factor, decayLength }: GoingWave, length: number): WaveTerm {
+  const slowness = 1 / speed;
+  const profile = decayLength === undefined ? {} : { profile: decaying(length, decayLength, direction) };
+  return direction === 'forward'
+    ? { factor, delay, slowness, ...profile }
+    : { factor, delay: delay + length * slowness, slowness: -slowness, ...profile };
+}
+
+/** A wave and its reflections: what arrives at an end, a way L/v later and decayed, goes back with the coefficient there. */
+function bounced(
+  given: NonNullable<GivenWire['current']['waves']>[number],
+  reflection: GivenWire['current']['reflection'],
+  length: number,
+  mediumSpeed: number,
+): GoingWave[] {
+  const { direction, speed = 1, delay = 0, factor = 1, decayLength } = given;
+  const waves: GoingWave[] = [{ direction, speed: speed * mediumSpeed, delay, factor, decayLength }];
+  const left = decayLength === undefined ? 1 : exp(-length / decayLength);
+  for (let n = reflection?.count ?? (reflection ? 1 : 0); n > 0; n--) {
+    const last = waves.at(-1)!;
+    const forward = last.direction === 'forward';
+    const back = last.factor * left * ((forward ? reflection?.end : reflection?.start) ?? 0);
+    if (back === 0) break;
+    waves.push({
+      ...last,
+      direction: forward ? 'backward' : 'forward',
+      delay: last.delay + length / last.speed,
+      factor: back,
     });
-  const slowness = current.profile === 'travelling' ? 1 / ((current.speed ?? 1) * mediumSpeed) : 0;
-  return [{ factor: 1, delay: 0, slowness }];
+  }
+  return waves;
 }
 
 /** A vector of length 1, without overflow on the way. */
@@ -441,27 +559,35 @@ function unit(v: Vec3): Vec3 {
 }
 
 function buildWaveform(
-  given: GivenSource['current']['waveform'],
+  given: GivenWaveform,
   allowJumpAnywhere: boolean,
   source: string,
   path: Path,
   notes: string[],
   report: Report,
 ): Waveform | undefined {
-  const { allowJump = allowJumpAnywhere, ...spec } = given;
+  const { allowJump = allowJumpAnywhere } = given;
   let waveform: Waveform;
   try {
-    waveform = makeWaveform(spec as WaveformSpec);
+    const spec = specOf(given, source, notes);
+    if (!spec) return undefined;
+    waveform = makeWaveform(spec);
   } catch (error) {
-    // What the schema lets through and no waveform can be made of: a pulse that is over before t = 0.
-    report([...path, 'delay'], `leaves no current: ${(error as Error).message.replace(/\.$/, '')}`);
+    // What the schema lets through and no waveform can be made of: a pulse that is over before t = 0, a broken table.
+    const key = given.type === 'table' ? [] : ['delay'];
+    report([...path, ...key], `leaves no current: ${(error as Error).message.replace(/\.$/, '')}`);
     return undefined;
   }
+  if (waveform.spec.type === 'table') noteBand(waveform, waveform.spec.times, source, notes);
   const jump = Number(waveform.jump.toPrecision(2));
   if (waveform.jump > JUMP_REFUSED && !allowJump) {
+    const [key, remedy] =
+      given.type === 'table'
+        ? [[], 'begin the table with 0 A']
+        : [['delay'], 'raise delay (8.6 sigma suffice for a Gaussian)'];
     report(
-      [...path, 'delay'],
-      `makes the current jump at t = 0 by ${jump} of its peak; the limit is ${JUMP_REFUSED}; raise delay (8.6 sigma suffice for a Gaussian) or set "allowJump": true`,
+      [...path, ...key],
+      `makes the current jump at t = 0 by ${jump} of its peak; the limit is ${JUMP_REFUSED}; ${remedy} or set "allowJump": true`,
     );
     return undefined;
   }
@@ -470,6 +596,57 @@ function buildWaveform(
       `The current of “${source}” jumps at t = 0 by ${jump} of its peak and radiates a front that no grid resolves; raise its delay to be rid of it.`,
     );
   return waveform;
+}
+
+/** The specification in SI units with presets and defaults filled in; nothing where the schema has refused it. */
+function specOf(given: GivenWaveform, source: string, notes: string[]): WaveformSpec | undefined {
+  if (given.type === 'heidler') {
+    if (given.terms) return { type: 'heidler', terms: given.terms };
+    const { amplitude, terms } = HEIDLER_PRESETS[given.preset!];
+    const gain = (given.amplitude ?? amplitude) / amplitude;
+    return { type: 'heidler', terms: terms.map((term) => ({ ...term, amplitude: gain * term.amplitude })) };
+  }
+  if (given.type === 'rampedSine') {
+    const { type, amplitude, frequency, ramp = 3, hold } = given;
+    return { type, amplitude, frequency, ramp, hold };
+  }
+  if (given.type === 'table') return given.samples && tableSpec(given.samples, given.delay ?? 0, source, notes);
+  const { allowJump: _, ...spec } = given;
+  return spec;
+}
+
+/**
+ * A table whose first and last current, where they are not 0 but small, are set to 0: the spline has no jumps then. One
+ * that starts at t = 0 keeps its jump, as other waveforms do.
+ */
+function tableSpec(
+  samples: readonly (readonly [number, number])[],
+  delay: number,
+  source: string,
+  notes: string[],
+): WaveformSpec {
+  const times = samples.map(([t]) => t + delay);
+  const currents = samples.map(([, i]) => i);
+  const peak = currents.reduce((most, i) => Math.max(most, Math.abs(i)), 0);
+  for (const m of times[0]! > 0 ? [0, times.length - 1] : [times.length - 1]) {
+    const part = Math.abs(currents[m]!) / peak;
+    if (!(part > 0 && part <= JUMP_REFUSED)) continue;
+    if (part > JUMP_NOTED)
+      notes.push(
+        `The table of “${source}” ${m === 0 ? 'begins' : 'ends'} with ${Number(part.toPrecision(2))} of its peak, which is taken as 0.`,
+      );
+    currents[m] = 0;
+  }
+  return { type: 'table', times, currents };
+}
+
+/** What a table does between its samples is a guess where its spectrum reaches beyond what they resolve. */
+function noteBand(waveform: Waveform, times: readonly number[], source: string, notes: string[]): void {
+  const limit = resolved(times);
+  if (waveform.highestFrequency(SIGNIFICANT) > limit)
+    notes.push(
+      `The samples of “${source}” resolve frequencies up to ${formatQuantity(limit, 'Hz')}, where what radiates is still above −40 dB: between them the current is a guess of the spline; sample it more finely.`,
+    );
 }
 
 function checkInside(index: number, source: Source, grid: Grid, report: Report): void {

@@ -28,14 +28,30 @@ export interface Medium {
 }
 
 /**
- * One term of a filament's current: factor · w(t − delay − slowness·s), s the arc length from the first point.
+ * One term of a filament's current: factor · a(s) · w(t − delay − slowness·s), s the arc length from the first point.
  * slowness (s/m) is 0 for a uniform current, +1/v for a forward wave, −1/v for a backward one (whose delay then
- * includes L/v).
+ * includes L/v). a is the term's profile, 1 where there is none. By λ̇ = −∂I/∂s its charge per length is
+ * factor · (slowness · a w − a′ q), q = ∫w.
  */
 export interface WaveTerm {
   readonly factor: number;
   readonly delay: number;
   readonly slowness: number;
+  readonly profile?: Profile;
+}
+
+/** An amplitude along a filament: continuous in s, its slope but for jumps at `breaks`. */
+export interface Profile {
+  /** a, dimensionless */
+  value(s: number): number;
+  /** da/ds, 1/m, between breaks */
+  slope(s: number): number;
+  /** arc lengths inside the filament at which the slope jumps, ascending, m */
+  readonly breaks: readonly number[];
+  /** a is 0 outside of these arc lengths, m */
+  readonly support: readonly [number, number];
+  /** a length over which a varies by about itself, m: how finely it must be sampled */
+  readonly scale: number;
 }
 
 /** A thin filament, I(s, t) = Σ over its terms; positive current flows towards growing s. */

@@ -5,8 +5,10 @@
  * Messages are predicates, "is -1; it must be …": the name of the key is put before them by whoever knows its path.
  */
 import { z } from 'zod';
+import { HEIDLER_EXPONENTS, HEIDLER_PRESETS } from './heidler.ts';
 import { FACES, GRIDDINGS } from './model.ts';
 import { nearest } from './nearest.ts';
+import { SHORTEST_RAMP } from './rampedSine.ts';
 import { KINDS, type Kind, type Parsed, parseFraction, parseQuantity, show } from './units.ts';
 
 export const LIMITS = {
@@ -15,6 +17,12 @@ export const LIMITS = {
   planes: 100,
   pointsPerWire: 10_000,
   wavesPerWire: 100,
+  bounces: 100,
+  heidlerTerms: 20,
+  samples: 10_000,
+  stations: 200,
+  /** of a sine, in periods: a pulse solver answers longer ones badly */
+  periods: 1e5,
   layers: 128,
   /** cells across one sigma of phase: more is a continuous wave, which a pulse solver answers badly */
   cyclesPerSigma: 1000,
@@ -146,7 +154,42 @@ const allowJump = z
   .optional()
   .describe('Accept a jump at t = 0 above 1e-3 of the peak (default: that of the scenario).');
 
-export const WAVEFORMS = ['gaussian', 'gaussianDerivative', 'modulatedGaussian', 'doubleExponential'] as const;
+export const WAVEFORMS = [
+  'gaussian',
+  'gaussianDerivative',
+  'modulatedGaussian',
+  'doubleExponential',
+  'heidler',
+  'rampedSine',
+  'table',
+] as const;
+
+/** A file beside the scenario, which the command line reads and puts in place of its name. */
+const file = (columns: string) =>
+  text(LIMITS.text, 'the name of a CSV file')
+    .optional()
+    .describe(`CSV file with the columns ${columns}, relative to the scenario.`);
+
+/** Columns of a table's file. */
+export const TABLE_COLUMNS = 't,I (s and A)';
+export const STATION_COLUMNS = 't, then one of current for each arc length that the header names (s, A and m)';
+
+/** A number of periods, whole or not. */
+const periods = (least: number) => {
+  const error = expected(`a number of periods from ${least} to ${LIMITS.periods}`);
+  return z.number({ error }).gte(least, { error }).lte(LIMITS.periods, { error });
+};
+
+function oneOfTwoTables(
+  { samples, file }: { samples?: unknown; file?: string | undefined },
+  ctx: z.core.$RefinementCtx,
+): void {
+  const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
+  if (samples && file !== undefined) wrong('file', 'stands beside samples; a table has one or the other; remove one');
+  if (!samples && file === undefined) wrong('samples', 'is missing; a table must have samples or name a file');
+  if (!samples && file !== undefined)
+    wrong('file', `is ${show(file)}, and files are read by the command line alone; give the samples instead`);
+}
 
 const waveform = oneOf('a waveform', WAVEFORMS, [
   record('a Gaussian', {
@@ -191,6 +234,69 @@ const waveform = oneOf('a waveform', WAVEFORMS, [
       return `is ${alpha} 1/s, not below beta, ${beta} 1/s; the decay must be slower than the rise: exchange them or raise beta`;
     },
   }),
+  record('a Heidler pulse', {
+    type: tag(
+      'heidler',
+      'w = Σ amplitude/η · xⁿ/(1 + xⁿ) · exp(−t/tau2), x = t/tau1, η = exp(−(tau1/tau2)(n·tau2/tau1)^(1/n)).',
+    ),
+    preset: choice(Object.keys(HEIDLER_PRESETS) as [keyof typeof HEIDLER_PRESETS, ...(keyof typeof HEIDLER_PRESETS)[]])
+      .optional()
+      .describe('A published pulse: iec61000-4-2 (contact discharge) or iec62305-first (10/350 µs stroke).'),
+    amplitude: amplitude('With a preset: its nominal peak (default: 15 A at 4 kV, 200 kA)').optional(),
+    terms: list(
+      record('a term', {
+        amplitude: amplitude('Amplitude of the term'),
+        tau1: quantity('time', 'positive').describe('Time of rise, s.'),
+        tau2: quantity('time', 'positive').describe('Time of decay, s.'),
+        n: number('a number')
+          .refine((n) => n >= HEIDLER_EXPONENTS.least && n <= HEIDLER_EXPONENTS.most, {
+            error: expected(`an exponent from ${HEIDLER_EXPONENTS.least} to ${HEIDLER_EXPONENTS.most}`),
+          })
+          .describe('Exponent of the rise.'),
+      }),
+      1,
+      LIMITS.heidlerTerms,
+      'terms',
+    )
+      .optional()
+      .describe('Terms whose sum is the pulse, in place of a preset.'),
+    allowJump,
+  }).superRefine(({ preset, amplitude, terms }, ctx) => {
+    const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
+    if (preset && terms)
+      wrong('terms', `stands beside preset ${show(preset)}; a pulse has one or the other; remove one`);
+    if (!preset && !terms) wrong('preset', 'is missing; a Heidler pulse must have a preset or a list of terms');
+    if (amplitude !== undefined && !preset)
+      wrong('amplitude', 'belongs to a preset; give the amplitude of each term instead');
+  }),
+  record('a ramped sine', {
+    type: tag(
+      'rampedSine',
+      'w = amplitude · r(t) · sin(2π · frequency · t), r rising from 0 to 1, staying, falling to 0.',
+    ),
+    amplitude: amplitude('Peak of the sine'),
+    frequency: quantity('frequency', 'positive').describe('Frequency, Hz.'),
+    ramp: periods(SHORTEST_RAMP).optional().describe('Periods that the rise and the fall each take (default 3).'),
+    hold: periods(0).describe('Periods between them, at full amplitude.'),
+    allowJump,
+  }),
+  record('a table', {
+    type: tag('table', 'The natural cubic spline through samples; zero before the first and after the last.'),
+    samples: z
+      .array(
+        z.tuple([quantity('time'), quantity('current')], {
+          error: expected('a sample: an instant and a current, such as ["1 ns", "0.2 A"]'),
+        }),
+        { error: expected(`a list of 3 to ${LIMITS.samples} samples`) },
+      )
+      .min(3, { error: expected(`a list of 3 to ${LIMITS.samples} samples`) })
+      .max(LIMITS.samples, { error: expected(`a list of 3 to ${LIMITS.samples} samples`) })
+      .optional()
+      .describe('Samples [t, I] in order of time, beginning and ending with no current.'),
+    file: file(TABLE_COLUMNS),
+    delay: quantity('time').optional().describe('Added to every instant of the table, s (default 0).'),
+    allowJump,
+  }).superRefine(oneOfTwoTables),
 ]).describe('Time dependence w(t) of the current; zero for t < 0.');
 
 const speed = number('a fraction of the speed of waves in the medium, above 0 and at most 1')
@@ -209,27 +315,93 @@ const wave = record('a wave', {
     .refine((value) => Math.abs(value) <= LIMITS.magnitude, { error: expected(`at most ${LIMITS.magnitude} in size`) })
     .optional()
     .describe('Factor of this wave (default 1).'),
+  decayLength: quantity('length', 'positive')
+    .optional()
+    .describe('Way along the wire on which the wave falls to 1/e, m (default: it does not).'),
 });
 
+const coefficient = number('a number from -1 to 1')
+  .gte(-1, { error: expected('a number from -1 to 1') })
+  .lte(1, { error: expected('a number from -1 to 1') })
+  .optional();
+
+const reflection = record('the reflections', {
+  start: coefficient.describe('Of the current at the first point: -1 open, 0 matched (default), 1 shorted.'),
+  end: coefficient.describe('The same at the last point.'),
+  count: z
+    .int({ error: expected(`a whole number from 1 to ${LIMITS.bounces}`) })
+    .gte(1, { error: expected(`a whole number from 1 to ${LIMITS.bounces}`) })
+    .lte(LIMITS.bounces, { error: expected(`a whole number from 1 to ${LIMITS.bounces}`) })
+    .optional()
+    .describe('How often a wave is reflected before it counts as absorbed (default 1).'),
+});
+
+export const PROFILES = ['uniform', 'travelling', 'waves', 'sinusoidal', 'sampled'] as const;
+
+/** Which keys belong to which profile. */
+const KEYS_OF_PROFILE = {
+  speed: ['travelling'],
+  waves: ['waves'],
+  reflection: ['travelling', 'waves'],
+  wavenumber: ['sinusoidal'],
+  positions: ['sampled'],
+  samples: ['sampled'],
+  file: ['sampled'],
+} as const satisfies Record<string, readonly (typeof PROFILES)[number][]>;
+
 const currentOfWire = record("a wire's current", {
-  profile: choice(['uniform', 'travelling', 'waves'])
+  profile: choice(PROFILES)
     .optional()
     .describe(
-      'uniform: I = w(t) (default); travelling: one forward wave; waves: the sum of `waves` (default if they are given).',
+      'uniform: I = w(t) (default); travelling: one forward wave; waves: the sum of `waves` (default if they are given); sinusoidal: I = sin(k(L/2 − |s − L/2|)) w(t); sampled: currents given at arc lengths, straight lines between them.',
     ),
   speed,
   waves: list(wave, 1, LIMITS.wavesPerWire, 'waves').optional().describe('Travelling waves whose sum is the current.'),
-  waveform,
-}).superRefine(({ profile, speed, waves }, ctx) => {
+  reflection: reflection.optional().describe('What becomes of travelling waves at the ends (default: absorbed).'),
+  wavenumber: quantity('wavenumber', 'positive').optional().describe('k of a sinusoidal current, rad/m.'),
+  positions: list(quantity('length', 'not negative'), 2, LIMITS.stations, 'arc lengths')
+    .optional()
+    .describe('Arc lengths of the columns of `samples`, m, rising from 0 to the length of the wire.'),
+  samples: list(
+    z
+      .array(z.union([z.number(), z.string()]), {
+        error: expected('a list of an instant and one current for each position'),
+      })
+      .max(LIMITS.stations + 1, { error: expected(`a list of at most ${LIMITS.stations + 1} numbers`) }),
+    3,
+    LIMITS.samples,
+    'samples',
+  )
+    .optional()
+    .describe('Rows [t, I at the first position, I at the second, …] in order of time (s and A).'),
+  file: file(STATION_COLUMNS),
+  waveform: waveform.optional(),
+}).superRefine((current, ctx) => {
   const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
-  if (speed !== undefined && profile !== 'travelling')
+  const profile = current.profile ?? (current.waves ? 'waves' : 'uniform');
+  for (const [key, profiles] of Object.entries(KEYS_OF_PROFILE))
+    if (
+      current[key as keyof typeof KEYS_OF_PROFILE] !== undefined &&
+      !(profiles as readonly string[]).includes(profile)
+    )
+      wrong(
+        key,
+        `belongs to the profile ${profiles.map((name) => `"${name}"`).join(' or ')}, not to "${profile}"; remove it or set profile`,
+      );
+  if (profile === 'waves' && !current.waves)
+    wrong('waves', 'is missing; the profile "waves" must have a list of waves');
+  if (profile === 'sinusoidal' && current.wavenumber === undefined)
+    wrong('wavenumber', 'is missing; the profile "sinusoidal" must have a wavenumber, such as "62.8 rad/m"');
+  if (profile === 'sampled') {
+    oneOfTwoTables(current, ctx);
+    if (current.samples && !current.positions)
+      wrong('positions', 'is missing; a sampled current must have the arc lengths of its columns');
+    if (current.waveform) wrong('waveform', 'belongs to the other profiles; a sampled current has its own; remove it');
+  } else if (!current.waveform)
     wrong(
-      'speed',
-      `belongs to the profile "travelling", not to "${profile ?? (waves ? 'waves' : 'uniform')}"; remove it or set profile`,
+      'waveform',
+      `is missing; it must be an object that describes a waveform, its type one of ${WAVEFORMS.join(', ')}`,
     );
-  if (waves && profile !== undefined && profile !== 'waves')
-    wrong('waves', `belongs to the profile "waves", not to "${profile}"; remove one of the two`);
-  if (profile === 'waves' && !waves) wrong('waves', 'is missing; the profile "waves" must have a list of waves');
 });
 
 const uniformCurrent = record("a loop's current", {

@@ -7,6 +7,7 @@ export const KINDS = {
   frequency: { unit: 'Hz', words: 'a frequency', example: '"2.4 GHz" or 2.4e9 (hertz)' },
   rate: { unit: '1/s', words: 'a rate', example: '"4e7 1/s" or 4e7 (per second)' },
   current: { unit: 'A', words: 'a current', example: '"1 A" or 1 (amperes)' },
+  wavenumber: { unit: '1/m', words: 'a wavenumber', example: '"62.8 rad/m" or 62.8 (radians per metre)' },
 } as const;
 export type Kind = keyof typeof KINDS;
 
@@ -17,6 +18,7 @@ const KIND_OF_UNIT: Readonly<Record<Kind, string>> = {
   frequency: 'frequency',
   rate: 'frequency',
   current: 'current',
+  wavenumber: 'wavenumber',
 };
 
 /** A number, or why there is none: a predicate that follows the name of the key, without a full stop. */
@@ -48,7 +50,8 @@ export function parseQuantity(given: number | string, kind: Kind): Parsed {
     return { reason: `is ${shown}, which does not begin with a number; ${wanted}` };
   let factor: number;
   try {
-    const one = Qty(`1 ${unit}`);
+    // The library counts radians as a dimension.
+    const one = Qty(`1 ${kind === 'wavenumber' ? unit.replace(/^rad\//, '1/') : unit}`);
     if (one.kind() !== KIND_OF_UNIT[kind]) return { reason: `is ${shown}, ${article(one.kind())}; ${wanted}` };
     factor = one.to(kind === 'rate' ? '1/s' : KINDS[kind].unit).scalar;
   } catch {

@@ -15,7 +15,25 @@ export type WaveformSpec =
       readonly sigma: number;
       readonly frequency: number;
     }
-  | { readonly type: 'doubleExponential'; readonly amplitude: number; readonly alpha: number; readonly beta: number };
+  | { readonly type: 'doubleExponential'; readonly amplitude: number; readonly alpha: number; readonly beta: number }
+  | { readonly type: 'heidler'; readonly terms: readonly HeidlerTerm[] }
+  | {
+      readonly type: 'rampedSine';
+      readonly amplitude: number;
+      readonly frequency: number;
+      /** periods that the ramps up and down each take, and periods between them */
+      readonly ramp: number;
+      readonly hold: number;
+    }
+  | { readonly type: 'table'; readonly times: readonly number[]; readonly currents: readonly number[] };
+
+/** (amplitude/η) xⁿ/(1 + xⁿ) e^(−t/tau2), x = t/tau1, η = exp(−(tau1/tau2)(n tau2/tau1)^(1/n)). */
+export interface HeidlerTerm {
+  readonly amplitude: number;
+  readonly tau1: number;
+  readonly tau2: number;
+  readonly n: number;
+}
 
 export interface Waveform {
   /** as in the scenario file, in SI units (A, s, Hz, 1/s) */

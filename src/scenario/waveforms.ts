@@ -1,24 +1,46 @@
 import { cos, exp, expm1, log, log1p, sin } from '../elementary/elementary.ts';
 import { faddeeva, scaledErfc } from '../elementary/faddeeva.ts';
+import { heidler } from './heidler.ts';
+import { orderOfJump } from './jump.ts';
+import { rampedSine } from './rampedSine.ts';
+import { bisect, doubleUntil, largest } from './search.ts';
+import { table } from './table.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 
 /**
- * The waveform of a specification in SI units. Everything is in closed form: derivatives by recurrence, charge by the
- * complex error function. Units of what it returns: see `Waveform`. Charge from t = 0 is accurate to rounding relative
+ * The waveform of a specification in SI units. Everything but a Heidler pulse's charge is in closed form: derivatives by
+ * recurrence, charge by the complex error function. Units of what it returns: see `Waveform`. Charge from t = 0 is accurate to rounding relative
  * to the largest charge, w and its derivatives relative to their own peaks.
- * @throws RangeError where the specification has no waveform: amplitude 0, sigma ≤ 0, beta ≤ alpha, or a number that
- *   is not finite
+ * @throws RangeError where the specification has no waveform: amplitude 0, sigma ≤ 0, beta ≤ alpha, a table that does not
+ *   rise in time, or a number that is not finite
  */
 export function makeWaveform(spec: WaveformSpec): Waveform {
+  if (spec.type === 'heidler') return remembered(spec, heidler);
+  if (spec.type === 'table') return remembered(spec, table);
   for (const [key, value] of Object.entries(spec))
     if (key !== 'type' && !Number.isFinite(value)) throw new RangeError(`${key} is ${value}; it must be finite.`);
   if (spec.amplitude === 0) throw new RangeError('amplitude is 0; a source needs a current.');
   if (spec.type === 'doubleExponential') return doubleExponential(spec);
+  if (spec.type === 'rampedSine') return rampedSine(spec);
   if (!(spec.sigma > 0)) throw new RangeError(`sigma is ${spec.sigma} s; it must be above 0.`);
   if (spec.type === 'modulatedGaussian' && !(spec.frequency > 0))
     throw new RangeError(`frequency is ${spec.frequency} Hz; it must be above 0.`);
   if (spec.type === 'modulatedGaussian') return modulatedGaussian(spec);
   return spec.type === 'gaussian' ? gaussianOfOrder(spec, 0) : gaussianOfOrder(spec, 1);
+}
+
+/** Waveforms that cost a search or a system of equations: one scenario is read by many tasks of one worker. */
+const known = new Map<string, Waveform>();
+const MOST_KNOWN = 64;
+
+function remembered<Spec extends WaveformSpec>(spec: Spec, make: (spec: Spec) => Waveform): Waveform {
+  const key = JSON.stringify(spec);
+  const old = known.get(key);
+  if (old) return old;
+  if (known.size === MOST_KNOWN) known.clear();
+  const made = make(spec);
+  known.set(key, made);
+  return made;
 }
 
 type GaussianSpec = Extract<WaveformSpec, { type: 'gaussian' | 'gaussianDerivative' }>;
@@ -33,26 +55,6 @@ const SPENT = 39;
 
 /** e^(−u²/2) is below one rounding of its peak. */
 const SPENT_TO_ROUNDING = 9;
-
-/** Jumps, relative to peak, above which a note is due, and above which a file must allow it. */
-export const JUMP_NOTED = 1e-7;
-export const JUMP_REFUSED = 1e-3;
-
-/**
- * Order to be expected of a second-order grid for a field of smoothness k (in L2: a jump of the field has k = ½, a jump
- * of its slope 3/2): 2k/3. Brenner, Thomée, Wahlbin, "Besov Spaces and Applications to Difference Methods for Initial
- * Value Problems", 1975 (from memory); measured 0.34 for a double-exponential onset, whose radiated field jumps.
- */
-function orderOfJump(jump: number): Waveform['expectedOrder'] {
-  if (jump > JUMP_REFUSED)
-    return {
-      order: -1 / 3,
-      reason: 'the current jumps at t = 0, so its radiated field is an impulse that no grid resolves',
-    };
-  if (jump > JUMP_NOTED)
-    return { order: 2, reason: 'smooth but for a small jump at t = 0, whose front is an error of its own that stays' };
-  return { order: 2, reason: 'smooth' };
-}
 
 /**
  * w = A (−1)^k √e^k He_k(u) e^(−u²/2), u = (t − delay)/sigma: a Gaussian (k = 0) or its derivative, −A√e u e^(−u²/2)
@@ -332,38 +334,6 @@ function lastSlope(
     while (u > start && size(u) < limit) u = Math.max(start, u - step);
     return delay + sigma * bisect((v) => size(v) >= limit, u, u + step);
   };
-}
-
-/** The largest value of f ≥ 0 on an interval: the best of equidistant samples, refined between its neighbours. */
-function largest(f: (x: number) => number, from: number, to: number, step: number): number {
-  let best = from;
-  for (let x = from; x <= to; x += step) if (f(x) > f(best)) best = x;
-  let low = Math.max(from, best - step);
-  let high = best + step;
-  // The value at a maximum is flat: 40 thirds of the interval give it to rounding.
-  for (let n = 0; n < 40; n++) {
-    const third = (high - low) / 3;
-    if (f(low + third) < f(high - third)) low += third;
-    else high -= third;
-  }
-  return Math.max(f(best), f(low));
-}
-
-/** Where `holds` turns from true (at `yes`) to false (at `no`), to the last bit. */
-function bisect(holds: (x: number) => boolean, yes: number, no: number): number {
-  for (;;) {
-    const middle = (yes + no) / 2;
-    if (middle === yes || middle === no) return yes;
-    if (holds(middle)) yes = middle;
-    else no = middle;
-  }
-}
-
-/** `start` doubled until `holds`. */
-function doubleUntil(holds: (x: number) => boolean, start: number): number {
-  let x = start;
-  while (!holds(x)) x *= 2;
-  return x;
 }
 
 /** The x above `top`, where a falling log-spectrum has its peak, at which it is `level` of that peak. */

@@ -13,6 +13,7 @@ import {
   type Vec3,
   type WaveTerm,
 } from '../../src/scenario/model.ts';
+import { decaying, hat, standing } from '../../src/scenario/profiles.ts';
 import type { Waveform } from '../../src/scenario/waveform.ts';
 
 /** A polynomial pulse: its charge and derivatives are known exactly, which is all that gridding needs of a waveform. */
@@ -82,12 +83,29 @@ describe('charge-conserving gridding', () => {
     });
   });
 
-  test('node charges equal the trilinear deposit of the designed charge (≤ 1e-12 q)', () => {
-    const curve = polyline([...tilted, [0.05, 0.03, 0.02]]);
-    const { charges } = gridSources([filament(curve, travelling)], grid);
+  const bent = polyline([...tilted, [0.05, 0.03, 0.02]]);
+  const terms: [string, WaveTerm][] = [
+    ['travelling', travelling[0]!],
+    ['standing', { factor: 1.3, delay: 0, slowness: 0, profile: standing(bent.length, 31) }],
+    [
+      'decaying, backward',
+      {
+        factor: -0.8,
+        delay: 0.1e-9 + (1.5 * bent.length) / SPEED,
+        slowness: -1.5 / SPEED,
+        profile: decaying(bent.length, 0.05, 'backward'),
+      },
+    ],
+    ['hat', { factor: 1, delay: 0.1e-9, slowness: 0, profile: hat([0, 0.03, 0.07, bent.length], 1) }],
+    ['half a hat', { factor: 1, delay: 0.1e-9, slowness: 0, profile: hat([0, 0.03, 0.07, bent.length], 3) }],
+  ];
+  test.each(terms)('node charges equal the trilinear deposit of the designed charge (≤ 1e-12 q): %s', (_, term) => {
+    const curve = bent;
+    const { charges } = gridSources([filament(curve, [term])], grid);
     const expected = new Map<string, number>();
     const t = 1.9e-9;
-    const term = travelling[0]!;
+    const a = (s: number) => term.factor * (term.profile?.value(s) ?? 1);
+    const da = (s: number) => term.factor * (term.profile?.slope(s) ?? 0);
     const deposit = (p: ArrayLike<number>, q: number) => {
       const u = [0, 1, 2].map((a) => (p[a]! - grid.origin[a]!) / grid.cellSize[a]!);
       const cell = u.map(Math.floor);
@@ -98,11 +116,12 @@ describe('charge-conserving gridding', () => {
         expected.set(key, (expected.get(key) ?? 0) + weight * q);
       }
     };
-    // λ = slowness·w by continuity; a fine composite rule in s, its own, independent of the cuts at grid planes.
+    // λ = slowness·a w − a′ q by continuity; a fine composite rule in s, its own, independent of the cuts at grid planes.
     const point = new Float64Array(3);
     const { nodes, weights } = gaussLegendre(8);
     for (const piece of curve.pieces) {
-      const cuts = [piece.s0, piece.s0 + piece.length];
+      const breaks = (term.profile?.breaks ?? []).filter((s) => s > piece.s0 && s < piece.s0 + piece.length);
+      const cuts = [piece.s0, piece.s0 + piece.length, ...breaks];
       for (const axis of [0, 1, 2] as const)
         for (let i = 0; i <= grid.cells[axis]; i++)
           cuts.push(...piece.crossings(axis, grid.origin[axis] + i * grid.cellSize[axis]));
@@ -112,13 +131,14 @@ describe('charge-conserving gridding', () => {
           const ds = cuts[c]! - cuts[c - 1]!;
           const s = cuts[c - 1]! + x * ds;
           piece.point(s, point);
-          deposit(point, weights[m]! * ds * term.slowness * pulse.value(t - term.delay - term.slowness * s));
+          const u = t - term.delay - term.slowness * s;
+          deposit(point, weights[m]! * ds * (term.slowness * a(s) * pulse.value(u) - da(s) * pulse.charge(u)));
         });
     }
     curve.pieces[0]!.point(0, point);
-    deposit(point, -pulse.charge(t - term.delay));
+    deposit(point, -a(0) * pulse.charge(t - term.delay));
     curve.pieces[1]!.point(curve.length, point);
-    deposit(point, pulse.charge(t - term.delay - term.slowness * curve.length));
+    deposit(point, a(curve.length) * pulse.charge(t - term.delay - term.slowness * curve.length));
     const q = pulse.charge(SPAN);
     let worst = 0;
     for (let n = 0; n < charges.count; n++) {

@@ -5,7 +5,7 @@
 Nothing here is a closed form: every filament's field is quadrature of
     4 pi eps E = int [(lam/R^3 + lam'/(c R^2)) R - s I'/(c^2 R)] ds + sum_ends (Q/R^3 + Q'/(c R^2)) R
     4 pi/mu B = int (I/R^3 + I'/(c R^2)) s x R ds,  4 pi eps phi = int lam/R ds + sum_ends Q/R,  4 pi/mu A = int s I/R ds
-with I = f w(t - delay - p s), lam = p I, Q = -+ int I, w a Gaussian or its derivative from t = 0 on (Jackson, Classical
+with I = f a(s) w(t - delay - p s), lam = f (p a w - a' q), Q = -+ int I, w a Gaussian or its derivative from t = 0 on (Jackson, Classical
 Electrodynamics, 3rd ed., sec. 6.5, from memory). Inputs are doubles, taken as exact; places are seeded.
 """
 import json
@@ -112,10 +112,33 @@ def pieces_of(curve):
     return out
 
 
-def field(curve, terms, w, point, t):
+class Profile:
+    """a(s) = 1, e^(-s/d), e^(-(L - s)/d), or sin k(L/2 - |s - L/2|), with its slope; d and k are doubles."""
+
+    def __init__(self, spec, length):
+        self.spec, self.length = spec or {"kind": "one"}, length
+        self.breaks = [length / 2] if self.spec["kind"] == "standing" else []
+
+    def __call__(self, s):
+        kind = self.spec["kind"]
+        if kind == "one":
+            return mpf(1), mpf(0)
+        if kind == "standing":
+            k, first = mpf(self.spec["wavenumber"]), s <= self.length / 2
+            x = k * (s if first else self.length - s)
+            return sin(x), (1 if first else -1) * k * cos(x)
+        d = mpf(self.spec["decay"])
+        forward = self.spec["direction"] == "forward"
+        a = exp(-s / d) if forward else exp((s - self.length) / d)
+        return a, (-1 if forward else 1) * a / d
+
+
+def field(curve, terms, w, point, t, profile=None):
     p, t = [mpf(x) for x in point], mpf(t)
     pieces = pieces_of(curve)
     total = [mpf(0)] * 10
+    length = pieces[-1].s0 + pieces[-1].length
+    shape = Profile(profile, length)
     for f, delay, slowness in terms:
         f, delay = mpf(f), mpf(delay)
         for piece in pieces:
@@ -123,8 +146,9 @@ def field(curve, terms, w, point, t):
                 R, d = piece.look(p, s)
                 r = sqrt(dot(R, R))
                 u = t - delay - slowness * s - r / C
-                I, dI = f * w.w(u), f * w.slope(u)
-                lam, dlam = slowness * I, slowness * dI
+                a, da = shape(s)
+                I, dI = f * a * w.w(u), f * a * w.slope(u)
+                lam, dlam = slowness * I - f * da * w.q(u), slowness * dI - f * da * w.w(u)
                 near, far = lam / r**3 + dlam / (C * r**2), dI / (C * C * r)
                 mag = I / r**3 + dI / (C * r**2)
                 x = cross(d, R)
@@ -135,7 +159,7 @@ def field(curve, terms, w, point, t):
             R, _ = piece.look(p, min(max(near, ends[0]), ends[1]))
             gap = sqrt(dot(R, R))
             # Stations around the nearest point at distances that double, so that each panel is smooth.
-            stations = set(ends)
+            stations = set(ends) | {s for s in shape.breaks if ends[0] < s < ends[1]}
             step = gap
             while step < piece.length:
                 for sign in (-1, 1):
@@ -148,14 +172,14 @@ def field(curve, terms, w, point, t):
             stations = sorted(stations)
             for a, b in zip(stations, stations[1:]):
                 total = add(total, gauss(integrand, a, b))
-        length = pieces[-1].s0 + pieces[-1].length
         if curve["kind"] == "circle":
             continue  # uniform: end charges cancel
         for s, sign in ((mpf(0), -1), (length, 1)):
             R, _ = (pieces[0] if sign < 0 else pieces[-1]).look(p, s)
             r = sqrt(dot(R, R))
             u = t - delay - slowness * s - r / C
-            Q, dQ = sign * f * w.q(u), sign * f * w.w(u)
+            a, _ = shape(s)
+            Q, dQ = sign * f * a * w.q(u), sign * f * a * w.w(u)
             g = Q / r**3 + dQ / (C * r**2)
             total = add(total, [g * x for x in R] + [mpf(0)] * 3 + [Q / r] + [mpf(0)] * 3)
     ke, km = 1 / (4 * pi * EPS), MU / (4 * pi)
@@ -193,10 +217,11 @@ def main():
     slow = 1 / C
     cases = []
 
-    def case(name, curve, terms, w, point, t):
+    def case(name, curve, terms, w, point, t, profile=None):
         numbers = [[f, delay, float(p)] for f, delay, p in terms]
-        value = field(curve, terms, w, point, t)
-        cases.append({"name": name, "curve": curve, "terms": numbers, "waveform": w.spec, "point": point, "t": t, "field": value})
+        value = field(curve, terms, w, point, t, profile)
+        row = {"name": name, "curve": curve, "terms": numbers, "waveform": w.spec, "point": point, "t": t, "field": value}
+        cases.append({**row, "profile": profile} if profile else row)
         print(name, point, t, value[:3])
 
     gauss_w = Waveform("gaussian", 1.9e-10, 1.8e-9)
@@ -243,6 +268,21 @@ def main():
             size = sum(x * x for x in normal) ** 0.5
             circle = {"kind": "circle", "centre": [0.01 * one() for _ in range(3)], "normal": [x / size for x in normal], "radius": 0.02}
             case("uniform circle, " + where, circle, [(1.0, 0.0, mpf(0))], w, point, t)
+    # Profiles, with places as above: near the wire, and anywhere.
+    for n in range(24):
+        w = gauss_w if n % 2 else slope_w
+        points = [[0.05 * one() for _ in range(3)] for _ in range(2 + n % 2)]
+        gap = 10 ** rng.uniform(-4, -1)
+        f = rng.uniform(0.1, 0.9)
+        point = [float(a + f * (b - a) + gap * one()) for a, b in zip(points[0], points[1])]
+        t = 1.8e-9 + 4e-10 * one()
+        length = float(sum(x.length for x in pieces_of({"kind": "line", "points": points})))
+        kind = ["standing", "forward", "backward"][n % 3]
+        p = {"standing": mpf(0), "forward": slow, "backward": -mpf(float(1.6 / C))}[kind]
+        delay = length * 1.7 / 299792458 if kind == "backward" else 0.0
+        spec = {"kind": "standing", "wavenumber": rng.uniform(20, 90)} if kind == "standing" else {
+            "kind": "decaying", "direction": kind, "decay": rng.uniform(0.02, 0.3)}
+        case("profile " + kind, {"kind": "line", "points": points}, [(0.8, delay, p)], w, point, t, spec)
     with open(__file__.replace(".py", ".json"), "w") as out:
         json.dump({"speed": 299792458, "permeability": 1.25663706127e-6, "cases": cases}, out, indent=1)
 

@@ -2,7 +2,8 @@ import { describe, expect, test } from 'vitest';
 import { fieldAt } from '../../src/retarded/field.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
 import { circle, polyline } from '../../src/scenario/curve.ts';
-import type { Filament, Source, Vec3 } from '../../src/scenario/model.ts';
+import type { Filament, Profile, Source, Vec3 } from '../../src/scenario/model.ts';
+import { decaying, standing } from '../../src/scenario/profiles.ts';
 import type { WaveformSpec } from '../../src/scenario/waveform.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
 import oracle from '../oracle/retarded.json' with { type: 'json' };
@@ -25,6 +26,18 @@ type Case = (typeof oracle.cases)[number];
 
 const vec = (list: readonly number[], from = 0): Vec3 => [list[from]!, list[from + 1]!, list[from + 2]!];
 
+function profileOf(entry: Case): { profile?: Profile } {
+  const { profile, curve } = entry;
+  if (!profile) return {};
+  const { length } = polyline(curve.points!.map((p) => vec(p)));
+  return {
+    profile:
+      profile.kind === 'standing'
+        ? standing(length, profile.wavenumber!)
+        : decaying(length, profile.decay!, profile.direction as 'forward' | 'backward'),
+  };
+}
+
 function sourceOf(entry: Case): Filament {
   const { curve } = entry;
   return {
@@ -34,7 +47,12 @@ function sourceOf(entry: Case): Filament {
       curve.kind === 'circle'
         ? circle(vec(curve.centre!), vec(curve.normal!), curve.radius!)
         : polyline(curve.points!.map((p) => vec(p))),
-    terms: entry.terms.map(([factor, delay, slowness]) => ({ factor: factor!, delay: delay!, slowness: slowness! })),
+    terms: entry.terms.map(([factor, delay, slowness]) => ({
+      factor: factor!,
+      delay: delay!,
+      slowness: slowness!,
+      ...profileOf(entry),
+    })),
     waveform: makeWaveform(entry.waveform as WaveformSpec),
   };
 }

@@ -6,6 +6,7 @@ import { fieldOf } from '../../src/retarded/field.ts';
 import { exactHistory } from '../../src/retarded/history.ts';
 import { type Method, prepareSources } from '../../src/retarded/prepare.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
+import { decaying, hat, standing } from '../../src/scenario/profiles.ts';
 import { instantsOf, samplePoints } from '../../src/trace/trace.ts';
 import {
   centreFed,
@@ -78,6 +79,32 @@ describe('a history is the field at every instant', () => {
           w,
         ),
       ],
+    ],
+    [
+      'standing and decaying currents on a bent wire',
+      'best',
+      (w) => {
+        const bent = wire(
+          [
+            [0, 0, -0.03],
+            [0.01, 0, 0.03],
+            [0.02, 0.03, 0.03],
+          ],
+          [],
+          w,
+        );
+        const { length } = bent.curve;
+        return [
+          {
+            ...bent,
+            terms: [
+              { factor: 1, delay: 0, slowness: 0, profile: standing(length, 40) },
+              { factor: -0.7, delay: 0.1e-9, slowness: 1 / vacuum.speed, profile: decaying(length, 0.04, 'forward') },
+              { factor: 0.5, delay: 0, slowness: 0, profile: hat([0, 0.02, 0.05, length], 2) },
+            ],
+          },
+        ];
+      },
     ],
     ['dipole', 'best', (w) => [dipole([1e-3, 2e-3, 3e-3], [0.6, 0, 0.8], 2e-3, w)]],
     [

@@ -53,6 +53,16 @@ const loop = (more: object = {}) => ({
   current: { waveform: bench().sources![0]!.current!.waveform },
   ...more,
 });
+/** A current given at three places of the reference wire, 0.1 m long. */
+const sampled = (more: object = {}) => ({
+  profile: 'sampled',
+  positions: [0, '50 mm', '100 mm'],
+  samples: Array.from({ length: 41 }, (_, n) => {
+    const i = Math.exp(-0.5 * ((n - 20) / 2.2) ** 2) * (n % 40 === 0 ? 0 : 1);
+    return [`${n * 0.05} ns`, i, 0.5 * i, 0];
+  }),
+  ...more,
+});
 const far = { from: ['-1 m', '-1 m', '-1 m'], to: ['1 m', '1 m', '1 m'] };
 
 /** What is changed, the path that must be named, and words of the remedy or limit. */
@@ -91,12 +101,169 @@ const refusals: [string, Record<string, unknown>, string, string][] = [
     'did you mean “wire”?); a source may be dipole',
   ],
   ['a source planned for later', { 'sources.0.type': 'sheet' }, 'sources.0.type', 'a source may be dipole, wire, loop'],
-  ['an unknown waveform', { [`${WAVEFORM}.type`]: 'heidler' }, `${WAVEFORM}.type`, 'gaussian, gaussianDerivative'],
+  ['an unknown waveform', { [`${WAVEFORM}.type`]: 'trapezoid' }, `${WAVEFORM}.type`, 'gaussian, gaussianDerivative'],
   [
     'an unknown profile',
-    { 'sources.0.current.profile': 'sinusoidal' },
+    { 'sources.0.current.profile': 'sinusoidale' },
     'sources.0.current.profile',
-    'uniform, travelling',
+    'did you mean “sinusoidal”?); it must be one of uniform, travelling',
+  ],
+  [
+    'a sinusoidal current without a wavenumber',
+    { 'sources.0.current': { profile: 'sinusoidal', waveform: dipole().current.waveform } },
+    'sources.0.current.wavenumber',
+    'must have a wavenumber, such as "62.8 rad/m"',
+  ],
+  [
+    'a wavenumber in metres',
+    { 'sources.0.current': { profile: 'sinusoidal', wavenumber: '0.1 m', waveform: dipole().current.waveform } },
+    'sources.0.current.wavenumber',
+    'it must be a wavenumber, such as "62.8 rad/m"',
+  ],
+  [
+    'a reflection of a uniform current',
+    { 'sources.0.current': { reflection: { end: -1 }, waveform: dipole().current.waveform } },
+    'sources.0.current.reflection',
+    'belongs to the profile "travelling" or "waves"',
+  ],
+  [
+    'a reflection that amplifies',
+    { 'sources.0.current.reflection': { end: -1.2 } },
+    'sources.0.current.reflection.end',
+    'a number from -1 to 1',
+  ],
+  [
+    'a decay of nothing',
+    {
+      'sources.0.current': {
+        waves: [{ direction: 'forward', decayLength: 0 }],
+        waveform: dipole().current.waveform,
+      },
+    },
+    'sources.0.current.waves.0.decayLength',
+    'a length above 0',
+  ],
+  ['a current without a waveform', { [WAVEFORM]: undefined }, WAVEFORM, 'an object that describes a waveform'],
+  [
+    'a sampled current with a waveform of its own',
+    { 'sources.0.current': { ...sampled(), waveform: dipole().current.waveform } },
+    WAVEFORM,
+    'a sampled current has its own',
+  ],
+  [
+    'positions that end before the wire does',
+    { 'sources.0.current': sampled({ positions: [0, '50 mm', '90 mm'] }) },
+    'sources.0.current.positions',
+    'they must begin at 0 and end at the wire’s length, 0.1 m',
+  ],
+  [
+    'positions that fall',
+    { 'sources.0.current': sampled({ positions: [0, '0 mm', '100 mm'] }) },
+    'sources.0.current.positions.1',
+    'positions must rise',
+  ],
+  [
+    'a row with a number too few',
+    {
+      'sources.0.current': sampled({
+        samples: [
+          [0, 0, 0, 0],
+          [1e-10, 1, 0],
+          [2e-10, 0, 0, 0],
+        ],
+      }),
+    },
+    'sources.0.current.samples.1',
+    'has 3 numbers; it must have an instant and 3 currents',
+  ],
+  [
+    'a row with a length in it',
+    {
+      'sources.0.current': sampled({
+        samples: [
+          [0, 0, 0, 0],
+          [1e-10, '1 m', 0, 0],
+          [2e-10, 0, 0, 0],
+        ],
+      }),
+    },
+    'sources.0.current.samples.1.1',
+    'it must be a current',
+  ],
+  [
+    'neither preset nor terms',
+    { [WAVEFORM]: { type: 'heidler' } },
+    `${WAVEFORM}.preset`,
+    'must have a preset or a list of terms',
+  ],
+  [
+    'an unknown preset',
+    { [WAVEFORM]: { type: 'heidler', preset: 'iec61000' } },
+    `${WAVEFORM}.preset`,
+    'it must be one of iec61000-4-2, iec62305-first',
+  ],
+  [
+    'an exponent below 1',
+    { [WAVEFORM]: { type: 'heidler', terms: [{ amplitude: 1, tau1: '1 ns', tau2: '9 ns', n: 0.5 }] } },
+    `${WAVEFORM}.terms.0.n`,
+    'an exponent from 1 to 100',
+  ],
+  [
+    'a ramp of half a period',
+    { [WAVEFORM]: { type: 'rampedSine', amplitude: 1, frequency: '1 GHz', ramp: 0.5, hold: 2 } },
+    `${WAVEFORM}.ramp`,
+    'periods from 1 to',
+  ],
+  [
+    'a table that names a file where none is read',
+    { [WAVEFORM]: { type: 'table', file: 'pulse.csv' } },
+    `${WAVEFORM}.file`,
+    'give the samples instead',
+  ],
+  [
+    'a table that goes back in time',
+    {
+      [WAVEFORM]: {
+        type: 'table',
+        samples: [
+          [0, 0],
+          [2e-9, 1],
+          [1e-9, 0],
+        ],
+      },
+    },
+    WAVEFORM,
+    'sample 3 is at 1e-9 s, not after 2e-9 s',
+  ],
+  [
+    'a table that begins with a jump',
+    {
+      [WAVEFORM]: {
+        type: 'table',
+        samples: [
+          [0, '0.4 A'],
+          ['1 ns', 1],
+          [2e-9, 0],
+        ],
+      },
+    },
+    WAVEFORM,
+    'begin the table with 0 A or set "allowJump": true',
+  ],
+  [
+    'a table that ends with a jump',
+    {
+      [WAVEFORM]: {
+        type: 'table',
+        samples: [
+          [0, 0],
+          ['1 ns', 1],
+          [2e-9, 0.3],
+        ],
+      },
+    },
+    WAVEFORM,
+    'begin and end the table with 0 A',
   ],
   ['a source without a type', { 'sources.0.type': undefined }, 'sources.0.type', 'must name the type of a source'],
   ['a source that is no object', { 'sources.0': 3 }, 'sources.0', 'an object that describes a source'],
@@ -397,6 +564,77 @@ describe('what a file means', () => {
     expect(termsWith({ profile: 'travelling', speed: 0.8 })).toEqual([
       { factor: 1, delay: 0, slowness: 1 / (0.8 * v) },
     ]);
+  });
+
+  test('waves that decay and are reflected: each bounce a wave of its own, later and smaller', () => {
+    const current = {
+      waves: [{ direction: 'forward', speed: 0.5, factor: 2, decayLength: '0.2 m' }],
+      reflection: { start: 0.5, end: -1, count: 2 },
+      waveform: dipole().current.waveform,
+    };
+    const wire = sound(changed({ 'sources.0.current': current })).sources[0]!;
+    if (wire.type === 'dipole') throw new Error('a wire was expected');
+    const v = 0.5 * 299_792_458;
+    const way = 0.1 / v;
+    const left = Math.exp(-0.5);
+    // factor, and the instant and size at which each wave passes s = 25 mm
+    const expected = [
+      [2, 0.025 / v, Math.exp(-0.125)],
+      [-2 * left, way + 0.075 / v, Math.exp(-0.375)],
+      [-left * left, 2 * way + 0.025 / v, Math.exp(-0.125)],
+    ];
+    expect(wire.terms.length).toBe(3);
+    wire.terms.forEach(({ factor, delay, slowness, profile }, n) => {
+      const [wanted, instant, size] = expected[n]!;
+      expect(factor).toBeCloseTo(wanted!, 14);
+      expect(Math.abs(delay + slowness * 0.025 - instant!)).toBeLessThan(1e-9 * 8 * Number.EPSILON);
+      expect(profile!.value(0.025)).toBeCloseTo(size!, 14);
+    });
+  });
+
+  test('a sampled current: one filament for each place at which current flows, straight lines between', () => {
+    const { sources, notes } = sound(changed({ 'sources.0.current': sampled() }));
+    expect(sources.map(({ name }) => name)).toEqual(['cable, s = 0 m', 'cable, s = 50 mm']);
+    expect(notes).toEqual([]);
+    const current = (s: number, t: number) =>
+      sources.reduce(
+        (sum, source) =>
+          sum + (source.type === 'dipole' ? 0 : source.terms[0]!.profile!.value(s) * source.waveform.value(t)),
+        0,
+      );
+    expect(current(0, 1e-9)).toBeCloseTo(1, 12);
+    expect(current(0.025, 1e-9)).toBeCloseTo(0.75, 12);
+    expect(current(0.075, 1e-9)).toBeCloseTo(0.25, 12);
+    expect(current(0.1, 1e-9)).toBe(0);
+  });
+
+  test('the preset pulses, scaled to a nominal peak; ramped sine and table with their defaults', () => {
+    const waveformOf = (waveform: object) =>
+      sound(changed({ [WAVEFORM]: waveform, duration: '3 ns' })).sources[0]!.waveform;
+    expect(waveformOf({ type: 'heidler', preset: 'iec61000-4-2', amplitude: '30 A' }).spec).toEqual({
+      type: 'heidler',
+      terms: [
+        { amplitude: 33.2, tau1: 1.1e-9, tau2: 2e-9, n: 1.8 },
+        { amplitude: 18.6, tau1: 12e-9, tau2: 37e-9, n: 1.8 },
+      ],
+    });
+    expect(waveformOf({ type: 'rampedSine', amplitude: '1 A', frequency: '1 GHz', hold: 2 }).spec).toEqual({
+      type: 'rampedSine',
+      amplitude: 1,
+      frequency: 1e9,
+      ramp: 3,
+      hold: 2,
+    });
+    const samples = sampled().samples.map(([t, i]) => [t, i]);
+    const { spec } = waveformOf({ type: 'table', samples, delay: '1 ns' });
+    expect(spec.type === 'table' && [spec.times[0], spec.times[40]! - 3e-9 < 1e-24]).toEqual([1e-9, true]);
+  });
+
+  test('a table too coarse for its own spectrum, and small ends taken as 0, are noted', () => {
+    const samples = Array.from({ length: 9 }, (_, n) => [n * 1e-10, [0, 1, -1, 1, -1, 1, -1, 1, 2e-4][n]]);
+    const { notes } = sound(changed({ [WAVEFORM]: { type: 'table', samples } }));
+    expect(notes.join()).toContain('ends with 0.0002 of its peak, which is taken as 0');
+    expect(notes.join()).toContain('resolve frequencies up to 5 GHz');
   });
 
   test('directions are made units, whatever their length', () => {
