@@ -50,6 +50,23 @@ const WAVEFORM_FIELDS: Readonly<Record<string, readonly Omit<QuantityField, 'pat
       { name: 'alpha', unit: '1/ns', help: 'Rate of decay, 1/ns; smaller than beta.', min: 0.01, max: 20, step: 0.01 },
       { name: 'beta', unit: '1/ns', help: 'Rate of rise, 1/ns; larger than alpha.', min: 0.02, max: 100, step: 0.01 },
     ],
+    heidler: [amplitude],
+    rampedSine: [
+      amplitude,
+      { name: 'frequency', unit: 'GHz', help: 'Frequency of the sine, GHz, above 0.', min: 0.05, max: 20, step: 0.05 },
+      {
+        name: 'ramp',
+        unit: '',
+        help: 'Periods that the rise and the fall each take, 1 or more.',
+        min: 1,
+        max: 20,
+        step: 0.5,
+        fallback: 3,
+      },
+      { name: 'hold', unit: '', help: 'Periods at full amplitude, 0 or more.', min: 0, max: 50, step: 0.5 },
+    ],
+    // Samples are edited in the text.
+    table: [],
   };
 })();
 
@@ -58,6 +75,17 @@ const BEGINNINGS: Readonly<Record<string, Draft>> = {
   gaussianDerivative: { amplitude: '1 A', delay: '0.9 ns', sigma: '0.1 ns' },
   modulatedGaussian: { amplitude: '1 A', delay: '1.8 ns', sigma: '0.2 ns', frequency: '2 GHz' },
   doubleExponential: { amplitude: '1 A', alpha: '1 1/ns', beta: '10 1/ns' },
+  heidler: { preset: 'iec61000-4-2', amplitude: '15 A' },
+  rampedSine: { amplitude: '1 A', frequency: '2 GHz', ramp: 3, hold: 2 },
+  table: {
+    samples: [
+      ['0 ns', '0 A'],
+      ['0.3 ns', '0.1 A'],
+      ['0.6 ns', '1 A'],
+      ['0.9 ns', '0.1 A'],
+      ['1.2 ns', '0 A'],
+    ],
+  },
 };
 
 const WAVEFORM_HELP = 'Time dependence of the current; zero before t = 0.';

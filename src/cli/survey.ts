@@ -1,11 +1,11 @@
 import { dirname, join, resolve } from 'node:path';
 import type { SurveyResult } from '../compare/surveyResult.ts';
 import { runSurvey } from '../run/survey.ts';
-import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
+import { EXAMPLES } from '../scenario/examples.ts';
 import { describeProblem } from '../scenario/load.ts';
 import { loadSurvey } from '../scenario/survey.ts';
 import { folderStore, sweepStore } from './caseStore.ts';
-import { InputError, readInput } from './input.ts';
+import { InputError, readInput, readScenario } from './input.ts';
 import { progressLine } from './progress.ts';
 
 export interface SurveyFlags {
@@ -43,6 +43,5 @@ export async function surveyCommand(
 
 /** A scenario beside the survey, or a built-in one. */
 function scenarioNamed(name: string, folder: string): unknown {
-  if (Object.hasOwn(EXAMPLES, name)) return structuredClone(EXAMPLES[name as ExampleName]);
-  return readInput(resolve(folder, name), 'the scenario');
+  return structuredClone(readScenario(Object.hasOwn(EXAMPLES, name) ? name : resolve(folder, name)));
 }
