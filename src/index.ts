@@ -2,9 +2,11 @@
  * The library's public face.
  */
 
+export { type Plan, planJsonSchema } from './compare/planResult.ts';
 export { resultJsonSchema, withinTolerance } from './compare/result.ts';
 export { resultText } from './report/text.ts';
 export { type CompareOptions, type Comparison, compareSolvers, Refusal } from './run/compare.ts';
+export { type PlanOptions, planScenario } from './run/plan.ts';
 export type { Progress } from './run/progress.ts';
 export { loadScenario } from './scenario/load.ts';
 export { scenarioJsonSchema } from './scenario/schema.ts';

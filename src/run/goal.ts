@@ -1,5 +1,5 @@
 import { formatQuantity } from '../elementary/quantity.ts';
-import { distanceToSources, sourceBounds } from '../scenario/distance.ts';
+import { distanceToSources, lastArrival, sourceBounds } from '../scenario/distance.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
 import type { Goal } from './planSearch.ts';
 import { strengths } from './predict.ts';
@@ -25,7 +25,25 @@ const RADIATES = 0.1;
 export function goalPlaces(scenario: Scenario, at: string | undefined, distance: number | undefined): GoalPlaces {
   if (at !== undefined && distance !== undefined)
     throw refusal('', at, 'Both an observer and a distance were given; a plan is made for one of them. Leave one out.');
-  return distance === undefined ? observersOf(scenario, at) : placesAround(scenario, distance);
+  const found = distance === undefined ? observersOf(scenario, at) : placesAround(scenario, distance);
+  refuseShortWindow(scenario, found.places);
+  return found;
+}
+
+/** What still radiates (1 % of the peak of w′) must have passed a place for its error to mean anything. */
+const ACTIVE = 0.01;
+
+function refuseShortWindow({ sources, medium, duration }: Scenario, places: Goal['places']): void {
+  for (const { name, at } of places) {
+    const arrival = lastArrival(sources, medium, at, ACTIVE);
+    if (arrival > duration)
+      throw refusal(
+        'duration',
+        duration,
+        `The run ends at ${formatQuantity(duration, 's')}, before the pulse has passed “${name}” at ` +
+          `${formatQuantity(arrival, 's')}; lengthen duration or choose a nearer place.`,
+      );
+  }
 }
 
 const refusal = (path: string, value: unknown, message: string) => new Refusal([{ path, value, message }]);

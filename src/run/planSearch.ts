@@ -13,6 +13,7 @@ import {
   type Wall,
   type WallErrors,
 } from './predict.ts';
+import { questionOf } from './question.ts';
 
 /** Where which error is wanted. */
 export interface Goal {
@@ -56,6 +57,9 @@ export interface Found {
 const FEWEST_CELLS = 4;
 const NEAREST_CELLS = 3;
 
+/** The same for a waveform with a kink: cells that its wave passes in its rise time, some 5 time steps. */
+const CELLS_PER_RISE = 3;
+
 /** What predictions are allowed to be off: lattice and gridding, sharply resolved or coarsely, and with a kink; walls. */
 const ALLOWED = { sharp: 1.05, coarse: 1.15, kinked: 1.3, walls: 2 };
 const SHARP_CELLS = 8;
@@ -65,6 +69,9 @@ const MOST_FOR_TIME_FORM = 0.04;
 
 /** Cells with absorber beyond which no plan is made. */
 const MOST_CELLS = 1e12;
+
+/** Responses of edges at sites, in the spectral form times lines, that one prediction may take: some 1.5 µs each. */
+const MOST_RESPONSES = 1e6;
 
 /** Round cell sizes tried below the first guess: down to a third of it or less. */
 const MOST_STEPS = 25;
@@ -81,6 +88,7 @@ export function searchPlan(scenario: Scenario, goal: Goal, frame: Frame): Found 
 
 class Search {
   readonly #base: number;
+  readonly #kinked: boolean;
   readonly #coarsest: number;
   readonly #limit: string;
   readonly #free = new Map<number, PlaceErrors[]>();
@@ -93,13 +101,18 @@ class Search {
     readonly frame: Frame,
   ) {
     this.#base = Math.max(...scenario.grid.cellSize);
+    this.#kinked = scenario.sources.some(({ waveform }) => waveform.expectedOrder.order < 2);
     const { wavelength } = shortestWavelength(scenario);
     const nearest = Math.min(...goal.places.map(({ at }) => distanceToSources(scenario.sources, at)));
-    const byWave = wavelength / FEWEST_CELLS;
+    const rise = Math.min(...scenario.sources.map(({ waveform }) => waveform.timeScale));
+    // A kink's spectrum has no end to be resolved.
+    const byWave = this.#kinked ? (scenario.medium.speed * rise) / CELLS_PER_RISE : wavelength / FEWEST_CELLS;
     const byPlace = nearest / NEAREST_CELLS;
     this.#limit =
       byWave < byPlace
-        ? `${FEWEST_CELLS} cells per shortest wavelength`
+        ? this.#kinked
+          ? `${CELLS_PER_RISE} cells in the rise of the current`
+          : `${FEWEST_CELLS} cells per shortest wavelength`
         : `${NEAREST_CELLS} cells between source and observer`;
     const limit = roundDown(Math.min(byWave, byPlace));
     this.#coarsest = frame.keepsCells ? Math.min(this.#base, limit) : limit;
@@ -158,7 +171,7 @@ class Search {
     let size = start;
     for (let rough = excess(size, this.#roughError(size), 0); rough > 1.2; ) {
       size = Math.min(below(size), roundDown(size / Math.sqrt(0.9 * rough)));
-      if (this.#cells(size) > MOST_CELLS) return null;
+      if (this.#isTooFine(size)) return null;
       rough = excess(size, this.#roughError(size), 0);
     }
     for (let step = 0; step < MOST_STEPS; step++) {
@@ -166,6 +179,7 @@ class Search {
       if (walls(size) > tolerance) return null;
       if (meets(size)) return this.#climb(size, start, meets);
       size = below(size);
+      if (this.#isTooFine(size)) return null;
     }
     return null;
   }
@@ -186,26 +200,20 @@ class Search {
   }
 
   #allowance(size: number): number {
-    const { sources } = this.scenario;
-    if (sources.some(({ waveform }) => waveform.expectedOrder.order < 2)) return ALLOWED.kinked;
+    if (this.#kinked) return ALLOWED.kinked;
     return shortestWavelength(this.scenario).wavelength / size >= SHARP_CELLS ? ALLOWED.sharp : ALLOWED.coarse;
   }
 
-  /** The largest error without walls, in the time form. */
+  /** The largest error without walls, in the time form; of waveforms with kinks, which it cannot tell, in the other. */
   #roughError(size: number): number {
     let error = this.#rough.get(size);
     if (error === undefined) {
-      const errors = predictFree(...this.#inFreeSpace(size), 'time');
+      const errors = predictFree(...this.#inFreeSpace(size), this.#kinked ? 'spectrum' : 'time');
       error = largestOf(errors.map(({ free }) => free));
       this.#rough.set(size, error);
-      if (this.#timeFormServes(error)) this.#free.set(size, errors);
+      if (this.#kinked || error <= MOST_FOR_TIME_FORM) this.#free.set(size, errors);
     }
     return error;
-  }
-
-  #timeFormServes(error: number): boolean {
-    const smooth = this.scenario.sources.every(({ waveform }) => waveform.expectedOrder.order >= 2);
-    return smooth && error <= MOST_FOR_TIME_FORM;
   }
 
   #errors(size: number): PlaceErrors[] {
@@ -249,9 +257,13 @@ class Search {
     return [scenario, { cells, band: this.goal.band }] as const;
   }
 
-  #cells(size: number): number {
-    const [nx, ny, nz] = gridded(this.scenario, size / this.#base, this.frame, 0).grid.cells;
-    return nx * ny * nz;
+  /** Whether cells are so small that predicting them, let alone running them, is out of the question. */
+  #isTooFine(size: number): boolean {
+    const question = questionOf(gridded(this.scenario, size / this.#base, this.frame, this.frame.clearances[0]!));
+    const [nx, ny, nz] = question.scenario.grid.cells;
+    const responses = 6 * this.goal.places.length * question.gridded.edges.count;
+    // A kink has lines up to what the time step resolves, over a period longer than the run.
+    return nx * ny * nz > MOST_CELLS || responses * (this.#kinked ? 2 * question.steps : 1) > MOST_RESPONSES;
   }
 
   #setup(size: number, wall: Wall, clearance: number): PlannedSetup {
@@ -308,7 +320,9 @@ class Search {
   /** The same walls and clearance with cells up to twice and down to 0.6 of the chosen ones. */
   #curve({ cellSize, clearance, boundary }: PlannedSetup): PlannedSetup[] {
     const chosen = Math.max(...cellSize);
-    const sizes = CURVE.map((factor) => roundDown(factor * chosen)).filter((size) => size <= this.#coarsest);
+    const sizes = CURVE.map((factor) => roundDown(factor * chosen)).filter(
+      (size) => size <= this.#coarsest && !this.#isTooFine(size),
+    );
     return [...new Set([...sizes, chosen])].sort((a, b) => b - a).map((size) => this.#setup(size, boundary, clearance));
   }
 }

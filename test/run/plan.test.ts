@@ -60,6 +60,8 @@ describe('where a tolerance is to hold', () => {
     for (const { at } of places) expect(distanceToSources(scenario.sources, at)).toBeCloseTo(0.06, 12);
     expect(() => placesAround(scenario, 0)).toThrow('must be above 0');
     expect(() => placesAround(scenario, 3)).toThrow('No field arrives');
+    // The pulse is over at the source 3 sigma or so after its middle, at 2.4 ns; 0.6 m are 2 ns more.
+    expect(() => goalPlaces(scenario, undefined, 0.6)).toThrow('before the pulse has passed “−x−y−z” at 4.');
   });
 
   test('not where E vanishes by symmetry', () => {
@@ -190,6 +192,20 @@ test('a plan is checked by a run, is told in text, JSON and HTML, and its scenar
   expect(html).toContain('&lt;b&gt;dipole');
   expect(html).not.toContain('<b>dipole');
   expect(html).toContain('<svg class="chart"');
+});
+
+test('a waveform with a kink is planned by its rise time, in the form that serves it', async () => {
+  const [source] = dipole().sources;
+  const kinked = dipole({
+    sources: [
+      { ...source, current: { waveform: { type: 'doubleExponential', amplitude: 1, alpha: 1e9, beta: 1e10 } } },
+    ],
+  });
+  const plan = await planScenario(kinked, { tolerance: 0.2, threads: 1 });
+  expect(plan.met).toBe(true);
+  // A third of what its wave passes in 0.1 ns is 10 mm.
+  expect(plan.chosen!.cellSize[0]).toBeGreaterThan(0.002);
+  expect(plan.check!.measured).toBeLessThanOrEqual(0.2);
 });
 
 test('refuses what is no scenario', async () => {
