@@ -110,10 +110,11 @@ function stretched<C>(difference: v128, q: usize, b: v128, a: v128, inverseKappa
   return v128.add<Real>(v128.mul<Real>(difference, inverseKappa), psi);
 }
 
-/** a + c (first − second). */
+/** a + c (first − second); in the FUSED build product and sum share one rounding where the processor can. */
 // @ts-ignore: decorator
 @inline
 function accumulated(a: v128, c: v128, first: v128, second: v128): v128 {
+  if (FUSED) return v128.relaxed_madd<Real>(c, v128.sub<Real>(first, second), a);
   return v128.add<Real>(a, v128.mul<Real>(c, v128.sub<Real>(first, second)));
 }
 

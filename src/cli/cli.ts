@@ -98,6 +98,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
+    .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
     .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
     .option('--port <n>', 'with --serve: the port', portNumber, 0)
     .addHelpText('after', '\nExample: fieldassay compare bench-cable-pulse --out out\n')
@@ -218,6 +219,7 @@ interface CompareFlags {
   readonly out?: string;
   readonly json?: boolean;
   readonly threads?: number;
+  readonly fused?: boolean;
   readonly serve?: boolean;
   readonly port: number;
 }
@@ -228,6 +230,7 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
   try {
     return await compareSolvers(readScenario(name), {
       ...(options.threads ? { threads: options.threads } : {}),
+      ...(options.fused ? { fusedMultiplyAdd: true } : {}),
       signal,
       onProgress: line.show,
     });

@@ -1,13 +1,20 @@
 const modules = new Map<string, WebAssembly.Module>();
 
+function bytesOf(base64: string): Uint8Array<ArrayBuffer> {
+  const text = atob(base64);
+  const bytes = new Uint8Array(text.length);
+  for (let i = 0; i < text.length; i++) bytes[i] = text.charCodeAt(i);
+  return bytes;
+}
+
+/** Whether this runtime can compile a kernel: it may lack an extension of WebAssembly. */
+export const isValid = (base64: string): boolean => WebAssembly.validate(bytesOf(base64));
+
 /** The compiled module of a kernel given in base64; compiled once per thread. */
 export function moduleOf(base64: string): WebAssembly.Module {
   let module = modules.get(base64);
   if (!module) {
-    const text = atob(base64);
-    const bytes = new Uint8Array(text.length);
-    for (let i = 0; i < text.length; i++) bytes[i] = text.charCodeAt(i);
-    module = new WebAssembly.Module(bytes);
+    module = new WebAssembly.Module(bytesOf(base64));
     modules.set(base64, module);
   }
   return module;

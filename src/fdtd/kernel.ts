@@ -1,7 +1,10 @@
-import { instantiate } from '../elementary/wasm.ts';
+import { instantiate, isValid } from '../elementary/wasm.ts';
 import doubleLarge from '../kernels/fdtd-double-large.ts';
 import doubleMedium from '../kernels/fdtd-double-medium.ts';
 import doubleSmall from '../kernels/fdtd-double-small.ts';
+import fusedLarge from '../kernels/fdtd-fused-large.ts';
+import fusedMedium from '../kernels/fdtd-fused-medium.ts';
+import fusedSmall from '../kernels/fdtd-fused-small.ts';
 import singleLarge from '../kernels/fdtd-single-large.ts';
 import singleMedium from '../kernels/fdtd-single-medium.ts';
 import singleSmall from '../kernels/fdtd-single-small.ts';
@@ -33,7 +36,17 @@ export type BuildSize = (typeof BUILDS)[number]['size'];
 const BYTES = {
   single: { small: singleSmall, medium: singleMedium, large: singleLarge },
   double: { small: doubleSmall, medium: doubleMedium, large: doubleLarge },
+  fused: { small: fusedSmall, medium: fusedMedium, large: fusedLarge },
 } as const;
+
+/** The arithmetic of a build; `fused` is single precision with fused multiply-add, where the runtime has it. */
+export type Arithmetic = keyof typeof BYTES;
+
+/**
+ * Whether this runtime has relaxed SIMD, whose multiply-add rounds once. Its results depend on the processor in their last
+ * bits, so nothing uses it unasked.
+ */
+export const hasFusedMultiplyAdd = (): boolean => isValid(BYTES.fused.small);
 
 /** What assembly/fdtd/index.ts exports; addresses are byte addresses, true comes back as 1. */
 export interface GridKernel {
@@ -65,11 +78,11 @@ type LayerSetter = (
  * @param interrupted asked by the leading thread about once a plane; true calls the run off
  */
 export function gridKernel(
-  precision: 'single' | 'double',
+  arithmetic: Arithmetic,
   size: BuildSize,
   memory: WebAssembly.Memory,
   interrupted: () => boolean,
 ): GridKernel {
   const env = { memory, interrupted: () => (interrupted() ? 1 : 0) };
-  return instantiate(BYTES[precision][size], env) as unknown as GridKernel;
+  return instantiate(BYTES[arithmetic][size], env) as unknown as GridKernel;
 }

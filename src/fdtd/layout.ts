@@ -1,7 +1,16 @@
 import type { Axis, Boundary, Face } from '../scenario/model.ts';
 import { type FaceLattice, PLAIN, type Stretch, type Wall } from './boundaries/boundary.ts';
 import { methodOf } from './boundaries/catalogue.ts';
-import { ADDRESS_LIMIT, BUILDS, type BuildSize, FIELDS, type GridKernel, VECTOR, WINDOW_BYTES } from './kernel.ts';
+import {
+  ADDRESS_LIMIT,
+  BUILDS,
+  type BuildSize,
+  FIELDS,
+  type GridKernel,
+  hasFusedMultiplyAdd,
+  VECTOR,
+  WINDOW_BYTES,
+} from './kernel.ts';
 import type { GridProblem } from './problem.ts';
 
 /** Faces by axis: the low one and the high one. */
@@ -20,6 +29,8 @@ export const AXES = [0, 1, 2] as const;
  */
 export interface Layout {
   readonly precision: 'single' | 'double';
+  /** multiply-add with one rounding */
+  readonly fused: boolean;
   readonly build: BuildSize;
   readonly stride: number;
   readonly cells: readonly [number, number, number];
@@ -188,6 +199,7 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
 
   return {
     precision: problem.precision,
+    fused: problem.fusedMultiplyAdd === true,
     build: build.size,
     stride: build.stride,
     cells,
@@ -229,6 +241,10 @@ function refuseBadLattice(problem: GridProblem, cells: readonly number[], layerC
         );
     }
   }
+  if (problem.fusedMultiplyAdd && problem.precision === 'double')
+    throw new RangeError('fused multiply-add is there in single precision only. Set grid.precision to "single".');
+  if (problem.fusedMultiplyAdd && !hasFusedMultiplyAdd())
+    throw new RangeError('this runtime has no relaxed SIMD, so no fused multiply-add. Leave the option out.');
   if (!(problem.scale > 0 && Number.isFinite(problem.scale)))
     throw new RangeError(`the expected peak voltage of an edge is ${problem.scale} V; it must be positive and finite.`);
   const tiny = problem.precision === 'single' ? 1e-17 : 1e-280;

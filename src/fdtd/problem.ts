@@ -19,6 +19,8 @@ export interface GridProblem {
   readonly medium: Medium;
   readonly boundary: Readonly<Record<Face, Boundary>>;
   readonly precision: 'single' | 'double';
+  /** round once where product and sum meet: faster where the runtime has it, last bits differ; off by default */
+  readonly fusedMultiplyAdd?: boolean;
   readonly currents: EdgeCurrents;
   /** expected peak of edge voltage e = E·d, V: scales the bias that keeps denormals away */
   readonly scale: number;

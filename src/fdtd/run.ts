@@ -28,6 +28,8 @@ export interface GridOptions {
   readonly threads?: number;
   /** where the schedule should differ from the one chosen by working set */
   readonly schedule?: Partial<Schedule>;
+  /** memory of an earlier run that is over; taken where it is large enough, since first touching fresh memory costs time */
+  readonly memory?: WebAssembly.Memory;
   /** cells to update, in place of those that `problem.activeRegion` asks for */
   readonly region?: Region;
 }
@@ -139,7 +141,8 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
     sampleBuffers: problem.samples.map(({ every }, g) => bump.take(Math.ceil(batchSteps / every) * sampleBytes(g))),
   };
   const groupTables = samples.map((s) => [bump.take(s.rowStart.byteLength), bump.take(s.offsets.byteLength)] as const);
-  const memory = allocate(bump.next, problem);
+  const memory =
+    options.memory && fits(options.memory, bump.next) ? cleared(options.memory) : allocate(bump.next, problem);
 
   writeProfiles(problem, layout, memory);
   const words = (address: number, values: Uint32Array) =>
@@ -162,6 +165,14 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
   };
 }
 
+const fits = (memory: WebAssembly.Memory, bytes: number): boolean => memory.buffer.byteLength >= bytes;
+
+/** The memory of a run that is over, its words and progress counters at rest. Fields and ψ are filled by the next run. */
+function cleared(memory: WebAssembly.Memory): WebAssembly.Memory {
+  new Uint8Array(memory.buffer, 0, FIELDS).fill(0);
+  return memory;
+}
+
 function allocate(bytes: number, problem: GridProblem): WebAssembly.Memory {
   const pages = Math.ceil(bytes / 65536);
   const refusal = (why: string) =>
@@ -180,7 +191,7 @@ function allocate(bytes: number, problem: GridProblem): WebAssembly.Memory {
 /** A kernel on this thread, told all that the setup holds. */
 function readyKernel(setup: GridSetup, thread: number, interrupted: () => boolean): GridKernel {
   const { layout, memory, tables } = setup;
-  const kernel = gridKernel(layout.precision, layout.build, memory, interrupted);
+  const kernel = gridKernel(layout.fused ? 'fused' : layout.precision, layout.build, memory, interrupted);
   configure(kernel, layout, thread);
   kernel.sources(tables.sourceStarts, tables.sourceEdges);
   kernel.samples(tables.groups, tables.sampleTables);

@@ -1,8 +1,10 @@
 import { memoryLimit, threadsAvailable } from '#platform';
 import { formatQuantity } from '../elementary/quantity.ts';
+import { hasFusedMultiplyAdd } from '../fdtd/kernel.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import { loadScenario } from '../scenario/load.ts';
+import type { Grid } from '../scenario/model.ts';
 import { type Asked, answer, type Means } from './answers.ts';
 import { type Comparison, conclude } from './conclude.ts';
 import { planFreeSpace } from './freeSpace.ts';
@@ -20,6 +22,8 @@ export { Refusal } from './refusal.ts';
 export interface CompareOptions {
   /** worker threads; all that the machine has by default */
   readonly threads?: number;
+  /** the grid's multiply-add with one rounding, where the runtime has it: faster, last bits differ; off by default */
+  readonly fusedMultiplyAdd?: boolean;
   readonly onProgress?: (progress: Progress) => void;
   /** aborting it ends all workers at once and rejects with its reason */
   readonly signal?: AbortSignal;
@@ -32,7 +36,7 @@ export interface CompareOptions {
  * @throws Refusal naming every problem of the scenario; Error where a worker died; the signal's reason when aborted
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
-  const prepared = prepareCase(jsonOf(input));
+  const prepared = prepareCase(jsonOf(input), options.fusedMultiplyAdd);
   return await withTeam(options.threads ?? threadsAvailable(), options.signal, async (team) => {
     const means = { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) };
     return await withRemedy(team, prepared, await solvePrepared(prepared, means));
@@ -43,12 +47,13 @@ export async function compareSolvers(input: unknown, options: CompareOptions = {
  * What is asked of both solvers, where they are read, and how free space is marched.
  * @throws Refusal naming every problem of the scenario
  */
-export function prepareCase(json: unknown): Asked {
+export function prepareCase(json: unknown, fusedMultiplyAdd = false): Asked {
   const loaded = loadScenario(json);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
+  if (fusedMultiplyAdd) refuseFused(loaded.scenario.grid.precision);
   const question = questionOf(loaded.scenario);
   const places = placesOf(question);
-  const box = boxProblem(question, places.groups);
+  const box = boxProblem(question, places.groups, fusedMultiplyAdd);
   const limit = memoryLimit();
   refuseTooLarge(box, limit);
   return { question, json, places, box, free: planFreeSpace(box, limit) };
@@ -91,6 +96,24 @@ export async function withTeam<T>(
     signal?.removeEventListener('abort', abort);
     await team.end();
   }
+}
+
+/** The option is refused where it cannot be had, rather than quietly left out. */
+function refuseFused(precision: Grid['precision']): void {
+  const refuse = (path: string, value: unknown, message: string) => new Refusal([{ path, value, message }]);
+  if (precision === 'double')
+    throw refuse(
+      'grid.precision',
+      precision,
+      'Fused multiply-add (--fused) is there in single precision only; grid.precision is double. Leave one of them out.',
+    );
+  if (!hasFusedMultiplyAdd())
+    throw refuse(
+      '',
+      undefined,
+      'Fused multiply-add (--fused) needs relaxed SIMD, which this runtime does not have (Node has it from version 22, or ' +
+        'with --experimental-wasm-relaxed-simd). Leave the option out.',
+    );
 }
 
 /** @throws Refusal where the grid in its box fits neither the machine nor the kernel */

@@ -107,7 +107,12 @@ export function conclude(given: Case): Comparison {
       exact: { seconds: answers.exactSeconds, evaluations: integrals.reduce((sum, i) => sum + i.evaluations, 0) },
       comparison: { seconds: (performance.now() - started) / 1000 },
     },
-    environment: { host: hostName(), threads, precision: grid.precision },
+    environment: {
+      host: hostName(),
+      threads,
+      precision: grid.precision,
+      fusedMultiplyAdd: box.fusedMultiplyAdd === true,
+    },
     notes: notesOf(question, places, free, answers),
     scenario: json,
   };

@@ -19,7 +19,12 @@ export async function runGrid(
   const onEvent = (steps: unknown) => onSteps(steps as number);
   // A memory of one thread need not be shared, which a page that is not isolated could not.
   if (threads === 1) return await team.run('marchGrid', [packProblem(problem), stillLevel], onEvent);
-  const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads });
+  const {
+    problem: _,
+    region: __,
+    ...prepared
+  } = prepareGridRun(problem, { threads, ...(team.gridMemory ? { memory: team.gridMemory } : {}) });
+  team.gridMemory = prepared.setup.memory;
   const leader = team.run('leadGrid', [packProblem(problem), prepared, stillLevel], onEvent);
   const followers = Array.from({ length: threads - 1 }, () => team.run('followGrid', [prepared.setup]));
   const [result] = await Promise.all([leader, ...followers]);

@@ -9,6 +9,8 @@ type TaskName = keyof Tasks;
  */
 export class Team {
   readonly #pool: ReturnType<typeof workerpool.pool>;
+  /** of the newest grid run of several threads: the next one takes it over where it is large enough */
+  gridMemory: WebAssembly.Memory | undefined;
 
   constructor(readonly threads: number) {
     this.#pool = workerpool.pool(workerScript(), { ...poolOptions, minWorkers: threads, maxWorkers: threads });

@@ -42,7 +42,7 @@ export function sampleInterval({ highestFrequency, timeStep, steps }: Question):
 }
 
 /** The working box with its own walls, as the scenario has it. */
-export function boxProblem(question: Question, samples: readonly SampleGroup[]): GridProblem {
+export function boxProblem(question: Question, samples: readonly SampleGroup[], fusedMultiplyAdd = false): GridProblem {
   const { scenario, gridded, timeStep, steps } = question;
   const { grid, medium } = scenario;
   const pad = Object.fromEntries(
@@ -60,6 +60,7 @@ export function boxProblem(question: Question, samples: readonly SampleGroup[]):
     medium,
     boundary: grid.boundary,
     precision: grid.precision,
+    ...(fusedMultiplyAdd ? { fusedMultiplyAdd } : {}),
     currents: gridded.edges,
     // E beside a filament is about ηI/(2πr): a cell's voltage is about ηI, whatever its size.
     scale: medium.impedance * Math.max(...scenario.sources.map(({ waveform }) => waveform.peak)),

@@ -104,6 +104,27 @@ describe('compare', () => {
     expect(results[2]).toEqual(results[0]);
   });
 
+  test('fused multiply-add: refused where the runtime has none, else recorded, and other last bits only', () => {
+    const scenario = write('fused.json', small());
+    const plain = JSON.parse(run('compare', scenario, '--json').stdout);
+    expect(plain.environment.fusedMultiplyAdd).toBe(false);
+    const asked = spawnSync(
+      process.execPath,
+      ['--experimental-wasm-relaxed-simd', MAIN, 'compare', scenario, '--json', '--fused'],
+      { cwd: folder, encoding: 'utf8' },
+    );
+    const fused = JSON.parse(asked.stdout);
+    expect(fused.environment.fusedMultiplyAdd).toBe(true);
+    const difference = fused.budget.lattice.relativeL2 / plain.budget.lattice.relativeL2 - 1;
+    expect(Math.abs(difference)).toBeLessThan(1e-3);
+    expect(difference).not.toBe(0);
+    if (Number(process.versions.node.split('.')[0]) < 22) {
+      const refused = run('compare', scenario, '--fused');
+      expect(refused.status).toBe(2);
+      expect(refused.stderr).toContain('relaxed SIMD');
+    }
+  });
+
   test('status 1 when the error is outside the tolerance', () => {
     const { status, stdout } = run('compare', write('strict.json', small({ tolerance: '0.01 %' })));
     expect(status).toBe(1);

@@ -7,8 +7,8 @@ test('the driver knows the strides that the kernels were compiled with', () => {
     kernels: Record<string, { args: string[] }>;
   };
   for (const { size, stride } of BUILDS)
-    for (const precision of ['single', 'double'])
-      expect(kernels[`fdtd-${precision}-${size}`]?.args).toContain(`FIELD_STRIDE=${stride}`);
+    for (const arithmetic of ['single', 'double', 'fused'])
+      expect(kernels[`fdtd-${arithmetic}-${size}`]?.args).toContain(`FIELD_STRIDE=${stride}`);
 });
 
 test('every offset in an instruction stays below 2³¹, and fields are staggered within a page', () => {

@@ -19,6 +19,17 @@ const problem = plainProblem([12, 10, 9], {
   ],
 });
 
+test('a memory that an earlier run has used gives the same bits as a fresh one', () => {
+  const larger = prepareGridRun({ ...problem, boxCells: [16, 14, 12] });
+  lead(larger);
+  const run = prepareGridRun(problem, { memory: larger.setup.memory });
+  expect(run.setup.memory).toBe(larger.setup.memory);
+  expect(lead(run).samples).toEqual(marchAlone(problem).samples);
+  // One that is too small is left alone.
+  const small = prepareGridRun(problem).setup.memory;
+  expect(prepareGridRun({ ...problem, boxCells: [60, 60, 60] }, { memory: small }).setup.memory).not.toBe(small);
+});
+
 describe('samples', () => {
   const { samples } = marchAlone(problem);
 
