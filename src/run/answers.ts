@@ -83,9 +83,9 @@ export async function answer(
     outside: places.outside.length,
   };
   const meter = new ProgressMeter(onProgress, [
+    ['the grid without walls', (free?.cellUpdates ?? 0) / GRID_RATE],
     ['the grid in its box', updates(box) / GRID_RATE],
     ['the same grid driven with other roundings', updates(box) / GRID_RATE],
-    ['the grid without walls', (free?.cellUpdates ?? 0) / GRID_RATE],
     ['the exact field', (2 * cells.budget + cells.volume + cells.outside) / CELL_RATE],
     ['the exact field of the gridded currents', cells.budget / CELL_RATE],
   ]);
@@ -93,9 +93,10 @@ export async function answer(
     meter.enter(stage);
     return runGrid(team, problem, still, (done) => meter.at(done / steps), gridThreads);
   };
-  const boxRun = await grid(0, box);
-  const probe = await grid(1, driven(box, ROUNDING_PROBE));
-  const freeRun = free ? await share('free', () => grid(2, free.problem)) : null;
+  // The largest first: its memory serves the others.
+  const freeRun = free ? await share('free', () => grid(0, free.problem)) : null;
+  const boxRun = await grid(1, box);
+  const probe = await grid(2, driven(box, ROUNDING_PROBE));
   const integrals = await share('integrals', async () => {
     const started = performance.now();
     meter.enter(3);
