@@ -20,6 +20,7 @@ const MAY_IMPORT: Record<string, readonly string[]> = {
   draw: ['trace', 'elementary'],
   platform: [],
   run: ['scenario', 'trace', 'gridding', 'fdtd', 'retarded', 'lattice', 'compare', 'platform', 'elementary'],
+  scene: ['scenario', 'trace', 'compare', 'run', 'report', 'draw', 'elementary'],
   cli: ['*', '!app'],
   app: ['*', '!cli'],
   index: ['*', '!cli', '!app'],

@@ -9,15 +9,17 @@ import { type Findings, resultFile, tracesOf } from '../report/folder.ts';
 import { compareSolvers, Refusal } from '../run/compare.ts';
 import { planFreeSpace } from '../run/freeSpace.ts';
 import { exactField } from '../run/integrals.ts';
-import { CHANNELS, filmExact, filmGrid, filmOf, type GridFrames, type Slice, sliceOf } from '../run/planes.ts';
+import { CHANNELS, filmExact, filmGrid, filmOf, type GridFrames } from '../run/planes.ts';
 import { Team } from '../run/pool.ts';
 import { boxProblem, type Question, questionOf } from '../run/question.ts';
-import { distanceToSources, lastArrival } from '../scenario/distance.ts';
+import { lastArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
-import type { Plane, Scenario, Vec3 } from '../scenario/model.ts';
+import type { Plane, Scenario } from '../scenario/model.ts';
 import { observerCell } from '../scenario/sites.ts';
+import type { TrustMap } from '../scene/film.ts';
+import { cellCentre, type ShownSlice, shownSlice } from '../scene/slices.ts';
 import { type Instants, instantsOf } from '../trace/trace.ts';
-import type { Report, Request, ShownSlice, TrustMap } from './messages.ts';
+import type { Report, Request } from './messages.ts';
 import { potentialsOn } from './potentials.ts';
 
 const tell = (report: Report, transfer: Transferable[] = []) => postMessage(report, { transfer });
@@ -114,10 +116,7 @@ type Stage = (name: string, fraction: number) => void;
 async function firstLook(run: Run, shown: readonly Plane[], onStage: Stage): Promise<void> {
   const { json, scenario, question, team } = run;
   const { every, instants } = filmOf(question);
-  const slices = shown.map((plane): ShownSlice => {
-    const slice = sliceOf(scenario, plane);
-    return { ...slice, distance: distancesOn(scenario, slice) };
-  });
+  const slices = shown.map((plane) => shownSlice(scenario, plane));
   run.films = slices.map((slice) => {
     const size = instants.count * CHANNELS * slice.nu * slice.nv;
     return {
@@ -268,15 +267,6 @@ const freeProblem: typeof boxProblem = (question, samples) => {
 /** What rounding leaves of E anywhere, V/m: the total's floor, which is relative to the exact field. */
 function floorOf({ budget, norms }: Result): number {
   return (budget.total.floor ?? 0) * norms.E.scale.L2 * Math.sqrt(3);
-}
-
-const cellCentre = ({ grid }: Scenario, { cells }: Slice, p: number): Vec3 =>
-  [0, 1, 2].map((a) => grid.box.from[a]! + (cells[3 * p + a]! + 0.5) * grid.cellSize[a]!) as unknown as Vec3;
-
-function distancesOn(scenario: Scenario, slice: Slice): Float32Array {
-  return Float32Array.from({ length: slice.nu * slice.nv }, (_, p) =>
-    distanceToSources(scenario.sources, cellCentre(scenario, slice, p)),
-  );
 }
 
 /** Still radiating: 1 % of the peak, as in the comparison. */

@@ -1,6 +1,6 @@
+import { QUANTITIES } from '../scene/quantity.ts';
 import { h } from './dom.ts';
 import type { Panes } from './panes.ts';
-import { QUANTITIES } from './quantity.ts';
 import type { Runner } from './runner.ts';
 import type { Saving } from './save.ts';
 import type { Side } from './side.ts';

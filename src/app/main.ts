@@ -1,6 +1,7 @@
 import { canShareMemory } from '#platform';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
+import { type Reading, Scenery } from '../scene/scenery.ts';
 import { Charts } from './charts.ts';
 import { byId, h } from './dom.ts';
 import { acceptFiles } from './files.ts';
@@ -11,7 +12,6 @@ import { notify } from './notice.ts';
 import { Panes } from './panes.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
-import { type Reading, Scenery } from './scenery.ts';
 import { Side } from './side.ts';
 import { Store, textOf } from './store.ts';
 import { firstTheme, followTheme, switchTheme } from './theme.ts';
@@ -25,8 +25,11 @@ const SETTLE = 250;
 const store = new Store(firstTheme());
 followTheme(store);
 const runner = new Runner(store);
-const panes = new Panes(store, new Scenery(store, runner), showReading, (place, x, y) =>
-  nameObserver(store, place, x, y),
+const panes = new Panes(
+  store,
+  new Scenery(store, (frame) => runner.wantPotentials(frame)),
+  showReading,
+  (place, x, y) => nameObserver(store, place, x, y),
 );
 buildToolbar(store, panes);
 const timeline = new Timeline(store);

@@ -3,10 +3,10 @@ import { formatQuantity } from '../elementary/quantity.ts';
 import { BOUNDARIES, CPML_DEFAULTS, WAVEFORMS } from '../scenario/schema.ts';
 import { timeStepOf } from '../scenario/sites.ts';
 import { parseFraction } from '../scenario/units.ts';
+import { MOST_PLANES } from '../scene/slices.ts';
 import { h } from './dom.ts';
 import { addQuantity, type Path, type QuantityField, setAt, shownNumber, valueAt } from './fields.ts';
 import { waveformPreview } from './preview.ts';
-import { MOST_PLANES } from './runner.ts';
 import type { Draft, Store } from './store.ts';
 
 /** How long an edit may go on before it counts: a slider being dragged, a number being typed. */

@@ -6,10 +6,10 @@ import { Picture } from '../draw/picture.ts';
 import { type Box, cameraFor, type Camera as PaneCamera, type Rectangle } from '../draw/projection.ts';
 import type { Scene } from '../draw/scene.ts';
 import type { Vec3 } from '../scenario/model.ts';
+import { gripOf, type Reading, type Scenery } from '../scene/scenery.ts';
+import { planesShown } from '../scene/slices.ts';
 import { byId } from './dom.ts';
 import { paintLabels } from './labels.ts';
-import { planesShown } from './runner.ts';
-import { gripOf, type Reading, type Scenery } from './scenery.ts';
 import type { Store } from './store.ts';
 
 /** Image pixels that are drawn at most: beyond, the image is drawn smaller and stretched, the texts are not. */

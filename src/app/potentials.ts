@@ -1,7 +1,7 @@
 import { fieldOf } from '../retarded/field.ts';
 import { prepareSources } from '../retarded/prepare.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
-import type { ShownSlice } from './messages.ts';
+import type { ShownSlice } from '../scene/slices.ts';
 
 /** Samples along a side: potentials of full-speed waves are integrals, a hundred times dearer than their fields. */
 const SIDE = 30;

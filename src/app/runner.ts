@@ -1,19 +1,9 @@
 import { withinTolerance } from '../compare/result.ts';
 import type { ResultFile } from '../report/folder.ts';
-import type { Axis, Plane, Scenario } from '../scenario/model.ts';
-import { Film } from './film.ts';
+import { Film } from '../scene/film.ts';
+import { planesShown } from '../scene/slices.ts';
 import type { Report, Request } from './messages.ts';
 import type { Store } from './store.ts';
-
-/** At most so many planes are shown. */
-export const MOST_PLANES = 3;
-
-/** The planes to show: the scenario's first three, or one through the middle of the box where it has none. */
-export function planesShown({ planes, grid }: Scenario): Plane[] {
-  if (planes.length > 0) return planes.slice(0, MOST_PLANES);
-  const normal: Axis = 1;
-  return [{ name: 'xz', normal, at: (grid.box.from[normal] + grid.box.to[normal]) / 2 }];
-}
 
 /** What decides a comparison's numbers: everything but title and planes. Runs are not repeated for those. */
 function decisive(json: unknown): string {
@@ -144,7 +134,7 @@ export class Runner {
         store.tell('result');
         break;
       case 'trust':
-        state.film?.addTrust(report);
+        state.film?.addTrust(report.slice, report.map);
         store.tell('film');
         break;
       case 'potentials':

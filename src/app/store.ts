@@ -4,8 +4,8 @@ import type { ObserverTrace } from '../files/traces.ts';
 import type { ObserverSpectra } from '../report/report.ts';
 import { loadScenario, type Problem } from '../scenario/load.ts';
 import type { Scenario } from '../scenario/model.ts';
-import type { Film } from './film.ts';
-import type { QuantityKey } from './quantity.ts';
+import type { Film } from '../scene/film.ts';
+import { VIEW, type View } from '../scene/scenery.ts';
 
 /** How a run stands. */
 export interface RunState {
@@ -16,24 +16,6 @@ export interface RunState {
   readonly secondsLeft?: number | undefined;
   /** why it was refused or failed */
   readonly message: string;
-}
-
-/** What is looked at, and how. */
-export interface View {
-  readonly layout: 'panes' | 'overlay' | 'trust';
-  readonly quantity: QuantityKey;
-  readonly difference: 'signed' | 'decibels';
-  /** contour lines of the exact field over the grid's colours */
-  readonly contours: boolean;
-  /** of the colour scale: values times this */
-  readonly gain: number;
-  readonly projection: 'perspective' | 'orthographic';
-  /** place of the divider between grid and exact, 0…1 */
-  readonly divider: number;
-  /** whose traces are shown */
-  readonly observer: string;
-  /** instants a second when playing */
-  readonly speed: number;
 }
 
 export interface State {
@@ -73,17 +55,7 @@ export class Store {
       json: undefined,
       scenario: null,
       problems: [],
-      view: {
-        layout: 'panes',
-        quantity: 'Ez',
-        difference: 'signed',
-        contours: false,
-        gain: 1,
-        projection: 'perspective',
-        divider: 0.5,
-        observer: '',
-        speed: 20,
-      },
+      view: VIEW,
       theme,
       frame: 0,
       playing: false,

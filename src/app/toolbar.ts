@@ -1,7 +1,8 @@
+import { QUANTITIES, type QuantityKey } from '../scene/quantity.ts';
+import type { View } from '../scene/scenery.ts';
 import { byId, h } from './dom.ts';
 import type { Panes, ViewName } from './panes.ts';
-import { QUANTITIES, type QuantityKey } from './quantity.ts';
-import type { Store, View } from './store.ts';
+import type { Store } from './store.ts';
 
 const LAYOUTS = {
   panes: ['Fields', 'Grid field, exact field and their difference, side by side'],

@@ -10,6 +10,7 @@ import type { Store } from './store.ts';
 export function showVerdict(store: Store, runner: Runner, toText: () => void): void {
   const sentence = byId('sentence');
   const details = byId('details');
+  const checks = byId('checks');
   const budget = byId('budget');
   const run = byId('run');
   const bar = h('progress', { max: 1, 'aria-label': 'Progress of the run' });
@@ -27,16 +28,21 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     const { result } = store.state;
     budget.replaceChildren();
     details.replaceChildren();
+    checks.replaceChildren();
     if (!result) return showRun();
     sentence.textContent = result.verdict.sentence;
     const outside =
       withinTolerance(result) || !isMeasured(result)
         ? null
         : h('span', { className: 'outside' }, `Outside the tolerance of ${formatPercent(result.tolerance, 3)}. `);
+    const remedy = result.verdict.remedy ? [result.verdict.remedy.sentence] : [];
     details.append(
-      ...[outside, [...result.verdict.details, ...result.notes].join(' ')].filter((part) => part !== null),
+      ...[outside, [...remedy, ...result.verdict.details, ...result.notes].join(' ')].filter((part) => part !== null),
     );
     details.title = details.textContent ?? '';
+    for (const { status, sentence: said } of result.checks)
+      checks.append(h('span', { className: status === 'differs' ? 'outside' : 'muted' }, said), ' ');
+    checks.title = checks.textContent ?? '';
     budget.append(budgetTable(result));
     showRun();
   };

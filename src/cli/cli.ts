@@ -1,6 +1,7 @@
 import { existsSync } from 'node:fs';
 import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError } from 'commander';
+import { threadsAvailable } from '#platform';
 import { withinTolerance } from '../compare/result.ts';
 import type { SurveyResult } from '../compare/surveyResult.ts';
 import { RESULT_FILES, resultFile } from '../report/folder.ts';
@@ -8,12 +9,13 @@ import { resultJson } from '../report/json.ts';
 import { surveyFiles } from '../report/surveyFolder.ts';
 import { surveyText } from '../report/surveyText.ts';
 import { resultText } from '../report/text.ts';
-import { type Comparison, compareSolvers, Refusal } from '../run/compare.ts';
+import { type Comparison, compareSolvers, Refusal, withTeam } from '../run/compare.ts';
 import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
 import { exactCommand } from './exact.ts';
+import { frameFiles } from './frames.ts';
 import { InputError, readScenario } from './input.ts';
 import { quoted, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
@@ -96,6 +98,10 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .argument('[scenario]', 'a scenario file or a built-in scenario (see `examples`)', 'bench-cable-pulse')
     .description('run both solvers on a scenario: error budget and verdict')
     .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
+    .option(
+      '--frames <dir>',
+      'write pictures of grid, exact field and difference into this folder: PNG files and a film',
+    )
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
     .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
@@ -105,13 +111,18 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .action(async (name: string, options: CompareFlags) => {
       const comparison = await compared(name, options, signal);
       const { result } = comparison;
+      const frames = options.frames ? await framesFor(result.scenario, options, signal) : {};
+      if (options.frames) writeFolder(options.frames, frames);
       if (options.out) writeFolder(options.out, filesOf(comparison, commandLine(name, options)));
       if (options.json) process.stdout.write(resultJson(result));
       else
         process.stdout.write(
           resultText(result, {
             colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
-            written: options.out ? RESULT_FILES.map((file) => `${options.out}/${file}`) : [],
+            written: [
+              ...(options.out ? RESULT_FILES.map((file) => `${options.out}/${file}`) : []),
+              ...(options.frames ? [`${Object.keys(frames).length} pictures in ${options.frames}`] : []),
+            ],
           }),
         );
       end(withinTolerance(result) ? DONE : OUTSIDE);
@@ -217,6 +228,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 
 interface CompareFlags {
   readonly out?: string;
+  readonly frames?: string;
   readonly json?: boolean;
   readonly threads?: number;
   readonly fused?: boolean;
@@ -234,6 +246,19 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
       signal,
       onProgress: line.show,
     });
+  } finally {
+    line.end();
+  }
+}
+
+async function framesFor(
+  scenario: unknown,
+  { threads = threadsAvailable() }: CompareFlags,
+  signal: AbortSignal,
+): Promise<Record<string, Uint8Array>> {
+  const line = progressLine(false);
+  try {
+    return await withTeam(threads, signal, (team) => frameFiles(team, scenario, line.show));
   } finally {
     line.end();
   }

@@ -5,25 +5,25 @@ import { basename, dirname, join } from 'node:path';
  * Writes a file so that nobody ever reads half of it: under a temporary name beside its place, then renamed.
  * @throws Error that names the file when the folder is missing, read-only or full
  */
-export function writeWhole(path: string, text: string): void {
+export function writeWhole(path: string, content: string | Uint8Array): void {
   const temporary = join(dirname(path), `.${basename(path)}.${process.pid}.part`);
   try {
-    writeFileSync(temporary, text);
+    writeFileSync(temporary, content);
     renameSync(temporary, path);
   } catch (error) {
     rmSync(temporary, { force: true });
-    throw new Error(`${path} could not be written: ${reasonOf(error)}; choose another place with --out`);
+    throw new Error(`${path} could not be written: ${reasonOf(error)}; choose another place for it`);
   }
 }
 
 /** Writes several files into a folder, which is made where it is missing. */
-export function writeFolder(folder: string, files: Readonly<Record<string, string>>): void {
+export function writeFolder(folder: string, files: Readonly<Record<string, string | Uint8Array>>): void {
   try {
     mkdirSync(folder, { recursive: true });
   } catch (error) {
-    throw new Error(`the folder ${folder} could not be made: ${reasonOf(error)}; choose another place with --out`);
+    throw new Error(`the folder ${folder} could not be made: ${reasonOf(error)}; choose another place for it`);
   }
-  for (const [name, text] of Object.entries(files)) writeWhole(join(folder, name), text);
+  for (const [name, content] of Object.entries(files)) writeWhole(join(folder, name), content);
 }
 
 const REASONS: Readonly<Record<string, string>> = {

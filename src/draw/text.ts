@@ -1,4 +1,5 @@
-import opentype, { type Font, type Glyph } from 'opentype.js';
+import type { Font, Glyph } from 'opentype.js';
+import { parse } from 'opentype.js/dist/opentype.mjs';
 import { blend, NEUTRALS, type Theme } from './colour.ts';
 import type { Label } from './label.ts';
 import type { Surface } from './surface.ts';
@@ -23,7 +24,7 @@ export class TextPainter {
 
   /** @param files bytes of font files; a character is taken from the first that has it, and left out where none has */
   constructor(files: readonly ArrayBuffer[]) {
-    this.fonts = files.map((bytes) => opentype.parse(bytes));
+    this.fonts = files.map((bytes) => parse(bytes));
   }
 
   /** Draws all labels of a scene; those of hidden points faintly. What may lie over the field is set off by a thin halo. */

@@ -13,7 +13,7 @@ const root = fileURLToPath(new URL('../../', import.meta.url));
 
 export const TARGETS = { firstPictureMs: 1000, verdictMs: 5000, pictureMs: 1000 / 60, longestTaskMs: 50 };
 
-const FLAGS = [
+export const FLAGS = [
   '--headless',
   '--no-sandbox',
   '--disable-gpu',
@@ -25,7 +25,7 @@ const FLAGS = [
   '--disable-sync',
 ];
 
-function browserPlace() {
+export function browserPlace() {
   const named = process.env.CHROMIUM;
   if (named) return { executablePath: named };
   const system = ['google-chrome', 'chromium', 'chromium-browser'].find(
@@ -39,7 +39,7 @@ function browserPlace() {
   return { executablePath: join(cache, 'chromium'), env };
 }
 
-async function served() {
+export async function served() {
   const server = spawn(process.execPath, [join(root, 'dist/main.js'), 'view'], {
     stdio: ['ignore', 'pipe', 'inherit'],
   });

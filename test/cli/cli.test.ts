@@ -3,6 +3,7 @@ import { existsSync, mkdtempSync, readdirSync, readFileSync, rmSync, writeFileSy
 import { get } from 'node:http';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
+import { decode, decodeApng } from 'fast-png';
 import { afterAll, beforeAll, describe, expect, test } from 'vitest';
 import { resultSchema } from '../../src/compare/result.ts';
 import { readTraces } from '../../src/files/traces.ts';
@@ -185,6 +186,47 @@ describe('compare', () => {
     expect(performance.now() - asked).toBeLessThan(1500);
     expect(status).toBe(130);
     expect(existsSync(join(folder, 'stopped'))).toBe(false);
+  });
+});
+
+describe('frames', () => {
+  test('pictures over the whole run and the same as a film; the last shows the field, the difference and their texts', () => {
+    const { status, stdout } = run('compare', write('filmed.json', small()), '--frames', 'new/frames');
+    expect(status).toBe(0);
+    expect(stdout).toContain('25 pictures in new/frames');
+    const read = (name: string) => readFileSync(join(folder, 'new/frames', name));
+    const names = readdirSync(join(folder, 'new/frames')).sort();
+    expect(names).toEqual([
+      'film.png',
+      ...Array.from({ length: 24 }, (_, n) => `frame-${String(n + 1).padStart(2, '0')}.png`),
+    ]);
+    for (const name of names) expect([...read(name).subarray(0, 8)]).toEqual([137, 80, 78, 71, 13, 10, 26, 10]);
+    const film = decodeApng(read('film.png'), { checkCrc: true });
+    expect(film.numberOfFrames).toBe(24);
+    const stills = names.slice(1).map((name) => decode(read(name)).data);
+    film.frames.forEach(({ data }, n) => {
+      expect(Buffer.compare(Buffer.from(data.buffer), Buffer.from(stills[n]!.buffer))).toBe(0);
+    });
+
+    // In the middle of each pane the pulse passes: its colours are there in some picture and not in all.
+    const inks = stills.map((data) => {
+      const counts = [0, 0, 0];
+      for (let n = 0; n < data.length; n += 3) {
+        const [x, y] = [(n / 3) % 1280, Math.floor(n / 3 / 1280)];
+        const spread = Math.max(data[n]!, data[n + 1]!, data[n + 2]!) - Math.min(data[n]!, data[n + 1]!, data[n + 2]!);
+        if (y > 30 && y < 470 - 44 && spread > 60) counts[Math.floor((3 * x) / 1280)]!++;
+      }
+      return counts;
+    });
+    console.table(inks);
+    const most = [0, 1, 2].map((pane) => Math.max(...inks.map((counts) => counts[pane]!)));
+    const least = [0, 1, 2].map((pane) => Math.min(...inks.map((counts) => counts[pane]!)));
+    for (const pane of [0, 1, 2]) expect(most[pane]).toBeGreaterThan(2 * least[pane]! + 1000);
+  });
+
+  test('refused input makes no folder', () => {
+    expect(run('compare', write('bad.json', small({ duration: '3 mm' })), '--frames', 'no-frames').status).toBe(2);
+    expect(existsSync(join(folder, 'no-frames'))).toBe(false);
   });
 });
 

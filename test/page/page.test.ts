@@ -65,6 +65,9 @@ describe('the page with its own scenario', () => {
     expect(await textOfPage(page, '#sentence')).toBe(result.verdict.sentence);
     const details = await page.locator('#details').textContent();
     for (const line of result.verdict.details) expect(details).toContain(line);
+    expect(result.checks.length).toBeGreaterThan(0);
+    const checks = await page.locator('#checks').textContent();
+    for (const { sentence } of result.checks) expect(checks).toContain(sentence);
     const rows = await page.locator('#budget tbody tr').allInnerTexts();
     const cells = rows.map((row) => row.split('\t').map((cell) => cell.trim()));
     const printed = budgetRows(result.budget);

@@ -1,3 +1,4 @@
+import type { Result } from '../compare/result.ts';
 import { NEUTRALS, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
 import { contours } from '../draw/contour.ts';
 import { absorberEdges, boxEdges, contourLines, planeOutline, wire } from '../draw/furniture.ts';
@@ -9,12 +10,52 @@ import { PALETTE } from '../report/palette.ts';
 import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
 import type { Film } from './film.ts';
 import { distanceOutlines, Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
-import { quantityOf } from './quantity.ts';
-import { planesShown, type Runner } from './runner.ts';
-import type { Store } from './store.ts';
+import { type QuantityKey, quantityOf } from './quantity.ts';
+import { planesShown } from './slices.ts';
 import { currentOn, type DrawnSource, drawnSources, largestCurrent } from './wires.ts';
 
 const TITLES: Readonly<Record<Side, string>> = { grid: 'Grid field', exact: 'Exact field', difference: 'Difference' };
+
+/** What is looked at, and how. */
+export interface View {
+  readonly layout: 'panes' | 'overlay' | 'trust';
+  readonly quantity: QuantityKey;
+  readonly difference: 'signed' | 'decibels';
+  /** contour lines of the exact field over the grid's colours */
+  readonly contours: boolean;
+  /** of the colour scale: values times this */
+  readonly gain: number;
+  readonly projection: 'perspective' | 'orthographic';
+  /** place of the divider between grid and exact, 0…1 */
+  readonly divider: number;
+  /** whose traces are shown */
+  readonly observer: string;
+  /** instants a second when playing */
+  readonly speed: number;
+}
+
+/** The view that one begins with. */
+export const VIEW: View = {
+  layout: 'panes',
+  quantity: 'Ez',
+  difference: 'signed',
+  contours: false,
+  gain: 1,
+  projection: 'perspective',
+  divider: 0.5,
+  observer: '',
+  speed: 20,
+};
+
+/** What there is to show. */
+export interface Shown {
+  readonly scenario: Scenario | null;
+  readonly view: View;
+  readonly theme: Theme;
+  readonly film: Film | null;
+  readonly frame: number;
+  readonly result: Result | null;
+}
 
 /** What lies under the pointer, with the values of all three pictures there. */
 export interface Reading {
@@ -41,7 +82,7 @@ export function gripOf(scenario: Scenario, n: number, moved?: number): Vec3 {
   return scenario.grid.box.to.map((x, a) => (a === normal ? (moved ?? at) : x)) as unknown as Vec3;
 }
 
-/** What the panes show: from the state of the page to what is to be drawn. */
+/** From what there is to show to what is to be drawn, for the page and for files alike. */
 export class Scenery {
   /** a plane on its way, and where along its normal it is, m */
   moving: { readonly plane: number; readonly at: number } | undefined;
@@ -51,9 +92,13 @@ export class Scenery {
     | { readonly film: Film; readonly mask: number; readonly theme: Theme; readonly strokes: Stroke[] }
     | undefined;
 
+  /**
+   * @param store whose state is shown
+   * @param wantPotentials is told of a picture whose potentials are to be shown
+   */
   constructor(
-    private readonly store: Store,
-    private readonly runner: Runner,
+    private readonly store: { readonly state: Shown },
+    private readonly wantPotentials: (frame: number) => void,
   ) {}
 
   /** Whether the next picture would look different, though nothing has happened. */
@@ -95,7 +140,7 @@ export class Scenery {
     const { film, view, frame } = this.store.state;
     const { scenario } = furniture;
     const quantity = quantityOf(view.quantity);
-    if (film && quantity.kind === 'potential') this.runner.wantPotentials(frame);
+    if (film && quantity.kind === 'potential') this.wantPotentials(frame);
     const scales =
       film && this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);
     const planes = (side: Side): Plane[] =>

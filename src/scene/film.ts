@@ -1,6 +1,38 @@
-import { CHANNELS } from '../run/planes.ts';
+import { CHANNELS, type GridFrames } from '../run/planes.ts';
 import type { Instants } from '../trace/trace.ts';
-import type { Report, ShownSlice, TrustMap } from './messages.ts';
+import type { ShownSlice } from './slices.ts';
+
+/** Point errors on a slice; NaN where a point does not count or is not known yet. */
+export interface TrustMap {
+  readonly E: Float32Array;
+  readonly H: Float32Array;
+  /** index of the part with the largest share of E's error, in the order of PARTS */
+  readonly largest: Float32Array;
+}
+
+/** What films are of. */
+export interface FilmOf {
+  readonly slices: readonly ShownSlice[];
+  readonly instants: Instants;
+  /** steps from one picture to the next */
+  readonly every: number;
+}
+
+/** The exact field at some cells of a slice: data[(frame·CHANNELS + channel)·cells + cell]. */
+export interface ExactCells {
+  readonly slice: number;
+  readonly cells: readonly number[];
+  /** each cell stands for so many along both axes, until they are known themselves */
+  readonly coarse: number;
+  readonly data: Float32Array;
+}
+
+/** Potentials at one picture: φ (V), Ax, Ay, Az (Wb/m) as values[quantity·cells + cell]. */
+export interface PotentialFrame {
+  readonly slice: number;
+  readonly frame: number;
+  readonly values: Float32Array;
+}
 
 /** What is known so far of the fields on one slice: data[(frame·CHANNELS + channel)·cells + cell]. */
 export interface SliceFilm {
@@ -26,7 +58,7 @@ export class Film {
   /** counts what has come in, so that pictures know when they are out of date */
   revision = 0;
 
-  constructor({ slices, instants, every }: Extract<Report, { kind: 'film' }>) {
+  constructor({ slices, instants, every }: FilmOf) {
     this.instants = instants;
     this.every = every;
     this.films = slices.map((slice) => {
@@ -47,7 +79,7 @@ export class Film {
     return this.instants.count;
   }
 
-  addGrid({ first, count, slices }: Extract<Report, { kind: 'grid' }>): void {
+  addGrid({ first, count, slices }: GridFrames): void {
     slices.forEach((data, n) => {
       const { grid, slice } = this.films[n]!;
       grid.set(data, first * CHANNELS * slice.nu * slice.nv);
@@ -56,7 +88,7 @@ export class Film {
     this.revision++;
   }
 
-  addExact({ slice: index, cells, coarse, data }: Extract<Report, { kind: 'exact' }>): void {
+  addExact({ slice: index, cells, coarse, data }: ExactCells): void {
     const { slice, exact, known } = this.films[index]!;
     const all = slice.nu * slice.nv;
     // each target, and which of the cells it shows
@@ -84,12 +116,12 @@ export class Film {
     return block;
   }
 
-  addTrust({ slice, map }: Extract<Report, { kind: 'trust' }>): void {
+  addTrust(slice: number, map: TrustMap): void {
     this.films[slice]!.trust = map;
     this.revision++;
   }
 
-  addPotentials({ slice, frame, values }: Extract<Report, { kind: 'potentials' }>): void {
+  addPotentials({ slice, frame, values }: PotentialFrame): void {
     this.films[slice]!.potentials.set(frame, values);
     this.revision++;
   }

@@ -1,8 +1,8 @@
 import { describe, expect, test } from 'vitest';
-import type { SliceFilm } from '../../src/app/film.ts';
-import { layerOf, quantityOf, sampleQuantity } from '../../src/app/quantity.ts';
 import { CHANNELS, staggeredAlong } from '../../src/run/planes.ts';
 import type { Axis } from '../../src/scenario/model.ts';
+import type { SliceFilm } from '../../src/scene/film.ts';
+import { layerOf, quantityOf, sampleQuantity } from '../../src/scene/quantity.ts';
 import { STAGGER } from '../../src/trace/trace.ts';
 
 const [NU, NV, FRAMES, EVERY] = [6, 5, 4, 3];

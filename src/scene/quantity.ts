@@ -1,6 +1,6 @@
 import { CHANNELS, staggeredAlong } from '../run/planes.ts';
 import { COMPONENTS, STAGGER } from '../trace/trace.ts';
-import type { SliceFilm } from './film.ts';
+import type { Film, SliceFilm } from './film.ts';
 
 /**
  * What a pane can show. A component is shown as it is, at its own place and instant. A magnitude or the Poynting vector
@@ -155,4 +155,22 @@ function samplePotential(
       index >= 0
         ? values[index * cells + p]!
         : Math.sqrt(values[cells + p]! ** 2 + values[2 * cells + p]! ** 2 + values[3 * cells + p]! ** 2);
+}
+
+/** The component of E that is the largest, by the exact field, anywhere on the film beyond the mask (m). */
+export function strongestComponent({ films, frames }: Film, mask: number): QuantityKey {
+  const largest = [0, 0, 0];
+  for (const { slice, exact } of films) {
+    const cells = slice.nu * slice.nv;
+    for (let frame = 0; frame < frames; frame++)
+      for (let component = 0; component < 3; component++) {
+        const line = (frame * CHANNELS + component) * cells;
+        for (let p = 0; p < cells; p++) {
+          const size = Math.abs(exact[line + p]!);
+          if (slice.hole[p] === 0 && slice.distance[p]! >= mask && size > largest[component]!)
+            largest[component] = size;
+        }
+      }
+  }
+  return COMPONENTS[largest.indexOf(Math.max(...largest))]!;
 }
