@@ -5,6 +5,8 @@
 export { type Plan, planJsonSchema } from './compare/planResult.ts';
 export { resultJsonSchema, withinTolerance } from './compare/result.ts';
 export { resultText } from './report/text.ts';
+export { type FieldOptions, type FieldValue, fieldAt } from './retarded/field.ts';
+export { fieldBySpectrum, steadyField } from './retarded/spectral.ts';
 export { type CompareOptions, type Comparison, compareSolvers, Refusal } from './run/compare.ts';
 export { type PlanOptions, planScenario } from './run/plan.ts';
 export type { Progress } from './run/progress.ts';

@@ -1,6 +1,6 @@
 import { existsSync } from 'node:fs';
 import { join } from 'node:path';
-import { Command, CommanderError, InvalidArgumentError } from 'commander';
+import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
 import { withinTolerance } from '../compare/result.ts';
 import type { SurveyResult } from '../compare/surveyResult.ts';
@@ -14,7 +14,8 @@ import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
-import { exactCommand } from './exact.ts';
+import { currentsCommand } from './currents.ts';
+import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
 import { frameFiles } from './frames.ts';
 import { InputError, readScenario } from './input.ts';
 import { quoted, writeFolder, writeWhole } from './output.ts';
@@ -141,12 +142,35 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .command('exact')
     .argument('<scenario>', 'a scenario file or a built-in scenario')
     .description('the exact field alone, at any points and instants, inside the box or out')
-    .requiredOption('--points <file>', 'CSV with the header x,y,z,t (m and s)')
+    .requiredOption('--points <file>', 'CSV with the header x,y,z,t (m and s), or x,y,z,f (m and Hz)')
     .requiredOption('--out <file>', 'CSV to write: x,y,z,t, then E, H, B, φ, A and bounds of their errors, SI units')
-    .addHelpText('after', '\nExample: fieldassay exact small-loop --points points.csv --out field.csv\n')
-    .action(async (name: string, options: { points: string; out: string }) => {
-      writeWhole(options.out, await exactCommand(readScenario(name), options.points, signal));
+    .addOption(
+      new Option('--route <route>', 'spectral: by spectra and back, held against the integrals')
+        .choices(ROUTES)
+        .default('retarded'),
+    )
+    .option('--frequencies', 'the steady state at frequencies: every waveform is amplitude · e^(+jωt)')
+    .addHelpText(
+      'after',
+      '\nExample: fieldassay exact small-loop --points points.csv --out field.csv' +
+        '\nExample: fieldassay exact small-loop --points lines.csv --frequencies --out phasors.csv\n',
+    )
+    .action(async (name: string, options: ExactOptions & { points: string; out: string }) => {
+      const { csv, disagreement } = await exactCommand(readScenario(name), options.points, options, signal);
+      writeWhole(options.out, csv);
+      if (disagreement) process.stderr.write(disagreementText(disagreement));
     });
+
+  program
+    .command('currents')
+    .argument('<scenario>', 'a scenario file or a built-in scenario')
+    .description('the currents on grid edges, instant by instant: to drive another solver with the very same source')
+    .requiredOption(
+      '--out <file>',
+      'CSV to write: axis,i,j,k,x,y,z,length, then the current at each instant that the header names, SI units',
+    )
+    .addHelpText('after', '\nExample: fieldassay currents tilted-wire --out edges.csv\n')
+    .action((name: string, { out }: { out: string }) => writeWhole(out, currentsCommand(readScenario(name))));
 
   program
     .command('view')

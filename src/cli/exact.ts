@@ -1,83 +1,205 @@
 import Papa from 'papaparse';
+import { formatQuantity } from '../elementary/quantity.ts';
 import { fieldOf } from '../retarded/field.ts';
 import { prepareSources } from '../retarded/prepare.ts';
+import {
+  fieldBySpectrum,
+  type Peaks,
+  type SpectralValue,
+  type SteadyValue,
+  steadyField,
+} from '../retarded/spectral.ts';
 import { Refusal } from '../run/compare.ts';
+import { type Disagreement, disagreement } from '../run/routes.ts';
+import { firstArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
+import type { Medium, Source, Vec3 } from '../scenario/model.ts';
 import { InputError, readInput } from './input.ts';
 import { progressLine } from './progress.ts';
 
-const ASKED = ['x', 'y', 'z', 't'] as const;
+export const ROUTES = ['retarded', 'spectral'] as const;
 
-const COLUMNS = [
-  ...ASKED,
-  ...['Ex', 'Ey', 'Ez', 'Hx', 'Hy', 'Hz', 'Bx', 'By', 'Bz', 'phi', 'Ax', 'Ay', 'Az', 'errorE', 'errorH'],
-];
+export interface ExactOptions {
+  /** retarded integrals, or spectra and back (which are then held against the integrals) */
+  readonly route: (typeof ROUTES)[number];
+  /** the file asks for frequencies, in the steady state, instead of instants */
+  readonly frequencies: boolean;
+}
+
+/** A row of the points file: x, y, z (m) and t (s) or f (Hz). */
+type Row = readonly [x: number, y: number, z: number, at: number];
+
+const QUANTITIES = ['Ex', 'Ey', 'Ez', 'Hx', 'Hy', 'Hz', 'Bx', 'By', 'Bz', 'phi', 'Ax', 'Ay', 'Az'];
+const ERRORS = ['errorE', 'errorH'];
 
 /** Points evaluated before progress is shown and an interruption is looked for. */
 const BATCH = 256;
 
 /**
- * The exact field at the points and instants of a CSV file, as CSV in the same order, SI units.
+ * The exact field at the points and instants (or frequencies) of a CSV file.
+ * @returns CSV in the order of the file, SI units; and, where two routes were taken, how far they are apart
  * @throws Refusal for a scenario with problems; InputError naming row, column and value of a file that cannot be used,
  *   or row and source of a point that lies on one
  */
-export async function exactCommand(scenarioInput: unknown, pointsFile: string, signal: AbortSignal): Promise<string> {
+export async function exactCommand(
+  scenarioInput: unknown,
+  pointsFile: string,
+  { route, frequencies }: ExactOptions,
+  signal: AbortSignal,
+): Promise<{ csv: string; disagreement?: readonly Disagreement[] }> {
   const loaded = loadScenario(scenarioInput);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   const { sources, medium } = loaded.scenario;
-  const rows = readPoints(pointsFile);
-  const at = fieldOf(prepareSources(sources, medium, 'best'));
-  const line = progressLine(rows.length < 10 * BATCH);
-  const out: (readonly (string | number)[])[] = [COLUMNS];
+  const rows = readRows(pointsFile, frequencies ? 'f' : 't');
+  const walk = new Walk(signal, rows.length < 10 * BATCH && route === 'retarded');
   try {
-    for (let n = 0; n < rows.length; n++) {
-      if (n % BATCH === 0) {
-        line.show({ stage: 'the exact field', fraction: n / rows.length });
-        // Lets an interruption be heard.
-        await new Promise((next) => setImmediate(next));
-        signal.throwIfAborted();
-      }
-      const [x, y, z, t] = rows[n]!;
-      out.push([x, y, z, t, ...fieldRow(() => at([x, y, z], t), n)]);
+    if (frequencies) {
+      const at = steadyField(sources, medium);
+      const values = await walk.map('the steady state', rows, ([x, y, z, f]) => flatPhasors(at([x, y, z], f)));
+      return {
+        csv: csvOf(
+          'f',
+          QUANTITIES.flatMap((name) => [`${name}Re`, `${name}Im`]),
+          rows,
+          values,
+        ),
+      };
     }
+    const at = fieldOf(prepareSources(sources, medium, 'best'));
+    const integrals = await walk.map('the exact field', rows, ([x, y, z, t]) => at([x, y, z], t));
+    if (route === 'retarded') return { csv: csvOf('t', QUANTITIES, rows, integrals.map(flat)) };
+    const spectral = await spectralValues(sources, medium, rows, walk);
+    return {
+      csv: csvOf('t', QUANTITIES, rows, spectral.values.map(flat)),
+      disagreement: disagreement(spectral.values, integrals, spectral.peaks, medium),
+    };
   } finally {
-    line.end();
-  }
-  return `${Papa.unparse(out as unknown[][], { newline: '\n' })}\n`;
-}
-
-function fieldRow(field: () => ReturnType<ReturnType<typeof fieldOf>>, row: number): number[] {
-  try {
-    const { E, H, B, phi, A, errorE, errorH } = field();
-    return [...E, ...H, ...B, phi, ...A, errorE, errorH];
-  } catch (error) {
-    if (error instanceof RangeError) throw new InputError(`row ${row + 2}: ${error.message}`);
-    throw error;
+    walk.end();
   }
 }
 
-function readPoints(file: string): (readonly [number, number, number, number])[] {
+/** The field by spectra, point by point: all instants of one point share its lines. */
+async function spectralValues(
+  sources: readonly Source[],
+  medium: Medium,
+  rows: readonly Row[],
+  walk: Walk,
+): Promise<{ values: SpectralValue[]; peaks: Peaks[] }> {
+  const groups = new Map<string, number[]>();
+  rows.forEach(([x, y, z], n) => {
+    const key = `${x} ${y} ${z}`;
+    groups.set(key, [...(groups.get(key) ?? []), n]);
+  });
+  const first = [...groups.values()].map(([n]) => firstArrival(sources, medium, pointOf(rows[n!]!)));
+  const stretches = [...groups.values()].map((members, g) => Math.max(...members.map((n) => rows[n]![3])) - first[g]!);
+  const at = fieldBySpectrum(sources, medium, Math.max(0, ...stretches));
+  const values = new Array<SpectralValue>(rows.length);
+  const peaks = new Array<Peaks>(rows.length);
+  await walk.map('the field by spectra', [...groups.values()], (members) => {
+    const found = at(
+      pointOf(rows[members[0]!]!),
+      members.map((n) => rows[n]![3]),
+    );
+    const here = found.peaks();
+    members.forEach((n, m) => {
+      values[n] = found.values[m]!;
+      peaks[n] = here;
+    });
+  });
+  return { values, peaks };
+}
+
+const pointOf = ([x, y, z]: Row): Vec3 => [x, y, z];
+
+/** Goes through a list with progress, so that an interruption is heard, and says which row is refused. */
+class Walk {
+  readonly #line: ReturnType<typeof progressLine>;
+
+  constructor(
+    readonly signal: AbortSignal,
+    quiet: boolean,
+  ) {
+    this.#line = progressLine(quiet);
+  }
+
+  async map<T, U>(stage: string, list: readonly T[], evaluate: (item: T) => U): Promise<U[]> {
+    const out: U[] = [];
+    for (const [n, item] of list.entries()) {
+      if (n % BATCH === 0) {
+        this.#line.show({ stage, fraction: n / list.length });
+        await new Promise((next) => setImmediate(next));
+        this.signal.throwIfAborted();
+      }
+      try {
+        out.push(evaluate(item));
+      } catch (error) {
+        if (error instanceof RangeError) throw new InputError(`row ${n + 2}: ${error.message}`);
+        throw error;
+      }
+    }
+    return out;
+  }
+
+  end(): void {
+    this.#line.end();
+  }
+}
+
+type Value = Pick<SpectralValue, 'E' | 'H' | 'B' | 'phi' | 'A' | 'errorE' | 'errorH'>;
+
+const flat = ({ E, H, B, phi, A, errorE, errorH }: Value): number[] => [...E, ...H, ...B, phi, ...A, errorE, errorH];
+
+const flatPhasors = ({ E, H, B, phi, A, errorE, errorH }: SteadyValue): number[] => [
+  ...[...E, ...H, ...B, phi, ...A].flat(),
+  errorE,
+  errorH,
+];
+
+function csvOf(
+  at: 't' | 'f',
+  quantities: readonly string[],
+  rows: readonly Row[],
+  values: readonly (readonly number[])[],
+): string {
+  const table = [['x', 'y', 'z', at, ...quantities, ...ERRORS], ...rows.map((row, n) => [...row, ...values[n]!])];
+  return `${Papa.unparse(table as unknown[][], { newline: '\n' })}\n`;
+}
+
+function readRows(file: string, at: 't' | 'f'): Row[] {
+  const asked = ['x', 'y', 'z', at];
+  const unit = at === 't' ? 's' : 'Hz';
   const { data, meta, errors } = Papa.parse<Record<string, string>>(readInput(file, 'the points file').trim(), {
     header: true,
     skipEmptyLines: true,
   });
-  const missing = ASKED.filter((name) => !meta.fields?.includes(name));
+  const missing = asked.filter((name) => !meta.fields?.includes(name));
   if (missing.length > 0)
     throw new InputError(
-      `${file}: the header is “${meta.fields?.join(',') ?? ''}”; it must name the columns x,y,z,t (m and s)`,
+      `${file}: the header is “${meta.fields?.join(',') ?? ''}”; it must name the columns ${asked.join(',')} (m and ${unit})`,
     );
   const broken = errors[0];
   if (broken) throw new InputError(`${file}, row ${(broken.row ?? 0) + 2}: ${broken.message}`);
   return data.map((record, n) => {
-    const numbers = ASKED.map((name) => {
+    const numbers = asked.map((name) => {
       const text = (record[name] ?? '').trim();
       const value = Number(text);
       if (text === '' || !Number.isFinite(value))
         throw new InputError(
-          `${file}, row ${n + 2}: ${name} is “${text}”; it must be a finite number, ${name === 't' ? 's' : 'm'}`,
+          `${file}, row ${n + 2}: ${name} is “${text}”; it must be a finite number, ${name === at ? unit : 'm'}`,
         );
       return value;
     });
-    return numbers as unknown as readonly [number, number, number, number];
+    return numbers as unknown as Row;
   });
+}
+
+/** What `exact --route spectral` says of the two routes. */
+export function disagreementText(list: readonly Disagreement[]): string {
+  const unit = { E: 'V/m', H: 'A/m', phi: 'V', A: 'V·s/m' } as const;
+  const name = { E: 'E', H: 'H', phi: 'φ', A: 'A' } as const;
+  const rows = list.map(
+    ({ quantity, largest, row, peak }) =>
+      `  ${name[quantity].padEnd(3)}${largest.toExponential(1).padStart(9)} of ${formatQuantity(peak, unit[quantity])}, row ${row + 2}`,
+  );
+  return `Spectral against retarded route, largest difference relative to the peak at the same point:\n${rows.join('\n')}\n`;
 }

@@ -253,6 +253,43 @@ describe('exact', () => {
     expect(existsSync(join(folder, 'no.csv'))).toBe(false);
   });
 
+  test('by spectra: the same file, and how far the two routes are apart', () => {
+    const points = write('route.csv', 'x,y,z,t\n0.1,0.05,0.02,1e-9\n0.3,0.5,0.5,3e-9\n0.1,0.05,0.02,2e-9\n');
+    const asked = ['exact', 'tilted-wire', '--points', points, '--out'];
+    expect(run(...asked, 'integrals.csv').status).toBe(0);
+    const { status, stderr } = run(...asked, 'spectral.csv', '--route', 'spectral');
+    expect(status).toBe(0);
+    // A delay of 9 sigma: 1e-8 of the peak and better in every quantity.
+    const apart = [...stderr.matchAll(/^ {2}(\S+) +(\S+) of /gm)].map(([, name, value]) => [
+      name,
+      Number(value) < 1e-8,
+    ]);
+    expect(apart).toEqual(['E', 'H', 'φ', 'A'].map((name) => [name, true]));
+    const numbers = (file: string) =>
+      readFileSync(join(folder, file), 'utf8')
+        .trim()
+        .split('\n')
+        .slice(1)
+        .map((line) => line.split(',').map(Number));
+    const [first, second] = [numbers('integrals.csv'), numbers('spectral.csv')];
+    for (const [n, row] of first.entries()) {
+      expect(second[n]!.slice(0, 4)).toEqual(row.slice(0, 4));
+      for (const c of [4, 5, 6]) expect(Math.abs(second[n]![c]! - row[c]!)).toBeLessThan(second[n]![17]! + row[17]!);
+    }
+    expect(run(...asked, 'no.csv', '--route', 'shortest').status).toBe(2);
+  });
+
+  test('the steady state at frequencies, complex columns', () => {
+    const points = write('lines.csv', 'x,y,z,f\n0.1,0.05,0.02,1e9\n0.1,0.05,0.02,2e9\n');
+    expect(run('exact', 'small-loop', '--points', points, '--frequencies', '--out', 'phasors.csv').status).toBe(0);
+    const [header, first] = readFileSync(join(folder, 'phasors.csv'), 'utf8').split('\n');
+    expect(header).toMatch(/^x,y,z,f,ExRe,ExIm,EyRe,EyIm,.*,phiRe,phiIm,AxRe,AxIm,AyRe,AyIm,AzRe,AzIm,errorE,errorH$/);
+    expect(first!.split(',')).toHaveLength(4 + 26 + 2);
+    const still = write('still.csv', 'x,y,z,f\n0.1,0.05,0.02,0\n');
+    const refused = run('exact', 'small-loop', '--points', still, '--frequencies', '--out', 'no.csv');
+    expect([refused.status, refused.stderr.includes('row 2: frequency is 0 Hz')]).toEqual([2, true]);
+  });
+
   test.each([
     ['x,y,t\n1,2,3\n', 'x,y,z,t'],
     ['x,y,z,t\n1,2,abc,4\n', 'row 2: z is “abc”'],
@@ -261,6 +298,37 @@ describe('exact', () => {
     const { status, stderr } = run('exact', 'small-loop', '--points', write('p.csv', content), '--out', 'no.csv');
     expect(status).toBe(2);
     expect(stderr).toContain(said);
+  });
+});
+
+describe('currents', () => {
+  test('edge by edge, at the instants that drive the grid: their moment is the wire’s', () => {
+    expect(run('currents', 'tilted-wire', '--out', 'edges.csv').status).toBe(0);
+    const [header, ...rows] = readFileSync(join(folder, 'edges.csv'), 'utf8').trim().split('\n');
+    const instants = header!.split(',').slice(8).map(Number);
+    expect(header!.split(',').slice(0, 8)).toEqual(['axis', 'i', 'j', 'k', 'x', 'y', 'z', 'length']);
+    expect(instants[1]! / instants[0]!).toBeCloseTo(3, 12);
+    const from = [-0.12, -0.12, -0.12];
+    const length = [0.048, 0.036, 0.08];
+    const w = (t: number) => {
+      const u = (t - 1.08e-9) / 0.12e-9;
+      return -Math.sqrt(Math.E) * u * Math.exp(-0.5 * u * u);
+    };
+    const n = instants.findIndex((t) => t > 1e-9);
+    const moment = [0, 0, 0];
+    for (const row of rows) {
+      const [axis, ...rest] = row.split(',');
+      const a = 'xyz'.indexOf(axis!);
+      const [i, j, k, x, y, z, h, ...currents] = rest.map(Number);
+      [i!, j!, k!].forEach((node, b) => {
+        expect([x!, y!, z!][b]!).toBeCloseTo(from[b]! + (node + (a === b ? 0.5 : 0)) * 5e-3, 12);
+      });
+      expect(currents).toHaveLength(instants.length);
+      moment[a]! += h! * currents[n]!;
+    }
+    moment.forEach((m, a) => {
+      expect(m / (w(instants[n]!) * length[a]!)).toBeCloseTo(1, 9);
+    });
   });
 });
 
@@ -279,7 +347,7 @@ describe('schema and examples', () => {
   });
 
   test('every command has help with an example', () => {
-    for (const command of ['compare', 'exact', 'survey', 'schema', 'examples']) {
+    for (const command of ['compare', 'exact', 'currents', 'survey', 'schema', 'examples']) {
       const { status, stdout } = run(command, '--help');
       expect(status).toBe(0);
       expect(stdout).toContain('Example: ');
