@@ -30,6 +30,10 @@ const START = 2 ** -30;
 
 const ORDERS = 5;
 
+/** Bounds of tau1/tau2 and tau2/tau1: beyond them a pulse has no peak to speak of, or a scale that no window spans. */
+const MOST_RISE = 30;
+const MOST_TAIL = 1e6;
+
 /**
  * A sum of terms (amplitude/η) xⁿ/(1 + xⁿ) e^(−t/tau2), x = t/tau1, η = exp(−(tau1/tau2)(n tau2/tau1)^(1/n)), which makes
  * the peak of a slow term its amplitude. F. Heidler, "Analytische Blitzstromfunktion zur LEMP-Berechnung", 18th ICLP,
@@ -45,6 +49,10 @@ export function heidler(spec: Extract<WaveformSpec, { type: 'heidler' }>): Wavef
       throw new RangeError(`amplitude is ${amplitude} A; it must be finite and not 0.`);
     if (!(tau1 > 0 && tau2 > 0 && Number.isFinite(tau1 + tau2)))
       throw new RangeError(`tau1 is ${tau1} s and tau2 ${tau2} s; both must be above 0.`);
+    if (!(tau1 <= MOST_RISE * tau2 && tau2 <= MOST_TAIL * tau1))
+      throw new RangeError(
+        `tau1 is ${tau1} s and tau2 ${tau2} s; tau1 must be at most ${MOST_RISE} tau2, and tau2 at most ${MOST_TAIL} tau1.`,
+      );
     if (!(n >= least && n <= most)) throw new RangeError(`n is ${n}; it must be from ${least} to ${most}.`);
   }
   const fastest = Math.min(...terms.map(({ tau1 }) => tau1));
