@@ -1,6 +1,7 @@
 import { loadScenario } from '../scenario/load.ts';
 import { h } from './dom.ts';
 import { notify } from './notice.ts';
+import type { Places } from './places.ts';
 import type { Side } from './side.ts';
 import { type Store, textOf } from './store.ts';
 
@@ -41,7 +42,7 @@ export function openText(store: Store, side: Side, name: string, text: string): 
   }
 }
 
-async function openFile(store: Store, side: Side, file: File): Promise<void> {
+async function openFile(store: Store, side: Side, places: Places, file: File): Promise<void> {
   if (file.size > MOST_BYTES) {
     notify(
       `${file.name} was not opened: it has ${Math.round(file.size / 1e6)} MB, a scenario at most ${MOST_BYTES / 1024 / 1024}.`,
@@ -49,11 +50,21 @@ async function openFile(store: Store, side: Side, file: File): Promise<void> {
     );
     return;
   }
-  openText(store, side, file.name, await file.text());
+  const text = await file.text();
+  if (await places.take(file.name, jsonOrNothing(text))) return;
+  openText(store, side, file.name, text);
+}
+
+function jsonOrNothing(text: string): unknown {
+  try {
+    return JSON.parse(text);
+  } catch {
+    return undefined;
+  }
 }
 
 /** Opens files by a dialog and by dropping them anywhere on the page. */
-export function acceptFiles(store: Store, side: Side): { readonly choose: () => void } {
+export function acceptFiles(store: Store, side: Side, places: Places): { readonly choose: () => void } {
   const input = h('input', {
     type: 'file',
     accept: '.json,application/json',
@@ -63,7 +74,7 @@ export function acceptFiles(store: Store, side: Side): { readonly choose: () => 
   });
   input.addEventListener('change', () => {
     const [file] = input.files ?? [];
-    if (file) void openFile(store, side, file);
+    if (file) void openFile(store, side, places, file);
     input.value = '';
   });
   document.body.append(input);
@@ -81,7 +92,7 @@ export function acceptFiles(store: Store, side: Side): { readonly choose: () => 
     event.preventDefault();
     document.body.classList.remove('dropping');
     const [file] = event.dataTransfer?.files ?? [];
-    if (file) void openFile(store, side, file);
+    if (file) void openFile(store, side, places, file);
   });
   return { choose: () => input.click() };
 }

@@ -1,6 +1,7 @@
 import { QUANTITIES } from '../scene/quantity.ts';
 import { h } from './dom.ts';
 import type { Panes } from './panes.ts';
+import type { Places } from './places.ts';
 import type { Runner } from './runner.ts';
 import type { Saving } from './save.ts';
 import type { Side } from './side.ts';
@@ -13,6 +14,8 @@ interface Key {
   readonly keys: readonly string[];
   readonly help: string;
   readonly run: () => void;
+  /** at every place of the page, not at Compare alone */
+  readonly everywhere?: true;
 }
 
 const GAINS = [0.5, 1, 2, 5, 10, 30, 100];
@@ -25,10 +28,11 @@ interface Parts {
   readonly timeline: Timeline;
   readonly side: Side;
   readonly saving: Saving;
+  readonly places: Places;
   readonly choose: () => void;
 }
 
-function table({ store, runner, panes, timeline, side, saving, choose }: Parts): Key[] {
+function table({ store, runner, panes, timeline, side, saving, places, choose }: Parts): Key[] {
   const view = () => store.state.view;
   const turnTo = (list: readonly string[], at: string, by: number) =>
     list[(list.indexOf(at) + by + list.length) % list.length]!;
@@ -95,13 +99,15 @@ function table({ store, runner, panes, timeline, side, saving, choose }: Parts):
       },
     },
     { keys: ['e'], help: 'scenario as text, or panels', run: () => side.toggle() },
-    { keys: ['t'], help: 'light or dark', run: () => switchTheme(store) },
+    { keys: ['g'], help: 'next place', run: () => places.turn(1), everywhere: true },
+    { keys: ['G', 'Shift+G'], help: 'previous place', run: () => places.turn(-1), everywhere: true },
+    { keys: ['t'], help: 'light or dark', run: () => switchTheme(store), everywhere: true },
     { keys: ['r'], help: 'run again', run: () => runner.start() },
     { keys: ['Escape'], help: 'cancel the run', run: () => store.state.run.status === 'running' && runner.cancel() },
-    { keys: ['Ctrl+z'], help: 'undo', run: () => store.undo() },
-    { keys: ['Ctrl+Shift+Z', 'Ctrl+y'], help: 'redo', run: () => store.redo() },
-    { keys: ['Ctrl+o'], help: 'open a file', run: choose },
-    { keys: ['Ctrl+s'], help: 'save the scenario', run: () => saving.scenario() },
+    { keys: ['Ctrl+z'], help: 'undo', run: () => store.undo(), everywhere: true },
+    { keys: ['Ctrl+Shift+Z', 'Ctrl+y'], help: 'redo', run: () => store.redo(), everywhere: true },
+    { keys: ['Ctrl+o'], help: 'open a file', run: choose, everywhere: true },
+    { keys: ['Ctrl+s'], help: 'save the scenario', run: () => saving.scenario(), everywhere: true },
   ];
 }
 
@@ -181,7 +187,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
     const plain = `${control ? 'Ctrl+' : ''}${event.shiftKey && event.key.length > 1 ? 'Shift+' : ''}${event.key}`;
     const shifted = control && event.shiftKey ? `Ctrl+Shift+${event.key.toUpperCase()}` : plain;
     const found = keys.find((key) => key.keys.includes(shifted));
-    if (!found) return;
+    if (!found || !(found.everywhere || parts.places.current === 'compare')) return;
     event.preventDefault();
     found.run();
   });

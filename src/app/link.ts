@@ -4,14 +4,46 @@ import { textOf } from './store.ts';
 /**
  * The address bar holds the scenario: `#example=NAME` for a built-in one as it is, else `#scenario=` and the text,
  * deflated and in URL-safe base64, so that a link reproduces what its sender saw. `#results` is the scenario of the
- * result folder that is served with the page.
+ * result folder that is served with the page. After it, behind `&`, `at=` names a place of the page other than Compare,
+ * and that place's own fields follow.
  */
 export async function linkOf(text: string): Promise<string> {
   const name = (Object.keys(EXAMPLES) as ExampleName[]).find((key) => textOf(EXAMPLES[key]) === text);
   if (name) return `#example=${name}`;
+  return `#scenario=${await packedText(text)}`;
+}
+
+/** A text, deflated and in URL-safe base64. */
+export async function packedText(text: string): Promise<string> {
   const bytes = await through(new TextEncoder().encode(text), new CompressionStream('deflate-raw'));
   const binary = Array.from(bytes, (byte) => String.fromCharCode(byte)).join('');
-  return `#scenario=${btoa(binary).replace(/\+/g, '-').replace(/\//g, '_').replace(/=+$/, '')}`;
+  return btoa(binary).replace(/\+/g, '-').replace(/\//g, '_').replace(/=+$/, '');
+}
+
+/** The text that `packedText` packed. @throws Error where it is damaged */
+export async function unpackedText(packed: string): Promise<string> {
+  const binary = atob(packed.replace(/-/g, '+').replace(/_/g, '/'));
+  const bytes = Uint8Array.from(binary, (character) => character.charCodeAt(0));
+  return new TextDecoder('utf-8', { fatal: true }).decode(await through(bytes, new DecompressionStream('deflate-raw')));
+}
+
+/** The fields of an address: `#key=value&key&…`. */
+export function fieldsOf(hash: string): ReadonlyMap<string, string> {
+  const fields = hash
+    .replace(/^#/, '')
+    .split('&')
+    .filter((field) => field !== '');
+  return new Map(
+    fields.map((field) => {
+      const at = field.indexOf('=');
+      return at < 0 ? [field, ''] : [field.slice(0, at), decodeURIComponent(field.slice(at + 1))];
+    }),
+  );
+}
+
+/** A scenario's address with further fields. */
+export function withFields(link: string, fields: ReadonlyMap<string, string>): string {
+  return [link, ...[...fields].map(([key, value]) => `${key}=${encodeURIComponent(value)}`)].join('&');
 }
 
 /**
@@ -19,20 +51,18 @@ export async function linkOf(text: string): Promise<string> {
  * @throws Error where what it holds is damaged or names no example
  */
 export async function scenarioOfLink(hash: string): Promise<string | null> {
-  if (hash === '#results') return await scenarioOfResults();
-  const [, key, value] = /^#(example|scenario)=(.*)$/.exec(hash) ?? [];
-  if (key === undefined || value === undefined) return null;
-  if (key === 'example') {
-    if (!Object.hasOwn(EXAMPLES, value))
-      throw new Error(`The link names the example “${value}”; there are ${Object.keys(EXAMPLES).join(', ')}.`);
-    return textOf(EXAMPLES[value as ExampleName]);
+  const fields = fieldsOf(hash);
+  if (fields.has('results')) return await scenarioOfResults();
+  const example = fields.get('example');
+  if (example !== undefined) {
+    if (!Object.hasOwn(EXAMPLES, example))
+      throw new Error(`The link names the example “${example}”; there are ${Object.keys(EXAMPLES).join(', ')}.`);
+    return textOf(EXAMPLES[example as ExampleName]);
   }
+  const packed = fields.get('scenario');
+  if (packed === undefined) return null;
   try {
-    const binary = atob(value.replace(/-/g, '+').replace(/_/g, '/'));
-    const bytes = Uint8Array.from(binary, (character) => character.charCodeAt(0));
-    return new TextDecoder('utf-8', { fatal: true }).decode(
-      await through(bytes, new DecompressionStream('deflate-raw')),
-    );
+    return await unpackedText(packed);
   } catch {
     throw new Error(
       'The scenario in this link is damaged: it may have been cut off. Ask for the link or the file again.',

@@ -6,10 +6,11 @@ import { Charts } from './charts.ts';
 import { byId, h } from './dom.ts';
 import { acceptFiles } from './files.ts';
 import { listenToKeys } from './keys.ts';
-import { linkOf, scenarioOfLink } from './link.ts';
+import { fieldsOf, linkOf, scenarioOfLink, withFields } from './link.ts';
 import { nameObserver } from './naming.ts';
 import { notify } from './notice.ts';
 import { Panes } from './panes.ts';
+import { type Place, Places } from './places.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
 import { Side } from './side.ts';
@@ -36,10 +37,13 @@ const timeline = new Timeline(store);
 const charts = new Charts(store);
 const side = new Side(store);
 showVerdict(store, runner, () => side.show('text'));
-const { choose } = acceptFiles(store, side);
+/** The places beside Compare, in their order: each is loaded when it is first come to. */
+const PLACES: readonly Place[] = [];
+const places = new Places(PLACES, moved, (step) => void writeAddress(step));
+const { choose } = acceptFiles(store, side, places);
 buildActions();
 const saving = new Saving(store, runner, panes, charts);
-const { help } = listenToKeys({ store, runner, panes, timeline, side, saving, choose });
+const { help } = listenToKeys({ store, runner, panes, timeline, side, saving, places, choose });
 
 function buildActions(): void {
   const button = (name: string, title: string, run: () => void) =>
@@ -85,12 +89,14 @@ function showReading(reading: Reading | undefined): void {
 }
 
 const refresh = (now: number) => {
-  timeline.tick(now);
+  if (places.current === 'compare') timeline.tick(now);
   requestAnimationFrame(refresh);
 };
 requestAnimationFrame(refresh);
 
 let pending = 0;
+/** whether the scenario has changed since it was last run: it is run where it can be seen */
+let due = false;
 let address = '';
 store.on(['scenario'], () => {
   const { state } = store;
@@ -98,17 +104,40 @@ store.on(['scenario'], () => {
   const example = (Object.keys(EXAMPLES) as ExampleName[]).find((name) => textOf(EXAMPLES[name]) === state.text);
   byId<HTMLSelectElement>('examples').value = example ?? '';
   if (state.problems.length > 0) return;
-  void linkOf(state.text).then((hash) => {
-    address = hash;
-    history.replaceState(null, '', hash);
-  });
-  pending = setTimeout(() => runner.update(), state.run.status === 'idle' ? 0 : SETTLE) as unknown as number;
+  void writeAddress(false);
+  due = true;
+  pending = setTimeout(runWhereSeen, state.run.status === 'idle' ? 0 : SETTLE) as unknown as number;
 });
+
+function runWhereSeen(): void {
+  if (!due || places.current !== 'compare') return;
+  due = false;
+  runner.update();
+}
+
+function moved(): void {
+  clearTimeout(pending);
+  if (store.state.problems.length === 0) runWhereSeen();
+}
+
+/** @param step whether it is a step of the browser's history */
+async function writeAddress(step: boolean): Promise<void> {
+  const { text, problems } = store.state;
+  if (text === '' || problems.length > 0) return;
+  const hash = withFields(await linkOf(text), await places.fields());
+  if (hash === address) return;
+  address = hash;
+  if (step) history.pushState(null, '', hash);
+  else history.replaceState(null, '', hash);
+}
 
 async function openAddress(): Promise<void> {
   const fallback = textOf(EXAMPLES['bench-cable-pulse']);
+  const { hash } = location;
+  const fields = fieldsOf(hash);
+  places.go(fields.get('at') ?? 'compare', fields);
   try {
-    const text = await scenarioOfLink(location.hash);
+    const text = await scenarioOfLink(hash);
     if (text !== null || store.state.text === '') store.setText(text ?? fallback);
   } catch (error) {
     notify((error as Error).message, 'bad');
@@ -116,7 +145,9 @@ async function openAddress(): Promise<void> {
   }
 }
 window.addEventListener('hashchange', () => {
-  if (location.hash !== address) void openAddress();
+  if (location.hash === address) return;
+  address = location.hash;
+  void openAddress();
 });
 
 const examples = byId<HTMLSelectElement>('examples');
@@ -132,4 +163,4 @@ if (!canShareMemory())
 void openAddress();
 
 /** What scripts and tests may look at. */
-Object.assign(globalThis, { fieldassay: { store, panes } });
+Object.assign(globalThis, { fieldassay: { store, panes, places } });

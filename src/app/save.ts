@@ -44,7 +44,13 @@ export class Saving {
   private readonly menu = h('div', { className: 'menu', role: 'menu', id: 'save-menu', hidden: true });
   private readonly button = h(
     'button',
-    { type: 'button', 'aria-haspopup': 'menu', 'aria-expanded': 'false', 'aria-controls': 'save-menu' },
+    {
+      type: 'button',
+      className: 'compare-only',
+      'aria-haspopup': 'menu',
+      'aria-expanded': 'false',
+      'aria-controls': 'save-menu',
+    },
     'Save ▾',
   );
   private busy = false;

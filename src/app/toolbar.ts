@@ -13,6 +13,9 @@ const LAYOUTS = {
   ],
 } as const satisfies Record<View['layout'], readonly [string, string]>;
 
+/** Windows whose head has no room for the layouts beside the places: they stand in the row above the panes then. */
+const NARROW = '(max-width: 1180px)';
+
 /** The row above the panes: what is shown, from where, and how it is coloured. */
 export function buildToolbar(store: Store, panes: Panes): void {
   const layouts = Object.entries(LAYOUTS).map(([layout, [name, help]]) =>
@@ -22,7 +25,11 @@ export function buildToolbar(store: Store, panes: Panes): void {
       name,
     ),
   );
-  byId('views').append(...layouts);
+  const views = byId('views');
+  views.append(...layouts);
+  const narrow = matchMedia(NARROW);
+  const settle = () => (narrow.matches ? byId('toolbar').prepend(views) : byId('places').after(views));
+  narrow.addEventListener('change', settle);
 
   const quantity = h('select', {
     title:
@@ -85,6 +92,7 @@ export function buildToolbar(store: Store, panes: Panes): void {
     h('span', { className: 'group', role: 'group', 'aria-label': 'Look from' }, ...looks),
     projection,
   );
+  settle();
 
   const show = () => {
     const { view } = store.state;
