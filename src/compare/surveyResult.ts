@@ -151,6 +151,9 @@ export type SurveyResult = Omit<z.infer<typeof surveyResultSchema>, 'cases'> & {
   readonly cases: readonly CaseResult[];
 };
 
+/** The description of what one case came to. */
+export const outcomeJsonSchema = (): object => z.toJSONSchema(outcomeSchema);
+
 /** The published description of `survey-result.json` (JSON Schema 2020-12). */
 export const surveyResultJsonSchema = (): object => z.toJSONSchema(surveyResultSchema);
 

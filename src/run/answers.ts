@@ -65,6 +65,8 @@ export interface Asked {
   readonly places: Places;
   readonly box: GridProblem;
   readonly free: FreeSpacePlan | null;
+  /** bytes that one run may take */
+  readonly memoryLimit: number;
 }
 
 /** Asks both solvers, one run after another. */

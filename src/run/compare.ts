@@ -45,18 +45,18 @@ export async function compareSolvers(input: unknown, options: CompareOptions = {
 
 /**
  * What is asked of both solvers, where they are read, and how free space is marched.
+ * @param limit bytes that one run may take: with the same limit every machine marches free space the same way
  * @throws Refusal naming every problem of the scenario
  */
-export function prepareCase(json: unknown, fusedMultiplyAdd = false): Asked {
+export function prepareCase(json: unknown, fusedMultiplyAdd = false, limit = memoryLimit()): Asked {
   const loaded = loadScenario(json);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   if (fusedMultiplyAdd) refuseFused(loaded.scenario.grid.precision);
   const question = questionOf(loaded.scenario);
   const places = placesOf(question);
   const box = boxProblem(question, places.groups, fusedMultiplyAdd);
-  const limit = memoryLimit();
   refuseTooLarge(box, limit);
-  return { question, json, places, box, free: planFreeSpace(box, limit) };
+  return { question, json, places, box, free: planFreeSpace(box, limit), memoryLimit: limit };
 }
 
 /**

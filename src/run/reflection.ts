@@ -1,4 +1,3 @@
-import { memoryLimit } from '#platform';
 import { type Reflection, reflectionAt } from '../compare/reflection.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import { lastArrival } from '../scenario/distance.ts';
@@ -27,11 +26,14 @@ export interface ReflectionRuns {
 }
 
 /** Both runs in double precision; null where the one without walls does not fit. */
-export function planReflection({ question }: Pick<Asked, 'question'>, cells: Int32Array): ReflectionRuns | null {
+export function planReflection(
+  { question, memoryLimit }: Pick<Asked, 'question' | 'memoryLimit'>,
+  cells: Int32Array,
+): ReflectionRuns | null {
   const { scenario } = question;
   const double = { ...question, scenario: { ...scenario, grid: { ...scenario.grid, precision: 'double' as const } } };
   const box = boxProblem(double, [{ cell: cells, every: 1 }]);
-  const free = planReflectionFree(box, memoryLimit());
+  const free = planReflectionFree(box, memoryLimit);
   return free && { box, free };
 }
 

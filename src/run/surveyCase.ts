@@ -1,3 +1,4 @@
+import { memoryLimit } from '#platform';
 import type { Reflection } from '../compare/reflection.ts';
 import type { Outcome, ReflectionResult } from '../compare/surveyResult.ts';
 import { decibels } from '../elementary/elementary.ts';
@@ -13,10 +14,16 @@ import { measureAngles, measureReflection, type WallAngles } from './reflection.
 
 /**
  * One case of a survey: the comparison, and where asked what its walls send back.
+ * @param limit bytes that one run may take
  * @throws Refusal for a scenario with problems; Error where a worker died
  */
-export async function runCase(json: unknown, means: Means, withReflection: boolean): Promise<Outcome> {
-  const asked = prepareCase(json);
+export async function runCase(
+  json: unknown,
+  means: Means,
+  withReflection: boolean,
+  limit = memoryLimit(),
+): Promise<Outcome> {
+  const asked = prepareCase(json, false, limit);
   const { scenario, steps } = asked.question;
   const answers = await answer(asked, means);
   const { result } = conclude({ ...asked, answers, threads: means.gridThreads });
