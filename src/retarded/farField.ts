@@ -1,4 +1,4 @@
-import { atan2, cos, sin } from '../elementary/elementary.ts';
+import { atan2 } from '../elementary/elementary.ts';
 import { type ArcPiece, dot, type LinePiece } from '../scenario/curve.ts';
 import type { Dipole, Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
@@ -255,38 +255,4 @@ class FarArcView implements PieceView {
       .filter((s) => s > this.start && s < this.end)
       .sort((p, q) => p - q);
   }
-}
-
-/**
- * Total energy radiated, J: ∫dΩ ∫|rE|²/η dt′, by Gauss's rule in cos θ, the trapezoidal rule in φ and in t′ (spectrally
- * accurate for pulses that begin and end within `times`); the error is what a rule with two thirds of the directions
- * differs by.
- * @param times equidistant
- */
-export function radiatedEnergy(
-  sources: readonly Source[],
-  medium: Medium,
-  times: Float64Array,
-  polar = 12,
-): { value: number; error: number; evaluations: number } {
-  let evaluations = 0;
-  const energy = (count: number) => {
-    const { nodes, weights } = gaussLegendre(count);
-    const azimuths = 2 * count;
-    let sum = 0;
-    for (let p = 0; p < count; p++) {
-      const sine = Math.sqrt((1 - nodes[p]!) * (1 + nodes[p]!));
-      for (let m = 0; m < azimuths; m++) {
-        const phi = (2 * Math.PI * (m + 0.5)) / azimuths;
-        const far = farField(sources, medium, [sine * cos(phi), sine * sin(phi), nodes[p]!], times);
-        evaluations += far.evaluations;
-        let square = 0;
-        for (const v of far.values) square += v * v;
-        sum += (weights[p]! * ((2 * Math.PI) / azimuths) * square) / medium.impedance;
-      }
-    }
-    return sum * ((times.at(-1)! - times[0]!) / (times.length - 1));
-  };
-  const value = energy(polar);
-  return { value, error: Math.abs(value - energy(Math.ceil((2 * polar) / 3))), evaluations };
 }

@@ -9,6 +9,7 @@ import { viewOf } from './pieceView.ts';
 import { prepareSources } from './prepare.ts';
 import { gaussLegendre } from './quadrature.ts';
 import { WaveformSet } from './terms.ts';
+import { type Complex, type Drive, linesOf } from './waveformSpectrum.ts';
 
 /**
  * The field of prescribed currents by frequency, a route of its own beside retarded integrals. At the complex frequency p
@@ -155,32 +156,39 @@ export interface SteadyValue {
   readonly errorE: number;
   readonly errorH: number;
 }
-export type Complex = readonly [re: number, im: number];
 
 /**
- * The steady state at one frequency: every waveform is amplitude · e^(+jωt), its amplitude that of its specification, or
- * its peak where the specification has none.
+ * The field at one frequency, e^(+jωt): in the steady state, every waveform being amplitude · e^(+jωt), its amplitude that
+ * of its specification, or its peak where the specification has none; or, with drive `pulse`, the Fourier integral
+ * ∫ F e^(−jωt) dt of the field in time, in units of the field per hertz.
  * @throws (from what it returns) RangeError where the point lies on a source, or for a frequency that is not above 0,
  *   at which end charges would grow without bound
  */
 export function steadyField(
   sources: readonly Source[],
   medium: Medium,
+  drive: Drive = 'steady',
 ): (point: Vec3, frequency: number) => SteadyValue {
   const prepared = prepareSources(sources, medium, 'quadrature');
   const waveforms = new WaveformSet();
   const owners = sources.map((source) => waveforms.index(source.waveform));
-  const weights = waveforms.list.map(({ spec, peak }): Complex => ['amplitude' in spec ? spec.amplitude : peak, 0]);
+  const linesAt = linesOf(waveforms.list, drive);
   return (point, frequency) => {
     refuseOnSource(prepared, point);
     if (!(frequency > 0)) throw new RangeError(`frequency is ${frequency} Hz; a steady state needs one above 0.`);
     const omega = 2 * Math.PI * frequency;
+    const lines = linesAt(frequency);
+    const weights = lines.map(({ value }) => value);
+    const inexact = lines.reduce(
+      (worst, { value, error }) => (error > 0 ? Math.max(worst, error / length(value)) : worst),
+      0,
+    );
     const [fine, coarse] = [POINTS, FEWER_POINTS].map((points) => {
       const nodes = nodesAt(sources, owners, medium, point, 0, omega, points);
       const out = new Float64Array(WIDTH);
       sumNodes(nodes, medium, 0, omega, weights, new Rotors(nodes, { damping: 0, step: omega, lines: 1 }, 1), out);
       const latest = nodes.delay.reduce((most, delay) => Math.max(most, Math.abs(delay)), 0);
-      return { out, rounding: Number.EPSILON * (16 + 2 * omega * latest) };
+      return { out, rounding: inexact + Number.EPSILON * (16 + 2 * omega * latest) };
     }) as [{ out: Float64Array; rounding: number }, { out: Float64Array; rounding: number }];
     const { out, rounding } = fine;
     const pair = (c: number): Complex => [out[2 * c]!, out[2 * c + 1]!];

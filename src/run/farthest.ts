@@ -1,5 +1,6 @@
 import { percentile } from '../compare/bins.ts';
 import type { DirectionModel, FarthestModel } from '../compare/farthest.ts';
+import { evenDirections } from '../derived/sphere.ts';
 import { cos, sin } from '../elementary/elementary.ts';
 import { dispersionError, type FarField, farthestWithin } from '../lattice/farthest.ts';
 import type { Lattice } from '../lattice/lattice.ts';
@@ -19,7 +20,7 @@ export function farthestModel(question: Question): FarthestModel {
   const { scenario, timeStep } = question;
   const lattice: Lattice = { cellSize: scenario.grid.cellSize, timeStep, medium: scenario.medium };
   const named = namedDirections();
-  const sphere = fibonacciSphere(SPHERE);
+  const sphere = evenDirections(SPHERE);
   const spectrum = spectrumAlong(question);
   const fields = [...named.map(({ direction }) => direction), ...sphere].map(spectrum);
   const strength = fields.map(({ amplitude }) => Math.sqrt(amplitude.reduce((sum, x) => sum + x * x, 0)));
@@ -74,16 +75,6 @@ function namedDirections(): { name: string; direction: Vec3 }[] {
         list.push({ name: `along the diagonal (${signs})`, direction: [x * r, y * r, z * r] });
       }
   return list;
-}
-
-/** Nearly even directions: a golden-angle spiral (common practice, no source). */
-function fibonacciSphere(count: number): Vec3[] {
-  const golden = Math.PI * (3 - Math.sqrt(5));
-  return Array.from({ length: count }, (_, m) => {
-    const z = 1 - (2 * m + 1) / count;
-    const r = Math.sqrt(1 - z * z);
-    return [r * cos(golden * m), r * sin(golden * m), z] as Vec3;
-  });
 }
 
 /** |F(ω)| of the far field along a direction: a discrete Fourier sum over the window of the far field's pulse. */

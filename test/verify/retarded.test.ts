@@ -1,17 +1,16 @@
 import { uniformFloat64 } from 'pure-rand/distribution/uniformFloat64';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
 import { describe, expect, test } from 'vitest';
-import { cos, log, sin } from '../../src/elementary/elementary.ts';
+import { log } from '../../src/elementary/elementary.ts';
 import { gridSources } from '../../src/gridding/gridding.ts';
 import { centredRule, DelayGrid, ElementList, measureRule } from '../../src/retarded/delayGrid.ts';
-import { farField, radiatedEnergy } from '../../src/retarded/farField.ts';
+import { farField } from '../../src/retarded/farField.ts';
 import { type FieldValue, fieldAt, fieldOf } from '../../src/retarded/field.ts';
 import { griddedHistory } from '../../src/retarded/gridded.ts';
 import { historyOf } from '../../src/retarded/history.ts';
 import { prepareGridded, prepareSources } from '../../src/retarded/prepare.ts';
 import { gaussLegendre } from '../../src/retarded/quadrature.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
-import { makeWaveform } from '../../src/scenario/waveforms.ts';
 import { instantsOf, samplePoints } from '../../src/trace/trace.ts';
 import {
   centreFed,
@@ -275,114 +274,6 @@ describe('one current told in two ways', () => {
       expect(order).toBeGreaterThan(0.95);
       expect(order).toBeLessThan(1.05);
     }
-  });
-});
-
-/** Fourier integral of samples at one frequency, by the trapezoidal rule (spectrally accurate for pulses). */
-function lineOf(values: Float64Array | readonly number[], times: Float64Array, frequency: number): [number, number] {
-  const step = times[1]! - times[0]!;
-  let re = 0;
-  let im = 0;
-  values.forEach((v: number, n: number) => {
-    re += step * v * cos(2 * Math.PI * frequency * times[n]!);
-    im -= step * v * sin(2 * Math.PI * frequency * times[n]!);
-  });
-  return [re, im];
-}
-
-/** Radiation resistance and directivity at one frequency from the far field of a pulse; `current` is that at the terminals. */
-function radiation(
-  sources: readonly Source[],
-  times: Float64Array,
-  frequency: number,
-  current: Float64Array,
-  count = 10,
-) {
-  const { nodes, weights } = gaussLegendre(count);
-  let total = 0;
-  let most = 0;
-  const intensity = (n: Vec3) => {
-    const { values } = farField(sources, vacuum, n, times);
-    let sum = 0;
-    for (let a = 0; a < 3; a++) {
-      const [re, im] = lineOf(values.subarray(a * times.length, (a + 1) * times.length), times, frequency);
-      sum += re * re + im * im;
-    }
-    return sum / (2 * vacuum.impedance);
-  };
-  for (let p = 0; p < count; p++) {
-    const sine = Math.sqrt(1 - nodes[p]! ** 2);
-    for (let m = 0; m < 2 * count; m++) {
-      const phi = (Math.PI * (m + 0.5)) / count;
-      total += weights[p]! * (Math.PI / count) * intensity([sine * cos(phi), sine * sin(phi), nodes[p]!]);
-    }
-  }
-  for (const n of [
-    [1, 0, 0],
-    [0, 1, 0],
-    [0, 0, 1],
-    [0, 0, -1],
-  ] as const)
-    most = Math.max(most, intensity(n));
-  const [re, im] = lineOf(current, times, frequency);
-  return { resistance: (2 * total) / (re * re + im * im), directivity: (4 * Math.PI * most) / total };
-}
-
-describe('radiation (Balanis, Antenna Theory, 4th ed., chapters 4 and 5, from memory)', () => {
-  const frequency = 1e9;
-  const wavelength = speed / frequency;
-  // 1 GHz is at the peak of the spectrum of ω W.
-  const sigma = Math.SQRT2 / (2 * Math.PI * frequency);
-  const pulse = makeWaveform({ type: 'gaussianDerivative', amplitude: 1, sigma, delay: 9 * sigma });
-  const times = Float64Array.from({ length: 500 }, (_, m) => m * 0.02e-9 - 1e-9);
-  const drive = times.map((t) => pulse.value(t));
-
-  test('a short dipole: R = (2π/3) η (l/λ)² and D = 1.5', () => {
-    const l = wavelength / 50;
-    const { resistance, directivity } = radiation([dipole([0, 0, 0], [0, 0, 1], l, pulse)], times, frequency, drive);
-    expect(resistance / (((2 * Math.PI) / 3) * vacuum.impedance * (l / wavelength) ** 2)).toBeCloseTo(1, 10);
-    expect(directivity).toBeCloseTo(1.5, 10);
-  });
-
-  test('a small loop: R = (π/6) η (C/λ)⁴, with the square of its size as remainder', () => {
-    const ratios = [0.04, 0.02].map((part) => {
-      const radius = (part * wavelength) / (2 * Math.PI);
-      const { resistance } = radiation([loop([0, 0, 0], [0, 0, 1], radius, pulse)], times, frequency, drive, 6);
-      return resistance / ((Math.PI / 6) * vacuum.impedance * part ** 4) - 1;
-    });
-    console.table({ 'C/λ': [0.04, 0.02], 'R over formula − 1': ratios });
-    expect(Math.abs(ratios[1]!)).toBeLessThan(2e-4);
-    expect(ratios[0]! / ratios[1]!).toBeGreaterThan(3.8);
-    expect(ratios[0]! / ratios[1]!).toBeLessThan(4.2);
-  });
-
-  test('a half-wave dipole: R = η Cin(2π)/(4π) = 73.08 Ω and D = 4/Cin(2π) = 1.641', () => {
-    const arm = wavelength / 4;
-    const sources = centreFed([0, 0, 0], [0, 0, 1], arm, pulse);
-    // At the feed: the wave that leaves less the one that returns.
-    const current = times.map((t) => pulse.value(t) - pulse.value(t - (2 * arm) / speed));
-    const { resistance, directivity } = radiation(sources, times, frequency, current, 16);
-    // Cin(x) = Σ (−1)^(n+1) x^(2n) / (2n (2n)!)
-    let cin = 0;
-    let term = 1;
-    for (let n = 1; n < 40; n++) {
-      term *= (2 * Math.PI) ** 2 / ((2 * n - 1) * (2 * n));
-      cin += ((n % 2 === 1 ? 1 : -1) * term) / (2 * n);
-    }
-    console.log(`half-wave dipole: R = ${resistance} Ω, D = ${directivity}`);
-    expect(resistance / ((vacuum.impedance * cin) / (4 * Math.PI))).toBeCloseTo(1, 9);
-    expect(resistance).toBeCloseTo(73.08, 2);
-    expect(directivity / (4 / cin)).toBeCloseTo(1, 9);
-    expect(directivity).toBeCloseTo(1.641, 3);
-  });
-
-  test('energy of a short current element: η l²/(6πv²) ∫ İ² dt (Larmor), a Gaussian’s ∫ İ² being √π/(2σ) A²', () => {
-    const gaussian = makeWaveform({ type: 'gaussian', amplitude: 2, sigma, delay: 9 * sigma });
-    const l = 1e-3;
-    const { value, error } = radiatedEnergy([dipole([0.01, 0, 0], [0.6, 0, 0.8], l, gaussian)], vacuum, times, 6);
-    const exact = (vacuum.impedance * l * l * 4 * (Math.sqrt(Math.PI) / (2 * sigma))) / (6 * Math.PI * speed * speed);
-    expect(value / exact).toBeCloseTo(1, 10);
-    expect(error).toBeLessThan(1e-10 * exact);
   });
 });
 
