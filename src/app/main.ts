@@ -11,6 +11,7 @@ import { nameObserver } from './naming.ts';
 import { notify } from './notice.ts';
 import { Panes } from './panes.ts';
 import { type Place, Places } from './places.ts';
+import { Prediction } from './prediction.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
 import { Side } from './side.ts';
@@ -40,6 +41,7 @@ showVerdict(store, runner, () => side.show('text'));
 /** The places beside Compare, in their order: each is loaded when it is first come to. */
 const PLACES: readonly Place[] = [];
 const places = new Places(PLACES, moved, (step) => void writeAddress(step));
+const prediction = new Prediction(store);
 const { choose } = acceptFiles(store, side, places);
 buildActions();
 const saving = new Saving(store, runner, panes, charts);
@@ -163,4 +165,4 @@ if (!canShareMemory())
 void openAddress();
 
 /** What scripts and tests may look at. */
-Object.assign(globalThis, { fieldassay: { store, panes, places } });
+Object.assign(globalThis, { fieldassay: { store, panes, places, prediction } });

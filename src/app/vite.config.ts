@@ -17,6 +17,7 @@ export default defineConfig({
         coordinator: 'src/app/coordinator.ts',
         worker: 'src/run/worker.ts',
         encoder: 'src/app/encoder.ts',
+        predictor: 'src/app/predictor.ts',
       },
       output: {
         format: 'es',

@@ -54,24 +54,24 @@ export interface Found {
 }
 
 /** Limits of the prediction (src/lattice/): cells per shortest wavelength, cells from the source. */
-const FEWEST_CELLS = 4;
-const NEAREST_CELLS = 3;
+export const FEWEST_CELLS = 4;
+export const NEAREST_CELLS = 3;
 
 /** The same for a waveform with a kink: cells that its wave passes in its rise time, some 5 time steps. */
-const CELLS_PER_RISE = 3;
+export const CELLS_PER_RISE = 3;
 
 /** What predictions are allowed to be off: lattice and gridding, sharply resolved or coarsely, and with a kink; walls. */
 const ALLOWED = { sharp: 1.05, coarse: 1.15, kinked: 1.3, walls: 2 };
 const SHARP_CELLS = 8;
 
 /** Errors above this want the spectral form: the time form leaves out half of the error's square. */
-const MOST_FOR_TIME_FORM = 0.04;
+export const MOST_FOR_TIME_FORM = 0.04;
 
 /** Cells with absorber beyond which no plan is made. */
 const MOST_CELLS = 1e12;
 
 /** Responses of edges at sites, in the spectral form times lines, that one prediction may take: some 1.5 µs each. */
-const MOST_RESPONSES = 1e6;
+export const MOST_RESPONSES = 1e6;
 
 /** Round cell sizes tried below the first guess: down to a third of it or less. */
 const MOST_STEPS = 25;
@@ -81,9 +81,32 @@ const MOST_STEPS = 25;
  * boundary and clearance the largest cells that do are looked for among round ones of two digits; set-ups that cannot be
  * cheaper than the best so far are passed over.
  */
-export function searchPlan(scenario: Scenario, goal: Goal, frame: Frame): Found {
-  const search = new Search(scenario, goal, frame);
-  return search.run();
+export function searchPlan(scenario: Scenario, goal: Goal, frame: Frame, memory = new PlanMemory()): Found {
+  return new Search(scenario, goal, frame, memory).run();
+}
+
+/**
+ * Predictions that searches have made: kept, another search with the same scenario, places, band and box has them at
+ * once, whatever its tolerance and walls.
+ */
+export class PlanMemory {
+  readonly free = new Map<number, PlaceErrors[]>();
+  readonly rough = new Map<number, number>();
+  /** by cell size and clearance */
+  readonly walls = new Map<string, WallErrors[]>();
+}
+
+/** A set-up that was predicted on the way of a search. */
+export interface KnownSetup {
+  readonly setup: PlannedSetup;
+  readonly places: readonly PlannedPlace[];
+  /** the least tolerance for which a search takes it: its predicted error with what predictions are allowed to be off */
+  readonly meets: number;
+}
+
+/** Every set-up whose parts a memory holds, in no order: what is known so far of error against work. */
+export function knownSetups(scenario: Scenario, goal: Goal, frame: Frame, memory: PlanMemory): KnownSetup[] {
+  return new Search(scenario, goal, frame, memory).known();
 }
 
 class Search {
@@ -91,15 +114,19 @@ class Search {
   readonly #kinked: boolean;
   readonly #coarsest: number;
   readonly #limit: string;
-  readonly #free = new Map<number, PlaceErrors[]>();
-  readonly #rough = new Map<number, number>();
-  readonly #walls = new Map<string, WallErrors[]>();
+  readonly #free: PlanMemory['free'];
+  readonly #rough: PlanMemory['rough'];
+  readonly #walls: PlanMemory['walls'];
 
   constructor(
     readonly scenario: Scenario,
     readonly goal: Goal,
     readonly frame: Frame,
+    memory: PlanMemory,
   ) {
+    this.#free = memory.free;
+    this.#rough = memory.rough;
+    this.#walls = memory.walls;
     this.#base = Math.max(...scenario.grid.cellSize);
     this.#kinked = scenario.sources.some(({ waveform }) => waveform.expectedOrder.order < 2);
     const { wavelength } = shortestWavelength(scenario);
@@ -151,6 +178,20 @@ class Search {
           ? [`Coarser cells were not tried: predictions hold from ${this.#limit} on.`]
           : [],
     };
+  }
+
+  known(): KnownSetup[] {
+    const pairs = [...this.#walls.keys()].map((key) => key.split(' ').map(Number) as [number, number]);
+    return pairs.flatMap(([size, clearance]) =>
+      this.#free.has(size)
+        ? this.frame.walls.map((wall) => {
+            const setup = this.#setup(size, wall, clearance);
+            const walls = ALLOWED.walls * this.#boundaryError(size, wall, clearance);
+            const meets = this.#allowance(size) * this.#freeError(size) + walls;
+            return { setup, places: this.#places(setup), meets };
+          })
+        : [],
+    );
   }
 
   /** The best that there is where nothing meets the goal: the finest cells tried, behind the best walls. */
@@ -340,7 +381,7 @@ const DEAREST = 30;
 const NEXT = 1.1;
 
 /** Errors of two parts whose signs towards each other are unknown, added: the largest over places and bands. */
-const totalOf = (free: ErrorList, boundary: ErrorList): number =>
+export const totalOf = (free: ErrorList, boundary: ErrorList): number =>
   free.reduce((most, e, m) => Math.max(most, e + boundary[m]!), 0);
 
 const largestOf = (lists: readonly ErrorList[]): number => Math.max(...lists.map((list) => Math.max(...list)));

@@ -57,8 +57,8 @@ function frameOf({ grid }: Scenario): Frame {
   };
 }
 
-/** The walls where all are alike, as far as predictions tell them apart. */
-function ownWall({ grid }: Pick<Scenario, 'grid'>): Wall | null {
+/** The walls where all are alike, as far as predictions tell them apart; null where they are not. */
+export function ownWall({ grid }: Pick<Scenario, 'grid'>): Wall | null {
   const walls = FACES.map((face) => grid.boundary[face]);
   const first = walls[0]!;
   if (walls.some((wall) => JSON.stringify(wall) !== JSON.stringify(first))) return null;
