@@ -4,12 +4,15 @@ import { Command, CommanderError, InvalidArgumentError, Option } from 'commander
 import { threadsAvailable } from '#platform';
 import { withinTolerance } from '../compare/result.ts';
 import type { SurveyResult } from '../compare/surveyResult.ts';
-import { RESULT_FILES, resultFile } from '../report/folder.ts';
+import { writeTracesNpz } from '../files/npz.ts';
+import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
 import { surveyFiles } from '../report/surveyFolder.ts';
 import { surveyText } from '../report/surveyText.ts';
 import { resultText } from '../report/text.ts';
 import { type Comparison, compareSolvers, Refusal, withTeam } from '../run/compare.ts';
+import type { Team } from '../run/pool.ts';
+import type { Progress } from '../run/progress.ts';
 import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
@@ -22,6 +25,7 @@ import { quoted, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
 import { servePage } from './serve.ts';
+import { SNAPSHOT_FORMATS, SNAPSHOT_REGIONS, type SnapshotOptions, writeSnapshots } from './snapshots.ts';
 import { type SurveyFlags, surveyCommand } from './survey.ts';
 
 /** Exit statuses: 0 done and within tolerance, 1 done and outside it, 2 the input was refused, 3 something failed. */
@@ -70,12 +74,16 @@ class Interrupted extends Error {
   }
 }
 
-function threadCount(text: string): number {
-  const n = Number(text);
-  if (!Number.isInteger(n) || n < 1 || n > 64)
-    throw new InvalidArgumentError(`it is “${text}”; give a whole number from 1 to 64.`);
-  return n;
-}
+const wholeNumber =
+  (least: number, most: number) =>
+  (text: string): number => {
+    const n = Number(text);
+    if (text.trim() === '' || !Number.isInteger(n) || n < least || n > most)
+      throw new InvalidArgumentError(`it is “${text}”; give a whole number from ${least} to ${most}.`);
+    return n;
+  };
+
+const threadCount = wholeNumber(1, 64);
 
 function portNumber(text: string): number {
   const n = Number(text);
@@ -103,28 +111,39 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       '--frames <dir>',
       'write pictures of grid, exact field and difference into this folder: PNG files and a film',
     )
+    .option('--npz', 'with --out: the traces as NumPy arrays too, traces.npz')
+    .option('--charts', 'with --out: the charts of the report as SVG files too, in charts/')
+    .addOption(
+      new Option('--snapshots <format>', 'with --out: both fields over time, for other programs').choices(
+        SNAPSHOT_FORMATS,
+      ),
+    )
+    .addOption(new Option('--region <region>', 'with --snapshots: where').choices(SNAPSHOT_REGIONS).default('planes'))
+    .option('--instants <n>', 'with --snapshots: how many, evenly over the run', wholeNumber(1, 10_000), 24)
+    .option(
+      '--stride <n>',
+      'with --snapshots: every n-th cell (default: as many as make handy files)',
+      wholeNumber(1, 1000),
+    )
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
     .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
     .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
     .option('--port <n>', 'with --serve: the port', portNumber, 0)
-    .addHelpText('after', '\nExample: fieldassay compare bench-cable-pulse --out out\n')
+    .addHelpText(
+      'after',
+      '\nExample: fieldassay compare bench-cable-pulse --out out' +
+        '\nExample: fieldassay compare small-loop --out loop --snapshots hdf5 --region box --instants 8 --stride 4\n',
+    )
     .action(async (name: string, options: CompareFlags) => {
+      requireOut(options);
       const comparison = await compared(name, options, signal);
       const { result } = comparison;
-      const frames = options.frames ? await framesFor(result.scenario, options, signal) : {};
-      if (options.frames) writeFolder(options.frames, frames);
-      if (options.out) writeFolder(options.out, filesOf(comparison, commandLine(name, options)));
+      const written = await writeAll(comparison, name, options, signal);
       if (options.json) process.stdout.write(resultJson(result));
       else
         process.stdout.write(
-          resultText(result, {
-            colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
-            written: [
-              ...(options.out ? RESULT_FILES.map((file) => `${options.out}/${file}`) : []),
-              ...(options.frames ? [`${Object.keys(frames).length} pictures in ${options.frames}`] : []),
-            ],
-          }),
+          resultText(result, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
         );
       end(withinTolerance(result) ? DONE : OUTSIDE);
       if (options.serve && options.out)
@@ -253,6 +272,12 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 interface CompareFlags {
   readonly out?: string;
   readonly frames?: string;
+  readonly npz?: boolean;
+  readonly charts?: boolean;
+  readonly snapshots?: SnapshotOptions['format'];
+  readonly region: SnapshotOptions['region'];
+  readonly instants: number;
+  readonly stride?: number;
   readonly json?: boolean;
   readonly threads?: number;
   readonly fused?: boolean;
@@ -260,8 +285,52 @@ interface CompareFlags {
   readonly port: number;
 }
 
+/** Options that say what to put into a folder need one. */
+function requireOut(options: CompareFlags): void {
+  if (options.out) return;
+  if (options.serve) throw new InputError('--serve needs --out: the folder that is to be served');
+  for (const name of ['npz', 'charts', 'snapshots'] as const)
+    if (options[name]) throw new InputError(`--${name} needs --out: the folder to write into`);
+}
+
+/** Writes what was asked for; what and where, for a person. */
+async function writeAll(
+  comparison: Comparison,
+  name: string,
+  options: CompareFlags,
+  signal: AbortSignal,
+): Promise<string[]> {
+  const { out, frames: folder, snapshots: format } = options;
+  const { scenario } = comparison.result;
+  const written: string[] = [];
+  // All pictures are there before any file is written.
+  const frames = folder ? await inTeam(options, signal, (team, show) => frameFiles(team, scenario, show)) : {};
+  if (out) {
+    const files = {
+      ...filesOf(comparison, commandLine(name, options)),
+      ...(options.npz ? { 'traces.npz': writeTracesNpz(tracesOf(comparison)) } : {}),
+    };
+    writeFolder(out, files);
+    written.push(...Object.keys(files).map((file) => `${out}/${file}`));
+  }
+  if (out && options.charts) {
+    const charts = chartFiles(comparison);
+    writeFolder(join(out, 'charts'), charts);
+    written.push(`${Object.keys(charts).length} charts in ${join(out, 'charts')}`);
+  }
+  if (folder) {
+    writeFolder(folder, frames);
+    written.push(`${Object.keys(frames).length} pictures in ${folder}`);
+  }
+  if (out && format) {
+    const { region, instants, stride } = options;
+    const asked = { format, region, instants, ...(stride ? { stride } : {}) };
+    written.push(await inTeam(options, signal, (team, show) => writeSnapshots(out, team, scenario, asked, show)));
+  }
+  return written;
+}
+
 async function compared(name: string, options: CompareFlags, signal: AbortSignal): Promise<Comparison> {
-  if (options.serve && !options.out) throw new InputError('--serve needs --out: the folder that is to be served');
   const line = progressLine(false);
   try {
     return await compareSolvers(readScenario(name), {
@@ -275,14 +344,15 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
   }
 }
 
-async function framesFor(
-  scenario: unknown,
+/** Does a job with a team of its own, showing how far it is. */
+async function inTeam<T>(
   { threads = threadsAvailable() }: CompareFlags,
   signal: AbortSignal,
-): Promise<Record<string, Uint8Array>> {
+  job: (team: Team, show: (progress: Progress) => void) => Promise<T>,
+): Promise<T> {
   const line = progressLine(false);
   try {
-    return await withTeam(threads, signal, (team) => frameFiles(team, scenario, line.show));
+    return await withTeam(threads, signal, (team) => job(team, line.show));
   } finally {
     line.end();
   }

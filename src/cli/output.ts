@@ -12,9 +12,13 @@ export function writeWhole(path: string, content: string | Uint8Array): void {
     renameSync(temporary, path);
   } catch (error) {
     rmSync(temporary, { force: true });
-    throw new Error(`${path} could not be written: ${reasonOf(error)}; choose another place for it`);
+    throw unwritable(path, error);
   }
 }
+
+/** The error of a file that cannot be written, which it names. */
+export const unwritable = (path: string, error: unknown): Error =>
+  new Error(`${path} could not be written: ${reasonOf(error)}; choose another place for it`);
 
 /** Writes several files into a folder, which is made where it is missing. */
 export function writeFolder(folder: string, files: Readonly<Record<string, string | Uint8Array>>): void {
@@ -33,6 +37,8 @@ const REASONS: Readonly<Record<string, string>> = {
   EROFS: 'the file system is read-only',
   ENOSPC: 'the disk is full',
   EISDIR: 'it is a folder',
+  EFBIG: 'it is larger than a file may be here',
+  EDQUOT: 'the quota is used up',
   ENOTDIR: 'a part of the path is not a folder',
   EEXIST: 'a file of that name is in the way',
 };

@@ -1,11 +1,12 @@
 import type { ErrorBin } from '../compare/bins.ts';
 import { PARTS } from '../compare/budget.ts';
-import { FIELD_UNIT, type Field } from '../compare/fields.ts';
+import { FIELD_UNIT, FIELDS, type Field } from '../compare/fields.ts';
 import type { ObserverResult, Result } from '../compare/result.ts';
 import type { Spectra } from '../compare/spectrum.ts';
 import { decibels } from '../elementary/elementary.ts';
 import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import type { ObserverTrace } from '../files/traces.ts';
+import type { ObserverSpectra } from './report.ts';
 import type { Chart, Mark, Series } from './svg.ts';
 
 type Point = readonly [number, number];
@@ -203,4 +204,37 @@ export function strongestTrace(
   const own = traces.filter(({ observer: name, component }) => name === observer.name && component.startsWith(field));
   const strength = ({ signals }: ObserverTrace) => signals.exact?.reduce((sum, v) => sum + v * v, 0) ?? 0;
   return own.reduce<ObserverTrace | undefined>((a, b) => (a && strength(a) >= strength(b) ? a : b), undefined);
+}
+
+/** A chart with the name that its file has. */
+export interface NamedChart {
+  readonly file: string;
+  readonly chart: Chart;
+}
+
+const named = (file: string, chart: Chart | null): NamedChart[] => (chart ? [{ file, chart }] : []);
+
+/** The charts of the box: how near to the source, how near to the walls. */
+export const boxCharts = (result: Result): NamedChart[] => [
+  ...named('error-by-distance', distanceChart(result)),
+  ...named('error-by-wall', wallChart(result)),
+];
+
+/** The charts of an observer: for each field its trace and what the difference is made of; then the two spectra. */
+export function observerCharts(
+  observer: ObserverResult,
+  traces: readonly ObserverTrace[],
+  spectra: readonly ObserverSpectra[],
+): NamedChart[] {
+  return [
+    ...FIELDS.flatMap((field) => {
+      const trace = strongestTrace(observer, field, traces);
+      return trace
+        ? [...named(`${field}-trace`, traceChart(trace)), ...named(`${field}-parts`, partsChart(trace))]
+        : [];
+    }),
+    ...spectra
+      .filter(({ observer: name }) => name === observer.name)
+      .flatMap(({ field, spectra: own }) => named(`${field}-spectrum`, spectrumChart(observer, field, own))),
+  ];
 }

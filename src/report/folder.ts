@@ -1,10 +1,13 @@
 import { type Histories, partSignals } from '../compare/budget.ts';
 import type { Result } from '../compare/result.ts';
 import { type ObserverTrace, observerTraces, writeTraces } from '../files/traces.ts';
+import { fileWords } from '../files/words.ts';
 import type { FieldHistory } from '../trace/trace.ts';
+import { boxCharts, observerCharts } from './charts.ts';
 import { reportHtml } from './html.ts';
 import { resultJson } from './json.ts';
 import type { ObserverSpectra } from './report.ts';
+import { chartFile } from './svg.ts';
 
 /** What a comparison left: its result and the signals behind it. */
 export interface Findings {
@@ -42,4 +45,17 @@ export function resultFile(file: ResultFile, findings: Findings, command: string
   if (file === 'result.json') return resultJson(result);
   const traces = tracesOf(findings);
   return file === 'traces.csv' ? writeTraces(traces) : reportHtml({ result, traces, spectra, command });
+}
+
+/** The charts of the report as files of their own: `error-by-distance.svg`, and after each observer's name its own. */
+export function chartFiles(findings: Findings): Record<string, string> {
+  const { result, spectra } = findings;
+  const traces = tracesOf(findings);
+  const words = fileWords(result.observers.map(({ name }) => name));
+  return Object.fromEntries([
+    ...boxCharts(result).map(({ file, chart }) => [`${file}.svg`, chartFile(chart)]),
+    ...result.observers.flatMap((observer, n) =>
+      observerCharts(observer, traces, spectra).map(({ file, chart }) => [`${words[n]}-${file}.svg`, chartFile(chart)]),
+    ),
+  ]);
 }

@@ -1,12 +1,11 @@
-import { FIELDS } from '../compare/fields.ts';
 import { type ObserverResult, type Result, withinTolerance } from '../compare/result.ts';
 import { formatPercent, formatQuantity, formatUpperBound } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
-import { distanceChart, partsChart, spectrumChart, strongestTrace, traceChart, wallChart } from './charts.ts';
+import { boxCharts, type NamedChart, observerCharts } from './charts.ts';
 import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
 import type { Report } from './report.ts';
-import { type Chart, chartSvg } from './svg.ts';
+import { chartSvg } from './svg.ts';
 import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
 
 /** `report.html`. */
@@ -23,9 +22,9 @@ ${verdict.remedy ? markup`<p>${verdict.remedy.sentence}</p>` : null}
 ${verdict.details.map((detail) => markup`<p>${detail}</p>`)}
 ${result.checks.map(({ status, sentence }) => markup`<p${status === 'differs' ? markup` class="outside"` : null}>${sentence}</p>`)}
 ${budgetSection(result)}
-${section('How far, and how near', [distanceChart(result), wallChart(result)])}
+${section('How far, and how near', boxCharts(result))}
 ${observersSection(result)}
-${result.observers.map((observer) => observerCharts(observer, { result, traces, spectra, command }))}
+${result.observers.map((observer) => chartsSection(observer, { result, traces, spectra, command }))}
 ${normsSection(result)}
 ${runSection(result)}
 ${DEFINITIONS}
@@ -33,13 +32,11 @@ ${repeatSection(result, command)}`,
   );
 }
 
-function section(title: string, charts: readonly (Chart | null)[]): Markup | null {
-  const shown = charts.filter((chart) => chart !== null);
-  return shown.length === 0 ? null : markup`<h2>${title}</h2>${figures(shown)}`;
-}
+const section = (title: string, charts: readonly NamedChart[]): Markup | null =>
+  charts.length === 0 ? null : markup`<h2>${title}</h2>${figures(charts)}`;
 
-const figures = (charts: readonly Chart[]): Markup =>
-  markup`<div class="charts">${charts.map((chart) => markup`<figure>${chartSvg(chart)}</figure>`)}</div>`;
+const figures = (charts: readonly NamedChart[]): Markup =>
+  markup`<div class="charts">${charts.map(({ chart }) => markup`<figure>${chartSvg(chart)}</figure>`)}</div>`;
 
 function budgetSection(result: Result): Markup {
   const rows = budgetRows(result.budget);
@@ -97,16 +94,8 @@ function observerRow({ name, E, H, snapped, distance, extrapolated }: ObserverRe
   return markup`<tr>${head}${error(E.relativeL2)}${error(H.relativeL2)}${cells.map((c) => markup`<td class="number">${c}</td>`)}<td class="muted">${place}${status}</td></tr>`;
 }
 
-/** For each field its trace and what the difference is made of; then the two spectra. */
-function observerCharts(observer: ObserverResult, { traces, spectra }: Report): Markup | null {
-  const inTime = FIELDS.flatMap((field) => {
-    const trace = strongestTrace(observer, field, traces);
-    return trace ? [traceChart(trace), partsChart(trace)] : [];
-  });
-  const byFrequency = spectra
-    .filter(({ observer: name }) => name === observer.name)
-    .map(({ field, spectra: own }) => spectrumChart(observer, field, own));
-  const charts = [...inTime, ...byFrequency].filter((chart) => chart !== null);
+function chartsSection(observer: ObserverResult, { traces, spectra }: Report): Markup | null {
+  const charts = observerCharts(observer, traces, spectra);
   return charts.length === 0 ? null : markup`<h3>Observer <bdi>${observer.name}</bdi></h3>${figures(charts)}`;
 }
 

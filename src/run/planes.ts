@@ -41,18 +41,24 @@ const MOST_SAMPLES = 100;
 const FRAMES = 100;
 
 /** In cells. Nearer to a source than this a site's field is the source's own infinity. */
-const ON_SOURCE = 0.3;
+export const ON_SOURCE = 0.3;
 
 /** Components that are staggered along an axis, ascending. */
 export function staggeredAlong(axis: Axis): number[] {
   return [0, 1, 2, 3, 4, 5].filter((c) => STAGGER[c]![axis] > 0);
 }
 
+/** The layer of nodes nearest to a plane that has a layer of cells above and one below. */
+export function layerOf({ box, cells, cellSize }: Scenario['grid'], { normal, at }: Plane): number {
+  return Math.min(Math.max(Math.round((at - box.from[normal]) / cellSize[normal]), 1), cells[normal] - 1);
+}
+
 /** The slice that shows a plane of the scenario. */
-export function sliceOf({ grid, sources }: Scenario, { name, normal, at }: Plane): Slice {
+export function sliceOf({ grid, sources }: Scenario, plane: Plane): Slice {
   const { cells, cellSize, box } = grid;
+  const { name, normal } = plane;
   const [u, v] = ([0, 1, 2] as Axis[]).filter((a) => a !== normal) as [Axis, Axis];
-  const layer = Math.min(Math.max(Math.round((at - box.from[normal]) / cellSize[normal]), 1), cells[normal] - 1);
+  const layer = layerOf(grid, plane);
   const stride = Math.ceil(Math.max(cells[u], cells[v]) / MOST_SAMPLES);
   const nu = Math.ceil(cells[u] / stride);
   const nv = Math.ceil(cells[v] / stride);
