@@ -6,12 +6,13 @@
   sineCosine       [x, Si(x), Cin(x)]               scipy.special.sici; Cin(x) = ln x + gamma - Ci(x)
   bessel           [x, J_0(x), J_1(x)]              scipy.special.jv
   fullWave         directivity of a full-wave dipole: 4 max U / int U dOmega of (cos(pi cos t) + 1)^2/sin^2 t
+  mutual           [a, b, d, M]  inductance of two coaxial circles (Maxwell): mu0 sqrt(ab) [(2/k - k) K - (2/k) E], H
   besselLoop       [x, int_0^pi J_1(x sin t)^2 sin t dt]   what a loop of circumference x wavelengths radiates
 """
 import json
 import numpy as np
 from scipy.integrate import quad
-from scipy.special import jv, sici, spherical_jn
+from scipy.special import ellipe, ellipk, jv, sici, spherical_jn
 
 tables = {"sphericalBessel": [], "sineCosine": [], "bessel": [], "besselLoop": []}
 for x in [1e-9, 1e-3, 0.05, 0.0999, 0.1001, 0.7, 1, np.pi, 5.5, 2 * np.pi, 12, 15, 15.1, 16.3, 40, 1234.5]:
@@ -23,6 +24,12 @@ for x in [0.1, 0.5, 1, 2, 5, 10]:
     tables["bessel"].append([x, float(jv(0, x)), float(jv(1, x))])
     value = quad(lambda t: jv(1, x * np.sin(t)) ** 2 * np.sin(t), 0, np.pi, epsabs=1e-15, epsrel=1e-13)[0]
     tables["besselLoop"].append([x, float(value)])
+tables["mutual"] = []
+for a, b, d in [(2e-3, 3e-3, 4e-3), (2e-3, 3e-3, 4e-2), (0.05, 0.03, 0.01)]:
+    m = 4 * a * b / ((a + b) ** 2 + d * d)
+    k = np.sqrt(m)
+    mutual = 1.25663706127e-6 * np.sqrt(a * b) * ((2 / k - k) * ellipk(m) - 2 / k * ellipe(m))
+    tables["mutual"].append([a, b, d, float(mutual)])
 
 
 def full_wave(t):
