@@ -8,8 +8,11 @@ import type { Store } from './store.ts';
 
 const NAMESPACE = 'http://www.w3.org/2000/svg';
 
+/** How far from a dot a click is still one on it, CSS pixels. */
+const REACH = 14;
+
 /** A chart on the page: the report's drawing, with a line at the instant shown and a reading under the pointer. */
-class LiveChart {
+export class LiveChart {
   readonly figure = h('figure', {});
   private readonly tip = h('div', { className: 'tip', hidden: true });
   private chart: Chart | null = null;
@@ -21,12 +24,16 @@ class LiveChart {
     /** what is shown in its place until there is something to draw */
     private readonly empty: string,
     private readonly onTime?: (time: number) => void,
+    /** told of a dot that was clicked: what it stands for */
+    private readonly onKey?: (key: string) => void,
   ) {
     this.figure.addEventListener('pointermove', (event) => this.read(event));
     this.figure.addEventListener('pointerleave', () => this.unread());
     this.figure.addEventListener('click', (event) => {
       const x = this.valueAt(event.clientX);
       if (x !== undefined) this.onTime?.(x);
+      const key = this.onKey && this.keyAt(event);
+      if (key !== undefined) this.onKey!(key);
     });
     this.draw(null);
   }
@@ -73,6 +80,16 @@ class LiveChart {
     const share = (pixel - left) / (right - left);
     const [from, to] = this.chart.x.domain;
     return this.chart.x.scale === 'log' ? from * (to / from) ** share : from + (to - from) * share;
+  }
+
+  /** What the nearest dot within reach stands for. */
+  private keyAt({ clientX, clientY }: MouseEvent): string | undefined {
+    const dots = [...this.figure.querySelectorAll<SVGElement>('[data-key]')].map((dot) => {
+      const { left, top, width, height } = dot.getBoundingClientRect();
+      return { dot, off: Math.hypot(left + width / 2 - clientX, top + height / 2 - clientY) };
+    });
+    const nearest = dots.reduce((a, b) => (b.off < a.off ? b : a), { dot: null as SVGElement | null, off: REACH });
+    return nearest.dot?.dataset.key;
   }
 
   /** The values of every line nearest to the pointer, with units. */

@@ -39,7 +39,14 @@ const charts = new Charts(store);
 const side = new Side(store);
 showVerdict(store, runner, () => side.show('text'));
 /** The places beside Compare, in their order: each is loaded when it is first come to. */
-const PLACES: readonly Place[] = [];
+const PLACES: readonly Place[] = [
+  {
+    key: 'ladders',
+    name: 'Ladders & walls',
+    help: 'Many cases at once: how the error falls with the cells, and what walls send back',
+    start: async (host, places) => (await import('./ladders/ladders.ts')).ladders(host, store, places),
+  },
+];
 const places = new Places(PLACES, moved, (step) => void writeAddress(step));
 const prediction = new Prediction(store);
 const { choose } = acceptFiles(store, side, places);

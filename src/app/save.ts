@@ -10,7 +10,7 @@ import { beside, type Runner } from './runner.ts';
 import type { Store } from './store.ts';
 
 /** A file's name from the scenario's title. */
-function nameOf(store: Store): string {
+export function nameOf(store: Store): string {
   const title = (store.state.json as { title?: unknown } | undefined)?.title;
   const slug = String(title ?? '')
     .toLowerCase()
@@ -20,13 +20,13 @@ function nameOf(store: Store): string {
 }
 
 /** Hands a file to the browser's downloads. */
-function download(name: string, content: Blob): void {
+export function download(name: string, content: Blob): void {
   const url = URL.createObjectURL(content);
   h('a', { href: url, download: name }).click();
   setTimeout(() => URL.revokeObjectURL(url), 60_000);
 }
 
-const textBlob = (text: string, type: string) => new Blob([text], { type: `${type};charset=utf-8` });
+export const textBlob = (text: string, type: string) => new Blob([text], { type: `${type};charset=utf-8` });
 
 const asBlob = (canvas: HTMLCanvasElement) =>
   new Promise<Blob>((resolve, reject) =>

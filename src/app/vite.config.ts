@@ -18,6 +18,7 @@ export default defineConfig({
         worker: 'src/run/worker.ts',
         encoder: 'src/app/encoder.ts',
         predictor: 'src/app/predictor.ts',
+        survey: 'src/app/ladders/coordinator.ts',
       },
       output: {
         format: 'es',

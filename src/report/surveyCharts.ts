@@ -30,6 +30,12 @@ function logDomain(values: readonly number[], room: number): [number, number] {
 const pairs = (x: readonly number[], y: readonly (number | null)[]): Point[] =>
   x.flatMap((v, n) => (y[n] !== null && y[n]! > 0 ? [[v, y[n]!] as const] : []));
 
+/** The same with the indices of the cases that the points stand for. */
+const casePairs = (x: readonly number[], y: readonly (number | null)[], cases: readonly number[]) => ({
+  points: pairs(x, y),
+  keys: cases.filter((_, n) => y[n] !== null && y[n]! > 0).map(String),
+});
+
 /** Errors, total and parts, against cell size; a slope for comparison; what the grid convergence index would have said. */
 export function ladderChart(ladder: LadderResult, tolerance: number | null): Chart | null {
   const { sizes, errors, parts, gci, expectedOrder } = ladder;
@@ -56,7 +62,7 @@ export function ladderChart(ladder: LadderResult, tolerance: number | null): Cha
     {
       name: 'total',
       colour: 'ink',
-      points: total,
+      ...casePairs(sizes, errors, ladder.cases),
       dots: ([, e]) => (tolerance !== null && e > tolerance ? 'outside' : 'within'),
     },
   ];
@@ -96,15 +102,15 @@ const named = (settings: CaseResult['settings']): string => {
 
 /** Total errors of all ladders in one. */
 export function laddersChart({ ladders }: SurveyResult, tolerance: number | null): Chart | null {
-  const series = ladders.slice(0, MOST_CHOICES).flatMap(({ settings, sizes, errors }, n): Series[] => {
-    const points = pairs(sizes, errors);
-    return points.length < 2
+  const series = ladders.slice(0, MOST_CHOICES).flatMap(({ settings, sizes, errors, cases }, n): Series[] => {
+    const own = casePairs(sizes, errors, cases);
+    return own.points.length < 2
       ? []
       : [
           {
             name: caseName(settings),
             colour: choiceColour(n),
-            points,
+            ...own,
             dots: ([, e]) => (tolerance !== null && e > tolerance ? 'outside' : 'within'),
           },
         ];
@@ -273,14 +279,20 @@ function choiceName(each: CaseResult & Outcome, { vary }: Pick<SurveyResult, 'va
 
 /** Total error against what it costs; the line joins what nothing beats. */
 export function costChart(result: SurveyResult, tolerance: number | null): Chart | null {
-  const points = result.cases.flatMap((each) =>
+  const points = result.cases.flatMap((each, n) =>
     isDone(each) && each.budget.total.relativeL2
-      ? [{ at: [each.cost.cellUpdates, each.budget.total.relativeL2] as const, each }]
+      ? [{ at: [each.cost.cellUpdates, each.budget.total.relativeL2] as const, each, key: String(n) }]
       : [],
   );
   if (points.length < 2) return null;
-  const front = frontCases(result).map(({ cost, budget }) => [cost.cellUpdates, budget.total.relativeL2!] as const);
-  const onFront = new Set(frontCases(result));
+  const drawn = (list: typeof points) => ({
+    points: list.map(({ at }) => at),
+    keys: list.map(({ key }) => key),
+    dots: () => 'within' as const,
+  });
+  const best = frontCases(result);
+  const front = best.flatMap((each) => points.filter((point) => point.each === each));
+  const beaten = points.filter(({ each }) => !best.includes(each));
   const errors = [...points.map(({ at }) => at[1]), ...(tolerance === null ? [] : [tolerance])];
   return {
     title: 'Error against cost',
@@ -303,14 +315,13 @@ export function costChart(result: SurveyResult, tolerance: number | null): Chart
       format: (v) => formatPercent(v),
     },
     series: [
-      { name: 'no other is better and cheaper', colour: 'ink', points: front, dots: () => 'within' },
+      { name: 'no other is better and cheaper', colour: 'ink', ...drawn(front) },
       {
         name: 'beaten by another',
         colour: 'muted',
         thin: true,
         scatter: true,
-        points: points.filter(({ each }) => !onFront.has(each)).map(({ at }) => at),
-        dots: () => 'within',
+        ...drawn(beaten),
       },
     ],
     marks: tolerance === null ? [] : [{ axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` }],
@@ -325,14 +336,22 @@ export function clearanceChart(result: SurveyResult): Chart | null {
       .flatMap((each) => {
         const part = each.budget.boundary;
         return part?.relativeL2 && part.relativeL2 >= (part.floor ?? 0)
-          ? [[each.walls.clearance, part.relativeL2] as const]
+          ? [{ at: [each.walls.clearance, part.relativeL2] as const, key: String(result.cases.indexOf(each)) }]
           : [];
       })
-      .sort((a, b) => a[0] - b[0]);
+      .sort((a, b) => a.at[0] - b.at[0]);
     const label = name === '' ? cases[0]!.walls.description : name;
     return points.length === 0 || n >= MOST_CHOICES
       ? []
-      : [{ name: label, colour: choiceColour(n), points, dots: () => 'within' }];
+      : [
+          {
+            name: label,
+            colour: choiceColour(n),
+            points: points.map(({ at }) => at),
+            keys: points.map(({ key }) => key),
+            dots: () => 'within',
+          },
+        ];
   });
   const all = series.flatMap(({ points }) => points);
   if (new Set(all.map(([x]) => x)).size < 2) return null;

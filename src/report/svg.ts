@@ -30,6 +30,8 @@ export interface Series {
   readonly scatter?: boolean;
   /** draws a dot at each point, in red where this holds */
   readonly dots?: (point: readonly [number, number]) => 'within' | 'outside';
+  /** what each point stands for: a page that draws the chart finds it in its dot's `data-key` */
+  readonly keys?: readonly string[];
 }
 
 /** A line across the plot at a value of x or y. */
@@ -213,13 +215,16 @@ function path(series: Series, chart: Chart, { x, y, left, right, top, bottom, wi
   const d = line()(pixels.filter(([px]) => px >= left - 0.05 && px <= right + 0.05)) ?? '';
   const dots = series.dots
     ? series.points.map(
-        (p) =>
-          markup`<circle class="dot" r="3.5" cx="${x(p[0])}" cy="${clampY(p[1])}" fill="var(--${series.dots!(p) === 'outside' ? 'outside' : series.colour})"><title>${readout(p, chart)}</title></circle>`,
+        (p, n) =>
+          markup`<circle class="dot"${keyOf(series, n)} r="3.5" cx="${x(p[0])}" cy="${clampY(p[1])}" fill="var(--${series.dots!(p) === 'outside' ? 'outside' : series.colour})"><title>${readout(p, chart)}</title></circle>`,
       )
     : [];
   if (series.scatter) return markup`${dots}`;
   return markup`<path class="series${series.dashed ? ' dashed' : ''}${series.thin ? ' thin' : ''}" stroke="var(--${series.colour})" d="${d}"/>${dots}`;
 }
+
+const keyOf = ({ keys }: Series, n: number): Markup | null =>
+  keys?.[n] === undefined ? null : markup` data-key="${keys[n]}"`;
 
 /** A point's figures in full, for hovering. */
 const readout = (point: readonly [number, number], { x, y }: Chart): string =>

@@ -33,6 +33,20 @@ export function surveyTable(
   return resultOf(survey, cases, mask, threads);
 }
 
+/** The same of those cases that something is known of by now; others are left out. */
+export function surveySoFar(
+  { survey, entries, unique, mask }: SurveyCases,
+  store: CaseStore,
+  threads: number,
+): SurveyResult {
+  const known = new Map(unique.filter(({ status }) => status !== 'waiting').map((entry) => [entry.hash, entry]));
+  const cases = entries.flatMap(({ settings, hash }) => {
+    const entry = known.get(hash);
+    return entry ? [caseResult(settings, entry, store)] : [];
+  });
+  return resultOf(survey, cases, mask, threads);
+}
+
 const NOTHING = Object.fromEntries(Object.keys(outcomeSchema.shape).map((key) => [key, null])) as {
   readonly [Key in keyof Outcome]: null;
 };

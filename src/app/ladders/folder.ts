@@ -1,0 +1,67 @@
+import type { Kept } from './messages.ts';
+
+/** How often the folder is looked into, ms. */
+const EVERY = 1500;
+
+/** What the server tells of the folder it serves. */
+interface Listing {
+  readonly files: readonly string[];
+  /** hashes of the cases that are there */
+  readonly cases: readonly string[];
+}
+
+/** Looks into the result folder that is served with the page, again and again, while a survey elsewhere fills it. */
+export class Folder {
+  private readonly texts = new Map<string, string>();
+  private survey: unknown;
+  private ended = false;
+  private timer = 0;
+
+  /**
+   * @param onCases is given the survey and all its finished cases whenever there are more
+   * @param onResult is given survey-result.json once it is there, which ends the following
+   */
+  constructor(
+    private readonly onCases: (survey: unknown, kept: Kept) => void,
+    private readonly onResult: (json: unknown) => void,
+    private readonly onTrouble: (message: string) => void,
+  ) {
+    void this.look();
+  }
+
+  end(): void {
+    this.ended = true;
+    clearTimeout(this.timer);
+  }
+
+  private async look(): Promise<void> {
+    try {
+      const { files, cases } = (await this.read('results/')) as Listing;
+      if (files.includes('survey.json')) this.survey ??= await this.read('results/survey.json');
+      if (files.includes('survey-result.json')) {
+        const result = (await this.read('results/survey-result.json')) as { readonly survey?: unknown };
+        // One that an earlier survey left there is not waited for.
+        const own = this.survey === undefined || JSON.stringify(result.survey) === JSON.stringify(this.survey);
+        if (this.ended) return;
+        if (own) return this.onResult(result);
+      }
+      if (this.survey === undefined)
+        throw new Error(
+          'the folder holds no survey: run `fieldassay survey SURVEY.json --out DIR`, and `fieldassay view DIR` beside it',
+        );
+      const fresh = cases.filter((hash) => !this.texts.has(hash));
+      for (const hash of fresh) this.texts.set(hash, JSON.stringify(await this.read(`results/cases/${hash}.json`)));
+      if (this.ended) return;
+      if (fresh.length > 0 || this.texts.size === 0) this.onCases(this.survey, [...this.texts]);
+      this.timer = setTimeout(() => void this.look(), EVERY) as unknown as number;
+    } catch (error) {
+      if (!this.ended) this.onTrouble((error as Error).message);
+    }
+  }
+
+  private async read(path: string): Promise<unknown> {
+    const answer = await fetch(path);
+    if (!answer.ok) throw new Error(`${path} is not to be had (status ${answer.status})`);
+    return await answer.json();
+  }
+}
