@@ -17,6 +17,7 @@ const MAY_IMPORT: Record<string, readonly string[]> = {
   lattice: ['scenario', 'trace', 'gridding', 'elementary'],
   compare: ['trace', 'elementary'],
   files: ['scenario', 'trace', 'elementary'],
+  queue: ['scenario', 'compare', 'run', 'platform', 'elementary'],
   report: ['scenario', 'trace', 'compare', 'files', 'elementary'],
   draw: ['trace', 'elementary'],
   platform: [],

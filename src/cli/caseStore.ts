@@ -1,4 +1,4 @@
-import { mkdirSync, readdirSync, readFileSync, rmSync } from 'node:fs';
+import { mkdirSync, readdirSync, readFileSync, rmSync, statSync } from 'node:fs';
 import { join } from 'node:path';
 import type { CaseStore } from '../run/survey.ts';
 import { writeWhole } from './output.ts';
@@ -22,7 +22,10 @@ export function folderStore(folder: string): CaseStore {
   };
 }
 
-/** Removes what processes that were killed had begun to write. */
+/** A file that has been written for so long, milliseconds, is not being written any more. */
+const ABANDONED = 60_000;
+
+/** Removes what processes that were killed had begun to write; what others are writing into the folder now stays. */
 export function sweepStore(folder: string): void {
   let names: string[] = [];
   try {
@@ -31,5 +34,9 @@ export function sweepStore(folder: string): void {
     // A folder that is not there holds no remains.
   }
   for (const name of names)
-    if (/^\.[0-9a-f]+\.json\.\d+\.part$/.test(name)) rmSync(join(folder, name), { force: true });
+    if (/^\.[0-9a-f]+\.json\.\d+\.part$/.test(name)) {
+      const path = join(folder, name);
+      const written = statSync(path, { throwIfNoEntry: false })?.mtimeMs ?? 0;
+      if (Date.now() - written > ABANDONED) rmSync(path, { force: true });
+    }
 }

@@ -3,12 +3,9 @@ import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
 import { withinTolerance } from '../compare/result.ts';
-import type { SurveyResult } from '../compare/surveyResult.ts';
 import { writeTracesNpz } from '../files/npz.ts';
 import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
-import { surveyFiles } from '../report/surveyFolder.ts';
-import { surveyText } from '../report/surveyText.ts';
 import { resultText } from '../report/text.ts';
 import { type Comparison, compareSolvers, Refusal, withTeam } from '../run/compare.ts';
 import type { Team } from '../run/pool.ts';
@@ -21,12 +18,14 @@ import { currentsCommand } from './currents.ts';
 import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
 import { frameFiles } from './frames.ts';
 import { InputError, readScenario } from './input.ts';
+import { Interrupted } from './interrupted.ts';
 import { quoted, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
+import { addWorkCommand } from './queue.ts';
 import { servePage } from './serve.ts';
 import { SNAPSHOT_FORMATS, SNAPSHOT_REGIONS, type SnapshotOptions, writeSnapshots } from './snapshots.ts';
-import { type SurveyFlags, surveyCommand } from './survey.ts';
+import { addSurveyCommand } from './survey.ts';
 
 /** Exit statuses: 0 done and within tolerance, 1 done and outside it, 2 the input was refused, 3 something failed. */
 const DONE = 0;
@@ -67,12 +66,6 @@ export async function runCli(args: readonly string[]): Promise<number> {
 }
 
 const SCHEMAS = { scenario: scenarioJsonSchema, survey: surveyJsonSchema } as const;
-
-class Interrupted extends Error {
-  constructor(message = 'stopped; nothing was written') {
-    super(message);
-  }
-}
 
 const wholeNumber =
   (least: number, most: number) =>
@@ -205,41 +198,8 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       await served(folder ?? null, port, signal, (url) => `${url}${results ? '#results' : ''}\n`);
     });
 
-  program
-    .command('survey')
-    .argument('<survey>', 'a survey file: a scenario and what to vary in it')
-    .description('many cases: order of convergence, reflections of walls, what an error costs')
-    .requiredOption('--out <dir>', 'write survey-result.json, survey.csv, survey.html and charts into this folder')
-    .option('--json', 'print the result as JSON on standard output, and nothing else there')
-    .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
-    .addHelpText(
-      'after',
-      '\nFinished cases are kept in DIR/cases: the same command goes on where it was stopped.\n' +
-        '\nExample: fieldassay survey survey.json --out survey\n',
-    )
-    .action(async (file: string, options: SurveyFlags) => {
-      let result: SurveyResult;
-      try {
-        result = await surveyCommand(file, options, signal);
-      } catch (error) {
-        if (error instanceof Interrupted)
-          throw new Interrupted(
-            `stopped; finished cases are kept in ${options.out}/cases, and the same command goes on from there`,
-          );
-        throw error;
-      }
-      const files = surveyFiles(result, surveyCommandLine(file, options));
-      writeFolder(options.out, files);
-      if (options.json) process.stdout.write(files['survey-result.json']!);
-      else
-        process.stdout.write(
-          surveyText(
-            result,
-            Object.keys(files).map((name) => `${options.out}/${name}`),
-          ),
-        );
-      end(result.cases.some(({ status }) => status === 'failed') ? FAILED : DONE);
-    });
+  addSurveyCommand(program, threadCount, signal, (whole) => end(whole ? DONE : FAILED));
+  addWorkCommand(program, threadCount, signal);
 
   program
     .command('schema')
@@ -360,10 +320,6 @@ async function inTeam<T>(
 
 const filesOf = (comparison: Comparison, command: string): Record<string, string> =>
   Object.fromEntries(RESULT_FILES.map((file) => [file, resultFile(file, comparison, command)]));
-
-function surveyCommandLine(file: string, { out, threads }: SurveyFlags): string {
-  return `npx fieldassay survey ${quoted(file)} --out ${quoted(out)}${threads ? ` --threads ${threads}` : ''}`;
-}
 
 function commandLine(name: string, { out, threads }: CompareFlags): string {
   return `npx fieldassay compare ${quoted(name)}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;

@@ -1,9 +1,16 @@
 import cliProgress from 'cli-progress';
 import type { Progress } from '../run/progress.ts';
 
+export interface ProgressLine {
+  show(progress: Progress): void;
+  /** writes a line of its own, above the bar where there is one */
+  say(text: string): void;
+  end(): void;
+}
+
 /** A progress line on standard error: a moving bar on a terminal, one line a stage elsewhere; none when quiet. */
-export function progressLine(quiet: boolean): { show: (progress: Progress) => void; end: () => void } {
-  if (quiet) return { show: () => {}, end: () => {} };
+export function progressLine(quiet: boolean): ProgressLine {
+  if (quiet) return { show: () => {}, say: () => {}, end: () => {} };
   if (!process.stderr.isTTY) {
     let last = '';
     return {
@@ -11,6 +18,7 @@ export function progressLine(quiet: boolean): { show: (progress: Progress) => vo
         if (stage !== last) process.stderr.write(`${stage}${leftText(secondsLeft)} …\n`);
         last = stage;
       },
+      say: (text) => process.stderr.write(`${text}\n`),
       end: () => {},
     };
   }
@@ -30,6 +38,7 @@ export function progressLine(quiet: boolean): { show: (progress: Progress) => vo
         stage,
         left: leftText(secondsLeft),
       }),
+    say: (text) => process.stderr.write(`\r\x1b[K${text}\n`),
     end: () => bar.stop(),
   };
 }

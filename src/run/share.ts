@@ -21,3 +21,26 @@ export class Shared {
     return await work;
   }
 }
+
+/**
+ * The same where nobody knows what will be asked for: the newest works are kept. Where one fails, whoever asks next tries
+ * again by himself.
+ */
+export class Recent {
+  readonly #work = new Map<string, Promise<unknown>>();
+
+  /** @param most works that are kept */
+  constructor(readonly most: number) {}
+
+  async take<T>(key: string, make: () => Promise<T>): Promise<T> {
+    const known = this.#work.get(key) as Promise<T> | undefined;
+    const work = known ? known.catch(make) : make();
+    this.#work.delete(key);
+    this.#work.set(key, work);
+    for (const oldest of this.#work.keys()) {
+      if (this.#work.size <= this.most) break;
+      this.#work.delete(oldest);
+    }
+    return await work;
+  }
+}

@@ -1,9 +1,10 @@
 import { threadsAvailable } from '#platform';
-import { outcomeSchema, type SurveyResult } from '../compare/surveyResult.ts';
+import type { SurveyResult } from '../compare/surveyResult.ts';
 import type { Survey } from '../scenario/survey.ts';
 import type { CompareOptions } from './compare.ts';
 import type { Job } from './schedule.ts';
 import {
+  asWritten,
   type CaseStore,
   casesOf,
   caseText,
@@ -76,16 +77,11 @@ export class SurveyRun {
     return planned(entry, this.reflections);
   }
 
-  /**
-   * Keeps what a case came to, as JSON has it. Where it cannot be kept, the case has failed.
-   * @throws Error where it is no outcome of a case
-   */
+  /** Keeps what a case came to. Where it cannot be kept, or is no outcome of a case, the case has failed. */
   keep(entry: Entry, outcome: unknown): void {
-    const text = caseText(entry.hash, entry.json, outcome);
-    outcomeSchema.parse(JSON.parse(text).outcome);
-    entry.status = 'done';
     try {
-      this.store.save(entry.hash, text);
+      this.store.save(entry.hash, caseText(entry.hash, entry.json, asWritten(outcome)));
+      entry.status = 'done';
     } catch (error) {
       refuseOrFail(entry, error);
     }
@@ -102,7 +98,8 @@ export class SurveyRun {
   }
 }
 
-function memoryStore(): CaseStore {
+/** Keeps texts for as long as the process lasts. */
+export function memoryStore(): CaseStore {
   const texts = new Map<string, string>();
   return { load: (hash) => texts.get(hash) ?? null, save: (hash, text) => texts.set(hash, text) };
 }

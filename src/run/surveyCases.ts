@@ -88,6 +88,12 @@ export async function resultSchemaHash(): Promise<string> {
   return (await hashOf(outcomeJsonSchema())).slice(0, 8);
 }
 
+/**
+ * An outcome as it is written and read back, so that a case that was run and one that was kept are the same.
+ * @throws Error where it holds something that the schema does not allow, NaN among it
+ */
+export const asWritten = (outcome: unknown): Outcome => outcomeSchema.parse(JSON.parse(JSON.stringify(outcome)));
+
 /** The text of a case's file. */
 export const caseText = (hash: string, scenario: unknown, outcome: unknown): string =>
   `${JSON.stringify({ version: VERSION, hash, scenario, outcome })}\n`;

@@ -51,7 +51,7 @@ export class SurveyMeter {
   }
 
   report(): void {
-    const fraction = this.#total > 0 ? Math.min(1, this.#done / this.#total) : 1;
+    const fraction = this.#total > 0 ? Math.min(1, this.#done / this.#total) : Number(this.#finished === this.count);
     const elapsed = (performance.now() - this.#started) / 1000;
     this.onProgress({
       stage: `${this.#finished} of ${this.count} cases${this.#remark}`,

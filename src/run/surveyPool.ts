@@ -8,7 +8,7 @@ import { runCase } from './surveyCase.ts';
 import { shareKey } from './surveyCases.ts';
 
 /** Work that cases which differ by their walls alone have in common. */
-const SHARED = ['free', 'reflectionFree', 'guide', 'integrals', 'lattice'] as const;
+export const SHARED = ['free', 'reflectionFree', 'guide', 'integrals', 'lattice'] as const;
 
 /** Cases on the threads of this process. */
 export const pool: Engine = async (run) => {
