@@ -18,6 +18,9 @@
  *        t = 2      . . . . . . .|. . . . . . .
  *        t = 3      . . . . . .|. . . . . . . .
  *
+ * A cut may just as well move down by more than a row. Near a wall that reads several rows at once (./walls.ts) it stays
+ * above them as long as it can, and then jumps below them.
+ *
  * Threads take the tiles in turn. Wavefront s of tile m may start when
  *   - tile m − 1 of its block has done wavefront s, and
  *   - the previous block (T′ steps) has done wavefront s + T′ on every tile that touches the rows of this one, for then
@@ -27,14 +30,15 @@ import { PROGRESS, PROGRESS_BLOCKS, PROGRESS_TILES, nz, ny } from './memory';
 import { electric, magnetic } from './plane';
 import { STEP_BYTES } from './step';
 import { gathered, reached, stopped } from './threads';
+import { planeCut, reachesHighWall } from './walls';
 
 /**
  * `count` steps one by one, the planes divided among the threads; false when the run was called off. Each plane of h
  * follows close upon the plane of e above it, so that a step moves every field through memory once, not twice.
  */
 export function sweep(thread: i32, threads: i32, steps: usize, count: i32, gatheredBefore: i32): bool {
-  const from = (nz * thread) / threads;
-  const to = (nz * (thread + 1)) / threads;
+  const from = planeCut((nz * thread) / threads);
+  const to = planeCut((nz * (thread + 1)) / threads);
   let gatherings = gatheredBefore;
   for (let n = 0; n < count; n++) {
     const step = steps + <usize>n * STEP_BYTES;
@@ -143,7 +147,7 @@ function tile(thread: i32, threads: i32, block: usize, m: i32, follows: bool): b
   if (follows) {
     const previous = block - BLOCK_BYTES;
     lead = stepCount(previous);
-    const touching = m == last
+    const touching = m == last || reachesHighWall(high)
       ? tileCount(previous) - 1
       : max(0, min((high - 1 + lead - tileOrigin(previous)) / tileRows(previous), tileCount(previous) - 1));
     before = progressOf(previous, touching);

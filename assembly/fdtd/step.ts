@@ -44,6 +44,13 @@ export function sourceValues(step: usize): usize {
   return load<u32>(step, 24);
 }
 
+/** Counts steps from 0 over the whole run. */
+// @ts-ignore: decorator
+@inline
+export function stepNumber(step: usize): i32 {
+  return load<i32>(step, 28);
+}
+
 /** Address to which sample group g writes in this step; 0 when it does not read this step. */
 // @ts-ignore: decorator
 @inline

@@ -28,6 +28,7 @@ const UNITS: Readonly<Record<string, { readonly kind: Kind; readonly size: numbe
   GHz: { kind: 'frequency', size: 1e9 },
   A: { kind: 'current', size: 1 },
   '1/ns': { kind: 'rate', size: 1e9 },
+  deg: { kind: 'angle', size: Math.PI / 180 },
 };
 export type UnitName = keyof typeof UNITS & string;
 

@@ -1,6 +1,13 @@
 import GUI, { type Controller } from 'lil-gui';
 import { formatQuantity } from '../elementary/quantity.ts';
-import { BOUNDARIES, CPML_DEFAULTS, WAVEFORMS } from '../scenario/schema.ts';
+import {
+  BOUNDARIES,
+  CPML_DEFAULTS,
+  HIGDON_DEFAULTS,
+  LIAO_DEFAULTS,
+  SPLIT_PML_DEFAULTS,
+  WAVEFORMS,
+} from '../scenario/schema.ts';
 import { timeStepOf } from '../scenario/sites.ts';
 import { parseFraction } from '../scenario/units.ts';
 import { MOST_PLANES } from '../scene/slices.ts';
@@ -89,6 +96,54 @@ const BEGINNINGS: Readonly<Record<string, Draft>> = {
 };
 
 const WAVEFORM_HELP = 'Time dependence of the current; zero before t = 0.';
+
+const LAYERS: Omit<QuantityField, 'fallback'> = {
+  path: ['layers'],
+  name: 'layers',
+  unit: '',
+  help: 'Cells of absorber outside the box; a whole number.',
+  min: 1,
+  max: 32,
+  step: 1,
+};
+
+const DAMPING: Omit<QuantityField, 'fallback'> = {
+  path: ['damping'],
+  name: 'damping',
+  unit: '',
+  help: 'Loss a cell that keeps the wall from drifting.',
+  min: 0,
+  max: 0.05,
+  step: 0.001,
+};
+
+const incidence = (n: 0 | 1, name: string): QuantityField => ({
+  path: ['angles', n],
+  name,
+  unit: 'deg',
+  help: 'Angle of incidence that nothing returns from, degrees from the normal.',
+  min: 0,
+  max: 85,
+  step: 1,
+});
+
+/** What is edited of a boundary that all faces share; paths from the boundary. */
+const BOUNDARY_FIELDS: Readonly<Record<string, readonly QuantityField[]>> = {
+  higdon2: [
+    incidence(0, 'first angle'),
+    incidence(1, 'second angle'),
+    { ...DAMPING, fallback: HIGDON_DEFAULTS.damping },
+  ],
+  liao: [{ ...DAMPING, fallback: LIAO_DEFAULTS.damping }],
+  cpml: [{ ...LAYERS, fallback: CPML_DEFAULTS.layers }],
+  splitPml: [{ ...LAYERS, fallback: SPLIT_PML_DEFAULTS.layers }],
+};
+
+/** A boundary as it is written when it is chosen: what its controls change stands in the file. */
+function chosenBoundary(type: string): object {
+  if (type === 'cpml' || type === 'splitPml') return { type, layers: CPML_DEFAULTS.layers };
+  return type === 'higdon2' ? { type, angles: ['0 deg', '45 deg'] } : { type };
+}
 
 /** The docked panels. They edit the scenario's file, so that text and panels always say the same. */
 export class Panels {
@@ -483,25 +538,15 @@ export class Panels {
     this.choice(
       gui,
       'all walls',
-      'cpml absorbs best; mur1 is a simple absorber; pec reflects all, for scale.',
+      'cpml absorbs best, splitPml nearly so; higdon2, liao, mur2 and mur1 are simple absorbers; pec and pmc reflect all, for scale.',
       BOUNDARIES,
       type,
-      (value) =>
-        this.store.edit((draft) =>
-          setAt(draft, ['grid', 'boundary'], value === 'cpml' ? { type: 'cpml', layers: 10 } : { type: value }),
-        ),
+      (value) => this.store.edit((draft) => setAt(draft, ['grid', 'boundary'], chosenBoundary(value))),
     );
-    if (type === 'cpml')
-      this.quantity(gui, json, {
-        path: ['grid', 'boundary', 'layers'],
-        name: 'layers',
-        unit: '',
-        help: 'Cells of absorber outside the box; a whole number.',
-        min: 1,
-        max: 32,
-        step: 1,
-        fallback: CPML_DEFAULTS.layers,
-      });
+    // One angle alone would be no pair.
+    for (const field of BOUNDARY_FIELDS[type] ?? [])
+      if (field.path[0] !== 'angles' || Array.isArray(given.angles))
+        this.quantity(gui, json, { ...field, path: ['grid', 'boundary', ...field.path] });
     this.action(gui, 'A wall of its own for each face', 'Lets the six walls differ.', (draft) => {
       const all = draft.grid.boundary ?? { type: 'cpml', layers: 10 };
       draft.grid.boundary = Object.fromEntries(['x-', 'x+', 'y-', 'y+', 'z-', 'z+'].map((face) => [face, { ...all }]));

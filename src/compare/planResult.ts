@@ -1,14 +1,11 @@
 import { z } from 'zod';
+import { boundarySchema } from './boundaryWords.ts';
 
 /** `plan.json`: what a plan found, in SI units. */
 
 const fraction = (what: string) => z.number().describe(`${what}; a fraction, 0.05 for 5 %`);
 const inUnit = (unit: string, what: string) => z.number().describe(`${what}, ${unit}`);
 const vector = (what: string) => z.tuple([z.number(), z.number(), z.number()]).readonly().describe(what);
-
-const boundarySchema = z
-  .object({ type: z.enum(['cpml', 'mur1', 'pec']), layers: z.int().optional() })
-  .describe('as in a scenario file');
 
 const setupShape = {
   cellSize: vector('dx, dy, dz, m'),
@@ -82,9 +79,3 @@ export type PlannedPlace = z.infer<typeof placeSchema>;
 
 /** The published description of `plan.json` (JSON Schema 2020-12). */
 export const planJsonSchema = (): object => z.toJSONSchema(planSchema);
-
-/** A boundary in a few words: "CPML, 8 layers". */
-export function boundaryText({ type, layers }: PlannedSetup['boundary']): string {
-  if (type === 'cpml') return `CPML, ${layers} layers`;
-  return type === 'mur1' ? 'Mur 1' : 'perfect conductor';
-}

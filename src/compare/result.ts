@@ -1,6 +1,7 @@
 import { z } from 'zod';
 import { COMPONENTS } from '../trace/trace.ts';
 import type { Band } from './band.ts';
+import { boundarySchema } from './boundaryWords.ts';
 import type { Budget } from './budget.ts';
 import type { MaximumNorm, Norm, SampledNorm } from './norms.ts';
 import type { ObserverErrors } from './observer.ts';
@@ -127,7 +128,7 @@ export const remedySchema = z.object({
   change: z
     .object({
       cellSize: vector('dx, dy, dz'),
-      boundary: z.object({ type: z.enum(['cpml', 'mur1', 'pec']), layers: z.int().optional() }),
+      boundary: boundarySchema,
       clearance: z.int().describe('cells by which the walls move outwards'),
       box: z.object({ from: vector('lower corner'), to: vector('upper corner') }),
       cells: z.number().describe('cells, absorbing layers included'),

@@ -56,7 +56,7 @@ export interface GridKernel {
   layersX(rowMemory: number, memoryElectric: number, memoryMagnetic: number): void;
   layersY: LayerSetter;
   layersZ: LayerSetter;
-  murWalls(faces: number, x: number, y: number, z: number, notes: number): void;
+  walls(linearFaces: number, mirroredFaces: number, records: number, bias: number): void;
   sources(starts: number, addresses: number): void;
   samples(count: number, addresses: number): void;
   fill(from: number, to: number, value: number): void;

@@ -1,4 +1,5 @@
-import type { Axis, Boundary, Face } from '../scenario/model.ts';
+import { type Axis, type Boundary, FACES, type Face } from '../scenario/model.ts';
+import { cellsBehind, cellsRead } from '../scenario/walls.ts';
 import { type FaceLattice, PLAIN, type Stretch, type Wall } from './boundaries/boundary.ts';
 import { methodOf } from './boundaries/catalogue.ts';
 import {
@@ -12,6 +13,7 @@ import {
   WINDOW_BYTES,
 } from './kernel.ts';
 import type { GridProblem } from './problem.ts';
+import { type WallLayout, wallLayout, writeWalls } from './wallTables.ts';
 
 /** Faces by axis: the low one and the high one. */
 export const FACES_OF = [
@@ -54,10 +56,7 @@ export interface Layout {
   readonly layers: readonly [AxisLayers, AxisLayers, AxisLayers];
   /** where all ψ lies */
   readonly memory: readonly [number, number];
-  readonly walls: { readonly murFaces: number; readonly murFactor: readonly [number, number, number] };
-  /** one thread's notes of the fields beside the walls */
-  readonly notes: number;
-  readonly notesBytes: number;
+  readonly walls: WallLayout;
   /** first free byte */
   readonly end: number;
   /** bytes of memory that are really written to: fields, ψ and tables */
@@ -114,7 +113,13 @@ export function startValue(problem: GridProblem): number {
 
 /** The lattice as the boundary of a face sees it. */
 function across(problem: GridProblem, axis: Axis): FaceLattice {
-  return { cell: problem.cellSize[axis], timeStep: problem.timeStep, medium: problem.medium };
+  const { cellSize, timeStep, medium } = problem;
+  return { cell: cellSize[axis], across: [cellSize[(axis + 1) % 3]!, cellSize[(axis + 2) % 3]!], timeStep, medium };
+}
+
+/** Cells in which a boundary stretches coordinates. */
+function layersOf(boundary: Boundary): number {
+  return methodOf(boundary).stretch ? cellsBehind(boundary) : 0;
 }
 
 /**
@@ -124,14 +129,14 @@ export function stretchAt(problem: GridProblem, axis: Axis, drives: 'E' | 'H', i
   const cells = latticeCells(problem)[axis];
   const position = drives === 'E' ? index : index + 0.5;
   const [low, high] = FACES_OF[axis].map((face) => problem.boundary[face]) as [Boundary, Boundary];
-  const lowLayers = methodOf(low).layers(low);
-  const highLayers = methodOf(high).layers(high);
+  const lowLayers = layersOf(low);
+  const highLayers = layersOf(high);
   // On the wall itself tangential E is not updated, so its difference needs no memory.
   if (position <= 0 || position >= cells) return PLAIN;
   if (position < lowLayers)
-    return methodOf(low).stretch(low, (lowLayers - position) / lowLayers, across(problem, axis));
+    return methodOf(low).stretch!(low, (lowLayers - position) / lowLayers, across(problem, axis));
   const above = position - (cells - highLayers);
-  if (above > 0) return methodOf(high).stretch(high, above / highLayers, across(problem, axis));
+  if (above > 0) return methodOf(high).stretch!(high, above / highLayers, across(problem, axis));
   return PLAIN;
 }
 
@@ -141,19 +146,25 @@ export function wallOf(problem: GridProblem, face: Face): Wall {
   return methodOf(problem.boundary[face]).wall(problem.boundary[face], across(problem, axis));
 }
 
+/** The same of all faces. */
+export function wallsOf(problem: GridProblem): Wall[] {
+  return FACES.map((face) => wallOf(problem, face));
+}
+
 /**
  * Lays a problem out.
  * @throws RangeError where the lattice is too large to be addressed or too small to be a lattice
  */
-export function layoutOf(problem: GridProblem, threads: number): Layout {
+export function layoutOf(problem: GridProblem): Layout {
   const cells = latticeCells(problem);
   const [nx, ny, nz] = cells;
   const real = problem.precision === 'single' ? 4 : 8;
   const lanes = VECTOR / real;
-  const layerCounts = AXES.map((a) =>
-    FACES_OF[a].map((face) => methodOf(problem.boundary[face]).layers(problem.boundary[face])),
-  ) as [number, number][];
-  refuseBadLattice(problem, cells, layerCounts);
+  const layerCounts = AXES.map((a) => FACES_OF[a].map((face) => layersOf(problem.boundary[face]))) as [
+    number,
+    number,
+  ][];
+  refuseBadLattice(problem, cells);
 
   const rowVectors = Math.ceil(nx / lanes);
   const rowBytes = (rowVectors + 1) * VECTOR;
@@ -187,14 +198,8 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
   }) as unknown as [AxisLayers, AxisLayers, AxisLayers];
   const memoryTo = bump.take(0);
 
-  const walls = AXES.map((a) => FACES_OF[a].map((face) => wallOf(problem, face)));
-  const murFaces = walls.flat().reduce((bits, wall, face) => bits | (wall.type === 'mur' ? 1 << face : 0), 0);
-  const murFactor = walls.map((pair) => {
-    const wall = pair.find((w) => w.type === 'mur');
-    return wall?.type === 'mur' ? wall.factor : 0;
-  }) as [number, number, number];
-  const notesBytes = murFaces ? Math.ceil(((4 * ny + 4 * (nx + 1) + 2 * (nx + 1) * (ny + 1)) * real) / 64) * 64 : 0;
-  const notes = bump.take(notesBytes * threads);
+  const bias = startValue(problem);
+  const walls = wallLayout(wallsOf(problem), cells, real, bias, (bytes) => bump.take(bytes));
   if (bump.next > ADDRESS_LIMIT) throw tooLarge(problem, cells, fieldBytes);
 
   return {
@@ -211,33 +216,35 @@ export function layoutOf(problem: GridProblem, threads: number): Layout {
     origin: planeBytes + rowBytes + VECTOR,
     fieldBytes,
     coefficients: updateCoefficients(problem),
-    bias: startValue(problem),
+    bias,
     windowLow,
     windowHigh,
     windows,
     memoryRowX,
     layers,
     memory: [memoryFrom, memoryTo],
-    walls: { murFaces, murFactor },
-    notes,
-    notesBytes,
+    walls,
     end: bump.next,
     touched: 6 * fieldBytes + bump.next - (FIELDS + 6 * build.stride),
   };
 }
 
-function refuseBadLattice(problem: GridProblem, cells: readonly number[], layerCounts: readonly [number, number][]) {
+function refuseBadLattice(problem: GridProblem, cells: readonly number[]) {
   for (const a of AXES) {
     const name = 'xyz'[a];
     if (cells[a]! < 2)
       throw new RangeError(
         `the lattice has ${cells[a]} cell along ${name}; it needs at least 2. Lower grid.cellSize or enlarge grid.box.`,
       );
-    for (const end of [0, 1] as const) {
-      const face = FACES_OF[a][end];
-      if (layerCounts[a]![end] > problem.pad[face])
+    for (const face of FACES_OF[a]) {
+      const boundary = problem.boundary[face];
+      if (cellsBehind(boundary) > problem.pad[face])
         throw new RangeError(
-          `the boundary of face ${face} has ${layerCounts[a]![end]} layers; the pad outside the working box is ${problem.pad[face]} cells and must hold them.`,
+          `the boundary of face ${face} has ${cellsBehind(boundary)} layers; the pad outside the working box is ${problem.pad[face]} cells and must hold them.`,
+        );
+      if (cellsRead(boundary) >= cells[a]!)
+        throw new RangeError(
+          `the boundary of face ${face} reads ${cellsRead(boundary)} cells inward; the lattice has ${cells[a]} cells along ${name} and needs more than that. Lower grid.cellSize or enlarge grid.box.`,
         );
     }
   }
@@ -265,12 +272,12 @@ function tooLarge(problem: GridProblem, cells: readonly number[], fieldBytes: nu
 
 /** Memory that a run would take (fields, memory variables and tables, without samples), and cells of its lattice. */
 export function memoryNeeded(problem: GridProblem): { bytes: number; cells: number } {
-  const { touched, cells } = layoutOf(problem, 1);
+  const { touched, cells } = layoutOf(problem);
   return { bytes: touched, cells: cells[0] * cells[1] * cells[2] };
 }
 
-/** Makes a kernel instance ready: the same calls on every thread, but for the place of its notes. */
-export function configure(kernel: GridKernel, layout: Layout, thread: number): void {
+/** Makes a kernel instance ready: the same calls on every thread. */
+export function configure(kernel: GridKernel, layout: Layout): void {
   const [x, y, z] = layout.layers;
   kernel.lattice(...layout.cells);
   kernel.coefficients(...layout.coefficients);
@@ -278,14 +285,15 @@ export function configure(kernel: GridKernel, layout: Layout, thread: number): v
   kernel.layersX(layout.memoryRowX, ...x.memory);
   kernel.layersY(y.low, y.high, ...y.profile, ...y.memory);
   kernel.layersZ(z.low, z.high, ...z.profile, ...z.memory);
-  kernel.murWalls(layout.walls.murFaces, ...layout.walls.murFactor, layout.notes + thread * layout.notesBytes);
+  kernel.walls(layout.walls.linear, layout.walls.mirrored, layout.walls.records, layout.bias);
 }
 
-/** Writes the tables that the stencil reads: windows of the rows, and profiles of the layers across y and z. */
-export function writeProfiles(problem: GridProblem, layout: Layout, memory: WebAssembly.Memory): void {
+/** Writes the tables of the stencil (windows of the rows, profiles of the layers across y and z) and of the walls. */
+export function writeTables(problem: GridProblem, layout: Layout, memory: WebAssembly.Memory): void {
   const reals = realsOf(layout, memory);
   const lanes = VECTOR / layout.real;
   const nx = layout.cells[0];
+  writeWalls(wallsOf(problem), layout.walls, reals);
   for (const [set, drives] of (['E', 'H'] as const).entries()) {
     for (let entry = 0; entry < layout.windowLow + layout.rowVectors - layout.windowHigh; entry++) {
       const vector = entry < layout.windowLow ? entry : entry - layout.windowLow + layout.windowHigh;

@@ -16,7 +16,7 @@ import {
   STEP_BYTES,
   VECTOR,
 } from './kernel.ts';
-import { AXES, Bump, configure, type Layout, layoutOf, realsOf, writeProfiles } from './layout.ts';
+import { AXES, Bump, configure, type Layout, layoutOf, realsOf, writeTables } from './layout.ts';
 import type { GridProblem } from './problem.ts';
 import { type CellBox, type Region, regionOf } from './region.ts';
 import { type Collection, collect, collectionOf, holdFrom, keptBetween, keptIndex, Watch } from './samples.ts';
@@ -119,7 +119,7 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
     throw new RangeError(`the run has ${problem.steps} steps; it needs at least 1. Raise duration.`);
   if (problem.samples.length > SAMPLE_GROUPS)
     throw new RangeError(`the run has ${problem.samples.length} groups of samples; at most ${SAMPLE_GROUPS} are read.`);
-  const layout = layoutOf(problem, threads);
+  const layout = layoutOf(problem);
   const sources = sourceTable(problem, layout);
   const samples = problem.samples.map((group) => sampleTable(group.cell, layout));
 
@@ -144,7 +144,7 @@ export function prepareGridRun(problem: GridProblem, options: GridOptions = {}):
   const memory =
     options.memory && fits(options.memory, bump.next) ? cleared(options.memory) : allocate(bump.next, problem);
 
-  writeProfiles(problem, layout, memory);
+  writeTables(problem, layout, memory);
   const words = (address: number, values: Uint32Array) =>
     new Uint32Array(memory.buffer, address, values.length).set(values);
   words(tables.sourceStarts, sources.rowStart);
@@ -189,17 +189,17 @@ function allocate(bytes: number, problem: GridProblem): WebAssembly.Memory {
 }
 
 /** A kernel on this thread, told all that the setup holds. */
-function readyKernel(setup: GridSetup, thread: number, interrupted: () => boolean): GridKernel {
+function readyKernel(setup: GridSetup, interrupted: () => boolean): GridKernel {
   const { layout, memory, tables } = setup;
   const kernel = gridKernel(layout.fused ? 'fused' : layout.precision, layout.build, memory, interrupted);
-  configure(kernel, layout, thread);
+  configure(kernel, layout);
   kernel.sources(tables.sourceStarts, tables.sourceEdges);
   kernel.samples(tables.groups, tables.sampleTables);
   return kernel;
 }
 
 /**
- * Gives this thread's share of the fields and of ψ their start value. It is also the first to touch that memory, which
+ * Gives this thread's share of the fields, of ψ and of what walls remember its start value. It is also the first to touch that memory, which
  * costs more than writing it: better by all threads at once, and before the clock of the march runs.
  */
 function fillShare(
@@ -218,6 +218,7 @@ function fillShare(
     share(FIELDS + field * layout.stride, layout.fieldBytes, layout.bias);
   }
   share(layout.memory[0], layout.memory[1] - layout.memory[0], 0);
+  for (const { from, to, value } of layout.walls.fills) share(from, to - from, value);
   return true;
 }
 
@@ -250,7 +251,7 @@ export function follow(setup: GridSetup): void {
   const words = new Int32Array(setup.memory.buffer, 0, WORDS);
   const thread = Atomics.add(words, JOINED, 1) + 1;
   if (thread >= setup.threads) return;
-  const kernel = readyKernel(setup, thread, () => false);
+  const kernel = readyKernel(setup, () => false);
   let gatherings = 0;
   for (let order = 1; ; order++) {
     while (Atomics.load(words, ORDERS) < order) Atomics.wait(words, ORDERS, order - 1, 1000);
@@ -272,7 +273,7 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
   const { problem, setup } = run;
   const { schedule, threads, memory, tables } = setup;
   const cancelled = hooks.cancelled ?? (() => false);
-  const kernel = readyKernel(setup, 0, cancelled);
+  const kernel = readyKernel(setup, cancelled);
   const words = new Int32Array(memory.buffer, 0, WORDS);
   let gatherings = 0;
 
@@ -310,8 +311,9 @@ export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
     while (outcome === 'done' && done < problem.steps) {
       const count = Math.min(schedule.batchSteps, problem.steps - done);
       const boxes = Array.from({ length: count }, (_, n) => region(done + n));
-      writeSteps(run, boxes, done);
-      const blocks = blocksOf(boxes, done, schedule, threads, last);
+      const marched = boxes.map((box) => wholeWalls(setup.layout, box));
+      writeSteps(run, marched, done);
+      const blocks = blocksOf(marched, done, schedule, threads, last);
       writeBlocks(memory, tables.blocks, blocks, tables.steps, done);
       last = blocks.at(-1);
 
@@ -352,16 +354,15 @@ function writeSteps(run: GridRun, boxes: readonly CellBox[], first: number): voi
   const used = problem.samples.map(() => 0);
   boxes.forEach(({ from, to }, n) => {
     const values = tables.sourceValues + n * edges * layout.real;
-    // Rows 0 and 1 go together, see assembly/fdtd/plane.ts.
     const record = [
       from[2],
       to[2],
       from[1],
-      Math.max(2, to[1]),
+      to[1],
       Math.floor(from[0] / lanes),
       Math.ceil(to[0] / lanes),
       values,
-      0,
+      first + n,
     ];
     problem.samples.forEach((group, g) => {
       const keeps = keptIndex(group, problem.steps, first + n) >= 0;
@@ -378,6 +379,25 @@ function writeSteps(run: GridRun, boxes: readonly CellBox[], first: number): voi
     for (let e = 0; e < edges; e++)
       reals[values / layout.real + e] = sourceVoltage(problem, layout, sourceOrder[e]!, first + n);
   });
+}
+
+/**
+ * A box widened to all or none of the rows and planes that a wall reads and that go together (assembly/fdtd/walls.ts); at
+ * least one goes with the wall itself.
+ */
+function wholeWalls({ cells, walls }: Layout, { from, to }: CellBox): CellBox {
+  if (AXES.some((a) => from[a] >= to[a])) return { from: [0, 0, 0], to: [0, 0, 0] };
+  const span = (a: 1 | 2): [number, number] => {
+    const low = Math.max(1, walls.reach[2 * a]!);
+    // The last cell outside what a high wall reads.
+    const high = cells[a] - 1 - Math.max(1, walls.reach[2 * a + 1]!);
+    return [
+      from[a] <= low ? 0 : Math.max(0, Math.min(from[a], high)),
+      to[a] > high ? cells[a] : Math.max(low + 1, to[a]),
+    ];
+  };
+  const [y, z] = [span(1), span(2)];
+  return { from: [from[0], y[0], z[0]], to: [to[0], y[1], z[1]] };
 }
 
 /** Runs a problem in the calling thread alone. */

@@ -1,4 +1,5 @@
-import { boundaryText, type Plan, type PlannedPlace, type PlannedSetup, planSchema } from '../compare/planResult.ts';
+import { boundaryText } from '../compare/boundaryWords.ts';
+import { type Plan, type PlannedPlace, type PlannedSetup, planSchema } from '../compare/planResult.ts';
 import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { type Markup, markup, printable } from './markup.ts';
 import { page } from './page.ts';

@@ -1,26 +1,15 @@
+import { boundaryText } from '../compare/boundaryWords.ts';
 import { decibels } from '../elementary/elementary.ts';
 import { formatDecibels, formatQuantity } from '../elementary/quantity.ts';
-import { type Boundary, FACES, type Scenario } from '../scenario/model.ts';
+import { FACES, type Scenario } from '../scenario/model.ts';
 import type { Answers } from './answers.ts';
 import type { FreeSpacePlan } from './freeSpace.ts';
 import type { Places } from './places.ts';
 import type { Question } from './question.ts';
 
-/** A wall in a few words. */
-export function describeWall(boundary: Boundary): string {
-  switch (boundary.type) {
-    case 'pec':
-      return 'perfect conductor';
-    case 'mur1':
-      return 'Mur 1';
-    case 'cpml':
-      return `CPML, ${boundary.layers} layers`;
-  }
-}
-
 /** The walls in a few words: "CPML, 10 layers", or face by face where they differ. */
 export function describeBoundary({ grid }: Scenario): string {
-  const walls = FACES.map((face) => describeWall(grid.boundary[face]));
+  const walls = FACES.map((face) => boundaryText(grid.boundary[face]));
   if (walls.every((wall) => wall === walls[0])) return walls[0]!;
   return FACES.map((face, f) => `${face} ${walls[f]}`).join('; ');
 }

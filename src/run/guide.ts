@@ -1,8 +1,8 @@
 import { asin, atan2, cos, sin } from '../elementary/elementary.ts';
-import { methodOf } from '../fdtd/boundaries/catalogue.ts';
 import type { GridProblem } from '../fdtd/problem.ts';
 import type { EdgeCurrents } from '../gridding/edges.ts';
 import { type Axis, type Boundary, FACES, type Face, type Medium, type Scenario } from '../scenario/model.ts';
+import { cellsBehind } from '../scenario/walls.ts';
 import { makeWaveform } from '../scenario/waveforms.ts';
 import { REFLECTION_MARGIN, reflectionFloor } from './freeSpace.ts';
 import type { Question } from './question.ts';
@@ -73,7 +73,7 @@ export function guideFor(
   const long = Math.ceil((medium.speed * steps * timeStep) / (2 * dx)) + 20;
   const waveform = makeWaveform({ type: 'modulatedGaussian', amplitude: 1, delay: LEAD * sigma, sigma, frequency });
   const guide = (end: number, boundary: Boundary): GridProblem => {
-    const layers = methodOf(boundary).layers(boundary);
+    const layers = cellsBehind(boundary);
     const conductor: Boundary = { type: 'pec' };
     return {
       boxCells: [long + SHEET + end, across, 2],

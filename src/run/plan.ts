@@ -1,5 +1,6 @@
 import { memoryLimit, threadsAvailable } from '#platform';
-import { boundaryText, type Plan, type PlannedSetup } from '../compare/planResult.ts';
+import { boundaryText } from '../compare/boundaryWords.ts';
+import type { Plan, PlannedSetup } from '../compare/planResult.ts';
 import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import type { EdgeCurrents } from '../gridding/edges.ts';
 import { type Bounds, sourceBounds } from '../scenario/distance.ts';

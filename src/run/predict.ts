@@ -1,4 +1,5 @@
 import { bandOf } from '../compare/band.ts';
+import { boundaryText } from '../compare/boundaryWords.ts';
 import { energy } from '../compare/budget.ts';
 import { pointError } from '../compare/pointError.ts';
 import { magnitudes, spectrumOf } from '../compare/spectrum.ts';
@@ -7,7 +8,7 @@ import { predictGridField, predictLatticeError } from '../lattice/predict.ts';
 import { predictGridFieldBySpectrum, predictLatticeErrorBySpectrum } from '../lattice/spectral.ts';
 import { exactHistory } from '../retarded/history.ts';
 import { sourceBounds } from '../scenario/distance.ts';
-import type { Axis, Scenario, Vec3 } from '../scenario/model.ts';
+import type { Axis, Boundary, Scenario, Vec3 } from '../scenario/model.ts';
 import { type FieldHistory, type Instants, instantsOf, type SamplePoints, samplePoints } from '../trace/trace.ts';
 import { questionOf, sampleInterval } from './question.ts';
 
@@ -167,20 +168,23 @@ const CPML_REFLECTION_DB: Readonly<Record<number, number>> = { 6: -71, 8: -83, 1
 
 /** Whether walls are known well enough to be predicted. */
 export const isPredictable = (wall: Wall): boolean =>
-  wall.type !== 'cpml' || CPML_REFLECTION_DB[wall.layers ?? 0] !== undefined;
+  wall.type === 'pec' || wall.type === 'mur1' || reflectionOf(wall) !== undefined;
+
+const reflectionOf = ({ type, layers }: Wall): number | undefined =>
+  type === 'cpml' ? CPML_REFLECTION_DB[layers ?? 0] : undefined;
 
 /** The boundary part. @throws RangeError for walls that are not predictable */
 export function boundaryErrors({ pec, mur1 }: WallErrors, wall: Wall): ErrorList {
   if (wall.type === 'mur1') return mur1;
   if (wall.type === 'pec') return pec;
-  const dB = CPML_REFLECTION_DB[wall.layers ?? 0];
-  if (dB === undefined) throw new RangeError(`What a CPML of ${wall.layers} layers sends back was not measured.`);
+  const dB = reflectionOf(wall);
+  if (dB === undefined) throw new RangeError(`What ${boundaryText(wall)} sends back was not measured.`);
   const share = fromDecibels(dB);
   return pec.map((e) => share * e);
 }
 
 export interface Wall {
-  readonly type: 'cpml' | 'mur1' | 'pec';
+  readonly type: Boundary['type'];
   readonly layers?: number | undefined;
 }
 

@@ -5,6 +5,7 @@ import type { Face, Scenario } from '../scenario/model.ts';
 import { FACES } from '../scenario/model.ts';
 import { shortestWavelength } from '../scenario/shortest.ts';
 import { stepsOf, timeStepOf } from '../scenario/sites.ts';
+import { cellsBehind } from '../scenario/walls.ts';
 
 /** A scenario with what both solvers derive from it alike: the gridded sources, the time step, how many steps. */
 export interface Question {
@@ -45,12 +46,7 @@ export function sampleInterval({ highestFrequency, timeStep, steps }: Question):
 export function boxProblem(question: Question, samples: readonly SampleGroup[], fusedMultiplyAdd = false): GridProblem {
   const { scenario, gridded, timeStep, steps } = question;
   const { grid, medium } = scenario;
-  const pad = Object.fromEntries(
-    FACES.map((face) => {
-      const wall = grid.boundary[face];
-      return [face, wall.type === 'cpml' ? wall.layers : 0];
-    }),
-  ) as Record<Face, number>;
+  const pad = Object.fromEntries(FACES.map((face) => [face, cellsBehind(grid.boundary[face])])) as Record<Face, number>;
   return {
     boxCells: grid.cells,
     pad,

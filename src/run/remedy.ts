@@ -1,4 +1,5 @@
-import { boundaryText, type PlannedSetup } from '../compare/planResult.ts';
+import { boundaryText } from '../compare/boundaryWords.ts';
+import type { PlannedSetup } from '../compare/planResult.ts';
 import { type Remedy, type Result, withinTolerance } from '../compare/result.ts';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { FACES, type Scenario } from '../scenario/model.ts';

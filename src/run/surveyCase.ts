@@ -1,15 +1,16 @@
 import { memoryLimit } from '#platform';
+import { boundaryText } from '../compare/boundaryWords.ts';
 import type { Reflection } from '../compare/reflection.ts';
 import type { Outcome, ReflectionResult } from '../compare/surveyResult.ts';
 import { decibels } from '../elementary/elementary.ts';
-import { methodOf } from '../fdtd/boundaries/catalogue.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import { sourceBounds } from '../scenario/distance.ts';
 import { FACES, type Scenario } from '../scenario/model.ts';
+import { cellsBehind } from '../scenario/walls.ts';
 import { type Asked, answer, type Means } from './answers.ts';
 import { prepareCase } from './compare.ts';
 import { conclude } from './conclude.ts';
-import { describeBoundary, describeWall } from './describe.ts';
+import { describeBoundary } from './describe.ts';
 import { measureAngles, measureReflection, type WallAngles } from './reflection.ts';
 
 /**
@@ -49,7 +50,7 @@ export async function runCase(
 
 function wallsOf(scenario: Scenario): Outcome['walls'] {
   const { grid, sources } = scenario;
-  const layers = FACES.map((face) => methodOf(grid.boundary[face]).layers(grid.boundary[face]));
+  const layers = FACES.map((face) => cellsBehind(grid.boundary[face]));
   const bounds = sources.map(sourceBounds);
   const clearance = Math.min(
     ...bounds.flatMap(({ from, to }) =>
@@ -100,7 +101,7 @@ function reflectionResult(
           ? [written(points[worst]!, worst, null)]
           : [],
     angles: angles.map(({ wall, faces, frequency, floor: own, angles: theta, reflected }) => ({
-      wall: describeWall(wall),
+      wall: boundaryText(wall),
       faces,
       frequency,
       cellsPerWavelength: (question.cellsPerWavelength * question.highestFrequency) / frequency,

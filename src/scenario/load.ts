@@ -1,7 +1,7 @@
 import { parse as parseWithLocations } from '@humanwhocodes/momoa';
 import type { z } from 'zod';
 import { exp } from '../elementary/elementary.ts';
-import { formatQuantity } from '../elementary/quantity.ts';
+import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
 import { mediumOf } from './constants.ts';
 import { type Curve, circle, norm, polyline, scale, sub } from './curve.ts';
 import { type Bounds, distanceToSources, firstArrival, sourceBounds } from './distance.ts';
@@ -25,10 +25,13 @@ import { decaying, hat, standing } from './profiles.ts';
 import {
   CPML_DEFAULTS,
   gridSchema,
+  HIGDON_DEFAULTS,
+  LIAO_DEFAULTS,
   LIMITS,
   mediumSchema,
   observerSchema,
   planeSchema,
+  SPLIT_PML_DEFAULTS,
   scenarioSchema,
   sourceSchema,
   TWO_FORMS,
@@ -37,6 +40,7 @@ import { SIGNIFICANT, shortestWavelength } from './shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
 import { resolved } from './table.ts';
 import { parseQuantity, show } from './units.ts';
+import { cellsBehind, cellsRead } from './walls.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 import { makeWaveform } from './waveforms.ts';
 
@@ -255,14 +259,11 @@ function buildGrid(
   const { to, cells } = boxOfWholeCells;
 
   const boundary = boundaryOf(given.boundary, cellSize, medium);
-  const layers = (face: Face) => {
-    const wall = boundary[face];
-    return wall.type === 'cpml' ? wall.layers : 0;
-  };
-  const total = [0, 1, 2].reduce(
-    (product, a) => product * (cells[a]! + layers(FACES[2 * a]!) + layers(FACES[2 * a + 1]!)),
-    1,
-  );
+  const across = [0, 1, 2].map((a) => {
+    const [low, high] = [boundary[FACES[2 * a]!], boundary[FACES[2 * a + 1]!]];
+    return cells[a]! + cellsBehind(low) + cellsBehind(high);
+  });
+  const total = across.reduce((product, n) => product * n, 1);
   if (!(total <= MAX_CELLS[precision])) {
     report(
       ['grid', 'cellSize'],
@@ -272,6 +273,7 @@ function buildGrid(
   }
 
   const timeStep = timeStepOf({ cellSize, courant }, medium);
+  checkWalls(boundary, across, given.boundary, { cellSize, timeStep }, medium, report);
   if (duration !== undefined) {
     const steps = stepsOf(duration, timeStep);
     if (!(steps <= MAX_STEPS))
@@ -333,16 +335,34 @@ type GivenWall = Extract<GivenBoundary, { type: string }>;
 function boundaryOf(given: GivenBoundary | undefined, cellSize: Vec3, medium: Medium): Record<Face, Boundary> {
   const ofFace = (face: Face, normal: Axis): Boundary => {
     const wall: GivenWall = given === undefined ? { type: 'cpml' } : 'type' in given ? given : given[face];
-    if (wall.type !== 'cpml') return wall;
-    const { layers, grading, kappaMax, sigmaFactor } = CPML_DEFAULTS;
-    return {
-      type: 'cpml',
-      layers: wall.layers ?? layers,
-      grading: wall.grading ?? grading,
-      kappaMax: wall.kappaMax ?? kappaMax,
-      alphaFrequency: wall.alphaFrequency ?? defaultAlphaFrequency(cellSize[normal], medium),
-      sigmaFactor: wall.sigmaFactor ?? sigmaFactor,
-    };
+    switch (wall.type) {
+      case 'cpml':
+        return {
+          type: 'cpml',
+          layers: wall.layers ?? CPML_DEFAULTS.layers,
+          grading: wall.grading ?? CPML_DEFAULTS.grading,
+          kappaMax: wall.kappaMax ?? CPML_DEFAULTS.kappaMax,
+          alphaFrequency: wall.alphaFrequency ?? defaultAlphaFrequency(cellSize[normal], medium),
+          sigmaFactor: wall.sigmaFactor ?? CPML_DEFAULTS.sigmaFactor,
+        };
+      case 'splitPml':
+        return {
+          type: 'splitPml',
+          layers: wall.layers ?? SPLIT_PML_DEFAULTS.layers,
+          grading: wall.grading ?? SPLIT_PML_DEFAULTS.grading,
+          sigmaFactor: wall.sigmaFactor ?? SPLIT_PML_DEFAULTS.sigmaFactor,
+        };
+      case 'higdon2':
+        return {
+          type: 'higdon2',
+          angles: wall.angles ?? HIGDON_DEFAULTS.angles,
+          damping: wall.damping ?? HIGDON_DEFAULTS.damping,
+        };
+      case 'liao':
+        return { type: 'liao', damping: wall.damping ?? LIAO_DEFAULTS.damping };
+      default:
+        return wall;
+    }
   };
   return {
     'x-': ofFace('x-', 0),
@@ -352,6 +372,44 @@ function boundaryOf(given: GivenBoundary | undefined, cellSize: Vec3, medium: Me
     'z-': ofFace('z-', 2),
     'z+': ofFace('z+', 2),
   };
+}
+
+/** Berenger's σmaxΔt/ε: above it e^(σΔt/ε) magnifies rounding (src/fdtd/boundaries/splitPml.ts). */
+const MOST_LOST_A_STEP = 6;
+
+/** What walls ask of the lattice as a whole. */
+function checkWalls(
+  boundary: Record<Face, Boundary>,
+  across: readonly number[],
+  given: GivenBoundary | undefined,
+  { cellSize, timeStep }: { readonly cellSize: Vec3; readonly timeStep: number },
+  medium: Medium,
+  report: Report,
+): void {
+  const oneForAll = given === undefined || 'type' in given;
+  const told = new Set<string>();
+  FACES.forEach((face, f) => {
+    const wall = boundary[face];
+    const path = ['grid', 'boundary', ...(oneForAll ? [] : [face])];
+    const a = f >> 1;
+    const tell = (key: string | null, what: string) => {
+      const full = key === null ? path : [...path, key];
+      if (!told.has(full.join('.'))) report(full, what);
+      told.add(full.join('.'));
+    };
+    if (cellsRead(wall) >= across[a]!)
+      tell(
+        null,
+        `is ${wall.type}, which reads ${cellsRead(wall)} cells inward; there are ${across[a]} cells along ${'xyz'[a]}; use smaller cells, a larger box or another boundary`,
+      );
+    if (wall.type !== 'splitPml') return;
+    const each = (0.8 * (wall.grading + 1) * medium.speed * timeStep) / cellSize[a]!;
+    if (wall.sigmaFactor * each > MOST_LOST_A_STEP)
+      tell(
+        'sigmaFactor',
+        `is ${wall.sigmaFactor}, with grading ${wall.grading} a loss σmaxΔt/ε of ${formatNumber(wall.sigmaFactor * each, 3)} a step; the limit is ${MOST_LOST_A_STEP}; use ${formatNumber(MOST_LOST_A_STEP / each, 2)} or less, or a lower grading`,
+      );
+  });
 }
 
 /** f_α = αmax/(2πε) of αmax = 0.05/(ηh), Hz; h (m) the cell along the normal. */

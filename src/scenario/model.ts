@@ -78,7 +78,29 @@ export type Source = Filament | Dipole;
 
 export type Boundary =
   | { readonly type: 'pec' }
+  | { readonly type: 'pmc' }
   | { readonly type: 'mur1' }
+  | { readonly type: 'mur2' }
+  | {
+      readonly type: 'higdon2';
+      /** the two angles of incidence that nothing returns from, rad from the normal */
+      readonly angles: readonly [number, number];
+      /** d of src/fdtd/boundaries/higdon2.ts */
+      readonly damping: number;
+    }
+  | {
+      readonly type: 'liao';
+      /** d of src/fdtd/boundaries/liao.ts */
+      readonly damping: number;
+    }
+  | {
+      readonly type: 'splitPml';
+      readonly layers: number;
+      /** m of σ = σmax (depth/thickness)^m */
+      readonly grading: number;
+      /** σmax in units of 0.8 (m + 1)/(η h) */
+      readonly sigmaFactor: number;
+    }
   | {
       readonly type: 'cpml';
       readonly layers: number;

@@ -438,27 +438,69 @@ export const sourceSchema = oneOf('a source', SOURCES, [
   }),
 ]);
 
-export const BOUNDARIES = ['pec', 'mur1', 'cpml'] as const;
+export const BOUNDARIES = ['pec', 'pmc', 'mur1', 'mur2', 'higdon2', 'liao', 'cpml', 'splitPml'] as const;
 
 /** Defaults of a CPML; that of alphaFrequency depends on cells and medium, see load.ts. */
 export const CPML_DEFAULTS = { layers: 10, grading: 3, kappaMax: 1, sigmaFactor: 1 } as const;
+
+/** Defaults of a split-field PML: those of a CPML. */
+export const SPLIT_PML_DEFAULTS = { layers: 10, grading: 3, sigmaFactor: 1 } as const;
+
+/** Angles, rad, at which Higdon's condition returns nothing, and its damping. */
+export const HIGDON_DEFAULTS = { angles: [0, Math.PI / 4], damping: 0.01 } as const;
+/** Nearer to grazing a condition for one angle returns nearly all of every other. */
+const STEEPEST_ANGLE = (85 * Math.PI) / 180;
+
+export const LIAO_DEFAULTS = { damping: 0.01 } as const;
 
 const within = (low: number, high: number, what: string) => {
   const error = expected(`${what} from ${low} to ${high}`);
   return z.number({ error }).gte(low, { error }).lte(high, { error }).optional();
 };
 
+const layers = (fallback: number) =>
+  z
+    .int({ error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+    .gte(1, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+    .lte(LIMITS.layers, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
+    .optional()
+    .describe(`Cells of thickness, outside the box (default ${fallback}).`);
+
+const incidence = transformed((given) => {
+  const parsed = parseQuantity(given, 'angle');
+  const inRange = 'reason' in parsed || (parsed.value >= 0 && parsed.value <= STEEPEST_ANGLE);
+  return inRange ? parsed : { reason: `is ${show(given)}; it must be an angle from 0 to 85 degrees, such as "45 deg"` };
+}, 'an angle from 0 to 85 degrees, such as "45 deg"');
+
+const damping = (fallback: number) =>
+  within(0, 0.2, 'a number').describe(
+    `Damping d a cell; 0 is the undamped original, which drifts (default ${fallback}).`,
+  );
+
 const boundary = oneOf('a boundary', BOUNDARIES, [
   record('a perfect conductor', { type: tag('pec', 'Perfect electric conductor: the worst case, for scale.') }),
+  record('a magnetic conductor', {
+    type: tag('pmc', 'Perfect magnetic conductor: tangential H vanishes; a plane of symmetry.'),
+  }),
   record('a Mur boundary', { type: tag('mur1', 'First-order absorbing wall (Mur 1981).') }),
+  record('a second-order Mur boundary', {
+    type: tag('mur2', 'Second-order absorbing wall, first-order at its rims (Mur 1981).'),
+  }),
+  record('a Higdon boundary', {
+    type: tag('higdon2', 'Second-order absorbing wall for two angles of incidence (Higdon 1986, 1987).'),
+    angles: z
+      .tuple([incidence, incidence], { error: expected('two angles of incidence, such as ["0 deg", "45 deg"]') })
+      .optional()
+      .describe('Angles from the normal that nothing returns from, rad (default 0° and 45°).'),
+    damping: damping(HIGDON_DEFAULTS.damping),
+  }),
+  record('a Liao boundary', {
+    type: tag('liao', 'Multi-transmitting wall of order 2 (Liao and others 1984).'),
+    damping: damping(LIAO_DEFAULTS.damping),
+  }),
   record('a CPML', {
     type: tag('cpml', 'Convolutional perfectly matched layer (Roden & Gedney 2000).'),
-    layers: z
-      .int({ error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
-      .gte(1, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
-      .lte(LIMITS.layers, { error: expected(`a whole number from 1 to ${LIMITS.layers}`) })
-      .optional()
-      .describe(`Cells of thickness, outside the box (default ${CPML_DEFAULTS.layers}).`),
+    layers: layers(CPML_DEFAULTS.layers),
     grading: within(0, 10, 'an exponent').describe(
       `Exponent m of σ = σmax (depth/thickness)^m and of κ (default ${CPML_DEFAULTS.grading}).`,
     ),
@@ -470,6 +512,16 @@ const boundary = oneOf('a boundary', BOUNDARIES, [
       ),
     sigmaFactor: within(0, 100, 'a number').describe(
       `σmax in units of 0.8 (grading + 1)/(ηh) (default ${CPML_DEFAULTS.sigmaFactor}).`,
+    ),
+  }),
+  record('a split-field PML', {
+    type: tag('splitPml', 'Perfectly matched layer of split fields (Berenger 1994).'),
+    layers: layers(SPLIT_PML_DEFAULTS.layers),
+    grading: within(0, 10, 'an exponent').describe(
+      `Exponent m of σ = σmax (depth/thickness)^m (default ${SPLIT_PML_DEFAULTS.grading}).`,
+    ),
+    sigmaFactor: within(0, 100, 'a number').describe(
+      `σmax in units of 0.8 (grading + 1)/(ηh); σmaxΔt/ε may be 6 at most (default ${SPLIT_PML_DEFAULTS.sigmaFactor}).`,
     ),
   }),
 ]).describe('What the wall does to outgoing waves.');

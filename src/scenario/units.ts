@@ -8,6 +8,7 @@ export const KINDS = {
   rate: { unit: '1/s', words: 'a rate', example: '"4e7 1/s" or 4e7 (per second)' },
   current: { unit: 'A', words: 'a current', example: '"1 A" or 1 (amperes)' },
   wavenumber: { unit: '1/m', words: 'a wavenumber', example: '"62.8 rad/m" or 62.8 (radians per metre)' },
+  angle: { unit: 'rad', words: 'an angle', example: '"45 deg" or 0.785 (radians)' },
 } as const;
 export type Kind = keyof typeof KINDS;
 
@@ -19,6 +20,7 @@ const KIND_OF_UNIT: Readonly<Record<Kind, string>> = {
   rate: 'frequency',
   current: 'current',
   wavenumber: 'wavenumber',
+  angle: 'angle',
 };
 
 /** A number, or why there is none: a predicate that follows the name of the key, without a full stop. */

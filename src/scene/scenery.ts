@@ -8,6 +8,7 @@ import type { Marker, Pane, Plane, Scene, Stroke } from '../draw/scene.ts';
 import { formatQuantity } from '../elementary/quantity.ts';
 import { PALETTE } from '../report/palette.ts';
 import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
+import { cellsBehind } from '../scenario/walls.ts';
 import type { Film } from './film.ts';
 import { distanceOutlines, Pictures, partScale, type Side, trustPlanes, trustScale } from './pictures.ts';
 import { type QuantityKey, quantityOf } from './quantity.ts';
@@ -120,8 +121,7 @@ export class Scenery {
     if (this.furniture?.scenario === scenario) return this.furniture;
     const { from, to } = scenario.grid.box;
     const layers = (face: number, a: number) => {
-      const wall = scenario.grid.boundary[FACES[face]!];
-      return wall.type === 'cpml' ? wall.layers * scenario.grid.cellSize[a]! : 0;
+      return cellsBehind(scenario.grid.boundary[FACES[face]!]) * scenario.grid.cellSize[a]!;
     };
     const outer: Box = {
       from: [0, 1, 2].map((a) => from[a]! - layers(2 * a, a)) as unknown as Vec3,

@@ -1,6 +1,6 @@
 /** Runs a problem through the kernel and through the plain reference, and says where they differ first. */
 import { readField, writeField } from '../../src/fdtd/fields.ts';
-import { FACES_OF, latticeCells } from '../../src/fdtd/layout.ts';
+import { FACES_OF, latticeCells, wallOf } from '../../src/fdtd/layout.ts';
 import type { GridProblem } from '../../src/fdtd/problem.ts';
 import { type GridOptions, type GridResult, type GridRun, lead, prepareGridRun } from '../../src/fdtd/run.ts';
 import { keptCount, keptIndex } from '../../src/fdtd/samples.ts';
@@ -18,14 +18,15 @@ function respectWalls(problem: GridProblem, starts: Float64Array[], bias: number
           const where = [i, j, k];
           const outside = where.some((w, a) => w === n[a] && !(field < 3 && a !== field));
           const held =
-            field < 3 && where.some((w, a) => a !== field && (w === 0 || w === n[a]) && !isMur(problem, a, w));
+            field < 3 && where.some((w, a) => a !== field && (w === 0 || w === n[a]) && !moves(problem, a, w));
           if (outside || held) start[node] = bias;
         }
   });
 }
 
-function isMur(problem: GridProblem, axis: number, where: number): boolean {
-  return problem.boundary[FACES_OF[axis]![where === 0 ? 0 : 1]!].type === 'mur1';
+/** Whether a wall changes tangential e. */
+function moves(problem: GridProblem, axis: number, where: number): boolean {
+  return wallOf(problem, FACES_OF[axis]![where === 0 ? 0 : 1]!).type === 'linear';
 }
 
 export interface Comparison {

@@ -7,6 +7,7 @@ import type { Schedule } from '../../src/fdtd/schedule.ts';
 import type { EdgeCurrents } from '../../src/gridding/edges.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
 import { type Boundary, FACES, type Face } from '../../src/scenario/model.ts';
+import { cellsBehind, cellsRead } from '../../src/scenario/walls.ts';
 import type { Waveform } from '../../src/scenario/waveform.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
 
@@ -96,14 +97,22 @@ export class Dice {
 }
 
 function randomBoundary(dice: Dice, most: number): Boundary {
-  const type = dice.pick(['pec', 'mur1', 'cpml', 'cpml'] as const);
-  if (type !== 'cpml' || most < 1) return type === 'mur1' ? MUR : PEC;
-  return cpml(dice.whole(1, most), {
-    grading: dice.real(2, 4),
-    kappaMax: dice.real(1, 6),
-    alphaFrequency: dice.real(0, 2e9),
-    sigmaFactor: dice.real(0.5, 1.5),
-  });
+  const type = dice.pick(['pec', 'pmc', 'mur1', 'mur2', 'mur2', 'higdon2', 'liao', 'cpml', 'splitPml'] as const);
+  const layers = dice.whole(1, most);
+  const grading = dice.real(2, 4);
+  const sigmaFactor = dice.real(0.5, 1.5);
+  switch (type) {
+    case 'cpml':
+      return cpml(layers, { grading, kappaMax: dice.real(1, 6), alphaFrequency: dice.real(0, 2e9), sigmaFactor });
+    case 'splitPml':
+      return { type, layers, grading, sigmaFactor };
+    case 'higdon2':
+      return { type, angles: [dice.real(0, 1.4), dice.real(0, 1.4)], damping: dice.real(0, 0.05) };
+    case 'liao':
+      return { type, damping: dice.real(0, 0.05) };
+    default:
+      return { type };
+  }
 }
 
 /** A random problem of some thousand cells: odd sizes, unequal cells, another boundary on every face. */
@@ -112,15 +121,17 @@ export function randomProblem(seed: number): GridProblem {
   const cellSize: Triple = [dice.real(1e-3, 4e-3), dice.real(1e-3, 4e-3), dice.real(1e-3, 4e-3)];
   const medium = mediumOf(dice.real(1, 5), dice.real(1, 2));
   const boxCells: Triple = [dice.whole(2, 15), dice.whole(2, 10), dice.whole(2, 10)];
-  const same = dice.pick([undefined, undefined, PEC, MUR, cpml(dice.whole(1, 10))]);
+  const same = dice.pick([undefined, undefined, undefined, cpml(dice.whole(1, 10)), randomBoundary(dice, 10)]);
   const boundary = Object.fromEntries(FACES.map((face) => [face, same ?? randomBoundary(dice, 7)])) as Record<
     Face,
     Boundary
   >;
   const pad = Object.fromEntries(
-    FACES.map((face) => {
+    FACES.map((face, f) => {
       const b = boundary[face];
-      return [face, dice.whole(0, 2) + (b.type === 'cpml' ? b.layers : 0)];
+      // Room for what the wall reads, however small the box.
+      const room = cellsRead(b) + 1 - boxCells[f >> 1]!;
+      return [face, dice.whole(0, 2) + Math.max(cellsBehind(b), room)];
     }),
   ) as Record<Face, number>;
   const axisName = ['x', 'y', 'z'] as const;

@@ -17,8 +17,7 @@ type Cpml = Extract<Boundary, { type: 'cpml' }>;
  *
  * 0 ≤ b < 1, so ψ cannot grow by itself; stable in practice (no proof) wherever Yee's scheme is.
  */
-export const cpml: BoundaryMethod<Cpml> = {
-  layers: (boundary) => boundary.layers,
+export const cpml: Required<BoundaryMethod<Cpml>> = {
   stretch(boundary, depth, { cell, timeStep, medium }) {
     const graded = pow(depth, boundary.grading);
     const sigma = ((boundary.sigmaFactor * 0.8 * (boundary.grading + 1)) / (medium.impedance * cell)) * graded;

@@ -1,6 +1,5 @@
 import type { Boundary } from '../../scenario/model.ts';
-import type { BoundaryMethod } from './boundary.ts';
-import { PLAIN } from './boundary.ts';
+import { type BoundaryMethod, type FaceLattice, type LinearWall, pathInCells } from './boundary.ts';
 
 /**
  * Mur's first-order condition: the one-way wave equation (∂t − v∂n) E = 0 at the wall (Engquist & Majda 1977, first
@@ -12,10 +11,11 @@ import { PLAIN } from './boundary.ts';
  * everything at grazing. A static field near a wall is lost. Stable for s ≤ 1, which the Courant limit implies.
  */
 export const mur1: BoundaryMethod<Extract<Boundary, { type: 'mur1' }>> = {
-  layers: () => 0,
-  stretch: () => PLAIN,
-  wall: (_boundary, { cell, timeStep, medium }) => {
-    const s = (medium.speed * timeStep) / cell;
-    return { type: 'mur', factor: (s - 1) / (s + 1) };
-  },
+  wall: (_boundary, at) => firstOrder(at),
 };
+
+export function firstOrder(at: FaceLattice): LinearWall {
+  const s = pathInCells(at);
+  const factor = (s - 1) / (s + 1);
+  return { type: 'linear', older: [], old: [-factor, 1], now: [factor] };
+}
