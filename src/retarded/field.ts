@@ -16,9 +16,9 @@ import {
   VECTOR,
 } from './elements.ts';
 import { delayRate, frontRounding, fronts, gradedCuts, longestPart, onset } from './panels.ts';
-import { type PieceView, viewOf } from './pieceView.ts';
+import { type PlaceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
-import { KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
+import { DEGREES, expansions, KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
 import { TermList } from './terms.ts';
 import { addWave } from './waves.ts';
 
@@ -44,6 +44,8 @@ export interface FieldValue {
   readonly errorH: number;
   readonly errorPhi: number;
   readonly errorA: number;
+  /** of the errors of E, H, φ and A what is rounding, which no refinement removes */
+  readonly rounding: readonly [number, number, number, number];
   /** evaluations of integrands and closed-form terms */
   readonly evaluations: number;
   /** false: the errors are larger than the tolerance, the evaluations being used up (at `worst`) */
@@ -87,6 +89,9 @@ const GROUPS = [
   [VECTOR, QUANTITIES],
 ] as const;
 
+/** The order in which terms are rounded: A before φ. */
+const OF_TERMS = [0, 1, 3, 2] as const;
+
 const groupNorm = (v: Float64Array, g: number): number => {
   const [from, to] = GROUPS[g]!;
   let sum = 0;
@@ -97,7 +102,7 @@ const groupNorm = (v: Float64Array, g: number): number => {
 /** One part of an integral: its value, and for each group its error and the rounding no refinement removes. */
 interface Panel {
   readonly integral: Integral;
-  readonly view: PieceView;
+  readonly view: PlaceView;
   readonly from: number;
   readonly to: number;
   readonly value: Float64Array;
@@ -164,6 +169,7 @@ function evaluate(
       if (!settings.potentials) {
         sum.fill(Number.NaN, SCALAR);
         error.fill(Number.NaN, 2);
+        floor.fill(Number.NaN, 2);
       }
       return {
         E: [sum[0]!, sum[1]!, sum[2]!],
@@ -175,6 +181,7 @@ function evaluate(
         errorH: (error[1]! + floor[1]!) / prepared.medium.permeability,
         errorPhi: error[2]! + floor[2]!,
         errorA: error[3]! + floor[3]!,
+        rounding: [floor[0]!, floor[1]! / prepared.medium.permeability, floor[2]!, floor[3]!],
         evaluations,
         converged: open.length === 0,
         ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),
@@ -207,12 +214,14 @@ function worstPanel(panels: readonly Panel[], open: readonly number[], limits: r
 }
 
 /** Bounds of the parts that an integral starts with: cut at fronts of kinks, graded towards the observer. */
-function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: PieceView, t: number) {
+function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: PlaceView, t: number) {
   const waveform = prepared.waveforms[integral.waveform]!;
   const stations = [view.start, view.end];
   if (view.nearest > view.start && view.nearest < view.end) stations.push(view.nearest);
   for (const { delay, slowness, profile } of integral.terms) {
     for (const kink of waveform.kinks) stations.push(...fronts(view, delay, slowness, k.speed, t - kink));
+    for (const seam of seamsSeen(waveform, view, delay, slowness, k.speed, t))
+      stations.push(...fronts(view, delay, slowness, k.speed, t - seam));
     for (const s of profile?.breaks ?? []) if (s > view.start && s < view.end) stations.push(s);
   }
   stations.sort((a, b) => a - b);
@@ -231,8 +240,41 @@ function* partsOf(prepared: Prepared, k: Constants, integral: Integral, view: Pi
   }
 }
 
+/** The seams of a waveform that a piece shows at t. */
+function seamsSeen(
+  { seams }: Waveform,
+  view: PlaceView,
+  delay: number,
+  slowness: number,
+  speed: number,
+  t: number,
+): readonly number[] {
+  if (seams.length === 0) return seams;
+  let earliest = Number.POSITIVE_INFINITY;
+  let latest = Number.NEGATIVE_INFINITY;
+  for (const s of [view.start, ...view.turns(slowness * speed), view.end]) {
+    view.look(s);
+    const u = t - delay - slowness * s - view.r / speed;
+    earliest = Math.min(earliest, u);
+    latest = Math.max(latest, u);
+  }
+  return seams.slice(firstAfter(seams, earliest), firstAfter(seams, latest));
+}
+
+/** The index of the first of ascending numbers that is above x. */
+function firstAfter(list: readonly number[], x: number): number {
+  let low = 0;
+  let high = list.length;
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (list[middle]! > x) high = middle;
+    else low = middle + 1;
+  }
+  return low;
+}
+
 /** Whether any part of [from, to] can be felt at t: before its start a current is zero. */
-function reached(integral: Integral, view: PieceView, from: number, to: number, t: number, speed: number): boolean {
+function reached(integral: Integral, view: PlaceView, from: number, to: number, t: number, speed: number): boolean {
   const travel = view.distance(from, to) / speed;
   return integral.terms.some(({ delay, slowness }) => t >= delay + Math.min(slowness * from, slowness * to) + travel);
 }
@@ -240,38 +282,49 @@ function reached(integral: Integral, view: PieceView, from: number, to: number, 
 /**
  * A current that starts with a jump J has w′ = J δ at its front: J D/|dτ/ds| there, D the coefficients of w′. (A front
  * exactly along a stationary delay is the caustic of a uniform current switched on at once; it has no finite value.)
+ * Where the slope jumps by K, a rounding δt of the instant moves the front and with it K D δt/|dτ/ds|.
  */
 function addFronts(
   prepared: Prepared,
   k: Constants,
   integral: Integral,
-  view: PieceView,
+  view: PlaceView,
   t: number,
   total: Float64Array,
   rounding: Float64Array,
 ): void {
+  if (integral.potentialsOnly) return;
+  const waveform = prepared.waveforms[integral.waveform]!;
   const jump = onset(prepared, integral);
-  if (jump === 0 || integral.potentialsOnly) return;
   for (const { factor, delay, slowness, profile } of integral.terms)
-    for (const s of fronts(view, delay, slowness, k.speed, t)) {
-      const rate = delayRate(view, s, slowness, k.speed);
-      if (rate === 0) continue;
-      const amplitude = profile ? profile.value(s) : 1;
-      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, 0, element);
-      for (let c = 0; c < QUANTITIES; c++) {
-        front[c] = (factor * jump * element[SLOPE + c]!) / rate;
-        total[c]! += front[c]!;
+    for (const kink of waveform.kinks)
+      for (const s of fronts(view, delay, slowness, k.speed, t - kink)) {
+        const rate = delayRate(view, s, slowness, k.speed);
+        if (rate === 0) continue;
+        const amplitude = profile ? profile.value(s) : 1;
+        filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, 0, element);
+        const before = kink === 0 ? 0 : waveform.slope(kink * (1 - 4 * Number.EPSILON));
+        const bend = waveform.slope(kink) - before;
+        const moved = (instantRounding(t, delay, slowness * s, view.r / k.speed) * bend) / rate;
+        const impulse = kink === 0 ? (factor * jump) / rate : 0;
+        for (let c = 0; c < QUANTITIES; c++) {
+          front[c] = element[SLOPE + c]!;
+          total[c]! += impulse * front[c]!;
+        }
+        const relative = Math.abs(impulse) * frontRounding(view, rate, t, k.speed) + Math.abs(factor * moved);
+        for (let g = 0; g < 4; g++) rounding[g]! += relative * groupNorm(front, g);
       }
-      const relative = frontRounding(view, rate, t, k.speed);
-      for (let g = 0; g < 4; g++) rounding[g]! += relative * groupNorm(front, g);
-    }
 }
+
+/** What t − delay − slowness·s − R/v is rounded to, s. */
+const instantRounding = (t: number, delay: number, along: number, travel: number): number =>
+  Number.EPSILON * (Math.abs(t) + Math.abs(delay) + Math.abs(along) + 2 * travel);
 
 const element = new Float64Array(COEFFICIENTS);
 const terms = new TermList();
 const wave = new Float64Array(4);
 const samples = new Float64Array(KRONROD_POINTS * QUANTITIES);
-const difference = new Float64Array(QUANTITIES);
+const squares = new Float64Array(DEGREES);
 const front = new Float64Array(QUANTITIES);
 const noise = new Float64Array(QUANTITIES);
 
@@ -280,7 +333,7 @@ function integrate(
   prepared: Prepared,
   k: Constants,
   integral: Integral,
-  view: PieceView,
+  view: PlaceView,
   from: number,
   to: number,
   t: number,
@@ -290,10 +343,11 @@ function integrate(
   const value = new Float64Array(QUANTITIES);
   const error = new Float64Array(4);
   const rounding = new Float64Array(4);
-  difference.fill(0);
   samples.fill(0);
   noise.fill(0);
   const [noiseCharge, noiseW, noiseSlope] = roundingsOf(waveform);
+  // What rounding of places does to instants.
+  const placed = (Number.EPSILON * extentOf(view, from, to)) / k.speed;
   for (let m = 0; m < KRONROD_POINTS; m++) {
     const s = (from + to) / 2 + half * kronrod.nodes[m]!;
     view.look(s);
@@ -301,55 +355,72 @@ function integrate(
     let charge = 0;
     let w = 0;
     let slope = 0;
+    let factors = 0;
+    let shiftCharge = 0;
+    let shiftW = 0;
+    let shiftSlope = 0;
     integral.terms.forEach(({ factor, delay, slowness, profile }, n) => {
-      const u = t - delay - slowness * s - view.r / k.speed;
+      const travel = view.r / k.speed;
+      const u = t - delay - slowness * s - travel;
       if (u >= 0) {
         if (profile) charge += factor * waveform.charge(u);
-        w += factor * waveform.value(u);
-        slope += factor * waveform.slope(u);
+        const [current, rate] = [waveform.value(u), waveform.slope(u)];
+        w += factor * current;
+        slope += factor * rate;
+        const shift = Math.abs(factor) * (placed + instantRounding(t, delay, slowness * s, travel));
+        factors += Math.abs(factor);
+        shiftCharge += shift * Math.abs(current);
+        shiftW += shift * Math.abs(rate);
+        shiftSlope += shift * bendBetween(n, m, u, rate, waveform.timeScale);
       }
       // Terms come in order of slowness, and those of one slowness share their element.
       const next = integral.terms[n + 1];
       if (next?.slowness === slowness && next.profile === profile) return;
-      if (charge === 0 && w === 0 && slope === 0) return;
+      if (factors === 0) return;
       const [amplitude, gradient] = profile ? [profile.value(s), profile.slope(s)] : [1, 0];
       filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, gradient, element);
+      const weight = half * kronrod.weights[m]!;
+      const roundedCharge = weight * (factors * noiseCharge + shiftCharge);
+      const roundedW = weight * (factors * noiseW + shiftW);
+      const roundedSlope = weight * (factors * noiseSlope + shiftSlope);
       for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++) {
         const [q, i, d] = [element[CHARGE + c]!, element[CURRENT + c]!, element[SLOPE + c]!];
         samples[base + c]! += q * charge + i * w + d * slope;
-        noise[c]! +=
-          half *
-          kronrod.weights[m]! *
-          Math.abs(factor) *
-          (Math.abs(q) * noiseCharge + Math.abs(i) * noiseW + Math.abs(d) * noiseSlope);
+        noise[c]! += Math.abs(q) * roundedCharge + Math.abs(i) * roundedW + Math.abs(d) * roundedSlope;
       }
       charge = 0;
       w = 0;
       slope = 0;
+      factors = 0;
+      shiftCharge = 0;
+      shiftW = 0;
+      shiftSlope = 0;
     });
-    for (let c = 0; c < QUANTITIES; c++) {
-      value[c]! += half * kronrod.weights[m]! * samples[base + c]!;
-      difference[c]! += half * kronrod.differences[m]! * samples[base + c]!;
-    }
+    for (let c = 0; c < QUANTITIES; c++) value[c]! += half * kronrod.weights[m]! * samples[base + c]!;
   }
-  const relative = ROUNDINGS + relativeRounding(view, from, to, t, waveform.timeScale);
+  const relative = ROUNDINGS + Number.EPSILON * (extentOf(view, from, to) / view.distance(from, to));
   let electric = 0;
   for (let g = 0; g < 4; g++) {
     const [first, last] = GROUPS[g]!;
     let size = 0;
-    let spread = 0;
     for (let m = 0; m < KRONROD_POINTS; m++) {
       let own = 0;
-      let off = 0;
       for (let c = first; c < last; c++) {
         const f = samples[m * QUANTITIES + c]!;
         own += f * f;
-        off += (f - value[c]! / (2 * half)) ** 2;
       }
       size += half * kronrod.weights[m]! * Math.sqrt(own);
-      spread += half * kronrod.weights[m]! * Math.sqrt(off);
     }
-    error[g] = kronrodError(groupNorm(difference, g), spread);
+    for (let n = 0; n < DEGREES; n++) {
+      squares[n] = 0;
+      for (let c = first; c < last; c++) {
+        let part = 0;
+        for (let m = 0; m < KRONROD_POINTS; m++)
+          part += expansions[n * KRONROD_POINTS + m]! * samples[m * QUANTITIES + c]!;
+        squares[n]! += part * part;
+      }
+    }
+    error[g] = half * kronrodError(squares);
     electric = g === 0 ? size : electric;
     if (g === 1) size = Math.max(size, electric / k.speed);
     rounding[g] = relative * size + groupNorm(noise, g);
@@ -357,10 +428,20 @@ function integrate(
   return { integral, view, from, to, value, error, rounding };
 }
 
-/** What rounding of positions and of instants does to an integrand, relatively. */
-function relativeRounding(view: PieceView, from: number, to: number, t: number, timeScale: number): number {
-  const extent = Math.abs(from) + Math.abs(to);
-  return Number.EPSILON * (extent / view.distance(from, to) + (2 * Math.abs(t)) / timeScale);
+/** Of the coordinates that places on a piece are made of, m. */
+const extentOf = (view: PlaceView, from: number, to: number): number => Math.abs(from) + Math.abs(to) + view.reach;
+
+/** u and w′(u) at the node before, by term. */
+const lastInstant: number[] = [];
+const lastSlope: number[] = [];
+
+/** |w″| about node m of term n: from one node to the next, or, where nothing tells, w′ over the time scale. */
+function bendBetween(n: number, m: number, u: number, slope: number, timeScale: number): number {
+  const gap = m === 0 ? 0 : Math.abs(u - lastInstant[n]!);
+  const change = Math.abs(slope - lastSlope[n]!);
+  lastInstant[n] = u;
+  lastSlope[n] = slope;
+  return gap > 1e-3 * timeScale ? change / gap : Math.abs(slope) / timeScale;
 }
 
 /** Adds term n at t, and its rounding: of products, of the geometry, of the instant. */
@@ -381,9 +462,10 @@ function addTerm(
   const relative = ROUNDINGS + Number.EPSILON * list.geometry[n]!;
   const [charge, current, slope] = roundingsOf(waveform);
   const { speed } = prepared.medium;
-  // A rounding of a direction turns E into B: near an axis B is right relative to |E|/v only.
+  // A rounding of a direction turns E into B: near an axis B is right relative to |E|/v only, and φ to v|A|.
   let electric = 0;
-  for (let g = 0; g < 4; g++) {
+  let carried = 0;
+  for (const g of OF_TERMS) {
     let own = 0;
     let shift = 0;
     let sample = 0;
@@ -398,14 +480,16 @@ function addTerm(
     }
     electric = g === 0 ? own : electric;
     if (g === 1) own = Math.max(own, electric / (speed * speed));
+    carried = g === 3 ? own : carried;
+    if (g === 2) own = Math.max(own, carried * speed * speed);
     rounding[g]! += relative * Math.sqrt(own) + instant * Math.sqrt(shift) + Math.sqrt(sample);
   }
 }
 
 /** What q, w and w′ of a waveform are rounded to: they are right relative to their peaks, not to their tails. */
 function roundingsOf({ peak, timeScale, finalCharge }: Waveform): readonly [number, number, number] {
-  const two = 2 * Number.EPSILON;
-  return [two * Math.max(Math.abs(finalCharge), peak * timeScale), two * peak, (two * peak) / timeScale];
+  const few = 8 * Number.EPSILON;
+  return [few * Math.max(Math.abs(finalCharge), peak * timeScale), few * peak, (few * peak) / timeScale];
 }
 
 /** All that has a closed form at `point`, as delayed waveforms. */
@@ -440,11 +524,19 @@ function relativeTo(at: Vec3, point: Vec3): readonly [number, number, number, nu
 
 const largest = (p: Vec3): number => Math.max(Math.abs(p[0]), Math.abs(p[1]), Math.abs(p[2]));
 
-/** At one instant t a gap is small if no kink of the waveform falls into it. */
+/** Gaps that a kink must lie before a gap: four points integrate a broken power of time to rounding from there on. */
+const CLEAR_OF_KINKS = 20;
+
+/** At one instant t a gap is small if no kink of the waveform falls into it, or shortly before it, and no seam. */
 function gapWithoutKink(prepared: Prepared, t: number) {
   return (index: number, from: number, gap: number) => {
-    const { kinks, timeScale } = prepared.waveforms[index]!;
-    return gap < SMALL_GAP * timeScale && !kinks.some((kink) => t - from >= kink && t - from - gap < kink);
+    const { kinks, seams, timeScale } = prepared.waveforms[index]!;
+    const late = t - from;
+    return (
+      gap < SMALL_GAP * timeScale &&
+      !kinks.some((kink) => late >= kink && late - (1 + CLEAR_OF_KINKS) * gap < kink) &&
+      firstAfter(seams, late) === firstAfter(seams, late - gap)
+    );
   };
 }
 

@@ -26,14 +26,21 @@ export interface PieceView {
   turns(bend: number): number[];
 }
 
-export function viewOf(piece: LinePiece | ArcPiece, point: Vec3): PieceView {
+/** A view from a place in space, not from infinity. */
+export interface PlaceView extends PieceView {
+  /** the largest coordinate of observer and piece: what their difference is rounded to, m */
+  readonly reach: number;
+}
+
+export function viewOf(piece: LinePiece | ArcPiece, point: Vec3): PlaceView {
   return piece.kind === 'line' ? new LineView(piece, point) : new ArcView(piece, point);
 }
 
-class LineView implements PieceView {
+class LineView implements PlaceView {
   readonly start: number;
   readonly end: number;
   readonly nearest: number;
+  readonly reach: number;
   readonly sx: number;
   readonly sy: number;
   readonly sz: number;
@@ -63,6 +70,7 @@ class LineView implements PieceView {
     this.#pz = point[2] - near[2] - beyond * d[2];
     this.#rho2 = this.#px * this.#px + this.#py * this.#py + this.#pz * this.#pz;
     this.nearest = Math.min(Math.max(this.#foot, this.start), this.end);
+    this.reach = Math.max(...point.map(Math.abs), ...near.map(Math.abs));
   }
 
   look(s: number): void {
@@ -92,10 +100,11 @@ const footBeyond = (p: Vec3, a: Vec3, d: Vec3): number =>
 
 const TURN = 2 * Math.PI;
 
-class ArcView implements PieceView {
+class ArcView implements PlaceView {
   readonly start: number;
   readonly end: number;
   readonly nearest: number;
+  readonly reach: number;
   x = 0;
   y = 0;
   z = 0;
@@ -113,6 +122,7 @@ class ArcView implements PieceView {
 
   constructor(piece: ArcPiece, point: Vec3) {
     this.#piece = piece;
+    this.reach = Math.max(...point.map(Math.abs), ...piece.centre.map(Math.abs));
     this.start = piece.s0;
     this.end = piece.s0 + piece.length;
     this.#a = footBeyond(point, piece.centre, piece.u);

@@ -120,6 +120,7 @@ export function heidler(spec: Extract<WaveformSpec, { type: 'heidler' }>): Wavef
       }
     },
     kinks: [0],
+    seams: [],
     jump: 0,
     expectedOrder: orderOfOnset(least),
     lastActivity: (level) => {

@@ -108,6 +108,7 @@ export function rampedSine(spec: Extract<WaveformSpec, { type: 'rampedSine' }>):
     value,
     slope,
     kinks: times.filter((t, m) => t !== times[m - 1]),
+    seams: [],
     jump: 0,
     expectedOrder: { order: 2, reason: 'smooth to the fourth derivative' },
     lastActivity: (level) => {
@@ -132,16 +133,18 @@ function powerOf(x: number, m: number): number {
   return power;
 }
 
-/** r and its derivatives at x, by Horner's rule for each. */
+/** r and its derivatives at x, by Horner's rule for each; beyond ½ from r(x) = 1 − r(1 − x), where nothing cancels. */
 function derivatives(x: number, out: Float64Array): void {
+  const beyond = x > 0.5;
+  const y = beyond ? 1 - x : x;
   for (let k = 0; k < out.length; k++) {
     let sum = 0;
     for (let n = RAMP.length - 1; n >= k; n--) {
       let falling = 1;
       for (let j = 0; j < k; j++) falling *= n - j;
-      sum = sum * x + falling * RAMP[n]!;
+      sum = sum * y + falling * RAMP[n]!;
     }
-    out[k] = sum;
+    out[k] = beyond ? (k === 0 ? 1 : 0) + (k % 2 === 0 ? -sum : sum) : sum;
   }
 }
 

@@ -82,6 +82,7 @@ export function table(spec: Extract<WaveformSpec, { type: 'table' }>): Waveform 
     value,
     slope,
     kinks: [times[0]!, times[last]!],
+    seams: times.slice(1, last),
     jump,
     expectedOrder:
       jump <= JUMP_REFUSED && startSlope > JUMP_REFUSED

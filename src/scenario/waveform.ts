@@ -51,6 +51,8 @@ export interface Waveform {
   slope(t: number): number;
   /** instants where a derivative jumps (none for smooth pulses whose jump at 0 is below rounding) */
   readonly kinks: readonly number[];
+  /** further instants, ascending, where a derivative beyond w″ jumps: samples of a table, which integrals are cut at */
+  readonly seams: readonly number[];
   /** |w(0⁺)| / peak: a jump radiates a front that no grid resolves */
   readonly jump: number;
   /** order of error to be expected of a second-order grid, and why (2 for smooth pulses) */

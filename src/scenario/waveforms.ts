@@ -116,6 +116,7 @@ function gaussianOfOrder(spec: GaussianSpec, k: 0 | 1): Waveform {
     value,
     slope,
     kinks: u0 > 0 || jump > ROUNDING || bell0 > ROUNDING ? [0] : [],
+    seams: [],
     jump,
     expectedOrder: orderOfJump(jump),
     lastActivity: lastSlope(slope, delay, sigma, 1 / 16),
@@ -199,6 +200,7 @@ function modulatedGaussian(spec: ModulatedSpec): Waveform {
     value,
     slope,
     kinks: u0 > 0 || exp(-0.5 * u0 * u0) > ROUNDING ? [0] : [],
+    seams: [],
     jump,
     expectedOrder: orderOfJump(jump),
     lastActivity: lastSlope(slope, delay, sigma, Math.min(1, (2 * Math.PI) / turns) / 16),
@@ -256,6 +258,7 @@ function doubleExponential(spec: DoubleExponentialSpec): Waveform {
     value,
     slope,
     kinks: [0],
+    seams: [],
     jump: 0,
     expectedOrder: {
       order: 0.34,

@@ -1,5 +1,12 @@
 import { describe, expect, test } from 'vitest';
-import { gaussLegendre, KRONROD_POINTS, kronrod, kronrodError } from '../../src/retarded/quadrature.ts';
+import {
+  DEGREES,
+  expansions,
+  gaussLegendre,
+  KRONROD_POINTS,
+  kronrod,
+  kronrodError,
+} from '../../src/retarded/quadrature.ts';
 
 /** ∫₋₁¹ x^power dx */
 const moment = (power: number) => (power % 2 === 1 ? 0 : 2 / (power + 1));
@@ -39,18 +46,46 @@ describe('quadrature rules', () => {
     expect(relative).toBeGreaterThan(0.1 * (0.01 + Math.sqrt(1.0001)) ** -256);
   });
 
-  test('the error estimate is never below the error for smooth, peaked and kinked integrands', () => {
-    const cases: [(x: number) => number, number][] = [
-      [(x) => Math.exp(x), Math.E - 1 / Math.E],
-      [(x) => 1 / (1 + 25 * x * x), (2 * Math.atan(5)) / 5],
-      [(x) => Math.abs(x - 0.1), (0.9 * 0.9 + 1.1 * 1.1) / 2],
-      [(x) => Math.cos(20 * x), Math.sin(20) / 10],
-    ];
-    for (const [f, exact] of cases) {
-      const value = sum(kronrod.nodes, kronrod.weights, f);
-      const spread = sum(kronrod.nodes, kronrod.weights, (x) => Math.abs(f(x) - value / 2));
-      const estimate = kronrodError(Math.abs(sum(kronrod.nodes, kronrod.differences, f)), spread);
-      expect(Math.abs(value - exact)).toBeLessThanOrEqual(estimate + 8 * Number.EPSILON * Math.abs(exact));
+  test('what samples hold of degrees 7 to 14: nothing of lower polynomials, all of one of its own degree', () => {
+    for (let power = 0; power < 15; power++) {
+      const held = Array.from({ length: DEGREES }, (_, n) =>
+        kronrod.nodes.reduce((total, x, m) => total + expansions[n * KRONROD_POINTS + m]! * x ** power, 0),
+      );
+      held.forEach((part, n) => {
+        if (power < n + 7 || (power - n) % 2 === 0)
+          expect(Math.abs(part)).toBeLessThan(KRONROD_POINTS * Number.EPSILON);
+        else if (power === n + 7) expect(part).toBeGreaterThan(1e-5);
+      });
     }
+  });
+
+  test('the error estimate is never below the error, nor far above it, for smooth, peaked and broken integrands', () => {
+    const cases: [string, (x: number) => number, number][] = [
+      ['e^x', (x) => Math.exp(x), Math.E - 1 / Math.E],
+      ['1/(1 + 4x²)', (x) => 1 / (1 + 4 * x * x), Math.atan(2)],
+      ['1/(1 + x²)', (x) => 1 / (1 + x * x), Math.PI / 2],
+      ['1/(2.2 + x)', (x) => 1 / (2.2 + x), Math.log(3.2 / 1.2)],
+      ['(1 + x)^0.2', (x) => (1 + x) ** 0.2, 2 ** 1.2 / 1.2],
+      ['(1 + x)^0.8', (x) => (1 + x) ** 0.8, 2 ** 1.8 / 1.8],
+      ['(1 + x)^1.8', (x) => (1 + x) ** 1.8, 2 ** 2.8 / 2.8],
+      ['cos 20x', (x) => Math.cos(20 * x), Math.sin(20) / 10],
+    ];
+    const rows: Record<string, unknown> = {};
+    for (const [name, f, exact] of cases) {
+      const value = sum(kronrod.nodes, kronrod.weights, f);
+      const squares = Float64Array.from({ length: DEGREES }, (_, n) => {
+        let part = 0;
+        for (let m = 0; m < KRONROD_POINTS; m++) part += expansions[n * KRONROD_POINTS + m]! * f(kronrod.nodes[m]!);
+        return part * part;
+      });
+      const estimate = kronrodError(squares);
+      const error = Math.abs(value - exact);
+      rows[name] = { error, estimate };
+      const rounding = 8 * Number.EPSILON * Math.abs(exact);
+      expect(error, name).toBeLessThanOrEqual(estimate + rounding);
+      // Lines that turn too often to be followed promise nothing.
+      if (error > rounding && name !== 'cos 20x') expect(estimate, name).toBeLessThan(200 * error);
+    }
+    console.table(rows);
   });
 });
