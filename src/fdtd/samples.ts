@@ -82,7 +82,7 @@ export function keptBetween(kept: Kept, first: number, steps: number): [number, 
 
 /** Holds instant m − 1 at instant m and all that follow. */
 export function holdFrom({ values, count }: Collection, m: number): void {
-  if (m === 0) return;
+  if (m === 0 || m === count) return;
   for (let line = 0; line < values.length; line += count) values.fill(values[line + m - 1]!, line + m, line + count);
 }
 

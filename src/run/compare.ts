@@ -36,8 +36,9 @@ export interface CompareOptions {
  * @throws Refusal naming every problem of the scenario; Error where a worker died; the signal's reason when aborted
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
-  const prepared = prepareCase(jsonOf(input), options.fusedMultiplyAdd);
+  // Workers take as long to come up as a case to be prepared: the one passes while the other does.
   return await withTeam(options.threads ?? threadsAvailable(), options.signal, async (team) => {
+    const prepared = prepareCase(jsonOf(input), options.fusedMultiplyAdd);
     const means = { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) };
     return await withRemedy(team, prepared, await solvePrepared(prepared, means));
   });
