@@ -2,7 +2,7 @@
  * All benchmarks, one after another; prints medians and writes everything, raw pairs and environment included, to
  * out/bench.json.
  *
- *   npm run bench -- [grid] [integral] [whole] [draw] [page]      all of them where none is named
+ *   npm run bench -- [whole] [integral] [grid] [schedules] [sizes] [draw] [page]      all of them where none is named
  */
 import { mkdirSync, writeFileSync } from 'node:fs';
 import { cpus, loadavg, totalmem } from 'node:os';
@@ -11,6 +11,8 @@ const BENCHMARKS = {
   whole: async () => (await import('./whole.mjs')).benchWhole(),
   integral: async () => (await import('./retarded.mjs')).benchRetarded(),
   grid: async () => (await import('./grid.mjs')).benchGrid(),
+  schedules: async () => (await import('./schedules.mjs')).benchSchedules(),
+  sizes: async () => (await import('./schedules.mjs')).benchSizes(),
   draw: async () => (await import('./draw.mjs')).benchDraw(),
   page: async () => (await import('./page.mjs')).benchPage(),
 };

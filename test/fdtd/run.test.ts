@@ -148,6 +148,15 @@ describe('refusals', () => {
     expect(layered.bytes - bytes).toBeLessThan(1.3 * 12 * 4 * 0.2e6);
   });
 
+  test('at 200³ with 10 layers all of it is less than 32 bytes a cell', () => {
+    const { bytes, cells } = memoryNeeded(
+      plainProblem([180, 180, 180], { precision: 'single', boundary: everyFace(cpml(10)), pad: everyFace(10) }),
+    );
+    expect(cells).toBe(8e6);
+    console.log(`200³ with 10 layers: ${(bytes / cells).toFixed(2)} B a cell`);
+    expect(bytes / cells).toBeLessThan(32);
+  });
+
   test.each([
     [
       'a source on the wall',
