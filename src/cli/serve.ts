@@ -1,6 +1,6 @@
-import { existsSync } from 'node:fs';
+import { existsSync, readdirSync } from 'node:fs';
 import { createServer, type IncomingMessage, type Server, type ServerResponse } from 'node:http';
-import { resolve } from 'node:path';
+import { join, resolve } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import sirv from 'sirv';
 
@@ -33,12 +33,22 @@ function pageFolder(): string {
   throw new Error('the page (dist/page) is missing: run `npm run build`');
 }
 
+/** What is in a result folder: its files, and the hashes of a survey's finished cases. */
+function listing(folder: string): { readonly files: readonly string[]; readonly cases: readonly string[] } {
+  const namesIn = (place: string) =>
+    existsSync(place) ? readdirSync(place).filter((name) => !name.startsWith('.')) : [];
+  return {
+    files: namesIn(folder),
+    cases: namesIn(join(folder, 'cases')).flatMap((name) => /^([0-9a-f]+)\.json$/.exec(name)?.[1] ?? []),
+  };
+}
+
 type Answer = (request: IncomingMessage, response: ServerResponse, refuse: () => void) => void;
 
 /**
  * Serves the page on the loopback address at /, and the files of a result folder: its report at /report.html, all of them
- * under /results/. Only to requests that name the loopback host, so that no other site can reach it through a browser
- * (DNS rebinding).
+ * under /results/, which itself tells what there is: a survey that runs elsewhere is followed by it. Only to requests that
+ * name the loopback host, so that no other site can reach it through a browser (DNS rebinding).
  * @param folder of results; null for none
  * @param port 0 for any free one
  * @throws Error when a folder is missing or the port is taken
@@ -64,6 +74,11 @@ export async function servePage(folder: string | null, port: number): Promise<{ 
     if (request.method !== 'GET' && request.method !== 'HEAD') return refuse(405, 'Only GET and HEAD.');
     // A folder's hidden files are nobody's, however their names are written.
     if (/\/(\.|%2e)/i.test(path)) return refuse(404, 'No such file here.');
+    if (path === '/results/' && folder !== null) {
+      response.writeHead(200, { 'Content-Type': 'application/json' });
+      response.end(JSON.stringify(listing(folder)));
+      return;
+    }
     if (path.startsWith('/results/')) request.url = path.slice('/results'.length);
     const answer = ofResults ? results : page;
     answer(request, response, () => refuse(404, 'No such file here.'));

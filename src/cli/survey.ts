@@ -6,6 +6,7 @@ import { surveyFiles } from '../report/surveyFolder.ts';
 import { surveyText } from '../report/surveyText.ts';
 import { mergeParts, type Part, runShard, type Shard } from '../run/shards.ts';
 import { type CaseStore, runSurvey, type SurveyOptions } from '../run/survey.ts';
+import { wholeSurvey } from '../run/surveyCases.ts';
 import { EXAMPLES } from '../scenario/examples.ts';
 import { describeProblem } from '../scenario/load.ts';
 import { loadSurvey, type Survey } from '../scenario/survey.ts';
@@ -94,7 +95,7 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
     ...(address ? { engine: (await import('../queue/collect.ts')).queueAt(address, line.say) } : {}),
     signal,
     onProgress: line.show,
-    store: folderStore(folder),
+    store: announcing(folderStore(folder), file, out, survey),
   };
   try {
     if (shard) {
@@ -112,6 +113,27 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
   } finally {
     line.end();
   }
+}
+
+/** Writes `survey.json` with the first case, so that whoever looks into the folder meanwhile knows what they are of. */
+function announcing(store: CaseStore, file: string, out: string, survey: Survey): CaseStore {
+  // The survey's own file may lie there under that name.
+  let announced = resolve(file) === resolve(out, 'survey.json');
+  const announce = () => {
+    if (!announced) writeFolder(out, { 'survey.json': `${JSON.stringify(wholeSurvey(survey), null, 2)}\n` });
+    announced = true;
+  };
+  return {
+    load(hash) {
+      const text = store.load(hash);
+      if (text !== null) announce();
+      return text;
+    },
+    save(hash, text) {
+      announce();
+      store.save(hash, text);
+    },
+  };
 }
 
 function readSurvey(file: string): Survey {

@@ -1,6 +1,6 @@
 import { memoryLimit } from '#platform';
 import type { Engine, SurveyRun } from '../run/survey.ts';
-import { type Entry, hashOf, keptOutcome } from '../run/surveyCases.ts';
+import { type Entry, hashOf, keptOutcome, wholeSurvey } from '../run/surveyCases.ts';
 import type { Address } from './address.ts';
 import { CaseQueue, type SentCase } from './cases.ts';
 import { ownRelease } from './release.ts';
@@ -78,10 +78,10 @@ class Collection {
   /** Writes the survey and its cases down, for workers to be found by and for whoever asks the tables. */
   async #register(): Promise<void> {
     const { survey, queue } = this;
-    const { title, json, scenario } = survey.survey;
+    const { title } = survey.survey;
     const { version, resultSchema } = queue.release;
     const entries = survey.cases.entries;
-    const whole = { ...(json as object), scenario };
+    const whole = wholeSurvey(survey.survey);
     this.#id = await hashOf({ version, resultSchema, title, whole, cases: entries.map(({ hash }) => hash) });
     await queue.session.transaction(async (db) => {
       await db.query(

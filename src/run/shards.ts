@@ -5,7 +5,7 @@ import { loadSurvey, type Survey } from '../scenario/survey.ts';
 import { questionOf } from './question.ts';
 import { Refusal } from './refusal.ts';
 import { memoryStore, type SurveyOptions, SurveyRun } from './survey.ts';
-import { type CaseStore, casesOf, type Entry, hashOf } from './surveyCases.ts';
+import { type CaseStore, casesOf, type Entry, hashOf, wholeSurvey } from './surveyCases.ts';
 import { pool } from './surveyPool.ts';
 import { surveyTable } from './surveyTable.ts';
 import { VERSION } from './version.ts';
@@ -39,7 +39,7 @@ export async function runShard(survey: Survey, shard: Shard, options: SurveyOpti
   return {
     version: VERSION,
     shard,
-    survey: { ...(survey.json as object), scenario: survey.scenario },
+    survey: wholeSurvey(survey),
     cases: Object.fromEntries(unique.map(({ hash, status, reason }) => [hash, { status, reason }])),
   };
 }

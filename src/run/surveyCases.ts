@@ -41,6 +41,9 @@ export interface SurveyCases {
   readonly reflections: boolean;
 }
 
+/** The survey as given, the scenario in it: all that is needed to have it again elsewhere. */
+export const wholeSurvey = ({ json, scenario }: Survey): Record<string, unknown> => ({ ...(json as object), scenario });
+
 /** Cases of a survey with one mask for all, and which of them the store holds. */
 export async function casesOf(survey: Survey, store: CaseStore): Promise<SurveyCases> {
   const reflections = survey.vary.some(({ key }) => isWallKey(key));

@@ -15,7 +15,7 @@ import {
 import type { Problem } from '../scenario/load.ts';
 import type { Survey } from '../scenario/survey.ts';
 import { Refusal } from './refusal.ts';
-import { type CaseStore, type Entry, isWallKey, keptOutcome, type SurveyCases } from './surveyCases.ts';
+import { type CaseStore, type Entry, isWallKey, keptOutcome, type SurveyCases, wholeSurvey } from './surveyCases.ts';
 import { VERSION } from './version.ts';
 
 /**
@@ -82,7 +82,7 @@ function resultOf(survey: Survey, cases: readonly CaseResult[], mask: number | n
     ladders,
     boundaries: vary.some(isWallKey) ? boundariesOf(cases) : [],
     environment: { host: hostName(), threads },
-    survey: { ...(survey.json as object), scenario: survey.scenario },
+    survey: wholeSurvey(survey),
   };
 }
 

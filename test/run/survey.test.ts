@@ -28,6 +28,8 @@ describe('survey', () => {
     const written = folder.read('out/survey-result.json');
     expect(surveyResultSchema.safeParse(JSON.parse(written)).error).toBeUndefined();
     const result = timeless(written);
+    // By this and the cases the page follows a survey that runs elsewhere.
+    expect(JSON.parse(folder.read('out/survey.json'))).toEqual(result.survey);
     // The last key varies fastest.
     expect(result.cases.map(({ settings }) => settings)).toEqual(
       WALLS.flatMap((wall) => SIZES.map((size) => ({ 'grid.boundary': wall, 'grid.cellSize': size }))),
