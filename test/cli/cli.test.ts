@@ -389,6 +389,10 @@ describe('serve', () => {
       expect(report.headers['content-security-policy']).not.toContain('script-src');
       expect(report.headers['cross-origin-opener-policy']).toBe('same-origin');
       expect((await ask('/results/result.json')).status).toBe(200);
+      expect(JSON.parse((await ask('/results/')).body)).toMatchObject({
+        files: expect.arrayContaining(['report.html', 'result.json']),
+        cases: [],
+      });
       expect((await ask('/', { host: 'example.org' })).status).toBe(421);
       for (const path of [
         '/../s.json',
