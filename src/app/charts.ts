@@ -21,8 +21,8 @@ export class LiveChart {
   private hover: SVGLineElement | undefined;
 
   constructor(
-    /** what is shown in its place until there is something to draw */
-    private readonly empty: string,
+    /** what is said in its place while there is nothing to draw */
+    private readonly empty: () => string,
     private readonly onTime?: (time: number) => void,
     /** told of a dot that was clicked: what it stands for */
     private readonly onKey?: (key: string) => void,
@@ -43,7 +43,7 @@ export class LiveChart {
     const width = Math.max(300, Math.round(this.figure.clientWidth || 380));
     this.figure.replaceChildren();
     if (!chart) {
-      this.figure.append(h('p', { className: 'empty' }, this.empty));
+      this.figure.append(h('p', { className: 'empty' }, this.empty()));
       return;
     }
     const size = { width, height: Math.round(Math.min(250, Math.max(200, width * 0.5))) };
@@ -167,26 +167,32 @@ export class Charts {
     };
     const observer = () => store.state.result?.observers.find(({ name }) => name === store.state.view.observer);
     const trace = () => traceOf(store);
+    const atObserver = (what: string, otherwise: string) => () => {
+      const { scenario, view } = store.state;
+      if (scenario?.observers.length === 0)
+        return `${what} at an observer: there is none. A click on a plane adds one.`;
+      return `${what} at ${view.observer || 'an observer'}: ${otherwise}`;
+    };
+    const whenDone = (what: string) => () =>
+      store.state.result ? `${what}: nothing was measured here.` : `${what}: known once both solvers are done.`;
+    const both = 'known once both solvers are done.';
     this.charts = [
       {
-        live: new LiveChart(
-          'Traces: no observer, or its field is not known yet. A click in a pane adds an observer.',
-          seek,
-        ),
+        live: new LiveChart(atObserver('Both fields in time', 'known as soon as the grid has run.'), seek),
         chart: () => {
           const own = trace();
           return own ? traceChart(own) : null;
         },
       },
       {
-        live: new LiveChart('The parts of the error in time, at an observer: known once both solvers are done.', seek),
+        live: new LiveChart(atObserver('The parts of the error in time', both), seek),
         chart: () => {
           const own = trace();
           return own && store.state.result ? partsChart(own) : null;
         },
       },
       {
-        live: new LiveChart('Spectrum and trusted band, at an observer: known once both solvers are done.'),
+        live: new LiveChart(atObserver('Spectrum and trusted band', both)),
         chart: () => {
           const own = observer();
           const field = FIELDS.find((f) => trace()?.component.startsWith(f)) ?? 'E';
@@ -195,16 +201,16 @@ export class Charts {
         },
       },
       {
-        live: new LiveChart('Error against distance from the source: known once both solvers are done.'),
+        live: new LiveChart(whenDone('Error against distance from the source')),
         chart: () => (store.state.result ? distanceChart(store.state.result) : null),
       },
       {
-        live: new LiveChart('Error against distance from the walls: known once both solvers are done.'),
+        live: new LiveChart(whenDone('Error against distance from the walls')),
         chart: () => (store.state.result ? wallChart(store.state.result) : null),
       },
     ];
     this.host.append(...this.charts.map(({ live }) => live.figure));
-    store.on(['result', 'view', 'theme'], () => this.redraw());
+    store.on(['scenario', 'result', 'view', 'theme'], () => this.redraw());
     store.on(['frame', 'film'], () => this.showTime());
     new ResizeObserver(() => this.redraw()).observe(this.host);
   }
@@ -219,7 +225,7 @@ export class Charts {
   /** Draws one chart a screen refresh, so that none of them holds the page up. */
   private redraw(): void {
     const { view, result, traces } = this.store.state;
-    const key = `${view.observer} ${view.quantity} ${result?.verdict.sentence ?? ''} ${result?.timings.box.seconds ?? ''} ${traces.length} ${this.host.clientWidth}`;
+    const key = `${this.store.state.scenario?.observers.length} ${view.observer} ${view.quantity} ${result?.verdict.sentence ?? ''} ${result?.timings.box.seconds ?? ''} ${traces.length} ${this.host.clientWidth}`;
     if (key === this.key) return;
     this.key = key;
     const idle = this.next === 0;

@@ -5,7 +5,7 @@
 import { memoryLimit, threadsAvailable } from '#platform';
 import type { Result } from '../compare/result.ts';
 import { observerTraces } from '../files/traces.ts';
-import { type Findings, resultFile, tracesOf } from '../report/folder.ts';
+import { type Findings, tracesOf } from '../report/folder.ts';
 import { compareSolvers, Refusal } from '../run/compare.ts';
 import { planFreeSpace } from '../run/freeSpace.ts';
 import { exactField } from '../run/integrals.ts';
@@ -58,14 +58,11 @@ async function answer(request: Request): Promise<void> {
   switch (request.kind) {
     case 'run':
       return await run(request.scenario, request.planes);
-    case 'planes':
-      if (current)
-        await planes(current, request.planes, (stage, fraction) => tell({ kind: 'progress', stage, fraction }));
+    case 'planes': {
+      const started = performance.now();
+      if (current) await planes(current, request.planes, (stage, fraction) => progress(started, stage, fraction));
       return tell({ kind: 'done' });
-    case 'file':
-      if (current?.findings)
-        tell({ kind: 'file', file: request.file, text: resultFile(request.file, current.findings, request.command) });
-      return;
+    }
     case 'potentials': {
       const film = current?.films[request.slice];
       if (!current || !film) return;
@@ -74,6 +71,13 @@ async function answer(request: Request): Promise<void> {
       tell({ kind: 'potentials', slice, frame, values }, [values.buffer]);
     }
   }
+}
+
+/** How far the whole is, with the time it still takes if it goes on as it has. */
+function progress(started: number, stage: string, fraction: number): void {
+  const elapsed = (performance.now() - started) / 1000;
+  const known = fraction > 0.05 && elapsed > 0.5;
+  tell({ kind: 'progress', stage, fraction, ...(known ? { secondsLeft: (elapsed / fraction) * (1 - fraction) } : {}) });
 }
 
 /** Parts of the whole, as the progress bar shows them. */
@@ -86,18 +90,14 @@ async function run(json: unknown, planesShown: readonly Plane[]): Promise<void> 
   const question = questionOf(scenario);
   const team = new Team(threadsAvailable());
   current = { json, scenario, question, team, films: [] };
-  const stage = (from: number, share: number) => (name: string, fraction: number, secondsLeft?: number) =>
-    tell({
-      kind: 'progress',
-      stage: name,
-      fraction: from + share * fraction,
-      ...(secondsLeft === undefined ? {} : { secondsLeft }),
-    });
+  const started = performance.now();
+  const stage = (from: number, share: number) => (name: string, fraction: number) =>
+    progress(started, name, from + share * fraction);
 
   await firstLook(current, planesShown, stage(0, SHARES.films));
   const comparing = stage(SHARES.films, SHARES.comparison);
   const { result, signals, outside, spectra } = await compareSolvers(json, {
-    onProgress: ({ stage: name, fraction, secondsLeft }) => comparing(name, fraction, secondsLeft),
+    onProgress: ({ stage: name, fraction }) => comparing(name, fraction),
   });
   current.findings = { result, signals, outside, spectra };
   tell({ kind: 'result', result, traces: tracesOf(current.findings), spectra });

@@ -12,6 +12,7 @@ import { notify } from './notice.ts';
 import { Panes } from './panes.ts';
 import { type Place, Places } from './places.ts';
 import { Prediction } from './prediction.ts';
+import { printReport } from './print.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
 import { Side } from './side.ts';
@@ -51,7 +52,8 @@ const places = new Places(PLACES, moved, (step) => void writeAddress(step));
 const prediction = new Prediction(store);
 const { choose } = acceptFiles(store, side, places);
 buildActions();
-const saving = new Saving(store, runner, panes, charts);
+const saving = new Saving(store, panes, charts);
+printReport(store);
 const { help } = listenToKeys({ store, runner, panes, timeline, side, saving, places, choose });
 
 function buildActions(): void {
@@ -168,6 +170,7 @@ showReading(undefined);
 if (!canShareMemory())
   notify(
     'This page is not cross-origin isolated, so its workers cannot share memory: everything runs on one thread and takes longer. `fieldassay view` serves it isolated.',
+    'kept',
   );
 void openAddress();
 

@@ -1,6 +1,5 @@
 import type { Result } from '../compare/result.ts';
 import type { ObserverTrace } from '../files/traces.ts';
-import type { ResultFile } from '../report/folder.ts';
 import type { ObserverSpectra } from '../report/report.ts';
 import type { GridFrames } from '../run/planes.ts';
 import type { Progress } from '../run/progress.ts';
@@ -13,7 +12,6 @@ export type Request =
   | { readonly kind: 'run'; readonly scenario: unknown; readonly planes: readonly Plane[] }
   /** other planes for a run that has ended: films alone, the comparison stands */
   | { readonly kind: 'planes'; readonly planes: readonly Plane[] }
-  | { readonly kind: 'file'; readonly file: ResultFile; readonly command: string }
   /** φ and A at one picture of the film */
   | { readonly kind: 'potentials'; readonly slice: number; readonly frame: number };
 
@@ -33,7 +31,6 @@ export type Report =
     }
   | { readonly kind: 'trust'; readonly slice: number; readonly map: TrustMap }
   | ({ readonly kind: 'potentials' } & PotentialFrame)
-  | { readonly kind: 'file'; readonly file: ResultFile; readonly text: string }
   | { readonly kind: 'refused'; readonly problems: readonly Problem[] }
   | { readonly kind: 'failed'; readonly message: string }
   | { readonly kind: 'done' };

@@ -1,9 +1,9 @@
 import { byId, h } from './dom.ts';
 
-/** Says something in the corner, until it is dismissed. */
+/** Says something in the corner until it is dismissed; a mere note goes by itself after a while. */
 export function notify(
   text: string,
-  kind: 'note' | 'bad' = 'note',
+  kind: 'note' | 'kept' | 'bad' = 'note',
   action?: { readonly name: string; readonly run: () => void },
 ): void {
   const close = h('button', { type: 'button', 'aria-label': 'Dismiss' }, '×');

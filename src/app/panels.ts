@@ -157,6 +157,8 @@ export class Panels {
   private timer = 0;
   private pending: ((draft: Draft) => void)[] = [];
   private editing = false;
+  /** by the place that they edit, keys joined by dots */
+  private readonly controls = new Map<string, Controller>();
 
   constructor(
     private readonly store: Store,
@@ -172,7 +174,26 @@ export class Panels {
     const structure = shapeOf(this.store.state.json);
     if (!this.editing || structure !== this.structure) this.build();
     this.structure = structure;
+    this.showProblems();
     this.showPreview();
+  }
+
+  /** What is wrong is said at its control, with a button that brings back what stood there when all was well. */
+  private showProblems(): void {
+    for (const old of this.host.querySelectorAll('.problem')) old.remove();
+    const { problems, sound } = this.store.state;
+    for (const { path, message } of problems) {
+      const controller = this.controls.get(path);
+      if (!controller) continue;
+      for (let folder: GUI | undefined = controller.parent; folder; folder = folder.parent) folder.open();
+      const keys = path.split('.').map((key) => (/^\d+$/.test(key) ? Number(key) : key));
+      const before = valueAt(sound, keys);
+      const back = h('button', { type: 'button' }, before === undefined ? 'Leave it out' : `Back to ${before}`);
+      back.addEventListener('click', () => this.store.edit((draft) => setAt(draft, keys, before)));
+      controller.domElement.after(
+        h('div', { className: 'problem' }, h('p', {}, message), sound === undefined ? null : back),
+      );
+    }
   }
 
   private showPreview(): void {
@@ -199,6 +220,7 @@ export class Panels {
 
   private build(): void {
     this.gui?.destroy();
+    this.controls.clear();
     const { json } = this.store.state;
     if (typeof json !== 'object' || json === null) return;
     const gui = new GUI({ container: this.host, injectStyles: false, title: 'Panels' });
@@ -237,6 +259,7 @@ export class Panels {
     const controller = addQuantity(gui, field, valueAt(json, field.path), (written) =>
       this.settle((draft) => setAt(draft, field.path, written)),
     );
+    this.controls.set(field.path.join('.'), controller);
     const range =
       field.min === undefined ? '' : ` Usual range ${field.min} to ${field.max}${field.unit && ` ${field.unit}`}.`;
     this.explain(controller, field.help + range);
@@ -269,6 +292,7 @@ export class Panels {
     const held = { value: String(valueAt(json, path) ?? '') };
     const controller = gui.add(held, 'value').name(name);
     controller.onChange((value: string) => this.settle((draft) => setAt(draft, path, value), 700));
+    this.controls.set(path.join('.'), controller);
     this.explain(controller, help);
   }
 
@@ -478,14 +502,14 @@ export class Panels {
       gui,
       json,
       ['grid', 'box', 'from'],
-      'from',
+      'box from',
       'Lower corner of the working box, mm; absorbing layers lie outside it.',
     );
     this.vector(
       gui,
       json,
       ['grid', 'box', 'to'],
-      'to',
+      'box to',
       'Upper corner of the working box, mm; rounded outwards to whole cells.',
     );
     this.choice(
@@ -512,7 +536,7 @@ export class Panels {
       const step = timeStepOf(grid, medium);
       const line = h(
         'p',
-        { className: 'help' },
+        { className: 'note' },
         `${grid.cells.join(' × ')} cells, ${Math.ceil(duration / step)} steps of ${formatQuantity(step, 's')}`,
       );
       gui.$children.append(line);

@@ -1,5 +1,4 @@
 import { withinTolerance } from '../compare/result.ts';
-import type { ResultFile } from '../report/folder.ts';
 import { Film } from '../scene/film.ts';
 import { planesShown } from '../scene/slices.ts';
 import type { Report, Request } from './messages.ts';
@@ -19,7 +18,6 @@ export const beside = (name: string): string => new URL(name, import.meta.url).h
 export class Runner {
   private worker: Worker | null = null;
   private ran = '';
-  private readonly files = new Map<ResultFile, (text: string) => void>();
   private readonly asked = new Set<string>();
 
   constructor(private readonly store: Store) {}
@@ -66,16 +64,7 @@ export class Runner {
   private stop(): void {
     this.worker?.terminate();
     this.worker = null;
-    this.files.clear();
     this.asked.clear();
-  }
-
-  /** One of the files of the result, once there is one. */
-  file(file: ResultFile, command: string): Promise<string> {
-    return new Promise((resolve) => {
-      this.files.set(file, resolve);
-      this.worker?.postMessage({ kind: 'file', file, command } satisfies Request);
-    });
   }
 
   /** Has φ and A computed at a picture of the film, unless that has been asked already. */
@@ -140,9 +129,6 @@ export class Runner {
       case 'potentials':
         state.film?.addPotentials(report);
         store.tell('film');
-        break;
-      case 'file':
-        this.files.get(report.file)?.(report.text);
         break;
       case 'refused':
         store.setRun({

@@ -6,18 +6,9 @@ import { byId, h } from './dom.ts';
 import type { EncoderRequest } from './encoder.ts';
 import { notify } from './notice.ts';
 import type { Panes } from './panes.ts';
-import { beside, type Runner } from './runner.ts';
+import { beside } from './runner.ts';
 import type { Store } from './store.ts';
-
-/** A file's name from the scenario's title. */
-export function nameOf(store: Store): string {
-  const title = (store.state.json as { title?: unknown } | undefined)?.title;
-  const slug = String(title ?? '')
-    .toLowerCase()
-    .replace(/[^\p{L}\p{N}]+/gu, '-')
-    .replace(/^-|-$/g, '');
-  return slug || 'scenario';
-}
+import { nameOf, written } from './written.ts';
 
 /** Hands a file to the browser's downloads. */
 export function download(name: string, content: Blob): void {
@@ -57,7 +48,6 @@ export class Saving {
 
   constructor(
     private readonly store: Store,
-    private readonly runner: Runner,
     private readonly panes: Panes,
     private readonly charts: Charts,
   ) {
@@ -71,7 +61,9 @@ export class Saving {
     };
     this.menu.append(
       item('Scenario', 'the file, JSON (Ctrl S)', () => this.scenario()),
-      item('Report', 'verdict, budget and charts in one HTML file', () => this.result('report.html')),
+      item('Report', 'verdict, budget and charts in one HTML file; printing the page (Ctrl P) gives it, too', () =>
+        this.result('report.html'),
+      ),
       item('Result', 'all figures, result.json', () => this.result('result.json')),
       item('Traces', 'every observer and part, CSV', () => this.result('traces.csv')),
       item('Picture of the panes', 'as shown, PNG', () => this.picture()),
@@ -87,7 +79,7 @@ export class Saving {
     byId('actions').append(this.button, this.menu);
   }
 
-  private open(): void {
+  open(): void {
     this.menu.hidden = false;
     this.button.setAttribute('aria-expanded', 'true');
     (this.menu.firstElementChild as HTMLElement).focus();
@@ -116,10 +108,7 @@ export class Saving {
   }
 
   private async result(file: ResultFile): Promise<void> {
-    if (!this.store.state.result) throw new Error('there is no result yet; wait for the verdict.');
-    const name = nameOf(this.store);
-    const text = await this.runner.file(file, `npx fieldassay compare ${name}.json --out out`);
-    download(`${name}-${file}`, textBlob(text, TYPES[file]));
+    download(`${nameOf(this.store)}-${file}`, textBlob(await written(this.store, file), TYPES[file]));
   }
 
   private async picture(): Promise<void> {

@@ -25,6 +25,8 @@ export interface State {
   json: unknown;
   /** the last sound scenario; null before there is any */
   scenario: Scenario | null;
+  /** what stood in its file; undefined before there is any */
+  sound: unknown;
   problems: readonly Problem[];
   view: View;
   theme: Theme;
@@ -48,12 +50,14 @@ export class Store {
   private readonly listeners = new Map<Topic, (() => void)[]>();
   private readonly past: string[] = [];
   private readonly future: string[] = [];
+  private soundBefore: unknown;
 
   constructor(theme: Theme) {
     this.state = {
       text: '',
       json: undefined,
       scenario: null,
+      sound: undefined,
       problems: [],
       view: VIEW,
       theme,
@@ -115,6 +119,8 @@ export class Store {
     state.problems = 'problems' in loaded ? loaded.problems : [];
     if ('scenario' in loaded) {
       state.scenario = loaded.scenario;
+      this.soundBefore = state.sound;
+      state.sound = state.json;
       const names = loaded.scenario.observers.map(({ name }) => name);
       if (!names.includes(state.view.observer)) state.view = { ...state.view, observer: names[0] ?? '' };
     }
@@ -124,6 +130,7 @@ export class Store {
   /** What a run found wrong with the scenario, though it had seemed sound. */
   refuse(problems: readonly Problem[]): void {
     this.state.problems = problems;
+    this.state.sound = this.soundBefore;
     this.tell('scenario');
   }
 

@@ -1,10 +1,12 @@
-import { type Result, withinTolerance } from '../compare/result.ts';
+import { PARTS } from '../compare/budget.ts';
+import { type BudgetResult, type Result, withinTolerance } from '../compare/result.ts';
 import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from '../report/budgetRows.ts';
 import { markup } from '../report/markup.ts';
+import { gridText } from '../report/words.ts';
 import { byId, h } from './dom.ts';
 import type { Runner } from './runner.ts';
-import type { Store } from './store.ts';
+import type { RunState, Store } from './store.ts';
 
 /** The headline: the verdict in one sentence, what supports it, the budget, and how the run stands. */
 export function showVerdict(store: Store, runner: Runner, toText: () => void): void {
@@ -13,6 +15,7 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
   const checks = byId('checks');
   const budget = byId('budget');
   const run = byId('run');
+  const more = foldable(byId('support'));
   const bar = h('progress', { max: 1, 'aria-label': 'Progress of the run' });
   const stage = h('span', { className: 'muted' });
   const button = h('button', { type: 'button' });
@@ -22,14 +25,20 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
   });
   const mend = h('button', { type: 'button' }, 'Show where in the text');
   mend.addEventListener('click', toText);
-  run.append(bar, stage, button, mend);
+  const takeBack = h('button', { type: 'button', title: 'Undo (Ctrl Z)' }, 'Undo the edit');
+  takeBack.addEventListener('click', () => store.undo());
+  run.append(bar, stage, button, takeBack, mend);
 
   const showResult = () => {
     const { result } = store.state;
     budget.replaceChildren();
     details.replaceChildren();
     checks.replaceChildren();
-    if (!result) return showRun();
+    if (!result) {
+      budget.append(budgetTable(UNKNOWN));
+      more();
+      return showRun();
+    }
     sentence.textContent = result.verdict.sentence;
     const outside =
       withinTolerance(result) || !isMeasured(result)
@@ -39,11 +48,10 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     details.append(
       ...[outside, [...remedy, ...result.verdict.details, ...result.notes].join(' ')].filter((part) => part !== null),
     );
-    details.title = details.textContent ?? '';
     for (const { status, sentence: said } of result.checks)
       checks.append(h('span', { className: status === 'differs' ? 'outside' : 'muted' }, said), ' ');
-    checks.title = checks.textContent ?? '';
-    budget.append(budgetTable(result));
+    budget.append(budgetTable(budgetRows(result.budget), result.budget));
+    more();
     showRun();
   };
 
@@ -52,18 +60,15 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     const running = state.status === 'running';
     bar.hidden = !running;
     bar.value = state.fraction;
-    button.hidden = state.status === 'done' || state.status === 'idle' || state.status === 'refused';
+    const wrong = problems.length > 0;
+    button.hidden = state.status === 'idle' || (wrong && !running);
     button.textContent = running ? 'Cancel' : 'Run again';
-    const left = state.secondsLeft === undefined ? '' : `, ${Math.max(1, Math.ceil(state.secondsLeft))} s left`;
-    stage.textContent = running
-      ? `${state.stage[0]?.toUpperCase() ?? ''}${state.stage.slice(1)}: ${Math.round(100 * state.fraction)} %${left}`
-      : state.status === 'cancelled'
-        ? 'Cancelled. What was known by then is shown.'
-        : result && state.status === 'failed'
-          ? state.message
-          : '';
-    mend.hidden = problems.length === 0;
-    run.hidden = stage.textContent === '' && button.hidden && mend.hidden;
+    button.title = running ? 'Ends the run at once; what is known stays (Esc)' : 'Runs both solvers anew (r)';
+    stage.textContent = wrong
+      ? `Not run: ${problems.length === 1 ? 'something is' : `${problems.length} things are`} wrong in the scenario.${film ? ' What is shown is the last sound one’s.' : ''}`
+      : statusText(state, result);
+    mend.hidden = !wrong;
+    takeBack.hidden = !wrong || !store.canUndo;
     if (result) return;
     if (state.status === 'refused' || state.status === 'failed') sentence.textContent = state.message;
     else if (problems.length > 0 && !film) sentence.textContent = problems[0]!.message;
@@ -74,19 +79,91 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
   };
   store.on(['result'], showResult);
   store.on(['run', 'scenario'], showRun);
+  budget.append(budgetTable(UNKNOWN));
+}
+
+/** What is being done and for how long yet; or how it ended. */
+function statusText({ status, stage, fraction, secondsLeft, message }: RunState, result: Result | null): string {
+  switch (status) {
+    case 'idle':
+    case 'refused':
+      return '';
+    case 'running': {
+      const left = secondsLeft === undefined ? '' : `, ${Math.max(1, Math.ceil(secondsLeft))} s left`;
+      return `${stage[0]?.toUpperCase() ?? ''}${stage.slice(1)}: ${Math.round(100 * fraction)} %${left}`;
+    }
+    case 'cancelled':
+      return 'Cancelled. What was known by then is shown.';
+    case 'failed':
+      return result ? message : '';
+    case 'done':
+      return result ? `Done. ${gridText(result)}.` : '';
+  }
+}
+
+/**
+ * Keeps a text as low as the page's style has it, with a button that unfolds it where there is more than is seen.
+ * @returns to be called when the text has changed
+ */
+function foldable(host: HTMLElement): () => void {
+  const text = host.firstElementChild as HTMLElement;
+  const button = h('button', { type: 'button', className: 'more', 'aria-expanded': 'false', hidden: true }, 'more');
+  host.append(button);
+  const show = () => {
+    const open = host.classList.contains('open');
+    button.hidden = !open && text.scrollHeight <= text.clientHeight + 1;
+    button.textContent = open ? 'less' : 'more';
+    button.setAttribute('aria-expanded', String(open));
+  };
+  button.addEventListener('click', () => {
+    host.classList.toggle('open');
+    show();
+  });
+  new ResizeObserver(show).observe(text);
+  return show;
 }
 
 /** Whether anything was found that is within the tolerance or outside it. */
 const isMeasured = ({ observers, verdict }: Result): boolean =>
   observers.some(({ E }) => E !== null && E.relativeL2 !== null) || 'best' in verdict.closest;
 
-/** The parts of the error with their signed shares as bars, and the floors below which nothing is told. */
-function budgetTable(result: Result): HTMLElement {
-  const rows = budgetRows(result.budget);
+/** A budget before there is one: it takes the room that it will need. */
+const UNKNOWN: readonly BudgetRow[] = [...PARTS, 'total' as const].map((name) => ({
+  name,
+  colour: name === 'total' ? 'ink' : name,
+  error: '…',
+  share: null,
+  shareText: '…',
+  floor: '…',
+}));
+
+/**
+ * The parts of the error with their signed shares as bars, and the floors below which nothing is told.
+ * @param budget the same in full, for those who point at a figure
+ */
+function budgetTable(rows: readonly BudgetRow[], budget?: BudgetResult): HTMLElement {
   const shares = rows.filter(({ name }) => name !== 'total').map(({ share }) => share ?? 0);
   const [low, high] = [Math.min(0, ...shares), Math.max(0.01, ...shares)];
-  const line = (name: string, help: string, cell: (row: BudgetRow) => Node | string) =>
-    h('tr', { title: help }, h('th', { scope: 'row' }, name), ...rows.map((row) => h('td', {}, cell(row))));
+  const full = ({ name }: BudgetRow, figure: 'relativeL2' | 'share' | 'floor') => {
+    const key = name === 'boundary and lattice' ? 'boundaryAndLattice' : (name as keyof BudgetResult);
+    return budget?.[key]?.[figure] ?? null;
+  };
+  const line = (
+    name: string,
+    help: string,
+    figure: 'relativeL2' | 'share' | 'floor',
+    cell: (row: BudgetRow) => Node | string,
+  ) =>
+    h(
+      'tr',
+      { title: help },
+      h('th', { scope: 'row' }, name),
+      ...rows.map((row) => {
+        const value = full(row, figure);
+        const title = value === null ? help : `${row.name}, ${name}: ${value}\n${help}`;
+        return h('td', { title }, cell(row));
+      }),
+    );
   return h(
     'table',
     { className: 'budget' },
@@ -101,14 +178,16 @@ function budgetTable(result: Result): HTMLElement {
       line(
         'relative L2',
         '√(Σ part²)/√(Σ exact²) over the observers’ traces; nothing is told below its floor',
+        'relativeL2',
         ({ error }) => error,
       ),
-      line('share', '⟨part, total⟩/⟨total, total⟩: signed, the shares of the parts sum to 100 %', (row) =>
+      line('share', '⟨part, total⟩/⟨total, total⟩: signed, the shares of the parts sum to 100 %', 'share', (row) =>
         row.name === 'total' ? '' : shareBar(row, low, high),
       ),
       line(
         'floor',
         'what a part cannot be told from: rounding, the free-space run’s leftover, the quadrature’s bound',
+        'floor',
         ({ floor }) => floor,
       ),
     ),

@@ -19,6 +19,7 @@ export default defineConfig({
         encoder: 'src/app/encoder.ts',
         predictor: 'src/app/predictor.ts',
         survey: 'src/app/ladders/coordinator.ts',
+        writer: 'src/app/writer.ts',
       },
       output: {
         format: 'es',

@@ -115,6 +115,8 @@ export const MAPS: Readonly<Record<Theme, { readonly signed: ColourMap; readonly
 export interface SignedScale {
   readonly kind: 'signed';
   readonly limit: number;
+  /** of sizes, which have no sign: the colour bar shows the upper half alone, the colours stay what they are */
+  readonly sizes?: boolean;
   /** what the values are and their unit, for the colour bar: “Ez, V/m” */
   readonly label: string;
 }
@@ -144,6 +146,17 @@ export type Scale = SignedScale | DecibelScale | KindScale;
 /** The colours of a scale, from its lower end to its upper. */
 export function coloursOf(scale: Scale, theme: Theme): ArrayLike<number> {
   return scale.kind === 'kinds' ? scale.kinds.map(({ colour }) => colour) : MAPS[theme][scale.kind].table;
+}
+
+/** What a colour bar shows of a scale: its colours from left to right, and the values at its ends. */
+export function barOf(
+  scale: Scale,
+  theme: Theme,
+): { readonly colours: ArrayLike<number>; readonly ends: readonly [from: number, to: number] } {
+  const [from, to] = endsOf(scale);
+  if (scale.kind !== 'signed' || !scale.sizes) return { colours: coloursOf(scale, theme), ends: [from, to] };
+  const { table } = MAPS[theme].signed;
+  return { colours: table.subarray(table.length >> 1), ends: [0, to] };
 }
 
 /** The values at the lower and the upper end of a scale; dB on a decibel scale. */

@@ -1,5 +1,5 @@
 import { axes } from './axes.ts';
-import { coloursOf, endsOf, NEUTRALS, type Scale } from './colour.ts';
+import { barOf, NEUTRALS, type Scale } from './colour.ts';
 import { crossings, planeOutline } from './furniture.ts';
 import { type ImageLabel, type Label, shortNumber } from './label.ts';
 import { GHOST, type ImageStroke } from './pen.ts';
@@ -48,9 +48,9 @@ const TITLE_HEIGHT = 30;
 const BAR_HEIGHT = 44;
 
 /** The part of a pane that shows space: its area without the title's strip and the colour bar's. */
-export function viewOf({ area, scale }: Pane, pixelRatio: number): Rectangle {
+export function viewOf({ area, scale, barRoom }: Pane, pixelRatio: number): Rectangle {
   const above = TITLE_HEIGHT * pixelRatio;
-  const below = scale ? BAR_HEIGHT * pixelRatio : 0;
+  const below = scale || barRoom ? BAR_HEIGHT * pixelRatio : 0;
   return { x: area.x, y: area.y + above, width: area.width, height: area.height - above - below };
 }
 
@@ -192,7 +192,8 @@ function colourBar(scale: Scale, scene: Scene, area: Rectangle, pane: number): C
   const text = { pane, role: 'scale', hidden: false } as const;
   const below = { ...text, y: y + height + gap, align: 'center', baseline: 'top' } as const;
   const beside = { ...text, y: y + height / 2, baseline: 'middle' } as const;
-  const [from, to] = endsOf(scale);
+  const { colours, ends } = barOf(scale, theme);
+  const [from, to] = ends;
   const labels: Label[] =
     scale.kind === 'kinds'
       ? scale.kinds.map(({ name }, n) => ({ ...below, x: x + (width * (n + 0.5)) / scale.kinds.length, text: name }))
@@ -201,5 +202,5 @@ function colourBar(scale: Scale, scene: Scene, area: Rectangle, pane: number): C
           { ...beside, x: x + width + gap, text: shortNumber(to), align: 'left' },
           { ...below, x: x + width / 2, text: scale.label },
         ];
-  return { rectangle: { x, y, width, height }, colours: coloursOf(scale, theme), labels };
+  return { rectangle: { x, y, width, height }, colours, labels };
 }

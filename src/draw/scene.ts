@@ -81,6 +81,8 @@ export interface Pane {
   readonly axes?: Box;
   /** the scale of the colour bar below; without, none is drawn */
   readonly scale?: Scale;
+  /** keeps the colour bar's room free where there is no scale, so that views of several panes agree */
+  readonly barRoom?: boolean;
 }
 
 /** All panes of one image. Several may share a camera, planes and strokes. */

@@ -141,7 +141,7 @@ function percentileChart(
       format: (value) => formatQuantity(value, 'm'),
     },
     y: {
-      label: '95th percentile of the error',
+      label: '95th percentile',
       unit: '',
       scale: 'log',
       domain: [Math.min(...errors) / 1.5, Math.max(...errors) * 1.5],

@@ -6,7 +6,7 @@ import type { FieldHistory } from '../trace/trace.ts';
 import { boxCharts, observerCharts } from './charts.ts';
 import { reportHtml } from './html.ts';
 import { resultJson } from './json.ts';
-import type { ObserverSpectra } from './report.ts';
+import type { ObserverSpectra, Report } from './report.ts';
 import { chartFile } from './svg.ts';
 
 /** What a comparison left: its result and the signals behind it. */
@@ -42,9 +42,19 @@ export function tracesOf({ result, signals, outside }: Findings): ObserverTrace[
  */
 export function resultFile(file: ResultFile, findings: Findings, command: string): string {
   const { result, spectra } = findings;
-  if (file === 'result.json') return resultJson(result);
-  const traces = tracesOf(findings);
-  return file === 'traces.csv' ? writeTraces(traces) : reportHtml({ result, traces, spectra, command });
+  return fileText(file, { result, traces: file === 'result.json' ? [] : tracesOf(findings), spectra, command });
+}
+
+/** The same, where the traces are there already. */
+export function fileText(file: ResultFile, report: Report): string {
+  switch (file) {
+    case 'result.json':
+      return resultJson(report.result);
+    case 'traces.csv':
+      return writeTraces(report.traces);
+    case 'report.html':
+      return reportHtml(report);
+  }
 }
 
 /** The charts of the report as files of their own: `error-by-distance.svg`, and after each observer's name its own. */

@@ -99,7 +99,7 @@ ${legend(chart.series, at)}
 ${shade(chart.shaded, at)}
 ${xAxis(chart.x, at)}${yAxis(chart.y, at)}
 ${chart.series.map((series) => path(series, chart, at))}
-${(chart.marks ?? []).map((mark, i) => markLine(mark, at, i))}
+${markLines(chart, at)}
 </svg>`;
 }
 
@@ -158,10 +158,21 @@ const withUnit = (label: string, unit: string): string => (unit === '' ? label :
 
 function xAxis(axis: Axis, { x, left, right, bottom, width, height }: ChartLayout): Markup {
   const { ticks, unit } = ticksOf(axis, Math.round(width / 80));
-  return markup`${ticks.map(
+  return markup`${apart(ticks, x).map(
     ({ value, text }) =>
       markup`<line class="rule" x1="${x(value)}" x2="${x(value)}" y1="${bottom}" y2="${bottom + 4}"/><text x="${x(value)}" y="${bottom + 17}" text-anchor="middle">${text}</text>`,
   )}<line class="rule" x1="${left}" x2="${right}" y1="${bottom}" y2="${bottom}"/><text x="${(left + right) / 2}" y="${height - 8}" text-anchor="middle">${withUnit(axis.label, unit)}</text>`;
+}
+
+/** The ticks whose texts do not run into one before them. */
+function apart(ticks: readonly Tick[], x: Position): Tick[] {
+  let end = Number.NEGATIVE_INFINITY;
+  return ticks.filter(({ value, text }) => {
+    const half = (text.length * CHARACTER) / 2;
+    if (x(value) - half < end) return false;
+    end = x(value) + half + 6;
+    return true;
+  });
 }
 
 function yAxis(axis: Axis, { y, left, right, top, bottom }: ChartLayout): Markup {
@@ -177,12 +188,15 @@ function yAxis(axis: Axis, { y, left, right, top, bottom }: ChartLayout): Markup
 const LEGEND_LEFT = 14;
 const LEGEND_LINE = 16;
 
-/** Names beside a stroke of their line, in rows under the title. A character is about 6.4 pixels wide. */
+/** A character is about so many pixels wide. */
+const CHARACTER = 6.4;
+
+/** Names beside a stroke of their line, in rows under the title. */
 function legendPlaces(series: readonly Series[], width: number): { readonly x: number; readonly line: number }[] {
   let left = LEGEND_LEFT;
   let line = 0;
   return series.map(({ name }) => {
-    const length = 26 + name.length * 6.4;
+    const length = 26 + name.length * CHARACTER;
     if (left > LEGEND_LEFT && left + length > width) {
       left = LEGEND_LEFT;
       line++;
@@ -251,13 +265,72 @@ function thinned(
   return kept;
 }
 
-function markLine({ axis, at, label }: Mark, { x, y, left, right, top, bottom }: ChartLayout, order: number): Markup {
-  const p = (axis === 'x' ? x : y)(at);
-  if (axis === 'y')
-    return markup`<line class="mark" x1="${left}" x2="${right}" y1="${p}" y2="${p}"/><text class="mark-label" x="${left + 4}" y="${p + 14}">${label}</text>`;
-  if (p < left || p > right) return markup``;
-  const anchor = p > (left + right) / 2 ? 'end' : 'start';
-  // Neighbouring labels step down, so that they do not lie on each other.
-  const row = top + 12 + 14 * (order % 3);
-  return markup`<line class="mark" x1="${p}" x2="${p}" y1="${top}" y2="${bottom}"/><text class="mark-label" x="${anchor === 'end' ? p - 4 : p + 4}" y="${row}" text-anchor="${anchor}">${label}</text>`;
+/** Marks across the plot; their labels stand where they lie on no line and on no other label, if there is such a place. */
+function markLines({ marks = [], series }: Chart, layout: ChartLayout): Markup {
+  const { x, y, left, right, top, bottom } = layout;
+  const lines = series.map(({ points }) => thinned(points, layout.width).map((p) => [x(p[0]), y(p[1])] as const));
+  const taken: Place[] = [];
+  const drawn = marks.map(({ axis, at, label }) => {
+    const p = (axis === 'x' ? x : y)(at);
+    if (axis === 'x' && (p < left || p > right)) return markup``;
+    const places = (axis === 'x' ? besideUpright : besideLevel)(p, label, layout);
+    const cost = (place: Place) =>
+      lines.filter((line) => runsThrough(line, place)).length +
+      2 * taken.filter((other) => overlap(other, place)).length;
+    const best = places.reduce((a, b) => (cost(b) < cost(a) ? b : a));
+    taken.push(best);
+    const line =
+      axis === 'x'
+        ? markup`<line class="mark" x1="${p}" x2="${p}" y1="${top}" y2="${bottom}"/>`
+        : markup`<line class="mark" x1="${left}" x2="${right}" y1="${p}" y2="${p}"/>`;
+    const { from, to, base, anchor } = best;
+    return markup`${line}<text class="mark-label" x="${round(anchor === 'end' ? to : from)}" y="${round(base)}" text-anchor="${anchor}">${label}</text>`;
+  });
+  return markup`${drawn}`;
+}
+
+/** Room of a label in the plot, pixels, from its left to its right end, and its base line. */
+interface Place {
+  readonly from: number;
+  readonly to: number;
+  readonly base: number;
+  readonly anchor: 'start' | 'end';
+}
+
+/** Height of a label above its base line. */
+const ASCENT = 11;
+
+/** Where the label of an upright mark may stand, best first: on the side with more room, then lower and lower. */
+function besideUpright(p: number, label: string, { left, right, top, bottom }: ChartLayout): Place[] {
+  const length = label.length * CHARACTER;
+  const before: Omit<Place, 'base'> = { from: p - 4 - length, to: p - 4, anchor: 'end' };
+  const behind: Omit<Place, 'base'> = { from: p + 4, to: p + 4 + length, anchor: 'start' };
+  const sides = p > (left + right) / 2 ? [before, behind] : [behind, before];
+  const places: Place[] = [];
+  for (let base = top + 12; base <= bottom - 4; base += 14)
+    for (const side of sides) if (side.from >= left && side.to <= right + 10) places.push({ ...side, base });
+  return places.length > 0 ? places : [{ ...sides[0]!, base: top + 12 }];
+}
+
+/** Where the label of a level mark may stand, best first: at its left end below it, then above, then at its right end. */
+function besideLevel(p: number, label: string, { left, right }: ChartLayout): Place[] {
+  const length = label.length * CHARACTER;
+  const atLeft = { from: left + 4, to: left + 4 + length, anchor: 'start' } as const;
+  const atRight = { from: right - 4 - length, to: right - 4, anchor: 'end' } as const;
+  return [atLeft, atRight].flatMap((end) => [p + 14, p - 5].map((base) => ({ ...end, base })));
+}
+
+const overlap = (a: Place, b: Place): boolean =>
+  a.from < b.to && b.from < a.to && Math.abs(a.base - b.base) < ASCENT + 2;
+
+/** Whether a line through points of growing x runs through the room of a label. */
+function runsThrough(line: readonly (readonly [number, number])[], { from, to, base }: Place): boolean {
+  const [high, low] = [base - ASCENT, base + 2];
+  return line.some(([x1, y1], n) => {
+    const [x0, y0] = line[n - 1] ?? [x1, y1];
+    if (x1 < from || x0 > to) return false;
+    const at = (x: number) => (x1 === x0 ? y1 : y0 + ((y1 - y0) * (x - x0)) / (x1 - x0));
+    const [a, b] = [at(Math.max(x0, from)), at(Math.min(x1, to))];
+    return Math.max(a, b) > high && Math.min(a, b) < low;
+  });
 }

@@ -70,7 +70,12 @@ export class Pictures {
     const { label, unit } = quantity;
     const key = `${limits.field} ${limits.difference} ${gain} ${difference} ${label}`;
     if (this.scales?.key === key) return this.scales.value;
-    const field: SignedScale = { kind: 'signed', limit: limits.field / gain, label: `${label}, ${unit}` };
+    const field: SignedScale = {
+      kind: 'signed',
+      limit: limits.field / gain,
+      label: `${label}, ${unit}`,
+      ...(label.startsWith('|') ? { sizes: true } : {}),
+    };
     const signed: SignedScale = {
       kind: 'signed',
       limit: limits.difference / gain,

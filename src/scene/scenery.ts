@@ -161,10 +161,11 @@ export class Scenery {
     };
     const withScale = (scale: Scale | undefined) => (scale ? { scale } : {});
     const onOneSide = quantity.kind === 'potential';
+    const missing = (side: Side) => onOneSide && side !== 'exact';
     const quantityTitle = (side: Side) =>
-      onOneSide && side !== 'exact'
+      missing(side)
         ? `${TITLES[side]}: the grid has no ${quantity.label}`
-        : `${TITLES[side]}, ${quantity.label}`;
+        : `${TITLES[side]}, ${quantity.label}${stillMissing(film, frame, onOneSide, side)}`;
     if (view.layout === 'overlay') {
       const [grid, exact] = [planes('grid'), planes('exact')];
       return [
@@ -186,7 +187,7 @@ export class Scenery {
       planes: planes(side),
       strokes:
         side === (onOneSide ? 'exact' : 'grid') && view.contours ? [...strokes, ...lines(planes('exact'))] : strokes,
-      ...withScale(scales?.[side]),
+      ...(missing(side) ? { barRoom: true } : withScale(scales?.[side])),
     }));
   }
 
@@ -314,6 +315,18 @@ export class Scenery {
       ]!;
     return { hit, unit: quantity.unit, label: quantity.label, grid: value('grid'), exact: value('exact') };
   }
+}
+
+/** What of a picture is not known yet, for its title. */
+function stillMissing(film: Film | null, frame: number, potential: boolean, side: Side): string {
+  const nothing = ': not known yet';
+  if (!film) return nothing;
+  if (potential) return film.films.every(({ potentials }) => potentials.has(frame)) ? '' : nothing;
+  if (side === 'grid') return frame < film.gridFrames ? '' : nothing;
+  if (film.exactKnown) return '';
+  const known = (least: number) => film.films.some(({ known: cells }) => cells.some((how) => how >= least));
+  if (known(2)) return ': filling in';
+  return side === 'exact' && known(1) ? ': coarse yet' : nothing;
 }
 
 /** What the walls leave: the box without the clearance on every side. */

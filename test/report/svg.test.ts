@@ -1,6 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { markup, printable } from '../../src/report/markup.ts';
-import { type Chart, chartSvg } from '../../src/report/svg.ts';
+import { type Chart, chartLayout, chartSvg } from '../../src/report/svg.ts';
 
 const chart: Chart = {
   title: 'Ez',
@@ -96,6 +96,64 @@ describe('charts', () => {
     const path = text.match(/ d="([^"]*)"/)![1]!;
     expect(path).toContain(',54L');
     expect(path.length).toBeLessThan(40_000);
+  });
+
+  it('set labels of marks where neither a line nor another label runs', () => {
+    const size = { width: 300, height: 200 };
+    const rising: Chart = {
+      ...chart,
+      series: [
+        {
+          name: 'w',
+          colour: 'ink',
+          points: [
+            [0, 1],
+            [2.2e-9, 1],
+            [3e-9, -1],
+          ],
+        },
+      ],
+      marks: [
+        { axis: 'x', at: 2e-9, label: 'here' },
+        { axis: 'x', at: 2.1e-9, label: 'and there' },
+      ],
+    };
+    const { x, y, right, bottom } = chartLayout(rising, size);
+    const labels = [
+      ...chartSvg(rising, size).text.matchAll(/mark-label" x="([\d.]+)" y="([\d.]+)" text-anchor="(\w+)">([^<]*)</g),
+    ];
+    expect(labels.map(([, , , , text]) => text)).toEqual(['here', 'and there']);
+    const rooms = labels.map(([, px, py, anchor, text]) => {
+      const from = anchor === 'end' ? Number(px) - 6.4 * text!.length : Number(px);
+      return { from, to: from + 6.4 * text!.length, high: Number(py) - 11, low: Number(py) };
+    });
+    for (const { from, to, high, low } of rooms) {
+      expect(to).toBeLessThanOrEqual(right + 10);
+      expect(low).toBeLessThanOrEqual(bottom);
+      // the level part of the line, then its fall
+      expect(from < x(2.2e-9) && high < y(1)).toBe(false);
+      for (const t of [2.2e-9, 2.4e-9, 2.6e-9, 2.8e-9, 3e-9]) {
+        const at = y(1 - (2 * (t - 2.2e-9)) / 0.8e-9);
+        expect(x(t) > from && x(t) < to && at > high && at < low).toBe(false);
+      }
+    }
+    const [one, two] = rooms;
+    expect(one!.from < two!.to && two!.from < one!.to && one!.high < two!.low && two!.high < one!.low).toBe(false);
+  });
+
+  it('leave out lengths along x that would run into one another', () => {
+    const crowded: Chart = {
+      ...chart,
+      x: { label: 'r', unit: 'm', scale: 'log', domain: [1e-2, 3e-1], format: (r) => `${Math.round(r * 1000)} mm` },
+      series: [],
+    };
+    const { text } = chartSvg(crowded, { width: 220, height: 200 });
+    const shown = [...text.matchAll(/x="([\d.]+)" y="175" text-anchor="middle">([^<]*)</g)];
+    expect(shown.length).toBeGreaterThan(1);
+    shown.slice(1).forEach(([, px, word], n) => {
+      const [, before, last] = shown[n]!;
+      expect(Number(px) - Number(before)).toBeGreaterThan(3.2 * (word!.length + last!.length));
+    });
   });
 
   it('escape what they are given', () => {

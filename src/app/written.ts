@@ -1,0 +1,34 @@
+import type { ResultFile } from '../report/folder.ts';
+import { beside } from './runner.ts';
+import type { Store } from './store.ts';
+import type { WriterRequest } from './writer.ts';
+
+/** A file's name from the scenario's title. */
+export function nameOf(store: Store): string {
+  const title = (store.state.json as { title?: unknown } | undefined)?.title;
+  const slug = String(title ?? '')
+    .toLowerCase()
+    .replace(/[^\p{L}\p{N}]+/gu, '-')
+    .replace(/^-|-$/g, '');
+  return slug || 'scenario';
+}
+
+/**
+ * A file of the present result, written by a worker of its own: also where the run has been cancelled since.
+ * @throws Error where there is no result yet, or the worker failed
+ */
+export async function written(store: Store, file: ResultFile): Promise<string> {
+  const { result, traces, spectra } = store.state;
+  if (!result) throw new Error('there is no result yet; wait for the verdict.');
+  const command = `npx fieldassay compare ${nameOf(store)}.json --out out`;
+  const writer = new Worker(beside('./writer.js'), { type: 'module' });
+  try {
+    return await new Promise((resolve, reject) => {
+      writer.onmessage = ({ data }: MessageEvent<string>) => resolve(data);
+      writer.onerror = ({ message }) => reject(new Error(message || 'a worker could not be started.'));
+      writer.postMessage({ file, report: { result, traces, spectra, command } } satisfies WriterRequest);
+    });
+  } finally {
+    writer.terminate();
+  }
+}
