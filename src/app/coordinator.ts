@@ -44,8 +44,11 @@ interface Film {
 
 let current: Run | undefined;
 let queue: Promise<void> = Promise.resolve();
+/** the planes that were asked for last, until their turn comes: earlier ones are not begun */
+let wanted: Request | undefined;
 
 addEventListener('message', ({ data }: MessageEvent<Request>) => {
+  if (data.kind === 'planes') wanted = data;
   queue = queue.then(() => answer(data)).catch(fail);
 });
 
@@ -59,9 +62,11 @@ async function answer(request: Request): Promise<void> {
     case 'run':
       return await run(request.scenario, request.planes);
     case 'planes': {
+      if (request !== wanted) return;
+      wanted = undefined;
       const started = performance.now();
       if (current) await planes(current, request.planes, (stage, fraction) => progress(started, stage, fraction));
-      return tell({ kind: 'done' });
+      return done();
     }
     case 'potentials': {
       const film = current?.films[request.slice];
@@ -102,7 +107,12 @@ async function run(json: unknown, planesShown: readonly Plane[]): Promise<void> 
   current.findings = { result, signals, outside, spectra };
   tell({ kind: 'result', result, traces: tracesOf(current.findings), spectra });
   await finishPlanes(current, stage(1 - SHARES.planes, SHARES.planes));
-  tell({ kind: 'done' });
+  done();
+}
+
+/** Everything that was asked for is there. */
+function done(): void {
+  if (!wanted) tell({ kind: 'done' });
 }
 
 async function planes(run: Run, shown: readonly Plane[], onStage: Stage): Promise<void> {

@@ -1,3 +1,4 @@
+import { DEFINITIONS } from '../report/definitions.ts';
 import { QUANTITIES } from '../scene/quantity.ts';
 import { h } from './dom.ts';
 import type { Panes } from './panes.ts';
@@ -7,7 +8,7 @@ import type { Saving } from './save.ts';
 import type { Side } from './side.ts';
 import type { Store } from './store.ts';
 import { switchTheme } from './theme.ts';
-import type { Timeline } from './timeline.ts';
+import { SPEEDS, type Timeline } from './timeline.ts';
 
 interface Key {
   /** as KeyboardEvent.key has it; with Ctrl+ and Shift+ in front */
@@ -46,10 +47,16 @@ function table({ store, runner, panes, timeline, side, saving, places, choose }:
     });
   const gain = (by: number) => () =>
     store.setView({ gain: GAINS[Math.min(GAINS.length - 1, Math.max(0, GAINS.indexOf(view().gain) + by))]! });
+  const speed = (by: number) => () => {
+    const at = SPEEDS.indexOf(view().speed as (typeof SPEEDS)[number]) + by;
+    store.setView({ speed: SPEEDS[Math.min(SPEEDS.length - 1, Math.max(0, at))]! });
+  };
   return [
     { keys: [' '], help: 'play or pause', run: () => timeline.toggle() },
     { keys: ['ArrowLeft'], help: 'one picture back', run: () => timeline.stepBy(-1) },
     { keys: ['ArrowRight'], help: 'one picture on', run: () => timeline.stepBy(1) },
+    { keys: [','], help: 'slower', run: speed(-1) },
+    { keys: ['.'], help: 'faster', run: speed(1) },
     { keys: ['Home'], help: 'first picture', run: () => timeline.stepBy(-1e6) },
     { keys: ['End'], help: 'last picture', run: () => timeline.stepBy(1e6) },
     { keys: ['Shift+ArrowLeft'], help: 'turn the camera left', run: () => panes.turn(-10, 0) },
@@ -58,6 +65,10 @@ function table({ store, runner, panes, timeline, side, saving, places, choose }:
     { keys: ['Shift+ArrowDown'], help: 'tip the camera down', run: () => panes.turn(0, -10) },
     { keys: ['+', '='], help: 'nearer', run: () => panes.turn(0, 0, 1.2) },
     { keys: ['-'], help: 'farther', run: () => panes.turn(0, 0, 1 / 1.2) },
+    { keys: ['h'], help: 'shift the camera left', run: () => panes.shift(-0.1, 0) },
+    { keys: ['l'], help: 'shift the camera right', run: () => panes.shift(0.1, 0) },
+    { keys: ['j'], help: 'shift the camera down', run: () => panes.shift(0, -0.1) },
+    { keys: ['k'], help: 'shift the camera up', run: () => panes.shift(0, 0.1) },
     { keys: ['x'], help: 'look along x', run: () => panes.look('x') },
     { keys: ['y'], help: 'look along y', run: () => panes.look('y') },
     { keys: ['z'], help: 'look along z', run: () => panes.look('z') },
@@ -98,6 +109,10 @@ function table({ store, runner, panes, timeline, side, saving, places, choose }:
         if (names.length > 0) store.setView({ observer: turnTo(names, view().observer, 1) });
       },
     },
+    { keys: ['a'], help: 'add an observer', run: () => panes.offerObserver() },
+    { keys: ['p'], help: 'next plane, for the two keys below', run: () => panes.nextPlane() },
+    { keys: ['<'], help: 'plane back by a cell', run: () => panes.stepPlane(-1) },
+    { keys: ['>'], help: 'plane on by a cell', run: () => panes.stepPlane(1) },
     { keys: ['e'], help: 'scenario as text, or panels', run: () => side.toggle() },
     { keys: ['g'], help: 'next place', run: () => places.turn(1), everywhere: true },
     { keys: ['G', 'Shift+G'], help: 'previous place', run: () => places.turn(-1), everywhere: true },
@@ -107,6 +122,7 @@ function table({ store, runner, panes, timeline, side, saving, places, choose }:
     { keys: ['Ctrl+z'], help: 'undo', run: () => store.undo(), everywhere: true },
     { keys: ['Ctrl+Shift+Z', 'Ctrl+y'], help: 'redo', run: () => store.redo(), everywhere: true },
     { keys: ['Ctrl+o'], help: 'open a file', run: choose, everywhere: true },
+    { keys: ['s'], help: 'what can be saved', run: () => saving.open() },
     { keys: ['Ctrl+s'], help: 'save the scenario', run: () => saving.scenario(), everywhere: true },
   ];
 }
@@ -148,7 +164,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
     h(
       'p',
       {},
-      'Drag turns the camera of all panes, the wheel brings it nearer, dragging with the right button shifts it. A plane is moved by the disc at its corner. A click on a plane adds an observer there; a click on an observer selects it.',
+      'Drag turns the camera of all panes, the wheel brings it nearer, dragging with the right button shifts it. A plane is moved by the disc at its corner. A click on a plane adds an observer there; a click on an observer selects it. Pointing at a plane or a chart reads the values there, with their units. Printing the page gives the report.',
     ),
     h(
       'p',
@@ -160,6 +176,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
       {},
       'The trust map shows e(p) = √(Σ|grid − exact|²)/√(Σ|exact|²) over the instants of the film, each component at its own place and time. The red line is the tolerance; dashed lines are the closest and the farthest trusted distance, the dashed box what the walls leave.',
     ),
+    definitions(),
     h('form', { method: 'dialog' }, h('button', {}, 'Close')),
   );
   document.body.append(dialog);
@@ -192,6 +209,13 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
     found.run();
   });
   return { help };
+}
+
+/** What the figures are, in the report's words. */
+function definitions(): HTMLElement {
+  const element = h('div', { className: 'definitions' });
+  element.innerHTML = DEFINITIONS.text;
+  return element;
 }
 
 /** A list in columns, read downwards. */

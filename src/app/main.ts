@@ -91,12 +91,16 @@ function showReading(reading: Reading | undefined): void {
   const place = hit.point.map((x, a) => `${'xyz'[a]} ${formatQuantity(x, 'm')}`).join(', ');
   if (trust) {
     const error = (e: number) => (Number.isNaN(e) ? 'not told here' : formatPercent(e));
-    line.textContent = `At ${place}: error of E ${error(trust.E)}, of H ${error(trust.H)}, relative to the exact field there`;
+    const part = trust.largest === undefined ? '' : `; the largest part of E’s error is ${trust.largest}`;
+    line.textContent = `At ${place}: error of E ${error(trust.E)}, of H ${error(trust.H)}, relative to the exact field there${part}`;
     return;
   }
-  const share =
-    exact === 0 || Number.isNaN(exact) ? '' : ` (${formatNumber((100 * (grid - exact)) / exact, 2)} % of exact)`;
-  line.textContent = `${label} at ${place}: grid ${formatQuantity(grid, unit)}, exact ${formatQuantity(exact, unit)}, difference ${formatQuantity(grid - exact, unit)}${share}`;
+  const values = Object.entries({ grid, exact, difference: grid - exact }).flatMap(([name, value]) =>
+    Number.isNaN(value) ? [] : [`${name} ${formatQuantity(value, unit)}`],
+  );
+  const relative = (grid - exact) / exact;
+  const share = Number.isFinite(relative) ? ` (${formatNumber(100 * relative, 2)} % of exact)` : '';
+  line.textContent = `${label} at ${place}: ${values.join(', ') || 'nothing is known here'}${share}`;
 }
 
 const refresh = (now: number) => {

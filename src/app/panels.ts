@@ -194,6 +194,7 @@ export class Panels {
         h('div', { className: 'problem' }, h('p', {}, message), sound === undefined ? null : back),
       );
     }
+    this.host.querySelector('.problem')?.scrollIntoView({ block: 'nearest' });
   }
 
   private showPreview(): void {

@@ -5,7 +5,7 @@ import { paneAt, pick, pickMarker, slide } from '../draw/pick.ts';
 import { Picture } from '../draw/picture.ts';
 import { type Box, cameraFor, type Camera as PaneCamera, type Rectangle } from '../draw/projection.ts';
 import type { Scene } from '../draw/scene.ts';
-import type { Vec3 } from '../scenario/model.ts';
+import type { Scenario, Vec3 } from '../scenario/model.ts';
 import { gripOf, type Reading, type Scenery } from '../scene/scenery.ts';
 import { planesShown } from '../scene/slices.ts';
 import { byId } from './dom.ts';
@@ -47,6 +47,8 @@ export class Panes {
     | { readonly plane: number; readonly from: Vec3; readonly normal: Vec3; at: number; readonly pane: number }
     | undefined;
   private dividing = false;
+  /** index of the plane that the keyboard moves */
+  private chosen = 0;
   private pressed: { readonly x: number; readonly y: number; readonly time: number } | undefined;
   scene: Scene | undefined;
   /** pictures drawn so far */
@@ -64,6 +66,11 @@ export class Panes {
     store.on(['view', 'frame', 'film', 'theme', 'scenario', 'result'], () => this.invalidate());
     store.on(['view'], () => this.fit());
     this.listen();
+  }
+
+  /** Whether what is shown is what there is to show. */
+  get settled(): boolean {
+    return this.drawn > 0 && !this.dirty && !this.scenery.settling;
   }
 
   /** Draws again at the next opportunity. */
@@ -95,6 +102,25 @@ export class Panes {
     this.camera.position.copy(target).add(arm);
     this.camera.lookAt(target);
     this.controls?.update();
+    this.invalidate();
+  }
+
+  /** Shifts the camera by fractions of the height it sees. */
+  shift(right: number, up: number): void {
+    const { camera, controls } = this;
+    if (!controls) return;
+    const height =
+      camera instanceof OrthographicCamera
+        ? (camera.top - camera.bottom) / camera.zoom
+        : (2 * Math.tan((camera.fov * Math.PI) / 360) * camera.position.distanceTo(controls.target)) / camera.zoom;
+    camera.updateMatrixWorld();
+    const step = new Vector3()
+      .setFromMatrixColumn(camera.matrixWorld, 0)
+      .multiplyScalar(right * height)
+      .addScaledVector(new Vector3().setFromMatrixColumn(camera.matrixWorld, 1), up * height);
+    camera.position.add(step);
+    controls.target.add(step);
+    controls.update();
     this.invalidate();
   }
 
@@ -266,10 +292,7 @@ export class Panes {
       const moved = slide(scene, drag.pane, drag.from, drag.normal, x, y);
       if (!scenario || moved === undefined) return;
       const axis = drag.normal.indexOf(1);
-      const { box, cellSize } = scenario.grid;
-      const nodes = Math.round((drag.from[axis]! + moved - box.from[axis]!) / cellSize[axis]!);
-      const last = scenario.grid.cells[axis]! - 1;
-      drag.at = box.from[axis]! + Math.min(last, Math.max(1, nodes)) * cellSize[axis]!;
+      drag.at = onNode(scenario, axis, drag.from[axis]! + moved);
       this.scenery.moving = drag;
       this.invalidate();
       return;
@@ -303,6 +326,34 @@ export class Panes {
     }
     const hit = pick(scene, x, y);
     if (hit) this.onPick(hit.point, event.clientX, event.clientY);
+  }
+
+  /** Chooses the plane that the keyboard moves. */
+  nextPlane(): void {
+    const { scenario } = this.store.state;
+    if (scenario) this.chosen = (this.chosen + 1) % planesShown(scenario).length;
+  }
+
+  /** Moves the chosen plane by some cells. */
+  stepPlane(cells: number): void {
+    const { scenario } = this.store.state;
+    if (!scenario) return;
+    const shown = planesShown(scenario);
+    const n = Math.min(this.chosen, shown.length - 1);
+    const { normal, at } = shown[n]!;
+    this.movePlane(n, onNode(scenario, normal, at + cells * scenario.grid.cellSize[normal]!));
+  }
+
+  /** Asks for the name of an observer on the chosen plane, halfway from its middle to its corner. */
+  offerObserver(): void {
+    const { scenario } = this.store.state;
+    if (!scenario) return;
+    const shown = planesShown(scenario);
+    const { normal, at } = shown[Math.min(this.chosen, shown.length - 1)]!;
+    const { from, to } = scenario.grid.box;
+    const place = from.map((x, a) => (a === normal ? at : x + 0.75 * (to[a]! - x))) as unknown as Vec3;
+    const bounds = this.host.getBoundingClientRect();
+    this.onPick(place, bounds.left + bounds.width / 6, bounds.top + bounds.height / 2);
   }
 
   /** Puts a plane elsewhere in the scenario. */
@@ -342,6 +393,12 @@ export class Panes {
 function canvasCapture(canvas: HTMLCanvasElement, pointer: number): void {
   // A pointer that has left by then cannot be captured, which is no harm.
   if (canvas.hasPointerCapture?.(pointer) === false) canvas.setPointerCapture(pointer);
+}
+
+/** The nearest place along an axis where a plane of nodes lies inside the box, m. */
+function onNode({ grid: { box, cellSize, cells } }: Scenario, axis: number, at: number): number {
+  const nodes = Math.round((at - box.from[axis]!) / cellSize[axis]!);
+  return box.from[axis]! + Math.min(cells[axis]! - 1, Math.max(1, nodes)) * cellSize[axis]!;
 }
 
 const sameBox = (a: Box | undefined, b: Box): boolean =>

@@ -22,12 +22,12 @@ export class Runner {
 
   constructor(private readonly store: Store) {}
 
-  /** Runs the store's scenario, or only films it anew where nothing but its planes has changed since the last run. */
+  /** Runs the store's scenario, or only films it anew where nothing but its planes has changed since the last verdict. */
   update(): void {
-    const { json, scenario, problems, run } = this.store.state;
+    const { json, scenario, problems, result } = this.store.state;
     if (problems.length > 0 || !scenario) return;
     const wanted = decisive(json);
-    if (this.worker && run.status === 'done' && wanted === this.ran)
+    if (this.worker && result && wanted === this.ran)
       this.ask({ kind: 'planes', planes: planesShown(scenario) }, 'the grid, for the pictures');
     else this.start();
   }

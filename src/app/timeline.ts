@@ -51,6 +51,9 @@ export class Timeline {
       speed,
       h('label', {}, 'Observer', observer),
     );
+    store.on(['view'], () => {
+      speed.value = String(store.state.view.speed);
+    });
     store.on(['frame', 'film'], () => this.show());
     store.on(['scenario', 'view', 'film'], () => this.showEcho());
     this.show();

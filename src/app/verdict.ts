@@ -4,6 +4,8 @@ import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from '../report/budgetRows.ts';
 import { markup } from '../report/markup.ts';
 import { gridText } from '../report/words.ts';
+import type { Scenario } from '../scenario/model.ts';
+import { timeStepOf } from '../scenario/sites.ts';
 import { byId, h } from './dom.ts';
 import type { Runner } from './runner.ts';
 import type { RunState, Store } from './store.ts';
@@ -23,7 +25,7 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     if (store.state.run.status === 'running') runner.cancel();
     else runner.start();
   });
-  const mend = h('button', { type: 'button' }, 'Show where in the text');
+  const mend = h('button', { type: 'button' }, 'Show where');
   mend.addEventListener('click', toText);
   const takeBack = h('button', { type: 'button', title: 'Undo (Ctrl Z)' }, 'Undo the edit');
   takeBack.addEventListener('click', () => store.undo());
@@ -36,6 +38,8 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     checks.replaceChildren();
     if (!result) {
       budget.append(budgetTable(UNKNOWN));
+      const { scenario } = store.state;
+      if (scenario) details.append(whatRuns(scenario));
       more();
       return showRun();
     }
@@ -65,11 +69,13 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     button.textContent = running ? 'Cancel' : 'Run again';
     button.title = running ? 'Ends the run at once; what is known stays (Esc)' : 'Runs both solvers anew (r)';
     stage.textContent = wrong
-      ? `Not run: ${problems.length === 1 ? 'something is' : `${problems.length} things are`} wrong in the scenario.${film ? ' What is shown is the last sound one’s.' : ''}`
+      ? `Not run: ${problems.length === 1 ? 'something is' : `${problems.length} things are`} wrong in the scenario.`
       : statusText(state, result);
+    stage.title = wrong && film ? 'What is shown is the last sound scenario’s.' : '';
     mend.hidden = !wrong;
     takeBack.hidden = !wrong || !store.canUndo;
     if (result) return;
+    if (!running) details.replaceChildren();
     if (state.status === 'refused' || state.status === 'failed') sentence.textContent = state.message;
     else if (problems.length > 0 && !film) sentence.textContent = problems[0]!.message;
     else
@@ -80,6 +86,16 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
   store.on(['result'], showResult);
   store.on(['run', 'scenario'], showRun);
   budget.append(budgetTable(UNKNOWN));
+}
+
+/** What is compared, while nothing is known yet. */
+function whatRuns({ grid, medium, duration }: Scenario): string {
+  const step = timeStepOf(grid, medium);
+  return (
+    `The same currents run through both solvers: a Yee grid of ${grid.cells.join(' × ')} cells over ` +
+    `${Math.ceil(duration / step)} steps of ${formatQuantity(step, 's')}, and retarded integrals, which are exact for them. ` +
+    'The panes fill in as both advance.'
+  );
 }
 
 /** What is being done and for how long yet; or how it ended. */

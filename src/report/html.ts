@@ -2,6 +2,7 @@ import { type ObserverResult, type Result, withinTolerance } from '../compare/re
 import { formatPercent, formatQuantity, formatUpperBound } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
 import { boxCharts, type NamedChart, observerCharts } from './charts.ts';
+import { DEFINITIONS } from './definitions.ts';
 import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
 import type { Report } from './report.ts';
@@ -124,24 +125,6 @@ function runSection(result: Result): Markup {
 ${notes.map((note) => markup`<p>Note: ${note}</p>`)}
 <p class="muted">Fieldassay ${result.version}${Object.entries(environment).map(([name, value]) => markup` · ${name} ${String(value)}`)}</p>`;
 }
-
-const DEFINITIONS = markup`<h2>What the figures are</h2>
-<dl>
-<dt>relative L2</dt><dd>√(Σ |grid − exact|²) / √(Σ |exact|²) over instants and the three components of a field, each at its own place and time.</dd>
-<dt>boundary</dt><dd>Grid solver in its box minus the same grid without walls: what the walls sent back.</dd>
-<dt>lattice</dt><dd>Grid solver without walls minus the exact field of the currents it was given: dispersion, near field and time stepping of the lattice.</dd>
-<dt>gridding</dt><dd>Exact field of the currents on the grid’s edges minus that of the designed source.</dd>
-<dt>quadrature</dt><dd>The integral as computed minus its closed form; where there is none, its bound is its floor.</dd>
-<dt>share</dt><dd>⟨part, total⟩ / ⟨total, total⟩, signed; the shares of the parts sum to 1.</dd>
-<dt>floor</dt><dd>What a figure cannot be told from: rounding, the free-space run’s own leftover, the quadrature’s bound. A part below it is shown as “&lt; floor”.</dd>
-<dt>closest distance</dt><dd>The smallest distance to a source from which 95 % of the points in every distance bin, outward to the best, are within the tolerance; without walls.</dd>
-<dt>farthest distance</dt><dd>Where the lattice’s dispersion alone reaches the tolerance, in the worst direction that radiates; “extrapolated” beyond the box, and only where prediction and measurement agree within 1.4.</dd>
-<dt>wall clearance</dt><dd>The distance to the walls within which more than 5 % of the points exceed the tolerance.</dd>
-<dt>band</dt><dd>Up to the first of two consecutive sixth-octave bands whose vector ratio exceeds the tolerance; bands within 40 dB of the strongest and 10 dB above the floor count; both signals with the same taper at the end.</dd>
-<dt>shift, amplitude</dt><dd>Lag and height of the cross-correlation of the two signals’ increments; a positive shift is a late grid.</dd>
-<dt>rise time</dt><dd>10 to 90 % of the strongest component’s peak, grid against exact.</dd>
-<dt>static rest</dt><dd>Relative error of the field that charge leaves behind after the last arrival.</dd>
-</dl>`;
 
 function repeatSection({ scenario }: Result, command: string): Markup {
   return markup`<h2>To repeat it</h2>

@@ -168,7 +168,7 @@ function xAxis(axis: Axis, { x, left, right, bottom, width, height }: ChartLayou
 function apart(ticks: readonly Tick[], x: Position): Tick[] {
   let end = Number.NEGATIVE_INFINITY;
   return ticks.filter(({ value, text }) => {
-    const half = (text.length * CHARACTER) / 2;
+    const half = widthOf(text) / 2;
     if (x(value) - half < end) return false;
     end = x(value) + half + 6;
     return true;
@@ -188,15 +188,19 @@ function yAxis(axis: Axis, { y, left, right, top, bottom }: ChartLayout): Markup
 const LEGEND_LEFT = 14;
 const LEGEND_LINE = 16;
 
-/** A character is about so many pixels wide. */
-const CHARACTER = 6.4;
+/** About so many pixels is a text wide. */
+function widthOf(text: string): number {
+  let width = 0;
+  for (const character of text) width += /[mwMW%−µΩ]/.test(character) ? 11 : /[ijlft.,:;|()’ ]/.test(character) ? 4 : 7;
+  return width;
+}
 
 /** Names beside a stroke of their line, in rows under the title. */
 function legendPlaces(series: readonly Series[], width: number): { readonly x: number; readonly line: number }[] {
   let left = LEGEND_LEFT;
   let line = 0;
   return series.map(({ name }) => {
-    const length = 26 + name.length * CHARACTER;
+    const length = 26 + widthOf(name);
     if (left > LEGEND_LEFT && left + length > width) {
       left = LEGEND_LEFT;
       line++;
@@ -302,7 +306,7 @@ const ASCENT = 11;
 
 /** Where the label of an upright mark may stand, best first: on the side with more room, then lower and lower. */
 function besideUpright(p: number, label: string, { left, right, top, bottom }: ChartLayout): Place[] {
-  const length = label.length * CHARACTER;
+  const length = widthOf(label);
   const before: Omit<Place, 'base'> = { from: p - 4 - length, to: p - 4, anchor: 'end' };
   const behind: Omit<Place, 'base'> = { from: p + 4, to: p + 4 + length, anchor: 'start' };
   const sides = p > (left + right) / 2 ? [before, behind] : [behind, before];
@@ -314,7 +318,7 @@ function besideUpright(p: number, label: string, { left, right, top, bottom }: C
 
 /** Where the label of a level mark may stand, best first: at its left end below it, then above, then at its right end. */
 function besideLevel(p: number, label: string, { left, right }: ChartLayout): Place[] {
-  const length = label.length * CHARACTER;
+  const length = widthOf(label);
   const atLeft = { from: left + 4, to: left + 4 + length, anchor: 'start' } as const;
   const atRight = { from: right - 4 - length, to: right - 4, anchor: 'end' } as const;
   return [atLeft, atRight].flatMap((end) => [p + 14, p - 5].map((base) => ({ ...end, base })));

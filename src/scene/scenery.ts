@@ -1,3 +1,4 @@
+import { PARTS, type Part } from '../compare/budget.ts';
 import type { Result } from '../compare/result.ts';
 import { NEUTRALS, packed, type Scale, type SignedScale, type Theme } from '../draw/colour.ts';
 import { contours } from '../draw/contour.ts';
@@ -66,7 +67,7 @@ export interface Reading {
   readonly grid: number;
   readonly exact: number;
   /** point errors, where a trust map is shown */
-  readonly trust?: { readonly E: number; readonly H: number };
+  readonly trust?: { readonly E: number; readonly H: number; readonly largest?: Part };
 }
 
 /** What of a scenario does not change with time. */
@@ -303,9 +304,9 @@ export class Scenery {
     if (view.layout === 'trust') {
       const map = film.films[n]?.trust;
       const p = hit.j * hit.plane.nu + hit.i;
-      return (
-        map && { hit, unit: '', label: '', grid: Number.NaN, exact: Number.NaN, trust: { E: map.E[p]!, H: map.H[p]! } }
-      );
+      const largest = map && PARTS[map.largest[p]!];
+      const trust = map && { E: map.E[p]!, H: map.H[p]!, ...(largest ? { largest } : {}) };
+      return trust && { hit, unit: '', label: '', grid: Number.NaN, exact: Number.NaN, trust };
     }
     const quantity = quantityOf(view.quantity);
     const scales = this.pictures.scalesOf(film, scenario.grid.mask, quantity, frame, view.gain, view.difference);

@@ -56,6 +56,22 @@ export async function finished(page: Page): Promise<void> {
   );
 }
 
+/** Waits until the panes show the present state, and stand where they stay. */
+export async function settled(page: Page): Promise<void> {
+  await page.waitForFunction(
+    () =>
+      new Promise((resolve) => {
+        const { top, height } = document.querySelector('#panes')!.getBoundingClientRect();
+        requestAnimationFrame(() =>
+          requestAnimationFrame(() => {
+            const now = document.querySelector('#panes')!.getBoundingClientRect();
+            resolve(fieldassay.panes.settled && now.top === top && now.height === height);
+          }),
+        );
+      }),
+  );
+}
+
 /** Waits for the verdict alone. */
 export async function judged(page: Page): Promise<void> {
   await page.waitForFunction(() => globalThis.fieldassay?.store.state.result, undefined, { timeout: 90_000 });

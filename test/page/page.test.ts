@@ -20,7 +20,7 @@ import { EXAMPLES } from '../../src/scenario/examples.ts';
 import { loadScenario } from '../../src/scenario/load.ts';
 import { COMPONENTS, samplePoints } from '../../src/trace/trace.ts';
 import { launchBrowser } from './browser.ts';
-import { finished, judged, openPage, textOfPage } from './open.ts';
+import { finished, judged, openPage, settled, textOfPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
 
 let browser: Browser;
@@ -93,7 +93,7 @@ describe('the page with its own scenario', () => {
       fieldassay.store.state.playing = false;
       fieldassay.store.setFrame(40);
     });
-    await page.waitForTimeout(200);
+    await settled(page);
     const theme = (await page.evaluate(() => fieldassay.store.state.theme)) as Theme;
     const pixels = await page.evaluate(() => {
       const { panes, store } = fieldassay;
@@ -199,7 +199,7 @@ describe('the page, used', () => {
     await page.keyboard.press('Escape');
     for (const key of ['2', '3', '1', 'd', 'c', 'o', 'x', '0', 'q', 't', 'n', ']', 'Shift+ArrowLeft', '+'])
       await page.keyboard.press(key);
-    await page.waitForTimeout(200);
+    await settled(page);
     expect(troubles).toEqual([]);
     await page.context().close();
   });
@@ -354,9 +354,7 @@ describe('the page, used', () => {
   test('a click adds and names an observer, whose traces are then shown', async () => {
     const { page, troubles } = await openPage(browser, small);
     await finished(page);
-    // the progress row has gone, and the panes have taken its room
-    await page.waitForFunction(() => document.querySelector<HTMLElement>('#run')!.hidden);
-    await page.waitForTimeout(300);
+    await settled(page);
     const place = await page.evaluate(() => {
       const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
       for (let x = 60; x < canvas.width / 3; x += 7)
@@ -420,7 +418,7 @@ describe('planes', () => {
   test('are dragged by their corner: the films follow, the verdict stands; undo brings them back', async () => {
     const { page, troubles } = await openPage(browser, small);
     await finished(page);
-    await page.waitForTimeout(300);
+    await settled(page);
     const before = await page.evaluate(() => ({
       layer: fieldassay.store.state.film!.films[0]!.slice.layer,
       seconds: fieldassay.store.state.result!.timings.box.seconds,
