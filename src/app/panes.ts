@@ -341,7 +341,8 @@ export class Panes {
     const shown = planesShown(scenario);
     const n = Math.min(this.chosen, shown.length - 1);
     const { normal, at } = shown[n]!;
-    this.movePlane(n, onNode(scenario, normal, at + cells * scenario.grid.cellSize[normal]!));
+    const present = onNode(scenario, normal, at);
+    this.movePlane(n, onNode(scenario, normal, present + cells * scenario.grid.cellSize[normal]!));
   }
 
   /** Asks for the name of an observer on the chosen plane, halfway from its middle to its corner. */

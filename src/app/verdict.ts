@@ -71,7 +71,7 @@ export function showVerdict(store: Store, runner: Runner, toText: () => void): v
     stage.textContent = wrong
       ? `Not run: ${problems.length === 1 ? 'something is' : `${problems.length} things are`} wrong in the scenario.`
       : statusText(state, result);
-    stage.title = wrong && film ? 'What is shown is the last sound scenario’s.' : '';
+    stage.title = wrong && film ? 'What is shown is the last sound scenario’s.' : stage.textContent;
     mend.hidden = !wrong;
     takeBack.hidden = !wrong || !store.canUndo;
     if (result) return;

@@ -46,6 +46,12 @@ const SMALL = {
   observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
 };
 
+/** Chooses an entry of what can be saved. */
+async function savedAs(page: Page, name: string): Promise<void> {
+  await page.getByRole('button', { name: 'Save ▾' }).click();
+  await page.getByRole('menuitem', { name }).first().click();
+}
+
 async function enter(page: Page, scenario: unknown): Promise<void> {
   await page.evaluate((text) => fieldassay.store.setText(text), JSON.stringify(scenario, null, 2));
 }
@@ -59,7 +65,18 @@ describe('the page with its own scenario', () => {
       webgl: document.createElement('canvas').getContext('webgl'),
     }));
     expect(promise).toEqual({ isolated: true, webgl2: null, webgl: null });
+    const places = () =>
+      page.evaluate(() =>
+        ['#panes', '#timeline', '#side', '#budget', '#run'].map((selector) => {
+          const { x, y, height } = document.querySelector(selector)!.getBoundingClientRect();
+          return selector === '#budget' ? [y] : [x, y, height];
+        }),
+      );
+    await page.waitForFunction(() => (fieldassay.store.state.film?.gridFrames ?? 0) > 0);
+    const running = await places();
     await finished(page);
+    // nothing moves when the verdict comes and the progress bar goes
+    expect(await places()).toEqual(running);
     const command = spawnSync(process.execPath, [COMMAND, 'compare', '--json'], { encoding: 'utf8' });
     const result: Result = JSON.parse(command.stdout);
     expect(await textOfPage(page, '#sentence')).toBe(result.verdict.sentence);
@@ -80,6 +97,11 @@ describe('the page with its own scenario', () => {
     expect(own!.budget).toEqual(result.budget);
     expect(own!.norms).toEqual(result.norms);
     expect(own!.observers).toEqual(result.observers);
+    const [download] = await Promise.all([page.waitForEvent('download'), savedAs(page, 'Result')]);
+    const saved = JSON.parse(readFileSync(await download.path(), 'utf8'));
+    // what took how long, and where
+    const ofNoHost = ({ timings: _, environment: __, ...rest }: Result) => rest;
+    expect(ofNoHost(saved)).toEqual(ofNoHost(result));
 
     expect(requests.filter((url) => !url.startsWith(served.url) && !url.startsWith('data:'))).toEqual([]);
     expect(troubles).toEqual([]);
@@ -87,7 +109,7 @@ describe('the page with its own scenario', () => {
   });
 
   test('colours are the fields: grid by a run of its own, exact by the integral, difference by both', async () => {
-    const { page } = await openPage(browser, served.url);
+    const { page } = await openPage(browser, served.url, { viewport: { width: 1440, height: 1000 } });
     await finished(page);
     await page.evaluate(() => {
       fieldassay.store.state.playing = false;
@@ -100,11 +122,13 @@ describe('the page with its own scenario', () => {
       const canvas = document.querySelector<HTMLCanvasElement>('#panes-image')!;
       const context = canvas.getContext('2d')!;
       const found = [];
-      for (let x = 7; x < canvas.width; x += 11)
-        for (let y = 9; y < canvas.height; y += 13) {
+      for (let x = 7; x < canvas.width; x += 9)
+        for (let y = 9; y < canvas.height; y += 11) {
           const reading = panes.readingAt(x + 0.5, y + 0.5);
           if (!reading) continue;
           const { hit } = reading;
+          // the wire carries its current in colours of the same map
+          if (Math.abs(hit.point[0]) < 0.008 && Math.abs(hit.point[2]) < 0.058) continue;
           const [r, g, b, a] = context.getImageData(x, y, 1, 1).data;
           const scale = panes.scene!.panes[hit.pane]!.scale!;
           found.push({
@@ -283,11 +307,7 @@ describe('the page, used', () => {
     const folder = mkdtempSync(join(tmpdir(), 'page-'));
     try {
       const save = async (name: string) => {
-        await page.getByRole('button', { name: 'Save ▾' }).click();
-        const [download] = await Promise.all([
-          page.waitForEvent('download'),
-          page.getByRole('menuitem', { name }).first().click(),
-        ]);
+        const [download] = await Promise.all([page.waitForEvent('download'), savedAs(page, name)]);
         const path = join(folder, download.suggestedFilename());
         await download.saveAs(path);
         return path;
@@ -318,6 +338,107 @@ describe('the page, used', () => {
     expect([...troubles, ...linked.troubles]).toEqual([]);
     await page.context().close();
     await linked.page.context().close();
+  });
+
+  test('is printed as the report, in light colours; a cancelled run’s verdict can still be saved', async () => {
+    const { page, troubles } = await openPage(browser, small, { colorScheme: 'dark' });
+    const print = async () => {
+      await page.evaluate(() => window.dispatchEvent(new Event('beforeprint')));
+      await page.emulateMedia({ media: 'print' });
+      const seen = await page.evaluate(() => {
+        const root = document.querySelector('#report')!.shadowRoot!;
+        const heading = root.querySelector('h1');
+        return {
+          text: root.querySelector('body')!.textContent,
+          heading: heading?.textContent,
+          ink: heading && getComputedStyle(heading).color,
+          charts: root.querySelectorAll('svg.chart').length,
+          page: document.querySelector('#compare')!.getBoundingClientRect().height,
+        };
+      });
+      await page.emulateMedia({ media: 'screen' });
+      await page.evaluate(() => window.dispatchEvent(new Event('afterprint')));
+      return seen;
+    };
+    const early = await print();
+    expect(early.page).toBe(0);
+    expect(early.text).toContain('print again when there is a verdict');
+    await judged(page);
+    await page.keyboard.press('Escape');
+    expect(await page.evaluate(() => fieldassay.store.state.run.status)).toBe('cancelled');
+    await expect
+      .poll(async () => (await print()).heading, { timeout: 30_000 })
+      .toBe(await textOfPage(page, '#sentence'));
+    const report = await print();
+    expect(report.page).toBe(0);
+    expect(report.ink).toBe('rgb(27, 29, 33)');
+    expect(report.charts).toBeGreaterThan(4);
+    expect(report.text).toContain('What the figures are');
+    const [download] = await Promise.all([page.waitForEvent('download'), savedAs(page, 'Traces')]);
+    expect(readTraces(readFileSync(await download.path(), 'utf8')).length).toBe(COMPONENTS.length);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('says at the field what is wrong, with the way back as a button', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await judged(page);
+    const sentence = await textOfPage(page, '#sentence');
+    const courant = page.locator('.lil-controller', { hasText: 'Courant number' }).locator('input');
+    await page.evaluate(() =>
+      fieldassay.store.edit((draft) => {
+        draft.grid.courant = 1.5;
+      }),
+    );
+    const problem = page.locator('.problem');
+    await problem.waitFor();
+    expect(await problem.textContent()).toMatch(/courant.*1\.5/i);
+    expect(await courant.inputValue()).toBe('1.5');
+    expect(await textOfPage(page, '#run')).toContain('Not run');
+    expect(await textOfPage(page, '#sentence')).toBe(sentence);
+    await problem.getByRole('button').click();
+    await page.waitForFunction(() => fieldassay.store.state.problems.length === 0);
+    expect(await problem.count()).toBe(0);
+    expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  });
+
+  test('does by keyboard what the pointer does', async () => {
+    const { page, troubles } = await openPage(browser, small);
+    await finished(page);
+    const state = () =>
+      page.evaluate(() => ({
+        plane: fieldassay.store.state.scenario!.planes[0]!.at,
+        layer: fieldassay.store.state.film!.films[0]!.slice.layer,
+        place: fieldassay.panes.scene!.panes[0]!.camera.position.toArray(),
+        speed: fieldassay.store.state.view.speed,
+      }));
+    const before = await state();
+    for (const key of ['h', 'k', '.']) await page.keyboard.press(key);
+    await settled(page);
+    const shifted = await state();
+    expect(shifted.place).not.toEqual(before.place);
+    expect(shifted.speed).toBeGreaterThan(before.speed);
+    for (const key of ['l', 'j', ',']) await page.keyboard.press(key);
+    await settled(page);
+    const back = await state();
+    back.place.forEach((x, a) => {
+      expect(x).toBeCloseTo(before.place[a]!, 9);
+    });
+    await page.keyboard.press('>');
+    await page.waitForFunction((at) => fieldassay.store.state.scenario!.planes[0]!.at !== at, before.plane);
+    // of nodes 10 mm apart from −100 mm on, the next one
+    expect((await state()).plane).toBeCloseTo(-0.1 + 0.01 * (before.layer + 1), 9);
+    await page.keyboard.press('s');
+    await page.getByRole('menu').waitFor();
+    await page.keyboard.press('Escape');
+    await page.keyboard.press('a');
+    await page.getByLabel('Name of the new observer').waitFor();
+    await page.keyboard.press('Enter');
+    expect(await page.evaluate(() => fieldassay.store.state.scenario!.observers.length)).toBe(2);
+    expect(troubles).toEqual([]);
+    await page.context().close();
   });
 
   test('films are saved as WebM and as animated PNG', async () => {
