@@ -40,7 +40,7 @@ export class LiveChart {
 
   draw(chart: Chart | null): void {
     this.chart = chart;
-    const width = Math.max(300, Math.round(this.figure.clientWidth || 380));
+    const width = Math.max(260, Math.round(this.figure.clientWidth || 380));
     this.figure.replaceChildren();
     if (!chart) {
       this.figure.append(h('p', { className: 'empty' }, this.empty()));
@@ -201,11 +201,11 @@ export class Charts {
         },
       },
       {
-        live: new LiveChart(whenDone('Error against distance from the source')),
+        live: new LiveChart(whenDone('Error by distance to the source')),
         chart: () => (store.state.result ? distanceChart(store.state.result) : null),
       },
       {
-        live: new LiveChart(whenDone('Error against distance from the walls')),
+        live: new LiveChart(whenDone('Error by distance to the walls')),
         chart: () => (store.state.result ? wallChart(store.state.result) : null),
       },
     ];

@@ -1,5 +1,6 @@
 import GUI, { type Controller } from 'lil-gui';
 import { formatQuantity } from '../elementary/quantity.ts';
+import type { Problem } from '../scenario/load.ts';
 import {
   BOUNDARIES,
   CPML_DEFAULTS,
@@ -159,6 +160,8 @@ export class Panels {
   private editing = false;
   /** by the place that they edit, keys joined by dots */
   private readonly controls = new Map<string, Controller>();
+  /** what is wrong where no control is */
+  unplaced: readonly Problem[] = [];
 
   constructor(
     private readonly store: Store,
@@ -182,6 +185,7 @@ export class Panels {
   private showProblems(): void {
     for (const old of this.host.querySelectorAll('.problem')) old.remove();
     const { problems, sound } = this.store.state;
+    this.unplaced = problems.filter(({ path }) => !this.controls.has(path));
     for (const { path, message } of problems) {
       const controller = this.controls.get(path);
       if (!controller) continue;

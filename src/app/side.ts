@@ -47,9 +47,9 @@ export class Side {
       help,
     );
     store.on(['scenario'], () => {
-      const { problems } = store.state;
-      this.trouble.hidden = problems.length === 0 || this.shown === 'text';
-      this.trouble.textContent = problems[0] ? `Not run: ${problems[0].message}` : '';
+      const [problem] = this.panels.unplaced;
+      this.trouble.hidden = !problem || this.shown === 'text';
+      this.trouble.textContent = problem ? `Not run: ${problem.message}` : '';
     });
     this.show('panels');
   }

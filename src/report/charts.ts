@@ -167,7 +167,7 @@ export function distanceChart({ verdict, tolerance }: Result): Chart | null {
     { E: closest.E.bins, H: closest.H.bins },
     tolerance,
     {
-      title: 'Error against distance from the source',
+      title: 'Error by distance to the source',
       description: '95th percentile of the point error, no walls, in bins of distance; shaded is what is trusted.',
       distance: 'distance from the nearest source',
     },
@@ -187,7 +187,7 @@ export function wallChart({ verdict, tolerance }: Result): Chart | null {
     { E: wallClearance.E.bins, H: wallClearance.H.bins },
     tolerance,
     {
-      title: 'Error against distance from the walls',
+      title: 'Error by distance to the walls',
       description: '95th percentile of the total point error in bins of distance to the nearest wall.',
       distance: 'distance from the nearest wall',
     },
