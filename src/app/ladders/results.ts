@@ -52,7 +52,7 @@ export class Results {
   ) {
     const onKey = (key: string) => toCompare(Number(key));
     const shown = (empty: string, chart: Shown['chart'], clickable = true): Shown => ({
-      live: new LiveChart(empty, undefined, clickable ? onKey : undefined),
+      live: new LiveChart(() => empty, undefined, clickable ? onKey : undefined),
       chart,
     });
     this.charts = [
