@@ -1,7 +1,11 @@
 import { describe, expect, test } from 'vitest';
 import type { FaceLattice, LinearWall } from '../../src/fdtd/boundaries/boundary.ts';
 import { cpml as cpmlMethod } from '../../src/fdtd/boundaries/cpml.ts';
+import { higdon2 } from '../../src/fdtd/boundaries/higdon2.ts';
+import { liao } from '../../src/fdtd/boundaries/liao.ts';
 import { mur1 } from '../../src/fdtd/boundaries/mur1.ts';
+import { mur2 } from '../../src/fdtd/boundaries/mur2.ts';
+import { splitPml } from '../../src/fdtd/boundaries/splitPml.ts';
 import { stretchAt } from '../../src/fdtd/layout.ts';
 import type { GridProblem } from '../../src/fdtd/problem.ts';
 import { marchAlone } from '../../src/fdtd/run.ts';
@@ -24,6 +28,139 @@ describe('Mur', () => {
     const wall = mur1.wall({ type: 'mur1' }, crossing(1 / 3)) as LinearWall;
     expect(Math.abs(wall.now[0]! + 0.5)).toBeLessThanOrEqual(4 * Number.EPSILON);
   });
+
+  test('second order: the coefficients of the paper at cΔt = h/2', () => {
+    // Mur 1981, eq. 16 with cΔt = δ/2: (cΔt − δ)/(cΔt + δ) = −1/3, 2δ/(cΔt + δ) = 4/3, (cΔt)²/(2δ(cΔt + δ)) = 1/12, the last
+    // for each of four neighbours and −4 for the point itself (from memory).
+    const wall = mur2.wall({ type: 'mur2' }, crossing(1 / 2)) as LinearWall;
+    near(wall.older, [-1 / 3, -1]);
+    near(wall.now, [-1 / 3]);
+    near(wall.sideways!.across, [1 / 12, 1 / 12]);
+    near(wall.old, [4 / 3 - 4 / 12, 4 / 3 - 4 / 12]);
+    near((wall.sideways!.rim as LinearWall).now, [-1 / 3]);
+  });
+
+  test('a field that does not change stays: the coefficients sum to 1', () => {
+    const wall = mur2.wall({ type: 'mur2' }, { ...at, across: [3e-3, 5e-3] }) as LinearWall;
+    const sides = 4 * (wall.sideways!.across[0] + wall.sideways!.across[1]);
+    expect(Math.abs(total(wall) + sides - 1)).toBeLessThan(16 * Number.EPSILON);
+  });
+});
+
+/** Lists that agree to rounding. */
+function near(actual: readonly number[], expected: readonly number[]): void {
+  expect(actual.length).toBe(expected.length);
+  actual.forEach((x, n) => {
+    expect(Math.abs(x - expected[n]!)).toBeLessThan(8 * Number.EPSILON);
+  });
+}
+
+/** Σ of the coefficients of a wall, neighbours along it left out. */
+const total = ({ older, old, now }: LinearWall) => [...older, ...old, ...now].reduce((sum, x) => sum + x, 0);
+
+describe('Higdon', () => {
+  const wallOf = (angles: [number, number], damping: number, s: number) =>
+    higdon2.wall({ type: 'higdon2', angles, damping }, { ...at, timeStep: (s * at.cell) / medium.speed }) as LinearWall;
+
+  test('each factor is the box scheme of the paper: at 0° twice Mur’s first order', () => {
+    // Higdon 1986, sect. 5: with a = b = ½ the first-order operator is I + β Z^{-1} + γ K + δ Z^{-1}K; at cos α = 1 its
+    // coefficients are those of Mur. Its square: (1 + fK⁻ …)², f = (s − 1)/(s + 1).
+    const s = 0.4;
+    const f = (s - 1) / (s + 1);
+    // (1 − f K + f Z − ZK)², Z one step back and K one cell in: the coefficients of E0 moved to the other side.
+    const wall = wallOf([0, 0], 0, s);
+    near(wall.now, [2 * f, -f * f]);
+    near(wall.old, [-2 * f, 2 + 2 * f * f, -2 * f]);
+    near(wall.older, [-f * f, 2 * f, -1]);
+  });
+
+  test('without damping a constant field stays, with damping it decays', () => {
+    expect(Math.abs(total(wallOf([0, Math.PI / 4], 0, 0.57)) - 1)).toBeLessThan(32 * Number.EPSILON);
+    expect(total(wallOf([0, Math.PI / 4], 0.01, 0.57))).toBeLessThan(1);
+  });
+});
+
+describe('Liao', () => {
+  const wallOf = (damping: number, s: number) =>
+    liao.wall({ type: 'liao', damping }, { ...at, timeStep: (s * at.cell) / medium.speed }) as LinearWall;
+
+  test('where a wave crosses one cell a step it is the multi-transmitting formula u0 = 2u1 − u2', () => {
+    // Liao and others 1984: u_0^{p+1} = Σ_j (−1)^{j+1} C(N, j) u_j^{p+1−j}, N = 2.
+    const wall = wallOf(0, 1);
+    near(wall.old, [0, 2, 0]);
+    near(wall.older, [-0, -0, -1, -0, -0]);
+  });
+
+  test('in between it interpolates quadratically: 3/8, 6/8, −1/8 at half a cell', () => {
+    // t1 = (2 − s)(1 − s)/2, t2 = s(2 − s), t3 = s(s − 1)/2 (Liao and others 1984), and their convolution for two steps.
+    const wall = wallOf(0, 1 / 2);
+    near(wall.old, [6 / 8, 12 / 8, -2 / 8]);
+    near(
+      wall.older,
+      [9, 36, 30, -12, 1].map((x) => -x / 64),
+    );
+    expect(Math.abs(total(wall) - 1)).toBeLessThan(16 * Number.EPSILON);
+  });
+});
+
+describe('Split-field PML', () => {
+  test('D, and the gain of exponential time stepping', () => {
+    // Berenger 1994: E ← e^(−σΔt/ε) E + (1 − e^(−σΔt/ε))/(σΔx) ΔH; here the gain is relative to Δt/(εΔx), and what the field
+    // takes of Δ in the same step is inverseKappa + a (src/fdtd/boundaries/splitPml.ts).
+    const boundary = { type: 'splitPml', layers: 8, grading: 2, sigmaFactor: 0.7 } as const;
+    for (const depth of [0.05, 0.4, 0.9]) {
+      const sigma = ((0.7 * 0.8 * 3) / (medium.impedance * at.cell)) * depth * depth;
+      const lost = (sigma * at.timeStep) / medium.permittivity;
+      const { b, a, inverseKappa } = splitPml.stretch(boundary, depth, at);
+      expect(b / Math.exp(-lost)).toBeCloseTo(1, 13);
+      expect((inverseKappa + a) / ((1 - Math.exp(-lost)) / lost)).toBeCloseTo(1, 11);
+    }
+  });
+
+  test('the default σmax is that of R(0) = e^(−1.6 layers)', () => {
+    // Berenger 1994: R(0) = exp(−(2/(m + 1)) σmax δ/(εv)), δ the thickness.
+    const boundary = { type: 'splitPml', layers: 10, grading: 3, sigmaFactor: 1 } as const;
+    const { b } = splitPml.stretch(boundary, 1, at);
+    const sigma = (-Math.log(b) * medium.permittivity) / at.timeStep;
+    const exponent = ((2 / 4) * sigma * 10 * at.cell) / (medium.permittivity * medium.speed);
+    expect(exponent).toBeCloseTo(16, 10);
+  });
+});
+
+test('a magnetic conductor is the plane of symmetry of a box twice as wide', () => {
+  const steps = 90;
+  const edges = [
+    { axis: 2, node: [2, 3, 2], weight: 1 },
+    // Upright on the mirror, in the cell beside it, and along it.
+    { axis: 0, node: [0, 4, 3], weight: -0.7 },
+    { axis: 1, node: [0, 2, 4], weight: 0.4 },
+  ];
+  const pulse = makeWaveform({ type: 'gaussian', amplitude: 1, delay: 0.12e-9, sigma: 0.02e-9 });
+  const cells = [0, 2, 3, 3, 4, 2, 5, 1, 5];
+  const common = { steps, scale: 100 };
+  const half = plainProblem([6, 7, 8], {
+    ...common,
+    boundary: { ...everyFace(PEC), 'x-': { type: 'pmc' } },
+    pad: { ...everyFace(0), 'x-': 1 },
+    currents: edgesOf(edges, pulse),
+    samples: [{ cell: Int32Array.from(cells), every: 1 }],
+  });
+  // The image of a current along the plane has its sign, that of an upright one the other.
+  const images = edges.flatMap(({ axis, node: [i, j, k], weight }) =>
+    axis !== 0 && i === 0
+      ? []
+      : [{ axis, node: [axis === 0 ? 5 - i! : 6 - i!, j!, k!], weight: axis === 0 ? -weight : weight }],
+  );
+  const shifted = edges.map(({ axis, node: [i, j, k], weight }) => ({ axis, node: [i! + 6, j!, k!], weight }));
+  const whole = plainProblem([12, 7, 8], {
+    ...common,
+    currents: edgesOf([...shifted, ...images], pulse),
+    samples: [{ cell: Int32Array.from(cells.map((x, n) => (n % 3 === 0 ? x + 6 : x))), every: 1 }],
+  });
+  const [a, b] = [half, whole].map((problem) => marchAlone(problem).samples[0]!) as [Float64Array, Float64Array];
+  const largest = Math.max(...b.map(Math.abs));
+  expect(largest).toBeGreaterThan(1);
+  expect(Math.max(...a.map((x, n) => Math.abs(x - b[n]!)))).toBeLessThan(10 * steps * Number.EPSILON * largest);
 });
 
 describe('CPML', () => {
