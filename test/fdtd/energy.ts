@@ -6,6 +6,9 @@ import { type GridSetup, lead, prepareGridRun } from '../../src/fdtd/run.ts';
 import { FACES } from '../../src/scenario/model.ts';
 import { Dice } from './problems.ts';
 
+/** Cells between the random start and the faces of the box. */
+const OFF = 5;
+
 export interface EnergyHistory {
   /** energy of the start, and the largest since */
   readonly start: number;
@@ -16,7 +19,8 @@ export interface EnergyHistory {
 }
 
 /**
- * Marches a problem without sources from random fields of size 1 (the same for the same seed), and watches
+ * Marches a problem without sources from random fields of size 1 in the middle of the box (the same for the same seed),
+ * charges and their static field included, and watches
  *   W = ½ Σ ε|E^{n+1}|² V + ½ Σ μ H^{n+½}·H^{n+3/2} V,
  * which Yee's scheme conserves exactly between conductors; edges in a wall have half the volume of those inside, those of
  * a rim a quarter.
@@ -29,6 +33,11 @@ export function energyFrom(problem: GridProblem, seed: number, every: number): E
   const dice = new Dice(seed);
   const round = problem.precision === 'single' ? Math.fround : (x: number) => x;
 
+  // Behind a mirror there is nothing.
+  const ends = AXES.map((a) => [
+    walls[2 * a]!.type === 'mirror' ? 1 : 0,
+    walls[2 * a + 1]!.type === 'mirror' ? n[a] - 1 : n[a],
+  ]);
   // ½V/d² of a component at every node, 0 where it does not exist; e = E·d, h = ηH·d.
   const weights = [0, 1, 2, 3, 4, 5].map((field) => {
     const axis = field % 3;
@@ -42,27 +51,27 @@ export function energyFrom(problem: GridProblem, seed: number, every: number): E
           const where = [i, j, k];
           // e lies on nodes across its own axis, h along it.
           const onNode = (a: number) => (field < 3 ? a !== axis : a === axis);
-          // Normal h in a high wall is not marched; it never changes where e along the wall is held.
-          if (AXES.some((a) => where[a] === n[a] && (!onNode(a) || field >= 3))) continue;
-          const halves = AXES.filter((a) => onNode(a) && (where[a] === 0 || where[a] === n[a])).length;
+          if (AXES.some((a) => where[a]! < ends[a]![0]! || where[a]! > ends[a]![1]!)) continue;
+          // Normal h in a high wall is not marched.
+          if (AXES.some((a) => where[a] === ends[a]![1] && (!onNode(a) || (field >= 3 && where[a] === n[a])))) continue;
+          const halves = AXES.filter((a) => onNode(a) && ends[a]!.includes(where[a]!)).length;
           out[node] = (0.5 * volume) / square / 2 ** halves;
         }
     return out;
   });
-  const starts = weights.map((weight, field) =>
-    weight.map((w, node) => {
-      const x = node % (n[0] + 1);
-      const y = Math.floor(node / (n[0] + 1)) % (n[1] + 1);
-      const z = Math.floor(node / ((n[0] + 1) * (n[1] + 1)));
-      const held = AXES.some(
-        (a) =>
-          field < 3 &&
-          a !== field &&
-          ([x, y, z][a] === 0 || [x, y, z][a] === n[a]) &&
-          walls[2 * a + ([x, y, z][a] === 0 ? 0 : 1)]!.type !== 'linear',
-      );
+  // Where walls read nothing: else the start would be a jump of what they remember.
+  const { pad, boxCells } = problem;
+  const inner = AXES.map((a) => [pad[FACES[2 * a]!] + OFF, pad[FACES[2 * a]!] + boxCells[a]! - OFF]);
+  const starts = weights.map((weight) =>
+    weight.map((_, node) => {
+      const where = [
+        node % (n[0] + 1),
+        Math.floor(node / (n[0] + 1)) % (n[1] + 1),
+        Math.floor(node / ((n[0] + 1) * (n[1] + 1))),
+      ];
       const value = round(dice.real(-1, 1));
-      return w === 0 || held ? run.setup.layout.bias : value;
+      const inside = AXES.every((a) => where[a]! >= inner[a]![0]! && where[a]! < inner[a]![1]!);
+      return inside ? value : run.setup.layout.bias;
     }),
   );
 
@@ -75,9 +84,9 @@ export function energyFrom(problem: GridProblem, seed: number, every: number): E
     });
     return sum;
   };
-  let before: Float64Array[] = [];
+  let before: readonly Float64Array[] = starts;
   let start = Number.NaN;
-  let largest = Number.NEGATIVE_INFINITY;
+  let largest = 0;
   let last = Number.NaN;
   let unstableAt: number | null = null;
   lead(run, {
@@ -85,18 +94,15 @@ export function energyFrom(problem: GridProblem, seed: number, every: number): E
       for (const [field, values] of starts.entries()) writeField(setup, field, values);
     },
     onProgress(done) {
-      if (done % every === 1 || every === 1) {
-        const now = read(run.setup);
-        if (done > 1) {
-          last = energy(now, before);
-          if (Number.isNaN(start)) start = last;
-          if (!(last <= start * (1 + 1e-6)) && unstableAt === null) unstableAt = done;
-          largest = Math.max(largest, last);
-        }
+      if (done % every === 1) {
+        last = energy(read(run.setup), before);
+        if (done === 1) start = last;
+        if (!(last <= start * (1 + 1e-6))) unstableAt ??= done;
+        largest = Math.max(largest, last);
       }
       if (done % every === 0) before = read(run.setup);
     },
-    cancelled: () => unstableAt !== null,
+    cancelled: () => largest > 1e12 * start || Number.isNaN(last) !== Number.isNaN(start),
   });
   return { start, largest, last, unstableAt };
 }
