@@ -4,6 +4,10 @@
 
 export { type Plan, planJsonSchema } from './compare/planResult.ts';
 export { resultJsonSchema, withinTolerance } from './compare/result.ts';
+export { DERIVED, type Derived, derivedJsonSchema } from './derived/catalogue.ts';
+export { fluxThrough, inducedVoltage, voltageAlong } from './derived/paths.ts';
+export { pulseAt } from './derived/pulse.ts';
+export { directivityOf, radiatedEnergy, radiatedPower } from './derived/radiation.ts';
 export { resultText } from './report/text.ts';
 export { type FieldOptions, type FieldValue, fieldAt } from './retarded/field.ts';
 export { fieldBySpectrum, steadyField } from './retarded/spectral.ts';

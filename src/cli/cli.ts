@@ -3,6 +3,7 @@ import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
 import { withinTolerance } from '../compare/result.ts';
+import { derivedJsonSchema } from '../derived/catalogue.ts';
 import { writeTracesNpz } from '../files/npz.ts';
 import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
@@ -15,6 +16,7 @@ import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
 import { currentsCommand } from './currents.ts';
+import { addDeriveCommand } from './derive.ts';
 import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
 import { frameFiles } from './frames.ts';
 import { InputError, readScenario } from './input.ts';
@@ -65,7 +67,7 @@ export async function runCli(args: readonly string[]): Promise<number> {
   }
 }
 
-const SCHEMAS = { scenario: scenarioJsonSchema, survey: surveyJsonSchema } as const;
+const SCHEMAS = { scenario: scenarioJsonSchema, survey: surveyJsonSchema, derived: derivedJsonSchema } as const;
 
 const wholeNumber =
   (least: number, most: number) =>
@@ -173,6 +175,8 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       if (disagreement) process.stderr.write(disagreementText(disagreement));
     });
 
+  addDeriveCommand(program, signal);
+
   program
     .command('currents')
     .argument('<scenario>', 'a scenario file or a built-in scenario')
@@ -204,7 +208,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
   program
     .command('schema')
     .argument('[of]', `what to describe: ${Object.keys(SCHEMAS).join(', ')}`, 'scenario')
-    .description('print the JSON Schema of scenario or survey files')
+    .description('print the JSON Schema of scenario or survey files, or of what `derive --json` prints')
     .addHelpText('after', '\nExample: fieldassay schema > scenario.schema.json\n')
     .action((of: string) => {
       if (!Object.hasOwn(SCHEMAS, of))

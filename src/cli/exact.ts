@@ -14,8 +14,8 @@ import { type Disagreement, disagreement } from '../run/routes.ts';
 import { firstArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
 import type { Medium, Source, Vec3 } from '../scenario/model.ts';
-import { InputError, readInput } from './input.ts';
-import { progressLine } from './progress.ts';
+import { readRows } from './rows.ts';
+import { Walk } from './walk.ts';
 
 export const ROUTES = ['retarded', 'spectral'] as const;
 
@@ -32,9 +32,6 @@ type Row = readonly [x: number, y: number, z: number, at: number];
 const QUANTITIES = ['Ex', 'Ey', 'Ez', 'Hx', 'Hy', 'Hz', 'Bx', 'By', 'Bz', 'phi', 'Ax', 'Ay', 'Az'];
 const ERRORS = ['errorE', 'errorH'];
 
-/** Points evaluated before progress is shown and an interruption is looked for. */
-const BATCH = 256;
-
 /**
  * The exact field at the points and instants (or frequencies) of a CSV file.
  * @returns CSV in the order of the file, SI units; and, where two routes were taken, how far they are apart
@@ -50,8 +47,8 @@ export async function exactCommand(
   const loaded = loadScenario(scenarioInput);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   const { sources, medium } = loaded.scenario;
-  const rows = readRows(pointsFile, frequencies ? 'f' : 't');
-  const walk = new Walk(signal, rows.length < 10 * BATCH && route === 'retarded');
+  const rows = readRows(pointsFile, ['x', 'y', 'z', frequencies ? 'f' : 't']).rows as unknown as readonly Row[];
+  const walk = new Walk(signal);
   try {
     if (frequencies) {
       const at = steadyField(sources, medium);
@@ -111,40 +108,6 @@ async function spectralValues(
 
 const pointOf = ([x, y, z]: Row): Vec3 => [x, y, z];
 
-/** Goes through a list with progress, so that an interruption is heard, and says which row is refused. */
-class Walk {
-  readonly #line: ReturnType<typeof progressLine>;
-
-  constructor(
-    readonly signal: AbortSignal,
-    quiet: boolean,
-  ) {
-    this.#line = progressLine(quiet);
-  }
-
-  async map<T, U>(stage: string, list: readonly T[], evaluate: (item: T) => U): Promise<U[]> {
-    const out: U[] = [];
-    for (const [n, item] of list.entries()) {
-      if (n % BATCH === 0) {
-        this.#line.show({ stage, fraction: n / list.length });
-        await new Promise((next) => setImmediate(next));
-        this.signal.throwIfAborted();
-      }
-      try {
-        out.push(evaluate(item));
-      } catch (error) {
-        if (error instanceof RangeError) throw new InputError(`row ${n + 2}: ${error.message}`);
-        throw error;
-      }
-    }
-    return out;
-  }
-
-  end(): void {
-    this.#line.end();
-  }
-}
-
 type Value = Pick<SpectralValue, 'E' | 'H' | 'B' | 'phi' | 'A' | 'errorE' | 'errorH'>;
 
 const flat = ({ E, H, B, phi, A, errorE, errorH }: Value): number[] => [...E, ...H, ...B, phi, ...A, errorE, errorH];
@@ -163,34 +126,6 @@ function csvOf(
 ): string {
   const table = [['x', 'y', 'z', at, ...quantities, ...ERRORS], ...rows.map((row, n) => [...row, ...values[n]!])];
   return `${Papa.unparse(table as unknown[][], { newline: '\n' })}\n`;
-}
-
-function readRows(file: string, at: 't' | 'f'): Row[] {
-  const asked = ['x', 'y', 'z', at];
-  const unit = at === 't' ? 's' : 'Hz';
-  const { data, meta, errors } = Papa.parse<Record<string, string>>(readInput(file, 'the points file').trim(), {
-    header: true,
-    skipEmptyLines: true,
-  });
-  const missing = asked.filter((name) => !meta.fields?.includes(name));
-  if (missing.length > 0)
-    throw new InputError(
-      `${file}: the header is “${meta.fields?.join(',') ?? ''}”; it must name the columns ${asked.join(',')} (m and ${unit})`,
-    );
-  const broken = errors[0];
-  if (broken) throw new InputError(`${file}, row ${(broken.row ?? 0) + 2}: ${broken.message}`);
-  return data.map((record, n) => {
-    const numbers = asked.map((name) => {
-      const text = (record[name] ?? '').trim();
-      const value = Number(text);
-      if (text === '' || !Number.isFinite(value))
-        throw new InputError(
-          `${file}, row ${n + 2}: ${name} is “${text}”; it must be a finite number, ${name === at ? unit : 'm'}`,
-        );
-      return value;
-    });
-    return numbers as unknown as Row;
-  });
 }
 
 /** What `exact --route spectral` says of the two routes. */

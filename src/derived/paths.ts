@@ -102,7 +102,9 @@ interface Stretch {
   readonly from: Vec3;
   readonly to: Vec3;
   readonly value: number;
+  /** of the quadrature, and of the fields themselves */
   readonly error: number;
+  readonly own: number;
   readonly modulus: number;
 }
 
@@ -139,17 +141,18 @@ function pathIntegral(
       modulus += (kronrod.weights[m]! / 2) * norm(vector) * norm(d);
       own += (kronrod.weights[m]! / 2) * error * norm(d);
     }
-    return { from, to, value, error: Math.abs(difference) + own, modulus };
+    return { from, to, value, error: Math.abs(difference), own, modulus };
   };
 
   return (t) => {
     const parts = corners.map(({ from, to }) => stretch(from, to, t));
     let evaluations = parts.length * KRONROD_POINTS;
     for (;;) {
-      const total = (key: 'value' | 'error' | 'modulus') => parts.reduce((sum, part) => sum + part[key], 0);
-      const error = total('error');
-      if (error <= tolerance * total('modulus') || evaluations + 2 * KRONROD_POINTS > maxEvaluations)
-        return { value: total('value'), error, evaluations };
+      const total = (key: 'value' | 'error' | 'own' | 'modulus') => parts.reduce((sum, part) => sum + part[key], 0);
+      const [error, own] = [total('error'), total('own')];
+      const enough = error <= Math.max(tolerance * total('modulus'), own);
+      if (enough || evaluations + 2 * KRONROD_POINTS > maxEvaluations)
+        return { value: total('value'), error: error + own, evaluations };
       const worst = parts.reduce((w, part, m) => (part.error > parts[w]!.error ? m : w), 0);
       const { from, to } = parts[worst]!;
       const middle = from.map((x, a) => (x + to[a]!) / 2) as unknown as Vec3;
@@ -168,6 +171,7 @@ const TOUCHING = 1e-9;
  */
 function refuseCrossing(sources: readonly Source[], first: Vec3, last: Vec3): void {
   const least = TOUCHING * norm(sub(last, first));
+  const shown = (x: number) => Number((Math.round(x / (1e3 * least)) * 1e3 * least).toPrecision(6));
   const visit = (from: Vec3, to: Vec3): void => {
     const half = norm(sub(to, from)) / 2;
     const middle = from.map((x, a) => (x + to[a]!) / 2) as unknown as Vec3;
@@ -177,7 +181,7 @@ function refuseCrossing(sources: readonly Source[], first: Vec3, last: Vec3): vo
         .map((source) => [source.name, distanceToSources([source], middle)] as const)
         .reduce((nearest, next) => (next[1] < nearest[1] ? next : nearest));
       throw new RangeError(
-        `the path crosses source “${name}” at (${middle.map((x) => Number(x.toPrecision(6))).join(', ')}) m, where the ` +
+        `the path crosses source “${name}” at (${middle.map(shown).join(', ')}) m, where the ` +
           'field of a filament is infinite. Lead it round.',
       );
     }
