@@ -39,6 +39,7 @@ const timeline = new Timeline(store);
 const charts = new Charts(store);
 const side = new Side(store);
 showVerdict(store, runner, () => side.show('text'));
+const prediction = new Prediction(store);
 /** The places beside Compare, in their order: each is loaded when it is first come to. */
 const PLACES: readonly Place[] = [
   {
@@ -47,9 +48,14 @@ const PLACES: readonly Place[] = [
     help: 'Many cases at once: how the error falls with the cells, and what walls send back',
     start: async (host, places) => (await import('./ladders/ladders.ts')).ladders(host, store, places),
   },
+  {
+    key: 'plan',
+    name: 'Plan',
+    help: 'The cheapest cells, walls and clearance that meet a tolerance, predicted without a run',
+    start: async (host, places) => (await import('./plan/plan.ts')).plan(host, store, places, prediction),
+  },
 ];
 const places = new Places(PLACES, moved, (step) => void writeAddress(step));
-const prediction = new Prediction(store);
 const { choose } = acceptFiles(store, side, places);
 buildActions();
 const saving = new Saving(store, panes, charts);

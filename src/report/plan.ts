@@ -1,8 +1,10 @@
 import { boundaryText } from '../compare/boundaryWords.ts';
+import { paretoFront } from '../compare/front.ts';
 import { type Plan, type PlannedPlace, type PlannedSetup, planSchema } from '../compare/planResult.ts';
-import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
+import { formatPercent, formatQuantity, formatScientific } from '../elementary/quantity.ts';
 import { type Markup, markup, printable } from './markup.ts';
 import { page } from './page.ts';
+import { choiceColour } from './surveyCharts.ts';
 import { type Chart, chartSvg, type Series } from './svg.ts';
 import { columns, countText, percentOr } from './words.ts';
 
@@ -24,14 +26,14 @@ export function planJson(plan: Plan): string {
   return `${JSON.stringify(planSchema.parse(plan), null, 2)}\n`;
 }
 
-const sizeText = ({ cellSize }: PlannedSetup): string =>
+export const sizeText = ({ cellSize }: PlannedSetup): string =>
   cellSize.every((d) => d === cellSize[0])
     ? formatQuantity(cellSize[0], 'm')
     : cellSize.map((d) => formatQuantity(d, 'm')).join(' × ');
 
-const SETUP_HEAD = ['cells of', 'boundary', 'clearance', 'cells', 'steps', 'memory', 'predicted'];
+export const SETUP_HEAD = ['cells of', 'boundary', 'clearance', 'cells', 'steps', 'memory', 'predicted'];
 
-const setupCells = (setup: PlannedSetup): string[] => [
+export const setupCells = (setup: PlannedSetup): string[] => [
   sizeText(setup),
   boundaryText(setup.boundary),
   `${setup.clearance} cells`,
@@ -41,16 +43,16 @@ const setupCells = (setup: PlannedSetup): string[] => [
   formatPercent(setup.predicted),
 ];
 
-const PLACE_HEAD = ['', 'predicted', 'lattice', 'gridding', 'both', 'boundary', 'measured'];
+export const PLACE_HEAD = ['', 'predicted', 'lattice', 'gridding', 'both', 'boundary', 'measured'];
 
-const placeCells = ({ name, total, lattice, gridding, free, boundary, measured }: PlannedPlace): string[] => [
+export const placeCells = ({ name, total, lattice, gridding, free, boundary, measured }: PlannedPlace): string[] => [
   name,
   ...[total, lattice, gridding, free, boundary].map((e) => formatPercent(e)),
   percentOr(measured),
 ];
 
 /** What the chosen set-up costs, in lines. */
-function costLines({ chosen, machine, own, check }: Plan): string[] {
+export function costLines({ chosen, machine, own, check }: Plan): string[] {
   if (!chosen) return [];
   const { shape, cells, steps, timeStep, memoryBytes } = chosen;
   const rate = (n: number) => formatQuantity(n, 'cells/s');
@@ -133,6 +135,74 @@ export function tradeOffChart({ curve, alternatives, chosen, tolerance }: Plan):
     marks: [
       { axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` },
       { axis: 'x', at: chosen.work, label: sizeText(chosen) },
+    ],
+  };
+}
+
+/**
+ * Predicted error against work over many set-ups: of each boundary those that no other with it beats, the chosen one
+ * marked, and the scenario as it stands beside them.
+ */
+export function frontsChart(
+  setups: readonly PlannedSetup[],
+  tolerance: number,
+  chosen: PlannedSetup | null,
+  standing: { readonly work: number; readonly predicted: number } | null,
+): Chart | null {
+  if (setups.length === 0) return null;
+  const groups = new Map<string, PlannedSetup[]>();
+  for (const each of setups) {
+    const name = boundaryText(each.boundary);
+    groups.set(name, [...(groups.get(name) ?? []), each]);
+  }
+  const series = [...groups].map(([name, group], n): Series => {
+    const front = paretoFront(group.map(({ work, predicted }) => ({ cost: work, error: predicted }))).map(
+      (i) => group[i]!,
+    );
+    return {
+      name,
+      colour: choiceColour(n),
+      points: front.map(({ work, predicted }) => [work, predicted] as const),
+      dots: ([, error]) => (error > tolerance ? 'outside' : 'within'),
+    };
+  });
+  const marked = [chosen, standing].flatMap((each) => (each ? [[each.work, each.predicted] as const] : []));
+  const all = [...series.flatMap(({ points }) => points), ...marked];
+  const errors = [...all.map(([, error]) => error), tolerance];
+  const works = all.map(([work]) => work);
+  return {
+    title: 'What an error costs',
+    description:
+      'Predicted error of E, the worst place, against cells times steps: of each boundary the set-ups that no other beats; red where outside the tolerance.',
+    x: {
+      label: 'cells × steps',
+      unit: '',
+      scale: 'log',
+      domain: [Math.min(...works) / 1.3, Math.max(...works) * 1.3],
+      format: (value) => formatScientific(value, 1),
+    },
+    y: {
+      label: 'predicted error of E',
+      unit: '',
+      scale: 'log',
+      domain: [Math.min(...errors) / 1.5, Math.max(...errors) * 1.5],
+      format: (value) => formatPercent(value),
+    },
+    series,
+    marks: [
+      { axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` },
+      ...(chosen
+        ? [
+            {
+              axis: 'x' as const,
+              at: chosen.work,
+              label: `cheapest: ${sizeText(chosen)}, ${boundaryText(chosen.boundary)}`,
+            },
+          ]
+        : []),
+      ...(standing
+        ? [{ axis: 'x' as const, at: standing.work, label: `as it stands: ${formatPercent(standing.predicted)}` }]
+        : []),
     ],
   };
 }

@@ -1,4 +1,5 @@
 import { formatNumber } from '../elementary/quantity.ts';
+import { memoryNeeded } from '../fdtd/layout.ts';
 import { distanceToSources } from '../scenario/distance.ts';
 import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
 import { CPML_DEFAULTS } from '../scenario/schema.ts';
@@ -14,7 +15,7 @@ import {
   totalOf,
 } from './planSearch.ts';
 import { boundaryErrors, isPredictable, predictFree, predictWalls, type Wall } from './predict.ts';
-import { questionOf } from './question.ts';
+import { boxProblem, questionOf } from './question.ts';
 import { Refusal } from './refusal.ts';
 import { ownWall } from './remedy.ts';
 
@@ -36,6 +37,8 @@ export type Foresight =
       /** the observers inside the box, or where there are none those outside it */
       readonly places: readonly Foreseen[];
       readonly worst: Foreseen;
+      /** cells × steps of the grid in its box, absorber included */
+      readonly work: number;
       /** what was left out, and why */
       readonly notes: readonly string[];
     }
@@ -79,7 +82,9 @@ export function foresee(scenario: Scenario): Foresight {
       };
     });
     const worst = found.reduce((a, b) => (b.total > a.total ? b : a));
-    return { places: found, worst, notes: 'reason' in wall ? [...notes, wall.reason] : notes };
+    const question = questionOf(scenario);
+    const work = memoryNeeded(boxProblem(question, [])).cells * question.steps;
+    return { places: found, worst, work, notes: 'reason' in wall ? [...notes, wall.reason] : notes };
   } catch (error) {
     if (error instanceof Refusal) return { reason: unended(error.problems[0]!.message) };
     // A sample on an edge that carries the current.

@@ -55,15 +55,8 @@ const SINGLE_SERVES = 2e-3;
  */
 export async function planScenario(input: unknown, options: PlanOptions = {}): Promise<Plan> {
   const asked = given(input);
-  const { scenario } = asked;
-  const tolerance = options.tolerance ?? scenario.tolerance;
-  const { places, notes: leftOut } = goalPlaces(scenario, options.at, options.distance);
-  const goal: Goal = { tolerance, places, band: options.band ?? null };
-  const precision = tolerance < SINGLE_SERVES ? 'double' : scenario.grid.precision;
-  const notes = [...leftOut];
-  if (precision !== scenario.grid.precision)
-    notes.push(`Double precision is planned: single precision rounds at up to ${formatPercent(SINGLE_SERVES / 4)}.`);
-  const base = { ...asked.json, grid: { ...asked.json.grid, precision } };
+  const prepared = prepareGoal(asked, options);
+  const { goal, base, frame } = prepared;
   const threads = options.threads ?? threadsAvailable();
   const meter = new ProgressMeter(options.onProgress ?? (() => {}), [
     ['set-ups predicted', 2],
@@ -73,40 +66,104 @@ export async function planScenario(input: unknown, options: PlanOptions = {}): P
   return withTeam(threads, options.signal, async (team) => {
     meter.enter(0);
     const started = performance.now();
-    const found = await team.run('searchPlan', [base, goal, frameOf(scenario, places)]);
+    const found = await team.run('searchPlan', [base, goal, frame]);
     const searchSeconds = (performance.now() - started) / 1000;
     meter.enter(1);
-    const { chosen } = found;
-    const planned = chosen && plannedScenario(asked, goal, chosen, precision);
-    const rate = await cellRate(team, scenario);
-    const seconds = chosen && chosen.work / rate;
-    const loaded = planned && loadScenario(planned);
-    const fits = chosen !== null && loaded !== null && 'scenario' in loaded && chosen.memoryBytes <= memoryLimit();
-    meter.enter(2);
-    const wanted = options.check !== false && found.met && fits && seconds! <= LONGEST_CHECK;
-    const run = wanted ? await measured(team, given(planned), goal, (done) => meter.at(done)) : null;
-    const all = found.places.map((place, p) => ({ ...place, measured: run?.errors[p] ?? null }));
-    const worst = run && Math.max(...run.errors);
-    return {
-      title: scenario.title,
-      version: VERSION,
-      tolerance,
-      band: goal.band,
-      met: found.met,
-      chosen,
-      places: all,
-      alternatives: found.alternatives,
-      curve: found.curve,
-      machine: { cellsPerSecond: rate, seconds, fits },
-      own:
-        options.ownRate && chosen ? { cellsPerSecond: options.ownRate, seconds: chosen.work / options.ownRate } : null,
-      check: run && { measured: worst!, ratio: chosen!.predicted / worst!, seconds: run.seconds },
+    const plan = planOf(asked, prepared, found, {
+      cellsPerSecond: await cellRate(team, asked.scenario),
+      ownRate: options.ownRate,
       searchSeconds,
-      sentence: sentenceOf(found, tolerance, worst),
-      notes: [...notes, ...found.notes, ...(wanted || !found.met ? [] : [uncheckedNote(options, fits, seconds!)])],
-      scenario: planned,
-    };
+    });
+    const { seconds, fits } = plan.machine;
+    meter.enter(2);
+    if (options.check !== false && plan.met && fits && seconds! <= LONGEST_CHECK)
+      return checked(plan, await measured(team, given(plan.scenario), goal, (done) => meter.at(done)));
+    return plan.met ? { ...plan, notes: [...plan.notes, uncheckedNote(options, fits, seconds!)] } : plan;
   });
+}
+
+/** What a search found as a plan that no run has checked. */
+export function planOf(
+  asked: Given,
+  { goal, precision, notes }: PreparedGoal,
+  found: Found,
+  speed: {
+    readonly cellsPerSecond: number;
+    readonly ownRate?: number | undefined;
+    readonly searchSeconds: number;
+  },
+): Plan {
+  const { chosen } = found;
+  const { cellsPerSecond, ownRate, searchSeconds } = speed;
+  const planned = chosen && plannedScenario(asked, goal, chosen, precision);
+  const loaded = planned && loadScenario(planned);
+  return {
+    title: asked.scenario.title,
+    version: VERSION,
+    tolerance: goal.tolerance,
+    band: goal.band,
+    met: found.met,
+    chosen,
+    places: found.places,
+    alternatives: found.alternatives,
+    curve: found.curve,
+    machine: {
+      cellsPerSecond,
+      seconds: chosen && chosen.work / cellsPerSecond,
+      fits: chosen !== null && loaded !== null && 'scenario' in loaded && chosen.memoryBytes <= memoryLimit(),
+    },
+    own: ownRate && chosen ? { cellsPerSecond: ownRate, seconds: chosen.work / ownRate } : null,
+    check: null,
+    searchSeconds,
+    sentence: sentenceOf(found, goal.tolerance, null),
+    notes: [...notes, ...found.notes],
+    scenario: planned,
+  };
+}
+
+/** A plan with what a run of it showed. */
+function checked(
+  plan: Plan,
+  { errors, seconds }: { readonly errors: readonly number[]; readonly seconds: number },
+): Plan {
+  const worst = Math.max(...errors);
+  return {
+    ...plan,
+    places: plan.places.map((place, p) => ({ ...place, measured: errors[p]! })),
+    check: { measured: worst, ratio: plan.chosen!.predicted / worst, seconds },
+    sentence: sentenceOf(plan, plan.tolerance, worst),
+  };
+}
+
+/** What a search is given. */
+export interface PreparedGoal {
+  readonly goal: Goal;
+  /** the scenario file with the precision that is planned */
+  readonly base: Given['json'];
+  readonly frame: Frame;
+  readonly precision: Scenario['grid']['precision'];
+  readonly notes: readonly string[];
+}
+
+/** What is to be met, where, and what may be chosen for it. @throws Refusal where there is no such place */
+export function prepareGoal(
+  { json, scenario }: Given,
+  options: Pick<PlanOptions, 'tolerance' | 'at' | 'distance' | 'band'>,
+): PreparedGoal {
+  const tolerance = options.tolerance ?? scenario.tolerance;
+  const { places, notes: leftOut } = goalPlaces(scenario, options.at, options.distance);
+  const goal: Goal = { tolerance, places, band: options.band ?? null };
+  const precision = tolerance < SINGLE_SERVES ? 'double' : scenario.grid.precision;
+  const notes = [...leftOut];
+  if (precision !== scenario.grid.precision)
+    notes.push(`Double precision is planned: single precision rounds at up to ${formatPercent(SINGLE_SERVES / 4)}.`);
+  return {
+    goal,
+    base: { ...json, grid: { ...json.grid, precision } },
+    frame: frameOf(scenario, places),
+    precision,
+    notes,
+  };
 }
 
 /** The box holds sources and places; the first source's lower corner is a node, so that a source on grid lines stays on them. */
@@ -175,7 +232,7 @@ const TRIAL_CELLS = 72;
 const TRIAL_STEPS = 40;
 
 /** Cell updates a second. */
-async function cellRate(team: Team, scenario: Scenario): Promise<number> {
+export async function cellRate(team: Team, scenario: Scenario): Promise<number> {
   const none: EdgeCurrents = {
     count: 0,
     axis: new Uint8Array(0),
@@ -198,7 +255,11 @@ async function cellRate(team: Team, scenario: Scenario): Promise<number> {
 
 // --------------------------------------------------------------------------------------------------------------- words
 
-function sentenceOf({ met, chosen, places }: Found, tolerance: number, measuredError: number | null): string {
+function sentenceOf(
+  { met, chosen, places }: Pick<Found, 'met' | 'chosen' | 'places'>,
+  tolerance: number,
+  measuredError: number | null,
+): string {
   const within = `Within ${formatPercent(tolerance, 3)}:`;
   if (chosen === null) return `${within} no set-up was found.`;
   const { cellSize, boundary, clearance, predicted } = chosen;

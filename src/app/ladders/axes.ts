@@ -137,7 +137,6 @@ export class Axes {
       h('legend', {}, h('label', {}, on, ` ${name}`)),
       body,
       trouble,
-      h('p', { className: 'hint' }, help),
     );
   }
 
@@ -233,7 +232,6 @@ export class Axes {
       list,
       h('div', { className: 'other' }, key, add),
       trouble,
-      h('p', { className: 'hint' }, help),
     );
   }
 

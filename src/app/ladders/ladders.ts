@@ -1,6 +1,7 @@
 import { surveyFiles } from '../../report/surveyFolder.ts';
 import { EXAMPLES, type ExampleName } from '../../scenario/examples.ts';
 import { h } from '../dom.ts';
+import { halves } from '../halves.ts';
 import { packedText, unpackedText } from '../link.ts';
 import { notify } from '../notice.ts';
 import type { Places, Started } from '../places.ts';
@@ -25,16 +26,9 @@ export function ladders(host: HTMLElement, store: Store, places: Places): Starte
   };
   const results = new Results(model, toCompare);
   host.append(
-    h(
-      'div',
-      { className: 'halves' },
-      h('section', { className: 'asked', 'aria-label': 'What is varied' }, new Axes(model).element),
-      h(
-        'section',
-        { className: 'found', 'aria-label': 'What is found', tabindex: '0' },
-        runBar(model),
-        results.element,
-      ),
+    halves(
+      { name: 'What is varied', element: new Axes(model).element },
+      { name: 'What is found', elements: [runBar(model), results.element] },
     ),
   );
   model.on(['survey', 'run'], () => places.changed());

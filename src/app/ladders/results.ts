@@ -25,6 +25,7 @@ import type { Chart } from '../../report/svg.ts';
 import { countText, percentOr } from '../../report/words.ts';
 import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
+import { table } from '../table.ts';
 import { doneCases, type SurveyModel } from './model.ts';
 
 /** One chart of the place: what it shows of a result, and what stands there until there is something. */
@@ -259,22 +260,4 @@ function ordersOf({ ladders }: SurveyResult): string[] {
         : `; index of the finest grid ${percentOr(gci.value)}, true error ${percentOr(gci.trueError)}: ${gci.covered ? 'covered' : 'not covered'}`;
     return `${caseName(settings)}: order ${list}${index}.`;
   });
-}
-
-function table(
-  caption: string,
-  head: readonly string[],
-  rows: readonly (readonly (HTMLElement | string)[])[],
-): HTMLElement {
-  return h(
-    'div',
-    { className: 'scroll', tabindex: '0', role: 'region', 'aria-label': caption },
-    h(
-      'table',
-      {},
-      h('caption', {}, caption),
-      h('thead', {}, h('tr', {}, ...head.map((cell) => (cell === '' ? h('td') : h('th', { scope: 'col' }, cell))))),
-      h('tbody', {}, ...rows.map((row) => h('tr', {}, ...row.map((cell) => h('td', {}, cell))))),
-    ),
-  );
 }
