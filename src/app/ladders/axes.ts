@@ -37,9 +37,11 @@ const WRITTEN: readonly Written[] = [
   },
 ];
 
+const LAYERS: Readonly<Record<string, readonly number[]>> = { cpml: [6, 8, 10, 12], splitPml: [10] };
+
 /** Walls that are offered beside those the survey has. */
-const WALLS: readonly unknown[] = BOUNDARIES.flatMap((type): unknown[] =>
-  type === 'cpml' ? [6, 8, 10, 12].map((layers) => ({ type, layers })) : [{ type }],
+const WALLS: readonly unknown[] = BOUNDARIES.flatMap(
+  (type): unknown[] => LAYERS[type]?.map((layers) => ({ type, layers })) ?? [{ type }],
 );
 
 const PRESETS = {

@@ -1,4 +1,5 @@
-import { boundaryText, type Plan } from '../../compare/planResult.ts';
+import { boundaryText } from '../../compare/boundaryWords.ts';
+import type { Plan } from '../../compare/planResult.ts';
 import { formatPercent, formatQuantity } from '../../elementary/quantity.ts';
 import {
   costLines,

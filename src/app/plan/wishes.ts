@@ -1,4 +1,4 @@
-import { boundaryText } from '../../compare/planResult.ts';
+import { boundaryText } from '../../compare/boundaryWords.ts';
 import { formatPercent, formatQuantity } from '../../elementary/quantity.ts';
 import { WALLS } from '../../run/planSearch.ts';
 import { sourceBounds } from '../../scenario/distance.ts';
