@@ -20,9 +20,10 @@ import { notify } from '../notice.ts';
 import type { Places, Started } from '../places.ts';
 import type { Prediction } from '../prediction.ts';
 import { beside } from '../runner.ts';
-import { download, nameOf, textBlob } from '../save.ts';
+import { download, textBlob } from '../save.ts';
 import { type Store, textOf } from '../store.ts';
 import { table } from '../table.ts';
+import { nameOf } from '../written.ts';
 import { aboutOf, type Report, type Request, type Wanted } from './messages.ts';
 import { type Wish, Wishes } from './wishes.ts';
 
@@ -70,7 +71,7 @@ class Found {
     private readonly places: Places,
     private readonly prediction: Prediction,
   ) {
-    this.chart = new LiveChart('Error against cost: set-ups are being predicted.');
+    this.chart = new LiveChart(() => 'Error against cost: set-ups are being predicted.');
     this.figures.append(this.chart.figure);
     this.apply.addEventListener('click', () => this.applyPlan());
     const labels: Readonly<Record<PlanFile, readonly [string, string]>> = {
