@@ -2,9 +2,11 @@ import { existsSync } from 'node:fs';
 import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
+import { judgeJsonSchema } from '../compare/judgeResult.ts';
 import { withinTolerance } from '../compare/result.ts';
 import { derivedJsonSchema } from '../derived/catalogue.ts';
 import { writeTracesNpz } from '../files/npz.ts';
+import { traceMapJsonSchema } from '../files/traceMap.ts';
 import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
 import { resultText } from '../report/text.ts';
@@ -21,6 +23,7 @@ import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exa
 import { frameFiles } from './frames.ts';
 import { InputError, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
+import { addJudgeCommand } from './judge.ts';
 import { quoted, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
@@ -67,7 +70,13 @@ export async function runCli(args: readonly string[]): Promise<number> {
   }
 }
 
-const SCHEMAS = { scenario: scenarioJsonSchema, survey: surveyJsonSchema, derived: derivedJsonSchema } as const;
+const SCHEMAS = {
+  scenario: scenarioJsonSchema,
+  survey: surveyJsonSchema,
+  derived: derivedJsonSchema,
+  judge: judgeJsonSchema,
+  map: traceMapJsonSchema,
+} as const;
 
 const wholeNumber =
   (least: number, most: number) =>
@@ -151,6 +160,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     });
 
   addPlanCommand(program, threadCount, signal, (met) => end(met ? DONE : OUTSIDE));
+  addJudgeCommand(program, signal, (within) => end(within ? DONE : OUTSIDE));
 
   program
     .command('exact')
@@ -208,7 +218,9 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
   program
     .command('schema')
     .argument('[of]', `what to describe: ${Object.keys(SCHEMAS).join(', ')}`, 'scenario')
-    .description('print the JSON Schema of scenario or survey files, or of what `derive --json` prints')
+    .description(
+      'print the JSON Schema of scenario and survey files, of what `judge` writes and `derive --json` prints, or of a map of traces',
+    )
     .addHelpText('after', '\nExample: fieldassay schema > scenario.schema.json\n')
     .action((of: string) => {
       if (!Object.hasOwn(SCHEMAS, of))

@@ -12,9 +12,9 @@ import type { PointStatus } from './pointError.ts';
  * that has no value (a relative error of a field that vanishes) is null.
  */
 
-const fraction = (what: string) => z.number().describe(`${what}; a fraction, 0.05 for 5 %`);
-const inUnit = (unit: string, what: string) => z.number().describe(`${what}, ${unit}`);
-const vector = (what: string) =>
+export const fraction = (what: string) => z.number().describe(`${what}; a fraction, 0.05 for 5 %`);
+export const inUnit = (unit: string, what: string) => z.number().describe(`${what}, ${unit}`);
+export const vector = (what: string) =>
   z.tuple([z.number(), z.number(), z.number()]).readonly().describe(`${what}: x, y, z, m`);
 const fieldName = z.enum(['E', 'H']).describe('the field that decides');
 
@@ -257,7 +257,7 @@ export type ObserverFieldResult = z.infer<typeof observerField>;
 export const resultJsonSchema = (): object => z.toJSONSchema(resultSchema);
 
 /** A number for JSON, which knows no NaN. */
-const orNull = (value: number): number | null => (Number.isFinite(value) ? value : null);
+export const orNull = (value: number): number | null => (Number.isFinite(value) ? value : null);
 
 /** The norms of a field as they are written. */
 export function normsResult(L1: Norm, L2: SampledNorm, Linf: MaximumNorm, masked: number): Result['norms']['E'] {

@@ -13,7 +13,7 @@ import { COMPONENTS, type Component, type FieldHistory } from '../trace/trace.ts
 export const SIGNALS = ['grid', 'exact', 'boundary', 'lattice', 'gridding', 'quadrature'] as const;
 export type Signal = (typeof SIGNALS)[number];
 
-const COLUMNS = ['observer', 'component', 'x', 'y', 'z', 't', ...SIGNALS];
+export const TRACE_HEADER: readonly string[] = ['observer', 'component', 'x', 'y', 'z', 't', ...SIGNALS];
 
 /** The signals of one component at one observer. */
 export interface ObserverTrace {
@@ -62,7 +62,7 @@ export function writeTraces(traces: readonly ObserverTrace[]): string {
   const rows = traces.flatMap(({ observer, component, at, time, signals }) =>
     Array.from(time, (t, n) => [observer, component, ...at, t, ...SIGNALS.map((signal) => signals[signal]?.[n] ?? '')]),
   );
-  return `${Papa.unparse([COLUMNS, ...rows], { newline: '\n', escapeFormulae: FORMULA })}\n`;
+  return `${Papa.unparse([TRACE_HEADER, ...rows], { newline: '\n', escapeFormulae: FORMULA })}\n`;
 }
 
 /**
@@ -72,8 +72,8 @@ export function writeTraces(traces: readonly ObserverTrace[]): string {
 export function readTraces(text: string): ObserverTrace[] {
   const { data } = Papa.parse<string[]>(text, { skipEmptyLines: true });
   const [header, ...rows] = data;
-  if (header?.join() !== COLUMNS.join())
-    throw new Error(`row 1 is "${header?.join() ?? ''}"; the header of a trace file is "${COLUMNS.join()}"`);
+  if (header?.join() !== TRACE_HEADER.join())
+    throw new Error(`row 1 is "${header?.join() ?? ''}"; the header of a trace file is "${TRACE_HEADER.join()}"`);
   const groups = new Map<string, string[][]>();
   rows.forEach((row, i) => {
     requireRow(row, i + 2);
@@ -87,14 +87,14 @@ export function readTraces(text: string): ObserverTrace[] {
 
 /** Refuses a row that is not: name, component, five numbers, then numbers or nothing. */
 function requireRow(row: readonly string[], number: number): void {
-  if (row.length !== COLUMNS.length)
-    throw new Error(`row ${number} has ${row.length} cells; a trace file has ${COLUMNS.length} columns`);
+  if (row.length !== TRACE_HEADER.length)
+    throw new Error(`row ${number} has ${row.length} cells; a trace file has ${TRACE_HEADER.length} columns`);
   if (!COMPONENTS.includes(row[1] as Component))
     throw new Error(`row ${number}, column component: "${row[1]}" is none of ${COMPONENTS.join(', ')}`);
   row.forEach((cell, c) => {
     if (c < 2 || (cell === '' && c >= 6)) return;
     if (cell.trim() === '' || !Number.isFinite(Number(cell)))
-      throw new Error(`row ${number}, column ${COLUMNS[c]}: "${cell}" is not a number`);
+      throw new Error(`row ${number}, column ${TRACE_HEADER[c]}: "${cell}" is not a number`);
   });
 }
 

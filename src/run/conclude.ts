@@ -198,7 +198,7 @@ function volumeNorms({ question, places, answers }: Case): Result['norms'] {
 }
 
 /** Figures of a field that vanishes: relative to nothing. */
-const NO_RELATIVE_ERROR = {
+export const NO_RELATIVE_ERROR = {
   status: 'below floor',
   relativeL2: null,
   transient: null,

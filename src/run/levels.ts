@@ -30,7 +30,7 @@ export function strengthAt(history: FieldHistory, field: Field, point: number, i
 }
 
 /** Below this share of the field's strength (−120 dB) E or H is taken to vanish: it has no relative error. */
-const VANISHES = 1e-6;
+export const VANISHES = 1e-6;
 
 /** Whether E (or H) vanishes at a point where the other does not, on a symmetry plane or an axis. */
 export function vanishes(history: FieldHistory, field: Field, point: number, impedance: number): boolean {

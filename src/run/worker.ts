@@ -10,7 +10,8 @@ import type { Method } from '../retarded/prepare.ts';
 import { loadScenario } from '../scenario/load.ts';
 import type { Axis, Scenario } from '../scenario/model.ts';
 import { timeStepOf } from '../scenario/sites.ts';
-import { type Instants, samplePoints } from '../trace/trace.ts';
+import { type Instants, samplePoints, type Trace } from '../trace/trace.ts';
+import { type Judged, judgeTraces } from './judge/judgeTraces.ts';
 import { framesOf, type SliceShape, withBelow } from './planes.ts';
 import { type Found, type Frame, type Goal, searchPlan } from './planSearch.ts';
 
@@ -41,7 +42,12 @@ export interface Tasks {
   predictLattice(scenario: unknown, cells: Int32Array, instants: Instants, form: LatticeForm): Float64Array;
   /** the cheapest set-up that is predicted to meet a goal */
   searchPlan(scenario: unknown, goal: Goal, frame: Frame): Found;
+  /** another solver's traces against the exact field; emits `[stage, fraction]`. */
+  judge(scenario: unknown, traces: readonly Trace[], file: string, notes: readonly string[]): JudgeAnswer;
 }
+
+/** A judgement, or why the traces cannot be judged: an error's kind does not survive the journey from a worker. */
+export type JudgeAnswer = Judged | { readonly refusal: string };
 
 /** How a prediction is made: in time, or with the exact numerical phase, some thirty times dearer. */
 export type LatticeForm = 'time' | 'spectrum';
@@ -149,6 +155,16 @@ const tasks: Tasks = {
     return predict(edges, lattice, samplePoints(cells, grid.box.from, grid.cellSize), instants);
   },
   searchPlan: (json, goal, frame) => searchPlan(scenarioOf(json), goal, frame),
+  judge(json, traces, file, notes) {
+    try {
+      return judgeTraces(scenarioOf(json), json, traces, file, notes, (stage, fraction) =>
+        workerpool.workerEmit([stage, fraction]),
+      );
+    } catch (error) {
+      if (error instanceof RangeError) return { refusal: error.message };
+      throw error;
+    }
+  },
 };
 
 workerpool.worker(tasks as unknown as Record<string, (...args: never[]) => unknown>);

@@ -77,3 +77,15 @@ export function instantsOf(steps: number, timeStep: number, every = 1): Instants
   }
   return { count, E, H };
 }
+
+/** One component at one place, as any solver may give it: sampled at instants of its own. */
+export interface Trace {
+  readonly observer: string;
+  readonly component: Component;
+  /** m */
+  readonly at: readonly [number, number, number];
+  /** s, ascending, no two alike */
+  readonly time: Float64Array;
+  /** V/m or A/m, one value an instant */
+  readonly values: Float64Array;
+}

@@ -1,0 +1,70 @@
+import type { Judgement, TriedCause } from '../../compare/judgeResult.ts';
+import { log } from '../../elementary/elementary.ts';
+import { CAUSES, distantWallTrials, type Trial, trials } from './causes.ts';
+import type { Refit } from './refit.ts';
+
+/** A cause is likely where it takes away at least this share of what is wrong, in power. */
+const HALF = 0.5;
+
+/** Walls are looked for anywhere where the best cause so far leaves more than this share of what is wrong. */
+const UNEXPLAINED = 0.1;
+
+/** A fitted number must take away this much more of the rest (a factor of 2 of its power) to be worth it. */
+const A_PARAMETER = 0.7;
+
+/** Traces are sound where they are within 30 % of the predicted error of the prediction, or within 0.3 % of the field. */
+const SOUND_SHARE = 0.3;
+const SOUND_LEAST = 3e-3;
+
+interface Tried {
+  readonly trial: TriedCause;
+  readonly rest: number;
+  readonly score: number;
+}
+
+/**
+ * The likeliest cause. Each trial's rest ‖trace − model‖² is held against that of the exact field and, where it is
+ * predicted, of a sound grid's field, whichever is nearer to the traces.
+ * @param expected what a sound grid is predicted to make, one a field; null where that is not known
+ */
+export function explain(
+  refit: Refit,
+  json: unknown,
+  expected: readonly (number | null)[],
+  onProgress: (fraction: number) => void,
+): Judgement['causes'] {
+  const wrong = Math.min(...refit.bases.map((base) => refit.residual(base)));
+  const best = new Map<string, Tried>();
+  // Rests closer to each other than this are alike: what the exact field's own error, and rounding, leave.
+  const floor = 1e-12 + 1e-9 * wrong;
+  const take = ({ cause, words, remedy, parameters, model }: Trial) => {
+    const rest = refit.residual(model);
+    if (!Number.isFinite(rest)) return;
+    const score = log(rest + floor) + A_PARAMETER * parameters;
+    const known = best.get(cause);
+    if (known && known.score <= score) return;
+    const trial = {
+      cause,
+      words,
+      remedy,
+      explained: wrong > 0 ? 1 - rest / wrong : 0,
+      remaining: Math.sqrt(rest),
+      parameters,
+    };
+    best.set(cause, { trial, rest, score });
+  };
+  for (const trial of trials(refit, json)) {
+    take(trial);
+    onProgress((0.8 * (CAUSES.indexOf(trial.cause) + 1)) / CAUSES.length);
+  }
+  const ordered = () => [...best.values()].sort((a, b) => a.score - b.score);
+  const known = expected.filter((e) => e !== null);
+  const level = Math.sqrt(known.reduce((sum, e) => sum + e * e, 0) / Math.max(1, known.length));
+  const isSound = known.length === expected.length && Math.sqrt(wrong) <= Math.max(SOUND_LEAST, SOUND_SHARE * level);
+  if (!isSound && (ordered()[0]?.rest ?? wrong) > UNEXPLAINED * wrong)
+    for (const trial of distantWallTrials(refit)) take(trial);
+  onProgress(1);
+  const list = ordered();
+  const isLikely = !isSound && list[0] !== undefined && list[0].rest <= HALF * wrong && Math.sqrt(wrong) > SOUND_LEAST;
+  return { status: isSound ? 'sound' : isLikely ? 'likely' : 'none', tried: list.map(({ trial }) => trial) };
+}
