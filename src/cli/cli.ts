@@ -3,12 +3,13 @@ import { join } from 'node:path';
 import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
 import { judgeJsonSchema } from '../compare/judgeResult.ts';
-import { withinTolerance } from '../compare/result.ts';
+import { type Result, withinTolerance } from '../compare/result.ts';
 import { derivedJsonSchema } from '../derived/catalogue.ts';
 import { writeTracesNpz } from '../files/npz.ts';
 import { traceMapJsonSchema } from '../files/traceMap.ts';
 import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder.ts';
 import { resultJson } from '../report/json.ts';
+import { comparisonCases } from '../report/junit.ts';
 import { resultText } from '../report/text.ts';
 import { type Comparison, compareSolvers, Refusal, withTeam } from '../run/compare.ts';
 import type { Team } from '../run/pool.ts';
@@ -21,6 +22,7 @@ import { currentsCommand } from './currents.ts';
 import { addDeriveCommand } from './derive.ts';
 import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
 import { frameFiles } from './frames.ts';
+import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
 import { addJudgeCommand } from './judge.ts';
@@ -106,8 +108,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .exitOverride()
     .showHelpAfterError('(see --help)');
 
-  program
-    .command('compare')
+  withGate(program.command('compare'))
     .argument('[scenario]', 'a scenario file or a built-in scenario (see `examples`)', 'bench-cable-pulse')
     .description('run both solvers on a scenario: error budget and verdict')
     .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
@@ -141,6 +142,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     )
     .action(async (name: string, options: CompareFlags) => {
       requireOut(options);
+      const gate = gateOf(options);
       const comparison = await compared(name, options, signal);
       const { result } = comparison;
       const written = await writeAll(comparison, name, options, signal);
@@ -149,7 +151,8 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
         process.stdout.write(
           resultText(result, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
         );
-      end(withinTolerance(result) ? DONE : OUTSIDE);
+      const held = gate(result, `compare ${name}`, comparisonCases(result), secondsOf(result));
+      end(held && withinTolerance(result) ? DONE : OUTSIDE);
       if (options.serve && options.out)
         await served(
           options.out,
@@ -245,7 +248,13 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
   return program;
 }
 
-interface CompareFlags {
+/** What the solvers and the comparison took. */
+function secondsOf({ timings }: Result): number {
+  const { box, rounding, free, exact, comparison } = timings;
+  return [box, rounding, free, exact, comparison].reduce((sum, part) => sum + (part?.seconds ?? 0), 0);
+}
+
+interface CompareFlags extends GateFlags {
   readonly out?: string;
   readonly frames?: string;
   readonly npz?: boolean;

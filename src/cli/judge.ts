@@ -5,12 +5,14 @@ import { tracesWithinTolerance } from '../compare/judgeResult.ts';
 import { readForeignTraces } from '../files/foreignTraces.ts';
 import { parseTraceMap, type TraceMap } from '../files/traceMap.ts';
 import { JUDGE_FILES, judgeFile, judgeJson, judgeText } from '../report/judge.ts';
+import { judgementCases } from '../report/junit.ts';
 import { judge, judgeQuestion, observerPlaces } from '../run/judge.ts';
+import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readInput, readScenario } from './input.ts';
 import { quoted, reasonOf, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 
-interface JudgeFlags {
+interface JudgeFlags extends GateFlags {
   readonly traces: string;
   readonly out?: string;
   readonly cell?: string;
@@ -36,8 +38,7 @@ const pairs = (example: string) => (text: string, before: Pairs) => {
 
 /** Adds `judge` to the program. @param end is told whether the traces are within the tolerance */
 export function addJudgeCommand(program: Command, signal: AbortSignal, end: (within: boolean) => void): void {
-  program
-    .command('judge')
+  withGate(program.command('judge'))
     .argument('<scenario>', 'a scenario file or a built-in scenario (see `examples`)')
     .description(
       'the traces of any other solver against the exact field at their own places and instants: how far off, what a sound\n' +
@@ -76,6 +77,7 @@ export function addJudgeCommand(program: Command, signal: AbortSignal, end: (wit
         'Example: fieldassay judge mine.json --traces probes.csv --unit time=ns --column A.Ez="Probe 1 [V/m]" --cell "4 mm" --out judged\n',
     )
     .action(async (name: string, flags: JudgeFlags) => {
+      const gate = gateOf(flags);
       const question = judgeQuestion(readScenario(name), flags.cell === undefined ? undefined : numberOr(flags.cell));
       const { traces, notes } = readGiven(flags, question);
       const line = progressLine(flags.json === true && !process.stderr.isTTY);
@@ -99,7 +101,8 @@ export function addJudgeCommand(program: Command, signal: AbortSignal, end: (wit
             written: flags.out ? JUDGE_FILES.map((file) => `${flags.out}/${file}`) : [],
           }),
         );
-      end(tracesWithinTolerance(result));
+      const held = gate(result, `judge ${name}`, judgementCases(result), result.timings.seconds);
+      end(held && tracesWithinTolerance(result));
     });
 }
 

@@ -135,6 +135,37 @@ describe('judge', () => {
     expect(existsSync(path('nothing'))).toBe(false);
   });
 
+  test('build servers: XML of what passed, and a baseline that may grow by so much', () => {
+    const good = [
+      'judge',
+      'small.json',
+      '--traces',
+      'out/traces.csv',
+      '--junit',
+      'good.xml',
+      '--baseline',
+      'out/result.json',
+    ];
+    const first = run(...good);
+    expect(first.stderr).toMatch(/None of \d+ figures grew/);
+    expect(readFileSync(path('good.xml'), 'utf8')).toContain('name="observer =A1: E within 5 %"');
+    write(
+      'worse.csv',
+      otherSolver((v) => 1.02 * v),
+    );
+    write('good.csv', otherSolver());
+    run('judge', 'small.json', '--traces', 'good.csv', '--staggered', '--out', 'before');
+    const worse = ['judge', 'small.json', '--traces', 'worse.csv', '--staggered', '--baseline', 'before/result.json'];
+    const found = run(...worse, '--allow', '5 %', '--junit', 'worse.xml');
+    expect(found.status).toBe(1);
+    expect(found.stderr).toMatch(/Grew: observer B, E: relative L2 was [\d.]+ % and is [\d.]+ %, [\d.]+ % more/);
+    expect(readFileSync(path('worse.xml'), 'utf8')).toMatch(/<failure message="observer B, E: relative L2 was/);
+    expect(run(...worse, '--allow', '100000 %').status).toBe(0);
+    expect(run('judge', 'small.json', '--traces', 'good.csv', '--baseline', 'small.json').stderr).toMatch(
+      /the baseline small.json is no result of compare or judge/,
+    );
+  });
+
   test('ends at once on Ctrl-C', async () => {
     const child = spawn(
       process.execPath,

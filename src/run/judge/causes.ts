@@ -21,8 +21,8 @@ export const CAUSES = [
   'halfCell',
   'stagger',
   'lengthUnit',
-  'axesSwapped',
   'sign',
+  'axesSwapped',
   'powerOfTen',
   'decibels',
   'fluxForField',
@@ -518,12 +518,35 @@ function imageOf(refit: Refit, axis: Axis, wall: number): Signals | null {
   });
 }
 
-const WALL_REMEDY = 'use a better absorber there (more layers), or move the wall further out';
+/**
+ * What simple walls send back is not one share of the image: what radiates, what is induction and what is near field, which
+ * stand to each other as derivative, value and integral of the current, come back in shares of their own.
+ */
+function shapesOf({ given }: Refit, image: Signals, scale: number): Signals[] {
+  const integral = image.map((values, k) => {
+    const { time } = given[k]!.group;
+    let sum = 0;
+    return values.map((v, n) => {
+      if (n > 0) sum += ((v + values[n - 1]!) * (time[n]! - time[n - 1]!)) / (2 * scale);
+      return sum;
+    });
+  });
+  const derivative = image.map((values, k) => {
+    const { time } = given[k]!.group;
+    const last = values.length - 1;
+    return values.map((_, n) => {
+      const [a, b] = [Math.max(0, n - 1), Math.min(last, n + 1)];
+      return (scale * (values[b]! - values[a]!)) / (time[b]! - time[a]!);
+    });
+  });
+  return [image, integral, derivative];
+}
 
 /** Walls at the faces of the scenario's box, or behind its absorbing layers: each alone, all alike, each with its own share. */
 function* wallTrials(refit: Refit, behind: readonly (0 | 1)[]): Generator<Trial> {
   const { scenario, bases } = refit;
   const { box, boundary, cellSize } = scenario.grid;
+  const scale = Math.min(...scenario.sources.map(({ waveform }) => waveform.timeScale));
   const g = refit.signals();
   for (const depth of behind) {
     const images = FACES.flatMap((face) => {
@@ -540,38 +563,44 @@ function* wallTrials(refit: Refit, behind: readonly (0 | 1)[]): Generator<Trial>
     for (const base of bases) {
       const rest = plus(g, base, -1);
       for (const { face, at, image } of images) {
-        const share = refit.inner(rest, image) / refit.inner(image, image);
-        if (Number.isFinite(share))
-          yield wallTrial(`the wall ${face}${where} at ${formatQuantity(at, 'm')}`, share, plus(base, image, share), 1);
+        const who = `the wall ${face}${where} at ${formatQuantity(at, 'm')}`;
+        yield* sharesOf(refit, base, rest, [image], who, conductorText);
+        if (depth === 0) yield* sharesOf(refit, base, rest, shapesOf(refit, image, scale), who, () => 'reflects');
       }
       if (images.length < 2) continue;
-      const all = images.map(({ image }) => image).reduce((a, b) => plus(a, b));
-      const share = refit.inner(rest, all) / refit.inner(all, all);
-      if (Number.isFinite(share)) yield wallTrial(`every wall${where}`, share, plus(base, all, share), 1);
-      const shares = leastSquares(
-        refit,
-        rest,
-        images.map(({ image }) => image),
-      );
-      const strongest = shares.reduce((best, s, n) => (Math.abs(s) > Math.abs(shares[best]!) ? n : best), 0);
-      const model = images.reduce<Signals>((sum, { image }, n) => plus(sum, image, shares[n]!), base);
-      yield wallTrial(
-        `the walls${where}, most of all ${images[strongest]!.face} at ${formatQuantity(images[strongest]!.at, 'm')}`,
-        shares[strongest]!,
-        model,
-        images.length,
-      );
+      const list = images.map(({ image }) => image);
+      yield* sharesOf(refit, base, rest, [list.reduce((a, b) => plus(a, b))], `every wall${where}`, conductorText);
+      yield* sharesOf(refit, base, rest, list, `the walls${where}`, (shares) => {
+        const strongest = shares.reduce((best, s, n) => (Math.abs(s) > Math.abs(shares[best]!) ? n : best), 0);
+        const { face, at } = images[strongest]!;
+        return `reflect, most of all ${face} at ${formatQuantity(at, 'm')}, which ${conductorText([shares[strongest]!])}`;
+      });
     }
   }
 }
 
-const wallTrial = (who: string, share: number, model: Signals, parameters: number): Trial => ({
-  cause: 'wall',
-  words: `${who} sends back ${formatPercent(Math.abs(share))} of what a ${share > 0 ? 'perfect conductor' : 'perfect magnetic wall'} would`,
-  remedy: WALL_REMEDY,
-  parameters,
-  model,
-});
+/** The base with those shares of signals that leave least of the rest. */
+function* sharesOf(
+  refit: Refit,
+  base: Signals,
+  rest: Signals,
+  signals: readonly Signals[],
+  who: string,
+  does: (shares: readonly number[]) => string,
+): Generator<Trial> {
+  const shares = leastSquares(refit, rest, signals);
+  if (!shares.every(Number.isFinite)) return;
+  yield {
+    cause: 'wall',
+    words: `${who} ${does(shares)}`,
+    remedy: 'use a better absorber there (more layers), or move the wall further out',
+    parameters: signals.length,
+    model: signals.reduce((sum, signal, n) => plus(sum, signal, shares[n]!), base),
+  };
+}
+
+const conductorText = ([share]: readonly number[]): string =>
+  `sends back ${formatPercent(Math.abs(share!))} of what a ${share! > 0 ? 'perfect conductor' : 'perfect magnetic wall'} would`;
 
 /** A wall anywhere around sources and traces: its place is told by when its reflection arrives. */
 export function* distantWallTrials(refit: Refit): Generator<Trial> {
@@ -591,23 +620,22 @@ export function* distantWallTrials(refit: Refit): Generator<Trial> {
     );
     for (const base of bases) {
       const rest = plus(g, base, -1);
-      const reflection = (at: number) => {
+      const tried = (at: number): Trial | undefined => {
         const image = imageOf(refit, axis, at);
-        if (!image) return null;
-        const share = refit.inner(rest, image) / refit.inner(image, image);
-        return Number.isFinite(share) ? { share, model: plus(base, image, share) } : null;
+        const who = `a wall across ${'xyz'[axis]} at ${formatQuantity(at, 'm')}`;
+        const [trial] = image ? sharesOf(refit, base, rest, [image], who, conductorText) : [];
+        return trial && { ...trial, parameters: 2 };
       };
       const { x } = leastOf(
         (at) => {
-          const found = reflection(at);
-          return found ? refit.residual(found.model) : Number.POSITIVE_INFINITY;
+          const trial = tried(at);
+          return trial ? refit.residual(trial.model) : Number.POSITIVE_INFINITY;
         },
         scan,
         8,
       );
-      const found = reflection(x);
-      if (found)
-        yield wallTrial(`a wall across ${'xyz'[axis]} at ${formatQuantity(x, 'm')}`, found.share, found.model, 2);
+      const trial = tried(x);
+      if (trial) yield trial;
     }
   }
 }

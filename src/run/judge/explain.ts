@@ -12,6 +12,9 @@ const UNEXPLAINED = 0.1;
 /** A fitted number must take away this much more of the rest (a factor of 2 of its power) to be worth it. */
 const A_PARAMETER = 0.7;
 
+/** Where two causes are the same by a symmetry of the source, the one that stands first in the list is named. */
+const PLAINER = 0.01;
+
 /** Traces are sound where they are within 30 % of the predicted error of the prediction, or within 0.3 % of the field. */
 const SOUND_SHARE = 0.3;
 const SOUND_LEAST = 3e-3;
@@ -25,12 +28,12 @@ interface Tried {
 /**
  * The likeliest cause. Each trial's rest ‖trace − model‖² is held against that of the exact field and, where it is
  * predicted, of a sound grid's field, whichever is nearer to the traces.
- * @param expected what a sound grid is predicted to make, one a field; null where that is not known
+ * @param predicted whether a sound grid's error is known for every field that does not vanish
  */
 export function explain(
   refit: Refit,
   json: unknown,
-  expected: readonly (number | null)[],
+  predicted: boolean,
   onProgress: (fraction: number) => void,
 ): Judgement['causes'] {
   const wrong = Math.min(...refit.bases.map((base) => refit.residual(base)));
@@ -40,7 +43,7 @@ export function explain(
   const take = ({ cause, words, remedy, parameters, model }: Trial) => {
     const rest = refit.residual(model);
     if (!Number.isFinite(rest)) return;
-    const score = log(rest + floor) + A_PARAMETER * parameters;
+    const score = log(rest + floor) + A_PARAMETER * parameters + PLAINER * CAUSES.indexOf(cause);
     const known = best.get(cause);
     if (known && known.score <= score) return;
     const trial = {
@@ -58,9 +61,9 @@ export function explain(
     onProgress((0.8 * (CAUSES.indexOf(trial.cause) + 1)) / CAUSES.length);
   }
   const ordered = () => [...best.values()].sort((a, b) => a.score - b.score);
-  const known = expected.filter((e) => e !== null);
-  const level = Math.sqrt(known.reduce((sum, e) => sum + e * e, 0) / Math.max(1, known.length));
-  const isSound = known.length === expected.length && Math.sqrt(wrong) <= Math.max(SOUND_LEAST, SOUND_SHARE * level);
+  const [exact, sound] = refit.bases;
+  const level = sound ? Math.sqrt(refit.residual(sound, exact!)) : 0;
+  const isSound = predicted && Math.sqrt(wrong) <= Math.max(SOUND_LEAST, SOUND_SHARE * level);
   if (!isSound && (ordered()[0]?.rest ?? wrong) > UNEXPLAINED * wrong)
     for (const trial of distantWallTrials(refit)) take(trial);
   onProgress(1);

@@ -41,6 +41,9 @@ export interface Judged {
   readonly spectra: readonly { readonly observer: string; readonly field: Field; readonly spectra: Spectra }[];
 }
 
+/** Near a null of E or H its own size is no measure: below this share of the field’s strength that share is taken. */
+const WEAK = 0.03;
+
 /** One field at one observer: what was given, what is exact, and the figures of both. */
 interface Assessed {
   readonly group: FieldTraces;
@@ -48,7 +51,7 @@ interface Assessed {
   readonly exact: FieldHistory;
   readonly result: ObserverFieldResult;
   readonly judged: JudgedField;
-  /** root of Σ over instants and given components of exact², or of the field’s strength where it vanishes */
+  /** root of Σ over instants and given components of exact²; a share of the field’s own strength where E or H is nearly zero */
   readonly strength: number;
   readonly sound: readonly (Float64Array | null)[];
 }
@@ -93,10 +96,10 @@ export function judgeTraces(
     assessed.length,
     sound,
   );
-  const expected = assessed.flatMap(({ result, judged }) =>
-    result.relativeL2 === null ? [] : [judged.sound.relativeL2],
+  const predicted = assessed.every(
+    ({ result, judged }) => result.relativeL2 === null || judged.sound.relativeL2 !== null,
   );
-  const causes = explain(refit, json, expected, (fraction) => onProgress('likely causes', 0.3 + 0.7 * fraction));
+  const causes = explain(refit, json, predicted, (fraction) => onProgress('likely causes', 0.3 + 0.7 * fraction));
   const errors = assessed.flatMap(({ result }) => result.relativeL2 ?? []);
   const error = errors.length > 0 ? Math.sqrt(errors.reduce((sum, e) => sum + e * e, 0) / errors.length) : null;
   const uneven = groups.filter(({ evenness }) => evenness === 'uneven');
@@ -308,7 +311,7 @@ function assess(
     given,
     exact,
     result,
-    strength: (vanishes ? strength.field : strength.own) * Math.sqrt(time.length),
+    strength: Math.max(strength.own, WEAK * strength.field) * Math.sqrt(time.length),
     sound,
     judged: {
       components: components.map((c) => COMPONENTS[c]!),

@@ -100,10 +100,10 @@ export class Refit {
     return new Arrangement(this.given, places, emitters, reach * this.end, this.sound, cells);
   }
 
-  /** Σ w |given − model|² */
-  residual(model: Signals): number {
+  /** Σ w |given − model|², or of two signals */
+  residual(model: Signals, of: Signals = this.signals()): number {
     let sum = 0;
-    this.given.forEach(({ values }, k) => {
+    of.forEach((values, k) => {
       const m = model[k]!;
       let own = 0;
       for (let n = 0; n < values.length; n++) own += (values[n]! - m[n]!) ** 2;
