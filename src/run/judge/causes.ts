@@ -47,8 +47,6 @@ export interface Trial {
 }
 
 type Scope = 'all' | 'E' | 'H';
-const SCOPES: readonly Scope[] = ['all', 'E', 'H'];
-const SCOPE_WORDS = { all: 'E and H', E: 'E', H: 'H' } as const;
 
 /** All trials but those that look for a wall's place, in the order of `CAUSES`. */
 export function* trials(refit: Refit, json: unknown): Generator<Trial> {
@@ -62,14 +60,27 @@ export function* trials(refit: Refit, json: unknown): Generator<Trial> {
   yield* mediumTrials(refit, json);
 }
 
-/** Which traces a scope means; none where there are no such traces, or no others. */
-function scopesOf({ given, own }: Refit): readonly { scope: Scope; over: (k: number) => boolean }[] {
+/** Traces that a fault may be in: all, or those of one field where there are both. */
+interface Scoped {
+  readonly scope: Scope;
+  /** "E and H", "E" */
+  readonly who: string;
+  readonly are: 'are' | 'is';
+  readonly over: (trace: number) => boolean;
+}
+
+function scopesOf({ given, own }: Refit): readonly Scoped[] {
   const hasE = given.some((_, k) => own(k) < 3);
   const hasH = given.some((_, k) => own(k) >= 3);
-  return SCOPES.filter((scope) => scope === 'all' || (hasE && hasH)).map((scope) => ({
-    scope,
-    over: (k) => scope === 'all' || own(k) < 3 === (scope === 'E'),
-  }));
+  if (!hasE || !hasH) {
+    const scope = hasE ? 'E' : 'H';
+    return [{ scope, who: scope, are: 'is', over: () => true }];
+  }
+  return [
+    { scope: 'all', who: 'E and H', are: 'are', over: () => true },
+    { scope: 'E', who: 'E', are: 'is', over: (k) => own(k) < 3 },
+    { scope: 'H', who: 'H', are: 'is', over: (k) => own(k) >= 3 },
+  ];
 }
 
 /** Time steps that the traces may be counted in: the scenario's, and the traces' own where it is another. */
@@ -83,7 +94,7 @@ function* timeTrials(refit: Refit): Generator<Trial> {
   const { plain, own, bases, scenario, end } = refit;
   const variants = bases.map((_, withSound) => withSound === 1);
   const late = (by: number) => `${formatQuantity(Math.abs(by), 's')} too ${by > 0 ? 'late' : 'early'}`;
-  for (const { scope, over } of scopesOf(refit)) {
+  for (const { who, are, over } of scopesOf(refit)) {
     const shifted = (by: number, withSound: boolean) => plain.signals((t, k) => (over(k) ? t - by : t), own, withSound);
     for (const step of stepsOf(refit))
       for (const [halves, name] of [
@@ -95,7 +106,7 @@ function* timeTrials(refit: Refit): Generator<Trial> {
             const by = (sign * halves * step) / 2;
             yield {
               cause: halves === 1 ? 'halfTimeStep' : 'timeOffset',
-              words: `${SCOPE_WORDS[scope]} ${scope === 'all' ? 'are' : 'is'} ${name} (${late(by)})`,
+              words: `${who} ${are} ${name} (${late(by)})`,
               remedy:
                 halves === 1
                   ? 'E lives at whole time steps, H and the current between them: check which instant each sample is labelled with, and at which the source is read'
@@ -112,7 +123,7 @@ function* timeTrials(refit: Refit): Generator<Trial> {
       const { x } = leastOf((by) => refit.residual(shifted(by, withSound)), scan);
       yield {
         cause: 'timeOffset',
-        words: `${SCOPE_WORDS[scope]} ${scope === 'all' ? 'come' : 'comes'} ${late(x)}`,
+        words: `${who} ${are === 'are' ? 'come' : 'comes'} ${late(x)}`,
         remedy: 'check where the time of the file begins, and the delay of the source',
         parameters: 1,
         model: shifted(x, withSound),
@@ -230,11 +241,11 @@ function* axisTrials(refit: Refit): Generator<Trial> {
   const remedy = 'check the order of axes and components in the file and in your solver';
   for (const { order, words } of ORDERS) {
     const renamed = (k: number) => (own(k) < 3 ? order[own(k) as Axis] : 3 + order[(own(k) - 3) as Axis]);
-    for (const { scope, over } of scopesOf(refit))
+    for (const { who, over } of scopesOf(refit))
       for (const withSound of bases.map((_, n) => n === 1))
         yield {
           cause: 'axesSwapped',
-          words: `the components of ${SCOPE_WORDS[scope]}: ${words}`,
+          words: `the components of ${who}: ${words}`,
           remedy,
           parameters: 0,
           model: plain.signals(
@@ -316,15 +327,6 @@ function namedFactors({ impedance, permeability }: Medium): NamedFactor[] {
         remedy: flux,
       },
     ]),
-    ...SCOPES.map(
-      (scope): NamedFactor => ({
-        cause: 'sign',
-        scope,
-        factor: -1,
-        words: `the sign of ${SCOPE_WORDS[scope]} is turned`,
-        remedy: 'check the direction of positive current and of the axes',
-      }),
-    ),
   ];
 }
 
@@ -334,19 +336,13 @@ function* factorTrials(refit: Refit): Generator<Trial> {
   const g = refit.signals();
   for (const base of bases) {
     for (const { scope, factor, ...named } of namedFactors(scenario.medium)) {
-      const over =
-        scopes.find((s) => s.scope === scope)?.over ?? (scope === 'all' ? undefined : onlyField(refit, scope));
+      const over = scopes.find((s) => s.scope === scope)?.over;
       if (over) yield { ...named, parameters: 0, model: times(base, (k) => (over(k) ? factor : 1)) };
     }
+    for (const { who, over } of scopes) yield { ...turned(who), model: times(base, (k) => (over(k) ? -1 : 1)) };
     for (const c of new Set(given.map((_, k) => own(k))))
-      yield {
-        cause: 'sign',
-        words: `the sign of ${COMPONENTS[c]} is turned`,
-        remedy: 'check the direction of positive current and of the axes',
-        parameters: 0,
-        model: times(base, (k) => (own(k) === c ? -1 : 1)),
-      };
-    for (const { scope, over } of scopes) {
+      yield { ...turned(COMPONENTS[c]!), model: times(base, (k) => (own(k) === c ? -1 : 1)) };
+    for (const { scope, who, are, over } of scopes) {
       const a = refit.inner(g, base, over) / refit.inner(base, base, over);
       if (!Number.isFinite(a) || a === 0) continue;
       const power = Math.round(log(Math.abs(a)) / Math.LN10);
@@ -354,19 +350,16 @@ function* factorTrials(refit: Refit): Generator<Trial> {
       if (power !== 0)
         yield {
           cause: 'powerOfTen',
-          words: `${SCOPE_WORDS[scope]} ${scope === 'all' ? 'are' : 'is'} ${formatNumber(round)} times too large`,
+          words: `${who} ${are} ${formatNumber(round)} times what ${are === 'are' ? 'they' : 'it'} should be`,
           remedy: `give the unit of the column (--unit ${scope === 'H' ? 'H=mA/m' : 'E=kV/m'}), or check the unit of the source’s current`,
           parameters: 0,
           model: times(base, (k) => (over(k) ? round : 1)),
         };
       yield {
         cause: 'amplitude',
-        words:
-          scope === 'all'
-            ? `E and H are ${formatNumber(a, 4)} times what they should be`
-            : `${scope} alone is ${formatNumber(a, 4)} times what it should be`,
+        words: `${who} ${are} ${formatNumber(a, 4)} times what ${are === 'are' ? 'they' : 'it'} should be`,
         remedy:
-          scope === 'all'
+          scope === scopes[0]!.scope
             ? 'check the amplitude of the source, its moment (current × length), and the area that its current is spread over'
             : 'check how this field is scaled on its way to the file',
         parameters: 1,
@@ -391,10 +384,12 @@ function* factorTrials(refit: Refit): Generator<Trial> {
   }
 }
 
-/** A scope where the traces are of one field alone. */
-function onlyField({ given, own }: Refit, scope: 'E' | 'H'): ((k: number) => boolean) | undefined {
-  return given.every((_, k) => own(k) < 3 === (scope === 'E')) ? () => true : undefined;
-}
+const turned = (who: string): Omit<Trial, 'model'> => ({
+  cause: 'sign',
+  words: `the sign of ${who} is turned`,
+  remedy: 'check the direction of positive current and of the axes',
+  parameters: 0,
+});
 
 /** Decibels: v ↦ 20 log₁₀|v| + c, c fitted; what lies further below the peak than this is left out. */
 const DECIBEL_DEPTH = 40;
