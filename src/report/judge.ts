@@ -296,3 +296,18 @@ const DEFINITIONS = markup`<h2>What the figures are</h2>
 <dt>explains</dt><dd>How much of what is wrong a fault would account for: 1 − ‖trace − faulty‖² / ‖trace − sound‖², sound being the exact field or that of a sound grid, whichever is nearer, and faulty the same as it would be with the fault.</dd>
 <dt>ADM, FDM, GDM</dt><dd>Amplitude, feature and global difference measures; below 0.1 excellent, 0.2 very good, 0.4 good, 0.8 fair, 1.6 poor. GRADE counts the grades from excellent on, SPREAD the neighbouring grades, that hold 85 % of the points.</dd>
 </dl>`;
+
+/** The table of figures as cells, its head first. */
+export const judgeFigures = (result: Judgement): string[][] => [
+  ['observer, field', ...HEAD.slice(1)],
+  ...rowsOf(result).map(({ name, field, cells }) => [`${name}, ${field}`, ...cells]),
+];
+
+/** The causes that were tried as cells: what each explains, what it is, what to do; none where nothing is to be explained. */
+export const judgeCauses = ({ causes }: Judgement): string[][] =>
+  causes.status === 'sound'
+    ? []
+    : [
+        ['explains', 'if', 'then'],
+        ...causes.tried.map(({ explained, words, remedy }) => [shareText(explained), words, remedy]),
+      ];

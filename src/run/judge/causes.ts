@@ -515,7 +515,8 @@ function imageOf(refit: Refit, axis: Axis, wall: number): Signals | null {
 
 /**
  * What simple walls send back is not one share of the image: what radiates, what is induction and what is near field, which
- * stand to each other as derivative, value and integral of the current, come back in shares of their own.
+ * stand to each other as derivative, value and integral of the current, come back in shares of their own, and by the angle
+ * of incidence differently to each observer.
  */
 function shapesOf({ given }: Refit, image: Signals, scale: number): Signals[] {
   const integral = image.map((values, k) => {
@@ -534,7 +535,10 @@ function shapesOf({ given }: Refit, image: Signals, scale: number): Signals[] {
       return (scale * (values[b]! - values[a]!)) / (time[b]! - time[a]!);
     });
   });
-  return [image, integral, derivative];
+  const observers = [...new Set(given.map(({ group }) => group.observer))];
+  return observers.flatMap((observer) =>
+    [image, integral, derivative].map((shape) => times(shape, (k) => (given[k]!.group.observer === observer ? 1 : 0))),
+  );
 }
 
 /** Walls at the faces of the scenario's box, or behind its absorbing layers: each alone, all alike, each with its own share. */
@@ -560,7 +564,9 @@ function* wallTrials(refit: Refit, behind: readonly (0 | 1)[]): Generator<Trial>
       for (const { face, at, image } of images) {
         const who = `the wall ${face}${where} at ${formatQuantity(at, 'm')}`;
         yield* sharesOf(refit, base, rest, [image], who, conductorText);
-        if (depth === 0) yield* sharesOf(refit, base, rest, shapesOf(refit, image, scale), who, () => 'reflects');
+        if (depth === 1) continue;
+        const about = () => `${conductorText(leastSquares(refit, rest, [image]))}, more or less by frequency and angle`;
+        yield* sharesOf(refit, base, rest, shapesOf(refit, image, scale), who, about);
       }
       if (images.length < 2) continue;
       const list = images.map(({ image }) => image);

@@ -42,7 +42,7 @@ export interface Judged {
 }
 
 /** Near a null of E or H its own size is no measure: below this share of the field’s strength that share is taken. */
-const WEAK = 0.03;
+const WEAK = 0.1;
 
 /** One field at one observer: what was given, what is exact, and the figures of both. */
 interface Assessed {
@@ -51,7 +51,9 @@ interface Assessed {
   readonly exact: FieldHistory;
   readonly result: ObserverFieldResult;
   readonly judged: JudgedField;
-  /** root of Σ over instants and given components of exact²; a share of the field’s own strength where E or H is nearly zero */
+  /** root of Σ over instants and given components of exact² */
+  readonly own: number;
+  /** the same, or a share of the field’s strength where E or H is nearly zero beside the other */
   readonly strength: number;
   readonly sound: readonly (Float64Array | null)[];
 }
@@ -92,7 +94,7 @@ export function judgeTraces(
   const refit = new Refit(
     scenario,
     assessed.flatMap(({ group }) => givenOf(group, groups, scenario)),
-    assessed.flatMap(({ group, strength }) => group.components.map(() => comparable(group, strength))),
+    assessed.flatMap((one) => one.group.components.map(() => comparable(one.group, one))),
     assessed.length,
     sound,
   );
@@ -177,12 +179,12 @@ const cellOf = (grid: Scenario['grid'], own: readonly FieldTraces[]) =>
 
 /**
  * The strength that residuals of a group are told by: the weaker of trace and field, so that a field lost by a slip of units
- * is told from one lost by another.
+ * is told from one lost by another; near a null of the field, its strength beside the other one.
  */
-function comparable({ values }: FieldTraces, strength: number): number {
-  const own = Math.sqrt(values.reduce((sum, list) => sum + list.reduce((s, v) => s + v * v, 0), 0));
-  if (own === 0 || strength === 0) return Math.max(own, strength);
-  return Math.min(own, strength);
+function comparable({ values }: FieldTraces, { own, strength }: Pick<Assessed, 'own' | 'strength'>): number {
+  const given = Math.sqrt(values.reduce((sum, list) => sum + list.reduce((s, v) => s + v * v, 0), 0));
+  if (given === 0 || strength === 0) return Math.max(given, strength);
+  return own < strength ? strength : Math.min(given, strength);
 }
 
 function assessObserver(
@@ -311,6 +313,7 @@ function assess(
     given,
     exact,
     result,
+    own: amplitude,
     strength: Math.max(strength.own, WEAK * strength.field) * Math.sqrt(time.length),
     sound,
     judged: {
