@@ -13,7 +13,7 @@ export class ServerError extends Error {
 }
 
 /** Within this many seconds a server has to be there. */
-export const CONNECT_SECONDS = 4;
+export const CONNECT_SECONDS = 3;
 
 /** Errors of the driver that have no code, by their beginnings. */
 const DRIVER: readonly (readonly [beginning: RegExp, code: string])[] = [

@@ -2,7 +2,7 @@
  * All benchmarks, one after another; prints medians and writes everything, raw pairs and environment included, to
  * out/bench.json.
  *
- *   npm run bench -- [whole] [integral] [grid] [schedules] [sizes] [draw] [page]      all of them where none is named
+ *   npm run bench -- [whole] [integral] [grid] [schedules] [sizes] [draw] [queue] [page]      all of them where none is named
  */
 import { mkdirSync, writeFileSync } from 'node:fs';
 import { cpus, loadavg, totalmem } from 'node:os';
@@ -14,6 +14,7 @@ const BENCHMARKS = {
   schedules: async () => (await import('./schedules.mjs')).benchSchedules(),
   sizes: async () => (await import('./schedules.mjs')).benchSizes(),
   draw: async () => (await import('./draw.mjs')).benchDraw(),
+  queue: async () => (await import('./queue.mjs')).benchQueue(),
   page: async () => (await import('./page.mjs')).benchPage(),
 };
 

@@ -48,9 +48,9 @@ export class Processes {
   }
 }
 
-/** Waits until something holds, half a minute at most. */
-export async function until(what: string, holds: () => boolean | Promise<boolean>): Promise<void> {
-  const patience = performance.now() + 30_000;
+/** Waits until something holds, for so many seconds at most. */
+export async function until(what: string, holds: () => boolean | Promise<boolean>, seconds = 60): Promise<void> {
+  const patience = performance.now() + 1000 * seconds;
   while (!(await holds())) {
     if (performance.now() > patience) throw new Error(`waited in vain for ${what}`);
     await new Promise((next) => setTimeout(next, 50));

@@ -5,6 +5,7 @@ import { afterAll, beforeAll, describe, expect, test, vi } from 'vitest';
 import { SMALL, SurveyFolder, timeless } from '../run/surveyFolder.ts';
 import { PostgresServer } from './postgres.ts';
 import { Processes, type Running, until } from './processes.ts';
+import { collectorMemory } from './standIn.ts';
 
 let folder: SurveyFolder;
 let postgres: PostgresServer;
@@ -182,6 +183,27 @@ describe('a survey through a queue', () => {
     await second.kill('SIGINT');
   });
 
+  test('a hundred cases and more: the collector holds no more at the end than at the beginning', async () => {
+    const cases = 150;
+    const survey = folder.write(
+      'many.json',
+      quick(
+        'Many',
+        Array.from({ length: cases }, (_, n) => 0.5 + n / 500),
+      ),
+    );
+    await postgres.newDatabase('many');
+    const collector = collect(survey, 'many', 'many');
+    const worker = work('many');
+    await worker.saying(/^done/m);
+    await worker.kill();
+    const held = await collectorMemory(postgres, 'many', collector, cases);
+    console.log(`collector: ${held.map((bytes) => Math.round(bytes / 1e6)).join(', ')} MB`);
+    expect(Math.max(...held) - held[0]!).toBeLessThan(40e6);
+    expect(await collector.ended, collector.said).toBe(0);
+    expect(timeless(folder.read('many/survey-result.json')).cases).toHaveLength(cases);
+  });
+
   test('a worker of another version, or with other results, is refused with both named', async () => {
     const survey = folder.write('versions.json', quick('Versions', [0.6]));
     await postgres.newDatabase('versions');
@@ -259,7 +281,7 @@ describe('a server that cannot be used', () => {
       [postgres.url('fieldassay', { password: false }), 3, /asks for the password of “surveys”: set PGPASSWORD/],
       [postgres.url('nowhere'), 3, /has no database “nowhere”/],
       [at(own, '?sslmode=require'), 3, /has no TLS, which sslmode asks for/],
-      [at(`127.0.0.1:${silent}`), 3, /did not answer as a PostgreSQL server within 4 s/],
+      [at(`127.0.0.1:${silent}`), 3, /did not answer as a PostgreSQL server within 3 s/],
       [at(`127.0.0.1:${web}`), 3, /is no PostgreSQL server/],
       [at(`127.0.0.1:${web}`, '?sslmode=disable'), 3, /instead of answering as a PostgreSQL server|is no PostgreSQL/],
       [at(`127.0.0.1:${greeting}`, '?sslmode=disable'), 3, /is no PostgreSQL server|did not answer as a PostgreSQL/],

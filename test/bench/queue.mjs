@@ -1,0 +1,126 @@
+/**
+ * What a queue costs: one survey by four workers of one thread each, through a PostgreSQL server on the same machine, and by
+ * the four threads of one process, in turns. No two of its cases share work, so that both do the same. Workers are there
+ * before the clock starts, and new in every round, as the process of the other is: each warms up by itself, which is in
+ * the wall time. What the queue itself takes is the time of a worker between two of its cases, from its own tables.
+ *
+ *   node test/bench/queue.mjs [--rounds 3]
+ */
+import { spawn } from 'node:child_process';
+import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
+import { fileURLToPath } from 'node:url';
+import { parseArgs } from 'node:util';
+import { bundle } from '../fdtd/bundle.mjs';
+
+const MAIN = fileURLToPath(new URL('../../dist/main.js', import.meta.url));
+const WORKERS = 4;
+
+/** Twelve cases of some seconds each. */
+const SURVEY = {
+  scenario: {
+    sources: [
+      {
+        type: 'dipole',
+        at: ['1 mm', '-2 mm', '3 mm'],
+        direction: [0.2, 0, 1],
+        length: '10 mm',
+        current: { waveform: { type: 'gaussianDerivative', amplitude: '1 A', delay: '1.8 ns', sigma: '0.2 ns' } },
+      },
+    ],
+    grid: { cellSize: '4 mm', box: { from: ['-100 mm', '-100 mm', '-100 mm'], to: ['100 mm', '100 mm', '100 mm'] } },
+    duration: '3.5 ns',
+    observers: [{ name: 'A', at: ['60 mm', '20 mm', '10 mm'] }],
+  },
+  vary: { 'grid.courant': Array.from({ length: 12 }, (_, n) => (60 + 3 * n) / 100) },
+};
+
+const median = (list) => list.toSorted((a, b) => a - b)[list.length >> 1];
+const range = (list) => [Math.min(...list), Math.max(...list)];
+
+function start(args, cwd) {
+  const child = spawn(process.execPath, [MAIN, ...args], { cwd, stdio: ['ignore', 'ignore', 'pipe'] });
+  const running = { child, said: '', ended: new Promise((done) => child.once('close', done)) };
+  child.stderr.setEncoding('utf8').on('data', (text) => {
+    running.said += text;
+  });
+  return running;
+}
+
+async function timed(args, cwd) {
+  const started = performance.now();
+  const running = start(args, cwd);
+  const status = await running.ended;
+  if (status !== 0) throw new Error(`${args.join(' ')} ended with status ${status}: ${running.said}`);
+  return (performance.now() - started) / 1000;
+}
+
+async function readyWorkers(url, cwd) {
+  const workers = Array.from({ length: WORKERS }, () => start(['work', '--queue', url, '--threads', '1'], cwd));
+  while (!workers.every(({ said }) => said.includes('takes cases'))) await new Promise((next) => setTimeout(next, 20));
+  return workers;
+}
+
+const timeless = (file) =>
+  JSON.stringify(
+    JSON.parse(readFileSync(file, 'utf8'), (key, value) =>
+      key === 'timings' || key === 'environment' ? undefined : value,
+    ),
+  );
+
+/** Between two cases of a worker, over their time. */
+const BETWEEN = `
+  select sum(extract(epoch from started - before)) filter (where before is not null) / sum(extract(epoch from ended - started))
+    as share
+  from (select *, lag(ended) over (partition by process order by id) as before from fieldassay.attempt) as attempt`;
+
+/** @returns {Promise<{ title: string, results: object[] }>} */
+export async function benchQueue(rounds = 3) {
+  const { PostgresServer } = await import((await bundle({ postgres: 'test/queue/postgres.ts' }))('postgres'));
+  const folder = mkdtempSync(join(tmpdir(), 'queue-'));
+  const server = await PostgresServer.start();
+  try {
+    writeFileSync(join(folder, 'survey.json'), JSON.stringify(SURVEY));
+    const runs = [];
+    for (let round = 0; round < rounds; round++) {
+      const database = `round_${round}`;
+      await server.newDatabase(database);
+      const url = server.url(database);
+      const workers = await readyWorkers(url, folder);
+      const queue = await timed(['survey', 'survey.json', '--out', `queue-${round}`, '--queue', url], folder);
+      for (const { child, ended } of workers) {
+        child.kill('SIGINT');
+        await ended;
+      }
+      const [{ share }] = await server.sql(BETWEEN, database);
+      const pool = await timed(['survey', 'survey.json', '--out', `pool-${round}`, '--threads', `${WORKERS}`], folder);
+      const [a, b] = ['queue', 'pool'].map((who) => timeless(join(folder, `${who}-${round}/survey-result.json`)));
+      if (a !== b) throw new Error('the results differ');
+      runs.push({ queue, pool, overhead: queue / pool - 1, between: Number(share) });
+    }
+    const of = (key) => runs.map((run) => run[key]);
+    return {
+      title: 'A survey of twelve cases by four workers through a queue, against four threads of one process',
+      results: [
+        {
+          case: 'wall time of the command',
+          queueSeconds: median(of('queue')),
+          poolSeconds: median(of('pool')),
+          overhead: median(of('overhead')),
+          overheadRange: range(of('overhead')),
+          betweenCases: median(of('between')),
+          runs,
+        },
+      ],
+    };
+  } finally {
+    await server.remove();
+    rmSync(folder, { recursive: true, force: true });
+  }
+}
+
+if (process.argv[1] === fileURLToPath(import.meta.url)) {
+  const { values } = parseArgs({ options: { rounds: { type: 'string' } } });
+  console.log(JSON.stringify(await benchQueue(values.rounds ? Number(values.rounds) : 3), null, 2));
+}
