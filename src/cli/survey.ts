@@ -88,8 +88,8 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
   const shard = flags.shard === undefined ? null : shardOf(flags.shard);
   const survey = readSurvey(file);
   const folder = join(out, 'cases');
-  const line = progressLine(false);
   const address = queue === undefined ? null : await queueAddress(queue);
+  const line = progressLine(false);
   const options: SurveyOptions = {
     ...(threads ? { threads } : {}),
     ...(address ? { engine: (await import('../queue/collect.ts')).queueAt(address, line.say) } : {}),
@@ -97,22 +97,15 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
     onProgress: line.show,
     store: announcing(folderStore(folder), file, out, survey),
   };
-  try {
-    if (shard) {
-      const part = await runShard(survey, shard, options);
-      sweepStore(folder);
-      writeFolder(out, { [partName(shard)]: `${JSON.stringify(part)}\n` });
-      process.stdout.write(partText(part, out));
-      return Object.values(part.cases).every(({ status }) => status !== 'failed');
-    }
-    const result = await runSurvey(survey, options);
-    sweepStore(folder);
-    line.end();
-    write(result, out, surveyCommandLine(file, flags, address?.url), flags);
-    return allWell(result);
-  } finally {
-    line.end();
+  const came = await (shard ? runShard(survey, shard, options) : runSurvey(survey, options)).finally(line.end);
+  sweepStore(folder);
+  if ('shard' in came) {
+    writeFolder(out, { [partName(came.shard)]: `${JSON.stringify(came)}\n` });
+    process.stdout.write(partText(came, out));
+    return Object.values(came.cases).every(({ status }) => status !== 'failed');
   }
+  write(came, out, surveyCommandLine(file, flags, address?.url), flags);
+  return allWell(came);
 }
 
 /** Writes `survey.json` with the first case, so that whoever looks into the folder meanwhile knows what they are of. */
