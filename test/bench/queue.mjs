@@ -1,8 +1,9 @@
 /**
  * What a queue costs: one survey by four workers of one thread each, through a PostgreSQL server on the same machine, and by
  * the four threads of one process, in turns. No two of its cases share work, so that both do the same. Workers are there
- * before the clock starts, and new in every round, as the process of the other is: each warms up by itself, which is in
- * the wall time. What the queue itself takes is the time of a worker between two of its cases, from its own tables.
+ * before the clock starts. In every round they are new and have to warm up, each by itself (`cold`), as the one process has
+ * to; then they get a second survey of like cases (`warm`), as workers do that stay. What the queue alone takes is the time
+ * of a worker between two of its cases, from its own tables.
  *
  *   node test/bench/queue.mjs [--rounds 3]
  */
@@ -18,7 +19,7 @@ const MAIN = fileURLToPath(new URL('../../dist/main.js', import.meta.url));
 const WORKERS = 4;
 
 /** Twelve cases of some seconds each. */
-const SURVEY = {
+const survey = (first) => ({
   scenario: {
     sources: [
       {
@@ -33,8 +34,8 @@ const SURVEY = {
     duration: '3.5 ns',
     observers: [{ name: 'A', at: ['60 mm', '20 mm', '10 mm'] }],
   },
-  vary: { 'grid.courant': Array.from({ length: 12 }, (_, n) => (60 + 3 * n) / 100) },
-};
+  vary: { 'grid.courant': Array.from({ length: 12 }, (_, n) => first + (3 * n) / 100) },
+});
 
 const median = (list) => list.toSorted((a, b) => a - b)[list.length >> 1];
 const range = (list) => [Math.min(...list), Math.max(...list)];
@@ -73,7 +74,8 @@ const timeless = (file) =>
 const BETWEEN = `
   select sum(extract(epoch from started - before)) filter (where before is not null) / sum(extract(epoch from ended - started))
     as share
-  from (select *, lag(ended) over (partition by process order by id) as before from fieldassay.attempt) as attempt`;
+  from (select attempt.*, lag(ended) over (partition by process, survey order by attempt.id) as before
+        from fieldassay.attempt join fieldassay.survey_case using (hash)) as attempt`;
 
 /** @returns {Promise<{ title: string, results: object[] }>} */
 export async function benchQueue(rounds = 3) {
@@ -81,23 +83,25 @@ export async function benchQueue(rounds = 3) {
   const folder = mkdtempSync(join(tmpdir(), 'queue-'));
   const server = await PostgresServer.start();
   try {
-    writeFileSync(join(folder, 'survey.json'), JSON.stringify(SURVEY));
+    writeFileSync(join(folder, 'first.json'), JSON.stringify(survey(0.6)));
+    writeFileSync(join(folder, 'second.json'), JSON.stringify(survey(0.601)));
     const runs = [];
     for (let round = 0; round < rounds; round++) {
       const database = `round_${round}`;
       await server.newDatabase(database);
       const url = server.url(database);
       const workers = await readyWorkers(url, folder);
-      const queue = await timed(['survey', 'survey.json', '--out', `queue-${round}`, '--queue', url], folder);
+      const cold = await timed(['survey', 'first.json', '--out', `queue-${round}`, '--queue', url], folder);
+      const warm = await timed(['survey', 'second.json', '--out', 'second', '--queue', url], folder);
       for (const { child, ended } of workers) {
         child.kill('SIGINT');
         await ended;
       }
       const [{ share }] = await server.sql(BETWEEN, database);
-      const pool = await timed(['survey', 'survey.json', '--out', `pool-${round}`, '--threads', `${WORKERS}`], folder);
+      const pool = await timed(['survey', 'first.json', '--out', `pool-${round}`, '--threads', `${WORKERS}`], folder);
       const [a, b] = ['queue', 'pool'].map((who) => timeless(join(folder, `${who}-${round}/survey-result.json`)));
       if (a !== b) throw new Error('the results differ');
-      runs.push({ queue, pool, overhead: queue / pool - 1, between: Number(share) });
+      runs.push({ cold, warm, pool, overCold: cold / pool - 1, overWarm: warm / pool - 1, between: Number(share) });
     }
     const of = (key) => runs.map((run) => run[key]);
     return {
@@ -105,10 +109,12 @@ export async function benchQueue(rounds = 3) {
       results: [
         {
           case: 'wall time of the command',
-          queueSeconds: median(of('queue')),
+          coldSeconds: median(of('cold')),
+          warmSeconds: median(of('warm')),
           poolSeconds: median(of('pool')),
-          overhead: median(of('overhead')),
-          overheadRange: range(of('overhead')),
+          overCold: median(of('overCold')),
+          overWarm: median(of('overWarm')),
+          overWarmRange: range(of('overWarm')),
           betweenCases: median(of('between')),
           runs,
         },

@@ -22,7 +22,7 @@ afterAll(async () => {
   await processes.end();
   await postgres.remove();
   folder.remove();
-});
+}, 60_000);
 
 /** Four cases that are run and two that are refused, with shared work and reflections among them. */
 const MIXED = {

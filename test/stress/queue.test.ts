@@ -18,7 +18,7 @@ afterAll(async () => {
   await processes.end();
   await postgres.remove();
   folder.remove();
-});
+}, 60_000);
 
 const work = (database: string) => processes.start(['work', '--queue', postgres.url(database), '--threads', '1']);
 const collect = (survey: string, out: string, database: string) =>
