@@ -2,8 +2,8 @@ import { formatNumber } from '../elementary/quantity.ts';
 import { memoryNeeded } from '../fdtd/layout.ts';
 import { distanceToSources } from '../scenario/distance.ts';
 import { FACES, type Scenario, type Vec3 } from '../scenario/model.ts';
-import { CPML_DEFAULTS } from '../scenario/schema.ts';
 import { observerCell } from '../scenario/sites.ts';
+import { isUsual } from '../scenario/walls.ts';
 import { describeBoundary } from './describe.ts';
 import { goalPlaces } from './goal.ts';
 import {
@@ -119,12 +119,8 @@ function foreseeableWall(scenario: Scenario): Wall | { readonly reason: string }
   const unknown = (why: string) => ({ reason: `What the walls send back is not in it: ${why}.` });
   if (!wall || !isPredictable(wall)) return unknown(`${describeBoundary(scenario)} is not among what is predicted`);
   const { boundary, box, cellSize } = scenario.grid;
-  const tuned = FACES.map((face) => boundary[face]).some(
-    (one) =>
-      one.type === 'cpml' &&
-      (['grading', 'kappaMax', 'sigmaFactor'] as const).some((key) => one[key] !== CPML_DEFAULTS[key]),
-  );
-  if (tuned) return unknown('predictions know a CPML with its usual parameters only');
+  if (!FACES.every((face) => isUsual(boundary[face])))
+    return unknown(`predictions know a ${describeBoundary(scenario)} with its usual parameters only`);
   const close = scenario.observers.some(
     ({ at, inside }) =>
       inside &&
@@ -132,5 +128,7 @@ function foreseeableWall(scenario: Scenario): Wall | { readonly reason: string }
         (a) => Math.min(at[a]! - box.from[a]!, box.to[a]! - at[a]!) < (NEAREST_WALL - 1e-9) * cellSize[a]!,
       ),
   );
-  return close && wall.type === 'cpml' ? unknown(`an observer is nearer to a wall than ${NEAREST_WALL} cells`) : wall;
+  return close && wall.layers !== undefined
+    ? unknown(`an observer is nearer to a wall than ${NEAREST_WALL} cells`)
+    : wall;
 }

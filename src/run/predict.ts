@@ -84,16 +84,23 @@ export function predictFree(scenario: Scenario, { cells, band }: Asked, form: Fo
   }));
 }
 
-/** What walls are predicted to send back at one place, relative to the exact field. */
-export interface WallErrors {
-  /** perfect conductors: the root-sum-square of the fields of the source's six images */
-  readonly pec: ErrorList;
-  /** the same, each image weakened by what Mur's first-order wall absorbs of it */
-  readonly mur1: ErrorList;
+/** One of the source's six images in perfect walls, as seen from one place. */
+interface Image {
+  /** its field, relative to the exact one, in every band that is asked for */
+  readonly error: ErrorList;
+  /** the share of its power that is near field, in the same bands */
+  readonly near: Float64Array;
+  /** (kh)², h the cell along the wall's normal: mean over its power, in the same bands */
+  readonly coarseness: Float64Array;
+  /** of its angle of incidence on the wall */
+  readonly cosine: number;
 }
 
+/** What walls are predicted to send back at one place: how much of each image, `boundaryErrors` says. */
+export type WallErrors = readonly Image[];
+
 /**
- * What the six walls of the box send back at first. An image's field at p is the mirror image of the source's own at the
+ * The images that the six walls of the box make. An image's field at p is the mirror image of the source's own at the
  * mirrored p, so that no image needs to be made.
  */
 export function predictWalls(scenario: Scenario, { cells, band }: Asked): WallErrors[] {
@@ -103,7 +110,7 @@ export function predictWalls(scenario: Scenario, { cells, band }: Asked): WallEr
   const { points, exact } = lookout(scenario, cells, instants);
   const centre = middleOf(sources);
   const centres = Array.from({ length: points.count }, (_, p) => (band === null ? [] : bandCentres(exact, p)));
-  const squares = Array.from({ length: points.count }, () => ({ pec: [] as number[], mur1: [] as number[] }));
+  const images: Image[][] = Array.from({ length: points.count }, () => []);
   for (const a of [0, 1, 2] as const)
     for (const wall of [grid.box.from[a], grid.box.to[a]]) {
       const position = points.position.map((x, n) => (n % 3 === a ? 2 * wall - x : x));
@@ -112,17 +119,21 @@ export function predictWalls(scenario: Scenario, { cells, band }: Asked): WallEr
       for (let p = 0; p < points.count; p++) {
         const along = [0, 1, 2].map((b) => position[18 * p + b]! - centre[b]!);
         const distance = Math.sqrt(along.reduce((sum, x) => sum + x * x, 0));
-        const share = (frequency: number) =>
-          murShare((2 * Math.PI * frequency * distance) / medium.speed, Math.abs(along[a]!) / distance);
-        errorsAt(withImage, exact, p, band).forEach((e, m) => {
-          const absorbed = band === null ? meanShare(image, p, share) : share(centres[p]![m]!);
-          squares[p]!.pec[m] = (squares[p]!.pec[m] ?? 0) + e * e;
-          squares[p]!.mur1[m] = (squares[p]!.mur1[m] ?? 0) + e * e * absorbed;
+        const wavenumber = (frequency: number) => (2 * Math.PI * frequency) / medium.speed;
+        const error = errorsAt(withImage, exact, p, band);
+        const inBands = (of: (k: number) => number): Float64Array => {
+          const mean = band === null ? meanOver(image, p, (frequency) => of(wavenumber(frequency))) : 0;
+          return error.map((_, m) => (band === null ? mean : of(wavenumber(centres[p]![m]!))));
+        };
+        images[p]!.push({
+          error,
+          near: inBands((k) => nearShare(k * distance)),
+          coarseness: inBands((k) => k * k * grid.cellSize[a] * grid.cellSize[a]),
+          cosine: Math.abs(along[a]!) / distance,
         });
       }
     }
-  const roots = (list: readonly number[]) => Float64Array.from(list, Math.sqrt);
-  return squares.map(({ pec, mur1 }) => ({ pec: roots(pec), mur1: roots(mur1) }));
+  return images;
 }
 
 /** The middle of the box around all sources. */
@@ -133,26 +144,24 @@ function middleOf(sources: Scenario['sources']): Vec3 {
 }
 
 /**
- * The share of an image's power that Mur's first-order wall sends back, x = kr at the image's distance and θ its angle
- * of incidence. What radiates meets R = (1 − cos θ)/(1 + cos θ) (Engquist & Majda 1977); what is near field meets nothing
- * that it matches and comes back whole. Of a dipole's |1 + 1/(jx) − 1/x²|², roughly, the part 1/(1 + x⁻² + x⁻⁴) radiates.
+ * The share of a source's power that is near field, at x = kr. Of a dipole's |1 + 1/(jx) − 1/x²|² some 1/(1 + x⁻² + x⁻⁴)
+ * radiates; the weight of x⁻² is that at which the walls below are told best.
  */
-function murShare(x: number, cosine: number): number {
-  const reflection = (1 - cosine) / (1 + cosine);
-  const radiates = x > 0 ? 1 / (1 + 1 / (x * x) + 1 / (x * x * x * x)) : 0;
-  return reflection * reflection * radiates + 1 - radiates;
+function nearShare(x: number): number {
+  return x > 0 ? 1 - 1 / (1 + NEAR_WEIGHT / (x * x) + 1 / (x * x * x * x)) : 1;
 }
+const NEAR_WEIGHT = 0.1;
 
-/** A share of power by frequency, averaged over the spectrum of E at a point. */
-function meanShare(history: FieldHistory, point: number, share: (frequency: number) => number): number {
+/** A function of frequency, averaged over the power of E at a point. */
+function meanOver(history: FieldHistory, point: number, of: (frequency: number) => number): number {
   const spectrum = spectrumOf(history, 'E', point);
   let power = 0;
-  let back = 0;
+  let sum = 0;
   magnitudes(spectrum).forEach((magnitude, k) => {
     power += magnitude * magnitude;
-    back += magnitude * magnitude * share(k / spectrum.window);
+    sum += magnitude * magnitude * of(k / spectrum.window);
   });
-  return power > 0 ? back / power : 0;
+  return power > 0 ? sum / power : 0;
 }
 
 /** The middles of the sixth-octave bands that count, Hz. */
@@ -160,27 +169,64 @@ const bandCentres = (exact: FieldHistory, point: number): number[] =>
   bandOf(exact, exact, 'E', point, 0, 1).bands.map(({ from, to }) => (from + to) / 2);
 
 /**
- * What an absorber sends back, as a share of what perfect conductors do: medians over scenarios with 4 or more cells of
- * clearance, by layers, dB. They hold within a factor of 2 in nine of ten cases with 8 or more layers and in seven of ten
- * with 6, which lets more of grazing waves and of short ones through (test/stress/plan.test.ts).
+ * What a wall sends back of an image's power: of what radiates, |R|² of plane waves, and of what is near field, which no
+ * absorber is made for, a constant share. Conditions on the wall return the published R(θ) (src/fdtd/boundaries/). Layers
+ * return what the lattice makes of them, at any angle in the same way: |R| goes as kh. The factors were fitted to 60 places
+ * in 40 scenarios with 4 or more cells of clearance; test/stress/plan.test.ts tries them on others.
  */
-const CPML_REFLECTION_DB: Readonly<Record<number, number>> = { 6: -71, 8: -83, 10: -89.5, 12: -95 };
+interface Share {
+  /** of a plane wave, by cos θ and (kh)² */
+  readonly plane: (cosine: number, coarseness: number) => number;
+  readonly near: number;
+}
+
+const squared = (x: number): number => x * x;
+const firstOrder = (cosine: number): number => (1 - cosine) / (1 + cosine);
+/** Higdon's for 0° and 45°. */
+const higdon = (cosine: number): number => (firstOrder(cosine) * (Math.SQRT1_2 - cosine)) / (Math.SQRT1_2 + cosine);
+
+/** @param plane |R|/(kh) of plane waves, dB @param near |R| of the near field, dB */
+function layered(plane: number, near: number): Share {
+  const share = squared(fromDecibels(plane));
+  return { plane: (_, coarseness) => share * coarseness, near: squared(fromDecibels(near)) };
+}
+
+const SHARES: Readonly<Record<string, Share>> = {
+  pec: { plane: () => 1, near: 1 },
+  pmc: { plane: () => 1, near: 1 },
+  mur1: { plane: (cosine) => 1.83 * squared(firstOrder(cosine)), near: 2.4 },
+  // Its rims, which are of first order, outweigh the rest.
+  mur2: { plane: (cosine) => 1.93 * squared(firstOrder(cosine)), near: 4.2 },
+  higdon2: { plane: (cosine) => 1.32 * squared(higdon(cosine)), near: 0.27 },
+  liao: { plane: (cosine) => 1.93 * squared(squared(firstOrder(cosine))), near: 0.2 },
+  'cpml 6': layered(-62.7, -63),
+  'cpml 8': layered(-77.4, -74.5),
+  'cpml 10': layered(-83.8, -81),
+  'cpml 12': layered(-88.7, -86.1),
+  'splitPml 6': layered(-69.2, -55.7),
+  'splitPml 8': layered(-79.5, -66.4),
+  'splitPml 10': layered(-85.2, -74.4),
+  'splitPml 12': layered(-89.8, -79.2),
+};
+
+const shareOf = ({ type, layers }: Wall): Share | undefined =>
+  SHARES[layers === undefined ? type : `${type} ${layers}`];
 
 /** Whether walls are known well enough to be predicted. */
-export const isPredictable = (wall: Wall): boolean =>
-  wall.type === 'pec' || wall.type === 'mur1' || reflectionOf(wall) !== undefined;
+export const isPredictable = (wall: Wall): boolean => shareOf(wall) !== undefined;
 
-const reflectionOf = ({ type, layers }: Wall): number | undefined =>
-  type === 'cpml' ? CPML_REFLECTION_DB[layers ?? 0] : undefined;
-
-/** The boundary part. @throws RangeError for walls that are not predictable */
-export function boundaryErrors({ pec, mur1 }: WallErrors, wall: Wall): ErrorList {
-  if (wall.type === 'mur1') return mur1;
-  if (wall.type === 'pec') return pec;
-  const dB = reflectionOf(wall);
-  if (dB === undefined) throw new RangeError(`What ${boundaryText(wall)} sends back was not measured.`);
-  const share = fromDecibels(dB);
-  return pec.map((e) => share * e);
+/** The boundary part: the root-sum-square of what comes back of the six images. @throws RangeError for walls that are not predictable */
+export function boundaryErrors(images: WallErrors, wall: Wall): ErrorList {
+  const share = shareOf(wall);
+  if (!share) throw new RangeError(`What comes back of ${boundaryText(wall)} was not measured.`);
+  return images[0]!.error.map((_, m) =>
+    Math.sqrt(
+      images.reduce((sum, { error, near, coarseness, cosine }) => {
+        const back = share.plane(cosine, coarseness[m]!) * (1 - near[m]!) + share.near * near[m]!;
+        return sum + error[m]! * error[m]! * back;
+      }, 0),
+    ),
+  );
 }
 
 export interface Wall {

@@ -3,6 +3,7 @@ import type { PlannedSetup } from '../compare/planResult.ts';
 import { type Remedy, type Result, withinTolerance } from '../compare/result.ts';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { FACES, type Scenario } from '../scenario/model.ts';
+import { isUsual } from '../scenario/walls.ts';
 import type { Asked } from './answers.ts';
 import type { Comparison } from './conclude.ts';
 import { describeBoundary } from './describe.ts';
@@ -53,7 +54,7 @@ function frameOf({ grid }: Scenario): Frame {
     holds: grid.box,
     anchor: grid.box.from,
     clearances: OUTWARDS,
-    walls: own && isPredictable(own) ? [own, ...others] : others,
+    walls: own && isPredictable(own) && isUsual(grid.boundary['x-']) ? [own, ...others] : others,
     keepsCells: true,
   };
 }
@@ -63,8 +64,7 @@ export function ownWall({ grid }: Pick<Scenario, 'grid'>): Wall | null {
   const walls = FACES.map((face) => grid.boundary[face]);
   const first = walls[0]!;
   if (walls.some((wall) => JSON.stringify(wall) !== JSON.stringify(first))) return null;
-  if (first.type === 'cpml') return { type: 'cpml', layers: first.layers };
-  return first.type === 'mur1' || first.type === 'pec' ? { type: first.type } : null;
+  return 'layers' in first ? { type: first.type, layers: first.layers } : { type: first.type };
 }
 
 function remedyOf(scenario: Scenario, { timings }: Result, setup: PlannedSetup | null): Remedy {

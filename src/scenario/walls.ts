@@ -1,4 +1,5 @@
 import type { Boundary } from './model.ts';
+import { CPML_DEFAULTS, HIGDON_DEFAULTS, LIAO_DEFAULTS, SPLIT_PML_DEFAULTS } from './schema.ts';
 
 /** Cells of the lattice that a boundary takes up behind its face, outside the working box. */
 export function cellsBehind(boundary: Boundary): number {
@@ -25,4 +26,14 @@ export function cellsRead(boundary: Boundary): number {
     default:
       return 1;
   }
+}
+
+/** Whether a boundary has its default parameters, whatever its layers and α: what it sends back is known of those alone. */
+export function isUsual(boundary: Boundary): boolean {
+  const given: Readonly<Record<string, unknown>> = boundary;
+  const defaults = { cpml: CPML_DEFAULTS, splitPml: SPLIT_PML_DEFAULTS, higdon2: HIGDON_DEFAULTS, liao: LIAO_DEFAULTS };
+  const expected = boundary.type in defaults ? defaults[boundary.type as keyof typeof defaults] : {};
+  return Object.entries(expected).every(
+    ([key, value]) => key === 'layers' || JSON.stringify(given[key]) === JSON.stringify(value),
+  );
 }

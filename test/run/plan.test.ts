@@ -169,7 +169,7 @@ describe('predictions', () => {
     );
     expect(errors).toEqual(errors.toSorted((a, b) => b - a));
     expect(isPredictable({ type: 'cpml', layers: 7 })).toBe(false);
-    expect(() => boundaryErrors(walls!, { type: 'cpml', layers: 7 })).toThrow('CPML of 7 layers');
+    expect(() => boundaryErrors(walls!, { type: 'cpml', layers: 7 })).toThrow('CPML, 7 layers');
   });
 });
 

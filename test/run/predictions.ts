@@ -19,11 +19,8 @@ export interface Prediction {
 }
 
 export const PREDICTED_WALLS: readonly Wall[] = [
-  { type: 'cpml', layers: 6 },
-  { type: 'cpml', layers: 8 },
-  { type: 'cpml', layers: 10 },
-  { type: 'cpml', layers: 12 },
-  { type: 'mur1' },
+  ...(['cpml', 'splitPml'] as const).flatMap((type) => [6, 8, 10, 12].map((layers) => ({ type, layers }))),
+  ...(['mur1', 'mur2', 'higdon2', 'liao', 'pec', 'pmc'] as const).map((type) => ({ type })),
 ];
 
 /** Runs a scenario on a lattice of so many cells per shortest wavelength, without walls and with each kind of them. */
