@@ -192,13 +192,14 @@ function layered(plane: number, near: number): Share {
 }
 
 const SHARES: Readonly<Record<string, Share>> = {
-  pec: { plane: () => 1, near: 1 },
-  pmc: { plane: () => 1, near: 1 },
+  // Between conductors the images have images: twice the field.
+  pec: { plane: () => 4.5, near: 4.5 },
+  pmc: { plane: () => 4.5, near: 4.5 },
   mur1: { plane: (cosine) => 1.83 * squared(firstOrder(cosine)), near: 2.4 },
   // Its rims, which are of first order, outweigh the rest.
   mur2: { plane: (cosine) => 1.93 * squared(firstOrder(cosine)), near: 4.2 },
-  higdon2: { plane: (cosine) => 1.32 * squared(higdon(cosine)), near: 0.27 },
-  liao: { plane: (cosine) => 1.93 * squared(squared(firstOrder(cosine))), near: 0.2 },
+  higdon2: { plane: (cosine) => 1.32 * squared(higdon(cosine)), near: 0.13 },
+  liao: { plane: (cosine) => 1.93 * squared(squared(firstOrder(cosine))), near: 0.1 },
   'cpml 6': layered(-62.7, -63),
   'cpml 8': layered(-77.4, -74.5),
   'cpml 10': layered(-83.8, -81),

@@ -447,11 +447,11 @@ export const CPML_DEFAULTS = { layers: 10, grading: 3, kappaMax: 1, sigmaFactor:
 export const SPLIT_PML_DEFAULTS = { layers: 10, grading: 3, sigmaFactor: 1 } as const;
 
 /** Angles, rad, at which Higdon's condition returns nothing, and its damping. */
-export const HIGDON_DEFAULTS = { angles: [0, Math.PI / 4], damping: 0.01 } as const;
+export const HIGDON_DEFAULTS = { angles: [0, Math.PI / 4], damping: 0.02 } as const;
 /** Nearer to grazing a condition for one angle returns nearly all of every other. */
 const STEEPEST_ANGLE = (85 * Math.PI) / 180;
 
-export const LIAO_DEFAULTS = { damping: 0.01 } as const;
+export const LIAO_DEFAULTS = { damping: 0.02 } as const;
 
 const within = (low: number, high: number, what: string) => {
   const error = expected(`${what} from ${low} to ${high}`);

@@ -1,9 +1,9 @@
 import { describe, expect, test } from 'vitest';
 import type { GridProblem } from '../../src/fdtd/problem.ts';
-import { activeRegion, type CellBox, countCellUpdates, type Region } from '../../src/fdtd/region.ts';
+import { activeRegion, type CellBox, countCellUpdates, type Region, wholeLattice } from '../../src/fdtd/region.ts';
 import { marchAlone } from '../../src/fdtd/run.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
-import { cpml, edgesOf, everyFace, PULSE, plainProblem, type Triple } from './problems.ts';
+import { cpml, edgesOf, everyFace, MUR, PULSE, plainProblem, type Triple } from './problems.ts';
 
 const waveform = makeWaveform({ type: 'gaussian', amplitude: 1, delay: 0, sigma: 0.03e-9 });
 
@@ -113,6 +113,24 @@ describe('active region', () => {
     expect(rows[0]!.floor).toBeLessThan(-60);
     expect(rows[1]!.floor).toBeLessThan(rows[0]!.floor - 6);
     expect(rows[2]!.floor).toBeLessThan(rows[1]!.floor - 6);
+  });
+
+  test.each([
+    ['mur1', MUR],
+    ['mur2', { type: 'mur2' }],
+    ['higdon2', { type: 'higdon2', angles: [0, Math.PI / 4], damping: 0.01 }],
+    ['liao', { type: 'liao', damping: 0.01 }],
+    ['pmc', { type: 'pmc' }],
+  ] as const)('it goes with walls that read several cells (%s)', (_, wall) => {
+    // Walls near enough for what they return to be sampled, and rows and planes that go together within the region's edge.
+    const problem = problemOf({ boundary: everyFace(wall), pad: everyFace(3), precision: 'double', steps: 60 });
+    const [whole, part] = [wholeLattice(problem), exactly(problem)].map(
+      (region) => marchAlone(problem, { region, schedule: { tileRows: 3, blockSteps: 7 } }).samples[0]!,
+    ) as [Float64Array, Float64Array];
+    const largest = Math.max(...whole.map(Math.abs));
+    // A wall that damps lets the bias, 1e-20 of the scale, decay where it is marched.
+    expect(Math.max(...whole.map((x, n) => Math.abs(x - part[n]!)))).toBeLessThan(1e-13 * largest);
+    expect(largest).toBeGreaterThan(1e-3);
   });
 
   test('it goes with absorbing layers too', () => {

@@ -12,8 +12,8 @@ export const BOUNDARIES: Readonly<Record<string, Boundary>> = {
   pmc: { type: 'pmc' },
   mur1: { type: 'mur1' },
   mur2: { type: 'mur2' },
-  higdon2: { type: 'higdon2', angles: [0, Math.PI / 4], damping: 0.01 },
-  liao: { type: 'liao', damping: 0.01 },
+  higdon2: { type: 'higdon2', angles: [0, Math.PI / 4], damping: 0.02 },
+  liao: { type: 'liao', damping: 0.02 },
   cpml: cpml(5),
   splitPml: { type: 'splitPml', layers: 5, grading: 3, sigmaFactor: 1 },
 };

@@ -14,8 +14,9 @@ test('60 seeded scenarios: planned runs meet their tolerance, and not by hiding 
 
 test('predicted against measured, 40 scenarios in double precision', () => {
   const cells = [8, 9, 11, 13];
-  const clearances = [4, 5, 6, 8, 12];
-  const list = planCases(31_337, 40).flatMap((each, n) => predictionsOf(each, cells[n % 4]!, clearances[n % 5]!));
+  // Kinds of source come in fives, so that each of them meets each clearance. What walls send back was fitted to other cases.
+  const clearances = [4, 5, 6, 8, 12, 7, 10];
+  const list = planCases(4_242, 40).flatMap((each, n) => predictionsOf(each, cells[n % 4]!, clearances[n % 7]!));
   printPredictions(list);
   const within = withinTwo(list);
   const { time, spectrum, within: share } = factors(list);
@@ -23,8 +24,9 @@ test('predicted against measured, 40 scenarios in double precision', () => {
   expect(time).toBeLessThan(1.1);
   expect(spectrum).toBeLessThan(1.1);
   expect(share).toBeGreaterThanOrEqual(0.9);
-  for (const layers of [8, 10, 12]) expect(within[`cpml${layers}`]).toBeGreaterThanOrEqual(0.8);
-  // Six layers let more of grazing and of short waves through than one number can tell.
-  expect(within.cpml6).toBeGreaterThanOrEqual(0.6);
-  expect(within.mur1).toBeGreaterThanOrEqual(0.7);
+  for (const type of ['cpml', 'splitPml'])
+    for (const layers of [6, 8, 10, 12]) expect(within[`${type}${layers}`]).toBeGreaterThanOrEqual(0.8);
+  for (const type of ['mur1', 'mur2']) expect(within[type]).toBeGreaterThanOrEqual(0.7);
+  // What their damping returns of slow fields is not in the prediction.
+  for (const type of ['higdon2', 'liao']) expect(within[type]).toBeGreaterThanOrEqual(0.6);
 });

@@ -46,7 +46,7 @@ const WALLS: readonly unknown[] = BOUNDARIES.flatMap(
 
 const PRESETS = {
   ladder: ['Ladder', 'Three cell sizes: how the error falls with the cells'],
-  walls: ['Walls', 'Four kinds of wall beside the same exact field'],
+  walls: ['Walls', 'Every kind of wall beside the same exact field'],
   clearance: ['Clearance', 'Two kinds of wall at three distances'],
 } as const;
 

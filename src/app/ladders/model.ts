@@ -1,5 +1,6 @@
 import { isDone, type SurveyResult, surveyResultSchema } from '../../compare/surveyResult.ts';
 import type { Problem } from '../../scenario/load.ts';
+import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
 import { beside } from '../runner.ts';
 import { type Store, textOf } from '../store.ts';
@@ -227,7 +228,9 @@ export function presets({ state }: Store): Readonly<Record<'ladder' | 'walls' | 
   return {
     ladder: { 'grid.cellSize': cells },
     walls: {
-      'grid.boundary': [{ type: 'pec' }, { type: 'mur1' }, ...[6, 10].map((layers) => ({ type: 'cpml', layers }))],
+      'grid.boundary': BOUNDARIES.map((type) =>
+        type === 'cpml' || type === 'splitPml' ? { type, layers: CPML_DEFAULTS.layers } : { type },
+      ),
     },
     clearance: {
       'grid.boundary': [{ type: 'mur1' }, { type: 'cpml', layers: 8 }],

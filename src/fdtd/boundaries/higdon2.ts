@@ -12,9 +12,10 @@ type Higdon2 = Extract<Boundary, { type: 'higdon2' }>;
  *   ∏ [cos a (1 − Z⁻¹)(1 + K) − s(1 + Z⁻¹)(K − 1) + ds(1 + Z⁻¹)(1 + K)] E0 = 0,   s = vΔt/h.
  * R. L. Higdon, Math. Comp. 47 (1986) 437 and 49 (1987) 65 (the damping is the second paper's).
  *
- * angles: 0° to 85°, default 0° and 45°. damping d: 0 to 0.2, default 0.01. Needs no neighbours along the wall, so rims
- * are like the rest. With d = 0 a field that does not change in time is a double root: single precision drifts. With
- * d > 0 a wave at normal incidence returns about (d/2)² more. Stable for s ≤ 1.
+ * angles: 0° to 85°, default 0° and 45°. damping d: 0 to 0.2, default 0.02. A plane wave at angle θ returns
+ *   ∏ (cos a − cos θ − 2jd/(kh))/(cos a + cos θ − 2jd/(kh)),
+ * so damping costs most where cells are small; but with d = 0 a field that does not change in time is a double root, and what
+ * is slow comes back the more. It needs no neighbours along the wall, so rims are like the rest. Stable for s ≤ 1.
  */
 export const higdon2: BoundaryMethod<Higdon2> = {
   wall({ angles, damping }, at) {

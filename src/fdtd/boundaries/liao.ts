@@ -11,9 +11,10 @@ import { type BoundaryMethod, pathInCells } from './boundary.ts';
  * Z. P. Liao, H. L. Wong, B. P. Yang, Y. F. Yuan, Scientia Sinica A 27 (1984) 1063. The damping d is that of
  * M. Moghaddam, W. C. Chew, Microw. Opt. Technol. Lett. 4 (1991) 265, as a factor.
  *
- * damping d: 0 to 0.2, default 0.01. With d = 0 (the original) rounding grows until it takes over, soonest in single
- * precision; d ≥ 0.005 is stable. It needs no neighbours along the wall and knows no angle: a wave at angle θ from the
- * normal is taken for one of the speed v along it, off by v(1/cos θ − 1).
+ * damping d: 0 to 0.2, default 0.02. With d = 0 (the original) rounding grows until it takes over, soonest in single
+ * precision; d ≥ 0.005 is stable. It needs no neighbours along the wall. A plane wave at angle θ from the normal returns
+ *   −[(1 − (1 − d)e^(−jωΔt(1 − cos θ)))/(1 − (1 − d)e^(−jωΔt(1 + cos θ)))]²,
+ * with d = 0 and small cells nearly Engquist & Majda's second order, −((1 − cos θ)/(1 + cos θ))².
  */
 export const liao: BoundaryMethod<Extract<Boundary, { type: 'liao' }>> = {
   wall({ damping }, at) {
