@@ -198,8 +198,8 @@ const SHARES: Readonly<Record<string, Share>> = {
   mur1: { plane: (cosine) => 1.83 * squared(firstOrder(cosine)), near: 2.4 },
   // Its rims, which are of first order, outweigh the rest.
   mur2: { plane: (cosine) => 1.93 * squared(firstOrder(cosine)), near: 4.2 },
-  higdon2: { plane: (cosine) => 1.32 * squared(higdon(cosine)), near: 0.13 },
-  liao: { plane: (cosine) => 1.93 * squared(squared(firstOrder(cosine))), near: 0.1 },
+  higdon2: { plane: (cosine) => 1.33 * squared(higdon(cosine)), near: 0.16 },
+  liao: { plane: (cosine) => squared(squared(firstOrder(cosine))), near: 0.09 },
   'cpml 6': layered(-62.7, -63),
   'cpml 8': layered(-77.4, -74.5),
   'cpml 10': layered(-83.8, -81),
