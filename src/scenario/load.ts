@@ -407,7 +407,7 @@ function checkWalls(
     if (wall.sigmaFactor * each > MOST_LOST_A_STEP)
       tell(
         'sigmaFactor',
-        `is ${wall.sigmaFactor}, with grading ${wall.grading} a loss σmaxΔt/ε of ${formatNumber(wall.sigmaFactor * each, 3)} a step; the limit is ${MOST_LOST_A_STEP}; use ${formatNumber(MOST_LOST_A_STEP / each, 2)} or less, or a lower grading`,
+        `is ${wall.sigmaFactor}, with grading ${wall.grading} a loss σmaxΔt/ε of ${formatNumber(wall.sigmaFactor * each, 3)} a step; the limit is ${MOST_LOST_A_STEP}; use ${Math.floor((10 * MOST_LOST_A_STEP) / each) / 10} or less, or a lower grading`,
       );
   });
 }

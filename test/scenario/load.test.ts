@@ -379,6 +379,25 @@ const refusals: [string, Record<string, unknown>, string, string][] = [
   ['half a layer', { 'grid.boundary.layers': 0.5 }, 'grid.boundary.layers', 'a whole number from 1 to 128'],
   ['no layer', { 'grid.boundary.layers': 0 }, 'grid.boundary.layers', 'a whole number from 1 to 128'],
   ['layers of a conductor', { 'grid.boundary.type': 'pec' }, 'grid.boundary.layers', 'it may have type'],
+  [
+    'grazing',
+    { 'grid.boundary': { type: 'higdon2', angles: ['0 deg', '86 deg'] } },
+    'grid.boundary.angles.1',
+    '0 to 85 degrees',
+  ],
+  ['one angle', { 'grid.boundary': { type: 'higdon2', angles: ['45 deg'] } }, 'grid.boundary.angles', 'two angles'],
+  [
+    'much damping',
+    { 'grid.boundary': { type: 'liao', damping: 0.3 } },
+    'grid.boundary.damping',
+    'a number from 0 to 0.2',
+  ],
+  [
+    'split fields damped beyond what rounding bears',
+    { 'grid.boundary': { type: 'splitPml', sigmaFactor: 9 } },
+    'grid.boundary.sigmaFactor',
+    'the limit is 6; use 3.2 or less',
+  ],
   ['a missing face', { 'grid.boundary': { 'x-': { type: 'pec' } } }, 'grid.boundary.z+', 'is missing'],
   ['a boundary that is a word', { 'grid.boundary': 'cpml' }, 'grid.boundary', 'an object that describes a boundary'],
   ['triple precision', { 'grid.precision': 'triple' }, 'grid.precision', 'one of single, double'],
@@ -511,6 +530,27 @@ describe('what a file means', () => {
     const alpha = (face: 'x-' | 'y+' | 'z+') => (grid.boundary[face] as { alphaFrequency: number }).alphaFrequency;
     expect(Math.abs(alpha('z+') / alpha('x-') / 2 - 1)).toBeLessThan(1e-15);
     expect(Math.abs(alpha('y+') / alpha('x-') / 1.25 - 1)).toBeLessThan(1e-15);
+  });
+
+  test('every boundary has defaults for what it does not say', () => {
+    const loaded = (type: string) => sound(changed({ 'grid.boundary': { type } })).grid.boundary['z-'];
+    expect(loaded('higdon2')).toEqual({ type: 'higdon2', angles: [0, Math.PI / 4], damping: 0.02 });
+    expect(loaded('liao')).toEqual({ type: 'liao', damping: 0.02 });
+    expect(loaded('splitPml')).toEqual({ type: 'splitPml', layers: 10, grading: 3, sigmaFactor: 1 });
+    for (const type of ['pec', 'pmc', 'mur1', 'mur2']) expect(loaded(type)).toEqual({ type });
+    const angles = (given: unknown): readonly number[] => {
+      const wall = sound(changed({ 'grid.boundary': { type: 'higdon2', angles: given } })).grid.boundary['x+'];
+      return wall.type === 'higdon2' ? wall.angles : [];
+    };
+    expect(angles(['0 deg', '45 deg'])).toEqual([0, Math.PI / 4]);
+    expect(angles(['30 deg', 0.5])[0]).toBeCloseTo(Math.PI / 6, 15);
+  });
+
+  test('a wall must not read more cells than there are', () => {
+    const narrow = { 'grid.box.from': ['-10 mm', '-150 mm', '-150 mm'], 'grid.box.to': ['10 mm', '150 mm', '150 mm'] };
+    const problems = problemsOf(changed({ ...narrow, 'grid.boundary': { type: 'liao' }, observers: [] }));
+    expect(problems.map(({ path }) => path)).toEqual(['grid.boundary']);
+    expect(problems[0]!.message).toContain('reads 4 cells inward; there are 4 cells along x');
   });
 
   test('one boundary for each face', () => {
