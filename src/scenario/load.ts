@@ -377,6 +377,12 @@ function boundaryOf(given: GivenBoundary | undefined, cellSize: Vec3, medium: Me
 /** Berenger's σmaxΔt/ε: above it e^(σΔt/ε) magnifies rounding (src/fdtd/boundaries/splitPml.ts). */
 const MOST_LOST_A_STEP = 6;
 
+/**
+ * What may stand beside a wall of Mur's second order: next to conditions with other rims, or within layers that stretch what
+ * it reads along itself, it grows (test/stress/stability.test.ts).
+ */
+const GOES_WITH_MUR_2: ReadonlySet<Boundary['type']> = new Set(['pec', 'mur1', 'mur2']);
+
 /** What walls ask of the lattice as a whole. */
 function checkWalls(
   boundary: Record<Face, Boundary>,
@@ -401,6 +407,12 @@ function checkWalls(
       tell(
         null,
         `is ${wall.type}, which reads ${cellsRead(wall)} cells inward; there are ${across[a]} cells along ${'xyz'[a]}; use smaller cells, a larger box or another boundary`,
+      );
+    const beside = FACES.filter((other, o) => o >> 1 !== a && !GOES_WITH_MUR_2.has(boundary[other].type));
+    if (wall.type === 'mur2' && beside.length > 0)
+      tell(
+        null,
+        `is mur2, which is unstable beside ${boundary[beside[0]!].type} (${beside.join(', ')}); it goes with ${[...GOES_WITH_MUR_2].join(', ')}; use mur1 here, or one of these there`,
       );
     if (wall.type !== 'splitPml') return;
     const each = (0.8 * (wall.grading + 1) * medium.speed * timeStep) / cellSize[a]!;

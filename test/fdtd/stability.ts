@@ -33,6 +33,21 @@ export interface Stability extends EnergyHistory {
   readonly precision: 'single' | 'double';
 }
 
+/** Pairs of walls beside each other on all twelve edges: x faces of one kind, y and z faces of another. */
+export function besides(steps: number): { readonly pair: string; readonly unstableAt: number | null }[] {
+  const kinds = ['pec', 'mur1', 'mur2', 'higdon2', 'liao', 'cpml'];
+  return kinds.flatMap((x) =>
+    kinds
+      .filter((yz) => yz !== x)
+      .map((yz) => {
+        const faces = { ...everyFace(BOUNDARIES[yz]!), 'x-': BOUNDARIES[x]!, 'x+': BOUNDARIES[x]! };
+        const pad = Object.fromEntries(Object.entries(faces).map(([face, b]) => [face, cellsBehind(b)]));
+        const problem = plainProblem([15, 14, 13], { steps, boundary: faces, pad: pad as Record<Face, number> });
+        return { pair: `${x} beside ${yz}`, unstableAt: energyFrom(problem, 11, 50).unstableAt };
+      }),
+  );
+}
+
 export function stabilities(steps: number): Stability[] {
   const rows: Stability[] = [];
   const cellSize: Triple = [5e-3, 5e-3, 5e-3];

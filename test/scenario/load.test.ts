@@ -553,6 +553,18 @@ describe('what a file means', () => {
     expect(problems[0]!.message).toContain('reads 4 cells inward; there are 4 cells along x');
   });
 
+  test('Mur’s second order is refused beside walls that make it grow', () => {
+    const faces = (others: object) => ({
+      ...Object.fromEntries(['x-', 'x+', 'y-', 'y+', 'z-', 'z+'].map((face) => [face, { type: 'mur1' }])),
+      'x-': { type: 'mur2' },
+      ...others,
+    });
+    sound(changed({ 'grid.boundary': faces({ 'x+': { type: 'liao' } }) }));
+    const problems = problemsOf(changed({ 'grid.boundary': faces({ 'z+': { type: 'cpml' } }) }));
+    expect(problems.map(({ path }) => path)).toEqual(['grid.boundary.x-']);
+    expect(problems[0]!.message).toContain('unstable beside cpml (z+)');
+  });
+
   test('one boundary for each face', () => {
     const faces = { 'x-': { type: 'pec' }, 'x+': { type: 'mur1' }, 'y-': { type: 'cpml', layers: 4 } };
     const rest = { 'y+': { type: 'pec' }, 'z-': { type: 'pec' }, 'z+': { type: 'pec' } };

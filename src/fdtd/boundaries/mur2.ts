@@ -16,7 +16,9 @@ import { firstOrder } from './mur1.ts';
  * No parameters. A plane wave at angle θ from the normal returns −((1 − cos θ)/(1 + cos θ))². The condition has a double
  * root at zero frequency and nothing that damps it: waves are absorbed for good, but the static field of charges drifts
  * linearly in time, in any precision (in a box of 15 cells the discrete energy of random charges is above its start after
- * 6200 steps; test/stress/stability.test.ts). In a small box the rims spoil it, and a static field near a wall is lost.
+ * 6200 steps; test/stress/stability.test.ts). Beside faces with other second-order conditions or with layers it is
+ * unstable within some hundred steps; beside pec, mur1 and itself it is not, and scenarios with others are refused. In a
+ * small box the rims spoil it, and a static field near a wall is lost.
  */
 export const mur2: BoundaryMethod<Extract<Boundary, { type: 'mur2' }>> = {
   wall(_boundary, at) {
