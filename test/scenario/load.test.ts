@@ -5,6 +5,7 @@ import type { Scenario } from '../../src/scenario/model.ts';
 import { scenarioJsonSchema } from '../../src/scenario/schema.ts';
 import { SIGNIFICANT, shortestWavelength } from '../../src/scenario/shortest.ts';
 import { observerCell, stepsOf, timeStepOf } from '../../src/scenario/sites.ts';
+import { isUsual } from '../../src/scenario/walls.ts';
 
 /** The scenario of the reference text, as a value to be changed. */
 const bench = () => structuredClone(EXAMPLES['bench-cable-pulse']) as unknown as Json;
@@ -542,7 +543,13 @@ describe('what a file means', () => {
       const wall = sound(changed({ 'grid.boundary': { type: 'higdon2', angles: given } })).grid.boundary['x+'];
       return wall.type === 'higdon2' ? wall.angles : [];
     };
-    expect(angles(['0 deg', '45 deg'])).toEqual([0, Math.PI / 4]);
+    expect(angles(['0 deg', '45 deg'])[1]).toBeCloseTo(Math.PI / 4, 15);
+    expect(isUsual({ type: 'higdon2', angles: angles(['0 deg', '45 deg']) as [number, number], damping: 0.02 })).toBe(
+      true,
+    );
+    expect(isUsual({ type: 'higdon2', angles: angles(['0 deg', '44 deg']) as [number, number], damping: 0.02 })).toBe(
+      false,
+    );
     expect(angles(['30 deg', 0.5])[0]).toBeCloseTo(Math.PI / 6, 15);
   });
 
