@@ -170,30 +170,60 @@ const TRIALS = 192;
 /** Of the largest error found, for what lies between the trials. */
 const BETWEEN_TRIALS = 2;
 
+/** Where rules are tried, and what q, w and w′ are there. */
+export interface Trials {
+  /** places, time steps */
+  readonly places: Float64Array;
+  /** q, w, w′ at each */
+  readonly exact: Float64Array;
+  readonly peak: readonly [number, number, number];
+}
+
 /**
- * Measures a rule on a waveform sampled every `step` seconds, at places spread over its activity, closer to each other the
- * nearer to its start (a double exponential starts much faster than it ends).
+ * Places spread over a waveform's activity, closer to each other the nearer to its start (a double exponential starts much
+ * faster than it ends).
  */
-export function measureRule(rule: Rule, waveform: Waveform, step: number): RuleError {
+export function trialsOf(waveform: Waveform, step: number): Trials {
+  const places = new Float64Array(TRIALS);
+  const exact = new Float64Array(3 * TRIALS);
   const peak: [number, number, number] = [0, 0, 0];
-  const error: [number, number, number] = [0, 0, 0];
-  const exact = new Float64Array(3);
-  const sample = new Float64Array(3);
   const end = waveform.lastActivity(1e-3);
   for (let n = 0; n < TRIALS; n++) {
     const part = (n + 0.5) / TRIALS;
     // Multiples of the golden ratio spread the places within a cell, whatever cells they are in.
     const u = Math.floor((end * part * part * part) / step) + ((n * 0.6180339887498949) % 1);
-    waveform.at(u * step, 2, exact);
-    const { times, weights } = stencil(rule, u);
+    places[n] = u;
+    const own = exact.subarray(3 * n, 3 * n + 3);
+    waveform.at(u * step, 2, own);
+    for (let kind = 0; kind < 3; kind++) peak[kind] = Math.max(peak[kind]!, Math.abs(own[kind]!));
+  }
+  return { places, exact, peak };
+}
+
+/**
+ * Measures a rule on a waveform sampled every `step` seconds.
+ * @param enough part of the peak: what is worse is not measured to the end (Infinity: all is)
+ */
+export function measureRule(
+  rule: Rule,
+  waveform: Waveform,
+  step: number,
+  trials: Trials = trialsOf(waveform, step),
+  enough = Number.POSITIVE_INFINITY,
+): RuleError {
+  const { places, exact, peak } = trials;
+  const error: [number, number, number] = [0, 0, 0];
+  const sample = new Float64Array(3);
+  for (let n = 0; n < TRIALS; n++) {
+    const { times, weights } = stencil(rule, places[n]!);
     const sum = [0, 0, 0];
     times.forEach((time, j) => {
       waveform.at(time * step, 2, sample);
       for (let kind = 0; kind < 3; kind++) sum[kind]! += weights[j]! * sample[kind]!;
     });
     for (let kind = 0; kind < 3; kind++) {
-      peak[kind] = Math.max(peak[kind]!, Math.abs(exact[kind]!));
-      error[kind] = Math.max(error[kind]!, BETWEEN_TRIALS * Math.abs(sum[kind]! - exact[kind]!));
+      error[kind] = Math.max(error[kind]!, BETWEEN_TRIALS * Math.abs(sum[kind]! - exact[3 * n + kind]!));
+      if (error[kind]! > enough * peak[kind]!) return { peak, error };
     }
   }
   return { peak, error };
@@ -233,30 +263,44 @@ const IN_CELL_RULES = [
   inCell(8, 32),
 ];
 
+/** The last choices: many histories are asked for with the same waveforms and step. */
+const chosen = new Map<string, Choice>();
+const MOST_CHOSEN = 8;
+
+interface Choice {
+  readonly rule: Rule;
+  readonly errors: readonly RuleError[];
+}
+
 /**
  * The cheapest rule whose error is at most `accuracy` of the peak of each of q, w, w′, for every waveform; the best there
  * is if none is, so that its measured error says so.
  */
-export function chooseRule(
-  waveforms: readonly Waveform[],
-  step: number,
-  accuracy: number,
-): { rule: Rule; errors: RuleError[] } {
+export function chooseRule(waveforms: readonly Waveform[], step: number, accuracy: number): Choice {
+  const key = JSON.stringify([step, accuracy, waveforms.map(({ spec }) => spec)]);
+  const known = chosen.get(key);
+  if (known) return known;
+  if (chosen.size === MOST_CHOSEN) chosen.clear();
+  const made = searchRule(waveforms, step, accuracy);
+  chosen.set(key, made);
+  return made;
+}
+
+function searchRule(waveforms: readonly Waveform[], step: number, accuracy: number): Choice {
   const kinks = waveforms.flatMap((waveform) => waveform.kinks);
   const places = [...new Set(kinks.map((kink) => kink / step - Math.floor(kink / step)))];
-  let best: { rule: Rule; errors: RuleError[] } | undefined;
-  let least = Number.POSITIVE_INFINITY;
-  for (const make of kinks.length === 0 ? CENTRED_RULES : IN_CELL_RULES) {
-    const rule = make(places);
-    const errors = waveforms.map((waveform) => measureRule(rule, waveform, step));
-    const worst = errors.reduce((most, { peak, error }) => Math.max(most, ...error.map((e, n) => e / peak[n]!)), 0);
-    if (worst < least) {
-      best = { rule, errors };
-      least = worst;
-    }
-    if (worst <= accuracy) break;
+  const rules = (kinks.length === 0 ? CENTRED_RULES : IN_CELL_RULES).map((make) => () => make(places));
+  const trials = waveforms.map((waveform) => trialsOf(waveform, step));
+  const measured = (rule: Rule, enough: number) => {
+    const errors = waveforms.map((waveform, m) => measureRule(rule, waveform, step, trials[m], enough));
+    const worst = Math.max(...errors.flatMap(({ peak, error }) => error.map((e, n) => e / peak[n]!)));
+    return { rule, errors, worst };
+  };
+  for (const make of rules) {
+    const found = measured(make(), accuracy);
+    if (found.worst <= accuracy) return found;
   }
-  return best!;
+  return rules.map((make) => measured(make(), Number.POSITIVE_INFINITY)).reduce((a, b) => (b.worst < a.worst ? b : a));
 }
 
 /** Elements of one waveform at one site: F, and coefficients of q, w, w′. */
@@ -330,9 +374,9 @@ export class DelayGrid {
     this.step = step;
     this.count = count;
     this.#waveforms = waveforms;
-    const chosen = chooseRule(waveforms, step, accuracy);
-    this.rule = chosen.rule;
-    this.errors = chosen.errors;
+    const { rule, errors } = chooseRule(waveforms, step, accuracy);
+    this.rule = rule;
+    this.errors = errors;
     this.kernel = idle.pop() ?? (instantiate(bytes, {}) as unknown as Kernel);
     const { points, phases, bounds } = this.rule;
     let at = Math.ceil(this.kernel.heapBase() / 16) * 16;
