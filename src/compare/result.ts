@@ -213,6 +213,10 @@ const checkSchema = z.object({
   sentence: z.string(),
 });
 
+/** null where no field reaches the points tried */
+const residual = (equation: string) =>
+  z.number().nullable().describe(`largest |${equation}| over its largest term, by differences that leave 1e-8`);
+
 export const resultSchema = z.object({
   title: z.string(),
   version: z.string().describe('of Fieldassay'),
@@ -224,7 +228,10 @@ export const resultSchema = z.object({
   checks: z.array(checkSchema).readonly().describe('what every comparison is held against; a difference is a fault'),
   integral: z.object({
     errorEstimate: fraction('bound of the integral’s own relative error'),
-    gaugeResidual: z.number().nullable().describe('|∇·A + με ∂φ/∂t| relative to its terms'),
+    gaugeResidual: residual('∇·A + με ∂φ/∂t'),
+    waveResidual: residual('∇²φ − με ∂²φ/∂t², and the same of A'),
+    potentialResidual: residual('E + ∇φ + ∂A/∂t, and B − ∇×A'),
+    continuityResidual: fraction('Σ I + dQ/dt at the nodes of the grid, over the largest current'),
   }),
   grid: z.object({
     cells: z.int().describe('cells of the working box'),

@@ -115,15 +115,30 @@ function normsSection({ norms }: Result): Markup {
 function runSection(result: Result): Markup {
   const { integral, environment, notes } = result;
   return markup`<h2>The run</h2>
-<p>${gridText(result)}. The integral’s own error is ≤ ${formatUpperBound(integral.errorEstimate)}${
-    integral.gaugeResidual === null ? '' : `, its gauge residual ${formatUpperBound(integral.gaugeResidual)}`
-  }.</p>
+<p>${gridText(result)}. The integral’s own error is ≤ ${formatUpperBound(integral.errorEstimate)}.${residualText(integral)}</p>
 <div class="scroll"><table><tbody>${timingRows(result).map(
     ([what, time, rate]) =>
       markup`<tr><th scope="row">${what}</th><td class="number">${time}</td><td class="number muted">${rate}</td></tr>`,
   )}</tbody></table></div>
 ${notes.map((note) => markup`<p>Note: ${note}</p>`)}
 <p class="muted">Fieldassay ${result.version}${Object.entries(environment).map(([name, value]) => markup` · ${name} ${String(value)}`)}</p>`;
+}
+
+/** What the exact field leaves of the equations that it must satisfy. */
+function residualText({
+  gaugeResidual,
+  waveResidual,
+  potentialResidual,
+  continuityResidual,
+}: Result['integral']): string {
+  const left = [
+    ['the Lorenz gauge', gaugeResidual],
+    ['the wave equation', waveResidual],
+    ['E and B from the potentials', potentialResidual],
+    ['continuity at the grid’s nodes', continuityResidual],
+  ] as const;
+  const told = left.flatMap(([name, x]) => (x === null ? [] : [`${name} ${formatUpperBound(x)}`]));
+  return ` Residuals: ${told.join(', ')}.`;
 }
 
 function repeatSection({ scenario }: Result, command: string): Markup {

@@ -19,10 +19,10 @@ import { COMPONENTS, type FieldHistory } from '../trace/trace.ts';
 import type { Answers, Asked } from './answers.ts';
 import { describeBoundary, notesOf } from './describe.ts';
 import { dispersionErrorAt, farthestModel } from './farthest.ts';
-import { gaugeResidual } from './gauge.ts';
 import { latticeCheck } from './latticeCheck.ts';
 import { budgetLevels, relativeBound, vanishes, volumeLevels } from './levels.ts';
 import { SEED } from './places.ts';
+import { continuityResidual, residualsOf } from './residuals.ts';
 import { VERSION } from './version.ts';
 
 /** A result with the signals behind it. */
@@ -76,7 +76,8 @@ export function conclude(given: Case): Comparison {
     ),
     integralError,
   });
-  const gaugePlaces = points.slice(0, 3).map((p) => cellCentre(given, places.budgetCells, p));
+  const centres = points.slice(0, 3).map((p) => cellCentre(given, places.budgetCells, p));
+  const residuals = residualsOf(sources, medium, centres, steps * timeStep);
 
   const timing = ({ seconds, cellUpdates }: GridResult) => ({ seconds, cellUpdates });
   const integrals = [answers.exact, answers.computed, answers.gridded, answers.volumeExact, answers.outsideExact];
@@ -91,7 +92,10 @@ export function conclude(given: Case): Comparison {
     checks: [latticeCheck(signals, answers.lattice, levels, places, medium.impedance)],
     integral: {
       errorEstimate: integralError,
-      gaugeResidual: gaugeResidual(sources, medium, gaugePlaces, steps * timeStep),
+      gaugeResidual: residuals?.gauge ?? null,
+      waveResidual: residuals?.wave ?? null,
+      potentialResidual: residuals?.potentials ?? null,
+      continuityResidual: continuityResidual(question.gridded, steps * timeStep),
     },
     grid: {
       cells: grid.cells[0] * grid.cells[1] * grid.cells[2],

@@ -1,11 +1,15 @@
 import type { GriddedSources } from '../../src/gridding/edges.ts';
+import { chartFile } from '../../src/report/svg.ts';
 import { DelayGrid, ElementList } from '../../src/retarded/delayGrid.ts';
 import { fieldOf } from '../../src/retarded/field.ts';
 import { GriddedIntegrator } from '../../src/retarded/gridded.ts';
 import { exactHistory } from '../../src/retarded/history.ts';
 import { prepareSources } from '../../src/retarded/prepare.ts';
+import { framesOf, withBelow } from '../../src/run/planes.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
 import { polyline } from '../../src/scenario/curve.ts';
+import { EXAMPLES } from '../../src/scenario/examples.ts';
+import { loadScenario } from '../../src/scenario/load.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
 import type { Waveform } from '../../src/scenario/waveform.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
@@ -33,11 +37,10 @@ const smooth = makeWaveform({ type: 'gaussianDerivative', amplitude: 1, sigma: S
 const kinked = makeWaveform({ type: 'doubleExponential', amplitude: 1, alpha: 1e9, beta: 1e10 });
 
 /**
- * An invented wire of 228 edges and 1008 pairs: columns of twelve edges that climb along the diagonal of a grid, each
- * edge with four or five pairs, delays growing along it; charges by continuity.
+ * An invented wire, of 228 edges and 1008 pairs unless told otherwise: columns of twelve edges that climb along the
+ * diagonal of a grid, each edge with four or five pairs, delays growing along it; charges by continuity.
  */
-export function inventedWire(waveform: Waveform): GriddedSources {
-  const count = 228;
+export function inventedWire(waveform: Waveform, count = 228): GriddedSources {
   const axis = new Uint8Array(count);
   const node = new Int32Array(3 * count);
   const pairStart = [0];
@@ -191,6 +194,99 @@ function closedFormJobs(): Job[] {
     history('best'),
     history('quadrature'),
   ];
+}
+
+/** The default scenario, and places on its planes that lie beside its wire, not on it. */
+const bench = (() => {
+  const loaded = loadScenario(EXAMPLES['bench-cable-pulse']);
+  if ('problems' in loaded) throw new Error(loaded.problems[0]!.message);
+  const { sources, medium, grid } = loaded.scenario;
+  return { sources, medium, from: grid.box.from, size: grid.box.to[0] - grid.box.from[0] };
+})();
+const BESIDE = 0.37e-3;
+/** When the pulse is half way along the wire. */
+const INSTANT = 1.07e-9;
+
+/** Rows of the plane y = 0 of the default scenario at one instant, 256 points a row, E and H; returns a checksum. */
+export function planeRows(first: number, last: number): number {
+  const field = fieldOf(prepareSources(bench.sources, bench.medium, 'best'), { potentials: false });
+  const at = (n: number, a: 0 | 1 | 2) => bench.from[a] + BESIDE + (bench.size * n) / 256;
+  let sum = 0;
+  for (let j = first; j < last; j++)
+    for (let i = 0; i < 256; i++) {
+      const { E, H } = field([at(i, 0), BESIDE, at(j, 2)], INSTANT);
+      sum += E[2] + H[1];
+    }
+  return sum;
+}
+
+/** Frames of an animation, and samples along a side of its planes. */
+const FRAMES = 120;
+const SIDE = 128;
+
+/** Rows of an animation's data: three planes of 128², 120 frames, nine components a sample as the page is given them. */
+export function filmRows(first: number, last: number): number {
+  const cell = bench.size / SIDE;
+  const origin: Vec3 = [bench.from[0] + BESIDE, bench.from[1] + BESIDE, bench.from[2] + BESIDE];
+  const step = (0.99 * cell) / (bench.medium.speed * Math.sqrt(3));
+  const instants = instantsOf(Math.ceil(3e-9 / step), step, Math.ceil(3e-9 / step / FRAMES));
+  let sum = 0;
+  for (const normal of [0, 1, 2] as const)
+    for (let j = first; j < last; j++) {
+      const cells = Int32Array.from({ length: 3 * SIDE }, (_, n) => {
+        const [i, a] = [Math.floor(n / 3), n % 3];
+        return a === normal ? SIDE / 2 : a === (normal + 1) % 3 ? i : j;
+      });
+      const points = samplePoints(withBelow(cells, normal), origin, [cell, cell, cell]);
+      const { values } = exactHistory(bench.sources, bench.medium, points, instants);
+      const shape = [{ cells: SIDE, normal }];
+      const { slices } = framesOf(values, instants.count, 0, instants.count, shape);
+      sum += slices[0]!.reduce((total, v) => total + v, 0);
+    }
+  return sum;
+}
+
+/** Cost of six components at one point, seconds: against edges at 1000 instants, and against instants at 228 edges. */
+export function costs(): { edges: [number, number][]; instants: [number, number][] } {
+  const origin: Vec3 = [-0.15, -0.15, -0.15];
+  const cost = (edges: number, instants: number) => {
+    const integrator = new GriddedIntegrator(
+      inventedWire(smooth, edges),
+      origin,
+      [h, h, h],
+      vacuum,
+      instantsOf(instants, timeStep),
+      1e-8,
+    );
+    const point = samplePoints(Int32Array.of(60, 30, 34), origin, [h, h, h]);
+    const rounds = Array.from({ length: 15 }, () => timed(1, () => integrator.history(point, 0).values[99]!).seconds);
+    integrator.release();
+    return rounds.toSorted((a, b) => a - b)[7]!;
+  };
+  cost(228, 1000);
+  return {
+    edges: [24, 60, 120, 228, 456, 912].map((n) => [n, cost(n, 1000)]),
+    instants: [125, 250, 500, 1000, 2000, 4000].map((n) => [n, cost(228, n)]),
+  };
+}
+
+/** The measured costs as a chart. */
+export function costSvg({ edges, instants }: ReturnType<typeof costs>): string {
+  const all = [...edges, ...instants];
+  const domain = (k: 0 | 1): [number, number] => [
+    Math.min(...all.map((point) => point[k])) / 1.5,
+    Math.max(...all.map((point) => point[k])) * 1.5,
+  ];
+  return chartFile({
+    title: 'Cost of six exact components at one point',
+    description: 'Time against the number of edges at 1000 instants, and against instants at 228 edges.',
+    x: { label: 'edges, or instants', unit: '', scale: 'log', domain: domain(0) },
+    y: { label: 'time', unit: 's', scale: 'log', domain: domain(1) },
+    series: [
+      { name: 'edges, 1000 instants', colour: 'choice1', points: edges, dots: () => 'within' },
+      { name: 'instants, 228 edges', colour: 'choice2', points: instants, dots: () => 'within' },
+    ],
+  });
 }
 
 export function jobs(): Job[] {

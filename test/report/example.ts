@@ -215,7 +215,13 @@ export function exampleReport({
         sentence: `The lattice part agrees with its closed-form prediction: at most 0.004 % of the field apart (E at observer ${observer}, limit 0.1 %).`,
       },
     ],
-    integral: { errorEstimate: 1.3e-8, gaugeResidual: 4e-9 },
+    integral: {
+      errorEstimate: 1.3e-8,
+      gaugeResidual: 4e-9,
+      waveResidual: 3e-8,
+      potentialResidual: 5e-9,
+      continuityResidual: 2e-16,
+    },
     grid: { cells: 216_000, shape: [60, 60, 60], steps: 315, timeStep: TIME_STEP, memoryBytes: 2.31e7 },
     timings: {
       box: { seconds: 0.41, cellUpdates: 1.6e8 },
