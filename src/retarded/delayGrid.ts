@@ -356,6 +356,7 @@ export class DelayGrid {
   /** address of the `held` bytes */
   readonly held: number;
   readonly #waveforms: readonly Waveform[];
+  #view = new Float64Array(0);
   /** cells of samples from source time 0 on, and zeros before it */
   #cells = 0;
   #lead = 0;
@@ -400,6 +401,13 @@ export class DelayGrid {
   /** Gives the kernel back for the next grid; this one must not be used any more. */
   release(): void {
     idle.push(this.kernel);
+  }
+
+  /** All of the kernel's memory, as it is now. */
+  #numbers(): Float64Array {
+    const { buffer } = this.kernel.memory;
+    if (this.#view.buffer !== buffer) this.#view = new Float64Array(buffer);
+    return this.#view;
   }
 
   /** Grows memory to hold `bytes`. */
@@ -465,12 +473,13 @@ export class DelayGrid {
     const singleAt = doubleAt + 16 * window.cells * phases;
     const room = singleAt + 16 * Math.ceil((window.cells * phases) / 2);
     this.reserve(room + 16 * window.cells * phases);
-    new Float64Array(this.kernel.memory.buffer, doubleAt, (room - doubleAt) / 8).fill(0);
+    this.#numbers().fill(0, doubleAt / 8, room / 8);
     this.kernel.setWindow(window.first, doubleAt, singleAt);
     fill(room);
     const blocks = Math.ceil((this.count - from) / BLOCK);
-    const result = new Float64Array(this.kernel.memory.buffer, this.#out, from + blocks * BLOCK);
-    result.fill(0);
+    const numbers = this.#numbers();
+    const result = this.#out / 8;
+    numbers.fill(0, result, result + from + blocks * BLOCK);
     const correlate = (kind: number, weights: number, weightBytes: number) =>
       this.kernel.correlate(
         weights,
@@ -486,7 +495,7 @@ export class DelayGrid {
     correlate(doubles[0], doubleAt, 16);
     correlate(doubles[1], doubleAt + 8, 16);
     if (singles) correlate(SLOPE_KIND, singleAt, 8);
-    for (let n = from; n < this.count; n++) out[n]! += result[n]!;
+    for (let n = from; n < this.count; n++) out[n]! += numbers[result + n]!;
   }
 
   /** The history of listed elements of one waveform, added to `out`. */
@@ -494,7 +503,9 @@ export class DelayGrid {
     if (list.count === 0) return;
     this.correlateInto(out, waveform, this.window(list.lowest, list.highest), [0, 1], list.hasSlopes, (room) => {
       this.reserve(room + 32 * list.count);
-      new Float64Array(this.kernel.memory.buffer, room, 4 * list.count).set(list.data.subarray(0, 4 * list.count));
+      const numbers = this.#numbers();
+      const last = 4 * list.count;
+      for (let n = 0; n < last; n++) numbers[room / 8 + n] = list.data[n]!;
       this.kernel.spread(room, list.count);
     });
   }

@@ -91,6 +91,7 @@ const GROUPS = [
 
 /** The order in which terms are rounded: A before φ. */
 const OF_TERMS = [0, 1, 3, 2] as const;
+const OF_FIELDS = [0, 1] as const;
 
 const groupNorm = (v: Float64Array, g: number): number => {
   const [from, to] = GROUPS[g]!;
@@ -118,13 +119,15 @@ function evaluate(
   settings: Required<Omit<FieldOptions, 'method'>>,
 ): FieldValue {
   refuseOnSource(prepared, point);
-  const total = new Float64Array(QUANTITIES);
-  const rounding = new Float64Array(4);
+  const { permeability } = prepared.medium;
+  total.fill(0);
+  rounding.fill(0);
   let evaluations = 0;
 
   terms.clear();
   addClosedTerms(prepared, k, point, gapWithoutKink(prepared, t), terms);
-  for (let n = 0; n < terms.count; n++) addTerm(prepared, terms, n, t, total, rounding);
+  const groups = settings.potentials ? OF_TERMS : OF_FIELDS;
+  for (let n = 0; n < terms.count; n++) addTerm(prepared, terms, n, t, groups, total, rounding);
   evaluations += terms.count;
 
   const panels: Panel[] = [];
@@ -138,10 +141,6 @@ function evaluate(
     }
   }
 
-  const groups = settings.potentials ? [0, 1, 2, 3] : [0, 1];
-  const sum = new Float64Array(QUANTITIES);
-  const error = new Float64Array(4);
-  const floor = new Float64Array(4);
   for (;;) {
     sum.set(total);
     error.fill(0);
@@ -153,15 +152,8 @@ function evaluate(
         floor[g]! += panel.rounding[g]!;
       }
     }
-    // B is measured against |E|/v and A against φ/v: after a pulse has passed they are zero to rounding.
-    const sizes = [0, 1, 2, 3].map((g) => groupNorm(sum, g));
-    const limits = [
-      sizes[0]!,
-      Math.max(sizes[1]!, sizes[0]! / k.speed),
-      Math.max(sizes[2]!, sizes[3]! * k.speed),
-      Math.max(sizes[3]!, sizes[2]! / k.speed),
-    ].map((size, g) => Math.max(settings.tolerance * size - floor[g]!, floor[g]!));
-    const open = groups.filter((g) => error[g]! > limits[g]!);
+    const limits = panels.length === 0 ? NOTHING : limitsOf(settings.tolerance, k.speed);
+    const open = panels.length === 0 ? NOTHING : groups.filter((g) => error[g]! > limits[g]!);
     const worst = open.length === 0 ? -1 : worstPanel(panels, open, limits);
     const exhausted = evaluations + 2 * KRONROD_POINTS > settings.maxEvaluations;
     if (worst < 0 || exhausted) {
@@ -174,14 +166,14 @@ function evaluate(
       return {
         E: [sum[0]!, sum[1]!, sum[2]!],
         B: [sum[3]!, sum[4]!, sum[5]!],
-        H: [3, 4, 5].map((c) => sum[c]! / prepared.medium.permeability) as unknown as Vec3,
+        H: [sum[3]! / permeability, sum[4]! / permeability, sum[5]! / permeability],
         phi: sum[SCALAR]!,
         A: [sum[VECTOR]!, sum[VECTOR + 1]!, sum[VECTOR + 2]!],
         errorE: error[0]! + floor[0]!,
-        errorH: (error[1]! + floor[1]!) / prepared.medium.permeability,
+        errorH: (error[1]! + floor[1]!) / permeability,
         errorPhi: error[2]! + floor[2]!,
         errorA: error[3]! + floor[3]!,
-        rounding: [floor[0]!, floor[1]! / prepared.medium.permeability, floor[2]!, floor[3]!],
+        rounding: [floor[0]!, floor[1]! / permeability, floor[2]!, floor[3]!],
         evaluations,
         converged: open.length === 0,
         ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),
@@ -193,6 +185,19 @@ function evaluate(
     panels.push(integrate(prepared, k, integral, view, middle, to, t));
     evaluations += 2 * KRONROD_POINTS;
   }
+}
+
+const NOTHING: readonly number[] = [];
+
+/**
+ * The errors of E, B, φ and A that are small enough. B is measured against |E|/v and A against φ/v: after a pulse has passed
+ * they are zero to rounding.
+ */
+function limitsOf(tolerance: number, speed: number): number[] {
+  const [E, B, phi, A] = [groupNorm(sum, 0), groupNorm(sum, 1), groupNorm(sum, 2), groupNorm(sum, 3)];
+  return [E, Math.max(B, E / speed), Math.max(phi, A * speed), Math.max(A, phi / speed)].map((size, g) =>
+    Math.max(tolerance * size - floor[g]!, floor[g]!),
+  );
 }
 
 /** The panel with the largest error relative to its limit that bisection can still lower; −1 if there is none. */
@@ -320,6 +325,12 @@ function addFronts(
 const instantRounding = (t: number, delay: number, along: number, travel: number): number =>
   Number.EPSILON * (Math.abs(t) + Math.abs(delay) + Math.abs(along) + 2 * travel);
 
+/** Of the evaluation at hand: what is in closed form, with its rounding; all of it, with errors and roundings. */
+const total = new Float64Array(QUANTITIES);
+const rounding = new Float64Array(4);
+const sum = new Float64Array(QUANTITIES);
+const error = new Float64Array(4);
+const floor = new Float64Array(4);
 const element = new Float64Array(COEFFICIENTS);
 const terms = new TermList();
 const wave = new Float64Array(4);
@@ -450,6 +461,7 @@ function addTerm(
   list: TermList,
   n: number,
   t: number,
+  groups: readonly number[],
   total: Float64Array,
   rounding: Float64Array,
 ): void {
@@ -465,7 +477,7 @@ function addTerm(
   // A rounding of a direction turns E into B: near an axis B is right relative to |E|/v only, and φ to v|A|.
   let electric = 0;
   let carried = 0;
-  for (const g of OF_TERMS) {
+  for (const g of groups) {
     let own = 0;
     let shift = 0;
     let sample = 0;
@@ -474,9 +486,12 @@ function addTerm(
       const w = list.coefficient[base + CURRENT + c]!;
       const d = list.coefficient[base + SLOPE + c]!;
       total[c]! += q * wave[0]! + w * wave[1]! + d * wave[2]!;
-      own += (Math.abs(q * wave[0]!) + Math.abs(w * wave[1]!) + Math.abs(d * wave[2]!)) ** 2;
-      shift += (q * wave[1]! + w * wave[2]! + d * wave[3]!) ** 2;
-      sample += (Math.abs(q) * charge + Math.abs(w) * current + Math.abs(d) * slope) ** 2;
+      const size = Math.abs(q * wave[0]!) + Math.abs(w * wave[1]!) + Math.abs(d * wave[2]!);
+      const moved = q * wave[1]! + w * wave[2]! + d * wave[3]!;
+      const sampled = Math.abs(q) * charge + Math.abs(w) * current + Math.abs(d) * slope;
+      own += size * size;
+      shift += moved * moved;
+      sample += sampled * sampled;
     }
     electric = g === 0 ? own : electric;
     if (g === 1) own = Math.max(own, electric / (speed * speed));

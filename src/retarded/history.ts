@@ -98,6 +98,7 @@ export function stepOf(instants: Instants, prepared: { readonly waveforms: reado
 class Site {
   evaluations = 0;
   readonly #k: Constants;
+  readonly #integrals: readonly Integral[];
   readonly #terms = new TermList();
   readonly #element = new Float64Array(COEFFICIENTS);
   readonly #closed: ElementList[];
@@ -121,6 +122,7 @@ class Site {
     latest: number,
   ) {
     this.#k = constantsOf(prepared.medium);
+    this.#integrals = prepared.integrals.filter(({ potentialsOnly }) => !potentialsOnly);
     this.#instant = prepared.waveforms.map(({ timeScale }) => (2 * latest) / timeScale);
     const lists = () => prepared.waveforms.map(() => new ElementList());
     this.#closed = lists();
@@ -133,13 +135,14 @@ class Site {
     };
   }
 
-  /** Writes the history of one component at one place; returns the bound of its error. */
+  /** Writes the history of one component at one place into `out`, which is 0; returns the bound of its error. */
   history(at: Vec3, component: number, first: number, out: Float64Array): number {
     refuseOnSource(this.prepared, at);
     const magnetic = component >= 3;
     const quantity = magnetic ? MAGNETIC + component - 3 : component;
     const scale = magnetic ? 1 / this.prepared.medium.permeability : 1;
-    const closed = new Float64Array(out.length);
+    // Without integrals nothing is refined, and what is in closed form is all.
+    const closed = this.#integrals.length === 0 ? out : new Float64Array(out.length);
     this.#size = 0;
     this.#sampling = 0;
     this.#rounding = 0;
@@ -160,13 +163,11 @@ class Site {
     this.#addHistories(closed, this.#closed);
     const closedSize = [this.#size, this.#sampling, this.#rounding] as const;
 
-    const views = this.prepared.integrals
-      .filter(({ potentialsOnly }) => !potentialsOnly)
-      .map((integral) => ({ integral, view: viewOf(integral.piece, at) }));
+    if (this.#integrals.length === 0) return this.#sampling + this.#rounding;
+    const views = this.#integrals.map((integral) => ({ integral, view: viewOf(integral.piece, at) }));
     for (let round = 0, grading = 1; ; round++, grading /= 2) {
       out.set(closed);
       [this.#size, this.#sampling, this.#rounding] = closedSize;
-      if (views.length === 0) return this.#sampling + this.#rounding;
       this.#front = 0;
       for (const list of [...this.#nodes, ...this.#differences]) list.clear();
       for (const { integral, view } of views) this.#addNodes(integral, view, quantity, scale, first, grading, out);
