@@ -20,7 +20,7 @@ import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
 import { currentsCommand } from './currents.ts';
 import { addDeriveCommand } from './derive.ts';
-import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
+import { type ExactOptions, exactCommand, ROUTES, routesText } from './exact.ts';
 import { frameFiles } from './frames.ts';
 import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
@@ -183,9 +183,9 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
         '\nExample: fieldassay exact small-loop --points lines.csv --frequencies --out phasors.csv\n',
     )
     .action(async (name: string, options: ExactOptions & { points: string; out: string }) => {
-      const { csv, disagreement } = await exactCommand(readScenario(name), options.points, options, signal);
+      const { csv, routes } = await exactCommand(readScenario(name), options.points, options, signal);
       writeWhole(options.out, csv);
-      if (disagreement) process.stderr.write(disagreementText(disagreement));
+      if (routes) process.stderr.write(routesText(routes));
     });
 
   addDeriveCommand(program, signal);

@@ -10,6 +10,7 @@ import {
   steadyField,
 } from '../retarded/spectral.ts';
 import { Refusal } from '../run/compare.ts';
+import { type Residuals, residualsOf } from '../run/residuals.ts';
 import { type Disagreement, disagreement } from '../run/routes.ts';
 import { firstArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
@@ -24,6 +25,13 @@ export interface ExactOptions {
   readonly route: (typeof ROUTES)[number];
   /** the file asks for frequencies, in the steady state, instead of instants */
   readonly frequencies: boolean;
+}
+
+/** What two routes, and the potentials of one of them, say of each other. */
+export interface RoutesCompared {
+  readonly disagreement: readonly Disagreement[];
+  /** of the retarded route at the first places; null where no field reaches them */
+  readonly residuals: Residuals | null;
 }
 
 /** A row of the points file: x, y, z (m) and t (s) or f (Hz). */
@@ -43,7 +51,7 @@ export async function exactCommand(
   pointsFile: string,
   { route, frequencies }: ExactOptions,
   signal: AbortSignal,
-): Promise<{ csv: string; disagreement?: readonly Disagreement[] }> {
+): Promise<{ csv: string; routes?: RoutesCompared }> {
   const loaded = loadScenario(scenarioInput);
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   const { sources, medium } = loaded.scenario;
@@ -68,7 +76,10 @@ export async function exactCommand(
     const spectral = await spectralValues(sources, medium, rows, walk);
     return {
       csv: csvOf('t', QUANTITIES, rows, spectral.values.map(flat)),
-      disagreement: disagreement(spectral.values, integrals, spectral.peaks, medium),
+      routes: {
+        disagreement: disagreement(spectral.values, integrals, spectral.peaks, medium),
+        residuals: residualsOf(sources, medium, rows.map(pointOf), Math.max(...rows.map(([, , , t]) => t))),
+      },
     };
   } finally {
     walk.end();
@@ -129,12 +140,25 @@ function csvOf(
 }
 
 /** What `exact --route spectral` says of the two routes. */
-export function disagreementText(list: readonly Disagreement[]): string {
+export function routesText({ disagreement: list, residuals }: RoutesCompared): string {
   const unit = { E: 'V/m', H: 'A/m', phi: 'V', A: 'V·s/m' } as const;
   const name = { E: 'E', H: 'H', phi: 'φ', A: 'A' } as const;
   const rows = list.map(
     ({ quantity, largest, row, peak }) =>
       `  ${name[quantity].padEnd(3)}${largest.toExponential(1).padStart(9)} of ${formatQuantity(peak, unit[quantity])}, row ${row + 2}`,
   );
-  return `Spectral against retarded route, largest difference relative to the peak at the same point:\n${rows.join('\n')}\n`;
+  const left = residuals
+    ? [
+        ['E = −∇φ − ∂A/∂t and B = ∇×A', residuals.potentials],
+        ['∇·A + εμ ∂φ/∂t = 0', residuals.gauge],
+        ['wave equation of φ and A', residuals.wave],
+      ].map(([equation, x]) => `  ${(x as number).toExponential(1).padStart(7)}  ${equation}`)
+    : ['  no field reaches them'];
+  return [
+    'Spectral against retarded route, largest difference relative to the peak at the same point:',
+    ...rows,
+    'Retarded route by differences of its own potentials at the first places, relative to the largest term:',
+    ...left,
+    '',
+  ].join('\n');
 }
