@@ -1,17 +1,28 @@
 /**
  * What the page costs a person: from opening it to the first picture and to the verdict of the default scenario, what a
- * picture of three panes with three planes takes while playing and turning, and the longest task on the page's own thread
- * once it is loaded. In a Chromium without a GPU ($CHROMIUM, the system's, or the one the page's tests have unpacked).
+ * picture of three panes with three planes takes while playing and turning, the longest task on the page's own thread
+ * once it is loaded, and how fast the grid marches in the browser beside Node. In a Chromium without a GPU ($CHROMIUM, the
+ * system's, or the one the page's tests have unpacked).
  */
 import { spawn, spawnSync } from 'node:child_process';
-import { existsSync } from 'node:fs';
-import { join } from 'node:path';
+import { existsSync, readFileSync } from 'node:fs';
+import { createServer } from 'node:http';
+import { dirname, join } from 'node:path';
 import { fileURLToPath } from 'node:url';
+import { setFlagsFromString } from 'node:v8';
+import { runInNewContext } from 'node:vm';
 import { chromium } from 'playwright-core';
+import { bundle, startFollowers } from '../fdtd/bundle.mjs';
 
 const root = fileURLToPath(new URL('../../', import.meta.url));
 
-export const TARGETS = { firstPictureMs: 1000, verdictMs: 5000, pictureMs: 1000 / 60, longestTaskMs: 50 };
+export const TARGETS = {
+  firstPictureMs: 1000,
+  verdictMs: 5000,
+  pictureMs: 1000 / 60,
+  longestTaskMs: 50,
+  marchOfNode: 0.9,
+};
 
 export const FLAGS = [
   '--headless',
@@ -89,7 +100,43 @@ async function longestTask(browser, url) {
   };
 }
 
-/** Pictures of three panes of three planes, playing and turning at once. */
+/** Runs in the page: puts a film of three planes of so many samples a side in the place of the run's own. */
+function showFilmOf(samples) {
+  const { state } = fieldassay.store;
+  const { film, scenario } = state;
+  const frames = 8;
+  const channels = 6;
+  const { box, cellSize } = scenario.grid;
+  const width = box.to.map((x, a) => x - box.from[a]);
+  const slices = film.films.map(({ slice }) => ({
+    ...slice,
+    nu: samples,
+    nv: samples,
+    stride: width[0] / cellSize[0] / samples,
+    hole: new Uint8Array(samples * samples),
+    distance: Float32Array.from({ length: samples * samples }, (_, p) =>
+      Math.hypot((p % samples) / samples - 0.5, Math.floor(p / samples) / samples - 0.5),
+    ),
+  }));
+  const shown = new film.constructor({ slices, every: film.every, instants: { ...film.instants, count: frames } });
+  const rings = new Float32Array(frames * channels * samples * samples);
+  for (let line = 0; line < frames * channels; line++)
+    for (let p = 0; p < samples * samples; p++) {
+      const r = slices[0].distance[p];
+      rings[line * samples * samples + p] = Math.sin(60 * r - line) / (0.1 + r);
+    }
+  shown.addGrid({ first: 0, count: frames, slices: slices.map(() => rings) });
+  for (const one of shown.films) {
+    one.exact.set(rings.map((value) => 0.99 * value));
+    one.known.fill(2);
+  }
+  shown.exactKnown = true;
+  state.playing = false;
+  state.film = shown;
+  fieldassay.store.tell('film');
+}
+
+/** Pictures of three panes of three planes of 256² samples: turning, and with all planes new for every picture as well. */
 async function pictures(page) {
   await page.evaluate(() =>
     fieldassay.store.edit((draft) => {
@@ -98,26 +145,137 @@ async function pictures(page) {
   );
   await page.waitForFunction(() => fieldassay.store.state.film.films.length === 3);
   await page.waitForFunction(() => fieldassay.store.state.run.status === 'done', undefined, { timeout: 120_000 });
-  return await page.evaluate(async () => {
-    const { store, panes } = fieldassay;
-    store.state.playing = false;
-    panes.costs.length = 0;
-    for (let n = 0; n < 150; n++) {
-      store.setFrame(n % store.state.film.frames);
-      panes.turn(2, 0);
-      await new Promise(requestAnimationFrame);
-    }
-    return panes.costs.slice(20);
-  });
+  await page.evaluate(showFilmOf, 256);
+  const costs = (playing) =>
+    page.evaluate(async (plays) => {
+      const { store, panes } = fieldassay;
+      for (let n = 0; n < 170; n++) {
+        if (n === 20) panes.costs.length = 0;
+        if (plays) store.setFrame(n % store.state.film.frames);
+        panes.turn(2, 0);
+        await new Promise(requestAnimationFrame);
+      }
+      return [...panes.costs];
+    }, playing);
+  return { turning: await costs(false), 'playing and turning': await costs(true) };
 }
 
-/** @returns {Promise<object>} medians and ranges over the visits, milliseconds */
-export async function benchPage(visits = 3) {
+const TYPES = { js: 'text/javascript', html: 'text/html' };
+
+/** Leads runs in a worker, as the page's own solver does; the page hands its setups to another worker, which follows. */
+const LEADER = `import { bare, asUsed, measure } from './marching.js';
+const follow = (setup) => {
+  postMessage({ setup });
+  return new Promise((resolve) => { onmessage = () => { onmessage = begin; resolve(); }; });
+};
+const begin = async ({ data: { use, size, steps } }) => {
+  gc();
+  const problem = use === 'as used' ? asUsed(size, steps) : bare(size, steps);
+  const { rate, checksum } = await measure(problem, { threads: 2, random: use !== 'as used' }, follow);
+  postMessage({ found: { rate, checksum } });
+};
+onmessage = begin;
+postMessage('ready');`;
+
+const FOLLOWER = `import { follow } from './marching.js';
+onmessage = ({ data }) => { follow(data); postMessage('left'); };
+postMessage('ready');`;
+
+/** Runs in the page: starts both workers. */
+async function startWorkers() {
+  const heard = (worker) =>
+    new Promise((resolve, reject) => {
+      worker.onmessage = resolve;
+      worker.onerror = ({ message }) => reject(new Error(message));
+    });
+  const [leader, follower] = ['./leader.js', './follower.js'].map((name) => new Worker(name, { type: 'module' }));
+  await Promise.all([heard(leader), heard(follower)]);
+  globalThis.march = (job) =>
+    new Promise((resolve, reject) => {
+      leader.onerror = ({ message }) => reject(new Error(message));
+      leader.onmessage = ({ data }) => {
+        if (data.found) resolve(data.found);
+        else follower.postMessage(data.setup);
+      };
+      follower.onmessage = () => leader.postMessage('left');
+      leader.postMessage(job);
+    });
+}
+
+/** Serves the bundle of the grid solver to an isolated page. */
+async function servedMarch(folder) {
+  const own = { '/': '<!doctype html><title>March</title>', '/leader.js': LEADER, '/follower.js': FOLLOWER };
+  const server = createServer((request, response) => {
+    const name = request.url === '/' ? 'page.html' : request.url.slice(1);
+    response.setHeader('Cross-Origin-Opener-Policy', 'same-origin');
+    response.setHeader('Cross-Origin-Embedder-Policy', 'require-corp');
+    response.setHeader('Content-Type', TYPES[name.split('.').at(-1)] ?? 'text/plain');
+    const text = own[request.url] ?? (existsSync(join(folder, name)) ? readFileSync(join(folder, name)) : undefined);
+    response.writeHead(text === undefined ? 404 : 200).end(text);
+  });
+  await new Promise((done) => server.listen(0, '127.0.0.1', done));
+  return { url: `http://127.0.0.1:${server.address().port}/`, end: () => server.close() };
+}
+
+/** Cases of the march: an empty cube, and one as a user runs it. Steps that take about a third of a second. */
+const MARCHES = [
+  { use: 'empty', size: 128, steps: 64 },
+  { use: 'as used', size: 128, steps: 64 },
+  { use: 'empty', size: 200, steps: 16 },
+  { use: 'as used', size: 200, steps: 16 },
+];
+
+/** The grid's march on two threads, one bundle in Node and in an isolated page, in turns: million cell updates a second. */
+export async function benchMarches(rounds = 7) {
+  const entry = (await bundle({ marching: 'test/bench/marching.ts' }))('marching');
+  const { measure, bare, asUsed } = await import(entry);
+  setFlagsFromString('--expose-gc');
+  const collect = runInNewContext('gc');
+  const followers = startFollowers(entry, 1);
+  const site = await servedMarch(dirname(fileURLToPath(entry)));
+  const browser = await chromium.launch({ ...browserPlace(), args: [...FLAGS, '--js-flags=--expose-gc'] });
+  try {
+    const page = await browser.newPage();
+    await page.goto(site.url);
+    await page.evaluate(startWorkers);
+    const inPage = (job) => page.evaluate((asked) => march(asked), job);
+    const inNode = async ({ use, size, steps }) => {
+      collect();
+      const problem = use === 'as used' ? asUsed(size, steps) : bare(size, steps);
+      return measure(problem, { threads: 2, random: use !== 'as used' }, followers.follow);
+    };
+    const found = [];
+    for (const job of MARCHES) {
+      const taken = { node: [], page: [] };
+      // the first of each compiles the kernel
+      const [first, other] = [await inNode(job), await inPage(job)];
+      if (first.checksum !== other.checksum) throw new Error('Node and the page marched to different fields');
+      for (let round = 0; round < rounds; round++) {
+        taken.node.push((await inNode(job)).rate);
+        taken.page.push((await inPage(job)).rate);
+      }
+      found.push({
+        ...job,
+        node: range(taken.node),
+        page: range(taken.page),
+        ofNode: middle(taken.page.map((rate, n) => rate / taken.node[n])),
+      });
+    }
+    return found;
+  } finally {
+    await browser.close();
+    await followers.stop();
+    site.end();
+  }
+}
+
+/** @returns {Promise<object>} medians and ranges over the visits, milliseconds; of the march, million cell updates a second */
+export async function benchPage(visits = 3, rounds = 7) {
   const { url, end } = await served();
   const browser = await chromium.launch({ ...browserPlace(), args: FLAGS });
   try {
     const seen = [];
-    let costs = [];
+    let costs = {};
     for (let n = 0; n < visits; n++) {
       const one = await visit(browser, url);
       if (n === visits - 1) costs = await pictures(one.page);
@@ -131,7 +289,12 @@ export async function benchPage(visits = 3) {
       firstPicture: range(seen.map(({ first }) => first)),
       verdict: range(seen.map(({ verdict }) => verdict)),
       longestTask: await longestTask(browser, url),
-      picture: { ...range(costs), pictures: costs.length },
+      pictures: Object.entries(costs).map(([use, taken]) => ({
+        use: `three panes of three planes of 256² samples, ${use}`,
+        ...range(taken),
+        pictures: taken.length,
+      })),
+      marches: await benchMarches(rounds),
     };
   } finally {
     await browser.close();
