@@ -222,7 +222,7 @@ export class Charts {
 
   private key = '';
 
-  /** Draws one chart a screen refresh, so that none of them holds the page up. */
+  /** Draws one chart a task, apart from the panes' own, so that none of them holds the page up. */
   private redraw(): void {
     const { view, result, traces } = this.store.state;
     const key = `${this.store.state.scenario?.observers.length} ${view.observer} ${view.quantity} ${result?.verdict.sentence ?? ''} ${result?.timings.box.seconds ?? ''} ${traces.length} ${this.host.clientWidth}`;
@@ -230,14 +230,14 @@ export class Charts {
     this.key = key;
     const idle = this.next === 0;
     this.next = this.charts.length;
-    if (idle) requestAnimationFrame(() => this.drawNext());
+    if (idle) setTimeout(() => this.drawNext());
   }
 
   private drawNext(): void {
     const { live, chart } = this.charts[this.charts.length - this.next]!;
     live.draw(chart());
     this.next--;
-    if (this.next > 0) requestAnimationFrame(() => this.drawNext());
+    if (this.next > 0) setTimeout(() => this.drawNext());
     else this.showTime();
   }
 

@@ -38,7 +38,7 @@ interface Search {
 }
 
 /** How long a picture may spend on finding its scale, ms; the next ones go on with it. */
-const SEARCH = 6;
+const SEARCH = 3;
 
 function framesToLookAt({ frames, gridFrames }: Film): number[] {
   const step = Math.max(1, Math.floor(frames / LOOKS));

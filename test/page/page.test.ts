@@ -69,7 +69,7 @@ describe('the page with its own scenario', () => {
       page.evaluate(() =>
         ['#panes', '#timeline', '#side', '#budget', '#run'].map((selector) => {
           const { x, y, height } = document.querySelector(selector)!.getBoundingClientRect();
-          return selector === '#budget' ? [y] : [x, y, height];
+          return selector === '#budget' ? [y] : selector === '#run' ? [y, height] : [x, y, height];
         }),
       );
     await page.waitForFunction(() => (fieldassay.store.state.film?.gridFrames ?? 0) > 0);
@@ -360,6 +360,7 @@ describe('the page, used', () => {
       await page.evaluate(() => window.dispatchEvent(new Event('afterprint')));
       return seen;
     };
+    await page.waitForFunction(() => fieldassay.store.state.run.status === 'running');
     const early = await print();
     expect(early.page).toBe(0);
     expect(early.text).toContain('print again when there is a verdict');

@@ -47,7 +47,7 @@ try {
     });
     await page.evaluate(prepare);
     await page.evaluate(() => fieldassay.store.setFrame(Math.round(0.37 * fieldassay.store.state.film.frames)));
-    await page.waitForTimeout(800);
+    await page.waitForFunction(() => fieldassay.panes.settled);
     const devtools = await context.newCDPSession(page);
     const { data } = await devtools.send('Page.captureScreenshot', { format: 'webp', quality: QUALITY });
     const bytes = Buffer.from(data, 'base64');
