@@ -2,12 +2,14 @@ import { ticks } from 'd3-array';
 import type { Neutrals } from './colour.ts';
 import { type ImageLabel, lengthUnit, shortNumber } from './label.ts';
 import { GHOST, type ImageStroke } from './pen.ts';
-import { type Box, contains, type Projection, pixelOf, type Vec3 } from './projection.ts';
+import { type Box, contains, type Projection, pixelOf, type Rectangle, type Vec3 } from './projection.ts';
 
 const AXES = ['x', 'y', 'z'] as const;
 const TICK = 5;
 /** room that a length takes, CSS pixels */
 const ROOM = { width: 28, height: 13 };
+/** width of “z, mm”, CSS pixels */
+const NAME_WIDTH = 40;
 
 /**
  * Ticks and lengths along three edges of a box, one for each axis: of the four edges the one that is lowest in the image,
@@ -42,7 +44,7 @@ export function axes(
     const outwards = awayFrom(middle, start, end, length);
     const others = labels.slice();
     const label = (text: string, at: Pixel, distance: number) => {
-      const place = beside(at, outwards, distance);
+      const place = within(projection.view, beside(at, outwards, distance), NAME_WIDTH * pixelRatio);
       // two axes may end in one corner: the second length there is left out
       const crowded = others.some(
         ({ label: { x, y } }) =>
@@ -63,6 +65,13 @@ export function axes(
   }
   const colours = new Uint32Array(segments.length / 3).fill(line);
   return { strokes: [{ segments: Float64Array.from(segments), colours, width: pixelRatio, ghost: GHOST }], labels };
+}
+
+/** A text's place, shifted along x so that the text does not leave the view. */
+function within<T extends { readonly x: number; readonly align: string }>(view: Rectangle, place: T, width: number): T {
+  const before = { left: 0, center: width / 2, right: width }[place.align] ?? 0;
+  const x = Math.min(view.x + view.width - width + before, Math.max(view.x + before, place.x));
+  return { ...place, x };
 }
 
 /** As many round numbers between two ends as stand at least the `room`-th part of their distance apart. */
