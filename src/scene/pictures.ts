@@ -153,33 +153,27 @@ export class Pictures {
   planes(film: Film, scenario: Scenario, quantity: Quantity, frame: number, side: Side, scale: Scale): Plane[] {
     return film.films.map((one) => {
       const layer = layerOf(one, quantity);
-      const buffer = this.buffer(`${side} ${one.slice.name}`, layer.nu * layer.nv);
-      const stamp = `${quantity.key} ${frame} ${film.revision} ${one.potentials.has(frame)}`;
-      if (buffer.stamp !== stamp) {
-        this.fill(one, film.every, quantity, frame, side, buffer.values);
-        buffer.stamp = stamp;
-        buffer.revision++;
-      }
-      return {
-        ...planeAt(one, scenario, layer.offset, layer.nu, layer.nv, buffer.values, scale),
-        revision: buffer.revision,
-      };
+      const { values, revision } = this.sampled(film, one, quantity, frame, side);
+      return { ...planeAt(one, scenario, layer.offset, layer.nu, layer.nv, values, scale), revision };
     });
   }
 
-  private fill(one: SliceFilm, every: number, quantity: Quantity, frame: number, side: Side, out: Float32Array): void {
-    if (side !== 'difference') {
-      sampleQuantity(one, side, frame, every, quantity, out);
-      return;
-    }
-    const exact = this.buffer(`exact of ${one.slice.name}`, out.length).values;
-    sampleQuantity(one, 'grid', frame, every, quantity, out);
-    sampleQuantity(one, 'exact', frame, every, quantity, exact);
-    const { nu } = layerOf(one, quantity);
-    for (let n = 0; n < out.length; n++) {
-      const cell = Math.floor(n / nu) * one.slice.nu + (n % nu);
-      out[n] = one.known[cell] === 2 ? out[n]! - exact[n]! : Number.NaN;
-    }
+  /** The samples of one picture on one slice, taken anew where something has changed. */
+  private sampled(film: Film, one: SliceFilm, quantity: Quantity, frame: number, side: Side) {
+    const { nu, nv } = layerOf(one, quantity);
+    const buffer = this.buffer(`${side} ${one.slice.name}`, nu * nv);
+    const stamp = `${quantity.key} ${frame} ${film.revision} ${one.potentials.has(frame)}`;
+    if (buffer.stamp === stamp) return buffer;
+    if (side === 'difference') {
+      const grid = this.sampled(film, one, quantity, frame, 'grid').values;
+      const exact = this.sampled(film, one, quantity, frame, 'exact').values;
+      for (let j = 0, n = 0; j < nv; j++)
+        for (let i = 0; i < nu; i++, n++)
+          buffer.values[n] = one.known[j * one.slice.nu + i] === 2 ? grid[n]! - exact[n]! : Number.NaN;
+    } else sampleQuantity(one, side, frame, film.every, quantity, buffer.values);
+    buffer.stamp = stamp;
+    buffer.revision++;
+    return buffer;
   }
 
   private buffer(name: string, size: number) {
