@@ -53,6 +53,8 @@ function framesToLookAt({ frames, gridFrames }: Film): number[] {
  */
 export class Pictures {
   private readonly buffers = new Map<string, { values: Float32Array; stamp: string; revision: number }>();
+  /** whose samples the buffers hold */
+  private film: Film | undefined;
   private limits: { readonly key: string; readonly value: Limits } | undefined;
   private search: Search | undefined;
   private scales: { readonly key: string; readonly value: Record<Side, Scale> } | undefined;
@@ -151,6 +153,10 @@ export class Pictures {
 
   /** The planes of one picture of the film. */
   planes(film: Film, scenario: Scenario, quantity: Quantity, frame: number, side: Side, scale: Scale): Plane[] {
+    if (film !== this.film) {
+      this.film = film;
+      this.buffers.clear();
+    }
     return film.films.map((one) => {
       const layer = layerOf(one, quantity);
       const { values, revision } = this.sampled(film, one, quantity, frame, side);
