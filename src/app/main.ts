@@ -141,15 +141,23 @@ function moved(): void {
   if (store.state.problems.length === 0) runWhereSeen();
 }
 
-/** @param step whether it is a step of the browser's history */
+let writes = 0;
+let stepWanted = false;
+
+/** Writes the address once for all that changes at a time. @param step whether it is a step of the browser's history */
 async function writeAddress(step: boolean): Promise<void> {
   const { text, problems } = store.state;
   if (text === '' || problems.length > 0) return;
+  stepWanted ||= step;
+  const write = ++writes;
   const hash = withFields(await linkOf(text), await places.fields());
-  if (hash === address) return;
-  address = hash;
-  if (step) history.pushState(null, '', hash);
-  else history.replaceState(null, '', hash);
+  if (write !== writes) return;
+  if (hash !== address) {
+    address = hash;
+    if (stepWanted) history.pushState(null, '', hash);
+    else history.replaceState(null, '', hash);
+  }
+  stepWanted = false;
 }
 
 async function openAddress(): Promise<void> {

@@ -20,6 +20,7 @@ export default defineConfig({
         predictor: 'src/app/predictor.ts',
         survey: 'src/app/ladders/coordinator.ts',
         writer: 'src/app/writer.ts',
+        filmer: 'src/app/ladders/filmer.ts',
         planner: 'src/app/plan/planner.ts',
       },
       output: {

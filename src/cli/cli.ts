@@ -211,8 +211,10 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .option('--port <n>', 'the port (default: any free one)', portNumber, 0)
     .addHelpText('after', '\nExample: fieldassay view out\n')
     .action(async (folder: string | undefined, { port }: { port: number }) => {
-      const results = folder !== undefined && existsSync(join(folder, 'result.json'));
-      await served(folder ?? null, port, signal, (url) => `${url}${results ? '#results' : ''}\n`);
+      const holds = (file: string) => folder !== undefined && existsSync(join(folder, file));
+      const surveys = holds('survey.json') || holds('survey-result.json');
+      const place = holds('result.json') ? '#results' : surveys ? '#at=ladders&survey=results' : '';
+      await served(folder ?? null, port, signal, (url) => `${url}${place}\n`);
     });
 
   addSurveyCommand(program, threadCount, signal, (whole) => end(whole ? DONE : FAILED));

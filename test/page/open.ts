@@ -1,10 +1,11 @@
 import type { Browser, BrowserContextOptions, Page } from 'playwright-core';
 import type { Panes } from '../../src/app/panes.ts';
+import type { Places } from '../../src/app/places.ts';
 import type { Store } from '../../src/app/store.ts';
 
 /** What the page offers to scripts: src/app/main.ts. */
 declare global {
-  var fieldassay: { readonly store: Store; readonly panes: Panes };
+  var fieldassay: { readonly store: Store; readonly panes: Panes; readonly places: Places };
 }
 
 export interface Opened {

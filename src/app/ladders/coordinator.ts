@@ -43,7 +43,8 @@ async function run(survey: Survey, kept: Kept): Promise<void> {
     cases && tell({ kind: 'soFar', result: surveySoFar(cases, store, threads), of: cases.entries.length });
   const store = memory(kept, (hash, text) => {
     tell({ kind: 'kept', hash, text });
-    soFar();
+    // The case counts as done once it is kept.
+    queueMicrotask(soFar);
   });
   cases = await casesOf(survey, store);
   soFar();

@@ -10,10 +10,14 @@ interface Listing {
   readonly cases: readonly string[];
 }
 
+interface Result {
+  readonly survey?: { readonly vary?: unknown };
+}
+
 /** Looks into the result folder that is served with the page, again and again, while a survey elsewhere fills it. */
 export class Folder {
   private readonly texts = new Map<string, string>();
-  private survey: unknown;
+  private survey: { readonly vary?: unknown } | undefined;
   private ended = false;
   private timer = 0;
 
@@ -37,22 +41,24 @@ export class Folder {
   private async look(): Promise<void> {
     try {
       const { files, cases } = (await this.read('results/')) as Listing;
-      if (files.includes('survey.json')) this.survey ??= await this.read('results/survey.json');
+      if (files.includes('survey.json'))
+        this.survey ??= (await this.read('results/survey.json')) as { readonly vary?: unknown };
       if (files.includes('survey-result.json')) {
-        const result = (await this.read('results/survey-result.json')) as { readonly survey?: unknown };
+        const result = (await this.read('results/survey-result.json')) as Result;
         // One that an earlier survey left there is not waited for.
-        const own = this.survey === undefined || JSON.stringify(result.survey) === JSON.stringify(this.survey);
+        const own =
+          this.survey === undefined || JSON.stringify(result.survey?.vary) === JSON.stringify(this.survey.vary);
         if (this.ended) return;
-        if (own) return this.onResult(result);
+        if (own) {
+          this.onResult(result);
+          return;
+        }
       }
-      if (this.survey === undefined)
-        throw new Error(
-          'the folder holds no survey: run `fieldassay survey SURVEY.json --out DIR`, and `fieldassay view DIR` beside it',
-        );
       const fresh = cases.filter((hash) => !this.texts.has(hash));
       for (const hash of fresh) this.texts.set(hash, JSON.stringify(await this.read(`results/cases/${hash}.json`)));
       if (this.ended) return;
-      if (fresh.length > 0 || this.texts.size === 0) this.onCases(this.survey, [...this.texts]);
+      if (this.survey !== undefined && (fresh.length > 0 || this.texts.size === 0))
+        this.onCases(this.survey, [...this.texts]);
       this.timer = setTimeout(() => void this.look(), EVERY) as unknown as number;
     } catch (error) {
       if (!this.ended) this.onTrouble((error as Error).message);

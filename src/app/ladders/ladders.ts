@@ -11,6 +11,7 @@ import { nameOf } from '../written.ts';
 import { Axes } from './axes.ts';
 import { SurveyModel } from './model.ts';
 import { Results } from './results.ts';
+import { WallPanes } from './wallPanes.ts';
 
 /** What the address calls the survey in the folder that is served with the page. */
 const RESULTS = 'results';
@@ -25,15 +26,17 @@ export function ladders(host: HTMLElement, store: Store, places: Places): Starte
     places.go('compare');
   };
   const results = new Results(model, toCompare);
+  const walls = new WallPanes(model);
   host.append(
     halves(
       { name: 'What is varied', element: new Axes(model).element },
-      { name: 'What is found', elements: [runBar(model), results.element] },
+      { name: 'What is found', elements: [runBar(model), results.element, walls.element] },
     ),
   );
   model.on(['survey', 'run'], () => places.changed());
 
   return {
+    left: () => walls.rest(),
     async fields() {
       const { status, vary, combine } = model.state;
       if (status === 'following' || (status === 'shown' && followed)) return new Map([['survey', RESULTS]]);

@@ -1,4 +1,4 @@
-import { isDone, type SurveyResult, surveyResultSchema } from '../../compare/surveyResult.ts';
+import { type SurveyResult, surveyResultSchema } from '../../compare/surveyResult.ts';
 import type { Problem } from '../../scenario/load.ts';
 import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
@@ -123,7 +123,7 @@ export class SurveyModel {
   /** Follows the survey whose folder is served with the page, while it grows. */
   follow(): void {
     this.stop();
-    this.set({ status: 'following', stage: 'Looking into the folder', fraction: 0, message: '' });
+    this.set({ status: 'following', stage: 'no case yet', fraction: 0, message: '' });
     this.folder = new Folder(
       (survey, kept) => this.ask({ kind: 'collect', survey, kept }),
       (json) => this.show(json, 'the folder that is served'),
@@ -214,10 +214,6 @@ export class SurveyModel {
     return { ...found.scenario, grid };
   }
 }
-
-/** Cases that are done, with their places among all. */
-export const doneCases = (result: SurveyResult) =>
-  result.cases.flatMap((each, index) => (isDone(each) ? [{ each, index }] : []));
 
 /** Surveys to begin with, by what they are about. */
 export function presets({ state }: Store): Readonly<Record<'ladder' | 'walls' | 'clearance', Vary>> {

@@ -26,7 +26,7 @@ import { countText, percentOr } from '../../report/words.ts';
 import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
 import { table } from '../table.ts';
-import { doneCases, type SurveyModel } from './model.ts';
+import type { SurveyModel } from './model.ts';
 
 /** One chart of the place: what it shows of a result, and what stands there until there is something. */
 interface Shown {
@@ -179,7 +179,7 @@ export class Results {
       'boundary',
       'lattice',
       'gridding',
-      'cells',
+      'grid',
       'steps',
       'time',
       '',
@@ -220,12 +220,6 @@ export class Results {
       { type: 'button', title: 'Load this case into Compare', onclick: () => this.toCompare(index) },
       text,
     );
-  }
-
-  /** The charts that there are, for films of walls: whose reflections move with them. */
-  get reflectionChart(): Chart | null {
-    const { result } = this.model.state;
-    return result && doneCases(result).length > 0 ? reflectionTimeChart(result) : null;
   }
 }
 

@@ -1,0 +1,287 @@
+import { spawnSync } from 'node:child_process';
+import { mkdirSync, mkdtempSync, readdirSync, readFileSync, renameSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join, resolve } from 'node:path';
+import type { Browser, Page } from 'playwright-core';
+import { afterAll, beforeAll, expect, test } from 'vitest';
+import { linkOf } from '../../src/app/link.ts';
+import { textOf } from '../../src/app/store.ts';
+import type { Plan } from '../../src/compare/planResult.ts';
+import { type SurveyResult, surveyResultSchema } from '../../src/compare/surveyResult.ts';
+import { EXAMPLES } from '../../src/scenario/examples.ts';
+import { launchBrowser } from './browser.ts';
+import { finished, openPage, textOfPage } from './open.ts';
+import { COMMAND, type Served, serveBuiltPage } from './server.ts';
+
+/** A scenario whose cases run in a moment. */
+const SMALL = {
+  ...EXAMPLES['dipole-near-corner'],
+  title: 'Small',
+  grid: { cellSize: '10 mm', box: EXAMPLES['dipole-near-corner'].grid.box, boundary: { type: 'cpml', layers: 6 } },
+  duration: '3 ns',
+  observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
+};
+const SURVEY = {
+  title: 'Small ladder',
+  scenario: SMALL,
+  vary: { 'grid.cellSize': ['12.5 mm', '10 mm'], 'grid.boundary': [{ type: 'mur1' }, { type: 'cpml', layers: 6 }] },
+};
+
+let browser: Browser;
+let served: Served;
+let small: string;
+let folder: string;
+
+beforeAll(async () => {
+  [browser, served] = await Promise.all([launchBrowser(), serveBuiltPage()]);
+  small = served.url + (await linkOf(textOf(SMALL)));
+  folder = mkdtempSync(join(tmpdir(), 'survey-'));
+  writeFileSync(join(folder, 'given.json'), JSON.stringify(SURVEY));
+});
+afterAll(async () => {
+  await browser?.close();
+  served?.end();
+  rmSync(folder, { recursive: true, force: true });
+});
+
+/** A survey’s result, checked against its published form. */
+const surveyOf = (text: string) => surveyResultSchema.parse(JSON.parse(text)) as unknown as SurveyResult;
+
+const dropped = (page: Page, name: string, content: string) =>
+  page.evaluate(
+    ([file, text]) => {
+      const data = new DataTransfer();
+      data.items.add(new File([text!], file!, { type: 'application/json' }));
+      window.dispatchEvent(new DragEvent('drop', { dataTransfer: data, cancelable: true }));
+    },
+    [name, content],
+  );
+
+const saved = async (page: Page, name: string): Promise<string> => {
+  const [download] = await Promise.all([
+    page.waitForEvent('download'),
+    page.locator('.place:not([hidden]) .bar').getByRole('button', { name, exact: true }).first().click(),
+  ]);
+  return readFileSync((await download.path())!, 'utf8');
+};
+
+const violations = async (page: Page): Promise<string[]> =>
+  await page.evaluate(async () => {
+    const { violations: found } = await (
+      globalThis as unknown as { axe: { run(): Promise<{ violations: { id: string; nodes: { html: string }[] }[] }> } }
+    ).axe.run();
+    return found.flatMap(({ id, nodes }) => nodes.map(({ html }) => `${id}: ${html}`));
+  });
+
+test('a survey on the page is the command’s; it is cancelled at once, goes on, and a point of it is a case for Compare', async () => {
+  const command = spawnSync(
+    process.execPath,
+    [COMMAND, 'survey', join(folder, 'given.json'), '--out', join(folder, 'out'), '--json'],
+    { encoding: 'utf8' },
+  );
+  const expected = surveyOf(command.stdout);
+  const axe = readFileSync(resolve('node_modules/axe-core/axe.min.js'), 'utf8');
+  const { page, troubles } = await openPage(browser, `${small}&at=ladders`, { colorScheme: 'dark' }, axe);
+  const bar = page.locator('.place .bar').first();
+  await dropped(page, 'survey.json', JSON.stringify(SURVEY));
+  await page.getByText('4 cases', { exact: true }).waitFor();
+  expect(await violations(page)).toEqual([]);
+
+  await bar.getByRole('button', { name: 'Run survey' }).click();
+  await page.locator('.tables table').last().locator('tbody tr').first().waitFor();
+  const milliseconds = await page.evaluate(async () => {
+    const button = document.querySelector<HTMLButtonElement>('.place .bar button')!;
+    const start = performance.now();
+    button.click();
+    while (!/Cancelled/.test(document.querySelector('.place .bar .muted')!.textContent!))
+      await new Promise(requestAnimationFrame);
+    return performance.now() - start;
+  });
+  console.log(`a survey cancelled within ${milliseconds.toFixed(1)} ms`);
+  expect(milliseconds).toBeLessThan(200);
+  // what was done by then is shown, and not run again
+  expect(await page.locator('.tables table').last().locator('tbody tr').count()).toBeGreaterThan(0);
+  await bar.getByRole('button', { name: 'Go on' }).click();
+  await page.locator('.tables table').last().locator('tbody tr').nth(3).waitFor();
+  await bar.getByRole('button', { name: 'Run survey' }).waitFor({ timeout: 60_000 });
+
+  const own = surveyOf(await saved(page, 'Result'));
+  expect(own.cases.map(({ settings, hash }) => ({ settings, hash }))).toEqual(
+    expected.cases.map(({ settings, hash }) => ({ settings, hash })),
+  );
+  const figures = ({ cases, ladders, boundaries }: SurveyResult) => ({
+    budgets: cases.map((each) => each.budget),
+    norms: cases.map((each) => each.norms),
+    ladders,
+    boundaries,
+  });
+  expect(figures(own)).toEqual(figures(expected));
+  expect(await saved(page, 'Table')).toContain('mur1');
+  expect(JSON.parse(await saved(page, 'Survey'))).toMatchObject({ scenario: SMALL, vary: SURVEY.vary });
+  expect(await violations(page)).toEqual([]);
+
+  // walls beside the exact field, moving
+  await page.getByRole('button', { name: 'Show their fields' }).click();
+  await page.waitForFunction(() => document.querySelector('.walls .bar .muted')?.textContent === '', undefined, {
+    timeout: 60_000,
+  });
+  const before = await page.evaluate(() => document.querySelector<HTMLCanvasElement>('.walls canvas')!.toDataURL());
+  await page.evaluate(() => {
+    const slider = document.querySelector<HTMLInputElement>('.walls input[type=range]')!;
+    slider.value = '40';
+    slider.dispatchEvent(new Event('input'));
+  });
+  await page.waitForTimeout(300);
+  expect(await page.evaluate(() => document.querySelector<HTMLCanvasElement>('.walls canvas')!.toDataURL())).not.toBe(
+    before,
+  );
+  expect(await page.locator('.walls .cursor').first().getAttribute('visibility')).toBe('visible');
+
+  // the first point of the ladder is its first case
+  const dot = page.locator('.results .charts [data-key="0"]').first();
+  await dot.scrollIntoViewIfNeeded();
+  await dot.click();
+  await page.waitForFunction(() => fieldassay.places.current === 'compare');
+  await finished(page);
+  const total = await page.evaluate(() => fieldassay.store.state.result!.budget.total.relativeL2);
+  expect(total).toBe(own.cases[0]!.budget!.total.relativeL2);
+  expect(troubles).toEqual([]);
+  await page.context().close();
+});
+
+test('a survey that runs elsewhere is followed in its folder: first some cases, then all, then its result', async () => {
+  const out = join(folder, 'out');
+  const [cases, aside] = [join(out, 'cases'), join(folder, 'aside')];
+  mkdirSync(aside);
+  const names = readdirSync(cases).sort();
+  for (const name of names.slice(1)) renameSync(join(cases, name), join(aside, name));
+  renameSync(join(out, 'survey-result.json'), join(aside, 'survey-result.json'));
+  const own = await serveBuiltPage(out);
+  try {
+    const { page, troubles } = await openPage(browser, own.url);
+    await page.getByText('1 of 4 cases').waitFor();
+    for (const name of names.slice(1)) renameSync(join(aside, name), join(cases, name));
+    await page.getByText('4 of 4 cases').waitFor();
+    renameSync(join(aside, 'survey-result.json'), join(out, 'survey-result.json'));
+    await page.getByText('read only').waitFor();
+    expect(await textOfPage(page, '.place h1')).toMatch(/^Within 5 %/);
+    expect(troubles).toEqual([]);
+    await page.context().close();
+  } finally {
+    own.end();
+  }
+});
+
+test('a plan answers its slider at once, keeps the page’s thread free, is the command’s, and is run in Compare', async () => {
+  const { page, troubles } = await openPage(
+    browser,
+    `${small}&at=plan`,
+    {},
+    readFileSync(resolve('node_modules/axe-core/axe.min.js'), 'utf8'),
+  );
+  const settled = () =>
+    page.waitForFunction(
+      () =>
+        document.querySelector('.place .bar .muted')?.textContent === '' &&
+        document.querySelector('.place h1')?.textContent?.includes('predicted'),
+      undefined,
+      { timeout: 60_000 },
+    );
+  await settled();
+  const file = join(folder, 'small.json');
+  writeFileSync(file, JSON.stringify(SMALL));
+  const command = spawnSync(process.execPath, [COMMAND, 'plan', file, '--no-run', '--json'], { encoding: 'utf8' });
+  const expected: Plan = JSON.parse(command.stdout);
+  const own: Plan = JSON.parse(await saved(page, 'Plan'));
+  expect(own.chosen).toEqual(expected.chosen);
+  expect(own.places).toEqual(expected.places);
+
+  // what is known answers before the search does
+  const { answered, longest } = await page.evaluate(async () => {
+    let longest = 0;
+    const observer = new PerformanceObserver((list) => {
+      for (const { duration } of list.getEntries()) longest = Math.max(longest, duration);
+    });
+    observer.observe({ type: 'longtask' });
+    const slider = document.querySelector<HTMLInputElement>('.place input[type=range]')!;
+    const times: number[] = [];
+    for (const at of ['150', '140', '130', '120', '140', '150']) {
+      const start = performance.now();
+      slider.value = at;
+      slider.dispatchEvent(new Event('input'));
+      const tolerance = document.querySelector<HTMLInputElement>('.place .slide input[type=text]')!.value;
+      while (!document.querySelector('.place h1')!.textContent!.startsWith(`Within ${tolerance}`))
+        await new Promise(requestAnimationFrame);
+      times.push(performance.now() - start);
+      await new Promise((done) => setTimeout(done, 30));
+    }
+    await new Promise((done) => setTimeout(done, 300));
+    return { answered: Math.max(...times), longest };
+  });
+  console.log(`slider answered within ${answered.toFixed(0)} ms; longest task ${longest.toFixed(0)} ms`);
+  expect(answered).toBeLessThan(150);
+  await settled();
+  expect(await violations(page)).toEqual([]);
+
+  await page.getByRole('button', { name: 'Apply and run in Compare' }).click();
+  await page.waitForFunction(() => fieldassay.places.current === 'compare');
+  await finished(page);
+  await page
+    .getByText(/measured/)
+    .first()
+    .waitFor();
+  const line = await textOfPage(page, '#predicted');
+  console.log(line);
+  expect(line).toMatch(/^Predicted [\d.]+ % ✓ at A.* · measured [\d.]+ %/);
+  // the plan tells it, too; and the browser's history goes back to the plan
+  await page.getByRole('button', { name: 'Plan', exact: true }).click();
+  await page.getByText(/^Run in Compare: predicted/).waitFor();
+  await page.goBack();
+  await page.waitForFunction(() => fieldassay.places.current === 'compare');
+  await page.goBack();
+  await page.waitForFunction(() => fieldassay.places.current === 'plan');
+  expect(troubles).toEqual([]);
+  await page.context().close();
+});
+
+test('the error is predicted while one types, before any run ends', async () => {
+  const { page, troubles } = await openPage(browser, small);
+  await finished(page);
+  await page.waitForFunction(() => document.querySelector('#predicted')?.textContent?.startsWith('Predicted'));
+  const before = await textOfPage(page, '#predicted');
+  await page.evaluate(() => {
+    fieldassay.store.edit((draft) => {
+      draft.grid.cellSize = '7.5 mm';
+    });
+  });
+  await page.waitForFunction((old) => {
+    const text = document.querySelector('#predicted')!.textContent!;
+    return text.startsWith('Predicted') && text.split(' at ')[0] !== old.split(' at ')[0];
+  }, before);
+  // no verdict but the first
+  expect(await page.evaluate(() => performance.getEntriesByName('verdict').length)).toBe(1);
+  expect(troubles).toEqual([]);
+  await page.context().close();
+});
+
+test('places are reached by keyboard, kept in the address, and fit into a small window', async () => {
+  const { page, troubles } = await openPage(browser, small, { viewport: { width: 1024, height: 700 } });
+  await page.keyboard.press('g');
+  await page.waitForFunction(() => fieldassay.places.current === 'ladders');
+  await page.keyboard.press('g');
+  await page.waitForFunction(() => location.hash.includes('at=plan'));
+  await page.locator('.place h1').last().getByText('predicted').waitFor();
+  await page.reload();
+  await page.waitForFunction(() => globalThis.fieldassay?.places.current === 'plan');
+  expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
+  // Compare is not run where nobody sees it
+  expect(await page.evaluate(() => fieldassay.store.state.run.status)).toBe('idle');
+  for (const place of ['plan', 'ladders', 'compare']) {
+    await page.evaluate((key) => fieldassay.places.go(key), place);
+    const wide = await page.evaluate(() => document.documentElement.scrollWidth - innerWidth);
+    expect(wide, place).toBeLessThanOrEqual(0);
+  }
+  await finished(page);
+  expect(troubles).toEqual([]);
+  await page.context().close();
+});
