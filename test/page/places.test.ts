@@ -270,7 +270,7 @@ test('places are reached by keyboard, kept in the address, and fit into a small 
   await page.waitForFunction(() => fieldassay.places.current === 'ladders');
   await page.keyboard.press('g');
   await page.waitForFunction(() => location.hash.includes('at=plan'));
-  await page.locator('.place h1').last().getByText('predicted').waitFor();
+  await page.getByRole('heading', { name: /predicted/ }).waitFor();
   await page.reload();
   await page.waitForFunction(() => globalThis.fieldassay?.places.current === 'plan');
   expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
