@@ -132,6 +132,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     )
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
+    .option('--pattern', 'the grid’s far field too: its error by direction, from its fields on a surface in the box')
     .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
     .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
     .option('--port <n>', 'with --serve: the port', portNumber, 0)
@@ -268,6 +269,7 @@ interface CompareFlags extends GateFlags {
   readonly json?: boolean;
   readonly threads?: number;
   readonly fused?: boolean;
+  readonly pattern?: boolean;
   readonly serve?: boolean;
   readonly port: number;
 }
@@ -323,6 +325,7 @@ async function compared(name: string, options: CompareFlags, signal: AbortSignal
     return await compareSolvers(readScenario(name), {
       ...(options.threads ? { threads: options.threads } : {}),
       ...(options.fused ? { fusedMultiplyAdd: true } : {}),
+      ...(options.pattern ? { pattern: true } : {}),
       signal,
       onProgress: line.show,
     });
@@ -348,8 +351,11 @@ async function inTeam<T>(
 const filesOf = (comparison: Comparison, command: string): Record<string, string> =>
   Object.fromEntries(RESULT_FILES.map((file) => [file, resultFile(file, comparison, command)]));
 
-function commandLine(name: string, { out, threads }: CompareFlags): string {
-  return `npx fieldassay compare ${quoted(name)}${out ? ` --out ${out}` : ''}${threads ? ` --threads ${threads}` : ''}`;
+function commandLine(name: string, { out, threads, pattern }: CompareFlags): string {
+  return (
+    `npx fieldassay compare ${quoted(name)}${out ? ` --out ${out}` : ''}${pattern ? ' --pattern' : ''}` +
+    `${threads ? ` --threads ${threads}` : ''}`
+  );
 }
 
 async function served(

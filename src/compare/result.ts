@@ -6,6 +6,7 @@ import type { Budget } from './budget.ts';
 import type { MaximumNorm, Norm, SampledNorm } from './norms.ts';
 import type { ObserverErrors } from './observer.ts';
 import type { PointStatus } from './pointError.ts';
+import { quantitiesSchema } from './quantities.ts';
 
 /**
  * `result.json`: what a comparison found, in SI units. Numbers are raw, also where they lie below their floors; a figure
@@ -251,6 +252,7 @@ export const resultSchema = z.object({
   }),
   environment: z.record(z.string(), z.union([z.string(), z.number(), z.boolean()])),
   notes: z.array(z.string()).readonly().describe('what should be known though nothing was refused'),
+  quantities: quantitiesSchema.optional().describe('what engineers ask for beside errors; of `compare` alone'),
   scenario: z.unknown().describe('the scenario file as given'),
 });
 

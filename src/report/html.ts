@@ -5,6 +5,7 @@ import { boxCharts, type NamedChart, observerCharts } from './charts.ts';
 import { DEFINITIONS } from './definitions.ts';
 import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
+import { PULSE_HEAD, pulseRows, quantitySentences } from './quantities.ts';
 import type { Report } from './report.ts';
 import { chartSvg } from './svg.ts';
 import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
@@ -26,6 +27,7 @@ ${budgetSection(result)}
 ${section('How far, and how near', boxCharts(result))}
 ${observersSection(result)}
 ${result.observers.map((observer) => chartsSection(observer, { result, traces, spectra, command }))}
+${quantitiesSection(result)}
 ${normsSection(result)}
 ${runSection(result)}
 ${DEFINITIONS}
@@ -98,6 +100,21 @@ function observerRow({ name, E, H, snapped, distance, extrapolated }: ObserverRe
 function chartsSection(observer: ObserverResult, { traces, spectra }: Report): Markup | null {
   const charts = observerCharts(observer, traces, spectra);
   return charts.length === 0 ? null : markup`<h3>Observer <bdi>${observer.name}</bdi></h3>${figures(charts)}`;
+}
+
+function quantitiesSection({ quantities }: Result): Markup | null {
+  if (!quantities) return null;
+  const rows = pulseRows(quantities);
+  return markup`<h2>Quantities</h2>
+${quantitySentences(quantities).map((sentence) => markup`<p>${sentence}</p>`)}
+${
+  rows.length === 0
+    ? null
+    : markup`<div class="scroll"><table>
+<thead><tr>${PULSE_HEAD.map((c) => markup`<th scope="col">${c}</th>`)}</tr></thead>
+<tbody>${rows.map(([name, ...cells]) => markup`<tr><th scope="row"><bdi>${name!}</bdi></th>${cells.map((c) => markup`<td class="number">${c}</td>`)}</tr>`)}</tbody></table></div>
+<p class="muted">Peaks and 10–90 % rise times are of the exact field’s strongest component, exact and grid. Near, induction and radiation parts are summed over current elements; the largest is that of E with the largest peak.</p>`
+}`;
 }
 
 function normsSection({ norms }: Result): Markup {

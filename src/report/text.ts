@@ -3,6 +3,7 @@ import { formatPercent } from '../elementary/quantity.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
 import { printable } from './markup.ts';
 import type { ColourName } from './palette.ts';
+import { quantitySentences } from './quantities.ts';
 import { bandText, columns, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
 
 /** Nearest entries of the 256-colour set to the palette's colours. */
@@ -45,6 +46,7 @@ export function resultText(result: Result, { colour, written = [] }: TextOptions
     ],
     ['Error budget of E (relative L2; share of the total, signed; floor)', ...budgetLines(result, paint)],
     result.observers.length === 0 ? [] : ['Observers', ...observerLines(result, paint)],
+    result.quantities ? quantitySentences(result.quantities).map(printable) : [],
     [
       `Grid        ${gridText(result)}`,
       ...columns(timingRows(result).map((row) => [...row])).map((line, i) =>

@@ -12,6 +12,7 @@ import { jsonOf } from './given.ts';
 import { placesOf } from './places.ts';
 import { Team } from './pool.ts';
 import type { Progress } from './progress.ts';
+import { withQuantities } from './quantities.ts';
 import { boxProblem, questionOf } from './question.ts';
 import { Refusal } from './refusal.ts';
 import { withRemedy } from './remedy.ts';
@@ -24,6 +25,8 @@ export interface CompareOptions {
   readonly threads?: number;
   /** the grid's multiply-add with one rounding, where the runtime has it: faster, last bits differ; off by default */
   readonly fusedMultiplyAdd?: boolean;
+  /** the grid's far field too, and its error by direction: one more grid run, and the exact field on a surface */
+  readonly pattern?: boolean;
   readonly onProgress?: (progress: Progress) => void;
   /** aborting it ends all workers at once and rejects with its reason */
   readonly signal?: AbortSignal;
@@ -40,7 +43,8 @@ export async function compareSolvers(input: unknown, options: CompareOptions = {
   return await withTeam(options.threads ?? threadsAvailable(), options.signal, async (team) => {
     const prepared = prepareCase(jsonOf(input), options.fusedMultiplyAdd);
     const means = { team, gridThreads: team.threads, onProgress: options.onProgress ?? (() => {}) };
-    return await withRemedy(team, prepared, await solvePrepared(prepared, means));
+    const found = await withRemedy(team, prepared, await solvePrepared(prepared, means));
+    return await withQuantities(prepared, means, found, options.pattern ?? false);
   });
 }
 

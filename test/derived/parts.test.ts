@@ -126,7 +126,7 @@ describe('where the parts take over', () => {
         found: { ...regions, centre: '', direction: '' },
         closed: { nearTo: near, radiationFrom: radiation },
       });
-      // Peaks are read from 80 instants over about 15 σ: each may be missed by (0.1 σ)²/2.
+      // Peaks are read from 60 instants over about 15 σ: each may be missed by (0.12 σ)²/2.
       expect(regions.nearTo! / near).toBeCloseTo(1, 2);
       expect(regions.radiationFrom! / radiation).toBeCloseTo(1, 2);
       expect(regions.centre).toEqual([0.01, 0, 0]);
