@@ -71,8 +71,8 @@ export const quantitiesSchema = z.object({
           .enum(['near', 'induction', 'radiation'])
           .nullable()
           .describe('which part of E has the largest peak there'),
-        E: pulseSchema,
-        H: pulseSchema,
+        E: pulseSchema.nullable().describe('null where it vanishes by symmetry'),
+        H: pulseSchema.nullable().describe('null where it vanishes by symmetry'),
       }),
     )
     .readonly()

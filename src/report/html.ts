@@ -111,7 +111,7 @@ ${
   rows.length === 0
     ? null
     : markup`<div class="scroll"><table>
-<thead><tr>${PULSE_HEAD.map((c) => markup`<th scope="col">${c}</th>`)}</tr></thead>
+<thead><tr>${PULSE_HEAD.map((c, n) => markup`<th scope="col"${n > 0 ? markup` class="number"` : null}>${c}</th>`)}</tr></thead>
 <tbody>${rows.map(([name, ...cells]) => markup`<tr><th scope="row"><bdi>${name!}</bdi></th>${cells.map((c) => markup`<td class="number">${c}</td>`)}</tr>`)}</tbody></table></div>
 <p class="muted">Peaks and 10–90 % rise times are of the exact field’s strongest component, exact and grid. Near, induction and radiation parts are summed over current elements; the largest is that of E with the largest peak.</p>`
 }`;

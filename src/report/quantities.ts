@@ -39,15 +39,14 @@ export function pulseRows({ observers }: Quantities): string[][] {
   return observers.map(({ name, largestPart, E, H }) => [
     name,
     largestPart ?? '—',
-    E.component,
-    formatQuantity(E.peak, 'V/m'),
-    formatQuantity(E.gridPeak, 'V/m'),
-    rise(E.riseTime),
-    rise(E.gridRiseTime),
-    H.component,
-    formatQuantity(H.peak, 'A/m'),
-    formatQuantity(H.gridPeak, 'A/m'),
+    ...peaks(E, 'V/m'),
+    rise(E?.riseTime),
+    rise(E?.gridRiseTime),
+    ...peaks(H, 'A/m'),
   ]);
 }
 
-const rise = (time: TracePulse['riseTime']): string => (time === null ? '—' : formatQuantity(time, 's'));
+const peaks = (pulse: TracePulse | null, unit: string): string[] =>
+  pulse ? [pulse.component, formatQuantity(pulse.peak, unit), formatQuantity(pulse.gridPeak, unit)] : ['—', '—', '—'];
+
+const rise = (time: number | null | undefined): string => (typeof time === 'number' ? formatQuantity(time, 's') : '—');

@@ -5,6 +5,7 @@ import { longestPart } from '../retarded/panels.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
 import type { Asked, Means } from './answers.ts';
 import type { Comparison } from './conclude.ts';
+import { vanishes } from './levels.ts';
 import { patternOf } from './pattern.ts';
 import type { Places } from './places.ts';
 
@@ -56,8 +57,8 @@ function quantitiesOf(scenario: Scenario, places: Places, signals: Comparison['s
       ? places.inside.map(({ name, at }, p) => ({
           name,
           largestPart: parts && p < MOST_OBSERVERS ? parts(at).largest : null,
-          E: tracePulse(signals.grid, signals.exact, 'E', p),
-          H: tracePulse(signals.grid, signals.exact, 'H', p),
+          E: vanishes(signals.exact, 'E', p, medium.impedance) ? null : tracePulse(signals.grid, signals.exact, 'E', p),
+          H: vanishes(signals.exact, 'H', p, medium.impedance) ? null : tracePulse(signals.grid, signals.exact, 'H', p),
         }))
       : [],
     pattern: null,

@@ -58,8 +58,8 @@ describe('quantities of a comparison', () => {
     // All peaks are equal at vσ.
     expect(quantities!.regions!.nearTo! / (299_792_458 * SIGMA)).toBeCloseTo(1, 1);
     const [A] = quantities!.observers;
-    expect(A!.E.component).toBe('Ez');
-    expect(Math.abs(A!.E.gridPeak / A!.E.peak - 1)).toBeLessThan(0.05);
+    expect(A!.E!.component).toBe('Ez');
+    expect(Math.abs(A!.E!.gridPeak / A!.E!.peak - 1)).toBeLessThan(0.05);
     expect(A!.largestPart).toBe('radiation');
 
     const { lines, samples } = quantities!.pattern!;
