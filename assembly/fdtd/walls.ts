@@ -247,6 +247,13 @@ function note(
   const layers = load<i32>(wall, REACH);
   const a0 = load<Real>(wall, OLD_TERMS);
   const a1 = load<Real>(wall, OLD_TERMS + CELL);
+  if (layers == 1 && !older) {
+    // Mur's first order: the same sum without the questions.
+    for (const end = notes + <usize>count * CELL; notes < end; notes += CELL, p += step) {
+      store<Real>(notes, <Real>0 + a1 * load<Real>(p + inward) + a0 * load<Real>(p));
+    }
+    return;
+  }
   const a2 = load<Real>(wall, OLD_TERMS + 2 * CELL);
   const a3 = load<Real>(wall, OLD_TERMS + 3 * CELL);
   const a4 = load<Real>(wall, OLD_TERMS + 4 * CELL);
@@ -287,10 +294,15 @@ function close(wall: usize, p: usize, inward: usize, step: usize, count: i32, no
   const newest = load<i32>(wall, NEWEST);
   const c1 = load<Real>(wall, NOW_TERMS);
   const c2 = load<Real>(wall, NOW_TERMS + CELL);
+  if (newest == 1) {
+    for (const end = notes + <usize>count * CELL; notes < end; notes += CELL, p += step) {
+      store<Real>(p, load<Real>(notes) + c1 * load<Real>(p + inward));
+    }
+    return;
+  }
   for (const end = notes + <usize>count * CELL; notes < end; notes += CELL, p += step) {
     let sum = load<Real>(notes);
-    if (newest > 1) sum = sum + c2 * load<Real>(p + 2 * inward);
-    if (newest > 0) sum = sum + c1 * load<Real>(p + inward);
+    if (newest > 1) sum = sum + c2 * load<Real>(p + 2 * inward) + c1 * load<Real>(p + inward);
     store<Real>(p, sum);
   }
 }
