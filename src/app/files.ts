@@ -8,6 +8,9 @@ import { type Store, textOf } from './store.ts';
 /** Larger files are no scenarios that a page should try to show. */
 const MOST_BYTES = 8 * 1024 * 1024;
 
+/** Endings of another solver's traces: wherever they are dropped, they go to the place that judges them. */
+const TRACES = /\.(csv|npy|npz|dat)$/i;
+
 /**
  * Opens a file's text: a scenario, or a result whose scenario it then is. What is no JSON is refused and changes nothing;
  * an unsound scenario is opened as text, with what is wrong at its lines.
@@ -43,6 +46,11 @@ export function openText(store: Store, side: Side, name: string, text: string): 
 }
 
 async function openFile(store: Store, side: Side, places: Places, file: File): Promise<void> {
+  if (TRACES.test(file.name)) {
+    places.go('judge');
+    await places.take(file.name, undefined, file);
+    return;
+  }
   if (file.size > MOST_BYTES) {
     notify(
       `${file.name} was not opened: it has ${Math.round(file.size / 1e6)} MB, a scenario at most ${MOST_BYTES / 1024 / 1024}.`,
@@ -51,7 +59,7 @@ async function openFile(store: Store, side: Side, places: Places, file: File): P
     return;
   }
   const text = await file.text();
-  if (await places.take(file.name, jsonOrNothing(text))) return;
+  if (await places.take(file.name, jsonOrNothing(text), file)) return;
   openText(store, side, file.name, text);
 }
 
@@ -67,9 +75,9 @@ function jsonOrNothing(text: string): unknown {
 export function acceptFiles(store: Store, side: Side, places: Places): { readonly choose: () => void } {
   const input = h('input', {
     type: 'file',
-    accept: '.json,application/json',
+    accept: '.json,.csv,.npy,.npz,.dat,application/json',
     hidden: true,
-    'aria-label': 'Open a scenario file',
+    'aria-label': 'Open a scenario or traces',
     tabIndex: -1,
   });
   input.addEventListener('change', () => {

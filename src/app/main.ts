@@ -54,6 +54,12 @@ const PLACES: readonly Place[] = [
     help: 'The cheapest cells, walls and clearance that meet a tolerance, predicted without a run',
     start: async (host, places) => (await import('./plan/plan.ts')).plan(host, store, places, prediction),
   },
+  {
+    key: 'judge',
+    name: 'Judge',
+    help: 'The traces of another solver beside the exact field, and the likeliest cause of their error',
+    start: async (host) => (await import('./judge/judge.ts')).judge(host, store),
+  },
 ];
 const places = new Places(PLACES, moved, (step) => void writeAddress(step));
 const { choose } = acceptFiles(store, side, places);

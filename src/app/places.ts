@@ -14,7 +14,7 @@ export interface Started {
   shown?(): void;
   left?(): void;
   /** Takes a file that was opened or dropped; false where it is none of this place's. */
-  take?(name: string, json: unknown): boolean;
+  take?(name: string, json: unknown, file: File): boolean;
 }
 
 /** A place that the page may be at: a name in its head, and what is loaded when it is first come to. */
@@ -100,8 +100,8 @@ export class Places {
   }
 
   /** Hands a file to the present place; false where it is none of its. */
-  async take(name: string, json: unknown): Promise<boolean> {
-    return (await this.started.get(this.current))?.take?.(name, json) ?? false;
+  async take(name: string, json: unknown, file: File): Promise<boolean> {
+    return (await this.started.get(this.current))?.take?.(name, json, file) ?? false;
   }
 
   private startedAt(key: PlaceKey): Promise<Started | null> | undefined {

@@ -19,6 +19,7 @@ export default defineConfig({
         encoder: 'src/app/encoder.ts',
         predictor: 'src/app/predictor.ts',
         survey: 'src/app/ladders/coordinator.ts',
+        judge: 'src/app/judge/coordinator.ts',
         writer: 'src/app/writer.ts',
         filmer: 'src/app/ladders/filmer.ts',
         planner: 'src/app/plan/planner.ts',
