@@ -1,5 +1,11 @@
 import { FIELD_UNIT, FIELDS, type Field } from '../compare/fields.ts';
-import { type JudgedObserver, type Judgement, judgeSchema, tracesWithinTolerance } from '../compare/judgeResult.ts';
+import {
+  type JudgedObserver,
+  type Judgement,
+  judgeSchema,
+  type TriedCause,
+  tracesWithinTolerance,
+} from '../compare/judgeResult.ts';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { type ObserverTrace, writeTraces } from '../files/traces.ts';
 import type { Component } from '../trace/trace.ts';
@@ -105,8 +111,13 @@ function rowsOf({ observers }: Judgement): {
   );
 }
 
-/** Causes that are shown: the likeliest few. */
-const SHOWN = 6;
+/** The likeliest cause, then those that explain most, as many as are worth reading; none where nothing is to be explained. */
+function shownCauses({ causes }: Judgement): TriedCause[] {
+  const [best, ...others] = causes.tried;
+  if (causes.status === 'sound' || !best) return [];
+  const telling = others.filter(({ explained }) => explained > 0).sort((a, b) => b.explained - a.explained);
+  return [best, ...telling].slice(0, 6);
+}
 
 export interface JudgeTextOptions {
   readonly colour: boolean;
@@ -122,7 +133,7 @@ export function judgeText(result: Judgement, { colour, written = [] }: JudgeText
     [HEAD, ...rows.map(({ name, field, cells }) => [`${printable(name)}, ${field}`, ...cells.map(printable)])],
     ['left', ...HEAD.slice(2).map(() => 'right' as const), 'left'],
   ).map((line) => line.trimEnd());
-  const tried = result.causes.status === 'sound' ? [] : result.causes.tried.slice(0, SHOWN);
+  const tried = shownCauses(result);
   const sections = [
     [
       ...(result.title === '' ? [] : [printable(result.title)]),
@@ -238,12 +249,13 @@ function figuresSection(result: Judgement): Markup {
 <p class="muted">Raw figures first; then those with an offset and a scale fitted to each field. A fitted offset absorbs dispersion, a fitted scale a wrong source: what is left then does not show that the solver is right.</p>`;
 }
 
-function causesSection({ causes }: Judgement): Markup | null {
-  if (causes.tried.length === 0 || causes.status === 'sound') return null;
+function causesSection(result: Judgement): Markup | null {
+  const tried = shownCauses(result);
+  if (tried.length === 0) return null;
   return markup`<h2>Likely causes, each tried by refitting</h2>
 <div class="scroll"><table>
 <thead><tr><th scope="col" class="number">explains</th><th scope="col">if</th><th scope="col">then</th></tr></thead>
-<tbody>${causes.tried.map(
+<tbody>${tried.map(
     ({ explained, words, remedy }) =>
       markup`<tr><td class="number">${shareText(explained)}</td><td class="wrap">${words}</td><td class="wrap muted">${remedy}</td></tr>`,
   )}</tbody></table></div>`;
@@ -304,10 +316,7 @@ export const judgeFigures = (result: Judgement): string[][] => [
 ];
 
 /** The causes that were tried as cells: what each explains, what it is, what to do; none where nothing is to be explained. */
-export const judgeCauses = ({ causes }: Judgement): string[][] =>
-  causes.status === 'sound'
-    ? []
-    : [
-        ['explains', 'if', 'then'],
-        ...causes.tried.map(({ explained, words, remedy }) => [shareText(explained), words, remedy]),
-      ];
+export function judgeCauses(result: Judgement): string[][] {
+  const rows = shownCauses(result).map(({ explained, words, remedy }) => [shareText(explained), words, remedy]);
+  return rows.length === 0 ? [] : [['explains', 'if', 'then'], ...rows];
+}

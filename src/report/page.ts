@@ -20,6 +20,7 @@ table{border-collapse:collapse}
 th{font-weight:400;text-align:left;font-size:13px;vertical-align:bottom}
 th,td{padding:4px 20px 4px 0;white-space:nowrap}
 .number{text-align:right}
+.wrap{white-space:normal;min-width:24ch}
 tbody th{color:var(--ink);font-size:15px}
 tr.total th,tr.total td{border-top:1px solid var(--line);font-weight:600}
 .bars{display:block;width:260px;height:16px}

@@ -209,7 +209,7 @@ class JudgePlace {
       h('h1', { className: tracesWithinTolerance(result) ? '' : 'outside', 'aria-live': 'polite' }, result.sentence),
       ...result.details.map((detail) => h('p', {}, detail)),
       table(judgeFigures(result)),
-      ...(causes.length === 0 ? [] : [h('h2', {}, 'Likely causes, each tried by refitting'), table(causes)]),
+      ...(causes.length === 0 ? [] : [h('h2', {}, 'Likely causes, each tried by refitting'), table(causes, 'prose')]),
       ...charts.flat(),
       ...result.notes.map((note) => h('p', { className: 'muted' }, `Note: ${note}`)),
     );
@@ -230,11 +230,16 @@ function field(name: string, placeholder: string, hint: string) {
 }
 
 /** A table whose first row names its columns. */
-function table([head, ...rows]: readonly (readonly string[])[]): HTMLElement {
+function table([head, ...rows]: readonly (readonly string[])[], className = ''): HTMLElement {
   const row = (tag: 'th' | 'td', cells: readonly string[]) => h('tr', {}, ...cells.map((cell) => h(tag, {}, cell)));
   return h(
     'div',
     { className: 'scroll', tabindex: '0' },
-    h('table', {}, h('thead', {}, row('th', head!)), h('tbody', {}, ...rows.map((cells) => row('td', cells)))),
+    h(
+      'table',
+      { className },
+      h('thead', {}, row('th', head!)),
+      h('tbody', {}, ...rows.map((cells) => row('td', cells))),
+    ),
   );
 }
