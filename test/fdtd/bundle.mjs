@@ -23,6 +23,8 @@ export async function bundle(input) {
     root,
     configFile: false,
     logLevel: 'error',
+    // whole, so that a browser can have the same file
+    ssr: { noExternal: true },
     build: { ssr: true, target: 'node20', minify: false, emptyOutDir: true, outDir, rollupOptions: { input } },
   });
   return (name) => pathToFileURL(join(outDir, `${name}.js`)).href;
