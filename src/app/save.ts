@@ -1,10 +1,17 @@
-import type { ResultFile } from '../report/folder.ts';
+import { strToU8, zipSync } from 'fflate';
+import { writeTracesNpz } from '../files/npz.ts';
+import { fileWords } from '../files/words.ts';
+import { chartFiles, type ResultFile } from '../report/folder.ts';
 import { PALETTE } from '../report/palette.ts';
 import { CHART_CSS } from '../report/svg.ts';
+import type { Scenario } from '../scenario/model.ts';
+import type { SliceFilm } from '../scene/film.ts';
+import type { SnapshotRegion } from '../trace/snapshots.ts';
 import type { Charts } from './charts.ts';
 import { byId, h } from './dom.ts';
 import type { EncoderRequest } from './encoder.ts';
 import { notify } from './notice.ts';
+import type { PackAnswer, PackRequest } from './packer.ts';
 import type { Panes } from './panes.ts';
 import { beside } from './runner.ts';
 import type { Store } from './store.ts';
@@ -18,6 +25,8 @@ export function download(name: string, content: Blob): void {
 }
 
 export const textBlob = (text: string, type: string) => new Blob([text], { type: `${type};charset=utf-8` });
+
+const bytesBlob = (bytes: Uint8Array, type: string) => new Blob([bytes as Uint8Array<ArrayBuffer>], { type });
 
 const asBlob = (canvas: HTMLCanvasElement) =>
   new Promise<Blob>((resolve, reject) =>
@@ -66,6 +75,12 @@ export class Saving {
       ),
       item('Result', 'all figures, result.json', () => this.result('result.json')),
       item('Traces', 'every observer and part, CSV', () => this.result('traces.csv')),
+      item('Traces for NumPy', 'the same as arrays, .npz', () => this.arrays()),
+      item('Charts as SVG', 'those of the report, a zip archive', () => this.chartFiles()),
+      item('Fields as VTK images', 'both fields on the planes, numbered .vti in a zip archive', () =>
+        this.fields('vti'),
+      ),
+      item('Fields as HDF5', 'both fields on the planes, with units and axes', () => this.fields('hdf5')),
       item('Picture of the panes', 'as shown, PNG', () => this.picture()),
       item('Pictures of the charts', 'as shown, one PNG', () => this.chartsPicture()),
       item('Film, WebM', 'the panes at all instants; takes as long as it will play', () => this.film()),
@@ -109,6 +124,54 @@ export class Saving {
 
   private async result(file: ResultFile): Promise<void> {
     download(`${nameOf(this.store)}-${file}`, textBlob(await written(this.store, file), TYPES[file]));
+  }
+
+  private arrays(): void {
+    const { result, traces } = this.store.state;
+    if (!result) throw new Error('there is no result yet; wait for the verdict.');
+    download(`${nameOf(this.store)}-traces.npz`, bytesBlob(writeTracesNpz(traces), 'application/zip'));
+  }
+
+  private chartFiles(): void {
+    const { result, traces, spectra } = this.store.state;
+    if (!result) throw new Error('there is no result yet; wait for the verdict.');
+    const files = Object.entries(chartFiles({ result, traces, spectra }));
+    const archive = zipSync(Object.fromEntries(files.map(([name, text]) => [name, strToU8(text)])));
+    download(`${nameOf(this.store)}-charts.zip`, bytesBlob(archive, 'application/zip'));
+  }
+
+  /** What the panes show, as numbers: both fields on all planes at all instants of the film. */
+  private async fields(format: PackRequest['format']): Promise<void> {
+    const { film, scenario } = this.store.state;
+    if (!film?.exactKnown || !scenario)
+      throw new Error('the fields are not all known yet; wait until the run is done.');
+    const words = fileWords(film.films.map(({ slice }) => slice.name));
+    const request: PackRequest = {
+      format,
+      title: scenario.title,
+      frame: { instants: film.instants, precision: 'single' },
+      films: film.films.map(({ slice, grid, exact, known }, n) => ({
+        region: regionOf(scenario, slice, words[n]!),
+        grid,
+        exact,
+        blank: slice.hole.map((hole, p) => (hole === 1 || known[p] !== 2 ? 1 : 0)),
+      })),
+    };
+    notify('Packing the fields; the page can be used meanwhile.');
+    const packer = new Worker(beside('./packer.js'), { type: 'module' });
+    try {
+      const answer = await new Promise<PackAnswer>((resolve, reject) => {
+        packer.onmessage = ({ data }) => resolve(data);
+        packer.onerror = ({ message }) => reject(new Error(message));
+        packer.postMessage(request);
+      });
+      if ('failed' in answer) throw new Error(answer.failed);
+      const name = format === 'vti' ? 'fields-vti.zip' : 'fields.h5';
+      const type = format === 'vti' ? 'application/zip' : 'application/x-hdf5';
+      download(`${nameOf(this.store)}-${name}`, bytesBlob(answer.bytes, type));
+    } finally {
+      packer.terminate();
+    }
   }
 
   private async picture(): Promise<void> {
@@ -235,4 +298,17 @@ async function imageOf(svg: SVGSVGElement, store: Store) {
   } finally {
     URL.revokeObjectURL(url);
   }
+}
+
+/** The cells of a slice, as files of fields describe them. */
+function regionOf({ grid }: Scenario, slice: SliceFilm['slice'], name: string): SnapshotRegion {
+  const each = (of: (a: 0 | 1 | 2) => number): [number, number, number] => [of(0), of(1), of(2)];
+  const { normal, layer, axes, nu, nv, stride } = slice;
+  return {
+    name,
+    counts: each((a) => (a === normal ? 1 : a === axes[0] ? nu : nv)),
+    origin: each((a) => grid.box.from[a] + (a === normal ? layer * grid.cellSize[a] : 0)),
+    spacing: each((a) => stride * grid.cellSize[a]),
+    cellSize: grid.cellSize,
+  };
 }

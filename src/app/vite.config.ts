@@ -17,6 +17,7 @@ export default defineConfig({
         coordinator: 'src/app/coordinator.ts',
         worker: 'src/run/worker.ts',
         encoder: 'src/app/encoder.ts',
+        packer: 'src/app/packer.ts',
         predictor: 'src/app/predictor.ts',
         survey: 'src/app/ladders/coordinator.ts',
         judge: 'src/app/judge/coordinator.ts',

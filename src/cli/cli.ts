@@ -303,7 +303,7 @@ async function writeAll(
     written.push(...Object.keys(files).map((file) => `${out}/${file}`));
   }
   if (out && options.charts) {
-    const charts = chartFiles(comparison);
+    const charts = chartFiles({ ...comparison, traces: tracesOf(comparison) });
     writeFolder(join(out, 'charts'), charts);
     written.push(`${Object.keys(charts).length} charts in ${join(out, 'charts')}`);
   }

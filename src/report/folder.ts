@@ -58,9 +58,7 @@ export function fileText(file: ResultFile, report: Report): string {
 }
 
 /** The charts of the report as files of their own: `error-by-distance.svg`, and after each observer's name its own. */
-export function chartFiles(findings: Findings): Record<string, string> {
-  const { result, spectra } = findings;
-  const traces = tracesOf(findings);
+export function chartFiles({ result, traces, spectra }: Omit<Report, 'command'>): Record<string, string> {
   const words = fileWords(result.observers.map(({ name }) => name));
   return Object.fromEntries([
     ...boxCharts(result).map(({ file, chart }) => [`${file}.svg`, chartFile(chart)]),

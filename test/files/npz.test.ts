@@ -1,27 +1,9 @@
 import { load } from 'npyjs';
 import { describe, expect, test } from 'vitest';
-import { fromBuffer, type ZipFile } from 'yauzl';
 import { npy, npz, writeTracesNpz } from '../../src/files/npz.ts';
 import { observerTraces } from '../../src/files/traces.ts';
 import { type FieldHistory, instantsOf, samplePoints } from '../../src/trace/trace.ts';
-
-/** The files of an archive, by a reader that is not the writer. */
-function unzipped(bytes: Uint8Array): Promise<Map<string, Uint8Array>> {
-  return new Promise((done, fail) => {
-    fromBuffer(Buffer.from(bytes), { lazyEntries: false }, (error, zip: ZipFile) => {
-      if (error) return fail(error);
-      const files = new Map<string, Uint8Array>();
-      zip.on('entry', (entry) =>
-        zip.openReadStream(entry, async (problem, stream) => {
-          if (problem) return fail(problem);
-          files.set(entry.fileName, Buffer.concat(await stream.toArray()));
-          if (files.size === zip.entryCount) done(files);
-        }),
-      );
-      zip.on('error', fail);
-    });
-  });
-}
+import { unzipped } from './unzipped.ts';
 
 /** Numbers by a reader of `.npy` files that is not the writer. */
 const numbers = async (bytes: Uint8Array) => {

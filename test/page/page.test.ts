@@ -19,6 +19,9 @@ import { boxProblem, questionOf } from '../../src/run/question.ts';
 import { EXAMPLES } from '../../src/scenario/examples.ts';
 import { loadScenario } from '../../src/scenario/load.ts';
 import { COMPONENTS, samplePoints } from '../../src/trace/trace.ts';
+import { readHdf5 } from '../files/hdf5Reader.ts';
+import { unzipped } from '../files/unzipped.ts';
+import { readImage } from '../files/vtiReader.ts';
 import { launchBrowser } from './browser.ts';
 import { finished, judged, openPage, settled, textOfPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
@@ -321,6 +324,37 @@ describe('the page, used', () => {
       expect(traces.map(({ component }) => component)).toEqual([...COMPONENTS]);
       const report = readFileSync(await save('Report'), 'utf8');
       expect(report).toContain(sentence);
+      // For other programs: what the command line writes, read back by readers of others' making.
+      const arrays = await unzipped(readFileSync(await save('Traces for NumPy')));
+      expect([...arrays.keys()]).toContain('grid.npy');
+      const svgs = await unzipped(readFileSync(await save('Charts as SVG')));
+      expect([...svgs.keys()]).toContain('A-E-trace.svg');
+      const shown = await page.evaluate(() => {
+        const { films, instants } = fieldassay.store.state.film!;
+        const { slice, grid } = films[0]!;
+        const cells = slice.nu * slice.nv;
+        const last = instants.count - 1;
+        return {
+          axes: slice.axes,
+          shape: [slice.nu, slice.nv],
+          time: instants.E[last]!,
+          count: instants.count,
+          planes: films.map(({ slice: { name } }) => name),
+          Ez: [...grid.subarray((last * 9 + 2) * cells, (last * 9 + 3) * cells)],
+        };
+      });
+      const vti = await unzipped(readFileSync(await save('Fields as VTK images')));
+      expect(vti.size).toBe(shown.planes.length * (shown.count + 1));
+      const number = String(shown.count).padStart(4, '0');
+      const image = readImage(vti.get(`${shown.planes[0]}-${number}.vti`)!);
+      expect(shown.axes.map((a) => image.extent[2 * a + 1]! + 1)).toEqual(shown.shape);
+      expect(image.fieldData.get('TimeValue')).toEqual([shown.time]);
+      const Ez = [...image.pointData.get('E grid (V/m)')!.values].filter((_, n) => n % 3 === 2);
+      expect(Ez).toEqual(shown.Ez);
+      const file = readHdf5(readFileSync(await save('Fields as HDF5')));
+      const { value, shape } = file.get(`${shown.planes[0]}/grid/Ez`);
+      expect(shape.reduce((product, n) => product * n, 1)).toBe(shown.count * shown.Ez.length);
+      expect([...value].slice(-shown.Ez.length)).toEqual(shown.Ez);
       const png = readFileSync(await save('Picture of the panes'));
       expect([...png.subarray(0, 8)]).toEqual([137, 80, 78, 71, 13, 10, 26, 10]);
       const charts = readFileSync(await save('Pictures of the charts'));
@@ -451,20 +485,20 @@ describe('the page, used', () => {
     const folder = mkdtempSync(join(tmpdir(), 'page-'));
     try {
       for (const [item, start] of [
-        [6, [0x1a, 0x45, 0xdf, 0xa3]],
-        [7, [137, 80, 78, 71]],
+        ['Film, WebM', [0x1a, 0x45, 0xdf, 0xa3]],
+        ['Film, animated PNG', [137, 80, 78, 71]],
       ] as const) {
         await page.getByRole('button', { name: 'Save ▾' }).click();
         const [download] = await Promise.all([
           page.waitForEvent('download', { timeout: 110_000 }),
-          page.getByRole('menuitem').nth(item).click(),
+          page.getByRole('menuitem', { name: item }).click(),
         ]);
         const path = join(folder, download.suggestedFilename());
         await download.saveAs(path);
         const bytes = readFileSync(path);
         expect([...bytes.subarray(0, 4)]).toEqual([...start]);
         expect(bytes.length).toBeGreaterThan(10_000);
-        if (item === 7) expect(bytes.includes('acTL')).toBe(true);
+        if (item === 'Film, animated PNG') expect(bytes.includes('acTL')).toBe(true);
       }
     } finally {
       rmSync(folder, { recursive: true, force: true });
