@@ -1,9 +1,10 @@
 import { loadScenario } from '../scenario/load.ts';
+import { textOf } from '../scenario/text.ts';
 import { h } from './dom.ts';
 import { notify } from './notice.ts';
 import type { Places } from './places.ts';
 import type { Side } from './side.ts';
-import { type Store, textOf } from './store.ts';
+import type { Store } from './store.ts';
 
 /** Larger files are no scenarios that a page should try to show. */
 const MOST_BYTES = 8 * 1024 * 1024;

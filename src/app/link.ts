@@ -1,5 +1,5 @@
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
-import { textOf } from './store.ts';
+import { textOf } from '../scenario/text.ts';
 
 /**
  * The address bar holds the scenario: `#example=NAME` for a built-in one as it is, else `#scenario=` and the text,

@@ -1,6 +1,7 @@
 import { canShareMemory } from '#platform';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
+import { textOf } from '../scenario/text.ts';
 import { type Reading, Scenery } from '../scene/scenery.ts';
 import { Charts } from './charts.ts';
 import { byId, h } from './dom.ts';
@@ -16,7 +17,7 @@ import { printReport } from './print.ts';
 import { Runner } from './runner.ts';
 import { Saving } from './save.ts';
 import { Side } from './side.ts';
-import { Store, textOf } from './store.ts';
+import { Store } from './store.ts';
 import { firstTheme, followTheme, switchTheme } from './theme.ts';
 import { Timeline } from './timeline.ts';
 import { buildToolbar } from './toolbar.ts';

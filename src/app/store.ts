@@ -4,6 +4,7 @@ import type { ObserverTrace } from '../files/traces.ts';
 import type { ObserverSpectra } from '../report/report.ts';
 import { loadScenario, type Problem } from '../scenario/load.ts';
 import type { Scenario } from '../scenario/model.ts';
+import { textOf } from '../scenario/text.ts';
 import type { Film } from '../scene/film.ts';
 import { VIEW, type View } from '../scene/scenery.ts';
 
@@ -167,11 +168,3 @@ export class Store {
 /** A scenario file's content, of any shape. */
 // biome-ignore lint/suspicious/noExplicitAny: what a user typed may hold anything; loadScenario judges it
 export type Draft = any;
-
-/** A scenario as the text of its file: short lists in one line, so that points read as points. */
-export function textOf(json: unknown): string {
-  return `${JSON.stringify(json, null, 2).replace(
-    /\[\n\s+((?:"[^"\n]*"|-?[\d.eE+-]+)(?:,\n\s+(?:"[^"\n]*"|-?[\d.eE+-]+))*)\n\s+\]/g,
-    (_, items: string) => `[${items.replace(/,\n\s+/g, ', ')}]`,
-  )}\n`;
-}

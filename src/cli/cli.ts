@@ -18,6 +18,7 @@ import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
+import { textOf } from '../scenario/text.ts';
 import { currentsCommand } from './currents.ts';
 import { addDeriveCommand } from './derive.ts';
 import { type ExactOptions, exactCommand, ROUTES, routesText } from './exact.ts';
@@ -246,7 +247,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       }
       if (!Object.hasOwn(EXAMPLES, name))
         throw new InputError(`there is no built-in scenario “${name}”; there are ${Object.keys(EXAMPLES).join(', ')}`);
-      process.stdout.write(`${JSON.stringify(EXAMPLES[name as ExampleName], null, 2)}\n`);
+      process.stdout.write(textOf(EXAMPLES[name as ExampleName]));
     });
   return program;
 }

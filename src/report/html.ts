@@ -1,5 +1,6 @@
 import { type ObserverResult, type Result, withinTolerance } from '../compare/result.ts';
 import { formatPercent, formatQuantity, formatUpperBound } from '../elementary/quantity.ts';
+import { textOf } from '../scenario/text.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
 import { boxCharts, type NamedChart, observerCharts } from './charts.ts';
 import { DEFINITIONS } from './definitions.ts';
@@ -162,5 +163,5 @@ function repeatSection({ scenario }: Result, command: string): Markup {
   return markup`<h2>To repeat it</h2>
 <p>Save the scenario below and run</p>
 <pre>${command}</pre>
-<pre>${JSON.stringify(scenario, null, 2)}</pre>`;
+<pre class="listing">${textOf(scenario)}</pre>`;
 }

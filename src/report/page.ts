@@ -30,7 +30,12 @@ pre{margin:0 0 12px;padding:12px;background:var(--trusted);border-radius:4px;fon
 .caution{margin-top:40px;padding:12px 16px;border:1px solid var(--line);border-radius:4px;max-width:none}
 ${CHART_CSS}
 @media (max-width:640px){dl{grid-template-columns:1fr}dd{margin-bottom:8px}}
-@media print{main{max-width:none;padding:0}body{font-size:12px}h1{font-size:20px}.charts,table,h3{break-inside:avoid}h2,h3{break-after:avoid}.charts{grid-template-columns:1fr 1fr}}`;
+@page{margin:14mm}
+@media print{main{max-width:none;padding:0}body{font-size:12px}h1{font-size:20px}p{max-width:none}
+h2,h3,thead{break-after:avoid}table,tr,figure,dt,dd,.caution,p{break-inside:avoid}h3+.charts{break-inside:avoid}
+.charts{grid-template-columns:1fr 1fr;gap:10px 16px}.scroll{overflow:visible;break-after:avoid}
+table{font-size:11px}th,tbody th{font-size:11px}th,td{padding:3px 10px 3px 0;white-space:normal;vertical-align:top}.number{white-space:nowrap}
+dl{font-size:11px;gap:2px 12px}dd{max-width:none}pre{padding:0;background:none;font-size:9.5px}pre.listing{columns:2;column-gap:24px}}`;
 
 /** Nothing is fetched and nothing runs: only the style in the file itself is used. */
 const POLICY = "default-src 'none'; style-src 'unsafe-inline'; base-uri 'none'; form-action 'none'";

@@ -2,6 +2,7 @@ import { boundaryText } from '../compare/boundaryWords.ts';
 import { paretoFront } from '../compare/front.ts';
 import { type Plan, type PlannedPlace, type PlannedSetup, planSchema } from '../compare/planResult.ts';
 import { formatPercent, formatQuantity, formatScientific } from '../elementary/quantity.ts';
+import { textOf } from '../scenario/text.ts';
 import { type Markup, markup, printable } from './markup.ts';
 import { page } from './page.ts';
 import { choiceColour } from './surveyCharts.ts';
@@ -232,6 +233,6 @@ ${plan.notes.map((note) => markup`<p class="muted">${note}</p>`)}
 <h2>To repeat it</h2>
 <pre>${command}</pre>
 <p>The scenario with the planned grid:</p>
-<pre>${JSON.stringify(plan.scenario, null, 2)}</pre>`,
+<pre class="listing">${textOf(plan.scenario)}</pre>`,
   );
 }

@@ -7,6 +7,7 @@ import {
   type SurveyResult,
 } from '../compare/surveyResult.ts';
 import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
+import { textOf } from '../scenario/text.ts';
 import { budgetRows } from './budgetRows.ts';
 import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
@@ -258,6 +259,6 @@ function repeatSection({ survey, environment, version }: SurveyResult, command: 
   return markup`<h2>To repeat it</h2>
 <p>Save the survey below and run</p>
 <pre>${command}</pre>
-<pre>${JSON.stringify(survey, null, 2)}</pre>
+<pre class="listing">${textOf(survey)}</pre>
 <p class="muted">Fieldassay ${version}${Object.entries(environment).map(([name, value]) => markup` · ${name} ${String(value)}`)}</p>`;
 }

@@ -3,9 +3,10 @@ import { firstEcho } from '../../src/app/echo.ts';
 import { lineOf } from '../../src/app/editor.ts';
 import { shownNumber, writtenNumber } from '../../src/app/fields.ts';
 import { linkOf, scenarioOfLink } from '../../src/app/link.ts';
-import { Store, textOf } from '../../src/app/store.ts';
+import { Store } from '../../src/app/store.ts';
 import { EXAMPLES } from '../../src/scenario/examples.ts';
 import { loadScenario } from '../../src/scenario/load.ts';
+import { textOf } from '../../src/scenario/text.ts';
 
 describe('scenarios as text', () => {
   test('every example is written so that it reads back the same', () => {
