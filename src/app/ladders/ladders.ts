@@ -1,12 +1,13 @@
 import { surveyFiles } from '../../report/surveyFolder.ts';
 import { EXAMPLES, type ExampleName } from '../../scenario/examples.ts';
+import { textOf } from '../../scenario/text.ts';
 import { h } from '../dom.ts';
 import { halves } from '../halves.ts';
 import { packedText, unpackedText } from '../link.ts';
 import { notify } from '../notice.ts';
 import type { Places, Started } from '../places.ts';
 import { download, textBlob } from '../save.ts';
-import { type Store, textOf } from '../store.ts';
+import type { Store } from '../store.ts';
 import { nameOf } from '../written.ts';
 import { Axes } from './axes.ts';
 import { SurveyModel } from './model.ts';

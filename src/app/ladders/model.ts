@@ -2,8 +2,9 @@ import { type SurveyResult, surveyResultSchema } from '../../compare/surveyResul
 import type { Problem } from '../../scenario/load.ts';
 import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
+import { textOf } from '../../scenario/text.ts';
 import { beside } from '../runner.ts';
-import { type Store, textOf } from '../store.ts';
+import type { Store } from '../store.ts';
 import { Folder } from './folder.ts';
 import type { Report, Request } from './messages.ts';
 
