@@ -33,7 +33,7 @@ export default defineConfig({
         test: {
           name: 'unit',
           include: ['test/**/*.test.ts'],
-          exclude: ['test/{verify,stress,page}/**'],
+          exclude: ['test/{verify,stress,page,library}/**'],
           testTimeout: 60_000,
         },
       },
@@ -41,7 +41,7 @@ export default defineConfig({
         extends: true,
         test: {
           name: 'page',
-          include: ['test/page/**/*.test.ts'],
+          include: ['test/{page,library}/**/*.test.ts'],
           testTimeout: 120_000,
           hookTimeout: 240_000,
           fileParallelism: false,

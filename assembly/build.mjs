@@ -1,6 +1,7 @@
 /**
  * Builds everything that is not in the repository: the WebAssembly kernels (as TypeScript modules that hold their bytes
- * in base64, in src/kernels/) and the bundles in dist/ (command line, worker, library; the page in dist/page/).
+ * in base64, in src/kernels/) and the bundles in dist/ (command line, worker, library; the page in dist/page/, the library for browsers in
+ * dist/library/).
  *
  *   node assembly/build.mjs             build what is out of date
  *   node assembly/build.mjs --kernels   the kernels alone
@@ -97,13 +98,24 @@ async function buildBundles(folder) {
   await run('vite build', 'vite/bin/vite.js', [...build, folder]);
   const page = [...build, join(folder, 'page'), '--config', 'src/app/vite.config.ts'];
   await run('vite build of the page', 'vite/bin/vite.js', page);
+  const library = [
+    'build',
+    '--logLevel',
+    'warn',
+    '--config',
+    'vite.library.config.ts',
+    '--outDir',
+    join(folder, 'library'),
+  ];
+  await run('vite build of the library', 'vite/bin/vite.js', [...library, '--emptyOutDir']);
+  await run('vite build of its worker', 'vite/bin/vite.js', [...library, '--emptyOutDir', 'false', '--mode', 'worker']);
 }
 
 try {
   const compiler = inRoot('asconfig.json', 'node_modules/assemblyscript/package.json');
   await refresh(join(root, 'src/kernels'), [...compiler, ...filesBelow(join(root, 'assembly'))], buildKernels);
   if (!process.argv.includes('--kernels')) {
-    const common = inRoot('package.json', 'package-lock.json', 'vite.config.ts');
+    const common = inRoot('package.json', 'package-lock.json', 'vite.config.ts', 'vite.library.config.ts');
     await refresh(join(root, 'dist'), [...common, ...filesBelow(join(root, 'src'))], buildBundles);
   }
 } catch (error) {

@@ -20,7 +20,7 @@ const BAR_LENGTH = 24;
 
 export interface TextOptions {
   /** colours by ANSI escapes; off where the output is no terminal or NO_COLOR is set */
-  readonly colour: boolean;
+  readonly colour?: boolean;
   /** files that were written, as they are to be shown */
   readonly written?: readonly string[];
 }
@@ -29,7 +29,7 @@ export interface TextOptions {
  * What `compare` prints: verdict, budget, observers, timings, and where the result lies. Whatever the scenario's names and
  * title hold, only this function's own escapes reach the terminal.
  */
-export function resultText(result: Result, { colour, written = [] }: TextOptions): string {
+export function resultText(result: Result, { colour = false, written = [] }: TextOptions = {}): string {
   const paint = (text: string, name: ColourName): string =>
     colour && ANSI[name] ? `\u001b[38;5;${ANSI[name]}m${text}\u001b[0m` : text;
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
