@@ -54,12 +54,15 @@ function quantitiesOf(scenario: Scenario, places: Places, signals: Comparison['s
     radiatedEnergy: energyOf(scenario),
     regions: isCheap ? regionsTowards(scenario, places, centre) : null,
     observers: signals
-      ? places.inside.map(({ name, at }, p) => ({
-          name,
-          largestPart: parts && p < MOST_OBSERVERS ? parts(at).largest : null,
-          E: vanishes(signals.exact, 'E', p, medium.impedance) ? null : tracePulse(signals.grid, signals.exact, 'E', p),
-          H: vanishes(signals.exact, 'H', p, medium.impedance) ? null : tracePulse(signals.grid, signals.exact, 'H', p),
-        }))
+      ? places.inside.map(({ name, at }, p) => {
+          const pulse = (field: 'E' | 'H') =>
+            vanishes(signals.exact, field, p, medium.impedance)
+              ? null
+              : tracePulse(signals.grid, signals.exact, field, p);
+          const E = pulse('E');
+          // Parts of a field that vanishes are but its rounding.
+          return { name, largestPart: parts && E && p < MOST_OBSERVERS ? parts(at).largest : null, E, H: pulse('H') };
+        })
       : [],
     pattern: null,
   };
