@@ -103,7 +103,7 @@ async function buildBundles(folder) {
     '--logLevel',
     'warn',
     '--config',
-    'vite.library.config.ts',
+    'assembly/library.vite.config.ts',
     '--outDir',
     join(folder, 'library'),
   ];
@@ -115,7 +115,7 @@ try {
   const compiler = inRoot('asconfig.json', 'node_modules/assemblyscript/package.json');
   await refresh(join(root, 'src/kernels'), [...compiler, ...filesBelow(join(root, 'assembly'))], buildKernels);
   if (!process.argv.includes('--kernels')) {
-    const common = inRoot('package.json', 'package-lock.json', 'vite.config.ts', 'vite.library.config.ts');
+    const common = inRoot('package.json', 'package-lock.json', 'vite.config.ts', 'assembly/library.vite.config.ts');
     await refresh(join(root, 'dist'), [...common, ...filesBelow(join(root, 'src'))], buildBundles);
   }
 } catch (error) {

@@ -49,10 +49,14 @@ function writeDeclarations(target) {
   rmSync(all, { recursive: true, force: true });
   rmSync(target, { recursive: true, force: true });
   const compiler = join(root, 'node_modules/typescript/bin/tsc');
-  const { status, stdout } = spawnSync(process.execPath, [compiler, '-p', 'tsconfig.types.json', '--outDir', all], {
-    cwd: root,
-    encoding: 'utf8',
-  });
+  const { status, stdout } = spawnSync(
+    process.execPath,
+    [compiler, '-p', 'assembly/types.tsconfig.json', '--outDir', all],
+    {
+      cwd: root,
+      encoding: 'utf8',
+    },
+  );
   if (status !== 0) throw new Error(`the declarations could not be written\n${stdout}`);
   const source = join(all, 'src');
   const seen = new Set();

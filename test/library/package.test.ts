@@ -76,8 +76,8 @@ describe('the package', () => {
     expect(manifest.engines).toEqual({ node: '>=20.19' });
   });
 
-  test.each(readdirSync('examples').sort())('example %s runs', (name) => {
-    cpSync(join(project, 'examples', name), join(user, name));
+  test.each(readdirSync('test/library/examples').sort())('example %s runs', (name) => {
+    cpSync(join(project, 'test/library/examples', name), join(user, name));
     const { status, stdout, stderr } = node(name, 'written');
     expect(status, stderr).toBe(0);
     console.log(stdout);

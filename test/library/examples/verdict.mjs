@@ -1,4 +1,4 @@
-// Both solvers on a scenario of one's own, and what their differences say.   node examples/verdict.mjs
+// Both solvers on a scenario of one's own, and what their differences say.   node verdict.mjs
 import { compare, Refusal, resultText } from 'fieldassay';
 
 const scenario = {

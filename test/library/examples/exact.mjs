@@ -1,4 +1,4 @@
-// The exact field of prescribed currents, anywhere, with a bound of its own error.   node examples/exact.mjs
+// The exact field of prescribed currents, anywhere, with a bound of its own error.   node exact.mjs
 import { EXAMPLES, fieldAt, loadScenario } from 'fieldassay';
 
 const loaded = loadScenario(EXAMPLES['bench-cable-pulse']);

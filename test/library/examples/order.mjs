@@ -1,4 +1,4 @@
-// The same pulse on three grids: by how much does the lattice's error fall?   node examples/order.mjs
+// The same pulse on three grids: by how much does the lattice's error fall?   node order.mjs
 import { compare, EXAMPLES } from 'fieldassay';
 
 const { grid, ...question } = EXAMPLES['small-loop'];
