@@ -276,7 +276,7 @@ const freeProblem: typeof boxProblem = (question, samples) => {
 
 /** What rounding leaves of E anywhere, V/m: the total's floor, which is relative to the exact field. */
 function floorOf({ budget, norms }: Result): number {
-  return (budget.total.floor ?? 0) * norms.E.scale.L2 * Math.sqrt(3);
+  return (budget.total.floor ?? 0) * (norms.E.scale?.L2 ?? 0) * Math.sqrt(3);
 }
 
 /** Still radiating: 1 % of the peak, as in the comparison. */

@@ -23,15 +23,17 @@ const normsOfField = z.object({
   relativeL2: fraction('√(Σ w (grid − exact)²)/√(Σ w exact²) over samples outside the mask').nullable(),
   relativeL1: fraction('Σ w |grid − exact| / Σ w |exact|').nullable(),
   relativeLinf: fraction('max |grid − exact| / max |exact|').nullable(),
-  standardError: fraction('standard error of relativeL2 that sampling the volume leaves'),
+  standardError: fraction('standard error of relativeL2 that sampling the volume leaves').nullable(),
   scale: z
     .object({ L1: z.number(), L2: z.number(), Linf: z.number(), unit: z.enum(['V/m', 'A/m']) })
-    .describe('the exact field: mean, root mean square and peak of its components, in `unit`'),
+    .describe('the exact field: mean, root mean square and peak of its components, in `unit`; null without samples')
+    .nullable(),
   samples: z.int().describe('component samples used'),
   masked: z.int().describe('points left out, nearer to a source than the mask'),
   largest: z
     .object({ component: z.enum(COMPONENTS), at: vector('place'), time: inUnit('s', 'instant') })
-    .describe('where and when the difference is largest'),
+    .describe('where and when the difference is largest; null without samples')
+    .nullable(),
 });
 
 const budgetEntry = z.object({
@@ -268,17 +270,17 @@ export const resultJsonSchema = (): object => z.toJSONSchema(resultSchema);
 /** A number for JSON, which knows no NaN. */
 export const orNull = (value: number): number | null => (Number.isFinite(value) ? value : null);
 
-/** The norms of a field as they are written. */
+/** The norms of a field as they are written. A mask as large as the box leaves no samples. */
 export function normsResult(L1: Norm, L2: SampledNorm, Linf: MaximumNorm, masked: number): Result['norms']['E'] {
   return {
     relativeL2: orNull(L2.value),
     relativeL1: orNull(L1.value),
     relativeLinf: orNull(Linf.value),
-    standardError: L2.standardError,
-    scale: { L1: L1.scale, L2: L2.scale, Linf: Linf.scale, unit: L2.unit },
+    standardError: L2.samples > 0 ? L2.standardError : null,
+    scale: L2.samples > 0 ? { L1: L1.scale, L2: L2.scale, Linf: Linf.scale, unit: L2.unit } : null,
     samples: L2.samples,
     masked,
-    largest: { component: Linf.component, at: Linf.at, time: Linf.time },
+    largest: Linf.samples > 0 ? { component: Linf.component, at: Linf.at, time: Linf.time } : null,
   };
 }
 

@@ -121,8 +121,9 @@ ${
 function normsSection({ norms }: Result): Markup {
   const row = (field: 'E' | 'H') => {
     const { relativeL1, relativeL2, relativeLinf, standardError, scale, samples, masked, largest } = norms[field];
-    const place = largest.at.map((x) => formatQuantity(x, 'm')).join(', ');
-    return markup`<tr><th scope="row">${field}</th><td class="number">${percentOr(relativeL1)}</td><td class="number">${percentOr(relativeL2)} ± ${percentOr(standardError)}</td><td class="number">${percentOr(relativeLinf)}</td><td class="number">${formatQuantity(scale.L2, scale.unit)}</td><td class="number">${samples}</td><td class="number">${masked}</td><td class="muted">${largest.component} at ${place}, ${formatQuantity(largest.time, 's')}</td></tr>`;
+    const place = (at: readonly number[]) => at.map((x) => formatQuantity(x, 'm')).join(', ');
+    const where = largest && `${largest.component} at ${place(largest.at)}, ${formatQuantity(largest.time, 's')}`;
+    return markup`<tr><th scope="row">${field}</th><td class="number">${percentOr(relativeL1)}</td><td class="number">${percentOr(relativeL2)} ± ${percentOr(standardError)}</td><td class="number">${percentOr(relativeLinf)}</td><td class="number">${scale ? formatQuantity(scale.L2, scale.unit) : '—'}</td><td class="number">${samples}</td><td class="number">${masked}</td><td class="muted">${where ?? 'no samples: the mask covers the box'}</td></tr>`;
   };
   return markup`<h2>Over the box, outside the mask</h2>
 <div class="scroll"><table>

@@ -189,6 +189,18 @@ describe('compare', () => {
   });
 });
 
+describe('a mask as large as the box', () => {
+  test('leaves norms without values, and everything else', () => {
+    const coarse = small();
+    const masked = write('masked.json', { ...coarse, grid: { ...coarse.grid, mask: '1 m' } });
+    const { status, stdout } = run('compare', masked, '--json', '--threads', '2');
+    expect(status).not.toBe(3);
+    const { norms, observers } = resultSchema.parse(JSON.parse(stdout));
+    expect(norms.E).toMatchObject({ relativeL2: null, scale: null, largest: null, samples: 0 });
+    expect(observers[0]!.E!.relativeL2).toBeGreaterThan(0);
+  });
+});
+
 describe('frames', () => {
   test('pictures over the whole run and the same as a film; the last shows the field, the difference and their texts', () => {
     const { status, stdout } = run('compare', write('filmed.json', small()), '--frames', 'new/frames');
