@@ -27,7 +27,7 @@ export async function unpackedText(packed: string): Promise<string> {
   return new TextDecoder('utf-8', { fatal: true }).decode(await through(bytes, new DecompressionStream('deflate-raw')));
 }
 
-/** The fields of an address: `#key=value&key&…`. */
+/** The fields of an address: `#key=value&key&…`. A value whose escapes are damaged stands as it is, for its reader to refuse. */
 export function fieldsOf(hash: string): ReadonlyMap<string, string> {
   const fields = hash
     .replace(/^#/, '')
@@ -36,9 +36,17 @@ export function fieldsOf(hash: string): ReadonlyMap<string, string> {
   return new Map(
     fields.map((field) => {
       const at = field.indexOf('=');
-      return at < 0 ? [field, ''] : [field.slice(0, at), decodeURIComponent(field.slice(at + 1))];
+      return at < 0 ? [field, ''] : [field.slice(0, at), unescaped(field.slice(at + 1))];
     }),
   );
+}
+
+function unescaped(value: string): string {
+  try {
+    return decodeURIComponent(value);
+  } catch {
+    return value;
+  }
 }
 
 /** A scenario's address with further fields. */
