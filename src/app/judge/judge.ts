@@ -84,7 +84,7 @@ class JudgePlace {
       'label',
       { className: 'axis' },
       this.staggered,
-      'Components at their own places',
+      h('b', {}, ' Components at their own places'),
       h('span', { className: 'hint' }, 'In the Yee cell of the observer’s nearest node, not at the observer itself.'),
     );
     for (const label of [...options, staggered]) label.addEventListener('change', () => this.run());
@@ -104,7 +104,11 @@ class JudgePlace {
       h(
         'div',
         { className: 'halves' },
-        h('section', { className: 'asked', 'aria-label': 'How the file is read' }, ...options, staggered),
+        h(
+          'section',
+          { className: 'asked', 'aria-label': 'How the file is read' },
+          h('div', { className: 'controls' }, ...options, staggered),
+        ),
         h('section', { className: 'found', 'aria-label': 'What is found', tabindex: '0' }, bar, this.results),
       ),
     );
@@ -220,7 +224,7 @@ class JudgePlace {
 /** A line of text with its name and a hint. */
 function field(name: string, placeholder: string, hint: string) {
   const input = h('input', { type: 'text', placeholder, spellcheck: false });
-  const label = h('label', { className: 'axis' }, name, input, h('span', { className: 'hint' }, hint));
+  const label = h('label', { className: 'axis' }, h('b', {}, name), input, h('span', { className: 'hint' }, hint));
   return {
     label,
     get value() {
