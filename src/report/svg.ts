@@ -167,7 +167,8 @@ function xAxis(axis: Axis, { x, left, right, bottom, width, height }: ChartLayou
 /** The ticks whose texts do not run into one before them. */
 function apart(ticks: readonly Tick[], x: Position): Tick[] {
   let end = Number.NEGATIVE_INFINITY;
-  return ticks.filter(({ value, text }) => {
+  const inOrder = ticks.toSorted((a, b) => x(a.value) - x(b.value));
+  return inOrder.filter(({ value, text }) => {
     const half = widthOf(text) / 2;
     if (x(value) - half < end) return false;
     end = x(value) + half + 6;

@@ -33,6 +33,15 @@ describe('charts', () => {
     expect(ticks(text)).toEqual(expect.arrayContaining(['0', '0.5', '3', '−1', '1']));
   });
 
+  it('label an axis at the places that are asked for, in whatever order they come', () => {
+    const x = { label: 'h', unit: '', scale: 'log' as const, domain: [4, 12] as const, ticks: [10, 7, 5] };
+    expect(ticks(chartSvg({ ...chart, x, series: [] }).text).filter((t) => ['5', '7', '10'].includes(t))).toEqual([
+      '5',
+      '7',
+      '10',
+    ]);
+  });
+
   it('label a logarithmic axis by 1, 2, 5 over a short range and by decades over a long one', () => {
     const over = (domain: [number, number]) =>
       ticks(chartSvg({ ...chart, x: { label: 'r', unit: '', scale: 'log', domain }, series: [] }).text).filter(
