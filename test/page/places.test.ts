@@ -273,6 +273,8 @@ test('places are reached by keyboard, kept in the address, and fit into a small 
   await page.getByRole('heading', { name: /predicted/ }).waitFor();
   await page.reload();
   await page.waitForFunction(() => globalThis.fieldassay?.places.current === 'plan');
+  // the address is unpacked meanwhile
+  await page.waitForFunction(() => fieldassay.store.state.json !== undefined);
   expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
   // Compare is not run where nobody sees it
   expect(await page.evaluate(() => fieldassay.store.state.run.status)).toBe('idle');
