@@ -48,7 +48,8 @@ type Answer = (request: IncomingMessage, response: ServerResponse, refuse: () =>
 /**
  * Serves the page on the loopback address at /, and the files of a result folder: its report at /report.html, all of them
  * under /results/, which itself tells what there is: a survey that runs elsewhere is followed by it. Only to requests that
- * name the loopback host, so that no other site can reach it through a browser (DNS rebinding).
+ * name the loopback host, so that no other site can reach it through a browser (DNS rebinding), and, where they tell from
+ * which site they come (`Origin`), come from this one.
  * @param folder of results; null for none
  * @param port 0 for any free one
  * @throws Error when a folder is missing or the port is taken
@@ -69,8 +70,11 @@ export async function servePage(folder: string | null, port: number): Promise<{ 
       response.writeHead(status, { 'Content-Type': 'text/plain; charset=utf-8' });
       response.end(`${text}\n`);
     };
-    if (![`127.0.0.1:${own}`, `localhost:${own}`, `[::1]:${own}`].includes(request.headers.host ?? ''))
-      return refuse(421, 'This address serves the loopback host only.');
+    const hosts = [`127.0.0.1:${own}`, `localhost:${own}`, `[::1]:${own}`];
+    if (!hosts.includes(request.headers.host ?? '')) return refuse(421, 'This address serves the loopback host only.');
+    const { origin } = request.headers;
+    if (origin !== undefined && !hosts.some((host) => origin === `http://${host}`))
+      return refuse(403, 'Pages of another origin get nothing here.');
     if (request.method !== 'GET' && request.method !== 'HEAD') return refuse(405, 'Only GET and HEAD.');
     // A folder's hidden files are nobody's, however their names are written.
     if (/\/(\.|%2e)/i.test(path)) return refuse(404, 'No such file here.');

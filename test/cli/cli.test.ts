@@ -406,6 +406,15 @@ describe('serve', () => {
         cases: [],
       });
       expect((await ask('/', { host: 'example.org' })).status).toBe(421);
+      // Pages of other sites tell where they come from; so do those on other ports of this machine, and local files (null).
+      for (const origin of ['http://example.org', 'null', '', `https://${url.host}`, 'http://127.0.0.1:1'])
+        for (const path of ['/', '/results/', '/results/result.json']) {
+          const refused = await ask(path, { origin });
+          expect([origin, path, refused.status]).toEqual([origin, path, 403]);
+          expect(refused.headers['access-control-allow-origin']).toBeUndefined();
+        }
+      for (const host of [url.host, `localhost:${url.port}`])
+        expect((await ask('/results/result.json', { host, origin: `http://${host}` })).status).toBe(200);
       for (const path of [
         '/../s.json',
         '/results/../../s.json',
