@@ -1,18 +1,30 @@
-import { mkdirSync, renameSync, rmSync, writeFileSync } from 'node:fs';
+import { mkdirSync, realpathSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { basename, dirname, join } from 'node:path';
 
 /**
- * Writes a file so that nobody ever reads half of it: under a temporary name beside its place, then renamed.
+ * Writes a file so that nobody ever reads half of it: under a temporary name beside its place, then renamed. A link stays
+ * one: the file it leads to is replaced. What is no file of a disk (a device, a pipe) is written to as it is, since a
+ * rename would put a file in its place.
  * @throws Error that names the file when the folder is missing, read-only or full
  */
 export function writeWhole(path: string, content: string | Uint8Array): void {
+  try {
+    const there = statSync(path, { throwIfNoEntry: false });
+    if (there && !there.isFile()) writeFileSync(path, content);
+    else replaceFile(there ? realpathSync(path) : path, content);
+  } catch (error) {
+    throw unwritable(path, error);
+  }
+}
+
+function replaceFile(path: string, content: string | Uint8Array): void {
   const temporary = join(dirname(path), `.${basename(path)}.${process.pid}.part`);
   try {
     writeFileSync(temporary, content);
     renameSync(temporary, path);
   } catch (error) {
     rmSync(temporary, { force: true });
-    throw unwritable(path, error);
+    throw error;
   }
 }
 
