@@ -2,7 +2,14 @@
 import { readField, writeField } from '../../src/fdtd/fields.ts';
 import { FACES_OF, latticeCells, wallOf } from '../../src/fdtd/layout.ts';
 import type { GridProblem } from '../../src/fdtd/problem.ts';
-import { type GridOptions, type GridResult, type GridRun, lead, prepareGridRun } from '../../src/fdtd/run.ts';
+import {
+  type GridOptions,
+  type GridResult,
+  type GridRun,
+  type LeadHooks,
+  lead,
+  prepareGridRun,
+} from '../../src/fdtd/run.ts';
 import { keptCount, keptIndex } from '../../src/fdtd/samples.ts';
 import { randomFields } from './problems.ts';
 import { reference } from './reference.ts';
@@ -36,6 +43,7 @@ export interface Comparison {
 
 /**
  * @param help what starts followers, where there are any
+ * @param cancelled as in `LeadHooks`
  * @returns the first difference between kernel and reference, bit for bit, in words; undefined when there is none
  */
 export function compareWithReference(
@@ -43,6 +51,7 @@ export function compareWithReference(
   options: GridOptions,
   seed: number,
   help: (run: GridRun) => void = () => {},
+  cancelled: NonNullable<LeadHooks['cancelled']> = () => false,
 ): Comparison {
   const run = prepareGridRun(problem, options);
   const n = run.setup.layout.cells;
@@ -51,6 +60,7 @@ export function compareWithReference(
   respectWalls(problem, starts, run.setup.layout.bias);
   help(run);
   const result = lead(run, {
+    cancelled,
     onStart(setup) {
       for (const [f, values] of starts.entries()) writeField(setup, f, values);
     },
