@@ -27,7 +27,7 @@ import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
 import { addJudgeCommand } from './judge.ts';
-import { quoted, writeFolder, writeWhole } from './output.ts';
+import { quoted, unwritable, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
 import { addWorkCommand } from './queue.ts';
@@ -53,24 +53,35 @@ export async function runCli(args: readonly string[]): Promise<number> {
   const onSignal = () => interrupt.abort(new Interrupted());
   process.on('SIGINT', onSignal);
   process.on('SIGTERM', onSignal);
+  let unprinted: Error | undefined;
+  const onUnprinted = (error: NodeJS.ErrnoException) => {
+    // Whoever reads a pipe may have read enough.
+    if (error.code !== 'EPIPE') unprinted = unwritable('standard output', error);
+  };
+  // It stays: a pipe tells of its reader's end at any time.
+  process.stdout.on('error', onUnprinted);
   const program = commands(interrupt.signal, (code) => {
     status = code;
   });
   try {
     await program.parseAsync(args, { from: 'user' });
-    return status;
   } catch (error) {
-    if (error instanceof CommanderError) return error.exitCode === 0 ? DONE : REFUSED;
-    if (error instanceof Interrupted) {
-      process.stderr.write(`${error.message}\n`);
-      return INTERRUPTED;
-    }
-    process.stderr.write(`${(error as Error)?.message ?? error}\n`);
-    return error instanceof Refusal || error instanceof InputError ? REFUSED : FAILED;
+    status = statusOf(error);
   } finally {
     process.off('SIGINT', onSignal);
     process.off('SIGTERM', onSignal);
   }
+  // A file tells of its errors a turn later.
+  await new Promise((next) => setImmediate(next));
+  return unprinted ? statusOf(unprinted) : status;
+}
+
+/** Tells of an error what is not told yet, and with which status the process is to end. */
+function statusOf(error: unknown): number {
+  if (error instanceof CommanderError) return error.exitCode === 0 ? DONE : REFUSED;
+  process.stderr.write(`${(error as Error)?.message ?? error}\n`);
+  if (error instanceof Interrupted) return INTERRUPTED;
+  return error instanceof Refusal || error instanceof InputError ? REFUSED : FAILED;
 }
 
 const SCHEMAS = {

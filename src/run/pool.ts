@@ -4,6 +4,32 @@ import type { Tasks } from './worker.ts';
 
 type TaskName = keyof Tasks;
 
+/** What each task is, where its worker died. */
+const DOING: Readonly<Record<TaskName, string>> = {
+  leadGrid: 'the grid',
+  marchGrid: 'the grid',
+  followGrid: 'the grid',
+  leadFilm: 'the film of the grid',
+  filmAlone: 'the film of the grid',
+  filmExact: 'the film of the exact field',
+  exactField: 'the exact field',
+  griddedField: 'the exact field of the gridded currents',
+  predictLattice: 'the prediction of the lattice’s error',
+  searchPlan: 'the search for a plan',
+  judge: 'the judgement of the traces',
+};
+
+/** The error of a worker that did not live to answer. Its own has the machinery's words over many lines. */
+function died(task: TaskName, threads: number, error: Error): Error {
+  const [, code] = /exitCode: `(\d+)`/.exec(error.message) ?? [];
+  const [, reason] = /^Workerpool Worker error: (.*)/.exec(error.message) ?? [];
+  return new Error(
+    `a worker thread ended before it was done with ${DOING[task]} (${reason ?? (code ? `exit code ${code}` : 'for no reason given')}); ` +
+      `mostly it is memory that runs out. Run it again with fewer threads than ${threads}, raise grid.cellSize or shrink grid.box.`,
+    { cause: error },
+  );
+}
+
 /**
  * A team of worker threads that outlives single tasks. Tasks run in the order they are given; up to `threads` at once.
  */
@@ -19,14 +45,18 @@ export class Team {
   /**
    * Runs one task in a worker.
    * @param onEvent receives what the task emits meanwhile (progress)
-   * @throws Error what the task threw, or that the worker died
+   * @throws Error what the task threw, or that the worker died, and what may help
    */
   async run<T extends TaskName>(
     task: T,
     args: Parameters<Tasks[T]>,
     onEvent?: (event: unknown) => void,
   ): Promise<Awaited<ReturnType<Tasks[T]>>> {
-    return await this.#pool.exec(task, args as unknown[], onEvent ? { on: onEvent } : {});
+    try {
+      return await this.#pool.exec(task, args as unknown[], onEvent ? { on: onEvent } : {});
+    } catch (error) {
+      throw error instanceof workerpool.TerminateError ? died(task, this.threads, error) : error;
+    }
   }
 
   /** Ends all workers at once, whatever they are doing. */
