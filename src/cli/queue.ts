@@ -21,9 +21,8 @@ connection pooler between must keep sessions.
 
 Ctrl-C once: no more cases are taken, and it ends when those that run are done. Twice, or SIGTERM: they are given back.
 
-Examples:
-  PGPASSWORD=… fieldassay work --queue postgres://surveys@db.example/fieldassay
-  fieldassay work --queue "postgres://surveys@db.example:5433/fieldassay?sslmode=verify-full" --threads 4
+Example: PGPASSWORD=… fieldassay work --queue postgres://surveys@db.example/fieldassay
+Example: fieldassay work --queue "postgres://surveys@db.example:5433/fieldassay?sslmode=verify-full" --threads 4
 `;
 
 /** Adds \`work\`. */

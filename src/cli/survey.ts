@@ -33,11 +33,10 @@ Many machines: \`--queue\` hands the cases to workers (see \`fieldassay work --h
 stopped, it leaves the cases with them, and the same command goes on collecting. Where a batch scheduler starts the
 processes instead, each runs one share with \`--shard\`, and \`--merge\` joins what they wrote.
 
-Examples:
-  fieldassay survey survey.json --out survey
-  PGPASSWORD=… fieldassay survey survey.json --out survey --queue postgres://surveys@db.example/fieldassay
-  fieldassay survey survey.json --out parts --shard 3/16
-  fieldassay survey --merge parts
+Example: fieldassay survey survey.json --out survey
+Example: PGPASSWORD=… fieldassay survey survey.json --out survey --queue postgres://surveys@db.example/fieldassay
+Example: fieldassay survey survey.json --out parts --shard 3/16
+Example: fieldassay survey --merge parts
 `;
 
 /**
