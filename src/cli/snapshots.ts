@@ -133,6 +133,13 @@ function imageSink(folder: string, regions: readonly SnapshotRegion[], frame: Sn
   };
 }
 
+/** The system's own words out of the HDF5 library's account of what failed, which is long; its first line where there are none. */
+function plainReason(error: unknown): unknown {
+  if (!(error instanceof Error) || 'code' in error) return error;
+  const [, reason] = /error message = '([^']+)'/.exec(error.message) ?? [];
+  return new Error(reason ?? error.message.split('\n')[0]);
+}
+
 async function hdf5Sink(
   folder: string,
   { title }: Scenario,
@@ -140,14 +147,16 @@ async function hdf5Sink(
   frame: SnapshotFrame,
 ): Promise<Sink> {
   const hdf5 = await import('h5wasm/node');
-  await hdf5.ready;
+  const module = await hdf5.ready;
+  // Else the library tells of what fails on standard error, at length, and goes on.
+  module.activate_throwing_error_handler();
   const path = join(folder, 'fields.h5');
   const part = join(folder, `.fields.h5.${process.pid}.part`);
   const guarded = <T>(act: () => T): T => {
     try {
       return act();
     } catch (error) {
-      throw unwritable(path, error);
+      throw unwritable(path, plainReason(error));
     }
   };
   guarded(() => mkdirSync(folder, { recursive: true }));

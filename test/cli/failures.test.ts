@@ -26,6 +26,8 @@ beforeAll(() => {
   // For everybody to enter: some of it is done as somebody else.
   chmodSync(folder, 0o755);
   put('small.json', JSON.stringify({ ...SMALL, duration: '2.4 ns' }));
+  // Fields that are larger than its other files.
+  put('fine.json', JSON.stringify({ ...SMALL, grid: { ...SMALL.grid, cellSize: '8 mm' }, duration: '2.4 ns' }));
   put('survey.json', JSON.stringify({ scenario: 'small.json', vary: { 'grid.courant': [0.5, 0.6] } }));
   put('points.csv', 'x,y,z,t\n0.05,0.02,0.01,2e-9\n');
   // The first worker to be started ends at its first task, as one does that the system kills.
@@ -86,6 +88,20 @@ describe('a disk that is full', () => {
     ['compare', 4, 'result.json', [...COMPARE, '--out', 'full-1'], []],
     ['pictures', 4, 'frame-01.png', [...COMPARE, '--frames', 'full-2'], []],
     ['judge', 4, 'result.json', ['judge', 'small.json', '--traces', 'sound/traces.csv', '--out', 'full-3'], []],
+    [
+      'images',
+      300,
+      '.vti',
+      ['compare', 'fine.json', '--out', 'full-4', '--snapshots', 'vti', '--region', 'box', '--stride', '1'],
+      ['fields', 'report.html', 'result.json', 'traces.csv'],
+    ],
+    [
+      'HDF5',
+      300,
+      'fields.h5',
+      ['compare', 'fine.json', '--out', 'full-5', '--snapshots', 'hdf5', '--region', 'box', '--stride', '1'],
+      ['report.html', 'result.json', 'traces.csv'],
+    ],
   ] as const)('%s: status 3, the file and what to do; what is there is whole', (_, size, file, args, left) => {
     const { status, said, stderr } = runWithin(size, ...args);
     expect(said).toMatch(/^full-\d\S* could not be written: .*; choose another place for it$/);
