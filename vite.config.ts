@@ -15,6 +15,8 @@ export default defineConfig({
     ssr: true,
     target: 'node20',
     minify: false,
+    // The notices of all packages that the bundles hold go where the bundles go.
+    license: { fileName: 'NOTICES.md' },
     rollupOptions: {
       input: { main: 'src/cli/main.ts', worker: 'src/run/worker.ts', index: 'src/index.ts' },
       output: { format: 'es', entryFileNames: '[name].js', chunkFileNames: 'shared/[name]-[hash].js' },

@@ -10,6 +10,7 @@ export default defineConfig(({ mode }) => ({
     target: 'es2022',
     modulePreload: false,
     minify: false,
+    license: { fileName: mode === 'worker' ? 'NOTICES-worker.md' : 'NOTICES.md' },
     lib: {
       entry: mode === 'worker' ? 'src/run/worker.ts' : 'src/index.ts',
       formats: ['es'],

@@ -1,4 +1,4 @@
-import { DEFINITIONS } from '../report/definitions.ts';
+import { DEFINITIONS, GUIDANCE } from '../report/definitions.ts';
 import { QUANTITIES } from '../scene/quantity.ts';
 import { h } from './dom.ts';
 import type { Panes } from './panes.ts';
@@ -160,6 +160,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
         ),
       ),
     ),
+    prose(GUIDANCE.text),
     h('h2', {}, 'Reading the panes'),
     h(
       'p',
@@ -176,7 +177,7 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
       {},
       'The trust map shows e(p) = √(Σ|grid − exact|²)/√(Σ|exact|²) over the instants of the film, each component at its own place and time. The red line is the tolerance; dashed lines are the closest and the farthest trusted distance, the dashed box what the walls leave.',
     ),
-    definitions(),
+    prose(DEFINITIONS.text),
     h('form', { method: 'dialog' }, h('button', {}, 'Close')),
   );
   document.body.append(dialog);
@@ -211,10 +212,10 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
   return { help };
 }
 
-/** What the figures are, in the report's words. */
-function definitions(): HTMLElement {
+/** The report's own markup, which holds nothing that a user wrote. */
+function prose(text: string): HTMLElement {
   const element = h('div', { className: 'definitions' });
-  element.innerHTML = DEFINITIONS.text;
+  element.innerHTML = text;
   return element;
 }
 

@@ -11,6 +11,7 @@ export default defineConfig({
   build: {
     target: 'es2022',
     modulePreload: false,
+    license: { fileName: 'NOTICES.md' },
     rollupOptions: {
       input: {
         index: 'src/app/index.html',

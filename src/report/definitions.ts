@@ -18,3 +18,16 @@ export const DEFINITIONS = markup`<h2>What the figures are</h2>
 <dt>rise time</dt><dd>10 to 90 % of the strongest component’s peak, grid against exact.</dd>
 <dt>static rest</dt><dd>Relative error of the field that charge leaves behind after the last arrival.</dd>
 </dl>`;
+
+/** How to read what the page says, which lever to pull, and what an exact integral is silent about: the page's help. */
+export const GUIDANCE = markup`<h2>How to read the verdict</h2>
+<p>“Within 5 %: from … to …” names the distances from the source between which 95 % of the places in every distance bin are within the tolerance, for E and H. “≥ … (box edge)” claims nothing beyond the box. The four parts say which lever to pull:</p>
+<dl>
+<dt>boundary</dt><dd>More layers, another wall, or more clearance to it.</dd>
+<dt>lattice</dt><dd>A smaller cell.</dd>
+<dt>gridding</dt><dd>A source that lies on grid lines, or a smaller cell.</dd>
+<dt>quadrature</dt><dd>None: it is the integral’s own error.</dd>
+</dl>
+<p>Ladders &amp; walls measures these levers case by case, Plan predicts the cheapest set-up that meets a tolerance, and Judge holds the traces of another solver against the same exact field.</p>
+<h2>What the integral cannot tell</h2>
+<p>It is exact for currents that are known beforehand, in one homogeneous medium, along filaments without a radius. It tells nothing of scatterers, of materials inside the box, of currents that the field itself drives, or of the field at the surface of a thick wire. Not for compliance or safety decisions.</p>`;

@@ -76,6 +76,29 @@ describe('the package', () => {
     expect(manifest.engines).toEqual({ node: '>=20.19' });
   });
 
+  test('ships the notices of every package that its bundles hold', () => {
+    const shipped = files.filter((path) => /NOTICES[^/]*\.md$/.test(path)).sort();
+    expect(shipped).toEqual([
+      'dist/NOTICES.md',
+      'dist/library/NOTICES-worker.md',
+      'dist/library/NOTICES.md',
+      'dist/page/NOTICES.md',
+    ]);
+    const text = shipped.map((path) => readFileSync(join(user, 'node_modules/fieldassay', path), 'utf8')).join('\n');
+    const imported = new Set<string>();
+    for (const name of readdirSync('src', { recursive: true, encoding: 'utf8' })) {
+      if (!name.endsWith('.ts') || name.endsWith('.d.ts') || /^kernels|config\.ts$/.test(name)) continue;
+      const source = readFileSync(join('src', name), 'utf8');
+      for (const [, specifier] of source.matchAll(/^import (?!type )(?:[^;]*? from )?'([^'.#][^']*)'/gm))
+        if (!specifier!.startsWith('node:')) imported.add(/^(@[^/]+\/)?[^/]+/.exec(specifier!)![0]);
+    }
+    expect(imported.size).toBeGreaterThan(10);
+    const named = new Set([...text.matchAll(/^## (\S+) - /gm)].map(([, name]) => name!));
+    // What is not bundled comes as a package of its own, with its own notice.
+    const own = Object.keys(manifest.dependencies as object);
+    expect([...imported].filter((name) => !named.has(name) && !own.includes(name))).toEqual([]);
+  });
+
   test.each(readdirSync('test/library/examples').sort())('example %s runs', (name) => {
     cpSync(join(project, 'test/library/examples', name), join(user, name));
     const { status, stdout, stderr } = node(name, 'written');
