@@ -20,7 +20,10 @@ export async function packedText(text: string): Promise<string> {
   return btoa(binary).replace(/\+/g, '-').replace(/\//g, '_').replace(/=+$/, '');
 }
 
-/** The text that `packedText` packed. @throws Error where it is damaged */
+/** A link may hold a text so long, bytes: some hundred times a large scenario. What a short link unpacks to is not bounded by it. */
+const LONGEST = 8e6;
+
+/** The text that `packedText` packed. @throws Error where it is damaged, RangeError where it is beyond all scenarios */
 export async function unpackedText(packed: string): Promise<string> {
   const binary = atob(packed.replace(/-/g, '+').replace(/_/g, '/'));
   const bytes = Uint8Array.from(binary, (character) => character.charCodeAt(0));
@@ -88,7 +91,17 @@ async function scenarioOfResults(): Promise<string> {
 async function through(
   bytes: Uint8Array<ArrayBuffer>,
   stream: CompressionStream | DecompressionStream,
-): Promise<Uint8Array> {
-  const out = new Blob([bytes]).stream().pipeThrough(stream);
-  return new Uint8Array(await new Response(out).arrayBuffer());
+): Promise<Uint8Array<ArrayBuffer>> {
+  const pieces: Uint8Array<ArrayBuffer>[] = [];
+  let length = 0;
+  const reader = new Blob([bytes]).stream().pipeThrough(stream).getReader();
+  for (let read = await reader.read(); !read.done; read = await reader.read()) {
+    pieces.push(read.value);
+    length += read.value.length;
+    if (length > LONGEST) {
+      await reader.cancel();
+      throw new RangeError(`the text is longer than ${LONGEST / 1e6} MB`);
+    }
+  }
+  return new Uint8Array(await new Blob(pieces).arrayBuffer());
 }

@@ -1,3 +1,4 @@
+import { deflateRawSync } from 'node:zlib';
 import fc from 'fast-check';
 import { expect, test } from 'vitest';
 import { fieldsOf, packedText, scenarioOfLink, unpackedText, withFields } from '../../src/app/link.ts';
@@ -19,6 +20,15 @@ test('a text and the fields of a place come back from their address as they were
     ),
     { seed: 51, numRuns: 500 },
   );
+});
+
+test('a short link that unpacks to more than any scenario is refused, not unpacked', async () => {
+  const packed = (bytes: number) => deflateRawSync(Buffer.alloc(bytes, 'a')).toString('base64url');
+  expect((await unpackedText(packed(7e6))).length).toBe(7e6);
+  const bomb = packed(2e8);
+  expect(bomb.length).toBeLessThan(1e6);
+  await expect(unpackedText(bomb)).rejects.toThrow('longer than 8 MB');
+  await expect(scenarioOfLink(`#scenario=${bomb}`)).rejects.toThrow('damaged');
 });
 
 test('any address holds a scenario, none, or is refused in words', async () => {
