@@ -1,6 +1,9 @@
 import { spawn } from 'node:child_process';
+import { mkdtempSync, rmSync, writeFileSync } from 'node:fs';
+import { tmpdir } from 'node:os';
+import { join } from 'node:path';
 import { createInterface } from 'node:readline';
-import { expect, test } from 'vitest';
+import { expect, onTestFinished, test } from 'vitest';
 
 /** For so long comparisons follow each other in one process, minutes. */
 const MINUTES = 8;
@@ -19,9 +22,11 @@ const PROGRAM = `
 `;
 
 test('memory stays flat over comparisons without end', async () => {
-  const child = spawn(process.execPath, ['--expose-gc', '--input-type=module', '-e', PROGRAM], {
-    stdio: ['ignore', 'pipe', 'inherit'],
-  });
+  const folder = mkdtempSync(join(tmpdir(), 'soak-'));
+  onTestFinished(() => rmSync(folder, { recursive: true, force: true }));
+  const program = join(folder, 'soak.mjs');
+  writeFileSync(program, PROGRAM);
+  const child = spawn(process.execPath, ['--expose-gc', program], { stdio: ['ignore', 'pipe', 'inherit'] });
   const taken: Record<'rss' | 'heapUsed' | 'arrayBuffers' | 'external', number>[] = [];
   for await (const line of createInterface(child.stdout)) taken.push(JSON.parse(line));
   expect(child.exitCode ?? (await new Promise((done) => child.once('close', done)))).toBe(0);
