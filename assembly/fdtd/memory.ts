@@ -50,7 +50,6 @@ export function lattice(cellsX: i32, cellsY: i32, cellsZ: i32): void {
 }
 
 /** Offset of cell (0, j, k), the same in every field. */
-// @ts-ignore: decorator
 @inline
 export function rowOffset(j: i32, k: i32): usize {
   return origin + <usize>k * planeBytes + <usize>j * rowBytes;

@@ -99,7 +99,6 @@ export function layersZ(
 }
 
 /** Δ → Δ/κ + ψ with ψ ← bψ + aΔ; ψ is member C of the pair at q. */
-// @ts-ignore: decorator
 @inline
 function stretched<C>(difference: v128, q: usize, b: v128, a: v128, inverseKappa: v128): v128 {
   const psi = v128.add<Real>(
@@ -111,7 +110,6 @@ function stretched<C>(difference: v128, q: usize, b: v128, a: v128, inverseKappa
 }
 
 /** a + c (first − second); in the FUSED build product and sum share one rounding where the processor can. */
-// @ts-ignore: decorator
 @inline
 function accumulated(a: v128, c: v128, first: v128, second: v128): v128 {
   if (FUSED) return v128.relaxed_madd<Real>(c, v128.sub<Real>(first, second), a);
@@ -124,7 +122,6 @@ function accumulated(a: v128, c: v128, first: v128, second: v128): v128 {
  * three components are done one after the other, each stored before the next is begun: measured 8 % faster than
  * taking all differences first.
  */
-// @ts-ignore: decorator
 @inline
 function advance<F, W, X, Y, Z>(
   p: usize, py: usize, pz: usize, cx: v128, cy: v128, cz: v128, w: usize,
@@ -168,7 +165,6 @@ function advance<F, W, X, Y, Z>(
 }
 
 /** `bytes` of a row from p on, all with the same switches; nothing when there are none. */
-// @ts-ignore: decorator
 @inline
 function span<F, W, X, Y, Z>(
   p: usize, bytes: i32, cx: v128, cy: v128, cz: v128, w: usize,
@@ -269,7 +265,6 @@ function bands<F, X, Z>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cx: Real, cy
  * Updates vectors [x0, x1) of rows [j0, j1), j0 < j1, of plane k, with coefficients c_x, c_y, c_z (0 for a component
  * that a wall holds).
  */
-// @ts-ignore: decorator
 @inline
 export function update<F>(k: i32, j0: i32, j1: i32, x0: i32, x1: i32, cx: Real, cy: Real, cz: Real): void {
   const layered = k < lowZ || k >= nz - highZ;

@@ -15,7 +15,6 @@ export function samples(count: i32, addresses: usize): void {
 }
 
 /** Reads rows [j0, j1) of plane k into each group's buffer of this step. */
-// @ts-ignore: decorator
 @inline
 export function sample(k: i32, j0: i32, j1: i32, step: usize): void {
   for (let g = 0; g < groups; g++) {

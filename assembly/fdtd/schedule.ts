@@ -56,60 +56,50 @@ export function sweep(thread: i32, threads: i32, steps: usize, count: i32, gathe
 
 /** A block as the driver lays it out, in 64 bytes. */
 const BLOCK_BYTES: usize = 64;
-// @ts-ignore: decorator
 @inline
 function firstStep(block: usize): usize {
   return load<u32>(block);
 }
 /** T. */
-// @ts-ignore: decorator
 @inline
 function stepCount(block: usize): i32 {
   return load<i32>(block, 4);
 }
 /** Counts blocks from 1 over the whole run. */
-// @ts-ignore: decorator
 @inline
 function serial(block: usize): i32 {
   return load<i32>(block, 8);
 }
 /** Tiles of all blocks before this one. */
-// @ts-ignore: decorator
 @inline
 function tilesBefore(block: usize): i32 {
   return load<i32>(block, 12);
 }
-// @ts-ignore: decorator
 @inline
 function tileCount(block: usize): i32 {
   return load<i32>(block, 16);
 }
 /** Rows of a tile. */
-// @ts-ignore: decorator
 @inline
 function tileRows(block: usize): i32 {
   return load<i32>(block, 20);
 }
 /** Row at which tile 0 would start at t = 1, were it not the first. */
-// @ts-ignore: decorator
 @inline
 function tileOrigin(block: usize): i32 {
   return load<i32>(block, 24);
 }
 /** Planes that any step of the block updates. */
-// @ts-ignore: decorator
 @inline
 function blockFrom(block: usize): i32 {
   return load<i32>(block, 28);
 }
-// @ts-ignore: decorator
 @inline
 function blockTo(block: usize): i32 {
   return load<i32>(block, 32);
 }
 
 /** The progress counter of tile m: serial·PER + wavefronts done, so that it only ever grows. */
-// @ts-ignore: decorator
 @inline
 function progressOf(block: usize, m: i32): usize {
   return PROGRESS + (<usize>((serial(block) & (PROGRESS_BLOCKS - 1)) * PROGRESS_TILES + m) << 6);

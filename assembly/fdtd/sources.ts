@@ -16,7 +16,6 @@ export function sources(starts: usize, addresses: usize): void {
 }
 
 /** Drives rows [j0, j1) of plane k. */
-// @ts-ignore: decorator
 @inline
 export function drive(k: i32, j0: i32, j1: i32, step: usize): void {
   const row = rowStart + (<usize>(k * ny) << 2);

@@ -6,53 +6,44 @@ export const STEP_BYTES: usize = 64;
 export const SAMPLE_GROUPS: i32 = 8;
 
 /** The cells to update: planes [z0, z1), rows [y0, y1), vectors [x0, x1). */
-// @ts-ignore: decorator
 @inline
 export function planeFrom(step: usize): i32 {
   return load<i32>(step);
 }
-// @ts-ignore: decorator
 @inline
 export function planeTo(step: usize): i32 {
   return load<i32>(step, 4);
 }
-// @ts-ignore: decorator
 @inline
 export function rowFrom(step: usize): i32 {
   return load<i32>(step, 8);
 }
-// @ts-ignore: decorator
 @inline
 export function rowTo(step: usize): i32 {
   return load<i32>(step, 12);
 }
-// @ts-ignore: decorator
 @inline
 export function vectorFrom(step: usize): i32 {
   return load<i32>(step, 16);
 }
-// @ts-ignore: decorator
 @inline
 export function vectorTo(step: usize): i32 {
   return load<i32>(step, 20);
 }
 
 /** Address of what each source edge loses in this step. */
-// @ts-ignore: decorator
 @inline
 export function sourceValues(step: usize): usize {
   return load<u32>(step, 24);
 }
 
 /** Counts steps from 0 over the whole run. */
-// @ts-ignore: decorator
 @inline
 export function stepNumber(step: usize): i32 {
   return load<i32>(step, 28);
 }
 
 /** Address to which sample group g writes in this step; 0 when it does not read this step. */
-// @ts-ignore: decorator
 @inline
 export function sampleBuffer(step: usize, g: i32): usize {
   return load<u32>(step + (<usize>g << 2), 32);

@@ -2,7 +2,6 @@
 import { BARRIER, STOP } from './memory';
 
 /** Asked on the leading thread now and then; anything but 0 stops the run on all threads. */
-// @ts-ignore: decorator
 @external("env", "interrupted")
 declare function interrupted(): i32;
 

@@ -77,7 +77,6 @@ export function walls(linearFaces: i32, mirroredFaces: i32, table: usize, bias: 
   highZ = max(1, reach(Z_HIGH));
 }
 
-// @ts-ignore: decorator
 @inline
 function record(face: i32): usize {
   return records + <usize>face * FACE_BYTES;
@@ -92,21 +91,18 @@ function reach(face: i32): i32 {
 // --------------------------------------------------------------------------------------------- what must go together
 
 /** A cut between rows, moved off those that go together in an update of e. */
-// @ts-ignore: decorator
 @inline
 export function electricCut(row: i32): i32 {
   return row <= lowY ? 0 : row > ny - highY ? ny : row;
 }
 
 /** The same for h, whose row is needed with the row of e above it. */
-// @ts-ignore: decorator
 @inline
 export function magneticCut(row: i32): i32 {
   return row < lowY ? 0 : row > ny - highY ? ny : row;
 }
 
 /** Whether the rows below a cut are all rows there are, because of those that go together. */
-// @ts-ignore: decorator
 @inline
 export function reachesHighWall(cut: i32): bool {
   return cut > ny - highY;
@@ -118,7 +114,6 @@ export function planeCut(plane: i32): i32 {
 }
 
 /** Planes below this one wait for it in an update of e; those of h wait for the one before it. */
-// @ts-ignore: decorator
 @inline
 export function waiting(): i32 {
   return lowZ;
@@ -131,26 +126,22 @@ const CLOSE = 1;
 const KEEP = 2;
 
 /** Points of a line, and lines, of each component: the nodes of the lattice along and across. */
-// @ts-ignore: decorator
 @inline
 function linePoints(face: i32): usize {
   return <usize>(face < 2 ? ny + 1 : nx + 1);
 }
-// @ts-ignore: decorator
 @inline
 function lineCount(face: i32): usize {
   return <usize>(face < 4 ? nz + 1 : ny + 1);
 }
 
 /** Bytes from the start of a wall's table to a point: component c, line q, point m. */
-// @ts-ignore: decorator
 @inline
 function pointAt(face: i32, c: i32, q: i32, m: i32): usize {
   return ((<usize>c * lineCount(face) + <usize>q) * linePoints(face) + <usize>m) * CELL;
 }
 
 /** All points of one layer, both components. */
-// @ts-ignore: decorator
 @inline
 function layerBytes(face: i32): usize {
   return 2 * lineCount(face) * linePoints(face) * CELL;
@@ -361,14 +352,12 @@ function keepDeep(k: i32, j0: i32, j1: i32, n: i32): void {
 // ------------------------------------------------------------------------------------------------- when it is done
 
 /** Before planes [first, k] of e, rows [j0, j1), take step n: all that go together are still as they were. */
-// @ts-ignore: decorator
 @inline
 export function noteTogether(k: i32, j0: i32, j1: i32, n: i32): void {
   if (linear & (1 << Z_LOW) && k == lowZ) endFace(NOTE, Z_LOW, j0, j1, n);
 }
 
 /** Before plane k of e does. */
-// @ts-ignore: decorator
 @inline
 export function notePlane(k: i32, j0: i32, j1: i32, n: i32): void {
   if (!linear) return;
@@ -380,14 +369,12 @@ export function notePlane(k: i32, j0: i32, j1: i32, n: i32): void {
 }
 
 /** After it has, sources included. */
-// @ts-ignore: decorator
 @inline
 export function closePlane(k: i32, j0: i32, j1: i32, n: i32): void {
   if (linear) sideFaces(CLOSE, linear, k, j0, j1, n);
 }
 
 /** After planes [first, k] of e have. */
-// @ts-ignore: decorator
 @inline
 export function closeTogether(first: i32, k: i32, j0: i32, j1: i32, n: i32): void {
   if (!linear) return;
@@ -409,7 +396,6 @@ function keepSides(first: i32, k: i32, j0: i32, j1: i32, n: i32): void {
  * After rows [j0, j1) of planes [first, k] of h have changed: h half a cell before the outermost node becomes minus h half
  * a cell behind the node beside it, so that tangential h vanishes on that node.
  */
-// @ts-ignore: decorator
 @inline
 export function mirror(first: i32, k: i32, j0: i32, j1: i32): void {
   if (mirrored) mirrorFaces(first, k, j0, j1);

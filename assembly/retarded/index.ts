@@ -59,7 +59,6 @@ export function setWindow(first: i32, doubleWeights: usize, singleWeights: usize
 }
 
 /** Weights of the p nodes for an element at place F (in cells), left in `scratch`; returns the index of the first node. */
-// @ts-ignore: decorator
 @inline
 function place(F: f64): usize {
   let index: i32;
@@ -105,7 +104,6 @@ function place(F: f64): usize {
 }
 
 /** weights of w′ += amount · scratch */
-// @ts-ignore: decorator
 @inline
 function depositOne(index: usize, amount: f64): void {
   let weights = singles + (index << 3);
@@ -117,7 +115,6 @@ function depositOne(index: usize, amount: f64): void {
 }
 
 /** interleaved weights += amounts · scratch */
-// @ts-ignore: decorator
 @inline
 function depositTwo(index: usize, amounts: v128): void {
   let weights = doubles + (index << 4);
@@ -128,7 +125,6 @@ function depositTwo(index: usize, amounts: v128): void {
   }
 }
 
-// @ts-ignore: decorator
 @inline
 function pairOf(first: f64, second: f64): v128 {
   return f64x2.replace_lane(f64x2.splat(first), 1, second);
@@ -236,7 +232,6 @@ export function setObserver(x: f64, y: f64, z: f64, cellsAtFirst: f64, cellsPerL
 }
 
 /** The rule for a stretch of `length` at squared distance `distance2`; the last one serves whatever is nearer. */
-// @ts-ignore: decorator
 @inline
 function gaussRule(distance2: f64, length: f64): usize {
   let rule = gaussRules;
@@ -273,7 +268,6 @@ let foot: f64 = 0;
 /** The observer's coordinate that is across both the edge and the component (for B). */
 let across: f64 = 0;
 
-// @ts-ignore: decorator
 @inline
 function lookAtEdge(entry: usize, axis: i32, acrossAxis: i32): void {
   const x = observerX - load<f64>(entry);
@@ -329,7 +323,6 @@ export function spreadEdges(
 }
 
 /** One Gauss node, `off` from the foot, for the pairs from `start` to `end`. */
-// @ts-ignore: decorator
 @inline
 function depositEdgeNode(
   off: f64,

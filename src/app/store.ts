@@ -8,8 +8,6 @@ import { textOf } from '../scenario/text.ts';
 import type { Film } from '../scene/film.ts';
 import { VIEW, type View } from '../scene/scenery.ts';
 
-export { textOf } from '../scenario/text.ts';
-
 /** How a run stands. */
 export interface RunState {
   readonly status: 'idle' | 'running' | 'done' | 'cancelled' | 'refused' | 'failed';

@@ -14,7 +14,7 @@ import { type Markup, markup, printable } from './markup.ts';
 import { page } from './page.ts';
 import type { ObserverSpectra } from './report.ts';
 import { type Chart, chartSvg, type Series } from './svg.ts';
-import { bandText, columns, percentOr, quantityOr, signedPercentOr } from './words.ts';
+import { bandText, columns, percentOr, quantityOr, sectionsText, signedPercentOr } from './words.ts';
 
 /** A judgement with the signals behind it. */
 export interface JudgeFindings {
@@ -132,7 +132,7 @@ export function judgeText(result: Judgement, { colour, written = [] }: JudgeText
   const lines = columns(
     [HEAD, ...rows.map(({ name, field, cells }) => [`${printable(name)}, ${field}`, ...cells.map(printable)])],
     ['left', ...HEAD.slice(2).map(() => 'right' as const), 'left'],
-  ).map((line) => line.trimEnd());
+  );
   const tried = shownCauses(result);
   const sections = [
     [
@@ -151,15 +151,12 @@ export function judgeText(result: Judgement, { colour, written = [] }: JudgeText
           ...columns(
             tried.map(({ explained, words }) => [shareText(explained), printable(words)]),
             ['right', 'left'],
-          ).map((line) => line.trimEnd()),
+          ),
         ],
     result.notes.map((note) => `Note: ${printable(note)}`),
     written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],
   ];
-  return `${sections
-    .filter((section) => section.length > 0)
-    .map((section) => section.join('\n'))
-    .join('\n\n')}\n`;
+  return sectionsText(sections);
 }
 
 const shareText = (explained: number): string => (explained <= 0 ? 'none' : formatPercent(explained, 3));

@@ -7,7 +7,7 @@ import { type Markup, markup, printable } from './markup.ts';
 import { page } from './page.ts';
 import { choiceColour } from './surveyCharts.ts';
 import { type Chart, chartSvg, type Series } from './svg.ts';
-import { columns, countText, percentOr } from './words.ts';
+import { columns, countText, percentOr, sectionsText } from './words.ts';
 
 /** The files of a plan's folder: the figures, the scenario with the planned grid, the report. */
 export const PLAN_FILES = ['plan.json', 'planned-scenario.json', 'plan.html'] as const;
@@ -80,32 +80,51 @@ export function planText(plan: Plan, { colour, written = [] }: PlanTextOptions):
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
   const right = Array.from({ length: 6 }, () => 'right' as const);
   const setups = (list: readonly PlannedSetup[]) =>
-    columns([SETUP_HEAD, ...list.map(setupCells)], ['right', 'left', ...right]).map((line) => line.trimEnd());
+    columns([SETUP_HEAD, ...list.map(setupCells)], ['right', 'left', ...right]);
   const sections = [
     [...(plan.title === '' ? [] : [printable(plan.title)]), strong(printable(plan.sentence)), ...costLines(plan)],
     [
       `Error of E${plan.band === null ? '' : `, worst sixth-octave band up to ${formatQuantity(plan.band, 'Hz')}`}`,
-      ...columns([PLACE_HEAD, ...plan.places.map((place) => placeCells(place).map(printable))], ['left', ...right]).map(
-        (line) => line.trimEnd(),
-      ),
+      ...columns([PLACE_HEAD, ...plan.places.map((place) => placeCells(place).map(printable))], ['left', ...right]),
     ],
     ['Trade-off: the same walls with other cells', ...setups(plan.curve)],
     plan.alternatives.length < 2 ? [] : ['Cheapest with each boundary', ...setups(plan.alternatives)],
     plan.notes.map((note) => `Note: ${printable(note)}`),
     written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],
   ];
-  return `${sections
-    .filter((lines) => lines.length > 0)
-    .map((lines) => lines.join('\n'))
-    .join('\n\n')}\n`;
+  return sectionsText(sections);
+}
+
+/** Axes of predicted error against work, wide enough for all points and the tolerance. */
+function costAxes(
+  points: readonly (readonly [work: number, error: number])[],
+  tolerance: number,
+  workText: (work: number) => string,
+): Pick<Chart, 'x' | 'y'> {
+  const works = points.map(([work]) => work);
+  const errors = [...points.map(([, error]) => error), tolerance];
+  return {
+    x: {
+      label: 'cells × steps',
+      unit: '',
+      scale: 'log',
+      domain: [Math.min(...works) / 1.3, Math.max(...works) * 1.3],
+      format: workText,
+    },
+    y: {
+      label: 'predicted error of E',
+      unit: '',
+      scale: 'log',
+      domain: [Math.min(...errors) / 1.5, Math.max(...errors) * 1.5],
+      format: (error) => formatPercent(error),
+    },
+  };
 }
 
 /** Predicted error against work: what finer cells buy. */
 export function tradeOffChart({ curve, alternatives, chosen, tolerance }: Plan): Chart | null {
   if (!chosen || curve.length === 0) return null;
   const all = [...curve, ...alternatives];
-  const errors = [...all.map(({ predicted }) => predicted), tolerance];
-  const works = all.map(({ work }) => work);
   const dots = ([, error]: readonly [number, number]): 'within' | 'outside' =>
     error > tolerance ? 'outside' : 'within';
   const point = ({ work, predicted }: PlannedSetup) => [work, predicted] as const;
@@ -118,20 +137,7 @@ export function tradeOffChart({ curve, alternatives, chosen, tolerance }: Plan):
   return {
     title: 'What finer cells buy',
     description: 'Predicted error of E, the worst place, against cells times steps; red where outside the tolerance.',
-    x: {
-      label: 'cells × steps',
-      unit: '',
-      scale: 'log',
-      domain: [Math.min(...works) / 1.3, Math.max(...works) * 1.3],
-      format: (value) => formatQuantity(value, ''),
-    },
-    y: {
-      label: 'predicted error of E',
-      unit: '',
-      scale: 'log',
-      domain: [Math.min(...errors) / 1.5, Math.max(...errors) * 1.5],
-      format: (value) => formatPercent(value),
-    },
+    ...costAxes(all.map(point), tolerance, (work) => formatQuantity(work, '')),
     series,
     marks: [
       { axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` },
@@ -169,26 +175,11 @@ export function frontsChart(
   });
   const marked = [chosen, standing].flatMap((each) => (each ? [[each.work, each.predicted] as const] : []));
   const all = [...series.flatMap(({ points }) => points), ...marked];
-  const errors = [...all.map(([, error]) => error), tolerance];
-  const works = all.map(([work]) => work);
   return {
     title: 'What an error costs',
     description:
       'Predicted error of E, the worst place, against cells times steps: of each boundary the set-ups that no other beats; red where outside the tolerance.',
-    x: {
-      label: 'cells × steps',
-      unit: '',
-      scale: 'log',
-      domain: [Math.min(...works) / 1.3, Math.max(...works) * 1.3],
-      format: (value) => formatScientific(value, 1),
-    },
-    y: {
-      label: 'predicted error of E',
-      unit: '',
-      scale: 'log',
-      domain: [Math.min(...errors) / 1.5, Math.max(...errors) * 1.5],
-      format: (value) => formatPercent(value),
-    },
+    ...costAxes(all, tolerance, (work) => formatScientific(work, 1)),
     series,
     marks: [
       { axis: 'y', at: tolerance, label: `tolerance ${formatPercent(tolerance, 3)}` },

@@ -2,7 +2,7 @@ import { isDone, type LadderResult, type SurveyResult } from '../compare/surveyR
 import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
 import { printable } from './markup.ts';
 import { caseName, cautions, countsText, headline, ladderSentences, levelText, wallsSentences } from './surveyWords.ts';
-import { columns, percentOr } from './words.ts';
+import { columns, percentOr, sectionsText } from './words.ts';
 
 /** What `survey` prints: the choice, ladders, walls, what went wrong, and where the rest lies. */
 export function surveyText(result: SurveyResult, written: readonly string[]): string {
@@ -58,10 +58,7 @@ export function surveyText(result: SurveyResult, written: readonly string[]): st
     trouble.map((each) => `${each.status}: ${printable(caseName(each.settings))}: ${printable(each.reason ?? '')}`),
     written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],
   ];
-  return `${sections
-    .filter((lines) => lines.length > 0)
-    .map((lines) => lines.map((line) => line.trimEnd()).join('\n'))
-    .join('\n\n')}\n`;
+  return sectionsText(sections);
 }
 
 /** One ladder in full; of several a line each. */

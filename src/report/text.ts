@@ -4,7 +4,16 @@ import { type BudgetRow, budgetRows } from './budgetRows.ts';
 import { printable } from './markup.ts';
 import type { ColourName } from './palette.ts';
 import { quantitySentences } from './quantities.ts';
-import { bandText, columns, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
+import {
+  bandText,
+  columns,
+  gridText,
+  percentOr,
+  quantityOr,
+  sectionsText,
+  signedPercentOr,
+  timingRows,
+} from './words.ts';
 
 /** Nearest entries of the 256-colour set to the palette's colours. */
 const ANSI: Readonly<Partial<Record<ColourName, number>>> = {
@@ -49,17 +58,14 @@ export function resultText(result: Result, { colour = false, written = [] }: Tex
     result.quantities ? quantitySentences(result.quantities).map(printable) : [],
     [
       `Grid        ${gridText(result)}`,
-      ...columns(timingRows(result).map((row) => [...row])).map((line, i) =>
-        `${i === 0 ? 'Time' : '    '}      ${line}`.trimEnd(),
+      ...columns(timingRows(result).map((row) => [...row])).map(
+        (line, i) => `${i === 0 ? 'Time' : '    '}      ${line}`,
       ),
     ],
     result.notes.map((note) => `Note: ${printable(note)}`),
     written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],
   ];
-  return `${sections
-    .filter((lines) => lines.length > 0)
-    .map((lines) => lines.join('\n'))
-    .join('\n\n')}\n`;
+  return sectionsText(sections);
 }
 
 type Paint = (text: string, name: ColourName) => string;

@@ -48,6 +48,13 @@ export function gridText({ grid }: Result): string {
   );
 }
 
+/** Sections of a text for the terminal, those without lines left out, an empty line between. */
+export const sectionsText = (sections: readonly (readonly string[])[]): string =>
+  `${sections
+    .filter((lines) => lines.length > 0)
+    .map((lines) => lines.map((line) => line.trimEnd()).join('\n'))
+    .join('\n\n')}\n`;
+
 /** Rows as lines, cells padded to their columns' widths, two spaces in front and between. */
 export function columns(rows: readonly (readonly string[])[], align: readonly ('left' | 'right')[] = []): string[] {
   const width = (text: string) => [...text].length;

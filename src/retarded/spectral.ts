@@ -3,7 +3,7 @@ import { firstArrival } from '../scenario/distance.ts';
 import { JUMP_NOTED } from '../scenario/jump.ts';
 import type { Dipole, Filament, Medium, Profile, Source, Vec3 } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
-import { refuseOnSource } from './field.ts';
+import { type FieldValue, refuseOnSource } from './field.ts';
 import { longestPart } from './panels.ts';
 import { viewOf } from './pieceView.ts';
 import { prepareSources } from './prepare.ts';
@@ -26,15 +26,7 @@ import { type Complex, type Drive, linesOf } from './waveformSpectrum.ts';
  */
 
 /** The field at one instant and bounds on the Euclidean norm of its errors; SI units. */
-export interface SpectralValue {
-  readonly E: Vec3;
-  readonly H: Vec3;
-  readonly B: Vec3;
-  readonly phi: number;
-  readonly A: Vec3;
-  readonly errorE: number;
-  readonly errorH: number;
-}
+export type SpectralValue = Pick<FieldValue, 'E' | 'H' | 'B' | 'phi' | 'A' | 'errorE' | 'errorH'>;
 
 /** Periods of the line spectrum in a window: e^(at) rises over a window by the fourth root of 1/ALIAS. */
 const PERIODS = 4;

@@ -16,6 +16,7 @@ import { parseArgs } from 'node:util';
 import { setFlagsFromString } from 'node:v8';
 import { runInNewContext } from 'node:vm';
 import { bundle, startFollowers } from '../fdtd/bundle.mjs';
+import { median } from './median.mjs';
 
 const NATIVE = fileURLToPath(new URL('native/yee.c', import.meta.url));
 const FLAGS = ['-O3', '-march=native', '-ffast-math', '-fopenmp'];
@@ -34,9 +35,6 @@ function native({ program }, job, size, repeats, threads) {
   if (status !== 0) throw new Error(`native/yee.c ended with status ${status}`);
   return JSON.parse(stdout);
 }
-
-const sorted = (list) => list.toSorted((a, b) => a - b);
-const median = (list) => sorted(list)[list.length >> 1];
 
 /** Steps that take a native thread about a third of a second, in whole blocks. */
 const stepsFor = (cells) => Math.min(512, Math.max(16, 8 * Math.round(16e6 / cells ** 3)));

@@ -14,6 +14,7 @@ import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { parseArgs } from 'node:util';
 import { bundle } from '../fdtd/bundle.mjs';
+import { median } from './median.mjs';
 
 const MAIN = fileURLToPath(new URL('../../dist/main.js', import.meta.url));
 const WORKERS = 4;
@@ -37,7 +38,6 @@ const survey = (first) => ({
   vary: { 'grid.courant': Array.from({ length: 12 }, (_, n) => first + (3 * n) / 100) },
 });
 
-const median = (list) => list.toSorted((a, b) => a - b)[list.length >> 1];
 const range = (list) => [Math.min(...list), Math.max(...list)];
 
 function start(args, cwd) {

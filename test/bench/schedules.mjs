@@ -5,14 +5,13 @@
 import { setFlagsFromString } from 'node:v8';
 import { runInNewContext } from 'node:vm';
 import { bundle, startFollowers } from '../fdtd/bundle.mjs';
+import { median } from './median.mjs';
 
 const THREADS = 2;
 const SCANNED = { sizes: [128, 200, 320], blockSteps: [4, 8, 12, 16], tilesPerThread: [1, 2, 4] };
 const SIZES = [128, 160, 200, 256, 320, 400];
 /** The largest lattice that the kernel is asked to march here: 2.0 GB of fields. */
 const LARGEST = 440;
-
-const median = (list) => list.toSorted((a, b) => a - b)[list.length >> 1];
 
 /** Does something with `march(problem, options)`, which gives a run's rate in million cell updates a second. */
 async function marching(act) {

@@ -10,13 +10,12 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { parseArgs } from 'node:util';
+import { median } from './median.mjs';
 
 const MAIN = fileURLToPath(new URL('../../dist/main.js', import.meta.url));
 const NATIVE = fileURLToPath(new URL('native/yee.c', import.meta.url));
 const NATIVE_SIZE = 112; // the free-space lattice of the default scenario
 const NATIVE_STEPS = 200;
-
-const median = (list) => list.toSorted((a, b) => a - b)[list.length >> 1];
 
 function compiled(folder) {
   const program = join(folder, 'yee');

@@ -357,20 +357,6 @@ describe('schema and examples', () => {
     expect(JSON.parse(run('examples', names[2]!).stdout)).toEqual(EXAMPLES['small-loop']);
     expect(run('examples', 'no-such').status).toBe(2);
   });
-
-  test('every command has help with an example', () => {
-    const commands = [
-      ...run('--help')
-        .stdout.split('Commands:')[1]!
-        .matchAll(/^ {2}(\w+) .*\[/gm),
-    ].map(([, name]) => name!);
-    expect(commands.length).toBeGreaterThan(9);
-    for (const command of commands.filter((name) => name !== 'help')) {
-      const { status, stdout } = run(command, '--help');
-      expect(status).toBe(0);
-      expect(stdout).toMatch(new RegExp(`^Example: .*fieldassay ${command}\\b`, 'm'));
-    }
-  });
 });
 
 describe('serve', () => {

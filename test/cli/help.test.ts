@@ -22,6 +22,12 @@ const examples = commands
     return lines.length > 0 ? lines.map((line) => ({ command, line })) : [{ command, line: '' }];
   });
 
+test('every command has an example of its own', () => {
+  expect(commands.length).toBeGreaterThan(9);
+  for (const command of commands.filter((name) => name !== 'help'))
+    expect(help(command)).toMatch(new RegExp(`^Example: .*fieldassay ${command}\\b`, 'm'));
+});
+
 let folder = '';
 beforeAll(() => {
   folder = mkdtempSync(join(tmpdir(), 'fieldassay-help-'));

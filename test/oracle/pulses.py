@@ -94,15 +94,20 @@ def ramped(amplitude, f, ramp, hold):
     return w, antiderivative
 
 
-def spline(times, currents):
-    """The natural cubic spline, its second derivatives from the full linear system; 0 outside."""
+def spline_bend(times, currents):
+    """Widths of the intervals, and second derivatives of the natural cubic spline from the full linear system."""
     n = len(times)
     h = [b - a for a, b in zip(times, times[1:])]
     matrix, right = mp.eye(n), mp.zeros(n, 1)
     for k in range(1, n - 1):
         matrix[k, k - 1], matrix[k, k], matrix[k, k + 1] = h[k - 1] / 6, (h[k - 1] + h[k]) / 3, h[k] / 6
         right[k] = (currents[k + 1] - currents[k]) / h[k] - (currents[k] - currents[k - 1]) / h[k - 1]
-    bend = mp.lu_solve(matrix, right)
+    return h, mp.lu_solve(matrix, right)
+
+
+def spline(times, currents):
+    """The natural cubic spline; 0 outside."""
+    h, bend = spline_bend(times, currents)
 
     def piece(k, t):
         a, b = (times[k + 1] - t) / h[k], (t - times[k]) / h[k]
@@ -112,7 +117,7 @@ def spline(times, currents):
         r = mp.re(t)
         if r < times[0] or r >= times[-1]:
             return mp.mpf(0) * t
-        return piece(max(k for k in range(n - 1) if times[k] <= r), t)
+        return piece(max(k for k in range(len(h)) if times[k] <= r), t)
 
     def antiderivative(t):
         # Gauss-Legendre is exact for the cubic of each piece.

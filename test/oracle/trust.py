@@ -163,15 +163,9 @@ class Waveform:
 
 def spline_pieces(times, currents):
     """Powers of t - t_k of the natural cubic spline (pulses.py), by its value and derivatives there."""
-    n = len(times)
-    h = [b - a for a, b in zip(times, times[1:])]
-    matrix, right = mp.eye(n), mp.zeros(n, 1)
-    for k in range(1, n - 1):
-        matrix[k, k - 1], matrix[k, k], matrix[k, k + 1] = h[k - 1] / 6, (h[k - 1] + h[k]) / 3, h[k] / 6
-        right[k] = (currents[k + 1] - currents[k]) / h[k] - (currents[k] - currents[k - 1]) / h[k - 1]
-    bend = mp.lu_solve(matrix, right)
+    h, bend = pulses.spline_bend(times, currents)
     rows = []
-    for k in range(n - 1):
+    for k in range(len(h)):
         slope = (currents[k + 1] - currents[k]) / h[k] - h[k] * (2 * bend[k] + bend[k + 1]) / 6
         rows.append([currents[k], slope, bend[k] / 2, (bend[k + 1] - bend[k]) / (6 * h[k])])
     return np.array([[L(mp.nstr(x, 25)) for x in row] for row in rows])

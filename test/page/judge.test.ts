@@ -5,20 +5,12 @@ import { join } from 'node:path';
 import type { Browser } from 'playwright-core';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { linkOf } from '../../src/app/link.ts';
-import { textOf } from '../../src/app/store.ts';
 import { judgeSchema } from '../../src/compare/judgeResult.ts';
-import { EXAMPLES } from '../../src/scenario/examples.ts';
+import { textOf } from '../../src/scenario/text.ts';
 import { launchBrowser } from './browser.ts';
 import { openPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
-
-const SCENARIO = {
-  ...EXAMPLES['dipole-near-corner'],
-  title: 'Small',
-  grid: { cellSize: '10 mm', box: EXAMPLES['dipole-near-corner'].grid.box, boundary: { type: 'cpml', layers: 6 } },
-  duration: '3 ns',
-  observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
-};
+import { SMALL } from './small.ts';
 
 let browser: Browser;
 let served: Served;
@@ -26,7 +18,7 @@ let folder: string;
 
 beforeAll(async () => {
   folder = mkdtempSync(join(tmpdir(), 'fieldassay-judge-page-'));
-  writeFileSync(join(folder, 'small.json'), JSON.stringify(SCENARIO));
+  writeFileSync(join(folder, 'small.json'), JSON.stringify(SMALL));
   const { status } = spawnSync(process.execPath, [COMMAND, 'compare', 'small.json', '--out', 'out'], { cwd: folder });
   expect(status).toBeLessThan(2);
   // A solver that writes in nanoseconds, its E half as strong as it should be.
@@ -45,7 +37,7 @@ afterAll(async () => {
 });
 
 test('a file dropped anywhere stands beside the exact field, with the figures and the cause of the command line', async () => {
-  const { page, troubles, requests } = await openPage(browser, served.url + (await linkOf(textOf(SCENARIO))));
+  const { page, troubles, requests } = await openPage(browser, served.url + (await linkOf(textOf(SMALL))));
   await page.getByLabel('Open a scenario or traces').setInputFiles(join(folder, 'half.csv'));
   const found = page.locator('main[aria-label="Judge"] .found');
   await found.locator('h1').waitFor({ timeout: 60_000 });
@@ -76,7 +68,7 @@ test('a file dropped anywhere stands beside the exact field, with the figures an
 
 test('what cannot be read is refused with row and column, and the page goes on', async () => {
   writeFileSync(join(folder, 'bad.csv'), 't,Ez<img src=x onerror=alert(1)>\n0,1\n1,two\n');
-  const { page, troubles } = await openPage(browser, `${served.url}${await linkOf(textOf(SCENARIO))}`);
+  const { page, troubles } = await openPage(browser, `${served.url}${await linkOf(textOf(SMALL))}`);
   await page.getByRole('button', { name: 'Judge', exact: true }).click();
   await page.getByRole('button', { name: 'Open traces…' }).waitFor();
   await page.locator('main[aria-label="Judge"] input[type=file]').setInputFiles(join(folder, 'bad.csv'));

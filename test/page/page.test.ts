@@ -25,6 +25,7 @@ import { readImage } from '../files/vtiReader.ts';
 import { launchBrowser } from './browser.ts';
 import { finished, judged, openPage, settled, textOfPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
+import { SMALL } from './small.ts';
 
 let browser: Browser;
 let served: Served;
@@ -39,15 +40,6 @@ afterAll(async () => {
   await browser?.close();
   served?.end();
 });
-
-/** A scenario that runs in a moment. */
-const SMALL = {
-  ...EXAMPLES['dipole-near-corner'],
-  title: 'Small',
-  grid: { cellSize: '10 mm', box: EXAMPLES['dipole-near-corner'].grid.box, boundary: { type: 'cpml', layers: 6 } },
-  duration: '3 ns',
-  observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
-};
 
 /** Chooses an entry of what can be saved. */
 async function savedAs(page: Page, name: string): Promise<void> {

@@ -5,22 +5,14 @@ import { join, resolve } from 'node:path';
 import type { Browser, Page } from 'playwright-core';
 import { afterAll, beforeAll, expect, test } from 'vitest';
 import { linkOf } from '../../src/app/link.ts';
-import { textOf } from '../../src/app/store.ts';
 import type { Plan } from '../../src/compare/planResult.ts';
 import { type SurveyResult, surveyResultSchema } from '../../src/compare/surveyResult.ts';
-import { EXAMPLES } from '../../src/scenario/examples.ts';
+import { textOf } from '../../src/scenario/text.ts';
 import { launchBrowser } from './browser.ts';
 import { finished, openPage, textOfPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
+import { SMALL } from './small.ts';
 
-/** A scenario whose cases run in a moment. */
-const SMALL = {
-  ...EXAMPLES['dipole-near-corner'],
-  title: 'Small',
-  grid: { cellSize: '10 mm', box: EXAMPLES['dipole-near-corner'].grid.box, boundary: { type: 'cpml', layers: 6 } },
-  duration: '3 ns',
-  observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
-};
 const SURVEY = {
   title: 'Small ladder',
   scenario: SMALL,

@@ -1,28 +1,15 @@
 import { readdirSync, readFileSync } from 'node:fs';
 import { createServer, type Server, type Socket } from 'node:net';
 import { join } from 'node:path';
-import { afterAll, beforeAll, describe, expect, test, vi } from 'vitest';
-import { SMALL, SurveyFolder, timeless } from '../run/surveyFolder.ts';
-import { PostgresServer } from './postgres.ts';
-import { Processes, type Running, until } from './processes.ts';
+import { afterAll, describe, expect, test, vi } from 'vitest';
+import { SMALL, timeless } from '../run/surveyFolder.ts';
+import { type Running, until } from './processes.ts';
+import { queueStage } from './stage.ts';
 import { collectorMemory } from './standIn.ts';
 
-let folder: SurveyFolder;
-let postgres: PostgresServer;
-let processes: Processes;
+const stage = queueStage();
 // Another's work on the same processors must not be taken for a hang.
 vi.setConfig({ testTimeout: 120_000 });
-
-beforeAll(async () => {
-  folder = new SurveyFolder();
-  processes = new Processes(folder.path);
-  postgres = await PostgresServer.start();
-}, 60_000);
-afterAll(async () => {
-  await processes.end();
-  await postgres.remove();
-  folder.remove();
-}, 60_000);
 
 /** Four cases that are run and two that are refused, with shared work and reflections among them. */
 const MIXED = {
@@ -46,43 +33,43 @@ const LONG = {
 };
 
 const work = (database: string, ...more: string[]) =>
-  processes.start(['work', '--queue', postgres.url(database), '--threads', '1', ...more]);
+  stage.processes.start(['work', '--queue', stage.postgres.url(database), '--threads', '1', ...more]);
 
 const collect = (survey: string, out: string, database: string) =>
-  processes.start(['survey', survey, '--out', out, '--queue', postgres.url(database)]);
+  stage.processes.start(['survey', survey, '--out', out, '--queue', stage.postgres.url(database)]);
 
 /** How often each case was taken, and how it ended. */
 const attempts = (database: string) =>
-  postgres.sql<{ hash: string; ended: Date | null; failure: string | null }>(
+  stage.postgres.sql<{ hash: string; ended: Date | null; failure: string | null }>(
     'select hash, ended, failure from fieldassay.attempt order by id',
     database,
   );
 
 const allText = (out: string) =>
-  readdirSync(join(folder.path, out), { recursive: true, withFileTypes: true })
+  readdirSync(join(stage.folder.path, out), { recursive: true, withFileTypes: true })
     .filter((entry) => entry.isFile())
     .map((entry) => readFileSync(join(entry.parentPath, entry.name), 'utf8'))
     .join('\n');
 
 describe('a survey through a queue', () => {
   test('is bit for bit what it is here, with 1, 2 and 5 workers; again, nothing is run twice; no password anywhere', async () => {
-    const survey = folder.write('mixed.json', MIXED);
-    expect(folder.run(survey, '--out', 'here', '--threads', '2').status).toBe(0);
-    const here = JSON.stringify(timeless(folder.read('here/survey-result.json')));
+    const survey = stage.folder.write('mixed.json', MIXED);
+    expect(stage.folder.run(survey, '--out', 'here', '--threads', '2').status).toBe(0);
+    const here = JSON.stringify(timeless(stage.folder.read('here/survey-result.json')));
     for (const count of [1, 2, 5]) {
       const database = `workers-${count}`;
-      await postgres.newDatabase(database);
+      await stage.postgres.newDatabase(database);
       const workers = Array.from({ length: count }, () => work(database));
       const collector = collect(survey, database, database);
       expect(await collector.ended, collector.said).toBe(0);
       expect(collector.said).toContain('6 of 6 cases');
-      expect(JSON.stringify(timeless(folder.read(`${database}/survey-result.json`)))).toBe(here);
+      expect(JSON.stringify(timeless(stage.folder.read(`${database}/survey-result.json`)))).toBe(here);
       expect(await attempts(database)).toHaveLength(4);
       const statuses = await Promise.all(workers.map((worker) => worker.kill('SIGINT')));
       expect(statuses).toEqual(statuses.map(() => 0));
       const everything = [allText(database), collector.said, ...workers.map(({ said }) => said)].join('\n');
-      expect(everything).not.toContain(postgres.password);
-      expect(everything).not.toContain(encodeURIComponent(postgres.password));
+      expect(everything).not.toContain(stage.postgres.password);
+      expect(everything).not.toContain(encodeURIComponent(stage.postgres.password));
       console.log(
         `${count} workers: ${workers.map(({ said }) => (said.match(/^done/gm) ?? []).length).join(', ')} cases`,
       );
@@ -90,28 +77,28 @@ describe('a survey through a queue', () => {
     // Another folder, no worker: all of it is in the tables.
     const again = collect(survey, 'again', 'workers-2');
     expect(await again.ended, again.said).toBe(0);
-    expect(JSON.stringify(timeless(folder.read('again/survey-result.json')))).toBe(here);
+    expect(JSON.stringify(timeless(stage.folder.read('again/survey-result.json')))).toBe(here);
     expect(await attempts('workers-2')).toHaveLength(4);
     await checkQueries('workers-2');
   }, 240_000);
 
   test('goes on after the server was restarted and the collector killed: nothing lost, nothing run twice', async () => {
     const courants = [0.5, 0.55, 0.6, 0.65, 0.7, 0.75, 0.8, 0.85];
-    const survey = folder.write('restarted.json', quick('Restarted', courants));
-    await postgres.newDatabase('restarted');
+    const survey = stage.folder.write('restarted.json', quick('Restarted', courants));
+    await stage.postgres.newDatabase('restarted');
     const first = collect(survey, 'restarted', 'restarted');
     await first.saying('no worker is there');
     const workers = [work('restarted'), work('restarted')];
     await first.saying('2 of 8 cases');
-    await postgres.stop();
+    await stage.postgres.stop();
     await until('both to notice', () => [first, workers[0]!].every(({ said }) => said.includes('trying again')));
-    await postgres.run();
+    await stage.postgres.run();
     await first.saying('is back');
     await first.kill();
     const second = collect(survey, 'restarted', 'restarted');
     expect(await second.ended, second.said).toBe(0);
     for (const worker of workers) expect(await worker.kill('SIGINT')).toBe(0);
-    const { cases } = timeless(folder.read('restarted/survey-result.json'));
+    const { cases } = timeless(stage.folder.read('restarted/survey-result.json'));
     expect(cases.map(({ status }) => status)).toEqual(courants.map(() => 'done'));
     const taken = await attempts('restarted');
     expect(taken.map(({ failure }) => failure)).toEqual(courants.map(() => null));
@@ -119,8 +106,8 @@ describe('a survey through a queue', () => {
   });
 
   test('a worker killed in the middle of a case: another runs it, and it is there once', async () => {
-    const survey = folder.write('long.json', LONG);
-    await postgres.newDatabase('killed');
+    const survey = stage.folder.write('long.json', LONG);
+    await stage.postgres.newDatabase('killed');
     const collector = collect(survey, 'killed', 'killed');
     const victim = work('killed');
     await until('the case to be taken', async () => (await attempts('killed').catch(() => [])).length === 1);
@@ -134,12 +121,12 @@ describe('a survey through a queue', () => {
     const [lost, ended] = await attempts('killed');
     expect(lost!.failure).toMatch(/^its worker, process \d+ on .*, was lost$/);
     expect(ended!.failure).toBe(null);
-    expect(await postgres.sql('select from fieldassay.result', 'killed')).toHaveLength(1);
+    expect(await stage.postgres.sql('select from fieldassay.result', 'killed')).toHaveLength(1);
   });
 
   test('Ctrl-C ends a worker when its case is done; twice, its case goes back', async () => {
-    const survey = folder.write('left.json', LONG);
-    await postgres.newDatabase('left');
+    const survey = stage.folder.write('left.json', LONG);
+    await stage.postgres.newDatabase('left');
     const collector = collect(survey, 'left', 'left');
     const hasty = work('left');
     await until('the case to be taken', async () => (await attempts('left').catch(() => [])).length === 1);
@@ -156,27 +143,28 @@ describe('a survey through a queue', () => {
   });
 
   test('a case that always fails is told of after three tries, with the reason, and the others are done', async () => {
-    const survey = folder.write('failing.json', quick('Failing', [0.6, 0.7, 0.8]));
-    await postgres.newDatabase('failing');
+    const survey = stage.folder.write('failing.json', quick('Failing', [0.6, 0.7, 0.8]));
+    await stage.postgres.newDatabase('failing');
     const collector = collect(survey, 'failing', 'failing');
     await collector.saying('no worker is there');
-    const [{ hash }] = (await postgres.sql(`select hash from fieldassay.survey_case where number = 1`, 'failing')) as [
-      { hash: string },
-    ];
+    const [{ hash }] = (await stage.postgres.sql(
+      `select hash from fieldassay.survey_case where number = 1`,
+      'failing',
+    )) as [{ hash: string }];
     // A case whose outcome the database will not have: it can be run, and not be kept.
-    await postgres.sql(
+    await stage.postgres.sql(
       `alter table fieldassay.result add constraint unwanted check (hash <> '${hash}' or status = 'failed')`,
       'failing',
     );
     const worker = work('failing');
     expect(await collector.ended, collector.said).toBe(3);
     await worker.kill('SIGINT');
-    const { cases } = timeless(folder.read('failing/survey-result.json'));
+    const { cases } = timeless(stage.folder.read('failing/survey-result.json'));
     expect(cases.map(({ status }) => status)).toEqual(['done', 'failed', 'done']);
     expect(cases[1]!.reason).toMatch(/unwanted/);
     expect((await attempts('failing')).filter((each) => each.hash === hash)).toHaveLength(3);
     // The same command tries it anew.
-    await postgres.sql('alter table fieldassay.result drop constraint unwanted', 'failing');
+    await stage.postgres.sql('alter table fieldassay.result drop constraint unwanted', 'failing');
     const anew = collect(survey, 'failing', 'failing');
     const second = work('failing');
     expect(await anew.ended, anew.said).toBe(0);
@@ -185,31 +173,31 @@ describe('a survey through a queue', () => {
 
   test('a hundred cases and more: the collector holds no more at the end than at the beginning', async () => {
     const cases = 150;
-    const survey = folder.write(
+    const survey = stage.folder.write(
       'many.json',
       quick(
         'Many',
         Array.from({ length: cases }, (_, n) => 0.5 + n / 500),
       ),
     );
-    await postgres.newDatabase('many');
+    await stage.postgres.newDatabase('many');
     const collector = collect(survey, 'many', 'many');
     const worker = work('many');
     await worker.saying(/^done/m);
     await worker.kill();
-    const held = await collectorMemory(postgres, 'many', collector, cases);
+    const held = await collectorMemory(stage.postgres, 'many', collector, cases);
     console.log(`collector: ${held.map((bytes) => Math.round(bytes / 1e6)).join(', ')} MB`);
     expect(Math.max(...held) - held[0]!).toBeLessThan(40e6);
     expect(await collector.ended, collector.said).toBe(0);
-    expect(timeless(folder.read('many/survey-result.json')).cases).toHaveLength(cases);
+    expect(timeless(stage.folder.read('many/survey-result.json')).cases).toHaveLength(cases);
   });
 
   test('a worker of another version, or with other results, is refused with both named', async () => {
-    const survey = folder.write('versions.json', quick('Versions', [0.6]));
-    await postgres.newDatabase('versions');
+    const survey = stage.folder.write('versions.json', quick('Versions', [0.6]));
+    await stage.postgres.newDatabase('versions');
     const collector = collect(survey, 'versions', 'versions');
     await collector.saying('no worker is there');
-    await postgres.sql(`update fieldassay.survey set version = '9.8.7', result_schema = 'abcd1234'`, 'versions');
+    await stage.postgres.sql(`update fieldassay.survey set version = '9.8.7', result_schema = 'abcd1234'`, 'versions');
     const worker = work('versions');
     expect(await worker.ended).toBe(2);
     expect(worker.said).toMatch(
@@ -223,11 +211,11 @@ describe('a survey through a queue', () => {
   });
 
   test('tables that a later version made are left alone', async () => {
-    await postgres.newDatabase('later');
+    await stage.postgres.newDatabase('later');
     const worker = work('later');
     await worker.saying('takes cases');
     await worker.kill('SIGINT');
-    await postgres.sql('insert into fieldassay.step (number) values (99)', 'later');
+    await stage.postgres.sql('insert into fieldassay.step (number) values (99)', 'later');
     const old = work('later');
     expect(await old.ended).toBe(2);
     expect(old.said).toMatch(/made by a later Fieldassay; this is \d+\.\d+\.\d+/);
@@ -239,12 +227,12 @@ async function checkQueries(database: string): Promise<void> {
   const readme = readFileSync(new URL('../../README.md', import.meta.url), 'utf8');
   const queries = [...readme.matchAll(/```sql\n([\s\S]*?)```/g)].flatMap((match) => match[1]!.trim().split(/\n\n+/));
   expect(queries).toHaveLength(3);
-  const [table, front, failed] = await Promise.all(queries.map((query) => postgres.sql(query, database)));
+  const [table, front, failed] = await Promise.all(queries.map((query) => stage.postgres.sql(query, database)));
   console.log(table, front, failed);
   expect(table).toHaveLength(6);
   expect(failed).toHaveLength(2);
   // The front is the one in the result.
-  const { cases, boundaries } = timeless(folder.read('here/survey-result.json'));
+  const { cases, boundaries } = timeless(stage.folder.read('here/survey-result.json'));
   const expected = boundaries.filter((wall) => wall.front).map((wall) => cases[wall.case]!.hash);
   expect(front!.map(({ hash }) => hash).sort()).toEqual(expected.sort());
 }
@@ -273,13 +261,13 @@ describe('a server that cannot be used', () => {
     const web = await listen((socket) => socket.once('data', () => socket.end('HTTP/1.1 400 Bad Request\r\n\r\n')));
     const greeting = await listen((socket) => socket.write(Buffer.from('4a0000000a382e302e333600', 'hex')));
     const at = (place: string, parameters = '') => `postgres://surveys:${secret}@${place}/fieldassay${parameters}`;
-    const own = `127.0.0.1:${postgres.port}`;
+    const own = `127.0.0.1:${stage.postgres.port}`;
     const cases: readonly (readonly [url: string, status: number, said: RegExp])[] = [
       [at('no-such-host.invalid'), 3, /no host of the name no-such-host\.invalid is known/],
       [at('127.0.0.1:1'), 3, /nothing answers at 127\.0\.0\.1:1 \(connection refused\)/],
       [at(own), 3, /refuses the password of “surveys”; check PGPASSWORD/],
-      [postgres.url('fieldassay', { password: false }), 3, /asks for the password of “surveys”: set PGPASSWORD/],
-      [postgres.url('nowhere'), 3, /has no database “nowhere”/],
+      [stage.postgres.url('fieldassay', { password: false }), 3, /asks for the password of “surveys”: set PGPASSWORD/],
+      [stage.postgres.url('nowhere'), 3, /has no database “nowhere”/],
       [at(own, '?sslmode=require'), 3, /has no TLS, which sslmode asks for/],
       [at(`127.0.0.1:${silent}`), 3, /did not answer as a PostgreSQL server within 3 s/],
       [at(`127.0.0.1:${web}`), 3, /is no PostgreSQL server/],
@@ -289,29 +277,29 @@ describe('a server that cannot be used', () => {
       [`surveys:${secret}@127.0.0.1`, 2, /it must be postgres:\/\/HOST\/DATABASE/],
       [at(own, '?sslmode=perhaps'), 2, /there are disable, allow, prefer, require, verify-ca, verify-full/],
     ];
-    const survey = folder.write('unsent.json', quick('Unsent', [0.6]));
+    const survey = stage.folder.write('unsent.json', quick('Unsent', [0.6]));
     for (const [url, status, said] of cases) {
       const started = performance.now();
-      const worker = processes.start(['work', '--queue', url]);
+      const worker = stage.processes.start(['work', '--queue', url]);
       expect(await worker.ended, url).toBe(status);
       expect(performance.now() - started, url).toBeLessThan(5000);
       expect(worker.said).toMatch(said);
       expect(worker.said).not.toContain(secret);
     }
-    const collector = processes.start(['survey', survey, '--out', 'unsent', '--queue', at(own)]);
+    const collector = stage.processes.start(['survey', survey, '--out', 'unsent', '--queue', at(own)]);
     expect(await collector.ended).toBe(3);
     expect(collector.said).toMatch(/refuses the password/);
     expect(collector.said).not.toContain(secret);
   });
 
   test('a full disk: the collector says so and ends; a worker says so, keeps its case, and goes on when there is room', async () => {
-    await postgres.newDatabase('full');
-    const survey = folder.write('full.json', quick('Full', [0.6]));
+    await stage.postgres.newDatabase('full');
+    const survey = stage.folder.write('full.json', quick('Full', [0.6]));
     const first = collect(survey, 'full', 'full');
     await first.saying('no worker is there');
     await first.kill('SIGINT');
     // What the server says where its disk is full, from the place where it says it.
-    await postgres.sql(
+    await stage.postgres.sql(
       `create function full_disk() returns trigger language plpgsql as $$ begin
          raise exception using errcode = 'disk_full', message = 'could not extend file: No space left on device'; end $$;
        create trigger full_disk before insert on fieldassay.result execute function full_disk();
@@ -325,7 +313,7 @@ describe('a server that cannot be used', () => {
     expect(collector.said).toMatch(/the disk of the server at .* is full/);
     const worker: Running = work('full');
     await worker.saying(/the disk of the server at .* is full/);
-    await postgres.sql('drop function full_disk cascade', 'full');
+    await stage.postgres.sql('drop function full_disk cascade', 'full');
     await worker.saying(/^done/m);
     await worker.kill('SIGINT');
     const again = collect(survey, 'full', 'full');

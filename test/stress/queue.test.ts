@@ -1,38 +1,27 @@
 import { uniformInt } from 'pure-rand/distribution/uniformInt';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
-import { afterAll, beforeAll, expect, test } from 'vitest';
-import { PostgresServer } from '../queue/postgres.ts';
-import { Processes, type Running, until } from '../queue/processes.ts';
+import { expect, test } from 'vitest';
+import { type Running, until } from '../queue/processes.ts';
+import { queueStage } from '../queue/stage.ts';
 import { collectorMemory } from '../queue/standIn.ts';
-import { KILLED, SMALL, SurveyFolder, timeless } from '../run/surveyFolder.ts';
+import { KILLED, SMALL, timeless } from '../run/surveyFolder.ts';
 
-let folder: SurveyFolder;
-let postgres: PostgresServer;
-let processes: Processes;
-beforeAll(async () => {
-  folder = new SurveyFolder();
-  processes = new Processes(folder.path);
-  postgres = await PostgresServer.start();
-}, 60_000);
-afterAll(async () => {
-  await processes.end();
-  await postgres.remove();
-  folder.remove();
-}, 60_000);
+const stage = queueStage();
 
-const work = (database: string) => processes.start(['work', '--queue', postgres.url(database), '--threads', '1']);
+const work = (database: string) =>
+  stage.processes.start(['work', '--queue', stage.postgres.url(database), '--threads', '1']);
 const collect = (survey: string, out: string, database: string) =>
-  processes.start(['survey', survey, '--out', out, '--queue', postgres.url(database)]);
+  stage.processes.start(['survey', survey, '--out', out, '--queue', stage.postgres.url(database)]);
 const wait = (milliseconds: number) => new Promise((next) => setTimeout(next, milliseconds));
 
 test('workers killed, the server restarted and the collector killed, at moments drawn by a seed: the same table', async () => {
-  const survey = folder.write('killed.json', KILLED);
-  folder.run(survey, '--out', 'whole', '--threads', '2');
-  const whole = JSON.stringify(timeless(folder.read('whole/survey-result.json')));
+  const survey = stage.folder.write('killed.json', KILLED);
+  stage.folder.run(survey, '--out', 'whole', '--threads', '2');
+  const whole = JSON.stringify(timeless(stage.folder.read('whole/survey-result.json')));
   const random = xoroshiro128plus(20_250_917);
   for (let round = 0; round < 12; round++) {
     const database = `round_${round}`;
-    await postgres.newDatabase(database);
+    await stage.postgres.newDatabase(database);
     let collector = collect(survey, database, database);
     let workers = [work(database), work(database)];
     for (let blow = 0; blow < 2; blow++) {
@@ -43,9 +32,9 @@ test('workers killed, the server restarted and the collector killed, at moments 
           workers = [workers[1]!, work(database)];
           break;
         case 1:
-          await postgres.stop();
+          await stage.postgres.stop();
           await wait(uniformInt(random, 0, 1500));
-          await postgres.run();
+          await stage.postgres.run();
           break;
         default:
           await collector.kill();
@@ -60,23 +49,23 @@ test('workers killed, the server restarted and the collector killed, at moments 
     workers = await Promise.all(workers.map((worker) => live(worker, () => work(database))));
     collector = await live(collector, () => collect(survey, database, database));
     expect(await collector.ended, collector.said).toBe(0);
-    expect(JSON.stringify(timeless(folder.read(`${database}/survey-result.json`)))).toBe(whole);
-    const rows = await postgres.sql('select hash from fieldassay.result', database);
+    expect(JSON.stringify(timeless(stage.folder.read(`${database}/survey-result.json`)))).toBe(whole);
+    const rows = await stage.postgres.sql('select hash from fieldassay.result', database);
     expect(rows).toHaveLength(6);
     for (const worker of workers) await worker.kill('SIGINT');
   }
 }, 1_800_000);
 
 test('a case that takes its worker with it is told of after three of them, and the others are done', async () => {
-  const survey = folder.write('deadly.json', {
+  const survey = stage.folder.write('deadly.json', {
     scenario: { ...SMALL, duration: '2.2 ns', grid: { ...SMALL.grid, cellSize: '14 mm' } },
     // The first takes seconds, the others tenths of them.
     vary: { 'grid.cellSize': ['5 mm', '13 mm', '14 mm'] },
   });
-  await postgres.newDatabase('deadly');
+  await stage.postgres.newDatabase('deadly');
   const collector = collect(survey, 'deadly', 'deadly');
   const deadly = async () => {
-    const open = await postgres
+    const open = await stage.postgres
       .sql<{ number: number }>(
         `select number from fieldassay.attempt join fieldassay.survey_case using (hash) where ended is null`,
         'deadly',
@@ -93,19 +82,19 @@ test('a case that takes its worker with it is told of after three of them, and t
   const last = work('deadly');
   expect(await collector.ended, collector.said).toBe(3);
   await last.kill('SIGINT');
-  const { cases } = timeless(folder.read('deadly/survey-result.json'));
+  const { cases } = timeless(stage.folder.read('deadly/survey-result.json'));
   expect(cases.map(({ status }) => status)).toEqual(['failed', 'done', 'done']);
   expect(cases[0]!.reason).toMatch(/^its worker, process \d+ on \S+, was lost; its worker, .*; its worker, /);
 }, 300_000);
 
 test('10 000 cases: the collector holds no more at the end than at the beginning', async () => {
   const cases = 10_000;
-  const survey = folder.write('many.json', {
+  const survey = stage.folder.write('many.json', {
     title: 'Many',
     scenario: { ...SMALL, duration: '2.2 ns', grid: { ...SMALL.grid, cellSize: '14 mm' } },
     vary: { 'grid.courant': Array.from({ length: cases }, (_, n) => 0.5 + n / (3 * cases)) },
   });
-  await postgres.newDatabase('many');
+  await stage.postgres.newDatabase('many');
   const collector = collect(survey, 'many', 'many');
   const worker = work('many');
   await worker.saying(/^done/m);
@@ -113,7 +102,7 @@ test('10 000 cases: the collector holds no more at the end than at the beginning
   await until(
     'all to be sent',
     async () => {
-      const [row] = await postgres.sql<{ count: number }>(
+      const [row] = await stage.postgres.sql<{ count: number }>(
         'select count(*)::int as count from fieldassay_queue.job',
         'many',
       );
@@ -121,7 +110,7 @@ test('10 000 cases: the collector holds no more at the end than at the beginning
     },
     600,
   );
-  const held = await collectorMemory(postgres, 'many', collector, cases);
+  const held = await collectorMemory(stage.postgres, 'many', collector, cases);
   console.log(`collector: ${held.map((bytes) => Math.round(bytes / 1e6)).join(', ')} MB`);
   // What comes in is 110 MB; a young generation of garbage is some tens.
   expect(Math.max(...held) - held[0]!).toBeLessThan(60e6);

@@ -4,11 +4,13 @@ import { judgeCauses, judgeCharts, judgeFigures, judgeHtml, judgeJson } from '..
 import type { Judged } from '../../run/judge/judgeTraces.ts';
 import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
+import { asked, halves } from '../halves.ts';
 import { notify } from '../notice.ts';
 import type { Started } from '../places.ts';
 import { beside } from '../runner.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
+import { table } from '../table.ts';
 import { nameOf } from '../written.ts';
 import type { JudgeReport, JudgeRequest } from './messages.ts';
 
@@ -79,15 +81,15 @@ class JudgePlace {
         textBlob(judgeJson(result), 'application/json'),
       ),
     ];
-    const options = [this.cell, this.unit, this.observer, this.columns].map(({ label }) => label);
-    const staggered = h(
-      'label',
-      { className: 'axis' },
-      this.staggered,
-      h('b', {}, ' Components at their own places'),
-      h('span', { className: 'hint' }, 'In the Yee cell of the observer’s nearest node, not at the observer itself.'),
+    const element = h(
+      'div',
+      { onchange: () => this.run() },
+      ...[this.cell, this.unit, this.observer, this.columns].map(({ element }) => element),
+      asked(
+        h('label', {}, this.staggered, ' Components at their own places'),
+        'In the Yee cell of the observer’s nearest node, not at the observer itself.',
+      ),
     );
-    for (const label of [...options, staggered]) label.addEventListener('change', () => this.run());
     const bar = h(
       'div',
       { className: 'bar' },
@@ -101,16 +103,7 @@ class JudgePlace {
       input,
     );
     host.append(
-      h(
-        'div',
-        { className: 'halves' },
-        h(
-          'section',
-          { className: 'asked', 'aria-label': 'How the file is read' },
-          h('div', { className: 'controls' }, ...options, staggered),
-        ),
-        h('section', { className: 'found', 'aria-label': 'What is found', tabindex: '0' }, bar, this.results),
-      ),
+      halves({ name: 'How the file is read', element }, { name: 'What is found', elements: [bar, this.results] }),
     );
     this.results.append(
       h(
@@ -199,21 +192,24 @@ class JudgePlace {
   private show(given: Given, judged: Judged): void {
     this.end(judged, given.name);
     const { result } = judged;
-    const causes = judgeCauses(result);
+    const [figuresHead, ...figures] = judgeFigures(result);
+    const [causesHead, ...causes] = judgeCauses(result);
     const drawn: (() => void)[] = [];
     const charts = result.observers.map((observer) => {
-      const figures = judgeCharts(observer, judged).map((chart) => {
+      const drawings = judgeCharts(observer, judged).map((chart) => {
         const live = new LiveChart(() => '');
         drawn.push(() => live.draw(chart));
         return live.figure;
       });
-      return [h('h2', {}, `Observer ${observer.name}`), h('div', { className: 'charts grid' }, ...figures)];
+      return [h('h2', {}, `Observer ${observer.name}`), h('div', { className: 'charts grid' }, ...drawings)];
     });
     this.results.replaceChildren(
       h('h1', { className: tracesWithinTolerance(result) ? '' : 'outside', 'aria-live': 'polite' }, result.sentence),
       ...result.details.map((detail) => h('p', {}, detail)),
-      table(judgeFigures(result)),
-      ...(causes.length === 0 ? [] : [h('h2', {}, 'Likely causes, each tried by refitting'), table(causes, 'prose')]),
+      table('Errors against the exact field', figuresHead!, figures),
+      ...(causes.length === 0
+        ? []
+        : [table('Likely causes, each tried by refitting', causesHead!, causes.map(explained))]),
       ...charts.flat(),
       ...result.notes.map((note) => h('p', { className: 'muted' }, `Note: ${note}`)),
     );
@@ -221,29 +217,19 @@ class JudgePlace {
   }
 }
 
-/** A line of text with its name and a hint. */
-function field(name: string, placeholder: string, hint: string) {
-  const input = h('input', { type: 'text', placeholder, spellcheck: false });
-  const label = h('label', { className: 'axis' }, h('b', {}, name), input, h('span', { className: 'hint' }, hint));
+/** A cause in a table: its words may take several lines. */
+const explained = ([share, ...words]: readonly string[]): (HTMLElement | string)[] => [
+  share!,
+  ...words.map((text) => h('span', { className: 'reason' }, text)),
+];
+
+/** A line of text with its name and what helps to fill it. */
+function field(name: string, placeholder: string, help: string) {
+  const input = h('input', { type: 'text', placeholder, spellcheck: false, 'aria-label': name });
   return {
-    label,
+    element: asked(name, help, input),
     get value() {
       return input.value.trim();
     },
   };
-}
-
-/** A table whose first row names its columns. */
-function table([head, ...rows]: readonly (readonly string[])[], className = ''): HTMLElement {
-  const row = (tag: 'th' | 'td', cells: readonly string[]) => h('tr', {}, ...cells.map((cell) => h(tag, {}, cell)));
-  return h(
-    'div',
-    { className: 'scroll', tabindex: '0' },
-    h(
-      'table',
-      { className },
-      h('thead', {}, row('th', head!)),
-      h('tbody', {}, ...rows.map((cells) => row('td', cells))),
-    ),
-  );
 }

@@ -2,6 +2,7 @@ import { settingWord } from '../../report/surveyWords.ts';
 import { GRIDDINGS } from '../../scenario/model.ts';
 import { BOUNDARIES } from '../../scenario/schema.ts';
 import { h } from '../dom.ts';
+import { asked } from '../halves.ts';
 import { presets, type SurveyModel, type Vary } from './model.ts';
 
 /** How long typing must pause before it counts. */
@@ -133,13 +134,7 @@ export class Axes {
       body.hidden = !on.checked;
       trouble.textContent = this.trouble(key);
     });
-    return h(
-      'fieldset',
-      { className: 'axis', title: help },
-      h('legend', {}, h('label', {}, on, ` ${name}`)),
-      body,
-      trouble,
-    );
+    return asked(h('label', {}, on, ` ${name}`), help, body, trouble);
   }
 
   private written({ key, name, help, begin }: Written): HTMLElement {

@@ -13,6 +13,7 @@ import {
   setupCells,
 } from '../../report/plan.ts';
 import type { KnownSetup } from '../../run/planSearch.ts';
+import { textOf } from '../../scenario/text.ts';
 import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
 import { halves } from '../halves.ts';
@@ -21,7 +22,7 @@ import type { Places, Started } from '../places.ts';
 import type { Prediction } from '../prediction.ts';
 import { beside } from '../runner.ts';
 import { download, textBlob } from '../save.ts';
-import { type Store, textOf } from '../store.ts';
+import type { Store } from '../store.ts';
 import { table } from '../table.ts';
 import { nameOf } from '../written.ts';
 import { aboutOf, type Report, type Request, type Wanted } from './messages.ts';

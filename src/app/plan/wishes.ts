@@ -4,6 +4,7 @@ import { WALLS } from '../../run/planSearch.ts';
 import { sourceBounds } from '../../scenario/distance.ts';
 import { parseFraction, parseQuantity } from '../../scenario/units.ts';
 import { h } from '../dom.ts';
+import { asked } from '../halves.ts';
 import type { Store } from '../store.ts';
 import type { Wanted } from './messages.ts';
 
@@ -102,10 +103,6 @@ export class Wishes {
     });
   }
 
-  private group(name: string, help: string, ...children: (HTMLElement | null)[]): HTMLElement {
-    return h('fieldset', { className: 'axis', title: help }, h('legend', {}, name), ...children);
-  }
-
   private tolerance(): HTMLElement {
     const range = h('input', { type: 'range', min: '0', max: String(STEPS), step: '1', 'aria-label': 'Tolerance' });
     const text = h('input', { type: 'text', spellcheck: false, 'aria-label': 'Tolerance, a percentage or a fraction' });
@@ -125,7 +122,7 @@ export class Wishes {
       range.setAttribute('aria-valuetext', formatPercent(tolerance, 3));
       text.value = formatPercent(tolerance, 3);
     });
-    return this.group(
+    return asked(
       'Tolerance',
       'The largest relative error of E that is allowed, predicted with what predictions may be off.',
       h('div', { className: 'slide' }, range, text),
@@ -168,7 +165,7 @@ export class Wishes {
       range.setAttribute('aria-valuetext', formatQuantity(distance, 'm'));
       text.value = formatQuantity(distance, 'm');
     });
-    return this.group(
+    return asked(
       'Where',
       'At the observers, or at a distance from the sources in every direction that radiates.',
       select,
@@ -196,7 +193,7 @@ export class Wishes {
       text.hidden = band === undefined;
       if (band !== undefined) text.value = formatQuantity(band, 'Hz');
     });
-    return this.group(
+    return asked(
       'Signal',
       'The error over the whole window, or in every sixth-octave band up to a frequency.',
       select,
@@ -218,7 +215,7 @@ export class Wishes {
       });
       return h('label', {}, box, ` ${boundaryText(wall)}`);
     });
-    return this.group(
+    return asked(
       'Walls',
       'Boundary conditions that may be chosen: those whose reflections are predicted.',
       h('div', { className: 'choices' }, ...boxes),
@@ -240,7 +237,7 @@ export class Wishes {
       const { ownRate } = this.wish;
       if (document.activeElement !== text) text.value = ownRate === undefined ? '' : String(ownRate);
     });
-    return this.group(
+    return asked(
       'Your own solver, cells/s',
       'Cell updates a second of your own solver, such as 3e8: tells how long it will take there.',
       text,
