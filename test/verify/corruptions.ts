@@ -1,6 +1,6 @@
 import { uniformFloat64 } from 'pure-rand/distribution/uniformFloat64';
 import { xoroshiro128plus } from 'pure-rand/generator/xoroshiro128plus';
-import type { CauseName } from '../../src/run/judge/causes.ts';
+import type { CauseName } from '../../src/run/judge/trial.ts';
 import type { Vec3 } from '../../src/scenario/model.ts';
 import { COMPONENTS, STAGGER, type Trace } from '../../src/trace/trace.ts';
 

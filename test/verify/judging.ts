@@ -1,6 +1,6 @@
 import { expect } from 'vitest';
-import { CAUSES } from '../../src/run/judge/causes.ts';
 import { judgeTraces } from '../../src/run/judge/judgeTraces.ts';
+import { CAUSES } from '../../src/run/judge/trial.ts';
 import { EXAMPLES, type ExampleName } from '../../src/scenario/examples.ts';
 import { COMPONENTS, type Trace } from '../../src/trace/trace.ts';
 import { type Corrupted, corruptedCopies, type Original } from './corruptions.ts';

@@ -1,7 +1,9 @@
 import type { Judgement, TriedCause } from '../../compare/judgeResult.ts';
 import { log } from '../../elementary/elementary.ts';
-import { CAUSES, distantWallTrials, type Trial, trials } from './causes.ts';
+import { distantWallTrials } from './causes/walls.ts';
+import { trials } from './causes.ts';
 import type { Refit } from './refit.ts';
+import { CAUSES, type Trial } from './trial.ts';
 
 /** A cause is likely where it takes away at least this share of what is wrong, in power. */
 const HALF = 0.5;
