@@ -37,7 +37,7 @@ const NUMBER_ALONE = new RegExp(String.raw`^\s*${NUMBER}\s*$`);
 /**
  * A quantity of a scenario file in its SI unit. A prefix of ten shifts the decimal point, so that "0.9 ns" and 0.9e-9 are
  * the same double.
- * @param given an SI number, or a text of a number and a unit of the right kind
+ * @param given an SI number, or a text of a number and a unit of the right kind; zero, and zero alone, needs none
  */
 export function parseQuantity(given: number | string, kind: Kind): Parsed {
   const { words, example } = KINDS[kind];
@@ -46,6 +46,7 @@ export function parseQuantity(given: number | string, kind: Kind): Parsed {
   if (typeof given === 'number')
     return Number.isFinite(given) ? { value: given } : { reason: `is ${given}; it must be finite` };
   if (given.length > MAX_LENGTH) return { reason: `is a text of ${given.length} characters; ${wanted}` };
+  if (NUMBER_ALONE.test(given) && Number(given) === 0) return { value: 0 };
   if (NUMBER_ALONE.test(given)) return { reason: `is ${shown}, a text without a unit; ${wanted}` };
   const [, number, unit] = NUMBER_AND_UNIT.exec(given) ?? [];
   if (number === undefined || unit === undefined)

@@ -23,6 +23,8 @@ describe('quantities', () => {
     ['3 s^-1', 'rate', 3],
     ['30 kA', 'current', 30e3],
     ['250 mA', 'current', 0.25],
+    ['0', 'length', 0],
+    ['-0.0', 'time', 0],
     [0.005, 'length', 0.005],
     [-0, 'length', -0],
   ];
