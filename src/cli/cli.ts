@@ -27,7 +27,7 @@ import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
 import { addJudgeCommand } from './judge.ts';
-import { quoted, unwritable, writeFolder, writeWhole } from './output.ts';
+import { keepAndTell, quoted, refuseUnwritable, unwritable, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
 import { addWorkCommand } from './queue.ts';
@@ -155,15 +155,17 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     )
     .action(async (name: string, options: CompareFlags) => {
       requireOut(options);
+      refuseUnwritable([options.out, options.frames], [options.junit]);
       const gate = gateOf(options);
       const comparison = await compared(name, options, signal);
       const { result } = comparison;
-      const written = await writeAll(comparison, name, options, signal);
-      if (options.json) process.stdout.write(resultJson(result));
-      else
-        process.stdout.write(
-          resultText(result, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
-        );
+      await keepAndTell(
+        async (written) => await writeAll(comparison, name, options, signal, written),
+        (written) =>
+          options.json
+            ? resultJson(result)
+            : resultText(result, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
+      );
       const held = gate(result, `compare ${name}`, comparisonCases(result), secondsOf(result));
       end(held && withinTolerance(result) ? DONE : OUTSIDE);
       if (options.serve && options.out)
@@ -196,6 +198,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
         '\nExample: fieldassay exact small-loop --points lines.csv --frequencies --out phasors.csv\n',
     )
     .action(async (name: string, options: ExactOptions & { points: string; out: string }) => {
+      refuseUnwritable([], [options.out]);
       const { csv, routes } = await exactCommand(readScenario(name), options.points, options, signal);
       writeWhole(options.out, csv);
       if (routes) process.stderr.write(routesText(routes));
@@ -294,18 +297,16 @@ function requireOut(options: CompareFlags): void {
     if (options[name]) throw new InputError(`--${name} needs --out: the folder to write into`);
 }
 
-/** Writes what was asked for; what and where, for a person. */
+/** Writes what was asked for, what is there already first. @param written what and where, for a person, as it is done */
 async function writeAll(
   comparison: Comparison,
   name: string,
   options: CompareFlags,
   signal: AbortSignal,
-): Promise<string[]> {
+  written: string[],
+): Promise<void> {
   const { out, frames: folder, snapshots: format } = options;
   const { scenario } = comparison.result;
-  const written: string[] = [];
-  // All pictures are there before any file is written.
-  const frames = folder ? await inTeam(options, signal, (team, show) => frameFiles(team, scenario, show)) : {};
   if (out) {
     const files = {
       ...filesOf(comparison, commandLine(name, options)),
@@ -320,6 +321,8 @@ async function writeAll(
     written.push(`${Object.keys(charts).length} charts in ${join(out, 'charts')}`);
   }
   if (folder) {
+    // All pictures are there before any of them is written.
+    const frames = await inTeam(options, signal, (team, show) => frameFiles(team, scenario, show));
     writeFolder(folder, frames);
     written.push(`${Object.keys(frames).length} pictures in ${folder}`);
   }
@@ -328,7 +331,6 @@ async function writeAll(
     const asked = { format, region, instants, ...(stride ? { stride } : {}) };
     written.push(await inTeam(options, signal, (team, show) => writeSnapshots(out, team, scenario, asked, show)));
   }
-  return written;
 }
 
 async function compared(name: string, options: CompareFlags, signal: AbortSignal): Promise<Comparison> {

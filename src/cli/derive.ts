@@ -5,7 +5,7 @@ import { formatQuantity } from '../elementary/quantity.ts';
 import { Refusal } from '../run/compare.ts';
 import { loadScenario } from '../scenario/load.ts';
 import { InputError, readScenario } from './input.ts';
-import { writeWhole } from './output.ts';
+import { refuseUnwritable, writeWhole } from './output.ts';
 import { readRows } from './rows.ts';
 import { Walk } from './walk.ts';
 
@@ -49,6 +49,7 @@ export function addDeriveCommand(program: Command, signal: AbortSignal): void {
         '\nExample: fieldassay derive centre-fed-wire radiation --at frequencies.csv --steady\n',
     )
     .action(async (name: string, quantity: DerivedName, flags: DeriveFlags) => {
+      refuseUnwritable([], [flags.out]);
       const derived = await deriveCommand(readScenario(name), quantity, flags, signal);
       if (flags.out) writeWhole(flags.out, derivedCsv(derived));
       if (flags.json) process.stdout.write(`${JSON.stringify(derivedSchema.parse(derived), null, 2)}\n`);

@@ -6,10 +6,10 @@ import { readForeignTraces } from '../files/foreignTraces.ts';
 import { parseTraceMap, type TraceMap } from '../files/traceMap.ts';
 import { JUDGE_FILES, judgeFile, judgeJson, judgeText } from '../report/judge.ts';
 import { judgementCases } from '../report/junit.ts';
-import { judge, judgeQuestion, observerPlaces } from '../run/judge.ts';
+import { type JudgeQuestion, judge, judgeQuestion } from '../run/judge.ts';
 import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readInput, readScenario } from './input.ts';
-import { quoted, reasonOf, writeFolder } from './output.ts';
+import { keepAndTell, quoted, reasonOf, refuseUnwritable, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 
 interface JudgeFlags extends GateFlags {
@@ -77,6 +77,7 @@ export function addJudgeCommand(program: Command, signal: AbortSignal, end: (wit
         'Example: fieldassay judge mine.json --traces probes.csv --unit time=ns --column A.Ez="Probe 1 [V/m]" --cell "4 mm" --out judged\n',
     )
     .action(async (name: string, flags: JudgeFlags) => {
+      refuseUnwritable([flags.out], [flags.junit]);
       const gate = gateOf(flags);
       const question = judgeQuestion(readScenario(name), flags.cell === undefined ? undefined : numberOr(flags.cell));
       const { traces, notes } = readGiven(flags, question);
@@ -88,26 +89,28 @@ export function addJudgeCommand(program: Command, signal: AbortSignal, end: (wit
         onProgress: line.show,
       }).finally(line.end);
       const { result } = judged;
-      if (flags.out)
-        writeFolder(
-          flags.out,
-          Object.fromEntries(JUDGE_FILES.map((file) => [file, judgeFile(file, judged, commandLine(name, flags))])),
-        );
-      if (flags.json) process.stdout.write(judgeJson(result));
-      else
-        process.stdout.write(
-          judgeText(result, {
-            colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
-            written: flags.out ? JUDGE_FILES.map((file) => `${flags.out}/${file}`) : [],
-          }),
-        );
+      await keepAndTell(
+        (written) => {
+          if (!flags.out) return;
+          const command = commandLine(name, flags);
+          writeFolder(
+            flags.out,
+            Object.fromEntries(JUDGE_FILES.map((file) => [file, judgeFile(file, judged, command)])),
+          );
+          written.push(...JUDGE_FILES.map((file) => `${flags.out}/${file}`));
+        },
+        (written) =>
+          flags.json
+            ? judgeJson(result)
+            : judgeText(result, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
+      );
       const held = gate(result, `judge ${name}`, judgementCases(result), result.timings.seconds);
       end(held && tracesWithinTolerance(result));
     });
 }
 
 /** The traces of the file that was named. @throws InputError naming the file, and row and column of what cannot be used */
-function readGiven(flags: JudgeFlags, { scenario }: ReturnType<typeof judgeQuestion>) {
+function readGiven(flags: JudgeFlags, { places }: JudgeQuestion) {
   let bytes: Uint8Array;
   try {
     bytes = readFileSync(flags.traces);
@@ -115,12 +118,7 @@ function readGiven(flags: JudgeFlags, { scenario }: ReturnType<typeof judgeQuest
     throw new InputError(`the traces ${flags.traces} could not be read: ${reasonOf(error)}`);
   }
   const map = refusing(flags.map ?? 'options', () => mapOf(flags));
-  return refusing(flags.traces, () =>
-    readForeignTraces(flags.traces, bytes, map, {
-      observers: observerPlaces(scenario),
-      permeability: scenario.medium.permeability,
-    }),
-  );
+  return refusing(flags.traces, () => readForeignTraces(flags.traces, bytes, map, places));
 }
 
 function refusing<T>(what: string, job: () => T): T {

@@ -5,7 +5,7 @@ import { PLAN_FILES, planFile, planJson, planText } from '../report/plan.ts';
 import { planScenario } from '../run/plan.ts';
 import { type Kind, parseFraction, parseQuantity } from '../scenario/units.ts';
 import { readScenario } from './input.ts';
-import { quoted, writeFolder } from './output.ts';
+import { keepAndTell, quoted, refuseUnwritable, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 
 interface PlanFlags {
@@ -67,16 +67,19 @@ export function addPlanCommand(
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threads)
     .addHelpText('after', '\nExample: fieldassay plan bench-cable-pulse --tolerance "2 %" --out plan\n')
     .action(async (name: string, flags: PlanFlags) => {
+      refuseUnwritable([flags.out], []);
       const plan = await planned(name, flags, signal);
-      if (flags.out) writeFolder(flags.out, filesOf(plan, commandLine(name, flags)));
-      if (flags.json) process.stdout.write(planJson(plan));
-      else
-        process.stdout.write(
-          planText(plan, {
-            colour: process.stdout.isTTY === true && !process.env.NO_COLOR,
-            written: flags.out ? PLAN_FILES.map((file) => `${flags.out}/${file}`) : [],
-          }),
-        );
+      await keepAndTell(
+        (written) => {
+          if (!flags.out) return;
+          writeFolder(flags.out, filesOf(plan, commandLine(name, flags)));
+          written.push(...PLAN_FILES.map((file) => `${flags.out}/${file}`));
+        },
+        (written) =>
+          flags.json
+            ? planJson(plan)
+            : planText(plan, { colour: process.stdout.isTTY === true && !process.env.NO_COLOR, written }),
+      );
       end(plan.met);
     });
 }

@@ -1,5 +1,6 @@
 import { closeSync, ftruncateSync, mkdirSync, openSync, readdirSync, renameSync, rmSync, writeSync } from 'node:fs';
 import { join } from 'node:path';
+import { getSystemErrorMap } from 'node:util';
 import { SnapshotFile } from '../files/hdf5.ts';
 import { collection, framing, type ImageData, imageData, imageName, type Patch, patches } from '../files/vti.ts';
 import { fileWords } from '../files/words.ts';
@@ -13,7 +14,7 @@ import { loadScenario } from '../scenario/load.ts';
 import type { Scenario } from '../scenario/model.ts';
 import { planesShown } from '../scene/slices.ts';
 import type { Slab, SnapshotFrame, SnapshotRegion } from '../trace/snapshots.ts';
-import { unwritable, writeWhole } from './output.ts';
+import { partOf, unwritable, writeWhole } from './output.ts';
 
 export const SNAPSHOT_FORMATS = ['vti', 'hdf5'] as const;
 export const SNAPSHOT_REGIONS = ['planes', 'box', 'all'] as const;
@@ -74,10 +75,10 @@ interface Sink {
   discard(): void;
 }
 
-/** Writes runs of bytes into a file, which is made, or stretched, as needed. */
+/** Writes runs of bytes into what is to be a file, which is made, or stretched, as needed. */
 function writePatches(path: string, list: readonly Patch[], flag: 'w' | 'r+', size?: number): void {
   try {
-    const file = openSync(path, flag);
+    const file = openSync(partOf(path), flag);
     try {
       if (size !== undefined) ftruncateSync(file, size);
       for (const { at, bytes } of list)
@@ -98,17 +99,15 @@ function imageSink(folder: string, regions: readonly SnapshotRegion[], frame: Sn
   }
   const files = regions.map((region) =>
     Array.from(frame.instants.E, (_, m) => {
-      const name = imageName(region, m);
-      const part = join(folder, `.${name}.${process.pid}.part`);
-      return { name, part, image: imageData(region, frame, m) };
+      return { path: join(folder, imageName(region, m)), image: imageData(region, frame, m) };
     }),
   );
   const discard = () => {
-    for (const { part } of files.flat()) rmSync(part, { force: true });
+    for (const { path } of files.flat()) rmSync(partOf(path), { force: true });
   };
   try {
     regions.forEach((region, n) => {
-      for (const { part, image } of files[n]!) writePatches(part, framing(image, region, frame), 'w', image.size);
+      for (const { path, image } of files[n]!) writePatches(path, framing(image, region, frame), 'w', image.size);
     });
   } catch (error) {
     discard();
@@ -116,17 +115,22 @@ function imageSink(folder: string, regions: readonly SnapshotRegion[], frame: Sn
   }
   return {
     take(n, slab) {
-      files[n]!.forEach(({ part, image }: { part: string; image: ImageData }, m) => {
-        writePatches(part, patches(image, regions[n]!, frame, slab, m), 'r+');
+      files[n]!.forEach(({ path, image }: { path: string; image: ImageData }, m) => {
+        writePatches(path, patches(image, regions[n]!, frame, slab, m), 'r+');
       });
     },
     finish() {
-      regions.forEach((region, n) => {
-        const own = new RegExp(`^${region.name}-\\d+\\.vti$`);
-        for (const name of readdirSync(folder)) if (own.test(name)) rmSync(join(folder, name));
-        for (const { name, part } of files[n]!) renameSync(part, join(folder, name));
-        writeWhole(join(folder, `${region.name}.pvd`), collection(region, frame));
-      });
+      // Where there is no room for these, what was there before stays.
+      for (const region of regions) writeWhole(join(folder, `${region.name}.pvd`), collection(region, frame));
+      try {
+        regions.forEach((region, n) => {
+          const own = new RegExp(`^${region.name}-\\d+\\.vti$`);
+          for (const name of readdirSync(folder)) if (own.test(name)) rmSync(join(folder, name));
+          for (const { path } of files[n]!) renameSync(partOf(path), path);
+        });
+      } catch (error) {
+        throw unwritable(folder, error);
+      }
       return `${files.flat().length} images and ${regions.map(({ name }) => `${name}.pvd`).join(', ')} in ${folder}`;
     },
     discard,
@@ -137,7 +141,9 @@ function imageSink(folder: string, regions: readonly SnapshotRegion[], frame: Sn
 function plainReason(error: unknown): unknown {
   if (!(error instanceof Error) || 'code' in error) return error;
   const [, reason] = /error message = '([^']+)'/.exec(error.message) ?? [];
-  return new Error(reason ?? error.message.split('\n')[0]);
+  if (reason === undefined) return new Error(error.message.split('\n')[0]);
+  const [code] = [...getSystemErrorMap().values()].find(([, words]) => words === reason.toLowerCase()) ?? [];
+  return Object.assign(new Error(reason), { code });
 }
 
 async function hdf5Sink(
@@ -151,7 +157,7 @@ async function hdf5Sink(
   // Else the library tells of what fails on standard error, at length, and goes on.
   module.activate_throwing_error_handler();
   const path = join(folder, 'fields.h5');
-  const part = join(folder, `.fields.h5.${process.pid}.part`);
+  const part = partOf(path);
   const guarded = <T>(act: () => T): T => {
     try {
       return act();

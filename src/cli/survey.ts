@@ -10,10 +10,10 @@ import { wholeSurvey } from '../run/surveyCases.ts';
 import { EXAMPLES } from '../scenario/examples.ts';
 import { describeProblem } from '../scenario/load.ts';
 import { loadSurvey, type Survey } from '../scenario/survey.ts';
-import { folderStore, sweepStore } from './caseStore.ts';
+import { folderStore } from './caseStore.ts';
 import { InputError, readInput, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
-import { quoted, writeFolder } from './output.ts';
+import { keepAndTell, quoted, refuseUnwritable, sweepParts, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 import { queueAddress } from './queue.ts';
 
@@ -87,6 +87,7 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
   const shard = flags.shard === undefined ? null : shardOf(flags.shard);
   const survey = readSurvey(file);
   const folder = join(out, 'cases');
+  refuseUnwritable([out, folder], []);
   const address = queue === undefined ? null : await queueAddress(queue);
   const line = progressLine(false);
   const options: SurveyOptions = {
@@ -97,13 +98,13 @@ async function surveyCommand(file: string | undefined, flags: SurveyFlags, signa
     store: announcing(folderStore(folder), file, out, survey),
   };
   const came = await (shard ? runShard(survey, shard, options) : runSurvey(survey, options)).finally(line.end);
-  sweepStore(folder);
+  sweepParts(folder);
   if ('shard' in came) {
     writeFolder(out, { [partName(came.shard)]: `${JSON.stringify(came)}\n` });
     process.stdout.write(partText(came, out));
     return Object.values(came.cases).every(({ status }) => status !== 'failed');
   }
-  write(came, out, surveyCommandLine(file, flags, address?.url), flags);
+  await write(came, out, surveyCommandLine(file, flags, address?.url), flags);
   return allWell(came);
 }
 
@@ -177,7 +178,7 @@ async function mergeCommand(file: string | undefined, flags: SurveyFlags): Promi
       `missing: ${cases} case${cases === 1 ? '' : 's'} of part ${shard.index} of ${shard.count}, ` +
         `${part ? 'whose cases folder is not here' : 'which is not here'}\n`,
     );
-  write(result, out, `npx fieldassay survey --merge ${quoted(folder)}`, flags);
+  await write(result, out, `npx fieldassay survey --merge ${quoted(folder)}`, flags);
   return allWell(result);
 }
 
@@ -216,17 +217,15 @@ function storeOver(folders: readonly string[]): CaseStore {
   };
 }
 
-function write(result: SurveyResult, out: string, command: string, { json }: SurveyFlags): void {
+async function write(result: SurveyResult, out: string, command: string, { json }: SurveyFlags): Promise<void> {
   const files = surveyFiles(result, command);
-  writeFolder(out, files);
-  if (json) process.stdout.write(files['survey-result.json']!);
-  else
-    process.stdout.write(
-      surveyText(
-        result,
-        Object.keys(files).map((name) => `${out}/${name}`),
-      ),
-    );
+  await keepAndTell(
+    (written) => {
+      writeFolder(out, files);
+      written.push(...Object.keys(files).map((name) => `${out}/${name}`));
+    },
+    (written) => (json ? files['survey-result.json']! : surveyText(result, written)),
+  );
 }
 
 const allWell = ({ cases }: SurveyResult): boolean => cases.every(({ status }) => status !== 'failed');

@@ -34,6 +34,11 @@ export interface GridOptions {
   readonly region?: Region;
 }
 
+/** The machine does not give the memory that a run needs. */
+export class OutOfMemory extends Error {
+  override readonly name = 'OutOfMemory';
+}
+
 /** What a following thread needs; structured-cloneable. */
 export interface GridSetup {
   readonly memory: WebAssembly.Memory;
@@ -93,6 +98,7 @@ export interface GridResult {
 }
 
 /** Indices of the 32-bit words by which leader and followers talk; see also assembly/fdtd/memory.ts. */
+const STOP = 256;
 const ORDERS = 512;
 const COMMAND = 513;
 const ADDRESS = 514;
@@ -109,7 +115,7 @@ const LEAVE = 5;
 
 /**
  * Allocates the memory of a run and writes what does not change while it marches.
- * @throws RangeError naming quantity, value, limit and remedy, where the problem cannot be run
+ * @throws RangeError naming quantity, value, limit and remedy, where the problem cannot be run; OutOfMemory
  */
 export function prepareGridRun(problem: GridProblem, options: GridOptions = {}): GridRun {
   const threads = options.threads ?? 1;
@@ -175,16 +181,14 @@ function cleared(memory: WebAssembly.Memory): WebAssembly.Memory {
 
 function allocate(bytes: number, problem: GridProblem): WebAssembly.Memory {
   const pages = Math.ceil(bytes / 65536);
-  const refusal = (why: string) =>
-    new RangeError(
-      `the run needs ${(bytes / 2 ** 30).toFixed(2)} GiB of address space; ${why}. ` +
-        `Raise grid.cellSize (now ${problem.cellSize.join(' × ')} m), shrink grid.box or read fewer samples.`,
-    );
-  if (pages > 65536) throw refusal('4 GiB is the limit of 32-bit WebAssembly');
+  const words = (why: string) =>
+    `the run needs ${(bytes / 2 ** 30).toFixed(2)} GiB of address space; ${why}. ` +
+    `Raise grid.cellSize (now ${problem.cellSize.join(' × ')} m), shrink grid.box or read fewer samples.`;
+  if (pages > 65536) throw new RangeError(words('4 GiB is the limit of 32-bit WebAssembly'));
   try {
     return new WebAssembly.Memory({ initial: pages, maximum: pages, shared: true });
   } catch {
-    throw refusal('this machine does not give as much');
+    throw new OutOfMemory(words('this machine does not give as much'));
   }
 }
 
@@ -246,19 +250,33 @@ function perform(
   return fillShare(kernel, setup, thread, interrupted);
 }
 
-/** Helps a leading thread until it is done; blocks the calling thread, which must not be a page's main thread. */
+/** Ends a run on all its threads, from any other: where one of them is lost, the rest would wait for it. */
+export function callOff({ memory }: GridSetup): void {
+  const words = new Int32Array(memory.buffer, 0, WORDS);
+  Atomics.store(words, STOP, 1);
+  for (const word of [ORDERS, DONE]) Atomics.notify(words, word);
+}
+
+/**
+ * Helps a leading thread until it is done or the run is called off; blocks the calling thread, which must not be a page's
+ * main thread.
+ */
 export function follow(setup: GridSetup): void {
   const words = new Int32Array(setup.memory.buffer, 0, WORDS);
   const thread = Atomics.add(words, JOINED, 1) + 1;
   if (thread >= setup.threads) return;
-  const kernel = readyKernel(setup, () => false);
+  const calledOff = () => Atomics.load(words, STOP) !== 0;
+  const kernel = readyKernel(setup, calledOff);
   let gatherings = 0;
   for (let order = 1; ; order++) {
-    while (Atomics.load(words, ORDERS) < order) Atomics.wait(words, ORDERS, order - 1, 1000);
+    while (Atomics.load(words, ORDERS) < order) {
+      if (calledOff()) return;
+      Atomics.wait(words, ORDERS, order - 1, 1000);
+    }
     const command = words[COMMAND]!;
     const count = words[COUNT]!;
     if (command === LEAVE) return;
-    perform(kernel, setup, thread, command, words[ADDRESS]! >>> 0, count, gatherings, () => false);
+    perform(kernel, setup, thread, command, words[ADDRESS]! >>> 0, count, gatherings, calledOff);
     if (command === SWEEP) gatherings += 2 * count;
     Atomics.add(words, DONE, 1);
     Atomics.notify(words, DONE);
@@ -272,9 +290,9 @@ export function follow(setup: GridSetup): void {
 export function lead(run: GridRun, hooks: LeadHooks = {}): GridResult {
   const { problem, setup } = run;
   const { schedule, threads, memory, tables } = setup;
-  const cancelled = hooks.cancelled ?? (() => false);
-  const kernel = readyKernel(setup, cancelled);
   const words = new Int32Array(memory.buffer, 0, WORDS);
+  const cancelled = () => Atomics.load(words, STOP) !== 0 || hooks.cancelled?.() === true;
+  const kernel = readyKernel(setup, cancelled);
   let gatherings = 0;
 
   /** Has all threads do something; false when the run was called off. */

@@ -1,4 +1,4 @@
-import { COMPONENTS, type Component, type Trace } from '../trace/trace.ts';
+import { COMPONENTS, type Component, FEWEST_SAMPLES, type Trace } from '../trace/trace.ts';
 import { type NpyArray, readNpz } from './npyReader.ts';
 import {
   componentOf,
@@ -34,13 +34,11 @@ export interface ReadTraces {
   readonly notes: readonly string[];
 }
 
-/** Fewer samples than this make no trace. */
-const FEWEST = 8;
-
 /**
  * Traces from the bytes of a file: our own traces.csv and traces.npz as they are, other CSV texts and NumPy files by their
  * headers and a map. Times are put in order; a time that stands twice with one value counts once.
  * @param name of the file: its ending tells its kind
+ * @param known `places` of the question that the traces answer (`judgeQuestion`)
  * @throws RangeError naming row, column and value of what cannot be used
  */
 export function readForeignTraces(name: string, bytes: Uint8Array, map: TraceMap, known: KnownPlaces): ReadTraces {
@@ -123,9 +121,9 @@ function ordered(traces: readonly Trace[]): ReadTraces {
 function refuseEmpty(traces: readonly Trace[]): readonly Trace[] {
   if (traces.length === 0) throw new RangeError('holds no trace that could be judged');
   for (const { observer, component, time } of traces)
-    if (time.length < FEWEST)
+    if (time.length < FEWEST_SAMPLES)
       throw new RangeError(
-        `${component} at observer “${observer}” has ${time.length} samples; a trace needs at least ${FEWEST}`,
+        `${component} at observer “${observer}” has ${time.length} samples; a trace needs at least ${FEWEST_SAMPLES}`,
       );
   return traces;
 }

@@ -18,8 +18,11 @@ export function workerScript(): string {
   throw new Error('the worker (dist/worker.js) is missing: run `npm run build`');
 }
 
-/** Options for the pool's worker constructor. */
-export const poolOptions = { workerType: 'thread' } as const;
+/**
+ * Options for the pool's worker constructor. Flags of this process stay with it: a worker that got `--input-type`, with
+ * which a program from standard input is run, would refuse its own file.
+ */
+export const poolOptions = { workerType: 'thread', workerThreadOpts: { execArgv: [] } } as const;
 
 /** The host, for a result's `environment`. */
 export const hostName = (): string => `Node ${version.slice(1)}, ${process.platform} ${process.arch}`;

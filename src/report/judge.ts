@@ -120,12 +120,12 @@ function shownCauses({ causes }: Judgement): TriedCause[] {
 }
 
 export interface JudgeTextOptions {
-  readonly colour: boolean;
+  readonly colour?: boolean;
   readonly written?: readonly string[];
 }
 
 /** What `judge` prints. Whatever names and files hold, only this function's own escapes reach the terminal. */
-export function judgeText(result: Judgement, { colour, written = [] }: JudgeTextOptions): string {
+export function judgeText(result: Judgement, { colour = false, written = [] }: JudgeTextOptions = {}): string {
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
   const red = (text: string): string => (colour ? `\u001b[38;5;160m${text}\u001b[0m` : text);
   const rows = rowsOf(result);
@@ -208,7 +208,7 @@ export function judgeHtml({ result, traces, spectra }: JudgeFindings, command: s
   const title = result.title === '' ? 'Untitled scenario' : result.title;
   return page(
     title,
-    markup`<p class="muted">Fieldassay ${result.version} · <bdi>${title}</bdi> · traces of <bdi>${result.traces.file}</bdi></p>
+    markup`<p class="muted">Fieldassay ${result.version} · <bdi>${title}</bdi> ·${result.traces.file ? markup` traces of <bdi>${result.traces.file}</bdi>` : ' traces'}</p>
 <h1>${result.sentence}</h1>
 ${tracesWithinTolerance(result) ? null : markup`<p class="outside">Outside the tolerance of ${formatPercent(result.tolerance, 3)}.</p>`}
 ${result.details.map((detail) => markup`<p>${detail}</p>`)}

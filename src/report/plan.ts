@@ -70,13 +70,13 @@ export function costLines({ chosen, machine, own, check }: Plan): string[] {
 }
 
 export interface PlanTextOptions {
-  readonly colour: boolean;
+  readonly colour?: boolean;
   /** files that were written, as they are to be shown */
   readonly written?: readonly string[];
 }
 
 /** What `plan` prints: the set-up, what it costs, its errors by place and part, the trade-off, and the other boundaries. */
-export function planText(plan: Plan, { colour, written = [] }: PlanTextOptions): string {
+export function planText(plan: Plan, { colour = false, written = [] }: PlanTextOptions = {}): string {
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
   const right = Array.from({ length: 6 }, () => 'right' as const);
   const setups = (list: readonly PlannedSetup[]) =>

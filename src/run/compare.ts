@@ -17,7 +17,9 @@ import { boxProblem, questionOf } from './question.ts';
 import { Refusal } from './refusal.ts';
 import { withRemedy } from './remedy.ts';
 
+export { OutOfMemory } from '../fdtd/run.ts';
 export type { Comparison } from './conclude.ts';
+export { WorkerDied } from './pool.ts';
 export { Refusal } from './refusal.ts';
 
 export interface CompareOptions {
@@ -36,7 +38,7 @@ export interface CompareOptions {
  * Both solvers on one scenario: the grid in its box, the same grid without walls, the exact field of the gridded currents
  * and of the designed ones, over the same places and instants; and what their differences say.
  * @param input a scenario: the text of its file, or what JSON.parse made of it
- * @throws Refusal naming every problem of the scenario; Error where a worker died; the signal's reason when aborted
+ * @throws Refusal naming every problem of the scenario; WorkerDied; OutOfMemory; the signal's reason when aborted
  */
 export async function compareSolvers(input: unknown, options: CompareOptions = {}): Promise<Comparison> {
   // Workers take as long to come up as a case to be prepared: the one passes while the other does.
@@ -66,7 +68,7 @@ export function prepareCase(json: unknown, fusedMultiplyAdd = false, limit = mem
 
 /**
  * Answers and what they say.
- * @throws Error where a worker died
+ * @throws WorkerDied
  */
 export async function solvePrepared(prepared: Asked, means: Means): Promise<Comparison> {
   return conclude({ ...prepared, answers: await answer(prepared, means), threads: means.gridThreads });

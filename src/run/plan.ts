@@ -51,7 +51,7 @@ const SINGLE_SERVES = 2e-3;
  * The cheapest cell size, boundary and clearance whose predicted error of E meets a tolerance, found without a run and
  * checked by one where it is short.
  * @param input a scenario; of its grid only the proportions of the cells, `courant`, `gridding` and `precision` count
- * @throws Refusal naming every problem; Error where a worker died; the signal's reason when aborted
+ * @throws Refusal naming every problem; WorkerDied; the signal's reason when aborted
  */
 export async function planScenario(input: unknown, options: PlanOptions = {}): Promise<Plan> {
   const asked = given(input);

@@ -3,6 +3,7 @@ import { prepareGridRun } from '../fdtd/run.ts';
 import { distanceToSources } from '../scenario/distance.ts';
 import type { Axis, Plane, Scenario, Vec3 } from '../scenario/model.ts';
 import { type Instants, instantsOf, STAGGER, samplePoints } from '../trace/trace.ts';
+import { withFollowers } from './gridRun.ts';
 import type { Team } from './pool.ts';
 import { boxProblem, type Question } from './question.ts';
 
@@ -135,9 +136,7 @@ export async function filmGrid(
   if (team.threads === 1) return await team.run('filmAlone', [packed, shapes], onEvent);
   const { problem: _, region: __, ...prepared } = prepareGridRun(problem, { threads: team.threads });
   const leader = team.run('leadFilm', [packed, prepared, shapes], onEvent);
-  const followers = Array.from({ length: team.threads - 1 }, () => team.run('followGrid', [prepared.setup]));
-  const [traced] = await Promise.all([leader, ...followers]);
-  return traced;
+  return await withFollowers(team, prepared.setup, leader);
 }
 
 /** A slice as the worker that leads knows it. */

@@ -1,5 +1,6 @@
 import workerpool from 'workerpool';
 import { poolOptions, workerScript } from '#platform';
+import { OutOfMemory } from '../fdtd/run.ts';
 import type { Tasks } from './worker.ts';
 
 type TaskName = keyof Tasks;
@@ -19,11 +20,16 @@ const DOING: Readonly<Record<TaskName, string>> = {
   judge: 'the judgement of the traces',
 };
 
-/** The error of a worker that did not live to answer. Its own has the machinery's words over many lines. */
-function died(task: TaskName, threads: number, error: Error): Error {
+/** A worker thread did not live to answer: nothing is wrong with what was asked, it may go well the next time. */
+export class WorkerDied extends Error {
+  override readonly name = 'WorkerDied';
+}
+
+/** A worker's death in words. Its own error has the machinery's over many lines. */
+function died(task: TaskName, threads: number, error: Error): WorkerDied {
   const [, code] = /exitCode: `(\d+)`/.exec(error.message) ?? [];
   const [, reason] = /^Workerpool Worker error: (.*)/.exec(error.message) ?? [];
-  return new Error(
+  return new WorkerDied(
     `a worker thread ended before it was done with ${DOING[task]} (${reason ?? (code ? `exit code ${code}` : 'for no reason given')}); ` +
       `mostly it is memory that runs out. Run it again with fewer threads than ${threads}, raise grid.cellSize or shrink grid.box.`,
     { cause: error },
@@ -45,7 +51,7 @@ export class Team {
   /**
    * Runs one task in a worker.
    * @param onEvent receives what the task emits meanwhile (progress)
-   * @throws Error what the task threw, or that the worker died, and what may help
+   * @throws WorkerDied; else what the task threw, as an Error
    */
   async run<T extends TaskName>(
     task: T,
@@ -55,7 +61,9 @@ export class Team {
     try {
       return await this.#pool.exec(task, args as unknown[], onEvent ? { on: onEvent } : {});
     } catch (error) {
-      throw error instanceof workerpool.TerminateError ? died(task, this.threads, error) : error;
+      if (error instanceof workerpool.TerminateError) throw died(task, this.threads, error);
+      // Its class was lost on the way from the worker.
+      throw (error as Error).name === 'OutOfMemory' ? new OutOfMemory((error as Error).message) : error;
     }
   }
 

@@ -69,7 +69,7 @@ const SLAB_BYTES = 8 * 2 ** 20;
  * there are more the grid marches again) and one slab of the exact field, however large the regions are. Runs of their own:
  * keeping fields changes no number of the comparison.
  * @param take is given each slab, with the number of its region, in no promised order
- * @throws Error where a worker died; what `take` throws
+ * @throws WorkerDied; what `take` throws
  */
 export async function takeSnapshots(
   team: Team,

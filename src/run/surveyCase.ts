@@ -16,7 +16,7 @@ import { measureAngles, measureReflection, type WallAngles } from './reflection.
 /**
  * One case of a survey: the comparison, and where asked what its walls send back.
  * @param limit bytes that one run may take
- * @throws Refusal for a scenario with problems; Error where a worker died
+ * @throws Refusal for a scenario with problems; WorkerDied
  */
 export async function runCase(
   json: unknown,

@@ -78,6 +78,9 @@ export function instantsOf(steps: number, timeStep: number, every = 1): Instants
   return { count, E, H };
 }
 
+/** Fewer samples than this make no trace. */
+export const FEWEST_SAMPLES = 8;
+
 /** One component at one place, as any solver may give it: sampled at instants of its own. */
 export interface Trace {
   readonly observer: string;

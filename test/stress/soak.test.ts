@@ -4,22 +4,42 @@ import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { createInterface } from 'node:readline';
 import { expect, onTestFinished, test } from 'vitest';
+import { SMALL } from '../run/surveyFolder.ts';
+import { trendOf } from './steadiness.ts';
 
-/** For so long comparisons follow each other in one process, minutes. */
+/** For so long rounds follow each other in one process, minutes. */
 const MINUTES = 8;
-/** Comparisons before anything is measured: code is compiled and pools of memory fill. */
-const WARM = 10;
+/** Rounds before anything is measured: code is compiled and pools of memory fill. */
+const WARM = 20;
 
+/**
+ * What may be added a round, bytes, at most. The least that a round could leave behind is one comparison's answer (above
+ * 1 MB: its volume samples are typed arrays, its result some 100 kB of objects) or one team of workers (a thread's stack and
+ * heap, several MB), so that a tenth of the answer and half of the result tell a leak from none. What the system counts
+ * plays more than what the engine counts.
+ */
+const MOST = { rss: 100e3, heapUsed: 50e3, arrayBuffers: 100e3, external: 100e3 } as const;
+
+/** A round: a comparison, one that is broken off in the middle, one that is refused. */
 const PROGRAM = `
-  import { compare, EXAMPLES } from '${new URL('../../dist/index.js', import.meta.url).href}';
+  import { compare } from '${new URL('../../dist/index.js', import.meta.url).href}';
   const end = performance.now() + ${MINUTES * 60_000};
-  for (let n = 0; performance.now() < end; n++) {
-    await compare(EXAMPLES['small-loop']);
+  const scenario = ${JSON.stringify({ ...SMALL, duration: '2.4 ns' })};
+  const unwell = (run) => run.then(() => { throw new Error('it ended well'); }, () => {});
+  while (performance.now() < end) {
+    await compare(scenario);
+    const stop = new AbortController();
+    const onProgress = ({ fraction }) => { if (fraction > 0.5) stop.abort(); };
+    await unwell(compare(scenario, { signal: stop.signal, onProgress }));
+    await unwell(compare({ ...scenario, duration: '3 mm' }));
     gc();
     const { rss, heapUsed, arrayBuffers, external } = process.memoryUsage();
-    console.log(JSON.stringify({ rss, heapUsed, arrayBuffers, external }));
+    const held = process.getActiveResourcesInfo().length;
+    console.log(JSON.stringify({ rss, heapUsed, arrayBuffers, external, held }));
   }
 `;
+
+type Taken = Record<keyof typeof MOST | 'held', number>;
 
 test('memory stays flat over comparisons without end', async () => {
   const folder = mkdtempSync(join(tmpdir(), 'soak-'));
@@ -27,21 +47,24 @@ test('memory stays flat over comparisons without end', async () => {
   const program = join(folder, 'soak.mjs');
   writeFileSync(program, PROGRAM);
   const child = spawn(process.execPath, ['--expose-gc', program], { stdio: ['ignore', 'pipe', 'inherit'] });
-  const taken: Record<'rss' | 'heapUsed' | 'arrayBuffers' | 'external', number>[] = [];
+  const taken: Taken[] = [];
   for await (const line of createInterface(child.stdout)) taken.push(JSON.parse(line));
   expect(child.exitCode ?? (await new Promise((done) => child.once('close', done)))).toBe(0);
-  expect(taken.length).toBeGreaterThan(3 * WARM);
-  const part = Math.floor((taken.length - WARM) / 3);
-  const median = (from: number, key: 'rss' | 'heapUsed' | 'arrayBuffers' | 'external') =>
-    taken
-      .slice(from, from + part)
-      .map((m) => m[key])
-      .sort((a, b) => a - b)[part >> 1]! / 1e6;
-  for (const key of ['rss', 'heapUsed', 'arrayBuffers', 'external'] as const) {
-    const first = median(WARM, key);
-    const last = median(taken.length - part, key);
-    console.log(`${key}: ${first.toFixed(1)} MB, after ${taken.length} comparisons ${last.toFixed(1)} MB`);
-    // What leaks with every comparison (its smallest answer is 1 MB) would add up to far more than an allocator's play.
-    expect(last - first, key).toBeLessThan(Math.max(10, 0.1 * first));
-  }
+  // Fewer could not tell a rise of a tenth of a megabyte from an allocator's play.
+  const measured = taken.slice(WARM);
+  expect(measured.length).toBeGreaterThan(60);
+  const trends = (Object.keys(MOST) as (keyof typeof MOST)[]).map((key) => {
+    const values = measured.map((each) => each[key]);
+    const { rise, error } = trendOf(values);
+    const megabytes = (n: number) => (values[n]! / 1e6).toFixed(1);
+    console.log(
+      `${key}: ${megabytes(0)} MB, after ${values.length} rounds more ${megabytes(values.length - 1)} MB; ` +
+        `${(rise / 1e3).toFixed(1)} ± ${(error / 1e3).toFixed(1)} kB a round, at most ${MOST[key] / 1e3} kB`,
+    );
+    return { key, rise, error };
+  });
+  // Two standard errors: what is not surely below the bound does not pass.
+  for (const { key, rise, error } of trends) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
+  // Threads, ports and timers that are left behind.
+  expect(Math.max(...measured.map(({ held }) => held))).toBeLessThanOrEqual(taken[0]!.held);
 });

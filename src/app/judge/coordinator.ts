@@ -1,6 +1,6 @@
 import { readForeignTraces } from '../../files/foreignTraces.ts';
 import { judgeTraces } from '../../run/judge/judgeTraces.ts';
-import { judgeQuestion, observerPlaces } from '../../run/judge.ts';
+import { judgeQuestion } from '../../run/judge.ts';
 import { Refusal } from '../../run/refusal.ts';
 import type { JudgeReport, JudgeRequest } from './messages.ts';
 
@@ -10,11 +10,8 @@ const tell = (report: JudgeReport) => postMessage(report);
 addEventListener('message', ({ data }: MessageEvent<JudgeRequest>) => {
   const { scenario: input, name, bytes, map, cellSize } = data;
   try {
-    const { scenario, json } = judgeQuestion(input, cellSize);
-    const { traces, notes } = readForeignTraces(name, bytes, map, {
-      observers: observerPlaces(scenario),
-      permeability: scenario.medium.permeability,
-    });
+    const { scenario, json, places } = judgeQuestion(input, cellSize);
+    const { traces, notes } = readForeignTraces(name, bytes, map, places);
     const judged = judgeTraces(scenario, json, traces, name, notes, (stage, fraction) =>
       tell({ kind: 'progress', stage, fraction }),
     );

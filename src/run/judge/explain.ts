@@ -63,9 +63,11 @@ export function explain(
     };
     best.set(cause, { trial, rest, score });
   };
+  let furthest = 0;
   for (const trial of trials(refit, json)) {
     take(trial);
-    onProgress((0.8 * (CAUSES.indexOf(trial.cause) + 1)) / CAUSES.length);
+    furthest = Math.max(furthest, CAUSES.indexOf(trial.cause) + 1);
+    onProgress((0.8 * furthest) / CAUSES.length);
   }
   const ordered = () => [...best.values()].sort((a, b) => a.score - b.score);
   const [exact, sound] = refit.bases;

@@ -21,7 +21,8 @@ const { result } = await compare(scenario, {
   onProgress: ({ stage, fraction }) => process.stderr.write(`${Math.round(100 * fraction)} % ${stage}\r`),
 });
 console.log(resultText(result));
-console.log(`The lattice makes ${(100 * result.budget.lattice.relativeL2).toPrecision(2)} % of E.`);
+const lattice = result.budget.lattice?.relativeL2; // null where free space cannot be told from the walls
+if (lattice) console.log(`The lattice makes ${(100 * lattice).toPrecision(2)} % of E.`);
 
 // What cannot be run is refused, with the place and the remedy of every problem.
 try {

@@ -1,0 +1,10 @@
+/** A straight line through values taken one after another, by least squares: its rise a value, and that rise's standard error. */
+export function trendOf(values: readonly number[]): { readonly rise: number; readonly error: number } {
+  const n = values.length;
+  const middle = (n - 1) / 2;
+  const spread = (n * (n * n - 1)) / 12;
+  const mean = values.reduce((sum, v) => sum + v, 0) / n;
+  const rise = values.reduce((sum, v, k) => sum + (k - middle) * (v - mean), 0) / spread;
+  const rest = values.reduce((sum, v, k) => sum + (v - mean - rise * (k - middle)) ** 2, 0);
+  return { rise, error: Math.sqrt(rest / (n - 2) / spread) };
+}
