@@ -17,7 +17,7 @@ export async function queueAddress(url: string): Promise<Address> {
 const HELP = `
 The database is any PostgreSQL from 13 on; tables are made in its schemas fieldassay and fieldassay_queue. The password
 comes from PGPASSWORD or ~/.pgpass, TLS from ?sslmode=… in the address or PGSSLMODE, as with other PostgreSQL programs. A
-connection pooler between must keep sessions.
+connection pooler between must give every client a server connection of its own.
 
 Ctrl-C once: no more cases are taken, and it ends when those that run are done. Twice, or SIGTERM: they are given back.
 

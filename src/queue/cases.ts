@@ -1,7 +1,7 @@
 import { hostname } from 'node:os';
 import PgBoss from 'pg-boss';
+import type { Connection, Statements } from './connection.ts';
 import type { Release } from './release.ts';
-import type { Session, Statements } from './session.ts';
 import { install, LOCK } from './tables.ts';
 
 /** Where the queue's library keeps its own. */
@@ -78,10 +78,10 @@ export class CaseQueue {
   readonly #missed = new Map<string, number>();
 
   private constructor(
-    readonly session: Session,
+    readonly connection: Connection,
     readonly release: Release,
   ) {
-    const db = adapter(session);
+    const db = adapter(connection);
     this.#boss = new PgBoss({ db, schema: QUEUE_SCHEMA, schedule: false, supervise: true });
     // Errors come where something is asked; housekeeping is tried again by itself.
     this.#boss.on('error', () => {});
@@ -92,9 +92,9 @@ export class CaseQueue {
    * Makes what is missing on the server.
    * @throws Refusal where a later version made it; ServerError
    */
-  static async open(session: Session, release: Release): Promise<CaseQueue> {
-    const queue = new CaseQueue(session, release);
-    await install(session, async () => {
+  static async open(connection: Connection, release: Release): Promise<CaseQueue> {
+    const queue = new CaseQueue(connection, release);
+    await install(connection, async () => {
       await queue.#boss.start();
       await queue.#boss.createQueue(queue.#dead, { name: queue.#dead, policy: 'standard' });
     });
@@ -108,13 +108,13 @@ export class CaseQueue {
   /** Lets others see that this process is there, for as long as its connection lasts. */
   async appear({ role, threads, survey }: Role): Promise<void> {
     const { version, resultSchema } = this.release;
-    const [row] = await this.session.query<{ id: number }>(
+    const [row] = await this.connection.query<{ id: number }>(
       `insert into fieldassay.process (role, host, pid, version, result_schema, threads, survey)
        values ($1, $2, $3, $4, $5, $6, $7) returning id`,
       [role, hostname(), process.pid, version, resultSchema, threads ?? null, survey ?? null],
     );
     this.#process = row!.id;
-    await this.session.greet(async (db) => {
+    await this.connection.greet(async (db) => {
       // A connection that broke may still be held for alive by the server.
       await db.query(
         `select pg_terminate_backend(pid) from pg_locks
@@ -137,7 +137,7 @@ export class CaseQueue {
         await this.#findQueues();
       }
       const jobs = group.map((each) => newJob(name, each));
-      await this.session.transaction(async (db) => {
+      await this.connection.transaction(async (db) => {
         // Jobs that ended without a result that still stands are no longer of use.
         const ended = await db.query<{ id: string }>(
           `select id from ${QUEUE_SCHEMA}.job where name = $1 and id = any($2::uuid[]) and state > 'active'`,
@@ -169,7 +169,7 @@ export class CaseQueue {
   }
 
   async #takeFrom(name: string, bytes: number): Promise<Taken | null> {
-    return await this.session.transaction(async (db) => {
+    return await this.connection.transaction(async (db) => {
       for (;;) {
         const [job] = await this.#boss.fetch<CaseData>(name, { includeMetadata: true, db: adapter(db) });
         if (!job) return null;
@@ -197,7 +197,7 @@ export class CaseQueue {
 
   /** Keeps what a case came to, and ends its job. A case that another worker has told of meanwhile stays as it is. */
   async finish({ attempt, job, hash }: Taken, came: Came): Promise<void> {
-    await this.session.transaction(async (db) => {
+    await this.connection.transaction(async (db) => {
       await db.query(
         `insert into fieldassay.result (hash, status, reason, outcome, process) values ($1, $2, $3, $4, $5)
          on conflict (hash) do nothing`,
@@ -215,7 +215,7 @@ export class CaseQueue {
 
   /** Tells that a case failed: it is tried again, or given up. */
   async fail({ attempt, job }: Pick<Taken, 'attempt' | 'job'>, reason: string): Promise<void> {
-    await this.session.transaction(async (db) => await this.#failIn(db, attempt, job.name, job.id, reason));
+    await this.connection.transaction(async (db) => await this.#failIn(db, attempt, job.name, job.id, reason));
   }
 
   async #failIn(db: Statements, attempt: string, name: string, job: string, reason: string): Promise<void> {
@@ -224,7 +224,7 @@ export class CaseQueue {
 
   /** Puts a case back as if it had not been taken. */
   async giveBack({ attempt, job }: Taken): Promise<void> {
-    await this.session.transaction(async (db) => {
+    await this.connection.transaction(async (db) => {
       if (!(await end(db, attempt, null))) return;
       await this.#boss.deleteJob(job.name, job.id, { db: adapter(db) });
       const { id, name, data, priority, retryLimit, retryCount, deadLetter } = job;
@@ -241,7 +241,7 @@ export class CaseQueue {
    * @param mine attempts that this process knows to be its own; others that bear its number were never heard of
    */
   async upkeep(mine: ReadonlySet<string>): Promise<void> {
-    const open = await this.session.query<Orphan>(
+    const open = await this.connection.query<Orphan>(
       `select attempt.id, attempt.queue, attempt.job, process.host, process.pid, process.id as process
        from fieldassay.attempt join fieldassay.process on process.id = attempt.process
        where attempt.ended is null
@@ -257,14 +257,14 @@ export class CaseQueue {
       this.#missed.set(id, since);
       if (now - since < 1000 * GONE_SECONDS) continue;
       const reason = `its worker, process ${pid} on ${host}, was lost`;
-      await this.session.transaction(async (db) => await this.#failIn(db, id, queue, job, reason));
+      await this.connection.transaction(async (db) => await this.#failIn(db, id, queue, job, reason));
     }
     while (await this.#bury());
   }
 
   /** Tells of one case that was given up; whether there was one. */
   async #bury(): Promise<boolean> {
-    return await this.session.transaction(async (db) => {
+    return await this.connection.transaction(async (db) => {
       const [job] = await this.#boss.fetch<CaseData>(this.#dead, { includeMetadata: true, db: adapter(db) });
       if (!job) return false;
       const { hash } = job.data;
@@ -297,7 +297,7 @@ export class CaseQueue {
   /** Ends housekeeping and the connection. */
   async close(): Promise<void> {
     await this.#boss.stop({ graceful: false, close: false }).catch(() => {});
-    await this.session.close();
+    await this.connection.close();
   }
 }
 

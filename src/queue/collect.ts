@@ -3,8 +3,8 @@ import type { Engine, SurveyRun } from '../run/survey.ts';
 import { type Entry, hashOf, keptOutcome, wholeSurvey } from '../run/surveyCases.ts';
 import type { Address } from './address.ts';
 import { CaseQueue, type SentCase } from './cases.ts';
+import { Connection, later } from './connection.ts';
 import { ownRelease } from './release.ts';
-import { later, Session } from './session.ts';
 
 /** Cases are sent while others are still planned, milliseconds. */
 const SEND_EVERY = 500;
@@ -26,12 +26,12 @@ const RATE_SECONDS = 60;
 export const queueAt =
   (address: Address, say: (text: string) => void): Engine =>
   async (run) => {
-    const session = await Session.open(address, 'fieldassay survey', {
+    const connection = await Connection.open(address, 'fieldassay survey', {
       say,
       ...(run.signal ? { signal: run.signal } : {}),
     });
-    const queue = await CaseQueue.open(session, await ownRelease()).catch(async (error) => {
-      await session.close();
+    const queue = await CaseQueue.open(connection, await ownRelease()).catch(async (error) => {
+      await connection.close();
       throw error;
     });
     try {
@@ -62,7 +62,7 @@ class Collection {
     const { survey, queue } = this;
     await this.#register();
     await queue.appear({ role: 'collector', survey: this.#id });
-    queue.session.patient = true;
+    queue.connection.patient = true;
     await queue.upkeep(new Set());
     await this.#forgetFailures();
     await this.#contribute();
@@ -83,7 +83,7 @@ class Collection {
     const entries = survey.cases.entries;
     const whole = wholeSurvey(survey.survey);
     this.#id = await hashOf({ version, resultSchema, title, whole, cases: entries.map(({ hash }) => hash) });
-    await queue.session.transaction(async (db) => {
+    await queue.connection.transaction(async (db) => {
       await db.query(
         `insert into fieldassay.survey (id, title, version, result_schema, survey) values ($1, $2, $3, $4, $5)
          on conflict (id) do nothing`,
@@ -109,7 +109,7 @@ class Collection {
 
   /** A case that had failed is tried anew when its survey is started again, as it would be here. */
   async #forgetFailures(): Promise<void> {
-    await this.queue.session.query(
+    await this.queue.connection.query(
       `delete from fieldassay.result where status = 'failed' and hash in
          (select hash from fieldassay.survey_case where survey = $1)`,
       [this.#id],
@@ -119,7 +119,7 @@ class Collection {
   /** Adds to the tables what was known here beforehand. */
   async #contribute(): Promise<void> {
     const { survey, queue } = this;
-    const rows = await queue.session.query<{ hash: string }>(
+    const rows = await queue.connection.query<{ hash: string }>(
       `select distinct hash from fieldassay.survey_case where survey = $1
          and not exists (select from fieldassay.result where result.hash = survey_case.hash)`,
       [this.#id],
@@ -131,7 +131,7 @@ class Collection {
   async #tell({ status, hash, reason }: Entry): Promise<void> {
     const outcome = status === 'done' ? keptOutcome(this.survey.store.load(hash), hash) : null;
     if (outcome || status === 'refused')
-      await this.queue.session.query(
+      await this.queue.connection.query(
         `insert into fieldassay.result (hash, status, reason, outcome) values ($1, $2, $3, $4)
          on conflict (hash) do nothing`,
         [hash, status, reason, outcome && JSON.stringify(outcome)],
@@ -179,11 +179,13 @@ class Collection {
 
   /** Fetches what is new. A few outcomes at a time: a survey's are not held together before all are there. */
   async #collect(): Promise<void> {
-    const { session } = this.queue;
+    const { connection } = this.queue;
     const of = `from fieldassay.result where hash in (select hash from fieldassay.survey_case where survey = $1)`;
-    const [{ count }] = (await session.query(`select count(*)::int as count ${of}`, [this.#id])) as [{ count: number }];
+    const [{ count }] = (await connection.query(`select count(*)::int as count ${of}`, [this.#id])) as [
+      { count: number },
+    ];
     if (count === this.#known) return;
-    const rows = await session.query<{ hash: string; status: string; reason: string | null }>(
+    const rows = await connection.query<{ hash: string; status: string; reason: string | null }>(
       `select hash, status, reason ${of}`,
       [this.#id],
     );
@@ -199,7 +201,7 @@ class Collection {
     const done = fresh.filter(({ status }) => status === 'done').map(({ hash }) => hash);
     for (let first = 0; first < done.length; first += OUTCOMES_AT_ONCE) {
       this.survey.signal?.throwIfAborted();
-      const outcomes = await session.query<{ hash: string; outcome: string }>(
+      const outcomes = await connection.query<{ hash: string; outcome: string }>(
         'select hash, outcome::text as outcome from fieldassay.result where hash = any($1)',
         [done.slice(first, first + OUTCOMES_AT_ONCE)],
       );
@@ -222,7 +224,7 @@ class Collection {
   /** How many work, and how fast. */
   async #remark(): Promise<void> {
     const { version, resultSchema } = this.queue.release;
-    const [{ workers }] = (await this.queue.session.query(
+    const [{ workers }] = (await this.queue.connection.query(
       `select count(*)::int as workers from fieldassay.present where role = 'worker' and version = $1 and result_schema = $2`,
       [version, resultSchema],
     )) as [{ workers: number }];

@@ -48,7 +48,7 @@ export const isFull = (error: unknown): boolean => /^(53100|53200)$/.test(codeOf
 
 /**
  * An error of the server or on the way to it, told.
- * @param whether a session had been there before
+ * @param before whether a connection had been there before
  */
 export function told(error: unknown, { name, host, port, database, user }: Address, before: boolean): ServerError {
   if (error instanceof ServerError) return error;

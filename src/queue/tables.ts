@@ -1,6 +1,6 @@
 import { Refusal } from '../run/refusal.ts';
 import { VERSION } from '../run/version.ts';
-import type { Session } from './session.ts';
+import type { Connection } from './connection.ts';
 
 /** The first half of every advisory lock of ours; the second is the number of a process, or 0 for installing. */
 export const LOCK = 0x0f1e_1da5;
@@ -105,14 +105,14 @@ const STEPS: readonly string[] = [
  * @param also what else is to be made meanwhile
  * @throws Refusal where a later version of Fieldassay made them; ServerError where a right is lacking
  */
-export async function install(session: Session, also: () => Promise<void>): Promise<void> {
-  await session.query('select pg_advisory_lock($1::int, 0)', [LOCK]);
+export async function install(connection: Connection, also: () => Promise<void>): Promise<void> {
+  await connection.query('select pg_advisory_lock($1::int, 0)', [LOCK]);
   try {
-    const [{ made }] = (await session.query(`select to_regclass('fieldassay.step') is not null as made`)) as [
+    const [{ made }] = (await connection.query(`select to_regclass('fieldassay.step') is not null as made`)) as [
       { made: boolean },
     ];
     if (!made)
-      await session.transaction(async (db) => {
+      await connection.transaction(async (db) => {
         // A schema that an administrator prepared needs no right to make schemas.
         const [{ there }] = (await db.query(`select to_regnamespace('fieldassay') is not null as there`)) as [
           { there: boolean },
@@ -120,7 +120,7 @@ export async function install(session: Session, also: () => Promise<void>): Prom
         if (!there) await db.query('create schema fieldassay');
         await db.query('create table fieldassay.step (number integer primary key, made timestamptz default now())');
       });
-    const [{ count }] = (await session.query('select count(*)::int as count from fieldassay.step')) as [
+    const [{ count }] = (await connection.query('select count(*)::int as count from fieldassay.step')) as [
       { count: number },
     ];
     if (count > STEPS.length)
@@ -129,18 +129,18 @@ export async function install(session: Session, also: () => Promise<void>): Prom
           path: '',
           value: count,
           message:
-            `The tables in ${session.address.name} have had ${count} steps, made by a later Fieldassay; ` +
+            `The tables in ${connection.address.name} have had ${count} steps, made by a later Fieldassay; ` +
             `this is ${VERSION}, which knows ${STEPS.length}. Update it.`,
         },
       ]);
     for (const [n, step] of STEPS.entries())
       if (n >= count)
-        await session.transaction(async (db) => {
+        await connection.transaction(async (db) => {
           await db.query(step);
           await db.query('insert into fieldassay.step (number) values ($1)', [n + 1]);
         });
     await also();
   } finally {
-    await session.query('select pg_advisory_unlock($1::int, 0)', [LOCK]).catch(() => {});
+    await connection.query('select pg_advisory_unlock($1::int, 0)', [LOCK]).catch(() => {});
   }
 }

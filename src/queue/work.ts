@@ -9,8 +9,8 @@ import { asWritten, shareKey } from '../run/surveyCases.ts';
 import { SHARED } from '../run/surveyPool.ts';
 import type { Address } from './address.ts';
 import { CaseQueue, type Taken } from './cases.ts';
+import { Connection, later } from './connection.ts';
 import { ownRelease, releaseText } from './release.ts';
-import { later, Session } from './session.ts';
 
 /** Looking for cases while there are none, milliseconds. */
 const LOOK_EVERY = 500;
@@ -33,16 +33,16 @@ export interface WorkOptions {
  */
 export async function work(address: Address, options: WorkOptions): Promise<number> {
   const { say, leave } = options;
-  const session = await Session.open(address, 'fieldassay work', { say, waitsForRoom: true });
+  const connection = await Connection.open(address, 'fieldassay work', { say, waitsForRoom: true });
   try {
-    const queue = await CaseQueue.open(session, await ownRelease());
+    const queue = await CaseQueue.open(connection, await ownRelease());
     try {
       return await new Worker(queue, options).run();
     } finally {
       await queue.close();
     }
   } finally {
-    await session.close();
+    await connection.close();
     leave.throwIfAborted();
   }
 }
@@ -75,8 +75,8 @@ class Worker {
     const over = this.#over.signal;
     await this.#refuseOthers();
     await queue.appear({ role: 'worker', threads: this.#threads });
-    queue.session.patient = true;
-    const { address } = queue.session;
+    queue.connection.patient = true;
+    const { address } = queue.connection;
     say(
       `${releaseText(queue.release)}, ${this.#threads} thread${this.#threads === 1 ? '' : 's'}, takes cases from ` +
         `${address.name}; Ctrl-C ends it when what runs is done, twice gives that back`,
@@ -196,8 +196,8 @@ class Worker {
 
   /** @throws Refusal where all surveys that are being collected were handed over by another version */
   async #refuseOthers(): Promise<void> {
-    const { release, session } = this.queue;
-    const rows = await session.query<{ title: string; version: string; result_schema: string }>(
+    const { release, connection } = this.queue;
+    const rows = await connection.query<{ title: string; version: string; result_schema: string }>(
       `select survey.title, survey.version, survey.result_schema
        from fieldassay.present join fieldassay.survey on survey.id = present.survey
        where present.role = 'collector'`,
@@ -211,7 +211,7 @@ class Worker {
         path: '',
         value: release.version,
         message:
-          `This worker is ${releaseText(release)}; the survey “${other.title}” in ${session.address.name} was handed over ` +
+          `This worker is ${releaseText(release)}; the survey “${other.title}” in ${connection.address.name} was handed over ` +
           `by ${releaseText(other)}. Their results would not go together: install the same version on both sides.`,
       },
     ]);

@@ -27,7 +27,7 @@ const OLDEST = 130000;
  * One connection to a database, which comes back by itself: statements and transactions run in turn, and one that a lost
  * connection cut off is run again. They must bear that.
  */
-export class Session {
+export class Connection {
   #client: pg.Client | undefined;
   #last: Promise<unknown> = Promise.resolve();
   #closed = false;
@@ -56,15 +56,15 @@ export class Session {
     address: Address,
     application: string,
     { say, signal, waitsForRoom = false }: SessionOptions,
-  ): Promise<Session> {
-    const session = new Session(address, application, say, signal, waitsForRoom);
+  ): Promise<Connection> {
+    const connection = new Connection(address, application, say, signal, waitsForRoom);
     signal?.throwIfAborted();
     try {
-      session.#client = await session.#connect();
+      connection.#client = await connection.#connect();
     } catch (error) {
       throw told(error, address, false);
     }
-    return session;
+    return connection;
   }
 
   /** Does something now, and again on every new connection, before anything else. */
