@@ -1,5 +1,6 @@
 /// <reference types="vitest/config" />
 import { defineConfig } from 'vite';
+import { LongestFirst } from './test/longestFirst.ts';
 
 /** Where a build server wants the runner's own report. */
 const report = process.env.FIELDASSAY_TEST_REPORT;
@@ -27,6 +28,9 @@ export default defineConfig({
   cacheDir: '.cache/vite',
   test: {
     environment: 'node',
+    // Every processor has work, from the first file to the last.
+    maxWorkers: '100%',
+    sequence: { sequencer: LongestFirst },
     reporters: report ? ['default', 'json'] : ['default'],
     ...(report ? { outputFile: { json: report } } : {}),
     projects: [
