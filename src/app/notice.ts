@@ -1,3 +1,4 @@
+import { printable } from '../scenario/text.ts';
 import { byId, h } from './dom.ts';
 
 /** Says something in the corner until it is dismissed; a mere note goes by itself after a while. */
@@ -6,8 +7,13 @@ export function notify(
   kind: 'note' | 'kept' | 'bad' = 'note',
   action?: { readonly name: string; readonly run: () => void },
 ): void {
+  const shown = text.split('\n').map(printable).join('\n');
   const close = h('button', { type: 'button', 'aria-label': 'Dismiss' }, '×');
-  const notice = h('div', { className: `notice ${kind}`, role: kind === 'bad' ? 'alert' : 'status' }, h('p', {}, text));
+  const notice = h(
+    'div',
+    { className: `notice ${kind}`, role: kind === 'bad' ? 'alert' : 'status' },
+    h('p', {}, shown),
+  );
   if (action) {
     const button = h('button', { type: 'button' }, action.name);
     button.addEventListener('click', () => {

@@ -1,3 +1,4 @@
+import { fileWords } from '../files/words.ts';
 import type { ResultFile } from '../report/folder.ts';
 import { beside } from './runner.ts';
 import type { Store } from './store.ts';
@@ -6,11 +7,7 @@ import type { WriterRequest } from './writer.ts';
 /** A file's name from the scenario's title. */
 export function nameOf(store: Store): string {
   const title = (store.state.json as { title?: unknown } | undefined)?.title;
-  const slug = String(title ?? '')
-    .toLowerCase()
-    .replace(/[^\p{L}\p{N}]+/gu, '-')
-    .replace(/^-|-$/g, '');
-  return slug || 'scenario';
+  return fileWords([String(title ?? '').toLowerCase()], 'scenario')[0]!;
 }
 
 /**

@@ -11,6 +11,7 @@ import { chartFiles, RESULT_FILES, resultFile, tracesOf } from '../report/folder
 import { resultJson } from '../report/json.ts';
 import { comparisonCases } from '../report/junit.ts';
 import { resultText } from '../report/text.ts';
+import { quoted } from '../report/words.ts';
 import { type Comparison, compareSolvers, Refusal, withTeam } from '../run/compare.ts';
 import type { Team } from '../run/pool.ts';
 import type { Progress } from '../run/progress.ts';
@@ -18,7 +19,7 @@ import { VERSION } from '../run/version.ts';
 import { EXAMPLES, type ExampleName } from '../scenario/examples.ts';
 import { scenarioJsonSchema } from '../scenario/schema.ts';
 import { surveyJsonSchema } from '../scenario/survey.ts';
-import { textOf } from '../scenario/text.ts';
+import { jsonText, printable, textOf } from '../scenario/text.ts';
 import { currentsCommand } from './currents.ts';
 import { addDeriveCommand } from './derive.ts';
 import { type ExactOptions, exactCommand, ROUTES, routesText } from './exact.ts';
@@ -27,7 +28,7 @@ import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
 import { addJudgeCommand } from './judge.ts';
-import { keepAndTell, quoted, refuseUnwritable, unwritable, writeFolder, writeWhole } from './output.ts';
+import { keepAndTell, refuseUnwritable, unwritable, writeFolder, writeWhole } from './output.ts';
 import { addPlanCommand } from './plan.ts';
 import { progressLine } from './progress.ts';
 import { addWorkCommand } from './queue.ts';
@@ -79,7 +80,9 @@ export async function runCli(args: readonly string[]): Promise<number> {
 /** Tells of an error what is not told yet, and with which status the process is to end. */
 function statusOf(error: unknown): number {
   if (error instanceof CommanderError) return error.exitCode === 0 ? DONE : REFUSED;
-  process.stderr.write(`${(error as Error)?.message ?? error}\n`);
+  // A problem a line; whatever else a message quotes makes no further lines, and no escapes.
+  const lines = error instanceof Refusal ? error.message.split('\n') : [String((error as Error)?.message ?? error)];
+  process.stderr.write(`${lines.map(printable).join('\n')}\n`);
   if (error instanceof Interrupted) return INTERRUPTED;
   return error instanceof Refusal || error instanceof InputError ? REFUSED : FAILED;
 }
@@ -118,6 +121,9 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     )
     .version(VERSION)
     .exitOverride()
+    .configureOutput({
+      outputError: (text, write) => write(`${text.trimEnd().split('\n').map(printable).join('\n')}\n`),
+    })
     .showHelpAfterError('(see --help)');
 
   withGate(program.command('compare'))
@@ -246,7 +252,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .action((of: string) => {
       if (!Object.hasOwn(SCHEMAS, of))
         throw new InputError(`there is no schema of “${of}”; there are ${Object.keys(SCHEMAS).join(', ')}`);
-      process.stdout.write(`${JSON.stringify(SCHEMAS[of as keyof typeof SCHEMAS](), null, 2)}\n`);
+      process.stdout.write(jsonText(SCHEMAS[of as keyof typeof SCHEMAS]()));
     });
 
   program
@@ -367,7 +373,7 @@ const filesOf = (comparison: Comparison, command: string): Record<string, string
 
 function commandLine(name: string, { out, threads, pattern }: CompareFlags): string {
   return (
-    `npx fieldassay compare ${quoted(name)}${out ? ` --out ${out}` : ''}${pattern ? ' --pattern' : ''}` +
+    `npx fieldassay compare ${quoted(name)}${out ? ` --out ${quoted(out)}` : ''}${pattern ? ' --pattern' : ''}` +
     `${threads ? ` --threads ${threads}` : ''}`
   );
 }

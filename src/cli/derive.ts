@@ -4,6 +4,7 @@ import { DERIVED, type Derived, type DerivedName, derivedSchema, type Quantity }
 import { formatQuantity } from '../elementary/quantity.ts';
 import { Refusal } from '../run/compare.ts';
 import { loadScenario } from '../scenario/load.ts';
+import { jsonText } from '../scenario/text.ts';
 import { InputError, readScenario } from './input.ts';
 import { refuseUnwritable, writeWhole } from './output.ts';
 import { readRows } from './rows.ts';
@@ -52,7 +53,7 @@ export function addDeriveCommand(program: Command, signal: AbortSignal): void {
       refuseUnwritable([], [flags.out]);
       const derived = await deriveCommand(readScenario(name), quantity, flags, signal);
       if (flags.out) writeWhole(flags.out, derivedCsv(derived));
-      if (flags.json) process.stdout.write(`${JSON.stringify(derivedSchema.parse(derived), null, 2)}\n`);
+      if (flags.json) process.stdout.write(jsonText(derivedSchema.parse(derived)));
       else if (!flags.out) process.stdout.write(derivedCsv(derived));
       process.stderr.write(findingLines(derived));
     });

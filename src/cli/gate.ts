@@ -1,7 +1,7 @@
 import { type Command, InvalidArgumentError } from 'commander';
 import { type Baseline, baselineSchema, holdAgainst } from '../compare/baseline.ts';
 import { baselineCases, heldText, junitXml, type TestCase } from '../report/junit.ts';
-import { printable } from '../report/markup.ts';
+import { printable } from '../scenario/text.ts';
 import { parseFraction } from '../scenario/units.ts';
 import { InputError, readInput } from './input.ts';
 import { writeWhole } from './output.ts';

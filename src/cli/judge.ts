@@ -1,4 +1,3 @@
-import { readFileSync } from 'node:fs';
 import { basename } from 'node:path';
 import { type Command, InvalidArgumentError } from 'commander';
 import { tracesWithinTolerance } from '../compare/judgeResult.ts';
@@ -6,10 +5,11 @@ import { readForeignTraces } from '../files/foreignTraces.ts';
 import { parseTraceMap, type TraceMap } from '../files/traceMap.ts';
 import { JUDGE_FILES, judgeFile, judgeJson, judgeText } from '../report/judge.ts';
 import { judgementCases } from '../report/junit.ts';
+import { quoted } from '../report/words.ts';
 import { type JudgeQuestion, judge, judgeQuestion } from '../run/judge.ts';
 import { type GateFlags, gateOf, withGate } from './gate.ts';
-import { InputError, readInput, readScenario } from './input.ts';
-import { keepAndTell, quoted, reasonOf, refuseUnwritable, writeFolder } from './output.ts';
+import { InputError, readBytes, readInput, readScenario } from './input.ts';
+import { keepAndTell, refuseUnwritable, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 
 interface JudgeFlags extends GateFlags {
@@ -111,12 +111,7 @@ export function addJudgeCommand(program: Command, signal: AbortSignal, end: (wit
 
 /** The traces of the file that was named. @throws InputError naming the file, and row and column of what cannot be used */
 function readGiven(flags: JudgeFlags, { places }: JudgeQuestion) {
-  let bytes: Uint8Array;
-  try {
-    bytes = readFileSync(flags.traces);
-  } catch (error) {
-    throw new InputError(`the traces ${flags.traces} could not be read: ${reasonOf(error)}`);
-  }
+  const bytes = readBytes(flags.traces, 'the traces');
   const map = refusing(flags.map ?? 'options', () => mapOf(flags));
   return refusing(flags.traces, () => readForeignTraces(flags.traces, bytes, map, places));
 }

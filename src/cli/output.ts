@@ -196,6 +196,3 @@ export function reasonOf(error: unknown): string {
   const code = (error as NodeJS.ErrnoException)?.code;
   return (code && REASONS[code]) ?? (error instanceof Error ? error.message : String(error));
 }
-
-/** A word of a command line as one would type it. */
-export const quoted = (word: string): string => (/^[\w./-]+$/.test(word) ? word : JSON.stringify(word));

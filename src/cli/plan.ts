@@ -2,10 +2,11 @@ import type { Command } from 'commander';
 import { InvalidArgumentError } from 'commander';
 import type { Plan } from '../compare/planResult.ts';
 import { PLAN_FILES, planFile, planJson, planText } from '../report/plan.ts';
+import { quoted } from '../report/words.ts';
 import { planScenario } from '../run/plan.ts';
 import { type Kind, parseFraction, parseQuantity } from '../scenario/units.ts';
 import { readScenario } from './input.ts';
-import { keepAndTell, quoted, refuseUnwritable, writeFolder } from './output.ts';
+import { keepAndTell, refuseUnwritable, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 
 interface PlanFlags {

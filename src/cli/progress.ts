@@ -1,5 +1,6 @@
 import cliProgress from 'cli-progress';
 import type { Progress } from '../run/progress.ts';
+import { printable } from '../scenario/text.ts';
 
 export interface ProgressLine {
   show(progress: Progress): void;
@@ -8,17 +9,17 @@ export interface ProgressLine {
   end(): void;
 }
 
-/** A progress line on standard error: a moving bar on a terminal, one line a stage elsewhere; none when quiet. */
+/** A progress line on standard error; what is said is made printable: a moving bar on a terminal, one line a stage elsewhere; none when quiet. */
 export function progressLine(quiet: boolean): ProgressLine {
   if (quiet) return { show: () => {}, say: () => {}, end: () => {} };
   if (!process.stderr.isTTY) {
     let last = '';
     return {
       show: ({ stage, secondsLeft }) => {
-        if (stage !== last) process.stderr.write(`${stage}${leftText(secondsLeft)} …\n`);
+        if (stage !== last) process.stderr.write(`${printable(stage)}${leftText(secondsLeft)} …\n`);
         last = stage;
       },
-      say: (text) => process.stderr.write(`${text}\n`),
+      say: (text) => process.stderr.write(`${printable(text)}\n`),
       end: () => {},
     };
   }
@@ -35,10 +36,10 @@ export function progressLine(quiet: boolean): ProgressLine {
   return {
     show: ({ stage, fraction, secondsLeft }) =>
       bar.update(fraction, {
-        stage,
+        stage: printable(stage),
         left: leftText(secondsLeft),
       }),
-    say: (text) => process.stderr.write(`\r\x1b[K${text}\n`),
+    say: (text) => process.stderr.write(`\r\x1b[K${printable(text)}\n`),
     end: () => bar.stop(),
   };
 }

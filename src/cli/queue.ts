@@ -1,5 +1,6 @@
 import type { Command } from 'commander';
 import type { Address } from '../queue/address.ts';
+import { printable } from '../scenario/text.ts';
 import { InputError } from './input.ts';
 import { Interrupted } from './interrupted.ts';
 
@@ -45,7 +46,7 @@ export function addWorkCommand(program: Command, threadCount: (text: string) => 
       process.prependListener('SIGINT', onInterrupt);
       process.on('SIGTERM', give);
       try {
-        const say = (text: string) => process.stderr.write(`${text}\n`);
+        const say = (text: string) => process.stderr.write(`${printable(text)}\n`);
         const count = await work(address, { ...(threads ? { threads } : {}), stop: signal, leave: leave.signal, say });
         say(`${count} case${count === 1 ? '' : 's'} ended here`);
       } finally {

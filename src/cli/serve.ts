@@ -1,8 +1,9 @@
-import { existsSync, readdirSync } from 'node:fs';
+import { accessSync, constants, existsSync, readdirSync, realpathSync, statSync } from 'node:fs';
 import { createServer, type IncomingMessage, type Server, type ServerResponse } from 'node:http';
-import { join, resolve } from 'node:path';
+import { join, resolve, sep } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import sirv from 'sirv';
+import { quoted } from '../report/words.ts';
 
 /** Headers of every answer: not embedded, not guessed at, not kept, isolated from other origins. */
 const HEADERS = {
@@ -33,6 +34,23 @@ function pageFolder(): string {
   throw new Error('the page (dist/page) is missing: run `npm run build`');
 }
 
+/**
+ * Whether a path leads to a file of a folder that can be read: no link out of it, no hidden file however it is written, no
+ * pipe or device.
+ */
+function leadsIn(folder: string, path: string): boolean {
+  try {
+    const asked = decodeURI(path);
+    if (/[/\\]\./.test(asked)) return false;
+    const place = realpathSync(join(folder, asked === '/' ? 'index.html' : asked));
+    if (!place.startsWith(realpathSync(folder) + sep) || !statSync(place).isFile()) return false;
+    accessSync(place, constants.R_OK);
+    return true;
+  } catch {
+    return false;
+  }
+}
+
 /** What is in a result folder: its files, and the hashes of a survey's finished cases. */
 function listing(folder: string): { readonly files: readonly string[]; readonly cases: readonly string[] } {
   const namesIn = (place: string) =>
@@ -56,10 +74,11 @@ type Answer = (request: IncomingMessage, response: ServerResponse, refuse: () =>
  */
 export async function servePage(folder: string | null, port: number): Promise<{ server: Server; url: string }> {
   if (folder !== null && !existsSync(folder))
-    throw new Error(`there is no folder ${folder}: run \`fieldassay compare --out ${folder}\` first`);
+    throw new Error(`there is no folder ${folder}: run \`fieldassay compare --out ${quoted(folder)}\` first`);
   const options = { dev: true, dotfiles: false, etag: false };
-  const page: Answer = sirv(pageFolder(), options);
-  const results: Answer = folder === null ? (_request, _response, refuse) => refuse() : sirv(resolve(folder), options);
+  const pages = pageFolder();
+  const page: Answer = sirv(pages, options);
+  const results: Answer = sirv(resolve(folder ?? pages), options);
   const server = createServer((request, response) => {
     const { port: own } = server.address() as { port: number };
     for (const [name, value] of Object.entries(HEADERS)) response.setHeader(name, value);
@@ -76,16 +95,19 @@ export async function servePage(folder: string | null, port: number): Promise<{ 
     if (origin !== undefined && !hosts.some((host) => origin === `http://${host}`))
       return refuse(403, 'Pages of another origin get nothing here.');
     if (request.method !== 'GET' && request.method !== 'HEAD') return refuse(405, 'Only GET and HEAD.');
-    // A folder's hidden files are nobody's, however their names are written.
-    if (/\/(\.|%2e)/i.test(path)) return refuse(404, 'No such file here.');
     if (path === '/results/' && folder !== null) {
       response.writeHead(200, { 'Content-Type': 'application/json' });
       response.end(JSON.stringify(listing(folder)));
       return;
     }
-    if (path.startsWith('/results/')) request.url = path.slice('/results'.length);
-    const answer = ofResults ? results : page;
-    answer(request, response, () => refuse(404, 'No such file here.'));
+    const place = ofResults ? folder : pages;
+    const file = path.startsWith('/results/') ? path.slice('/results'.length) : path;
+    const missing = () => refuse(404, 'No such file here.');
+    if (place === null || !leadsIn(place, file)) return missing();
+    // Files are whole ones: what is asked of a range can be out of any.
+    delete request.headers.range;
+    request.url = file;
+    (ofResults ? results : page)(request, response, missing);
   });
   await new Promise<void>((done, fail) => {
     server.once('error', (error: NodeJS.ErrnoException) =>

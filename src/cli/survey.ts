@@ -4,16 +4,18 @@ import type { Command } from 'commander';
 import type { SurveyResult } from '../compare/surveyResult.ts';
 import { surveyFiles } from '../report/surveyFolder.ts';
 import { surveyText } from '../report/surveyText.ts';
+import { quoted } from '../report/words.ts';
+import { Refusal } from '../run/refusal.ts';
 import { mergeParts, type Part, runShard, type Shard } from '../run/shards.ts';
 import { type CaseStore, runSurvey, type SurveyOptions } from '../run/survey.ts';
 import { wholeSurvey } from '../run/surveyCases.ts';
 import { EXAMPLES } from '../scenario/examples.ts';
-import { describeProblem } from '../scenario/load.ts';
 import { loadSurvey, type Survey } from '../scenario/survey.ts';
+import { jsonText, printable } from '../scenario/text.ts';
 import { folderStore } from './caseStore.ts';
-import { InputError, readInput, readScenario } from './input.ts';
+import { InputError, readInput, readNamed, readScenario } from './input.ts';
 import { Interrupted } from './interrupted.ts';
-import { keepAndTell, quoted, refuseUnwritable, sweepParts, writeFolder } from './output.ts';
+import { keepAndTell, refuseUnwritable, sweepParts, writeFolder } from './output.ts';
 import { progressLine } from './progress.ts';
 import { queueAddress } from './queue.ts';
 
@@ -113,7 +115,7 @@ function announcing(store: CaseStore, file: string, out: string, survey: Survey)
   // The survey's own file may lie there under that name.
   let announced = resolve(file) === resolve(out, 'survey.json');
   const announce = () => {
-    if (!announced) writeFolder(out, { 'survey.json': `${JSON.stringify(wholeSurvey(survey), null, 2)}\n` });
+    if (!announced) writeFolder(out, { 'survey.json': jsonText(wholeSurvey(survey)) });
     announced = true;
   };
   return {
@@ -131,13 +133,13 @@ function announcing(store: CaseStore, file: string, out: string, survey: Survey)
 
 function readSurvey(file: string): Survey {
   const loaded = loadSurvey(readInput(file, 'the survey'), (name) => scenarioNamed(name, dirname(resolve(file))));
-  if ('problems' in loaded) throw new InputError(loaded.problems.map(describeProblem).join('\n'));
+  if ('problems' in loaded) throw new Refusal(loaded.problems);
   return loaded.survey;
 }
 
 /** A scenario beside the survey, or a built-in one. */
 function scenarioNamed(name: string, folder: string): unknown {
-  return structuredClone(readScenario(Object.hasOwn(EXAMPLES, name) ? name : resolve(folder, name)));
+  return structuredClone(readScenario(Object.hasOwn(EXAMPLES, name) ? name : resolve(folder, name), readNamed));
 }
 
 function shardOf(text: string): Shard {
@@ -157,7 +159,7 @@ function partText({ shard, cases }: Part, out: string): string {
     .map(({ status, n }) => `${n} ${status}`);
   return (
     `Part ${shard.index} of ${shard.count}: ${[`${all.length} cases`, ...counts].join(', ')}\n` +
-    `Written: ${out}/${partName(shard)}\nWhen all are there: npx fieldassay survey --merge ${quoted(out)}\n`
+    `Written: ${printable(out)}/${partName(shard)}\nWhen all are there: npx fieldassay survey --merge ${quoted(out)}\n`
   );
 }
 

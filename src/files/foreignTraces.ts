@@ -1,5 +1,7 @@
+import { unseenIn } from '../scenario/text.ts';
+import { show } from '../scenario/units.ts';
 import { COMPONENTS, type Component, FEWEST_SAMPLES, type Trace } from '../trace/trace.ts';
-import { type NpyArray, readNpz } from './npyReader.ts';
+import { MOST_BYTES, type NpyArray, readNpz } from './npyReader.ts';
 import {
   componentOf,
   quantityOf,
@@ -34,6 +36,9 @@ export interface ReadTraces {
   readonly notes: readonly string[];
 }
 
+/** Bytes of a text at most: its cells take some ten times their room. */
+const MOST_TEXT = 1e8;
+
 /**
  * Traces from the bytes of a file: our own traces.csv and traces.npz as they are, other CSV texts and NumPy files by their
  * headers and a map. Times are put in order; a time that stands twice with one value counts once.
@@ -42,6 +47,7 @@ export interface ReadTraces {
  * @throws RangeError naming row, column and value of what cannot be used
  */
 export function readForeignTraces(name: string, bytes: Uint8Array, map: TraceMap, known: KnownPlaces): ReadTraces {
+  refuseLarger(bytes, MOST_BYTES, 'file of traces');
   const ending = /\.[^./\\]*$/.exec(name.toLowerCase())?.[0];
   if (ending === '.npz' || (bytes[0] === 0x50 && bytes[1] === 0x4b)) {
     const arrays = readNpz(bytes);
@@ -49,6 +55,7 @@ export function readForeignTraces(name: string, bytes: Uint8Array, map: TraceMap
     return own ? ordered(own) : tracesOf(npzColumns(arrays), map, known);
   }
   if (ending === '.npy' || bytes[0] === 0x93) return tracesOf(npyTable(bytes, map.header), map, known);
+  refuseLarger(bytes, MOST_TEXT, 'text');
   let text: string;
   try {
     text = new TextDecoder('utf-8', { fatal: true }).decode(bytes);
@@ -57,6 +64,13 @@ export function readForeignTraces(name: string, bytes: Uint8Array, map: TraceMap
   }
   if (text.startsWith(`${TRACE_HEADER.join()}\n`)) return ordered(ownTraces(text));
   return tracesOf(csvTable(text, map.header), map, known);
+}
+
+function refuseLarger({ length }: Uint8Array, most: number, what: string): void {
+  if (length > most)
+    throw new RangeError(
+      `has ${Math.round(length / 1e6)} MB; a ${what} has at most ${most / 1e6}. Give fewer samples or observers, or .npz`,
+    );
 }
 
 /** The grid's traces in our own traces.csv, those of observers that have one. */
@@ -120,11 +134,17 @@ function ordered(traces: readonly Trace[]): ReadTraces {
 
 function refuseEmpty(traces: readonly Trace[]): readonly Trace[] {
   if (traces.length === 0) throw new RangeError('holds no trace that could be judged');
-  for (const { observer, component, time } of traces)
+  for (const { observer, component, time } of traces) {
+    const unseen = unseenIn(observer);
+    if (unseen !== undefined)
+      throw new RangeError(
+        `observer ${show(observer)} has ${unseen} in its name, a character that does not show; leave it out`,
+      );
     if (time.length < FEWEST_SAMPLES)
       throw new RangeError(
         `${component} at observer “${observer}” has ${time.length} samples; a trace needs at least ${FEWEST_SAMPLES}`,
       );
+  }
   return traces;
 }
 

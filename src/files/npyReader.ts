@@ -13,9 +13,22 @@ export interface NpyArray {
 
 export type NpyValues = Float64Array | readonly string[];
 
-/** Largest number of elements, and of bytes of an unpacked archive: what is judged is traces, not volumes. */
-const MOST_ELEMENTS = 2e7;
-const MOST_BYTES = 4e8;
+/**
+ * What is judged is traces, not volumes: the largest number of values in a file, whatever it claims, and of bytes that an
+ * archive unpacks to. So a file takes 8·MOST_VALUES + MOST_BYTES beside itself at most, 560 MB.
+ */
+const MOST_VALUES = 2e7;
+export const MOST_BYTES = 4e8;
+
+/** A text counts as so many values: that is the room it takes. */
+const VALUES_A_TEXT = 8;
+
+/** Characters of a text at most: it is a name. */
+const LONGEST_TEXT = 1000;
+
+/** Dimensions at most, and bytes of a header: what version 1 can announce. */
+const MOST_DIMENSIONS = 3;
+const LONGEST_HEADER = 65_535;
 
 /** A scalar type: its letter, its size in bytes, and how one element is read. */
 interface Scalar {
@@ -29,6 +42,11 @@ interface Scalar {
  * @throws RangeError saying what of the file is not as it should be
  */
 export function readNpy(bytes: Uint8Array): NpyArray {
+  return readArray(bytes, { values: MOST_VALUES });
+}
+
+/** @param room for values that is left, from which it takes its own */
+function readArray(bytes: Uint8Array, room: { values: number }): NpyArray {
   const view = new DataView(bytes.buffer, bytes.byteOffset, bytes.byteLength);
   if (bytes.length < 12 || strFromU8(bytes.subarray(0, 6), true) !== '\x93NUMPY')
     throw new RangeError('is no .npy file: it does not begin with \\x93NUMPY');
@@ -37,18 +55,27 @@ export function readNpy(bytes: Uint8Array): NpyArray {
   const start = major === 1 ? 10 : 12;
   const length = major === 1 ? view.getUint16(8, true) : view.getUint32(8, true);
   if (start + length > bytes.length) throw new RangeError('ends within its header');
+  if (length > LONGEST_HEADER)
+    throw new RangeError(`has a header of ${length} bytes; at most ${LONGEST_HEADER} are read`);
   const header = literal(strFromU8(bytes.subarray(start, start + length), major < 3));
   if (!isRecord(header)) throw new RangeError('has a header that is no dictionary');
   const { descr, fortran_order: fortran, shape } = header;
   if (!Array.isArray(shape) || !shape.every((n): n is number => Number.isSafeInteger(n) && (n as number) >= 0))
     throw new RangeError('has a header without a shape');
+  if (shape.length > MOST_DIMENSIONS)
+    throw new RangeError(`has ${shape.length} dimensions; at most ${MOST_DIMENSIONS} are read`);
   const count = shape.reduce((product, n) => product * n, 1);
-  if (count > MOST_ELEMENTS) throw new RangeError(`has ${count} elements; at most ${MOST_ELEMENTS} are read`);
   const layout = layoutOf(descr);
+  const values = layout.fields.reduce((sum, { scalar }) => sum + (scalar.isText ? VALUES_A_TEXT : 1), 0) * count;
+  if (values > room.values)
+    throw new RangeError(
+      `has ${count} elements; at most ${MOST_VALUES} are read, over all columns and arrays, and each text counts as ${VALUES_A_TEXT}`,
+    );
   const needed = count * layout.size;
   const data = start + length;
   if (data + needed > bytes.length)
     throw new RangeError(`holds ${bytes.length - data} bytes of data; its header announces ${needed}`);
+  room.values -= values;
   const order = fortran === true && shape.length > 1 ? fortranOrder(shape, count) : undefined;
   const fields = layout.fields.map(({ name, offset, scalar }) => {
     const read = (n: number) => scalar.read(view, data + (order ? order[n]! : n) * layout.size + offset);
@@ -82,10 +109,11 @@ export function readNpz(bytes: Uint8Array): Map<string, NpyArray> {
     throw new RangeError(`is no .npz file that can be unpacked: ${(error as Error).message}`);
   }
   const arrays = new Map<string, NpyArray>();
+  const room = { values: MOST_VALUES };
   for (const [file, content] of Object.entries(files)) {
     const name = file.slice(0, -'.npy'.length);
     try {
-      arrays.set(name, readNpy(content));
+      arrays.set(name, readArray(content, room));
     } catch (error) {
       throw new RangeError(`array “${name}” ${(error as Error).message}`);
     }
@@ -146,6 +174,11 @@ function scalarOf(descr: string): Scalar {
   if (kind === undefined) throw refuse();
   const little = order !== '>';
   const width = digits === '' ? 1 : Number(digits);
+  const words = (bytes: number, codeAt: (view: DataView, at: number) => number): Scalar => {
+    if (width < 1 || width > LONGEST_TEXT)
+      throw new RangeError(`has texts of ${width} characters; those of 1 to ${LONGEST_TEXT} are read`);
+    return { size: bytes * width, isText: true, read: (v, at) => text(width, (n) => codeAt(v, at + bytes * n)) };
+  };
   const numeric = (size: number, read: (view: DataView, at: number) => number): Scalar => {
     if (width !== size) throw refuse();
     return { size, isText: false, read };
@@ -177,9 +210,9 @@ function scalarOf(descr: string): Scalar {
     case '?':
       return numeric(1, (v, at) => v.getUint8(at));
     case 'S':
-      return { size: width, isText: true, read: (v, at) => text(width, (n) => v.getUint8(at + n)) };
+      return words(1, (v, at) => v.getUint8(at));
     case 'U':
-      return { size: 4 * width, isText: true, read: (v, at) => text(width, (n) => v.getUint32(at + 4 * n, little)) };
+      return words(4, (v, at) => v.getUint32(at, little));
     default:
       throw refuse();
   }
@@ -211,9 +244,16 @@ const DEEPEST = 8;
  * @throws RangeError where it is none
  */
 function literal(source: string): unknown {
-  const tokens = source.match(/'(?:[^'\\]|\\.)*'|"(?:[^"\\]|\\.)*"|[()[\]{},:]|[^\s()[\]{},:'"]+/g) ?? [];
-  let next = 0;
   const broken = () => new RangeError('has a header that cannot be read');
+  const tokens: string[] = [];
+  // One after the other, so that a text without an end is looked through once.
+  const token = /\s*('(?:[^'\\]|\\.)*'|"(?:[^"\\]|\\.)*"|[()[\]{},:]|[^\s()[\]{},:'"]+)/y;
+  for (const end = source.trimEnd().length; token.lastIndex < end; ) {
+    const [, found] = token.exec(source) ?? [];
+    if (found === undefined) throw broken();
+    tokens.push(found);
+  }
+  let next = 0;
   const list = (close: string, depth: number): unknown[] => {
     const items: unknown[] = [];
     while (tokens[next] !== close) {

@@ -65,7 +65,7 @@ export function parseTraceMap(json: unknown): TraceMap {
   const parsed = traceMapSchema.safeParse(json);
   if (parsed.success) return parsed.data;
   const problems = parsed.error.issues.map(({ path, message }) => `${path.join('.') || 'the map'}: ${message}`);
-  throw new RangeError(problems.join('\n'));
+  throw new RangeError(problems.join('; '));
 }
 
 /** What a column holds. */

@@ -28,10 +28,10 @@ export interface ObserverTrace {
 }
 
 /**
- * A spreadsheet takes a cell that begins like this for a formula, so a name that does is written with an apostrophe in
- * front. One that begins with an apostrophe gets another, so that reading takes off exactly what writing put on.
+ * A spreadsheet takes a cell that begins like this for a formula (some do so with full-width signs too), so a name that does
+ * is written with an apostrophe in front. One that begins with an apostrophe gets another, so that reading takes off exactly what writing put on.
  */
-export const FORMULA = /^['=+\-@\t\r]/;
+export const FORMULA = /^['=+\-@\t\r\n＝＋－＠]/;
 
 /** The six traces of one observer: a point of fields that all have the same points and instants. */
 export function observerTraces(
@@ -110,7 +110,7 @@ function traceOf(rows: readonly (readonly string[])[]): ObserverTrace {
     return empty === 0 ? [[signal, column(6 + s)] as const] : [];
   });
   return {
-    observer: name!.replace(/^'(?=['=+\-@\t\r])/, ''),
+    observer: name!.startsWith("'") && FORMULA.test(name!.slice(1)) ? name!.slice(1) : name!,
     component: component as Component,
     at: [Number(x), Number(y), Number(z)],
     time: column(5),

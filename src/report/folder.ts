@@ -59,7 +59,10 @@ export function fileText(file: ResultFile, report: Report): string {
 
 /** The charts of the report as files of their own: `error-by-distance.svg`, and after each observer's name its own. */
 export function chartFiles({ result, traces, spectra }: Omit<Report, 'command'>): Record<string, string> {
-  const words = fileWords(result.observers.map(({ name }) => name));
+  const words = fileWords(
+    result.observers.map(({ name }) => name),
+    'observer',
+  );
   return Object.fromEntries([
     ...boxCharts(result).map(({ file, chart }) => [`${file}.svg`, chartFile(chart)]),
     ...result.observers.flatMap((observer, n) =>

@@ -8,9 +8,10 @@ import {
 } from '../compare/judgeResult.ts';
 import { formatNumber, formatPercent, formatQuantity } from '../elementary/quantity.ts';
 import { type ObserverTrace, writeTraces } from '../files/traces.ts';
+import { jsonText, printable } from '../scenario/text.ts';
 import type { Component } from '../trace/trace.ts';
 import { spectrumChart, traceChart } from './charts.ts';
-import { type Markup, markup, printable } from './markup.ts';
+import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
 import type { ObserverSpectra } from './report.ts';
 import { type Chart, chartSvg, type Series } from './svg.ts';
@@ -50,7 +51,7 @@ export function judgeFile(file: JudgeFile, findings: JudgeFindings, command: str
  * @throws Error where the result holds something that the schema does not allow, NaN among it
  */
 export function judgeJson(result: Judgement): string {
-  return `${JSON.stringify(judgeSchema.parse(result), null, 2)}\n`;
+  return jsonText(judgeSchema.parse(result));
 }
 
 const asObserverTrace = ({ observer, component, at, time, given, exact }: SignalsOfTrace): ObserverTrace => ({

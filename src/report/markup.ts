@@ -1,3 +1,5 @@
+import { printable } from '../scenario/text.ts';
+
 /**
  * Text that is safe inside HTML and SVG. The `markup` template escapes whatever is put into it, save other markup, so that no
  * name or title of a scenario can become an element or an attribute.
@@ -15,18 +17,6 @@ const ENTITIES: Readonly<Record<string, string>> = {
   '"': '&quot;',
   "'": '&#39;',
 };
-
-/**
- * Characters that do something other than show: C0 and C1 controls, DEL (terminal escapes begin with one), and marks that
- * turn the direction of writing.
- */
-// biome-ignore lint/suspicious/noControlCharactersInRegex: they are what is looked for
-const UNPRINTABLE = /[\u0000-\u001f\u007f-\u009f\u200e\u200f\u2028-\u202e\u2066-\u2069]/g;
-
-/** A user's text with every character that would do something replaced by its code: "\u{1b}". */
-export function printable(text: string): string {
-  return text.replace(UNPRINTABLE, (c) => `\\u{${c.codePointAt(0)!.toString(16)}}`);
-}
 
 function inserted(value: Insert): string {
   if (value === null) return '';

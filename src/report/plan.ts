@@ -2,8 +2,8 @@ import { boundaryText } from '../compare/boundaryWords.ts';
 import { paretoFront } from '../compare/front.ts';
 import { type Plan, type PlannedPlace, type PlannedSetup, planSchema } from '../compare/planResult.ts';
 import { formatPercent, formatQuantity, formatScientific } from '../elementary/quantity.ts';
-import { textOf } from '../scenario/text.ts';
-import { type Markup, markup, printable } from './markup.ts';
+import { jsonText, printable, textOf } from '../scenario/text.ts';
+import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
 import { choiceColour } from './surveyCharts.ts';
 import { type Chart, chartSvg, type Series } from './svg.ts';
@@ -16,7 +16,7 @@ export type PlanFile = (typeof PLAN_FILES)[number];
 /** The text of one file of the folder. @param command what to type to get it again */
 export function planFile(file: PlanFile, plan: Plan, command: string): string {
   if (file === 'plan.json') return planJson(plan);
-  return file === 'plan.html' ? planHtml(plan, command) : `${JSON.stringify(plan.scenario, null, 2)}\n`;
+  return file === 'plan.html' ? planHtml(plan, command) : jsonText(plan.scenario);
 }
 
 /**
@@ -24,7 +24,7 @@ export function planFile(file: PlanFile, plan: Plan, command: string): string {
  * @throws Error where the plan holds something that the schema does not allow, NaN among it
  */
 export function planJson(plan: Plan): string {
-  return `${JSON.stringify(planSchema.parse(plan), null, 2)}\n`;
+  return jsonText(planSchema.parse(plan));
 }
 
 export const sizeText = ({ cellSize }: PlannedSetup): string =>

@@ -1,6 +1,7 @@
 import Papa from 'papaparse';
 import { type CaseResult, isDone, type Outcome, type SurveyResult } from '../compare/surveyResult.ts';
 import { FORMULA } from '../files/traces.ts';
+import { printable } from '../scenario/text.ts';
 
 type Cell = string | number | null;
 
@@ -42,11 +43,11 @@ const COLUMNS: readonly (readonly [string, (each: Outcome) => Cell])[] = [
  * formula gets an apostrophe in front.
  */
 export function surveyCsv({ vary, cases }: SurveyResult): string {
-  const head = [...vary, 'status', 'reason', ...COLUMNS.map(([name]) => name), 'hash'];
+  const head = [...vary.map(printable), 'status', 'reason', ...COLUMNS.map(([name]) => name), 'hash'];
   const rows = cases.map((each: CaseResult) => [
     ...vary.map((key) => plain(each.settings[key])),
     each.status,
-    each.reason,
+    each.reason === null ? null : printable(each.reason),
     ...COLUMNS.map(([, of]) => (isDone(each) ? of(each) : null)),
     each.hash,
   ]);
@@ -54,4 +55,4 @@ export function surveyCsv({ vary, cases }: SurveyResult): string {
 }
 
 const plain = (value: unknown): Cell =>
-  typeof value === 'string' || typeof value === 'number' ? value : JSON.stringify(value);
+  typeof value === 'number' ? value : printable(typeof value === 'string' ? value : JSON.stringify(value));

@@ -1,4 +1,5 @@
 import { type SurveyResult, surveyResultSchema } from '../compare/surveyResult.ts';
+import { jsonText } from '../scenario/text.ts';
 import {
   clearanceChart,
   costChart,
@@ -17,7 +18,7 @@ import { chartFile } from './svg.ts';
  * @throws Error where the result holds something that the schema does not allow, NaN among it
  */
 export function surveyResultJson(result: SurveyResult): string {
-  return `${JSON.stringify(surveyResultSchema.parse(result), null, 2)}\n`;
+  return jsonText(surveyResultSchema.parse(result));
 }
 
 /**

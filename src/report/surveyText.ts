@@ -1,6 +1,6 @@
 import { isDone, type LadderResult, type SurveyResult } from '../compare/surveyResult.ts';
 import { formatNumber, formatQuantity } from '../elementary/quantity.ts';
-import { printable } from './markup.ts';
+import { printable } from '../scenario/text.ts';
 import { caseName, cautions, countsText, headline, ladderSentences, levelText, wallsSentences } from './surveyWords.ts';
 import { columns, percentOr, sectionsText } from './words.ts';
 

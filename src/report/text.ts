@@ -1,7 +1,7 @@
 import { type Result, withinTolerance } from '../compare/result.ts';
 import { formatPercent } from '../elementary/quantity.ts';
+import { printable } from '../scenario/text.ts';
 import { type BudgetRow, budgetRows } from './budgetRows.ts';
-import { printable } from './markup.ts';
 import type { ColourName } from './palette.ts';
 import { quantitySentences } from './quantities.ts';
 import {

@@ -70,3 +70,12 @@ export function columns(rows: readonly (readonly string[])[], align: readonly ('
       .padEnd(widths.reduce((sum, w) => sum + w + 2, 0)),
   );
 }
+
+/**
+ * A word of a command line as one would type it: nothing in it is a variable or a command to a shell. Quotes are double
+ * ones, which all shells know, where that is enough.
+ */
+export function quoted(word: string): string {
+  if (/^[\w./][\w./-]*$/.test(word)) return word;
+  return /["$`\\!%]/.test(word) ? `'${word.replaceAll("'", "'\\''")}'` : `"${word}"`;
+}

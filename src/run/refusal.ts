@@ -1,9 +1,9 @@
-import type { Problem } from '../scenario/load.ts';
+import { describeProblem, type Problem } from '../scenario/load.ts';
 
-/** The scenario was refused: nothing was computed. */
+/** The scenario was refused: nothing was computed. Its message has a line a problem. */
 export class Refusal extends Error {
   constructor(readonly problems: readonly Problem[]) {
-    super(problems.map(({ path, message }) => (path ? `${path}: ${message}` : message)).join('\n'));
+    super(problems.map(describeProblem).join('\n'));
     this.name = 'Refusal';
   }
 }

@@ -39,6 +39,7 @@ import {
 import { SIGNIFICANT, shortestWavelength } from './shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
 import { resolved } from './table.ts';
+import { printable, unseenIn } from './text.ts';
 import { parseQuantity, show } from './units.ts';
 import { cellsBehind, cellsRead } from './walls.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
@@ -64,6 +65,9 @@ export const MAX_STEPS = 200_000;
 
 /** Characters of a scenario file. */
 const MAX_TEXT = 64 * 1024 * 1024;
+
+/** Brackets within brackets: what is known of any file lies within ten. Deeper ones would be too deep for a call stack. */
+const MAX_DEPTH = 100;
 
 /** Fewer cells leave no room for a source beside the walls. */
 const MIN_CELLS = 3;
@@ -91,9 +95,9 @@ export function loadScenario(input: unknown): Loaded {
   return problems.length === 0 && scenario ? { scenario } : { problems };
 }
 
-/** A problem as one line of text. */
+/** A problem as one line of text, whatever the file holds. */
 export function describeProblem({ path, message }: Problem): string {
-  return path === '' ? message : `${path}: ${message}`;
+  return printable(path === '' ? message : `${path}: ${message}`);
 }
 
 /**
@@ -119,7 +123,32 @@ export function readObject(
   }
   if (typeof raw !== 'object' || raw === null || Array.isArray(raw))
     return refused(raw, `${whole} is ${show(raw)}; it must be an object with at least ${keys}.`);
-  return { file: raw as Record<string, unknown> };
+  const problems: Problem[] = [];
+  seekUnfit(raw, [], reporter(raw, whole, problems));
+  return problems.length > 0 ? { problems } : { file: raw as Record<string, unknown> };
+}
+
+/**
+ * Reports what no file may hold, whatever its keys mean: brackets too deep for a call stack, and texts that do not show as
+ * they are. Names and titles go into reports, tables, terminals and databases, and are to be told apart by looking.
+ */
+function seekUnfit(value: unknown, path: (string | number)[], report: Report): void {
+  if (typeof value === 'string') {
+    const unseen = unseenIn(value);
+    if (unseen !== undefined) report([...path], `holds ${unseen}, a character that does not show; leave it out`);
+  } else if (typeof value === 'object' && value !== null) {
+    if (path.length > MAX_DEPTH) {
+      report(path.slice(0, 1), `has brackets more than ${MAX_DEPTH} deep; no key goes so deep`);
+      return;
+    }
+    const list = Array.isArray(value);
+    for (const [key, inner] of Object.entries(value)) {
+      if (typeof inner === 'number') continue;
+      path.push(list ? Number(key) : key);
+      seekUnfit(inner, path, report);
+      path.pop();
+    }
+  }
 }
 
 /** Gathers what is wrong with a file: predicates become sentences about the key at their path. */

@@ -1,4 +1,5 @@
 import Qty from 'js-quantities/esm';
+import { printable } from './text.ts';
 
 /** What a number of a scenario file may measure, with its SI unit and how people are told to write it. */
 export const KINDS = {
@@ -92,7 +93,7 @@ function article(kind: string): string {
 
 /** A value of a scenario file as a message shows it: short, whatever it is. */
 export function show(value: unknown): string {
-  if (typeof value === 'string') return JSON.stringify(value.length > 40 ? `${value.slice(0, 40)}…` : value);
+  if (typeof value === 'string') return printable(JSON.stringify(value.length > 40 ? `${value.slice(0, 40)}…` : value));
   if (Array.isArray(value)) return `a list of ${value.length}`;
   if (typeof value === 'object' && value !== null) return 'an object';
   if (value === undefined) return 'nothing';

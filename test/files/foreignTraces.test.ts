@@ -120,6 +120,10 @@ describe('CSV of other solvers', () => {
   });
 });
 
+/** Traces of a NumPy file. */
+const from = (name: string, data: Uint8Array, map: object = {}) =>
+  readForeignTraces(name, data, parseTraceMap(map), alone).traces;
+
 /** A .npy file, by NumPy's description of the format, version 1.0. */
 function npy(descr: string, shape: string, data: Uint8Array, fortran = 'False'): Uint8Array {
   const header = `{'descr': ${descr}, 'fortran_order': ${fortran}, 'shape': ${shape}, }\n`;
@@ -133,9 +137,6 @@ const doubles = (values: readonly number[]) => new Uint8Array(Float64Array.from(
 const range = (n: number, f: (n: number) => number) => Array.from({ length: n }, (_, i) => f(i));
 
 describe('NumPy files', () => {
-  const from = (name: string, data: Uint8Array, map: object = {}) =>
-    readForeignTraces(name, data, parseTraceMap(map), alone).traces;
-
   it('are read as matrices in either order of elements, and as structured arrays', () => {
     const rowMajor = npy("'<f8'", '(9, 2)', doubles(range(18, (n) => (n % 2 === 0 ? n / 2 : 10 + n))));
     const columnMajor = npy(
@@ -201,6 +202,59 @@ describe('NumPy files', () => {
     ['a.npz', zipSync({ 'Ez.npy': npy("'O'", '(9,)', doubles([1])) }), /array “Ez” is of type “O”/],
   ])('are refused: case %#', (name, data, message) => {
     expect(() => from(name, data)).toThrow(message);
+  });
+});
+
+describe('headers that lie', () => {
+  const manyFields = (type: string, count: number) =>
+    `[${Array.from({ length: count }, (_, n) => `('a${n}', '${type}')`).join(', ')}]`;
+  const zeros = (count: number) => new Uint8Array(count);
+  /** Version 2 announces headers of up to 4 GB. */
+  const version2 = (header: string) => {
+    const out = new Uint8Array(12 + header.length);
+    out.set([0x93, ...bytes('NUMPY'), 2, 0]);
+    new DataView(out.buffer).setUint32(8, header.length, true);
+    out.set(bytes(header), 12);
+    return out;
+  };
+
+  it.each<[string, () => Uint8Array, RegExp]>([
+    ['10¹² elements', () => npy("'<f8'", '(1000000000000,)', zeros(8)), /has 1000000000000 elements; at most/],
+    [
+      'a product beyond all numbers, times 0',
+      () => npy("'<f8'", `(${'100000000000000, '.repeat(30)}0)`, zeros(8)),
+      /has 31 dimensions; at most 3/,
+    ],
+    ['many dimensions of 1', () => npy("'|u1'", `(9, ${'1, '.repeat(900)})`, zeros(9)), /has 901 dimensions/],
+    ['elements without data', () => npy("'|S0'", '(20000000,)', zeros(0)), /has texts of 0 characters/],
+    ['columns without data', () => npy(manyFields('S0', 99), '(20000000,)', zeros(0)), /has texts of 0 characters/],
+    ['many columns', () => npy(manyFields('|u1', 99), '(300000,)', zeros(0)), /has 300000 elements; at most/],
+    ['a text as long as the file', () => npy("'|S30000000'", '(1,)', zeros(3e7)), /has texts of 30000000 characters/],
+    ['many texts', () => npy("'|S1'", '(3000000,)', zeros(3e6)), /has 3000000 elements; at most/],
+    ['a header of megabytes', () => version2('('.repeat(3e6)), /has a header of 3000000 bytes; at most 65535/],
+    ['texts without end', () => version2("'\\".repeat(32_000)), /has a header that cannot be read/],
+    ['brackets without end', () => version2('['.repeat(60_000)), /has a header that cannot be read/],
+  ])('%s: refused at once, and takes no memory', (_, make, message) => {
+    const data = make();
+    const before = process.memoryUsage();
+    const started = performance.now();
+    expect(() => from('a.npy', data, { header: ['t'] })).toThrow(message);
+    const after = process.memoryUsage();
+    expect(performance.now() - started).toBeLessThan(500);
+    expect(after.arrayBuffers - before.arrayBuffers).toBeLessThan(1e6);
+    expect(after.heapUsed - before.heapUsed).toBeLessThan(30e6);
+  });
+
+  it('an archive that is small packed and large in memory is refused by what all of it takes', () => {
+    const one = npy("'|u1'", '(9000000,)', zeros(9e6));
+    const archive = zipSync({ 'a.npy': one, 'b.npy': one, 'c.npy': one });
+    expect(archive.length).toBeLessThan(2e5);
+    expect(() => from('a.npz', archive)).toThrow(/array “c” has 9000000 elements; at most 20000000/);
+  });
+
+  it('a name that would not show is refused', () => {
+    const text = ['t,A\u200b.Ez', ...Array.from({ length: 9 }, (_, n) => `${n},1`)].join('\n');
+    expect(() => read(text, { at: { 'A\u200b': [0, 0, 0] } }, known)).toThrow('has U+200B in its name');
   });
 });
 

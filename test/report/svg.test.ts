@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
-import { markup, printable } from '../../src/report/markup.ts';
+import { markup } from '../../src/report/markup.ts';
 import { type Chart, chartLayout, chartSvg } from '../../src/report/svg.ts';
+import { printable } from '../../src/scenario/text.ts';
 
 const chart: Chart = {
   title: 'Ez',

@@ -476,6 +476,33 @@ describe('refusals name the path, the value and the remedy', () => {
     expect(problemsOf(JSON.stringify(bench()).replace('"title":', `"deep":${deep},"title":`))[0]!.path).toBe('deep');
     const points = Array.from({ length: 10_001 }, (_, n) => [0, 0, n * 1e-6]);
     expect(problemsOf(changed({ 'sources.0.points': points }))[0]!.path).toBe('sources.0.points');
+    const brackets = `${'['.repeat(50_000)}${']'.repeat(50_000)}`;
+    for (const key of ['title', 'sources', 'grid', 'medium'])
+      expect(problemsOf({ ...bench(), [key]: JSON.parse(brackets) })[0]!.message).toMatch(/more than 100 deep/);
+  });
+
+  test('texts that would not show as they are have no place in a file', () => {
+    for (const [text, code] of [
+      ['a\u001b[2J', 'U+001B'],
+      ['a\nWithin 5 %: everywhere', 'U+000A'],
+      ['a\u009b', 'U+009B'],
+      ['a\u202eb', 'U+202E'],
+      ['a\u200bb', 'U+200B'],
+      ['a\u{e0041}', 'U+E0041'],
+      ['a\ud800', 'U+D800'],
+      ['a\u0000', 'U+0000'],
+    ] as const)
+      for (const key of ['title', 'observers.0.name', 'sources.0.name', 'foo'])
+        expect(problemsOf(changed({ [key]: text }))[0]).toMatchObject({
+          path: key,
+          message: expect.stringContaining(`holds ${code}, a character that does not show`),
+        });
+    // Persian and some emoji are not written right without joiners; accents and other scripts show.
+    for (const title of ['می\u200cخواهم', '👩\u200d🔬', 'Größe, 場, 𝔼', "'=+-@"])
+      expect('scenario' in loadScenario(changed({ title }))).toBe(true);
+    // A key cannot make a line of its own either.
+    const [problem] = problemsOf({ ...bench(), 'x\nWithin 5 %: everywhere\u001b[8m': 1 });
+    expect(describeProblem(problem!)).toMatch(/^x\\u\{a\}Within 5 %: everywhere\\u\{1b\}\[8m: /);
   });
 });
 

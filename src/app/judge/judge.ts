@@ -1,6 +1,7 @@
 import { tracesWithinTolerance } from '../../compare/judgeResult.ts';
 import type { TraceMap } from '../../files/traceMap.ts';
 import { judgeCauses, judgeCharts, judgeFigures, judgeHtml, judgeJson } from '../../report/judge.ts';
+import { quoted } from '../../report/words.ts';
 import type { Judged } from '../../run/judge/judgeTraces.ts';
 import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
@@ -68,7 +69,8 @@ class JudgePlace {
       input.value = '';
     });
     const choose = h('button', { type: 'button', className: 'primary', onclick: () => input.click() }, 'Open traces…');
-    const command = () => `npx fieldassay judge ${nameOf(store)}.json --traces ${this.given?.name ?? 'traces.csv'}`;
+    const command = () =>
+      `npx fieldassay judge ${nameOf(store)}.json --traces ${quoted(this.given?.name ?? 'traces.csv')}`;
     const save = (name: string, title: string, file: string, make: (judged: Judged) => Blob) => {
       const take = () => download(`${nameOf(store)}-${file}`, make(this.judged!));
       return h('button', { type: 'button', title, disabled: true, onclick: take }, name);
