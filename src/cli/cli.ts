@@ -197,7 +197,10 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
         .choices(ROUTES)
         .default('retarded'),
     )
-    .option('--frequencies', 'the steady state at frequencies: every waveform is amplitude · e^(+jωt)')
+    .option(
+      '--frequencies',
+      'the steady state at frequencies: every waveform is amplitude · e^(+jωt), a current given by frequency its phasor',
+    )
     .addHelpText(
       'after',
       '\nExample: fieldassay exact small-loop --points points.csv --out field.csv' +

@@ -40,7 +40,10 @@ export function addDeriveCommand(program: Command, signal: AbortSignal): void {
     .description('what follows from the exact field: far field, radiation, pulse, spectrum, voltage, flux, parts')
     .requiredOption('--at <file>', 'CSV whose header names the columns that the quantity asks for (below)')
     .option('--out <file>', 'CSV to write, each column headed by its name and unit (default: standard output)')
-    .option('--steady', 'where frequencies are asked for: the steady state, every waveform amplitude · e^(+jωt)')
+    .option(
+      '--steady',
+      'where frequencies are asked for: the steady state, every waveform amplitude · e^(+jωt), a current given by frequency its phasor',
+    )
     .option('--instants <n>', 'instants of voltage and flux, evenly over the duration', instantCount, INSTANTS)
     .option('--json', 'print columns, rows and findings as JSON on standard output, and nothing else there')
     .addHelpText(
@@ -76,10 +79,11 @@ export async function deriveCommand(
   { at, steady, instants }: DeriveFlags,
   signal: AbortSignal,
 ): Promise<Derived> {
-  const loaded = loadScenario(scenarioInput);
-  if ('problems' in loaded) throw new Refusal(loaded.problems);
   const quantity: Quantity = DERIVED[name];
   const { names, rows: asked } = readRows(at, quantity.asks);
+  const steadyAlone = steady === true && names.at(-1) === 'f';
+  const loaded = loadScenario(scenarioInput, steadyAlone ? 'frequency' : 'time');
+  if ('problems' in loaded) throw new Refusal(loaded.problems);
   if (asked.length < quantity.least)
     throw new InputError(`${at} has ${asked.length} rows; ${name} needs at least ${quantity.least}.`);
   const drive = steady ? 'steady' : 'pulse';

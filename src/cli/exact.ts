@@ -52,7 +52,7 @@ export async function exactCommand(
   { route, frequencies }: ExactOptions,
   signal: AbortSignal,
 ): Promise<{ csv: string; routes?: RoutesCompared }> {
-  const loaded = loadScenario(scenarioInput);
+  const loaded = loadScenario(scenarioInput, frequencies ? 'frequency' : 'time');
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   const { sources, medium } = loaded.scenario;
   const rows = readRows(pointsFile, ['x', 'y', 'z', frequencies ? 'f' : 't']).rows as unknown as readonly Row[];

@@ -168,7 +168,7 @@ const radiationQuantity: Quantity = {
   least: 1,
   begin({ sources, medium }, rows, _last, { drive }) {
     const power = radiatedPower(sources, medium);
-    const spectrum = energySpectrum(sources, medium);
+    const told = drive === 'steady' ? power : energySpectrum(sources, medium);
     const directivity = directivityOf(sources, medium);
     return {
       columns: [
@@ -185,8 +185,8 @@ const radiationQuantity: Quantity = {
       ],
       items: rows,
       row([f]) {
-        const steady = power(f!);
-        const radiated = drive === 'steady' ? steady : spectrum(f!);
+        const radiated = told(f!);
+        const steady = drive === 'steady' ? radiated : power(f!);
         const { value, direction } = directivity(f!);
         const current = largestCurrent(sources, medium, f!);
         const [x, y, up] = direction;

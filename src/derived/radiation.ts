@@ -230,13 +230,19 @@ export function directivityOf(sources: readonly Source[], medium: Medium): (freq
 /** Radiation resistance R = 2P/|I|², Ω, for a current of amplitude |I| that flows while power P is radiated. */
 export const radiationResistance = (power: number, current: number): number => (2 * power) / (current * current);
 
+/** |amplitude| of a source's waveform in the steady state, A. */
+function steadyAmplitude({ waveform }: Source, frequency: number): number {
+  const [re, im] = linesOf([waveform], 'steady')(frequency)[0]!.value;
+  return Math.sqrt(re * re + im * im);
+}
+
 /**
  * |I(s)| in the steady state, A: the complex sum of a filament's waves at an arc length.
  * @param frequency Hz; @param s m
  */
 export function currentAmplitude(source: Filament, frequency: number, s: number): number {
   const omega = 2 * Math.PI * frequency;
-  const [[amplitude]] = linesOf([source.waveform], 'steady')(frequency).map(({ value }) => value) as [[number, number]];
+  const amplitude = steadyAmplitude(source, frequency);
   let re = 0;
   let im = 0;
   for (const { factor, delay, slowness, profile } of source.terms) {
@@ -256,10 +262,7 @@ export function largestCurrent(sources: readonly Source[], medium: Medium, frequ
   let most = 0;
   for (const source of sources) {
     if (source.type === 'dipole') {
-      const [[amplitude]] = linesOf([source.waveform], 'steady')(frequency).map(({ value }) => value) as [
-        [number, number],
-      ];
-      most = Math.max(most, Math.abs(amplitude));
+      most = Math.max(most, steadyAmplitude(source, frequency));
       continue;
     }
     const { length } = source.curve;

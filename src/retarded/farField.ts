@@ -1,6 +1,7 @@
 import { atan2 } from '../elementary/elementary.ts';
 import { type ArcPiece, dot, type LinePiece } from '../scenario/curve.ts';
 import type { Dipole, Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
+import { carrying } from '../scenario/profiles.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { SMALL_GAP } from './field.ts';
 import { fronts, gradedCuts, longestPart } from './panels.ts';
@@ -36,7 +37,7 @@ export function farField(sources: readonly Source[], medium: Medium, direction: 
   for (const source of sources)
     if (source.type === 'dipole') addDipole(source, sum);
     else
-      for (const piece of source.curve.pieces)
+      for (const [piece] of carrying(source))
         for (const term of source.terms)
           if (piece.kind === 'line' && !term.profile) addLine(source, piece, term, sum);
           else addByQuadrature(source, piece, term, sum);

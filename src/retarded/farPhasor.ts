@@ -1,9 +1,10 @@
 import { cos, sin } from '../elementary/elementary.ts';
 import { type ArcPiece, dot, type LinePiece } from '../scenario/curve.ts';
 import type { Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
+import { carrying } from '../scenario/profiles.ts';
 import { gaussLegendre } from './quadrature.ts';
 import { WaveformSet } from './terms.ts';
-import { type Complex, type Drive, linesOf } from './waveformSpectrum.ts';
+import { type Complex, type Drive, linesOf, type WaveformLine } from './waveformSpectrum.ts';
 
 /** r·E(r) e^(+jkr) for r → ∞, r from the origin: V in the steady state, V/Hz of a pulse. */
 export interface FarPhasor {
@@ -18,7 +19,8 @@ export interface FarPhasor {
  *   r E e^(jkr) = −jωμ/(4π) (1 − n n·) Σ W ∫ ŝ a(s) e^(−jω(delay + slowness s − n·x(s)/v)) ds + dipoles
  * (Balanis, Antenna Theory, 4th ed., §12.2, from memory). On a straight piece without profile the integral is
  * L sinc(ωL dτ/ds/2) e^(−jωτ(middle)); others are taken by Gauss's rule on parts of a limited phase.
- * @throws (from what it returns) RangeError for a frequency that is not above 0
+ * @throws (from what it returns) RangeError for a frequency that is not above 0, or at which a current given by frequency is
+ *   not known
  */
 export function farPhasorOf(
   sources: readonly Source[],
@@ -28,7 +30,7 @@ export function farPhasorOf(
   const set = new WaveformSet();
   const owners = sources.map(({ waveform }) => set.index(waveform));
   const linesAt = linesOf(set.list, drive);
-  let known = { frequency: Number.NaN, lines: linesAt(1) };
+  let known: { frequency: number; lines: WaveformLine[] } = { frequency: Number.NaN, lines: [] };
   return (direction, frequency) => {
     if (!(frequency > 0)) throw new RangeError(`frequency is ${frequency} Hz; a far field needs one above 0.`);
     const omega = 2 * Math.PI * frequency;
@@ -81,7 +83,7 @@ function addCurrent(
   let quadrature = 0;
   let size = 0;
   for (const term of source.terms)
-    for (const piece of source.curve.pieces) {
+    for (const [piece] of carrying(source)) {
       const straight = piece.kind === 'line' && !term.profile;
       quadrature += straight
         ? addLine(piece, term, speed, direction, omega, out)

@@ -1,5 +1,6 @@
 import type { ArcPiece, LinePiece } from '../scenario/curve.ts';
 import type { Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
+import { carrying } from '../scenario/profiles.ts';
 import { CHARGE, COEFFICIENTS, CURRENT, constantsOf, dipoleElement, MAGNETIC, SLOPE } from './elements.ts';
 import { refuseOnSource } from './field.ts';
 import { delayRate, fronts, gradedCuts, longestPart } from './panels.ts';
@@ -123,7 +124,7 @@ class Elements {
         seen.list.add(this.#element, 1, Math.sqrt(x * x + y * y + z * z) / k.speed, owner, 0);
         return;
       }
-      for (const piece of source.curve.pieces)
+      for (const [piece] of carrying(source))
         for (const term of source.terms) this.#addPiece(seen, piece, term, owner, point, points, t);
     });
     return seen;

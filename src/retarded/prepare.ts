@@ -1,6 +1,7 @@
 import type { GriddedSources, Pairs } from '../gridding/edges.ts';
 import { type ArcPiece, type LinePiece, linePiece } from '../scenario/curve.ts';
 import type { Filament, Medium, Source, Vec3, WaveTerm } from '../scenario/model.ts';
+import { carrying } from '../scenario/profiles.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { WaveformSet } from './terms.ts';
 import type { Wave } from './waves.ts';
@@ -85,7 +86,7 @@ function takeApart(
   waves: Wave[],
   integrals: Integral[],
 ): void {
-  source.curve.pieces.forEach((piece, n) => {
+  for (const [piece, n] of carrying(source)) {
     const label = `source “${source.name}”, segment ${n + 1}`;
     const others: WaveTerm[] = [];
     const fullSpeed: WaveTerm[] = [];
@@ -116,7 +117,7 @@ function takeApart(
     }
     if (others.length > 0) integrals.push({ piece, terms: others, waveform, potentialsOnly: false, label });
     if (fullSpeed.length > 0) integrals.push({ piece, terms: fullSpeed, waveform, potentialsOnly: true, label });
-  });
+  }
 }
 
 /** Whether a term's profile is 0 all along a piece. */

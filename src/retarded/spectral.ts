@@ -2,6 +2,7 @@ import { cos, exp, sin } from '../elementary/elementary.ts';
 import { firstArrival } from '../scenario/distance.ts';
 import { JUMP_NOTED } from '../scenario/jump.ts';
 import type { Dipole, Filament, Medium, Profile, Source, Vec3 } from '../scenario/model.ts';
+import { carrying } from '../scenario/profiles.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { type FieldValue, refuseOnSource } from './field.ts';
 import { longestPart } from './panels.ts';
@@ -154,7 +155,7 @@ export interface SteadyValue {
  * of its specification, or its peak where the specification has none; or, with drive `pulse`, the Fourier integral
  * ∫ F e^(−jωt) dt of the field in time, in units of the field per hertz.
  * @throws (from what it returns) RangeError where the point lies on a source, or for a frequency that is not above 0,
- *   at which end charges would grow without bound
+ *   at which end charges would grow without bound, or where a current given by frequency is not known
  */
 export function steadyField(
   sources: readonly Source[],
@@ -337,7 +338,7 @@ function addFilament(
     const gradient = (s: number) => factor * (profile ? profile.slope(s) : 0);
     const turning = (2 * HALF_PHASE) / (top * (1 / medium.speed + Math.abs(slowness)));
     const longest = Math.min(longestPart(term, waveform.timeScale, medium.speed), turning);
-    for (const piece of curve.pieces) {
+    for (const [piece] of carrying(source)) {
       const view = viewOf(piece, point);
       const bounds = boundsOf(profile, piece.s0, piece.s0 + piece.length, view.nearest);
       for (let m = 1; m < bounds.length; m++)

@@ -1,4 +1,5 @@
 import { cos, sin } from '../elementary/elementary.ts';
+import { phasorAt } from '../scenario/phasors.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import { gaussLegendre } from './quadrature.ts';
 import { sphericalBessel } from './sphericalBessel.ts';
@@ -13,18 +14,23 @@ export interface WaveformLine {
 
 /**
  * How waveforms drive a field by frequency: `steady`, each is amplitude · e^(+jωt) for ever (A), the amplitude that of its
- * specification, or its peak where the specification has none; `pulse`, each is its Fourier integral
- * W(f) = ∫₀^∞ w e^(−jωt) dt (A/Hz).
+ * specification, its peak where the specification has none, or its phasor at the frequency where it is given by frequency;
+ * `pulse`, each is its Fourier integral W(f) = ∫₀^∞ w e^(−jωt) dt (A/Hz).
  */
 export type Drive = 'steady' | 'pulse';
 
-/** Each waveform at a frequency above 0 Hz. */
+/**
+ * Each waveform at a frequency above 0 Hz.
+ * @throws (from what it returns) RangeError where the steady state of a current that is given by frequency is asked for
+ *   between those frequencies
+ */
 export function linesOf(waveforms: readonly Waveform[], drive: Drive): (frequency: number) => WaveformLine[] {
   if (drive === 'steady') {
-    const lines = waveforms.map(
-      ({ spec, peak }): WaveformLine => ({ value: ['amplitude' in spec ? spec.amplitude : peak, 0], error: 0 }),
-    );
-    return () => lines;
+    return (frequency) =>
+      waveforms.map(({ spec, peak }): WaveformLine => {
+        if (spec.type === 'phasors') return { value: phasorAt(spec, frequency), error: 0 };
+        return { value: ['amplitude' in spec ? spec.amplitude : peak, 0], error: 0 };
+      });
   }
   const transforms = waveforms.map(fourierTransform);
   return (frequency) => transforms.map((transform) => transform(frequency));

@@ -21,6 +21,7 @@ import {
   type Vec3,
   type WaveTerm,
 } from './model.ts';
+import { combOf, endsOf, isNegligible, type PhasorSpec, phasorsAlone } from './phasors.ts';
 import { decaying, hat, standing } from './profiles.ts';
 import {
   CPML_DEFAULTS,
@@ -40,7 +41,7 @@ import { SIGNIFICANT, shortestWavelength } from './shortest.ts';
 import { CELL_SLACK, observerCell, stepsOf, timeStepOf } from './sites.ts';
 import { resolved } from './table.ts';
 import { printable, unseenIn } from './text.ts';
-import { parseQuantity, show } from './units.ts';
+import { type Kind, parseQuantity, show } from './units.ts';
 import { cellsBehind, cellsRead } from './walls.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 import { makeWaveform } from './waveforms.ts';
@@ -54,6 +55,9 @@ export interface Problem {
   /** one sentence: quantity, value, limit, remedy */
   readonly message: string;
 }
+
+/** What a scenario is read for. */
+export type Asked = 'time' | 'frequency';
 
 export type Loaded = { readonly scenario: Scenario } | { readonly problems: readonly Problem[] };
 
@@ -81,17 +85,19 @@ export type Report = (path: Path, predicate: string) => void;
 /**
  * Reads and checks a scenario.
  * @param input the text of a scenario file, or what JSON.parse made of it
+ * @param asked `frequency` where nothing but steady states will be asked for: currents given by frequency need not make a
+ *   pulse then, and have no value in time
  * @returns the scenario in SI units with all defaults filled in, or every problem found, in the order of the file's
  *   sections. It throws nothing.
  */
-export function loadScenario(input: unknown): Loaded {
+export function loadScenario(input: unknown, asked: Asked = 'time'): Loaded {
   const read = readObject(input, 'The scenario', 'sources, grid and duration');
   if ('problems' in read) return read;
   const { file } = read;
   const problems: Problem[] = [];
   const report = reporter(file, 'The scenario', problems);
   for (const issue of scenarioSchema.safeParse(file).error?.issues ?? []) reportIssue(issue, [], file, report);
-  const scenario = build(file, report);
+  const scenario = build(file, asked, report);
   return problems.length === 0 && scenario ? { scenario } : { problems };
 }
 
@@ -229,7 +235,7 @@ function parts<S extends z.ZodType>(schema: S, value: unknown, most: number): { 
  * The scenario of what is sound in the file, reporting what is wrong with values taken together. Undefined where a
  * part it needs is missing; the schema has then reported that.
  */
-function build(file: Record<string, unknown>, report: Report): Scenario | undefined {
+function build(file: Record<string, unknown>, asked: Asked, report: Report): Scenario | undefined {
   const notes: string[] = [];
   const shape = scenarioSchema.shape;
   const title = part(shape.title, file.title) ?? '';
@@ -239,7 +245,7 @@ function build(file: Record<string, unknown>, report: Report): Scenario | undefi
   const medium = mediumFrom(part(mediumSchema.optional(), file.medium));
   const givenGrid = part(gridSchema, file.grid);
   const grid = givenGrid && buildGrid(givenGrid, medium, duration, notes, report);
-  const sources = buildSources(file.sources, medium, allowJump, notes, report);
+  const sources = buildSources(file.sources, medium, { allowJump, duration, asked, notes }, report);
   if (grid)
     for (const [n, { index, source }] of sources.entries())
       if (sources[n - 1]?.index !== index) checkInside(index, source, grid, report);
@@ -464,20 +470,29 @@ type GivenSource = z.output<typeof sourceSchema>;
 type GivenWire = Extract<GivenSource, { type: 'wire' }>;
 type GivenWaveform = NonNullable<GivenSource['current']['waveform']>;
 
+/** What currents are held against. */
+interface CurrentRules {
+  readonly allowJump: boolean;
+  /** s; undefined where the file's own is refused */
+  readonly duration: number | undefined;
+  readonly asked: Asked;
+  readonly notes: string[];
+}
+
 function buildSources(
   value: unknown,
   medium: Medium,
-  allowJump: boolean,
-  notes: string[],
+  rules: CurrentRules,
   report: Report,
 ): { index: number; source: Source }[] {
+  const { allowJump, notes } = rules;
   const given = parts(sourceSchema, value, LIMITS.sources);
   const names = uniqueNames(given, ({ type }) => type, 'sources', report);
   return given.flatMap(({ index, given: source }, k) => {
     const path = ['sources', index];
     const name = names[k]!;
     if (source.type === 'wire' && source.current.profile === 'sampled')
-      return buildSampled(source, name, allowJump, path, notes, report).map((built) => ({ index, source: built }));
+      return buildSampled(source, name, rules, path, report).map((built) => ({ index, source: built }));
     const givenWaveform = source.current.waveform;
     if (!givenWaveform) return [];
     const waveform = buildWaveform(givenWaveform, allowJump, name, [...path, 'current', 'waveform'], notes, report);
@@ -489,7 +504,8 @@ function buildSources(
 
 /** The sound sources of a scenario file that need not be sound itself: where they lie. */
 export function readSources(value: unknown): Source[] {
-  return buildSources(value, mediumOf(1, 1), true, [], () => {}).map(({ source }) => source);
+  const rules: CurrentRules = { allowJump: true, duration: undefined, asked: 'frequency', notes: [] };
+  return buildSources(value, mediumOf(1, 1), rules, () => {}).map(({ source }) => source);
 }
 
 function buildSource(
@@ -532,26 +548,34 @@ const END_SLACK = 1e-6;
  * A wire whose current is given at arc lengths, straight lines between them: I(s, t) = Σ hat_m(s) w_m(t), one filament for
  * each position at which current flows, all along the same curve.
  */
-function buildSampled(
-  given: GivenWire,
-  name: string,
-  allowJump: boolean,
-  path: Path,
-  notes: string[],
-  report: Report,
-): Source[] {
-  const { positions, samples } = given.current;
+function buildSampled(given: GivenWire, name: string, rules: CurrentRules, path: Path, report: Report): Source[] {
   const curve = curveOf(given, path, report);
-  if (!curve || !positions || !samples) return [];
+  const stations = curve && stationsOf(given, curve, path, report);
+  if (!stations) return [];
+  const waveforms = given.current.phasors
+    ? byFrequency(given.current.phasors, stations, name, rules, path, report)
+    : byTime(given.current.samples, stations, name, rules, path, report);
+  return stations.flatMap((s, m): Source[] => {
+    const waveform = waveforms[m];
+    const terms = [{ factor: 1, delay: 0, slowness: 0, profile: hat(stations, m) }];
+    return waveform ? [{ type: 'wire', name: labelOf(name, s), curve, terms, waveform }] : [];
+  });
+}
+
+const labelOf = (name: string, s: number): string => `${name}, s = ${formatQuantity(s, 'm')}`;
+
+/** The arc lengths of a sampled current, from 0 to the wire's length; undefined where they are refused. */
+function stationsOf(given: GivenWire, { length }: Curve, path: Path, report: Report): number[] | undefined {
+  const { positions } = given.current;
+  if (!positions) return undefined;
   const where = [...path, 'current', 'positions'];
-  const { length } = curve;
   const slack = END_SLACK * length;
   if (Math.abs(positions[0]!) > slack || Math.abs(positions.at(-1)! - length) > slack) {
     report(
       where,
       `run from ${formatQuantity(positions[0]!, 'm')} to ${formatQuantity(positions.at(-1)!, 'm')}; they must begin at 0 and end at the wire’s length, ${formatQuantity(length, 'm')}; add the ends (with 0 A where no current flows)`,
     );
-    return [];
+    return undefined;
   }
   const falling = positions.findIndex((s, m) => m > 0 && !(s > positions[m - 1]!));
   if (falling > 0) {
@@ -559,38 +583,199 @@ function buildSampled(
       [...where, falling],
       `is ${formatQuantity(positions[falling]!, 'm')}, not beyond the one before it; positions must rise; sort the columns`,
     );
-    return [];
+    return undefined;
   }
-  const stations = positions.map((s, m) => (m === 0 ? 0 : m === positions.length - 1 ? length : s));
-  const rows = samples.map((row, n) => sampleRow(row, stations.length, [...path, 'current', 'samples', n], report));
-  if (rows.some((row) => row === undefined)) return [];
-  const table = rows as number[][];
-  return stations.flatMap((s, m): Source[] => {
-    const currents = table.map((row) => row[m + 1]!);
-    if (currents.every((i) => i === 0)) return [];
+  return positions.map((s, m) => (m === 0 ? 0 : m === positions.length - 1 ? length : s));
+}
+
+type GivenRows = GivenWire['current']['samples'];
+
+/** The waveform of each station from samples in time; undefined where no current flows or one is refused. */
+function byTime(
+  samples: GivenRows,
+  stations: readonly number[],
+  name: string,
+  { allowJump, notes }: CurrentRules,
+  path: Path,
+  report: Report,
+): (Waveform | undefined)[] {
+  const where = [...path, 'current', 'samples'];
+  const table = rowsOf(samples, SAMPLE_ROW, stations.length, where, report);
+  if (!table) return [];
+  return stations.map((s, m) => {
+    if (table.every((row) => row[m + 1] === 0)) return undefined;
     const column = { type: 'table' as const, samples: table.map((row): [number, number] => [row[0]!, row[m + 1]!]) };
-    const label = `${name}, s = ${formatQuantity(s, 'm')}`;
-    const waveform = buildWaveform(column, allowJump, label, [...path, 'current', 'samples'], notes, report);
-    const terms = [{ factor: 1, delay: 0, slowness: 0, profile: hat(stations, m) }];
-    return waveform ? [{ type: 'wire', name: label, curve, terms, waveform }] : [];
+    return buildWaveform(column, allowJump, labelOf(name, s), where, notes, report);
   });
 }
 
-/** An instant and the currents of one row, in SI units. */
-function sampleRow(
+/** The waveform of each station from peak phasors; undefined where no current flows or all are refused. */
+function byFrequency(
+  phasors: GivenRows,
+  stations: readonly number[],
+  name: string,
+  rules: CurrentRules,
+  path: Path,
+  report: Report,
+): (Waveform | undefined)[] {
+  const where = [...path, 'current', 'phasors'];
+  const table = rowsOf(phasors, PHASOR_ROW, stations.length, where, report);
+  if (!table) return [];
+  const frequencies = table.map(([f]) => f!);
+  const falling = frequencies.findIndex((f, n) => f < 0 || (n > 0 && !(f - frequencies[n - 1]! > LEAST)));
+  if (falling >= 0) {
+    report(
+      [...where, falling, 0],
+      `is ${formatQuantity(frequencies[falling]!, 'Hz')}; frequencies must be 0 or more and rise from row to row; sort the rows`,
+    );
+    return [];
+  }
+  const turned = frequencies[0] === 0 ? stations.findIndex((_, m) => table[0]![2 * m + 2] !== 0) : -1;
+  if (turned >= 0) {
+    report(
+      [...where, 0, 2 * turned + 2],
+      `is ${table[0]![2 * turned + 2]} A, an imaginary part at 0 Hz, where a current is real; set it to 0`,
+    );
+    return [];
+  }
+  const specs = stations.map((_, m): PhasorSpec => {
+    const column = (part: 0 | 1) => table.map((row) => row[1 + 2 * m + part]!);
+    return { type: 'phasors', frequencies, re: column(0), im: column(1), scale: 0 };
+  });
+  const flows = ({ re, im }: PhasorSpec) => [...re, ...im].some((x) => Math.abs(x) > LEAST);
+  if (!specs.some(flows)) {
+    report(where, 'are 0 everywhere; a source needs a current; give phasors that are not 0');
+    return [];
+  }
+  if (rules.asked === 'frequency') return specs.map((spec) => (flows(spec) ? phasorsAlone(spec) : undefined));
+  const scale = pulseScale(specs.filter(flows), frequencies, name, rules, where, report);
+  return specs.map((spec) => (scale !== undefined && flows(spec) ? makeWaveform({ ...spec, scale }) : undefined));
+}
+
+/** A (or Hz): less is nothing. */
+const LEAST = 1 / LIMITS.magnitude;
+
+/** Who takes phasors that make no pulse. */
+const WITHOUT_PULSE = 'ask with `exact --frequencies` or `derive --steady`, which take them as they are';
+
+/**
+ * The largest current in time of a wire whose phasors make a pulse, A; undefined where they do not, which is reported: a
+ * pulse needs multiples of one step, a period that holds the duration, a band that ends, and silence before t = 0.
+ */
+function pulseScale(
+  specs: readonly PhasorSpec[],
+  frequencies: readonly number[],
+  name: string,
+  { allowJump, duration, notes }: CurrentRules,
+  where: Path,
+  report: Report,
+): number | undefined {
+  const comb = combOf(frequencies);
+  if ('reason' in comb) {
+    report(
+      where,
+      `${comb.reason}, so no pulse is made of them; give them at equal steps from 0 Hz, or ${WITHOUT_PULSE}`,
+    );
+    return undefined;
+  }
+  const { step, first, count } = comb;
+  const spacing = formatQuantity(step, 'Hz', 4);
+  if (duration !== undefined && duration * step > 1 + COMB_SLACK) {
+    report(
+      where,
+      `are ${spacing} apart and repeat after ${formatQuantity(1 / step, 's', 4)}; the duration is ${formatQuantity(duration, 's', 4)}; give them at steps of at most ${formatQuantity(1 / duration, 'Hz', 4)}, shorten duration, or ${WITHOUT_PULSE}`,
+    );
+    return undefined;
+  }
+  const { top, bottom, peak, jump, bend, missing } = endsOf(specs, comb);
+  const [low, high] = [formatQuantity(first * step, 'Hz', 4), formatQuantity(frequencies.at(-1)!, 'Hz', 4)];
+  const share = (part: number) => Number(part.toPrecision(2));
+  if (top > JUMP_REFUSED) {
+    report(
+      where,
+      `end at ${high} with ${share(top)} of the largest |f·I|; the limit is ${JUMP_REFUSED}; give higher frequencies, multiply them by the spectrum of a pulse that ends below, or ${WITHOUT_PULSE}`,
+    );
+    return undefined;
+  }
+  if (first > 1 && bottom > JUMP_REFUSED) {
+    report(
+      where,
+      `begin at ${low}, ${first} times their step, with ${share(bottom)} of the largest |f·I|; the limit is ${JUMP_REFUSED}; give the frequencies below, or ${WITHOUT_PULSE}`,
+    );
+    return undefined;
+  }
+  const direct = frequencies[0] === 0;
+  if (Math.max(jump, bend) > JUMP_REFUSED && !allowJump) {
+    const what =
+      jump > JUMP_REFUSED
+        ? `start at t = 0 with ${share(jump)} of the peak`
+        : `start at t = 0 with a slope of ${share(bend)} of the steepest`;
+    const remedy =
+      !direct && jump > JUMP_REFUSED
+        ? `give 0 Hz too, taken as 0 A now (${formatQuantity(missing, 'A', 4)} there starts one of the stations with 0)`
+        : 'delay the pulse (phasors times e^(−j2πf·delay)), give finer steps where it has not ended within their period';
+    report(
+      where,
+      `${what}; the limit is ${JUMP_REFUSED}, for nothing flows before; ${remedy}, set "allowJump": true, or ${WITHOUT_PULSE}`,
+    );
+    return undefined;
+  }
+  const parts = [
+    `The current of “${name}” is the sum of ${count} lines ${spacing} apart, ${low} to ${high}, over one period, ${formatQuantity(1 / step, 's', 4)}`,
+    ...(direct ? [] : ['0 Hz is not given and taken as 0 A: no charge is left behind']),
+    ...(isNegligible(top) ? [] : [`its highest lines still have ${share(top)} of the largest |f·I|`]),
+    ...(isNegligible(jump) ? [] : [`it starts at t = 0 with ${share(jump)} of its peak`]),
+  ];
+  notes.push(`${parts.join('; ')}.`);
+  return peak;
+}
+
+/** Of the period: how much longer the duration may be, for what files round away. */
+const COMB_SLACK = 1e-4;
+
+/** What a row holds: its first number, how many for each station, in words. */
+interface RowForm {
+  readonly first: Kind;
+  readonly each: number;
+  readonly words: (stations: number) => string;
+}
+
+const SAMPLE_ROW: RowForm = {
+  first: 'time',
+  each: 1,
+  words: (stations) => `an instant and ${stations} currents, one for each position`,
+};
+
+const PHASOR_ROW: RowForm = {
+  first: 'frequency',
+  each: 2,
+  words: (stations) => `a frequency and ${2 * stations} currents, real and imaginary part for each position`,
+};
+
+/** Rows of a sampled current in SI units; undefined where one is refused. */
+function rowsOf(rows: GivenRows, form: RowForm, stations: number, path: Path, report: Report): number[][] | undefined {
+  const table = rows?.map((row, n) => rowOf(row, form, stations, [...path, n], report));
+  return table?.some((row) => row === undefined) ? undefined : (table as number[][] | undefined);
+}
+
+/** An instant or a frequency, and the currents of one row, in SI units. */
+function rowOf(
   row: readonly (number | string)[],
+  { first, each, words }: RowForm,
   stations: number,
   path: Path,
   report: Report,
 ): number[] | undefined {
-  if (row.length !== stations + 1) {
-    report(path, `has ${row.length} numbers; it must have an instant and ${stations} currents, one for each position`);
+  if (row.length !== each * stations + 1) {
+    report(path, `has ${row.length} numbers; it must have ${words(stations)}`);
     return undefined;
   }
-  const parsed = row.map((value, n) => parseQuantity(value, n === 0 ? 'time' : 'current'));
-  const wrong = parsed.findIndex((each) => 'reason' in each);
+  const parsed = row.map((value, n) => parseQuantity(value, n === 0 ? first : 'current'));
+  const wrong = parsed.findIndex((each) => 'reason' in each || Math.abs(each.value) > LIMITS.magnitude);
   if (wrong < 0) return parsed.map((each) => (each as { value: number }).value);
-  report([...path, wrong], (parsed[wrong] as { reason: string }).reason);
+  const found = parsed[wrong]!;
+  const tooLarge = `is ${show(row[wrong])}; it must be at most ${LIMITS.magnitude} in SI units`;
+  report([...path, wrong], 'reason' in found ? found.reason : tooLarge);
   return undefined;
 }
 

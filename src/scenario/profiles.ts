@@ -1,5 +1,6 @@
 import { cos, exp, sin } from '../elementary/elementary.ts';
-import type { Profile } from './model.ts';
+import { type ArcPiece, type LinePiece, linePiece } from './curve.ts';
+import type { Filament, Profile, Vec3 } from './model.ts';
 
 /** e^(−s/decay), or e^(−(length − s)/decay) for a wave that travels backward: what is left after its way along the wire. */
 export function decaying(length: number, decay: number, direction: 'forward' | 'backward'): Profile {
@@ -47,4 +48,30 @@ export function hat(stations: readonly number[], m: number): Profile {
     support: [before, after],
     scale: Math.max(at - before, after - at),
   };
+}
+
+/**
+ * The pieces of a filament along which current flows, cut off where the profiles of all its terms have ended, each with its
+ * number in the curve. Circles are not cut.
+ */
+export function* carrying({ curve, terms }: Filament): Generator<readonly [LinePiece | ArcPiece, number]> {
+  const supports = terms.map(({ profile }) => profile?.support ?? [0, curve.length]);
+  const first = Math.min(...supports.map(([from]) => from!));
+  const last = Math.max(...supports.map(([, to]) => to!));
+  for (const [n, piece] of curve.pieces.entries()) {
+    const from = Math.max(first, piece.s0);
+    const to = Math.min(last, piece.s0 + piece.length);
+    if (!(to > from)) continue;
+    yield [piece.kind === 'line' && to - from < piece.length ? cut(piece, from, to) : piece, n];
+  }
+}
+
+function cut(piece: LinePiece, from: number, to: number): LinePiece {
+  const end = piece.s0 + piece.length;
+  const place = new Float64Array(3);
+  const at = (s: number): Vec3 => {
+    piece.point(s, place);
+    return [place[0]!, place[1]!, place[2]!];
+  };
+  return linePiece(from === piece.s0 ? piece.from : at(from), to === end ? piece.to : at(to), from);
 }

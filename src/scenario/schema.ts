@@ -21,6 +21,7 @@ export const LIMITS = {
   heidlerTerms: 20,
   samples: 10_000,
   stations: 200,
+  lines: 2000,
   /** of a sine, in periods: a pulse solver answers longer ones badly */
   periods: 1e5,
   layers: 128,
@@ -172,7 +173,9 @@ const file = (columns: string) =>
 
 /** Columns of a table's file. */
 export const TABLE_COLUMNS = 't,I (s and A)';
-export const STATION_COLUMNS = 't, then one of current for each arc length that the header names (s, A and m)';
+export const STATION_COLUMNS =
+  't, then one of current for each arc length that the header names (s, A and m), such as t,0,0.05,0.1; or f, then real and ' +
+  'imaginary part of the peak phasor of e^(+jωt) at each (Hz and A), such as f,0Re,0Im,0.05Re,0.05Im';
 
 /** A number of periods, whole or not. */
 const periods = (least: number) => {
@@ -180,15 +183,19 @@ const periods = (least: number) => {
   return z.number({ error }).gte(least, { error }).lte(LIMITS.periods, { error });
 };
 
-function oneOfTwoTables(
-  { samples, file }: { samples?: unknown; file?: string | undefined },
-  ctx: z.core.$RefinementCtx,
-): void {
-  const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
-  if (samples && file !== undefined) wrong('file', 'stands beside samples; a table has one or the other; remove one');
-  if (!samples && file === undefined) wrong('samples', 'is missing; a table must have samples or name a file');
-  if (!samples && file !== undefined)
-    wrong('file', `is ${show(file)}, and files are read by the command line alone; give the samples instead`);
+/** A table in the file itself, under one of some keys, or the name of a CSV file; nothing else and not both. */
+function oneOfTables(keys: readonly string[]) {
+  return (given: Record<string, unknown>, ctx: z.core.$RefinementCtx): void => {
+    const wrong = (key: string, message: string) => ctx.addIssue({ code: 'custom', path: [key], message });
+    const found = [...keys, 'file'].filter((key) => given[key] !== undefined);
+    if (found.length === 0) wrong(keys[0]!, `is missing; a table must have ${keys.join(' or ')} or name a file`);
+    for (const key of found.slice(1)) wrong(key, `stands beside ${found[0]}; a table has one or the other; remove one`);
+    if (found[0] === 'file')
+      wrong(
+        'file',
+        `is ${show(given.file)}, and files are read by the command line alone; give the ${keys.join(' or ')} instead`,
+      );
+  };
 }
 
 const waveform = oneOf('a waveform', WAVEFORMS, [
@@ -296,7 +303,7 @@ const waveform = oneOf('a waveform', WAVEFORMS, [
     file: file(TABLE_COLUMNS),
     delay: quantity('time').optional().describe('Added to every instant of the table, s (default 0).'),
     allowJump,
-  }).superRefine(oneOfTwoTables),
+  }).superRefine(oneOfTables(['samples'])),
 ]).describe('Time dependence w(t) of the current; zero for t < 0.');
 
 const speed = number('a fraction of the speed of waves in the medium, above 0 and at most 1')
@@ -346,6 +353,7 @@ const KEYS_OF_PROFILE = {
   wavenumber: ['sinusoidal'],
   positions: ['sampled'],
   samples: ['sampled'],
+  phasors: ['sampled'],
   file: ['sampled'],
 } as const satisfies Record<string, readonly (typeof PROFILES)[number][]>;
 
@@ -353,7 +361,7 @@ const currentOfWire = record("a wire's current", {
   profile: choice(PROFILES)
     .optional()
     .describe(
-      'uniform: I = w(t) (default); travelling: one forward wave; waves: the sum of `waves` (default if they are given); sinusoidal: I = sin(k(L/2 − |s − L/2|)) w(t); sampled: currents given at arc lengths, straight lines between them.',
+      'uniform: I = w(t) (default); travelling: one forward wave; waves: the sum of `waves` (default if they are given); sinusoidal: I = sin(k(L/2 − |s − L/2|)) w(t); sampled: currents given at arc lengths, in time or by frequency, straight lines between them.',
     ),
   speed,
   waves: list(wave, 1, LIMITS.wavesPerWire, 'waves').optional().describe('Travelling waves whose sum is the current.'),
@@ -361,10 +369,10 @@ const currentOfWire = record("a wire's current", {
   wavenumber: quantity('wavenumber', 'positive').optional().describe('k of a sinusoidal current, rad/m.'),
   positions: list(quantity('length', 'not negative'), 2, LIMITS.stations, 'arc lengths')
     .optional()
-    .describe('Arc lengths of the columns of `samples`, m, rising from 0 to the length of the wire.'),
+    .describe('Arc lengths of the columns of `samples` or `phasors`, m, rising from 0 to the length of the wire.'),
   samples: list(
     z
-      .array(z.union([z.number(), z.string()]), {
+      .array(z.union([z.number(), z.string()], { error: expected('a number, or a text with a unit') }), {
         error: expected('a list of an instant and one current for each position'),
       })
       .max(LIMITS.stations + 1, { error: expected(`a list of at most ${LIMITS.stations + 1} numbers`) }),
@@ -374,6 +382,20 @@ const currentOfWire = record("a wire's current", {
   )
     .optional()
     .describe('Rows [t, I at the first position, I at the second, …] in order of time (s and A).'),
+  phasors: list(
+    z
+      .array(z.union([z.number(), z.string()], { error: expected('a number, or a text with a unit') }), {
+        error: expected('a list of a frequency and two currents for each position'),
+      })
+      .max(2 * LIMITS.stations + 1, { error: expected(`a list of at most ${2 * LIMITS.stations + 1} numbers`) }),
+    1,
+    LIMITS.lines,
+    'rows',
+  )
+    .optional()
+    .describe(
+      'In place of samples: rows [f, Re I at the first position, Im I there, Re I at the second, …] of peak phasors of e^(+jωt), in order of frequency (Hz and A). In time they are taken together, I(t) = Re Σ I e^(j2πft) over one period 1/Δf: frequencies are then multiples of Δf without gaps, and nothing flows at t = 0.',
+    ),
   file: file(STATION_COLUMNS),
   waveform: waveform.optional(),
 }).superRefine((current, ctx) => {
@@ -393,8 +415,8 @@ const currentOfWire = record("a wire's current", {
   if (profile === 'sinusoidal' && current.wavenumber === undefined)
     wrong('wavenumber', 'is missing; the profile "sinusoidal" must have a wavenumber, such as "62.8 rad/m"');
   if (profile === 'sampled') {
-    oneOfTwoTables(current, ctx);
-    if (current.samples && !current.positions)
+    oneOfTables(['samples', 'phasors'])(current, ctx);
+    if ((current.samples || current.phasors) && !current.positions)
       wrong('positions', 'is missing; a sampled current must have the arc lengths of its columns');
     if (current.waveform) wrong('waveform', 'belongs to the other profiles; a sampled current has its own; remove it');
   } else if (!current.waveform)

@@ -25,7 +25,17 @@ export type WaveformSpec =
       readonly ramp: number;
       readonly hold: number;
     }
-  | { readonly type: 'table'; readonly times: readonly number[]; readonly currents: readonly number[] };
+  | { readonly type: 'table'; readonly times: readonly number[]; readonly currents: readonly number[] }
+  | {
+      readonly type: 'phasors';
+      /** Hz, ascending, 0 or more */
+      readonly frequencies: readonly number[];
+      /** peak amplitudes of e^(+jωt) at them, A */
+      readonly re: readonly number[];
+      readonly im: readonly number[];
+      /** the largest |w| anywhere along the same wire, A: what a jump is small or large against */
+      readonly scale: number;
+    };
 
 /** (amplitude/η) xⁿ/(1 + xⁿ) e^(−t/tau2), x = t/tau1, η = exp(−(tau1/tau2)(n tau2/tau1)^(1/n)). */
 export interface HeidlerTerm {

@@ -2,6 +2,7 @@ import { cos, exp, expm1, log, log1p, sin } from '../elementary/elementary.ts';
 import { faddeeva, scaledErfc } from '../elementary/faddeeva.ts';
 import { heidler } from './heidler.ts';
 import { orderOfJump } from './jump.ts';
+import { phasorPulse } from './phasors.ts';
 import { rampedSine } from './rampedSine.ts';
 import { bisect, doubleUntil, largest } from './search.ts';
 import { table } from './table.ts';
@@ -17,6 +18,7 @@ import type { Waveform, WaveformSpec } from './waveform.ts';
 export function makeWaveform(spec: WaveformSpec): Waveform {
   if (spec.type === 'heidler') return remembered(spec, heidler);
   if (spec.type === 'table') return remembered(spec, table);
+  if (spec.type === 'phasors') return remembered(spec, phasorPulse);
   for (const [key, value] of Object.entries(spec))
     if (key !== 'type' && !Number.isFinite(value)) throw new RangeError(`${key} is ${value}; it must be finite.`);
   if (spec.amplitude === 0) throw new RangeError('amplitude is 0; a source needs a current.');

@@ -3,6 +3,7 @@ import { largestPartAt, regionsAlong } from '../../src/derived/regions.ts';
 import { farField } from '../../src/retarded/farField.ts';
 import { fieldAt } from '../../src/retarded/field.ts';
 import { partPeaksOf, partsOf } from '../../src/retarded/parts.ts';
+import { polyline } from '../../src/scenario/curve.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
 import { standing } from '../../src/scenario/profiles.ts';
 import {
@@ -34,7 +35,10 @@ const kinds: readonly (readonly [string, Source[]])[] = [
   ['uniform wire, kinked', [wire(BENT, uniform, kinked)]],
   ['wave with a jump', [wire(BENT, travelling(1), jumping)]],
   ['loop with a jump', [loop([0.01, 0, 0], [0.6, 0, 0.8], 0.03, jumping)]],
-  ['profile', [wire(BENT, [{ factor: 1, delay: 0, slowness: 0, profile: standing(0.078, 40) }], smooth)]],
+  [
+    'profile',
+    [wire(BENT, [{ factor: 1, delay: 0, slowness: 0, profile: standing(polyline(BENT).length, 40) }], smooth)],
+  ],
 ];
 
 const sum = (...vectors: readonly Vec3[]): Vec3 =>

@@ -66,7 +66,18 @@ const keys = fc.constantFrom(
   'at',
 );
 
-const scenarios = fc.constantFrom(...Object.values(EXAMPLES)).chain((example) => {
+/** What no example holds: currents given at arc lengths, in time and by frequency. */
+const sampled = [
+  { samples: [0, 1, 2, 1, 0].map((i, n) => [n * 1e-10, i, `${i} A`, 0]) },
+  { phasors: [0.1, 1, -1, 0.1, 0].map((i, n) => [n * 3e8, i, n === 0 ? 0 : i, i, 0, 0, 0]) },
+  { phasors: [[1e9, 1, 0, '1 mA', 0, 0, 0]] },
+].map((rows) => {
+  const scenario = structuredClone(EXAMPLES['bench-cable-pulse']) as unknown as { sources: [{ current: unknown }] };
+  scenario.sources[0].current = { profile: 'sampled', positions: [0, 0.05, 0.1], ...rows };
+  return scenario;
+});
+
+const scenarios = fc.constantFrom<object>(...Object.values(EXAMPLES), ...sampled).chain((example) => {
   const paths = pathsOf(example);
   const change = fc.tuple(fc.constantFrom(...paths), fc.option(keys, { freq: 4 }), values);
   return fc.array(change, { minLength: 1, maxLength: 4 }).map((changes) => {
@@ -87,6 +98,7 @@ test('a mutated scenario is a scenario or has problems, and never throws', () =>
   fc.assert(
     fc.property(scenarios, (scenario) => {
       const result = loadScenario(scenario);
+      loadScenario(scenario, 'frequency');
       if ('scenario' in result) {
         loaded++;
         const { grid, sources, duration } = result.scenario;

@@ -38,6 +38,7 @@ function endOf(spec: WaveformSpec): number {
   if (spec.type === 'heidler') return 45 * Math.max(...spec.terms.map(({ tau2 }) => tau2));
   if (spec.type === 'rampedSine') return (2 * spec.ramp + spec.hold) / spec.frequency;
   if (spec.type === 'table') return spec.times.at(-1)!;
+  if (spec.type === 'phasors') return (spec.frequencies.length - 1) / spec.frequencies.at(-1)!;
   return spec.delay + 40 * spec.sigma;
 }
 

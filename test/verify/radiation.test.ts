@@ -19,6 +19,7 @@ import { steadyField } from '../../src/retarded/spectral.ts';
 import { sphericalBessel } from '../../src/retarded/sphericalBessel.ts';
 import { fourierTransform } from '../../src/retarded/waveformSpectrum.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
+import { polyline } from '../../src/scenario/curve.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
 import { decaying, standing } from '../../src/scenario/profiles.ts';
 import type { Waveform } from '../../src/scenario/waveform.ts';
@@ -285,7 +286,13 @@ describe('energy', () => {
     ['loop', (w) => [loop([0, 0, 0], [0, 0.6, 0.8], 0.03, w)]],
     [
       'decaying wave',
-      (w) => [wire(bent, [{ factor: 1, delay: 0, slowness: 1 / speed, profile: decaying(0.112, 0.06, 'forward') }], w)],
+      (w) => [
+        wire(
+          bent,
+          [{ factor: 1, delay: 0, slowness: 1 / speed, profile: decaying(polyline(bent).length, 0.06, 'forward') }],
+          w,
+        ),
+      ],
     ],
   ];
 
@@ -353,7 +360,7 @@ describe('the far field by frequency', () => {
   const sources: Source[] = [
     ...centreFed([0.01, 0.02, -0.01], [0.48, 0.36, 0.8], 0.05, smooth),
     wire(bent, travelling(0.7), unipolar),
-    wire(bent, [{ factor: 2, delay: 1e-10, slowness: 0, profile: standing(0.1123, 50) }], smooth),
+    wire(bent, [{ factor: 2, delay: 1e-10, slowness: 0, profile: standing(polyline(bent).length, 50) }], smooth),
     loop([0, 0.02, 0], [0.6, 0, 0.8], 0.03, smooth),
     dipole([0, 0, 0.02], [1, 0, 0], 0.01, smooth),
   ];
