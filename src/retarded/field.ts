@@ -15,12 +15,14 @@ import {
   SLOPE,
   VECTOR,
 } from './elements.ts';
-import { delayRate, frontRounding, fronts, gradedCuts, longestPart, onset } from './panels.ts';
+import { delayRate, frontRounding, fronts, gradedCuts, instantRounding, longestPart, onset } from './panels.ts';
+import { PART_ERROR, PART_NUMBERS, PART_ROUNDING, PartSums, ROUNDINGS } from './partSums.ts';
 import { type PlaceView, viewOf } from './pieceView.ts';
 import { type Integral, type Method, type Prepared, prepareSources } from './prepare.ts';
-import { DEGREES, expansions, KRONROD_POINTS, kronrod, kronrodError } from './quadrature.ts';
+import { KRONROD_POINTS } from './quadrature.ts';
 import { TermList } from './terms.ts';
 import { addWave } from './waves.ts';
+import { firstAfter, scalesOf } from './windows.ts';
 
 export interface FieldOptions {
   /** 'best' (default): closed form where there is one; 'quadrature': adaptive quadrature of every filament */
@@ -75,9 +77,6 @@ export function fieldOf(prepared: Prepared, options: FieldOptions = {}): (point:
   return (point, t) => evaluate(prepared, k, point, t, settings);
 }
 
-/** Roundings of one product of the formulas, generously counted. */
-const ROUNDINGS = 8 * Number.EPSILON;
-
 /** A gap between the two delays of a wave counts as small below this part of the waveform's time scale. */
 export const SMALL_GAP = 0.1;
 
@@ -100,15 +99,12 @@ const groupNorm = (v: Float64Array, g: number): number => {
   return Math.sqrt(sum);
 };
 
-/** One part of an integral: its value, and for each group its error and the rounding no refinement removes. */
-interface Panel {
+/** One part of an integral; what it adds to the field is in `sums`, at the same index. */
+interface Part {
   readonly integral: Integral;
   readonly view: PlaceView;
   readonly from: number;
   readonly to: number;
-  readonly value: Float64Array;
-  readonly error: Float64Array;
-  readonly rounding: Float64Array;
 }
 
 function evaluate(
@@ -130,34 +126,36 @@ function evaluate(
   for (let n = 0; n < terms.count; n++) addTerm(prepared, terms, n, t, groups, total, rounding);
   evaluations += terms.count;
 
-  const panels: Panel[] = [];
+  const parts: Part[] = [];
+  const integrate = (n: number, integral: Integral, view: PlaceView, from: number, to: number) => {
+    parts[n] = { integral, view, from, to };
+    evaluations += KRONROD_POINTS;
+    integratePart(prepared, k, parts, n, t, settings.potentials);
+  };
   for (const integral of prepared.integrals) {
     if (integral.potentialsOnly && !settings.potentials) continue;
     const view = viewOf(integral.piece, point);
     addFronts(prepared, k, integral, view, t, total, rounding);
-    for (const [from, to] of partsOf(prepared, k, integral, view, t)) {
-      panels.push(integrate(prepared, k, integral, view, from, to, t));
-      evaluations += KRONROD_POINTS;
-    }
+    for (const [from, to] of partsOf(prepared, k, integral, view, t)) integrate(parts.length, integral, view, from, to);
   }
 
   for (;;) {
     sum.set(total);
     error.fill(0);
     floor.set(rounding);
-    for (const panel of panels) {
-      for (let c = 0; c < QUANTITIES; c++) sum[c]! += panel.value[c]!;
+    for (let at = 0; at < parts.length * PART_NUMBERS; at += PART_NUMBERS) {
+      for (let c = 0; c < QUANTITIES; c++) sum[c]! += sums[at + c]!;
       for (let g = 0; g < 4; g++) {
-        error[g]! += panel.error[g]!;
-        floor[g]! += panel.rounding[g]!;
+        error[g]! += sums[at + PART_ERROR + g]!;
+        floor[g]! += sums[at + PART_ROUNDING + g]!;
       }
     }
-    const limits = panels.length === 0 ? NOTHING : limitsOf(settings.tolerance, k.speed);
-    const open = panels.length === 0 ? NOTHING : groups.filter((g) => error[g]! > limits[g]!);
-    const worst = open.length === 0 ? -1 : worstPanel(panels, open, limits);
+    const limits = parts.length === 0 ? NOTHING : limitsOf(settings.tolerance, k.speed);
+    const open = parts.length === 0 ? NOTHING : groups.filter((g) => error[g]! > limits[g]!);
+    const worst = open.length === 0 ? -1 : worstPart(parts, open, limits);
     const exhausted = evaluations + 2 * KRONROD_POINTS > settings.maxEvaluations;
     if (worst < 0 || exhausted) {
-      const bad = worst < 0 ? undefined : panels[worst]!;
+      const bad = worst < 0 ? undefined : parts[worst]!;
       if (!settings.potentials) {
         sum.fill(Number.NaN, SCALAR);
         error.fill(Number.NaN, 2);
@@ -179,11 +177,10 @@ function evaluate(
         ...(bad ? { worst: `${bad.integral.label}, s from ${bad.from} to ${bad.to} m` } : {}),
       };
     }
-    const { integral, view, from, to } = panels[worst]!;
+    const { integral, view, from, to } = parts[worst]!;
     const middle = (from + to) / 2;
-    panels[worst] = integrate(prepared, k, integral, view, from, middle, t);
-    panels.push(integrate(prepared, k, integral, view, middle, to, t));
-    evaluations += 2 * KRONROD_POINTS;
+    integrate(worst, integral, view, from, middle);
+    integrate(parts.length, integral, view, middle, to);
   }
 }
 
@@ -200,22 +197,45 @@ function limitsOf(tolerance: number, speed: number): number[] {
   );
 }
 
-/** The panel with the largest error relative to its limit that bisection can still lower; −1 if there is none. */
-function worstPanel(panels: readonly Panel[], open: readonly number[], limits: readonly number[]): number {
+/** The part with the largest error relative to its limit that bisection can still lower; −1 if there is none. */
+function worstPart(parts: readonly Part[], open: readonly number[], limits: readonly number[]): number {
   let worst = -1;
   let most = 0;
-  panels.forEach((panel, n) => {
-    const middle = (panel.from + panel.to) / 2;
-    if (!(middle > panel.from && middle < panel.to)) return;
+  parts.forEach(({ from, to }, n) => {
+    const middle = (from + to) / 2;
+    if (!(middle > from && middle < to)) return;
+    const at = n * PART_NUMBERS;
     for (const g of open) {
-      const size = panel.error[g]! / limits[g]!;
-      if (size > most && panel.error[g]! > panel.rounding[g]!) {
+      const error = sums[at + PART_ERROR + g]!;
+      const size = error / limits[g]!;
+      if (size > most && error > sums[at + PART_ROUNDING + g]!) {
         most = size;
         worst = n;
       }
     }
   });
   return worst;
+}
+
+/** Integrates part n of the list into `sums`. */
+function integratePart(
+  prepared: Prepared,
+  k: Constants,
+  parts: readonly Part[],
+  n: number,
+  t: number,
+  potentials: boolean,
+): void {
+  const { integral, view, from, to } = parts[n]!;
+  if ((n + 1) * PART_NUMBERS > sums.length) {
+    const bigger = new Float64Array(2 * sums.length);
+    bigger.set(sums);
+    sums = bigger;
+  }
+  kernel ??= new PartSums();
+  const carried = { terms: integral.terms, waveform: prepared.waveforms[integral.waveform]! };
+  const wanted = { fields: !integral.potentialsOnly, potentials };
+  kernel.integrate(k, carried, view, from, to, t, wanted, sums, n * PART_NUMBERS);
 }
 
 /** Bounds of the parts that an integral starts with: cut at fronts of kinks, graded towards the observer. */
@@ -266,18 +286,6 @@ function seamsSeen(
   return seams.slice(firstAfter(seams, earliest), firstAfter(seams, latest));
 }
 
-/** The index of the first of ascending numbers that is above x. */
-function firstAfter(list: readonly number[], x: number): number {
-  let low = 0;
-  let high = list.length;
-  while (low < high) {
-    const middle = (low + high) >> 1;
-    if (list[middle]! > x) high = middle;
-    else low = middle + 1;
-  }
-  return low;
-}
-
 /** Whether any part of [from, to] can be felt at t: before its start a current is zero. */
 function reached(integral: Integral, view: PlaceView, from: number, to: number, t: number, speed: number): boolean {
   const travel = view.distance(from, to) / speed;
@@ -321,10 +329,6 @@ function addFronts(
       }
 }
 
-/** What t − delay − slowness·s − R/v is rounded to, s. */
-const instantRounding = (t: number, delay: number, along: number, travel: number): number =>
-  Number.EPSILON * (Math.abs(t) + Math.abs(delay) + Math.abs(along) + 2 * travel);
-
 /** Of the evaluation at hand: what is in closed form, with its rounding; all of it, with errors and roundings. */
 const total = new Float64Array(QUANTITIES);
 const rounding = new Float64Array(4);
@@ -334,126 +338,10 @@ const floor = new Float64Array(4);
 const element = new Float64Array(COEFFICIENTS);
 const terms = new TermList();
 const wave = new Float64Array(4);
-const samples = new Float64Array(KRONROD_POINTS * QUANTITIES);
-const squares = new Float64Array(DEGREES);
 const front = new Float64Array(QUANTITIES);
-const noise = new Float64Array(QUANTITIES);
-
-/** Gauss–Kronrod over one part of an integral. */
-function integrate(
-  prepared: Prepared,
-  k: Constants,
-  integral: Integral,
-  view: PlaceView,
-  from: number,
-  to: number,
-  t: number,
-): Panel {
-  const waveform = prepared.waveforms[integral.waveform]!;
-  const half = (to - from) / 2;
-  const value = new Float64Array(QUANTITIES);
-  const error = new Float64Array(4);
-  const rounding = new Float64Array(4);
-  samples.fill(0);
-  noise.fill(0);
-  const [noiseCharge, noiseW, noiseSlope] = roundingsOf(waveform);
-  // What rounding of places does to instants.
-  const placed = (Number.EPSILON * extentOf(view, from, to)) / k.speed;
-  for (let m = 0; m < KRONROD_POINTS; m++) {
-    const s = (from + to) / 2 + half * kronrod.nodes[m]!;
-    view.look(s);
-    const base = m * QUANTITIES;
-    let charge = 0;
-    let w = 0;
-    let slope = 0;
-    let factors = 0;
-    let shiftCharge = 0;
-    let shiftW = 0;
-    let shiftSlope = 0;
-    integral.terms.forEach(({ factor, delay, slowness, profile }, n) => {
-      const travel = view.r / k.speed;
-      const u = t - delay - slowness * s - travel;
-      if (u >= 0) {
-        if (profile) charge += factor * waveform.charge(u);
-        const [current, rate] = [waveform.value(u), waveform.slope(u)];
-        w += factor * current;
-        slope += factor * rate;
-        const shift = Math.abs(factor) * (placed + instantRounding(t, delay, slowness * s, travel));
-        factors += Math.abs(factor);
-        shiftCharge += shift * Math.abs(current);
-        shiftW += shift * Math.abs(rate);
-        shiftSlope += shift * bendBetween(n, m, u, rate, waveform.timeScale);
-      }
-      // Terms come in order of slowness, and those of one slowness share their element.
-      const next = integral.terms[n + 1];
-      if (next?.slowness === slowness && next.profile === profile) return;
-      if (factors === 0) return;
-      const [amplitude, gradient] = profile ? [profile.value(s), profile.slope(s)] : [1, 0];
-      filamentElement(k, view.x, view.y, view.z, view.sx, view.sy, view.sz, slowness, amplitude, gradient, element);
-      const weight = half * kronrod.weights[m]!;
-      const roundedCharge = weight * (factors * noiseCharge + shiftCharge);
-      const roundedW = weight * (factors * noiseW + shiftW);
-      const roundedSlope = weight * (factors * noiseSlope + shiftSlope);
-      for (let c = integral.potentialsOnly ? SCALAR : 0; c < QUANTITIES; c++) {
-        const [q, i, d] = [element[CHARGE + c]!, element[CURRENT + c]!, element[SLOPE + c]!];
-        samples[base + c]! += q * charge + i * w + d * slope;
-        noise[c]! += Math.abs(q) * roundedCharge + Math.abs(i) * roundedW + Math.abs(d) * roundedSlope;
-      }
-      charge = 0;
-      w = 0;
-      slope = 0;
-      factors = 0;
-      shiftCharge = 0;
-      shiftW = 0;
-      shiftSlope = 0;
-    });
-    for (let c = 0; c < QUANTITIES; c++) value[c]! += half * kronrod.weights[m]! * samples[base + c]!;
-  }
-  const relative = ROUNDINGS + Number.EPSILON * (extentOf(view, from, to) / view.distance(from, to));
-  let electric = 0;
-  for (let g = 0; g < 4; g++) {
-    const [first, last] = GROUPS[g]!;
-    let size = 0;
-    for (let m = 0; m < KRONROD_POINTS; m++) {
-      let own = 0;
-      for (let c = first; c < last; c++) {
-        const f = samples[m * QUANTITIES + c]!;
-        own += f * f;
-      }
-      size += half * kronrod.weights[m]! * Math.sqrt(own);
-    }
-    for (let n = 0; n < DEGREES; n++) {
-      squares[n] = 0;
-      for (let c = first; c < last; c++) {
-        let part = 0;
-        for (let m = 0; m < KRONROD_POINTS; m++)
-          part += expansions[n * KRONROD_POINTS + m]! * samples[m * QUANTITIES + c]!;
-        squares[n]! += part * part;
-      }
-    }
-    error[g] = half * kronrodError(squares);
-    electric = g === 0 ? size : electric;
-    if (g === 1) size = Math.max(size, electric / k.speed);
-    rounding[g] = relative * size + groupNorm(noise, g);
-  }
-  return { integral, view, from, to, value, error, rounding };
-}
-
-/** Of the coordinates that places on a piece are made of, m. */
-const extentOf = (view: PlaceView, from: number, to: number): number => Math.abs(from) + Math.abs(to) + view.reach;
-
-/** u and w′(u) at the node before, by term. */
-const lastInstant: number[] = [];
-const lastSlope: number[] = [];
-
-/** |w″| about node m of term n: from one node to the next, or, where nothing tells, w′ over the time scale. */
-function bendBetween(n: number, m: number, u: number, slope: number, timeScale: number): number {
-  const gap = m === 0 ? 0 : Math.abs(u - lastInstant[n]!);
-  const change = Math.abs(slope - lastSlope[n]!);
-  lastInstant[n] = u;
-  lastSlope[n] = slope;
-  return gap > 1e-3 * timeScale ? change / gap : Math.abs(slope) / timeScale;
-}
+/** What the parts add, PART_NUMBERS each. */
+let sums = new Float64Array(16 * PART_NUMBERS);
+let kernel: PartSums | undefined;
 
 /** Adds term n at t, and its rounding: of products, of the geometry, of the instant. */
 function addTerm(
@@ -472,7 +360,7 @@ function addTerm(
   const base = n * COEFFICIENTS;
   const instant = Number.EPSILON * (Math.abs(t) + Math.abs(delay));
   const relative = ROUNDINGS + Number.EPSILON * list.geometry[n]!;
-  const [charge, current, slope] = roundingsOf(waveform);
+  const [charge, current, slope] = scalesOf(waveform);
   const { speed } = prepared.medium;
   // A rounding of a direction turns E into B: near an axis B is right relative to |E|/v only, and φ to v|A|.
   let electric = 0;
@@ -488,7 +376,7 @@ function addTerm(
       total[c]! += q * wave[0]! + w * wave[1]! + d * wave[2]!;
       const size = Math.abs(q * wave[0]!) + Math.abs(w * wave[1]!) + Math.abs(d * wave[2]!);
       const moved = q * wave[1]! + w * wave[2]! + d * wave[3]!;
-      const sampled = Math.abs(q) * charge + Math.abs(w) * current + Math.abs(d) * slope;
+      const sampled = ROUNDINGS * (Math.abs(q) * charge + Math.abs(w) * current + Math.abs(d) * slope);
       own += size * size;
       shift += moved * moved;
       sample += sampled * sampled;
@@ -499,12 +387,6 @@ function addTerm(
     if (g === 2) own = Math.max(own, carried * speed * speed);
     rounding[g]! += relative * Math.sqrt(own) + instant * Math.sqrt(shift) + Math.sqrt(sample);
   }
-}
-
-/** What q, w and w′ of a waveform are rounded to: they are right relative to their peaks, not to their tails. */
-function roundingsOf({ peak, timeScale, finalCharge }: Waveform): readonly [number, number, number] {
-  const few = 8 * Number.EPSILON;
-  return [few * Math.max(Math.abs(finalCharge), peak * timeScale), few * peak, (few * peak) / timeScale];
 }
 
 /** All that has a closed form at `point`, as delayed waveforms. */

@@ -65,3 +65,7 @@ export function delayRate(view: PieceView, s: number, slowness: number, speed: n
 export function frontRounding(view: PieceView, rate: number, t: number, speed: number): number {
   return Number.EPSILON * (8 + (2 * Math.abs(t)) / (speed * view.r * rate * rate));
 }
+
+/** What t − delay − slowness·s − R/v is rounded to, s. */
+export const instantRounding = (t: number, delay: number, along: number, travel: number): number =>
+  Number.EPSILON * (Math.abs(t) + Math.abs(delay) + Math.abs(along) + 2 * travel);

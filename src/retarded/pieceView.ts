@@ -30,6 +30,19 @@ export interface PieceView {
 export interface PlaceView extends PieceView {
   /** the largest coordinate of observer and piece: what their difference is rounded to, m */
   readonly reach: number;
+  /** of a straight piece: all R are P + (foot − s) ŝ */
+  readonly line?: Perpendicular;
+}
+
+/** From a straight line to an observer. */
+export interface Perpendicular {
+  /** arc length where it stands */
+  readonly foot: number;
+  /** P, m, and its square */
+  readonly px: number;
+  readonly py: number;
+  readonly pz: number;
+  readonly rho2: number;
 }
 
 export function viewOf(piece: LinePiece | ArcPiece, point: Vec3): PlaceView {
@@ -48,12 +61,7 @@ class LineView implements PlaceView {
   y = 0;
   z = 0;
   r = 0;
-  /** arc length of the foot of the perpendicular, and the perpendicular itself */
-  readonly #foot: number;
-  readonly #px: number;
-  readonly #py: number;
-  readonly #pz: number;
-  readonly #rho2: number;
+  readonly line: Perpendicular;
 
   constructor(piece: LinePiece, point: Vec3) {
     this.start = piece.s0;
@@ -64,33 +72,36 @@ class LineView implements PlaceView {
     const fromStart = footBeyond(point, piece.from, d);
     const near = fromStart < piece.length / 2 ? piece.from : piece.to;
     const beyond = near === piece.from ? fromStart : footBeyond(point, piece.to, d);
-    this.#foot = (near === piece.from ? this.start : this.end) + beyond;
-    this.#px = point[0] - near[0] - beyond * d[0];
-    this.#py = point[1] - near[1] - beyond * d[1];
-    this.#pz = point[2] - near[2] - beyond * d[2];
-    this.#rho2 = this.#px * this.#px + this.#py * this.#py + this.#pz * this.#pz;
-    this.nearest = Math.min(Math.max(this.#foot, this.start), this.end);
+    const foot = (near === piece.from ? this.start : this.end) + beyond;
+    const px = point[0] - near[0] - beyond * d[0];
+    const py = point[1] - near[1] - beyond * d[1];
+    const pz = point[2] - near[2] - beyond * d[2];
+    this.line = { foot, px, py, pz, rho2: px * px + py * py + pz * pz };
+    this.nearest = Math.min(Math.max(foot, this.start), this.end);
     this.reach = Math.max(...point.map(Math.abs), ...near.map(Math.abs));
   }
 
   look(s: number): void {
-    const along = this.#foot - s;
-    this.x = this.#px + along * this.sx;
-    this.y = this.#py + along * this.sy;
-    this.z = this.#pz + along * this.sz;
-    this.r = Math.sqrt(this.#rho2 + along * along);
+    const { foot, px, py, pz, rho2 } = this.line;
+    const along = foot - s;
+    this.x = px + along * this.sx;
+    this.y = py + along * this.sy;
+    this.z = pz + along * this.sz;
+    this.r = Math.sqrt(rho2 + along * along);
   }
 
   distance(from: number, to: number): number {
-    const along = this.#foot < from ? from - this.#foot : this.#foot > to ? this.#foot - to : 0;
-    return Math.sqrt(this.#rho2 + along * along);
+    const { foot, rho2 } = this.line;
+    const along = foot < from ? from - foot : foot > to ? foot - to : 0;
+    return Math.sqrt(rho2 + along * along);
   }
 
   /** bend + (s − foot)/R = 0 */
   turns(bend: number): number[] {
+    const { foot, rho2 } = this.line;
     const sine = 1 - bend * bend;
-    if (!(sine > 0)) return this.#rho2 === 0 && this.#foot > this.start && this.#foot < this.end ? [this.#foot] : [];
-    const s = this.#foot - bend * Math.sqrt(this.#rho2 / sine);
+    if (!(sine > 0)) return rho2 === 0 && foot > this.start && foot < this.end ? [foot] : [];
+    const s = foot - bend * Math.sqrt(rho2 / sine);
     return s > this.start && s < this.end ? [s] : [];
   }
 }
