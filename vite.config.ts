@@ -4,12 +4,15 @@ import { LongestFirst } from './test/longestFirst.ts';
 
 /** Where a build server wants the runner's own report. */
 const report = process.env.FIELDASSAY_TEST_REPORT;
+/** Tests that measure times. */
+const PROMPT = 'test/page/prompt.test.ts';
 const stress = process.argv.includes('stress');
 
 /**
  * One configuration for the two jobs: bundling the command line with its worker (`vite build --ssr`), and running the
- * tests. The projects are the depths of `DEVELOPERS.md`: unit, verify (ladders and published checks), and stress (the long
- * counts, on request only). It imports vite alone, so that building needs no development package.
+ * tests. The projects are the depths of `DEVELOPERS.md`: unit, command (the built command line and the queue, as users have
+ * them), page (likewise, and the package), prompt (how soon the page answers), verify (ladders and published checks), and
+ * stress (the long counts, on request only). It imports vite alone, so that building needs no development package.
  */
 export default defineConfig({
   build: {
@@ -39,18 +42,27 @@ export default defineConfig({
         test: {
           name: 'unit',
           include: ['test/**/*.test.ts'],
-          exclude: ['test/{verify,stress,page,library}/**'],
+          exclude: ['test/{cli,queue,page,library,verify,stress}/**'],
           testTimeout: 60_000,
         },
       },
+      { extends: true, test: { name: 'command', include: ['test/{cli,queue}/**/*.test.ts'], testTimeout: 60_000 } },
       {
         extends: true,
         test: {
           name: 'page',
           include: ['test/{page,library}/**/*.test.ts'],
+          exclude: [PROMPT],
           testTimeout: 120_000,
           hookTimeout: 240_000,
-          fileParallelism: false,
+        },
+      },
+      {
+        extends: true,
+        test: {
+          name: 'prompt',
+          include: [PROMPT],
+          testTimeout: 120_000,
           // After the others: what a page takes is measured while nothing else runs.
           sequence: { groupOrder: 1 },
         },

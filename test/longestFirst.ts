@@ -7,7 +7,7 @@ import type { TestSpecification } from 'vitest/node';
 const SECONDS: Readonly<Record<string, number>> = {
   'page/page': 150,
   'queue/queue': 100,
-  'run/survey': 50,
+  'cli/survey': 50,
   'verify/lattice': 48,
   'page/places': 40,
   'cli/cli': 43,
@@ -30,7 +30,7 @@ const SECONDS: Readonly<Record<string, number>> = {
   'fdtd/identity': 11,
   'verify/budget': 10,
   'verify/ladder': 10,
-  'run/shards': 10,
+  'cli/shards': 10,
   'fdtd/threads': 10,
   'retarded/history': 9,
 };

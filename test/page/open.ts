@@ -78,5 +78,28 @@ export async function judged(page: Page): Promise<void> {
   await page.waitForFunction(() => globalThis.fieldassay?.store.state.result, undefined, { timeout: 90_000 });
 }
 
+/** Waits until a plan has been made of what the page asks now. */
+export async function planned(page: Page): Promise<void> {
+  await page.waitForFunction(
+    () =>
+      document.querySelector('.place .bar .muted')?.textContent === '' &&
+      document.querySelector('.place h1')?.textContent?.includes('predicted'),
+    undefined,
+    { timeout: 60_000 },
+  );
+}
+
+/** Drops a file anywhere on the page. */
+export async function dropOn(page: Page, name: string, content: string): Promise<void> {
+  await page.evaluate(
+    ([file, text]) => {
+      const data = new DataTransfer();
+      data.items.add(new File([text!], file!, { type: 'application/json' }));
+      document.body.dispatchEvent(new DragEvent('drop', { dataTransfer: data, bubbles: true, cancelable: true }));
+    },
+    [name, content],
+  );
+}
+
 export const textOfPage = async (page: Page, selector: string): Promise<string> =>
   (await page.locator(selector).first().textContent()) ?? '';

@@ -8,3 +8,10 @@ export const SMALL = {
   duration: '3 ns',
   observers: [{ name: 'A', at: ['-30 mm', '-20 mm', '10 mm'] }],
 };
+
+/** Four cases of it. */
+export const SURVEY = {
+  title: 'Small ladder',
+  scenario: SMALL,
+  vary: { 'grid.cellSize': ['12.5 mm', '10 mm'], 'grid.boundary': [{ type: 'mur1' }, { type: 'cpml', layers: 6 }] },
+};
