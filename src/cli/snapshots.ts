@@ -14,7 +14,7 @@ import { loadScenario } from '../scenario/load.ts';
 import type { Scenario } from '../scenario/model.ts';
 import { planesShown } from '../scene/slices.ts';
 import type { Slab, SnapshotFrame, SnapshotRegion } from '../trace/snapshots.ts';
-import { partOf, unwritable, writeWhole } from './output.ts';
+import { partOf, sweepParts, unwritable, writeWhole } from './output.ts';
 
 export const SNAPSHOT_FORMATS = ['vti', 'hdf5'] as const;
 export const SNAPSHOT_REGIONS = ['planes', 'box', 'all'] as const;
@@ -131,6 +131,7 @@ function imageSink(folder: string, regions: readonly SnapshotRegion[], frame: Sn
       } catch (error) {
         throw unwritable(folder, error);
       }
+      sweepParts(folder);
       return `${files.flat().length} images and ${regions.map(({ name }) => `${name}.pvd`).join(', ')} in ${folder}`;
     },
     discard,

@@ -2,8 +2,10 @@
  * What a queue costs: one survey by four workers of one thread each, through a PostgreSQL server on the same machine, and by
  * the four threads of one process, in turns. No two of its cases share work, so that both do the same. Workers are there
  * before the clock starts. In every round they are new and have to warm up, each by itself (`cold`), as the one process has
- * to; then they get a second survey of like cases (`warm`), as workers do that stay. What the queue alone takes is the time
- * of a worker between two of its cases, from its own tables.
+ * to; then they get a second survey of like cases (`warm`), as workers do that stay. That is held against like cases in a
+ * process that is warm as well: what the pool takes for both surveys' cases in one, less the first's, and what the command
+ * takes to start and to write where all cases are known. What the queue alone takes is the time of a worker between two of its
+ * cases, from its own tables.
  *
  *   node test/bench/queue.mjs [--rounds 3]
  */
@@ -20,7 +22,7 @@ const MAIN = fileURLToPath(new URL('../../dist/main.js', import.meta.url));
 const WORKERS = 4;
 
 /** Twelve cases of some seconds each. */
-const survey = (first) => ({
+const survey = (...firsts) => ({
   scenario: {
     sources: [
       {
@@ -35,7 +37,7 @@ const survey = (first) => ({
     duration: '3.5 ns',
     observers: [{ name: 'A', at: ['60 mm', '20 mm', '10 mm'] }],
   },
-  vary: { 'grid.courant': Array.from({ length: 12 }, (_, n) => first + (3 * n) / 100) },
+  vary: { 'grid.courant': firsts.flatMap((first) => Array.from({ length: 12 }, (_, n) => first + (3 * n) / 100)) },
 });
 
 const range = (list) => [Math.min(...list), Math.max(...list)];
@@ -85,6 +87,7 @@ export async function benchQueue(rounds = 3) {
   try {
     writeFileSync(join(folder, 'first.json'), JSON.stringify(survey(0.6)));
     writeFileSync(join(folder, 'second.json'), JSON.stringify(survey(0.601)));
+    writeFileSync(join(folder, 'both.json'), JSON.stringify(survey(0.6, 0.601)));
     const runs = [];
     for (let round = 0; round < rounds; round++) {
       const database = `round_${round}`;
@@ -98,10 +101,14 @@ export async function benchQueue(rounds = 3) {
         await ended;
       }
       const [{ share }] = await server.sql(BETWEEN, database);
-      const pool = await timed(['survey', 'first.json', '--out', `pool-${round}`, '--threads', `${WORKERS}`], folder);
-      const [a, b] = ['queue', 'pool'].map((who) => timeless(join(folder, `${who}-${round}/survey-result.json`)));
+      const here = async (name) =>
+        await timed(['survey', `${name}.json`, '--out', `pool-${name}-${round}`, '--threads', `${WORKERS}`], folder);
+      const pool = await here('first');
+      const poolWarm = (await here('both')) - pool + (await here('first'));
+      const [a, b] = ['queue', 'pool-first'].map((who) => timeless(join(folder, `${who}-${round}/survey-result.json`)));
       if (a !== b) throw new Error('the results differ');
-      runs.push({ cold, warm, pool, overCold: cold / pool - 1, overWarm: warm / pool - 1, between: Number(share) });
+      const [overCold, overWarm] = [cold / pool - 1, warm / poolWarm - 1];
+      runs.push({ cold, warm, pool, poolWarm, overCold, overWarm, between: Number(share) });
     }
     const of = (key) => runs.map((run) => run[key]);
     return {
@@ -112,6 +119,7 @@ export async function benchQueue(rounds = 3) {
           coldSeconds: median(of('cold')),
           warmSeconds: median(of('warm')),
           poolSeconds: median(of('pool')),
+          poolWarmSeconds: median(of('poolWarm')),
           overCold: median(of('overCold')),
           overWarm: median(of('overWarm')),
           overWarmRange: range(of('overWarm')),

@@ -1,4 +1,4 @@
-import { spawnSync } from 'node:child_process';
+import { spawn, spawnSync } from 'node:child_process';
 import {
   chmodSync,
   existsSync,
@@ -8,6 +8,7 @@ import {
   readdirSync,
   readFileSync,
   rmSync,
+  statSync,
   symlinkSync,
   writeFileSync,
 } from 'node:fs';
@@ -30,6 +31,8 @@ beforeAll(() => {
   put('fine.json', JSON.stringify({ ...SMALL, grid: { ...SMALL.grid, cellSize: '8 mm' }, duration: '2.4 ns' }));
   put('survey.json', JSON.stringify({ scenario: 'small.json', vary: { 'grid.courant': [0.5, 0.6] } }));
   put('points.csv', 'x,y,z,t\n0.05,0.02,0.01,2e-9\n');
+  put('many.csv', `x,y,z,t\n${'0.05,0.02,0.01,2e-9\n'.repeat(10)}`);
+  put('places.csv', `x,y,z\n${'0.05,0.02,0.01\n'.repeat(12)}`);
   // The first worker to be started ends at its first task, as one does that the system kills.
   put(
     'dies.cjs',
@@ -55,12 +58,13 @@ function put(name: string, content: string): void {
   writeFileSync(join(folder, name), content);
 }
 
-const start = (program: string, args: readonly string[], env = {}) => {
+const start = (program: string, args: readonly string[], env = {}, somebody = {}) => {
   const { status, stdout, stderr } = spawnSync(program, args, {
     cwd: folder,
     encoding: 'utf8',
     env: { ...process.env, ...env },
     timeout: 50_000,
+    ...somebody,
   });
   return { status, stdout, stderr, said: stderr.trimEnd().split('\n').at(-1)! };
 };
@@ -111,6 +115,31 @@ describe('a disk that is full', () => {
     expect(contents(args.find((arg) => arg.startsWith('full-'))!)).toEqual(left);
   });
 
+  test.each([
+    ['exact', 1, ['exact', 'small.json', '--points', 'many.csv', '--out', 'full-8.csv']],
+    ['derive', 1, ['derive', 'small.json', 'pulse', '--at', 'places.csv', '--out', 'full-8.csv']],
+    ['currents', 8, ['currents', 'small.json', '--out', 'full-8.csv']],
+  ] as const)('%s: status 3, and the file that was there stays', (_, size, args) => {
+    put('full-8.csv', 'before');
+    const { status, said, stderr } = runWithin(size, ...args);
+    expect(said).toMatch(/^full-8\.csv could not be written: .* \(it takes [\d.]+ k?B\); choose another place for it$/);
+    expect(stderr).not.toMatch(/\n\s+at /);
+    expect(status).toBe(3);
+    expect(readFileSync(join(folder, 'full-8.csv'), 'utf8')).toBe('before');
+    expect(contents('.').filter((name) => name.includes('.part'))).toEqual([]);
+  });
+
+  test('results that were there stay as they were, all of them; what was found is told all the same', () => {
+    expect(run(...COMPARE, '--out', 'kept', '--charts', '--npz').status).toBe(0);
+    const before = contents('kept').map((name) => [name, statSync(join(folder, 'kept', name)).mtimeMs]);
+    // Room for result.json, and not for the traces, which come after it.
+    const { status, stdout } = runWithin(40, ...COMPARE, '--out', 'kept', '--charts', '--npz');
+    expect(status).toBe(3);
+    expect(contents('kept').map((name) => [name, statSync(join(folder, 'kept', name)).mtimeMs])).toEqual(before);
+    expect(stdout).toContain('Error budget of E');
+    expect(stdout).not.toContain('Written:');
+  });
+
   test('a survey: the case that cannot be kept, or the table; finished cases stay', () => {
     const cases = runWithin(1, 'survey', 'survey.json', '--threads', '2', '--out', 'full-6');
     expect(cases.status).toBe(3);
@@ -156,6 +185,56 @@ describe('a place that cannot be written to', () => {
       expect(said).toBe(`${out} could not be written: ${why}; choose another place for it`);
       expect(status).toBe(3);
     }
+  });
+
+  test('is told of before anything is computed', () => {
+    const place = join(folder, 'locked');
+    mkdirSync(place, { mode: 0o555 });
+    // The superuser may write anywhere: as somebody else, then.
+    const somebody = process.geteuid!() === 0 ? { uid: 65_534, gid: 65_534 } : {};
+    const judging = ['judge', 'small.json', '--traces', 'sound/traces.csv'];
+    const exact = ['exact', 'small.json', '--points', 'points.csv'];
+    const derive = ['derive', 'small.json', 'pulse', '--at', 'places.csv'];
+    for (const args of [
+      [...COMPARE, '--out', 'locked'],
+      [...COMPARE, '--frames', 'locked/deeper'],
+      [...COMPARE, '--junit', 'locked/checks.xml'],
+      [...judging, '--out', 'locked'],
+      ['plan', 'small.json', '--out', 'locked/deeper'],
+      ['survey', 'survey.json', '--out', 'locked'],
+      [...exact, '--out', 'locked/field.csv'],
+      [...derive, '--out', 'locked/pulses.csv'],
+    ]) {
+      const { status, stderr } = start(process.execPath, [MAIN, ...args], {}, somebody);
+      expect(stderr).toMatch(
+        /^[^\n]*locked\S* could not be (written|made): permission denied; choose another place for it\n$/,
+      );
+      expect(status).toBe(3);
+    }
+    expect(contents('locked')).toEqual([]);
+  });
+
+  test('a folder that goes away while its files are written', async () => {
+    const child = spawn(
+      process.execPath,
+      [MAIN, 'compare', 'fine.json', '--out', 'going', '--snapshots', 'vti', '--region', 'box', '--stride', '1'],
+      { cwd: folder },
+    );
+    const gone = new Promise<number | null>((ended) => child.once('close', ended));
+    let said = '';
+    child.stderr.setEncoding('utf8').on('data', (text) => {
+      said += text;
+    });
+    while (contents('going/fields').length === 0) {
+      expect(child.exitCode).toBe(null);
+      await new Promise((next) => setTimeout(next, 5));
+    }
+    rmSync(join(folder, 'going'), { recursive: true, force: true });
+    expect(await gone).toBe(3);
+    expect(said.trimEnd().split('\n').at(-1)).toMatch(
+      /^going\/fields\/box-\d+\.vti could not be written: there is no such file or folder; choose another place for it$/,
+    );
+    expect(contents('going')).toEqual([]);
   });
 
   test('a folder that may only be read', () => {
@@ -204,6 +283,20 @@ describe('a worker that dies, memory that cannot be had', () => {
     expect(cases.map(({ status }: { status: string }) => status).sort()).toEqual(['done', 'failed']);
     expect(cases.find(({ status }: { status: string }) => status === 'failed').reason).toMatch(DIED);
     expect(run(...args).status).toBe(0);
+  });
+
+  test('no room for the program itself: one line', () => {
+    // Less than what WebAssembly sets apart of addresses for a memory of any size.
+    const { status, stderr } = start('bash', [
+      '-c',
+      'ulimit -v 4000000; exec "$@"',
+      'bash',
+      process.execPath,
+      MAIN,
+      ...COMPARE,
+    ]);
+    expect(stderr).toMatch(/^[^\n]*[Oo]ut of memory[^\n]*\n$/);
+    expect(status).toBe(3);
   });
 
   test('memory: how much, and how to need less', () => {

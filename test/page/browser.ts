@@ -76,12 +76,12 @@ export async function packagedBrowser(): Promise<Place> {
 }
 
 /** Starts a browser; it is the caller's to close. */
-export async function launchBrowser(): Promise<Browser> {
+export async function launchBrowser(...flags: readonly string[]): Promise<Browser> {
   const system = systemBrowser();
   const { path, environment } = system ? { path: system, environment: {} } : await packagedBrowser();
   return await chromium.launch({
     executablePath: path,
-    args: FLAGS,
+    args: [...FLAGS, ...flags],
     env: { ...(process.env as Record<string, string>), ...environment },
   });
 }
