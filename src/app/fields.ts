@@ -77,7 +77,19 @@ export function addQuantity(
   const value = { shown: shownNumber(given, field) };
   const inRange = min !== undefined && max !== undefined && value.shown >= min && value.shown <= max;
   const controller = inRange ? gui.add(value, 'shown', min, max, step) : gui.add(value, 'shown').step(step ?? 0.01);
-  return controller.name(unit === '' ? name : `${name}, ${unit}`).onChange((shown: number) => {
+  return asTyped(controller.name(unit === '' ? name : `${name}, ${unit}`)).onChange((shown: number) => {
     if (Number.isFinite(shown)) change(writtenNumber(shown, field));
   });
+}
+
+/** A number that is typed counts as it stands: range and step are those of the slider and of the arrow keys alone. */
+export function asTyped(controller: Controller): Controller {
+  const input = controller.domElement.querySelector('input')!;
+  const take = (event: Event) => {
+    const typed = Number(input.value);
+    event.stopImmediatePropagation();
+    if (input.value.trim() !== '' && Number.isFinite(typed)) controller.setValue(typed);
+  };
+  input.addEventListener('input', take, { capture: true });
+  return controller;
 }

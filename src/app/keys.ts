@@ -1,4 +1,4 @@
-import { DEFINITIONS, GUIDANCE } from '../report/definitions.ts';
+import { DEFINITIONS, GUIDANCE, JUDGE_DEFINITIONS } from '../report/definitions.ts';
 import { QUANTITIES } from '../scene/quantity.ts';
 import { h } from './dom.ts';
 import type { Panes } from './panes.ts';
@@ -145,21 +145,7 @@ const shown = (key: string): string =>
 /** Listens to the keyboard, and lists all keys on `?`. */
 export function listenToKeys(parts: Parts): { readonly help: () => void } {
   const keys = table(parts);
-  const dialog = h(
-    'dialog',
-    { 'aria-label': 'Keys and how to read the page' },
-    h('h2', {}, 'Keys'),
-    h(
-      'table',
-      {},
-      ...columnsOf(keys, 3).map((row) =>
-        h(
-          'tr',
-          {},
-          ...row.flatMap(({ keys: [first], help }) => [h('td', {}, h('kbd', {}, shown(first!))), h('td', {}, help)]),
-        ),
-      ),
-    ),
+  const sections = [
     prose(GUIDANCE.text),
     h('h2', {}, 'Reading the panes'),
     h(
@@ -178,8 +164,30 @@ export function listenToKeys(parts: Parts): { readonly help: () => void } {
       'The trust map shows e(p) = √(Σ|grid − exact|²)/√(Σ|exact|²) over the instants of the film, each component at its own place and time. The red line is the tolerance; dashed lines are the closest and the farthest trusted distance, the dashed box what the walls leave.',
     ),
     prose(DEFINITIONS.text),
+    prose(JUDGE_DEFINITIONS.text),
+    h('h2', {}, 'Keys'),
+    h(
+      'table',
+      {},
+      ...columnsOf(keys, 3).map((row) =>
+        h(
+          'tr',
+          {},
+          ...row.flatMap(({ keys: [first], help }) => [h('td', {}, h('kbd', {}, shown(first!))), h('td', {}, help)]),
+        ),
+      ),
+    ),
+  ];
+  const contents = h('nav', { className: 'contents', 'aria-label': 'What is explained here' });
+  const dialog = h(
+    'dialog',
+    { 'aria-label': 'How to read the page, and its keys' },
+    contents,
+    ...sections,
     h('form', { method: 'dialog' }, h('button', {}, 'Close')),
   );
+  for (const heading of dialog.querySelectorAll('h2'))
+    contents.append(h('button', { type: 'button', onclick: () => heading.scrollIntoView() }, heading.textContent));
   document.body.append(dialog);
   const help = () => {
     if (dialog.open) dialog.close();

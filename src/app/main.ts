@@ -59,7 +59,7 @@ const PLACES: readonly Place[] = [
     key: 'judge',
     name: 'Judge',
     help: 'The traces of another solver beside the exact field, and the likeliest cause of their error',
-    start: async (host) => (await import('./judge/judge.ts')).judge(host, store),
+    start: async (host, places) => (await import('./judge/judge.ts')).judge(host, store, places),
   },
 ];
 const places = new Places(PLACES, moved, (step) => void writeAddress(step));
@@ -90,7 +90,7 @@ function buildActions(): void {
       'Open…',
     ),
     button('◐', 'Light or dark (t)', () => switchTheme(store)),
-    button('?', 'Keys, and how to read the page (?)', () => help()),
+    button('?', 'How to read the page, and its keys (?)', () => help()),
   );
 }
 

@@ -13,7 +13,7 @@ import { timeStepOf } from '../scenario/sites.ts';
 import { parseFraction } from '../scenario/units.ts';
 import { MOST_PLANES } from '../scene/slices.ts';
 import { h } from './dom.ts';
-import { addQuantity, type Path, type QuantityField, setAt, shownNumber, valueAt } from './fields.ts';
+import { addQuantity, asTyped, type Path, type QuantityField, setAt, shownNumber, valueAt } from './fields.ts';
 import { waveformPreview } from './preview.ts';
 import type { Draft, Store } from './store.ts';
 
@@ -151,6 +151,7 @@ export class Panels {
   readonly element = h('div', { className: 'panels' });
   private readonly host = h('div', {});
   private readonly preview = h('div', {});
+  private readonly cost = h('p', { className: 'note' });
   private gui: GUI | undefined;
   private structure = '';
   private readonly open = new Set<string>(['Scenario', 'Grid', 'Boundary']);
@@ -179,6 +180,7 @@ export class Panels {
     this.structure = structure;
     this.showProblems();
     this.showPreview();
+    this.showCost();
   }
 
   /** What is wrong is said at its control, with a button that brings back what stood there when all was well. */
@@ -321,8 +323,7 @@ export class Panels {
     const given = json.tolerance === undefined ? { value: 0.05 } : parseFraction(json.tolerance);
     if ('value' in given) tolerance.percent = Number((100 * given.value).toPrecision(6));
     this.explain(
-      gui
-        .add(tolerance, 'percent', 0.1, 50, 0.1)
+      asTyped(gui.add(tolerance, 'percent', 0.1, 50, 0.1))
         .name('tolerance, %')
         .onChange((percent: number) =>
           this.settle((draft) => {
@@ -536,16 +537,17 @@ export class Panels {
     };
     const scenario = this.store.state.scenario;
     this.quantity(gui, json, { ...mask, fallback: scenario ? shownNumber(scenario.grid.mask, mask) : 0 });
-    if (scenario) {
-      const { grid, medium, duration } = scenario;
-      const step = timeStepOf(grid, medium);
-      const line = h(
-        'p',
-        { className: 'note' },
-        `${grid.cells.join(' × ')} cells, ${Math.ceil(duration / step)} steps of ${formatQuantity(step, 's')}`,
-      );
-      gui.$children.append(line);
-    }
+    gui.$children.append(this.cost);
+    this.showCost();
+  }
+
+  /** What the grid comes to, below its controls. */
+  private showCost(): void {
+    const { scenario } = this.store.state;
+    if (!scenario) return;
+    const { grid, medium, duration } = scenario;
+    const step = timeStepOf(grid, medium);
+    this.cost.textContent = `${grid.cells.join(' × ')} cells, ${Math.ceil(duration / step)} steps of ${formatQuantity(step, 's')}`;
   }
 
   private boundaryFolder(gui: GUI, json: Draft): void {

@@ -93,6 +93,8 @@ export class Runner {
         state.frame = Math.round(share * (state.film.frames - 1));
         this.asked.clear();
         if (first) state.playing = !matchMedia('(prefers-reduced-motion: reduce)').matches;
+        // Where nothing moves by itself, the first picture is one with something in it.
+        if (first && !state.playing) state.frame = state.film.frames >> 1;
         store.tell('film');
         store.tell('frame');
         break;

@@ -19,9 +19,20 @@ export const DEFINITIONS = markup`<h2>What the figures are</h2>
 <dt>static rest</dt><dd>Relative error of the field that charge leaves behind after the last arrival.</dd>
 </dl>`;
 
+/** What the figures of a judgement are. */
+export const JUDGE_DEFINITIONS = markup`<h2>What the figures of a judgement are</h2>
+<dl>
+<dt>error</dt><dd>√(Σ |trace − exact|²) / √(Σ |exact|²) over instants and the components of a field that were given; the exact field at each trace’s own place and instants.</dd>
+<dt>sound grid</dt><dd>The same for a Yee grid without a fault, by the closed form of its error at the nearest cell: lattice and gridding, and walls where they are predictable.</dd>
+<dt>fitted</dt><dd>The offset and scale with which the exact field fits the trace best, and the error left then.</dd>
+<dt>explains</dt><dd>How much of what is wrong a fault would account for: 1 − ‖trace − faulty‖² / ‖trace − sound‖², sound being the exact field or that of a sound grid, whichever is nearer, and faulty the same as it would be with the fault.</dd>
+<dt>ADM, FDM, GDM</dt><dd>Amplitude, feature and global difference measures; below 0.1 excellent, 0.2 very good, 0.4 good, 0.8 fair, 1.6 poor. GRADE counts the grades from excellent on, SPREAD the neighbouring grades, that hold 85 % of the points.</dd>
+</dl>`;
+
 /** How to read what the page says, which lever to pull, and what an exact integral is silent about: the page's help. */
 export const GUIDANCE = markup`<h2>How to read the verdict</h2>
-<p>“Within 5 %: from … to …” names the distances from the source between which 95 % of the places in every distance bin are within the tolerance, for E and H. “≥ … (box edge)” claims nothing beyond the box. The four parts say which lever to pull:</p>
+<p>“Within 5 %: from … to …” names the distances from the source between which 95 % of the places in every distance bin are within the tolerance, for E and H: nearer, the grid does not resolve the source’s near field; farther, numerical dispersion adds up. “≥ … (box edge)” claims nothing beyond the box. “… off the walls” is how far to stay from them, “up to …” the frequency up to which the traces agree at the worst observer within those distances.</p>
+<p>The four parts say which lever to pull. They add up to the total as signals, not in size: a part with a negative share cancels others. “&lt; … (floor)” is smaller than what can be told.</p>
 <dl>
 <dt>boundary</dt><dd>More layers, another wall, or more clearance to it.</dd>
 <dt>lattice</dt><dd>A smaller cell.</dd>

@@ -11,6 +11,7 @@ import { type ObserverTrace, writeTraces } from '../files/traces.ts';
 import { jsonText, printable } from '../scenario/text.ts';
 import type { Component } from '../trace/trace.ts';
 import { spectrumChart, traceChart } from './charts.ts';
+import { JUDGE_DEFINITIONS } from './definitions.ts';
 import { type Markup, markup } from './markup.ts';
 import { page } from './page.ts';
 import type { ObserverSpectra } from './report.ts';
@@ -224,7 +225,7 @@ ${result.observers.map((observer) => {
 ${featuresSection(result)}
 ${placesSection(result)}
 ${result.notes.map((note) => markup`<p>Note: ${note}</p>`)}
-${DEFINITIONS}
+${JUDGE_DEFINITIONS}
 <h2>To repeat it</h2>
 <p>Save the scenario below and run</p>
 <pre>${command}</pre>
@@ -297,15 +298,6 @@ function placesSection({ observers }: Judgement): Markup {
         .join('; ')}</td></tr>`,
   )}</tbody></table></div>`;
 }
-
-const DEFINITIONS = markup`<h2>What the figures are</h2>
-<dl>
-<dt>error</dt><dd>√(Σ |trace − exact|²) / √(Σ |exact|²) over instants and the components of a field that were given; the exact field at each trace’s own place and instants.</dd>
-<dt>sound grid</dt><dd>The same for a Yee grid without a fault, by the closed form of its error at the nearest cell: lattice and gridding, and walls where they are predictable.</dd>
-<dt>fitted</dt><dd>The offset and scale with which the exact field fits the trace best, and the error left then.</dd>
-<dt>explains</dt><dd>How much of what is wrong a fault would account for: 1 − ‖trace − faulty‖² / ‖trace − sound‖², sound being the exact field or that of a sound grid, whichever is nearer, and faulty the same as it would be with the fault.</dd>
-<dt>ADM, FDM, GDM</dt><dd>Amplitude, feature and global difference measures; below 0.1 excellent, 0.2 very good, 0.4 good, 0.8 fair, 1.6 poor. GRADE counts the grades from excellent on, SPREAD the neighbouring grades, that hold 85 % of the points.</dd>
-</dl>`;
 
 /** The table of figures as cells, its head first. */
 export const judgeFigures = (result: Judgement): string[][] => [

@@ -66,6 +66,45 @@ test('a file dropped anywhere stands beside the exact field, with the figures an
   expect(requests.every((url) => url.startsWith(served.url) || url.startsWith('blob:'))).toBe(true);
 });
 
+test('a link reproduces what its sender saw once the file is dropped: how it is read stands in the address', async () => {
+  const { page, troubles } = await openPage(browser, `${served.url}${await linkOf(textOf(SMALL))}&at=judge`);
+  const place = page.locator('main[aria-label="Judge"]');
+  const fields = {
+    'Cell size': ['cell', '9 mm'],
+    'Unit of times': ['unit', 'ns'],
+    Observer: ['observer', 'A'],
+    Columns: ['columns', 'time=T & t; A.Ez=Probe 1'],
+  } as const;
+  for (const [name, [, value]] of Object.entries(fields)) {
+    await place.getByLabel(name, { exact: true }).fill(value);
+    await page.keyboard.press('Tab');
+  }
+  await place.getByLabel('Components at their own places').check();
+  await page.waitForFunction(() => location.hash.includes('positions=staggered'));
+  const link = page.url();
+  const held = new URLSearchParams(new URL(link).hash.slice(1));
+  for (const [key, value] of Object.values(fields)) expect(held.get(key)).toBe(value);
+
+  writeFileSync(
+    join(folder, 'headers.csv'),
+    readFileSync(join(folder, 'half.csv'), 'utf8').replace('t [ns],Ez,Ex', 'T & t,Probe 1,unused'),
+  );
+  const sentences = [];
+  for (const each of [page, (await openPage(browser, link)).page]) {
+    const there = each.locator('main[aria-label="Judge"]');
+    await there.locator('input[type=file]').setInputFiles(join(folder, 'headers.csv'));
+    await there.locator('h1').waitFor({ timeout: 60_000 });
+    sentences.push(await there.locator('h1').textContent());
+  }
+  console.log(sentences[0]);
+  expect(sentences[0]).toContain('a sound Yee grid at 9 mm');
+  expect(sentences[1]).toBe(sentences[0]);
+  // An address without them is another question.
+  await page.goto(`${served.url}${await linkOf(textOf(SMALL))}&at=judge`);
+  await expect.poll(() => place.getByLabel('Columns').inputValue()).toBe('');
+  expect(troubles).toEqual([]);
+});
+
 test('what cannot be read is refused with row and column, and the page goes on', async () => {
   writeFileSync(join(folder, 'bad.csv'), 't,Ez<img src=x onerror=alert(1)>\n0,1\n1,two\n');
   const { page, troubles } = await openPage(browser, `${served.url}${await linkOf(textOf(SMALL))}`);

@@ -7,7 +7,7 @@ import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
 import { asked, halves } from '../halves.ts';
 import { notify } from '../notice.ts';
-import type { Started } from '../places.ts';
+import type { Places, Started } from '../places.ts';
 import { beside } from '../runner.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
@@ -19,9 +19,11 @@ import type { JudgeReport, JudgeRequest } from './messages.ts';
 const MOST_BYTES = 64 * 1024 * 1024;
 
 /** The place of other solvers' traces: a file is dropped, and stands beside the exact field. */
-export function judge(host: HTMLElement, store: Store): Started {
-  const place = new JudgePlace(host, store);
+export function judge(host: HTMLElement, store: Store, places: Places): Started {
+  const place = new JudgePlace(host, store, () => places.changed());
   return {
+    fields: () => place.fields(),
+    open: (fields) => place.open(fields),
     shown: () => place.shown(),
     take(name, _json, file) {
       if (name.toLowerCase().endsWith('.json')) return false;
@@ -43,14 +45,17 @@ class JudgePlace {
   private judged: Judged | null = null;
   private due = false;
 
-  private readonly cell = field('Cell size', '4 mm', 'Of the solver that is judged. Empty: the scenario’s.');
-  private readonly unit = field('Unit of times', 'ns', 'Where the header of the column tells none. Empty: seconds.');
-  private readonly observer = field('Observer', 'A', 'Whose traces these are, where the file does not say.');
-  private readonly columns = field(
-    'Columns',
-    'time=T; A.Ez=Probe 1',
-    'What is read from which column, where headers do not tell: what=header, semicolons between.',
-  );
+  /** What is typed of how the file is read, by what the address calls it. */
+  private readonly texts = {
+    cell: field('Cell size', '4 mm', 'Of the solver that is judged. Empty: the scenario’s.'),
+    unit: field('Unit of times', 'ns', 'Where the header of the column tells none. Empty: seconds.'),
+    observer: field('Observer', 'A', 'Whose traces these are, where the file does not say.'),
+    columns: field(
+      'Columns',
+      'time=T; A.Ez=Probe 1',
+      'What is read from which column, where headers do not tell: what=header, semicolons between.',
+    ),
+  };
   private readonly staggered = h('input', { type: 'checkbox' });
   private readonly stage = h('span', { className: 'muted', role: 'status' });
   private readonly bar = h('progress', { max: 1, hidden: true, 'aria-label': 'Progress of the judgement' });
@@ -61,6 +66,7 @@ class JudgePlace {
   constructor(
     host: HTMLElement,
     private readonly store: Store,
+    changed: () => void,
   ) {
     const input = h('input', { type: 'file', hidden: true, 'aria-label': 'A file of traces', tabIndex: -1 });
     input.addEventListener('change', () => {
@@ -85,11 +91,21 @@ class JudgePlace {
     ];
     const element = h(
       'div',
-      { onchange: () => this.run() },
-      ...[this.cell, this.unit, this.observer, this.columns].map(({ element }) => element),
+      {
+        onchange: () => {
+          changed();
+          this.run();
+        },
+      },
+      ...Object.values(this.texts).map(({ element }) => element),
       asked(
         h('label', {}, this.staggered, ' Components at their own places'),
         'In the Yee cell of the observer’s nearest node, not at the observer itself.',
+      ),
+      h(
+        'p',
+        { className: 'muted' },
+        'The address bar holds these and the scenario with its tolerance, not the file: who opens the link drops the file and sees the same.',
       ),
     );
     const bar = h(
@@ -112,7 +128,8 @@ class JudgePlace {
         'p',
         { className: 'nothing' },
         'Drop the traces of any solver here: CSV with named columns, such as “t [ns], A.Ez (kV/m)”, NumPy’s .npy and .npz, or our own ' +
-          'traces.csv. They are held against the exact field of the scenario at their own places and instants.',
+          'traces.csv, which “Save” in Compare gives for a first try. They are held against the exact field of the scenario at their own ' +
+          'places and instants.',
       ),
     );
     // Another scenario is another question; it is put where it can be seen.
@@ -124,6 +141,18 @@ class JudgePlace {
 
   shown(): void {
     if (this.due) this.run();
+  }
+
+  /** How the file is read, for the address; nothing of what is in it. */
+  fields(): ReadonlyMap<string, string> {
+    const typed = Object.entries(this.texts).flatMap(([key, { value }]) => (value ? [[key, value] as const] : []));
+    return new Map([...typed, ...(this.staggered.checked ? [['positions', 'staggered'] as const] : [])]);
+  }
+
+  open(fields: ReadonlyMap<string, string>): void {
+    for (const [key, text] of Object.entries(this.texts)) text.value = fields.get(key) ?? '';
+    this.staggered.checked = fields.get('positions') === 'staggered';
+    this.run();
   }
 
   async take(file: File): Promise<void> {
@@ -138,13 +167,14 @@ class JudgePlace {
 
   /** What the options say of the file. */
   private map(): TraceMap {
-    const columns = this.columns.value
+    const { unit, observer, columns: given } = this.texts;
+    const columns = given.value
       .split(';')
       .map((part) => part.split('=').map((word) => word.trim()))
       .filter(([what, header]) => what && header);
     return {
-      ...(this.unit.value ? { units: { time: this.unit.value } } : {}),
-      ...(this.observer.value ? { observer: this.observer.value } : {}),
+      ...(unit.value ? { units: { time: unit.value } } : {}),
+      ...(observer.value ? { observer: observer.value } : {}),
       ...(columns.length > 0 ? { columns: Object.fromEntries(columns) } : {}),
       ...(this.staggered.checked ? { positions: 'staggered' as const } : {}),
     };
@@ -162,7 +192,7 @@ class JudgePlace {
       scenario: store.state.json,
       ...given,
       map: this.map(),
-      cellSize: this.cell.value || undefined,
+      cellSize: this.texts.cell.value || undefined,
     } satisfies JudgeRequest);
     this.bar.hidden = false;
     this.again.disabled = true;
@@ -232,6 +262,9 @@ function field(name: string, placeholder: string, help: string) {
     element: asked(name, help, input),
     get value() {
       return input.value.trim();
+    },
+    set value(text: string) {
+      input.value = text;
     },
   };
 }

@@ -112,7 +112,7 @@ export class Results {
     if (status === 'running' || status === 'following') return 'Nothing known yet: the first cases are at work.';
     if (status === 'cancelled') return 'Cancelled before any case was done.';
     if (problems.length > 0) return problems[0]!.message;
-    return `Nothing run yet: ${of} ${of === 1 ? 'case' : 'cases'} of the scenario in Compare, as chosen on the left.`;
+    return `Nothing run yet: ${of} ${of === 1 ? 'case' : 'cases'} of the scenario in Compare, as chosen on the left. A ladder tells how fast the error falls with the cells, walls what each sends back and costs.`;
   }
 
   /** Draws one chart a screen refresh, so that none of them holds the page up. */

@@ -29,9 +29,10 @@ export function sentencesOf(findings: Findings): { sentence: string; details: st
     : sound.cellSize.map((d) => formatQuantity(d, 'm')).join(' × ');
   const { relativeL2: expected, ratio, reason } = worst.judged.sound;
   const where = `${worst.field} at observer ${worst.name}`;
+  const times = ratio === null ? '' : formatNumber(ratio, 2);
   const sentence =
     expected !== null && ratio !== null
-      ? `${formatPercent(worst.error)} (${where}) where a sound Yee grid at ${cell} makes ${formatPercent(expected)}: ${formatNumber(ratio, 2)} times.`
+      ? `${formatPercent(worst.error)} (${where}) where a sound Yee grid at ${cell} makes ${formatPercent(expected)}: ${times === '1' ? 'as much' : `${times} times`}.`
       : `${formatPercent(worst.error)} (${where}). The error of a sound Yee grid at ${cell} ${reason ?? 'is not known'}.`;
   const { fitted } = worst.judged;
   return {
