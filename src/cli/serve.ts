@@ -90,7 +90,9 @@ export async function servePage(folder: string | null, port: number): Promise<{ 
       response.end(`${text}\n`);
     };
     const hosts = [`127.0.0.1:${own}`, `localhost:${own}`, `[::1]:${own}`];
-    if (!hosts.includes(request.headers.host ?? '')) return refuse(421, 'This address serves the loopback host only.');
+    const named = request.headersDistinct.host ?? [];
+    if (named.length !== 1 || !hosts.includes(named[0]!))
+      return refuse(421, 'This address serves the loopback host only.');
     const { origin } = request.headers;
     if (origin !== undefined && !hosts.some((host) => origin === `http://${host}`))
       return refuse(403, 'Pages of another origin get nothing here.');
