@@ -22,7 +22,7 @@ import { surveyJsonSchema } from '../scenario/survey.ts';
 import { jsonText, printable, textOf } from '../scenario/text.ts';
 import { currentsCommand } from './currents.ts';
 import { addDeriveCommand } from './derive.ts';
-import { type ExactOptions, exactCommand, ROUTES, routesText } from './exact.ts';
+import { disagreementText, type ExactOptions, exactCommand, ROUTES } from './exact.ts';
 import { frameFiles } from './frames.ts';
 import { type GateFlags, gateOf, withGate } from './gate.ts';
 import { InputError, readScenario } from './input.ts';
@@ -210,7 +210,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       refuseUnwritable([], [options.out]);
       const { csv, routes } = await exactCommand(readScenario(name), options.points, options, signal);
       writeWhole(options.out, csv);
-      if (routes) process.stderr.write(routesText(routes));
+      if (routes) process.stderr.write(disagreementText(routes));
     });
 
   addDeriveCommand(program, signal);

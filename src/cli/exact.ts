@@ -2,17 +2,11 @@ import Papa from 'papaparse';
 import { formatQuantity } from '../elementary/quantity.ts';
 import { fieldOf } from '../retarded/field.ts';
 import { prepareSources } from '../retarded/prepare.ts';
-import {
-  fieldBySpectrum,
-  type Peaks,
-  type SpectralValue,
-  type SteadyValue,
-  steadyField,
-} from '../retarded/spectral.ts';
+import { fieldBySpectrum, type SpectralValue, type SteadyValue, steadyField } from '../retarded/spectral.ts';
 import { Refusal } from '../run/compare.ts';
 import { type Residuals, residualsOf } from '../run/residuals.ts';
-import { type Disagreement, disagreement } from '../run/routes.ts';
-import { firstArrival } from '../scenario/distance.ts';
+import { type Disagreement, disagreement, type PeaksAt } from '../run/routes.ts';
+import { distanceToSources, firstArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
 import type { Medium, Source, Vec3 } from '../scenario/model.ts';
 import { readRows } from './rows.ts';
@@ -92,7 +86,7 @@ async function spectralValues(
   medium: Medium,
   rows: readonly Row[],
   walk: Walk,
-): Promise<{ values: SpectralValue[]; peaks: Peaks[] }> {
+): Promise<{ values: SpectralValue[]; peaks: PeaksAt[] }> {
   const groups = new Map<string, number[]>();
   rows.forEach(([x, y, z], n) => {
     const key = `${x} ${y} ${z}`;
@@ -102,13 +96,13 @@ async function spectralValues(
   const stretches = [...groups.values()].map((members, g) => Math.max(...members.map((n) => rows[n]![3])) - first[g]!);
   const at = fieldBySpectrum(sources, medium, Math.max(0, ...stretches));
   const values = new Array<SpectralValue>(rows.length);
-  const peaks = new Array<Peaks>(rows.length);
+  const peaks = new Array<PeaksAt>(rows.length);
   await walk.map('the field by spectra', [...groups.values()], (members) => {
     const found = at(
       pointOf(rows[members[0]!]!),
       members.map((n) => rows[n]![3]),
     );
-    const here = found.peaks();
+    const here = { ...found.peaks(), distance: distanceToSources(sources, pointOf(rows[members[0]!]!)) };
     members.forEach((n, m) => {
       values[n] = found.values[m]!;
       peaks[n] = here;
@@ -140,7 +134,7 @@ function csvOf(
 }
 
 /** What `exact --route spectral` says of the two routes. */
-export function routesText({ disagreement: list, residuals }: RoutesCompared): string {
+export function disagreementText({ disagreement: list, residuals }: RoutesCompared): string {
   const unit = { E: 'V/m', H: 'A/m', phi: 'V', A: 'V·s/m' } as const;
   const name = { E: 'E', H: 'H', phi: 'φ', A: 'A' } as const;
   const rows = list.map(

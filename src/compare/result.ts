@@ -220,6 +220,18 @@ const checkSchema = z.object({
 const residual = (equation: string) =>
   z.number().nullable().describe(`largest |${equation}| over its largest term, by differences that leave 1e-8`);
 
+const routesSchema = z.object({
+  status: z.enum(['agree', 'differ', 'not compared']),
+  reason: z.string().nullable().describe('why they were not compared; else null'),
+  places: z.int().describe('drawn by lot, of observers or samples of the volume'),
+  instants: z.int().describe('at each of them'),
+  largest: fraction('the largest difference over the peak at the same place').nullable(),
+  quantity: z.enum(['E', 'H', 'phi', 'A']).nullable().describe('in which that is'),
+  observer: z.string().nullable().describe('where that is, if at an observer'),
+  limit: fraction('what it may be: 1e-8 and what both routes tell of their own errors').nullable(),
+});
+export type Routes = z.infer<typeof routesSchema>;
+
 export const resultSchema = z.object({
   title: z.string(),
   version: z.string().describe('of Fieldassay'),
@@ -235,6 +247,9 @@ export const resultSchema = z.object({
     waveResidual: residual('∇²φ − με ∂²φ/∂t², and the same of A'),
     potentialResidual: residual('E + ∇φ + ∂A/∂t, and B − ∇×A'),
     continuityResidual: fraction('Σ I + dQ/dt at the nodes of the grid, over the largest current'),
+    routes: routesSchema
+      .optional()
+      .describe('retarded integrals against spectra and back (`exact --route spectral`); of `compare` alone'),
   }),
   grid: z.object({
     cells: z.int().describe('cells of the working box'),

@@ -9,7 +9,7 @@ import { page } from './page.ts';
 import { PULSE_HEAD, pulseRows, quantitySentences } from './quantities.ts';
 import type { Report } from './report.ts';
 import { chartSvg } from './svg.ts';
-import { bandText, gridText, percentOr, quantityOr, signedPercentOr, timingRows } from './words.ts';
+import { bandText, gridText, percentOr, quantityOr, routesText, signedPercentOr, timingRows } from './words.ts';
 
 /** `report.html`. */
 export function reportHtml({ result, traces, spectra, command }: Report): string {
@@ -135,6 +135,7 @@ function runSection(result: Result): Markup {
   const { integral, environment, notes } = result;
   return markup`<h2>The run</h2>
 <p>${gridText(result)}. The integral’s own error is ≤ ${formatUpperBound(integral.errorEstimate)}.${residualText(integral)}</p>
+${integral.routes ? markup`<p>Two routes to the exact field: ${routesText(integral.routes)}.</p>` : null}
 <div class="scroll"><table><tbody>${timingRows(result).map(
     ([what, time, rate]) =>
       markup`<tr><th scope="row">${what}</th><td class="number">${time}</td><td class="number muted">${rate}</td></tr>`,

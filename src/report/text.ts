@@ -10,6 +10,7 @@ import {
   gridText,
   percentOr,
   quantityOr,
+  routesText,
   sectionsText,
   signedPercentOr,
   timingRows,
@@ -43,6 +44,7 @@ export function resultText(result: Result, { colour = false, written = [] }: Tex
     colour && ANSI[name] ? `\u001b[38;5;${ANSI[name]}m${text}\u001b[0m` : text;
   const strong = (text: string): string => (colour ? `\u001b[1m${text}\u001b[0m` : text);
   const { verdict, tolerance, checks } = result;
+  const { routes } = result.integral;
   const outside = `Outside the tolerance of ${formatPercent(tolerance, 3)}.`;
   const sections = [
     [
@@ -61,6 +63,9 @@ export function resultText(result: Result, { colour = false, written = [] }: Tex
       ...columns(timingRows(result).map((row) => [...row])).map(
         (line, i) => `${i === 0 ? 'Time' : '    '}      ${line}`,
       ),
+      ...(routes
+        ? [paint(`Routes      ${printable(routesText(routes))}`, routes.status === 'differ' ? 'outside' : 'ink')]
+        : []),
     ],
     result.notes.map((note) => `Note: ${printable(note)}`),
     written.length === 0 ? [] : [`Written: ${written.map(printable).join(', ')}`],

@@ -1,5 +1,5 @@
-import type { ObserverFieldResult, Result } from '../compare/result.ts';
-import { formatPercent, formatQuantity } from '../elementary/quantity.ts';
+import type { ObserverFieldResult, Result, Routes } from '../compare/result.ts';
+import { formatPercent, formatQuantity, formatScientific, formatUpperBound } from '../elementary/quantity.ts';
 
 /** Phrases that the terminal and the HTML report share. */
 
@@ -46,6 +46,17 @@ export function gridText({ grid }: Result): string {
     `${grid.shape.join(' × ')} cells (${countText(grid.cells)}), ${countText(grid.steps)} steps of ` +
     `${formatQuantity(grid.timeStep, 's')}, ${formatQuantity(grid.memoryBytes, 'B')}`
   );
+}
+
+const SYMBOLS = { E: 'E', H: 'H', phi: 'φ', A: 'A' } as const;
+
+/** What the integral's two routes, one in time and one by frequency, say of each other. */
+export function routesText({ status, reason, largest, quantity, observer, places, instants, limit }: Routes): string {
+  if (largest === null || limit === null) return `the retarded integral is not compared with its spectra: ${reason}`;
+  const where = `${quantity ? SYMBOLS[quantity] : ''}${observer === null ? '' : ` at observer ${observer}`}`;
+  const tried = `${places} ${places === 1 ? 'place' : 'places'}, ${instants} instants each`;
+  const within = status === 'agree' ? 'agree' : 'DIFFER';
+  return `the retarded integral and its spectra ${within}: ≤ ${formatUpperBound(largest)} of the peak apart (${where}; ${tried}; limit ${formatScientific(limit, 2)})`;
 }
 
 /** Sections of a text for the terminal, those without lines left out, an empty line between. */

@@ -124,6 +124,25 @@ export function fieldBySpectrum(
   };
 }
 
+/**
+ * What `fieldBySpectrum` would take, before it is asked.
+ * @param window as there
+ * @returns whether a waveform's spectrum has no end, so that it is cut off; and how many terms the lines at a point have
+ */
+export function spectralWork(
+  sources: readonly Source[],
+  medium: Medium,
+  window: number,
+): { readonly endless: boolean; terms(point: Vec3): number } {
+  const waveforms = new WaveformSet();
+  const owners = sources.map((source) => waveforms.index(source.waveform));
+  const { step, lines } = contourOf(waveforms.list, window);
+  return {
+    endless: waveforms.list.some((waveform) => !isSmooth(waveform)),
+    terms: (point) => lines * nodesAt(sources, owners, medium, point, 0, step * lines, POINTS).kind.length,
+  };
+}
+
 function peaksOf(inverse: Inverse, window: number): Peaks {
   const over = Array.from({ length: PEAK_INSTANTS }, (_, n) => (window * (n + 1)) / PEAK_INSTANTS);
   const peaks = { E: 0, H: 0, phi: 0, A: 0 };

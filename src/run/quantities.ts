@@ -1,4 +1,5 @@
 import { type Quantities, tracePulse } from '../compare/quantities.ts';
+import type { Routes } from '../compare/result.ts';
 import { farInstants, radiatedEnergy } from '../derived/radiation.ts';
 import { centreOf, largestPartAt, regionsAlong } from '../derived/regions.ts';
 import { longestPart } from '../retarded/panels.ts';
@@ -7,7 +8,9 @@ import type { Asked, Means } from './answers.ts';
 import type { Comparison } from './conclude.ts';
 import { vanishes } from './levels.ts';
 import { patternOf } from './pattern.ts';
-import type { Places } from './places.ts';
+import { type Places, SEED } from './places.ts';
+import type { Question } from './question.ts';
+import { compareRoutes } from './routes.ts';
 
 /** Relative error asked of the radiated energy: three digits are what a report shows. */
 const ENERGY_ACCURACY = 1e-3;
@@ -22,7 +25,10 @@ const PART_INSTANTS = 25 * 60;
 /** Observers that are told which part is the largest there. */
 const MOST_OBSERVERS = 8;
 
-/** A comparison with what engineers ask for beside errors; with the far field's error by direction where asked for. */
+/**
+ * A comparison with what engineers ask for beside errors, and what two routes to the exact field say of each other; with the
+ * far field's error by direction where asked for.
+ */
 export async function withQuantities(
   { question, json, places }: Asked,
   { team, gridThreads, onProgress }: Means,
@@ -30,7 +36,8 @@ export async function withQuantities(
   pattern: boolean,
 ): Promise<Comparison> {
   const quantities = quantitiesOf(question.scenario, places, comparison.signals);
-  const result = { ...comparison.result, quantities };
+  const { integral } = comparison.result;
+  const result = { ...comparison.result, integral: { ...integral, routes: routesOf(question, places) }, quantities };
   if (!pattern) return { ...comparison, result };
   try {
     const found = await patternOf(team, question, json, gridThreads, onProgress);
@@ -39,6 +46,20 @@ export async function withQuantities(
     if (!(error instanceof RangeError)) throw error;
     return { ...comparison, result: { ...result, quantities: { ...quantities, patternRefused: error.message } } };
   }
+}
+
+/** Both routes at the middles of the cells where the budget is taken. */
+function routesOf({ scenario, steps, timeStep }: Question, { inside, budgetCells }: Places): Routes {
+  const { sources, medium, grid } = scenario;
+  const middle = (p: number): Vec3 => {
+    const at = (a: 0 | 1 | 2) => grid.box.from[a] + (budgetCells[3 * p + a]! + 0.5) * grid.cellSize[a];
+    return [at(0), at(1), at(2)];
+  };
+  const all = Array.from({ length: budgetCells.length / 3 }, (_, p) => ({
+    observer: inside[p]?.name ?? null,
+    at: middle(p),
+  }));
+  return compareRoutes(sources, medium, all, steps * timeStep, SEED);
 }
 
 /**

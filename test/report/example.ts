@@ -221,6 +221,16 @@ export function exampleReport({
       waveResidual: 3e-8,
       potentialResidual: 5e-9,
       continuityResidual: 2e-16,
+      routes: {
+        status: 'agree',
+        reason: null,
+        places: 3,
+        instants: 4,
+        largest: 3e-12,
+        quantity: 'E',
+        observer,
+        limit: 1.1e-8,
+      },
     },
     grid: { cells: 216_000, shape: [60, 60, 60], steps: 315, timeStep: TIME_STEP, memoryBytes: 2.31e7 },
     timings: {

@@ -130,7 +130,7 @@ describe('three routes to one field', () => {
           const { values, peaks } = spectral(point, times);
           const closed = times.map((t) => best(point, t));
           const integrals = CLOSED.includes(name) ? times.map((t) => quadrature(point, t)) : closed;
-          const here = peaks();
+          const here = { ...peaks(), distance: 0 };
           const all = times.map(() => here);
           const apart = (a: readonly (FieldValue | SpectralValue)[], b: readonly (FieldValue | SpectralValue)[]) =>
             Math.max(...disagreement(a, b, all, medium).map(({ largest }) => largest));
