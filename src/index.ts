@@ -54,7 +54,8 @@ export {
 export { type PlanOptions, planScenario as plan } from './run/plan.ts';
 export type { Progress } from './run/progress.ts';
 export { EXAMPLES } from './scenario/examples.ts';
-export { loadScenario, type Problem } from './scenario/load.ts';
+export { loadScenario } from './scenario/load.ts';
 export type { Medium, Scenario, Source, Vec3 } from './scenario/model.ts';
+export type { Problem } from './scenario/reading.ts';
 export { scenarioJsonSchema } from './scenario/schema.ts';
 export { COMPONENTS, type Component, type Trace } from './trace/trace.ts';

@@ -1,5 +1,5 @@
 import { parse } from '@humanwhocodes/momoa';
-import type { Problem } from '../scenario/load.ts';
+import type { Problem } from '../scenario/reading.ts';
 import { h } from './dom.ts';
 import type { Store } from './store.ts';
 

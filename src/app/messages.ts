@@ -3,8 +3,8 @@ import type { ObserverTrace } from '../files/traces.ts';
 import type { ObserverSpectra } from '../report/report.ts';
 import type { GridFrames } from '../run/planes.ts';
 import type { Progress } from '../run/progress.ts';
-import type { Problem } from '../scenario/load.ts';
 import type { Plane } from '../scenario/model.ts';
+import type { Problem } from '../scenario/reading.ts';
 import type { ExactCells, FilmOf, PotentialFrame, TrustMap } from '../scene/film.ts';
 
 /** What the page asks of the worker that coordinates one run. Stopping it is ending the worker. */

@@ -1,6 +1,6 @@
 import GUI, { type Controller } from 'lil-gui';
 import { formatQuantity } from '../elementary/quantity.ts';
-import type { Problem } from '../scenario/load.ts';
+import type { Problem } from '../scenario/reading.ts';
 import {
   BOUNDARIES,
   CPML_DEFAULTS,

@@ -1,6 +1,6 @@
 import { hostName } from '#platform';
-import type { Problem } from '../scenario/load.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
+import type { Problem } from '../scenario/reading.ts';
 import { observerCell } from '../scenario/sites.ts';
 import { COMPONENTS, type Component, FEWEST_SAMPLES, samplePoints, type Trace } from '../trace/trace.ts';
 import { withTeam } from './compare.ts';

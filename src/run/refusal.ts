@@ -1,4 +1,4 @@
-import { describeProblem, type Problem } from '../scenario/load.ts';
+import { describeProblem, type Problem } from '../scenario/reading.ts';
 
 /** The scenario was refused: nothing was computed. Its message has a line a problem. */
 export class Refusal extends Error {

@@ -12,7 +12,7 @@ import {
   outcomeSchema,
   type SurveyResult,
 } from '../compare/surveyResult.ts';
-import type { Problem } from '../scenario/load.ts';
+import type { Problem } from '../scenario/reading.ts';
 import type { Survey } from '../scenario/survey.ts';
 import { Refusal } from './refusal.ts';
 import { type CaseStore, type Entry, isWallKey, keptOutcome, type SurveyCases, wholeSurvey } from './surveyCases.ts';

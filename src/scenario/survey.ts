@@ -3,8 +3,9 @@
  */
 import { z } from 'zod';
 import { type Bounds, sourceBounds } from './distance.ts';
-import { type Path, type Problem, readObject, readSources, reporter, reportIssue } from './load.ts';
+import { readSources } from './load/sources.ts';
 import type { Vec3 } from './model.ts';
+import { type Path, type Problem, readObject, reporter, reportIssue } from './reading.ts';
 import { choice, expected, gridSchema, LIMITS, record, scenarioSchema, text, unknownKey } from './schema.ts';
 import { CELL_SLACK } from './sites.ts';
 import { parseQuantity, show } from './units.ts';

@@ -1,7 +1,9 @@
 import { describe, expect, test } from 'vitest';
 import { EXAMPLES } from '../../src/scenario/examples.ts';
-import { describeProblem, loadScenario, MAX_CELLS, MAX_STEPS, type Problem } from '../../src/scenario/load.ts';
+import { MAX_CELLS, MAX_STEPS } from '../../src/scenario/load/grid.ts';
+import { loadScenario } from '../../src/scenario/load.ts';
 import type { Scenario } from '../../src/scenario/model.ts';
+import { describeProblem, type Problem } from '../../src/scenario/reading.ts';
 import { scenarioJsonSchema } from '../../src/scenario/schema.ts';
 import { SIGNIFICANT, shortestWavelength } from '../../src/scenario/shortest.ts';
 import { observerCell, stepsOf, timeStepOf } from '../../src/scenario/sites.ts';

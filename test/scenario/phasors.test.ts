@@ -1,8 +1,9 @@
 import { describe, expect, test } from 'vitest';
 import { cos, exp, sin } from '../../src/elementary/elementary.ts';
 import { EXAMPLES } from '../../src/scenario/examples.ts';
-import { describeProblem, loadScenario } from '../../src/scenario/load.ts';
+import { loadScenario } from '../../src/scenario/load.ts';
 import { combOf, phasorAt } from '../../src/scenario/phasors.ts';
+import { describeProblem } from '../../src/scenario/reading.ts';
 import { makeWaveform } from '../../src/scenario/waveforms.ts';
 
 /**

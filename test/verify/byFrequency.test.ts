@@ -5,8 +5,9 @@ import { fieldOf } from '../../src/retarded/field.ts';
 import { prepareSources } from '../../src/retarded/prepare.ts';
 import { fieldBySpectrum, type SteadyValue, steadyField } from '../../src/retarded/spectral.ts';
 import { compareSolvers } from '../../src/run/compare.ts';
-import { describeProblem, loadScenario } from '../../src/scenario/load.ts';
+import { loadScenario } from '../../src/scenario/load.ts';
 import type { Scenario, Vec3 } from '../../src/scenario/model.ts';
+import { describeProblem } from '../../src/scenario/reading.ts';
 import { difference, size } from '../retarded/sources.ts';
 
 /** Wires whose current is given by frequency, against the same wires given otherwise and against handbook values. */

@@ -1,5 +1,5 @@
 import type { SurveyResult } from '../../compare/surveyResult.ts';
-import type { Problem } from '../../scenario/load.ts';
+import type { Problem } from '../../scenario/reading.ts';
 
 /** Texts of finished cases by their hash: what a survey that goes on need not run again. */
 export type Kept = readonly (readonly [hash: string, text: string])[];

@@ -1,5 +1,5 @@
 import { type SurveyResult, surveyResultSchema } from '../../compare/surveyResult.ts';
-import type { Problem } from '../../scenario/load.ts';
+import type { Problem } from '../../scenario/reading.ts';
 import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
 import { textOf } from '../../scenario/text.ts';
