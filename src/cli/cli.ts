@@ -1,6 +1,6 @@
 import { existsSync } from 'node:fs';
 import { join } from 'node:path';
-import { Command, CommanderError, InvalidArgumentError, Option } from 'commander';
+import { type Argument, Command, CommanderError, InvalidArgumentError, Option } from 'commander';
 import { threadsAvailable } from '#platform';
 import { judgeJsonSchema } from '../compare/judgeResult.ts';
 import { type Result, withinTolerance } from '../compare/result.ts';
@@ -113,12 +113,31 @@ function portNumber(text: string): number {
   return n;
 }
 
+const HELP = `
+Exit status: 0 done, and within the tolerance where one applies; 1 done and outside it; 2 the input was refused, and nothing
+is written; 3 something failed; 130 ended by Ctrl-C.
+
+Example: fieldassay examples centre-fed-wire > mine.json && fieldassay compare mine.json --out out
+`;
+
+const argumentTerm = (argument: Argument): string =>
+  argument.required ? `<${argument.name()}>` : `[${argument.name()}]`;
+
+/** An option for the port that a page is served at. */
+const portOption = (words: string): Option =>
+  new Option('--port <n>', words).argParser(portNumber).default(0, 'any free one');
+
 function commands(signal: AbortSignal, end: (status: number) => void): Command {
   const program = new Command('fieldassay')
     .description(
-      'How far can a time-domain field solver be trusted, and where? The same prescribed currents through a Yee grid and\n' +
+      'How far can a time-domain field solver be trusted, and where? The same prescribed currents through a Yee grid and ' +
         'through exact retarded integrals, and what their differences say.',
     )
+    .configureHelp({
+      minWidthToWrap: 24,
+      subcommandTerm: (command) => [command.name(), ...command.registeredArguments.map(argumentTerm)].join(' '),
+    })
+    .addHelpText('after', HELP)
     .version(VERSION)
     .exitOverride()
     .configureOutput({
@@ -126,37 +145,41 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     })
     .showHelpAfterError('(see --help)');
 
-  withGate(program.command('compare'))
-    .argument('[scenario]', 'a scenario file or a built-in scenario (see `examples`)', 'bench-cable-pulse')
-    .description('run both solvers on a scenario: error budget and verdict')
-    .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
-    .option(
-      '--frames <dir>',
-      'write pictures of grid, exact field and difference into this folder: PNG files and a film',
-    )
-    .option('--npz', 'with --out: the traces as NumPy arrays too, traces.npz')
-    .option('--charts', 'with --out: the charts of the report as SVG files too, in charts/')
-    .addOption(
-      new Option('--snapshots <format>', 'with --out: both fields over time, for other programs').choices(
-        SNAPSHOT_FORMATS,
-      ),
-    )
-    .addOption(new Option('--region <region>', 'with --snapshots: where').choices(SNAPSHOT_REGIONS).default('planes'))
-    .option('--instants <n>', 'with --snapshots: how many, evenly over the run', wholeNumber(1, 10_000), 24)
-    .option(
-      '--stride <n>',
-      'with --snapshots: every n-th cell (default: as many as make handy files)',
-      wholeNumber(1, 1000),
-    )
-    .option('--json', 'print the result as JSON on standard output, and nothing else there')
-    .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
-    .option('--pattern', 'the grid’s far field too: its error by direction, from its fields on a surface in the box')
-    .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
-    .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
-    .option('--port <n>', 'with --serve: the port', portNumber, 0)
+  withGate(
+    program
+      .command('compare')
+      .argument('[scenario]', 'a scenario file or a built-in scenario (see `examples`)', 'bench-cable-pulse')
+      .description('run both solvers on a scenario: error budget and verdict')
+      .option('--out <dir>', 'write result.json, traces.csv and report.html into this folder')
+      .option(
+        '--frames <dir>',
+        'write pictures of grid, exact field and difference into this folder: PNG files and a film',
+      )
+      .option('--npz', 'with --out: the traces as NumPy arrays too, traces.npz')
+      .option('--charts', 'with --out: the charts of the report as SVG files too, in charts/')
+      .addOption(
+        new Option('--snapshots <format>', 'with --out: both fields over time, for other programs').choices(
+          SNAPSHOT_FORMATS,
+        ),
+      )
+      .addOption(new Option('--region <region>', 'with --snapshots: where').choices(SNAPSHOT_REGIONS).default('planes'))
+      .option('--instants <n>', 'with --snapshots: how many, evenly over the run', wholeNumber(1, 10_000), 24)
+      .option(
+        '--stride <n>',
+        'with --snapshots: every n-th cell (default: as many as make handy files)',
+        wholeNumber(1, 1000),
+      )
+      .option('--json', 'print the result as JSON on standard output, and nothing else there')
+      .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
+      .option('--pattern', 'the grid’s far field too: its error by direction, from its fields on a surface in the box')
+      .option('--fused', 'one rounding a multiply-add, where the runtime has it: faster, last bits differ')
+      .option('--serve', 'with --out: serve the page and the report on the loopback address until Ctrl-C')
+      .addOption(portOption('with --serve: the port')),
+  )
     .addHelpText(
       'after',
-      '\nExample: fieldassay compare bench-cable-pulse --out out' +
+      '\nExit status: 0 within the tolerance (and the baseline), 1 outside it, 2 refused, 3 failed.\n' +
+        '\nExample: fieldassay compare bench-cable-pulse --out out' +
         '\nExample: fieldassay compare small-loop --out loop --snapshots hdf5 --region box --instants 8 --stride 4\n',
     )
     .action(async (name: string, options: CompareFlags) => {
@@ -188,10 +211,13 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 
   program
     .command('exact')
-    .argument('<scenario>', 'a scenario file or a built-in scenario')
+    .argument('<scenario>', 'a scenario file or a built-in scenario (see `examples`)')
     .description('the exact field alone, at any points and instants, inside the box or out')
-    .requiredOption('--points <file>', 'CSV with the header x,y,z,t (m and s), or x,y,z,f (m and Hz)')
-    .requiredOption('--out <file>', 'CSV to write: x,y,z,t, then E, H, B, φ, A and bounds of their errors, SI units')
+    .requiredOption('--points <file>', 'required: CSV with the header x,y,z,t (m and s), or x,y,z,f (m and Hz)')
+    .requiredOption(
+      '--out <file>',
+      'required: CSV to write: x,y,z,t, then E, H, B, φ, A and bounds of their errors, SI units',
+    )
     .addOption(
       new Option('--route <route>', 'spectral: by spectra and back, held against the integrals')
         .choices(ROUTES)
@@ -217,11 +243,11 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
 
   program
     .command('currents')
-    .argument('<scenario>', 'a scenario file or a built-in scenario')
+    .argument('<scenario>', 'a scenario file or a built-in scenario (see `examples`)')
     .description('the currents on grid edges, instant by instant: to drive another solver with the very same source')
     .requiredOption(
       '--out <file>',
-      'CSV to write: axis,i,j,k,x,y,z,length, then the current at each instant that the header names, SI units',
+      'required: CSV to write: axis,i,j,k,x,y,z,length, then the current at each instant that the header names, SI units',
     )
     .addHelpText('after', '\nExample: fieldassay currents tilted-wire --out edges.csv\n')
     .action((name: string, { out }: { out: string }) => writeWhole(out, currentsCommand(readScenario(name))));
@@ -233,7 +259,7 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       'a result folder: its scenario is opened, its report served at /report.html, its files under /results/',
     )
     .description('serve the page on the loopback address, until Ctrl-C')
-    .option('--port <n>', 'the port (default: any free one)', portNumber, 0)
+    .addOption(portOption('the port'))
     .addHelpText('after', '\nExample: fieldassay view out\n')
     .action(async (folder: string | undefined, { port }: { port: number }) => {
       const holds = (file: string) => folder !== undefined && existsSync(join(folder, file));

@@ -38,7 +38,7 @@ export function addDeriveCommand(program: Command, signal: AbortSignal): void {
     .argument('<scenario>', 'a scenario file or a built-in scenario (see `examples`)')
     .addArgument(new Argument('<quantity>', 'what to derive').choices(NAMES))
     .description('what follows from the exact field: far field, radiation, pulse, spectrum, voltage, flux, parts')
-    .requiredOption('--at <file>', 'CSV whose header names the columns that the quantity asks for (below)')
+    .requiredOption('--at <file>', 'required: CSV whose header names the columns that the quantity asks for (below)')
     .option('--out <file>', 'CSV to write, each column headed by its name and unit (default: standard output)')
     .option(
       '--steady',

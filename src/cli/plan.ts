@@ -66,7 +66,10 @@ export function addPlanCommand(
     .option('--out <dir>', `write ${PLAN_FILES.join(', ')} into this folder`)
     .option('--json', 'print the plan as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threads)
-    .addHelpText('after', '\nExample: fieldassay plan bench-cable-pulse --tolerance "2 %" --out plan\n')
+    .addHelpText(
+      'after',
+      '\nExit status: 0 a set-up is predicted to meet it, 1 none is, 2 refused, 3 failed.\n\nExample: fieldassay plan bench-cable-pulse --tolerance "2 %" --out plan\n',
+    )
     .action(async (name: string, flags: PlanFlags) => {
       refuseUnwritable([flags.out], []);
       const plan = await planned(name, flags, signal);

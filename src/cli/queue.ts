@@ -31,7 +31,10 @@ export function addWorkCommand(program: Command, threadCount: (text: string) => 
   program
     .command('work')
     .description('take cases of surveys that were handed over with `survey --queue` on any machine, until stopped')
-    .requiredOption('--queue <url>', 'the PostgreSQL database that surveys are handed over through, postgres://HOST/DB')
+    .requiredOption(
+      '--queue <url>',
+      'required: the PostgreSQL database that surveys are handed over through, postgres://HOST/DB',
+    )
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
     .addHelpText('after', HELP)
     .action(async ({ queue, threads }: { queue: string; threads?: number }) => {

@@ -29,11 +29,17 @@ interface SurveyFlags {
 }
 
 const HELP = `
+A survey file, with a built-in scenario (a scenario itself, or its file, may stand there); keys are paths into it:
+  { "scenario": "bench-cable-pulse", "vary": { "grid.cellSize": ["10 mm", "7.5 mm", "5 mm"] } }
+As many cases as there are combinations, or with "combine": "paired" first with first, second with second.
+
 Finished cases are kept in DIR/cases: the same command goes on where it was stopped.
 
 Many machines: \`--queue\` hands the cases to workers (see \`fieldassay work --help\`) and collects what they come to;
 stopped, it leaves the cases with them, and the same command goes on collecting. Where a batch scheduler starts the
 processes instead, each runs one share with \`--shard\`, and \`--merge\` joins what they wrote.
+
+Exit status: 0 every case was done or refused, 2 the survey itself was refused, 3 a case failed.
 
 Example: fieldassay survey survey.json --out survey
 Example: PGPASSWORD=… fieldassay survey survey.json --out survey --queue postgres://surveys@db.example/fieldassay
@@ -55,7 +61,10 @@ export function addSurveyCommand(
     .command('survey')
     .argument('[survey]', 'a survey file: a scenario and what to vary in it')
     .description('many cases: order of convergence, reflections of walls, what an error costs')
-    .option('--out <dir>', 'write survey-result.json, survey.csv, survey.html and charts into this folder')
+    .option(
+      '--out <dir>',
+      'required but with --merge: write survey-result.json, survey.csv, survey.html and charts into this folder',
+    )
     .option('--json', 'print the result as JSON on standard output, and nothing else there')
     .option('--threads <n>', 'worker threads (default: all that the machine has)', threadCount)
     .option('--queue <url>', 'hand the cases to workers through this PostgreSQL database, postgres://HOST/DB')

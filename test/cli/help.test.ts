@@ -17,8 +17,11 @@ const commands = [
 ].map(([, name]) => name!);
 const examples = commands
   .filter((name) => name !== 'help')
+  .concat('')
   .flatMap((command) => {
-    const lines = [...help(command).matchAll(/^Example: fieldassay (.*)$/gm)].map(([, line]) => line!);
+    const lines = [...help(...(command ? [command] : [])).matchAll(/^Example: fieldassay (.*)$/gm)].map(
+      ([, line]) => line!,
+    );
     return lines.length > 0 ? lines.map((line) => ({ command, line })) : [{ command, line: '' }];
   });
 
@@ -39,10 +42,8 @@ beforeAll(() => {
     join(folder, 'mine.json'),
     JSON.stringify({ ...SMALL, observers: [{ ...SMALL.observers[0], name: 'A' }] }),
   );
-  writeFileSync(
-    join(folder, 'survey.json'),
-    JSON.stringify({ title: 'Steps', scenario: SMALL, vary: { 'grid.cellSize': ['10 mm', '8 mm'] } }),
-  );
+  // The survey file that its help shows.
+  writeFileSync(join(folder, 'survey.json'), help('survey').match(/^ {2}(\{ "scenario".*\})$/m)![1]!);
   const header = 'time,Probe 1 [V/m]';
   const rows = Array.from({ length: 60 }, (_, n) => `${n * 0.05},${Math.exp(-((n * 0.05 - 2) ** 2))}`);
   writeFileSync(join(folder, 'probes.csv'), `${[header, ...rows].join('\n')}\n`);
