@@ -7,8 +7,13 @@ import { SMALL } from '../run/surveyFolder.ts';
 
 /** The examples that end each command's help, pasted as they stand into a folder that holds the files they name. */
 const MAIN = new URL('../../dist/main.js', import.meta.url).pathname;
-const help = (...command: string[]) =>
-  spawnSync(process.execPath, [MAIN, ...command, '--help'], { encoding: 'utf8' }).stdout;
+const helps = new Map<string, string>();
+const help = (command = '') => {
+  const ask = () =>
+    spawnSync(process.execPath, [MAIN, ...(command ? [command] : []), '--help'], { encoding: 'utf8' }).stdout;
+  helps.set(command, helps.get(command) ?? ask());
+  return helps.get(command)!;
+};
 
 const commands = [
   ...help()
