@@ -19,7 +19,8 @@ import { observerCell } from '../scenario/sites.ts';
 import type { TrustMap } from '../scene/film.ts';
 import { cellCentre, type ShownSlice, shownSlice } from '../scene/slices.ts';
 import { type Instants, instantsOf } from '../trace/trace.ts';
-import type { Report, Request } from './messages.ts';
+import { heed } from './heed.ts';
+import { type Report, type Request, requestSchema } from './messages.ts';
 import { potentialsOn } from './potentials.ts';
 
 const tell = (report: Report, transfer: Transferable[] = []) => postMessage(report, { transfer });
@@ -47,10 +48,14 @@ let queue: Promise<void> = Promise.resolve();
 /** the planes that were asked for last, until their turn comes: earlier ones are not begun */
 let wanted: Request | undefined;
 
-addEventListener('message', ({ data }: MessageEvent<Request>) => {
-  if (data.kind === 'planes') wanted = data;
-  queue = queue.then(() => answer(data)).catch(fail);
-});
+heed(
+  requestSchema,
+  (request) => {
+    if (request.kind === 'planes') wanted = request;
+    queue = queue.then(() => answer(request)).catch(fail);
+  },
+  fail,
+);
 
 function fail(error: unknown): void {
   if (error instanceof Refusal) tell({ kind: 'refused', problems: error.problems });
@@ -70,7 +75,7 @@ async function answer(request: Request): Promise<void> {
     }
     case 'potentials': {
       const film = current?.films[request.slice];
-      if (!current || !film) return;
+      if (!current || !film || request.frame >= film.instants.count) return;
       const { slice, frame } = request;
       const values = potentialsOn(current.scenario, film.slice, film.instants.E[frame]!);
       tell({ kind: 'potentials', slice, frame, values }, [values.buffer]);
@@ -93,6 +98,7 @@ async function run(json: unknown, planesShown: readonly Plane[]): Promise<void> 
   if ('problems' in loaded) throw new Refusal(loaded.problems);
   const { scenario } = loaded;
   const question = questionOf(scenario);
+  await current?.team.end();
   const team = new Team(threadsAvailable());
   current = { json, scenario, question, team, films: [] };
   const started = performance.now();

@@ -3,8 +3,8 @@ import { formatPercent } from '../elementary/quantity.ts';
 import type { Foresight } from '../run/foresee.ts';
 import { byId, h } from './dom.ts';
 import type { Foretell, Foretold } from './predictor.ts';
-import { beside } from './runner.ts';
 import type { Store } from './store.ts';
+import { type Helper, startHelper } from './workers.ts';
 
 /** The first prediction waits so long, ms: pictures come first. */
 const FIRST = 1200;
@@ -18,7 +18,7 @@ const PATIENCE = 400;
  */
 export class Prediction {
   private readonly line = byId('predicted');
-  private worker: Worker | undefined;
+  private worker: Helper<Foretell> | undefined;
   /** when the worker was last asked, and for what */
   private asked: { readonly text: string; readonly at: number } | undefined;
   private foretold: { readonly text: string; readonly what: Foretold } | undefined;
@@ -54,21 +54,20 @@ export class Prediction {
         this.timer = setTimeout(() => this.ask(), left) as unknown as number;
         return;
       }
-      this.worker?.terminate();
+      this.worker?.end();
       this.worker = undefined;
     }
     this.asked = { text, at: performance.now() };
     this.worker ??= this.begin();
-    this.worker.postMessage({ scenario: json } satisfies Foretell);
+    this.worker.ask({ scenario: json });
   }
 
-  private begin(): Worker {
-    const worker = new Worker(beside('./predictor.js'), { type: 'module' });
-    worker.addEventListener('message', ({ data }: MessageEvent<Foretold>) => this.take(data));
-    worker.addEventListener('error', ({ message }) =>
-      this.take({ failed: message || 'the worker could not be started' }),
+  private begin(): Helper<Foretell> {
+    return startHelper<Foretell, Foretold>(
+      './predictor.js',
+      (what) => this.take(what),
+      (failed) => this.take({ failed }),
     );
-    return worker;
   }
 
   private take(what: Foretold): void {

@@ -1,22 +1,21 @@
 /** Predicts off the page's own thread: nothing is run. */
+import { z } from 'zod';
 import { type Foresight, foresee } from '../run/foresee.ts';
 import { loadScenario } from '../scenario/load.ts';
+import { heed } from './heed.ts';
 
-export interface Foretell {
-  readonly scenario: unknown;
-}
+const requestSchema = z.object({ scenario: z.unknown() });
+export type Foretell = z.infer<typeof requestSchema>;
 
 export type Foretold = Foresight | { readonly failed: string };
 
-addEventListener('message', ({ data }: MessageEvent<Foretell>) => {
-  postMessage(foretell(data.scenario));
-});
+const tell = (what: Foretold) => postMessage(what);
 
-function foretell(json: unknown): Foretold {
-  try {
-    const loaded = loadScenario(json);
-    return 'scenario' in loaded ? foresee(loaded.scenario) : { failed: loaded.problems[0]!.message };
-  } catch (error) {
-    return { failed: (error as Error).message };
-  }
-}
+heed(
+  requestSchema,
+  ({ scenario }) => {
+    const loaded = loadScenario(scenario);
+    tell('scenario' in loaded ? foresee(loaded.scenario) : { failed: loaded.problems[0]!.message });
+  },
+  ({ message }) => tell({ failed: message }),
+);

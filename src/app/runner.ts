@@ -3,6 +3,7 @@ import { Film } from '../scene/film.ts';
 import { planesShown } from '../scene/slices.ts';
 import type { Report, Request } from './messages.ts';
 import type { Store } from './store.ts';
+import { type Helper, startHelper } from './workers.ts';
 
 /** What decides a comparison's numbers: everything but title and planes. Runs are not repeated for those. */
 function decisive(json: unknown): string {
@@ -11,12 +12,9 @@ function decisive(json: unknown): string {
   return JSON.stringify(rest);
 }
 
-/** The address of a script that the build put beside this one. */
-export const beside = (name: string): string => new URL(name, import.meta.url).href;
-
 /** Runs scenarios in a worker and puts what it tells into the store. One run at a time. */
 export class Runner {
-  private worker: Worker | null = null;
+  private worker: Helper<Request> | null = null;
   private ran = '';
   private readonly asked = new Set<string>();
 
@@ -37,10 +35,10 @@ export class Runner {
     const { json, scenario } = this.store.state;
     if (!scenario) return;
     this.stop();
-    this.worker = new Worker(beside('./coordinator.js'), { type: 'module' });
-    this.worker.addEventListener('message', ({ data }: MessageEvent<Report>) => this.take(data));
-    this.worker.addEventListener('error', ({ message }) =>
-      this.take({ kind: 'failed', message: message || 'A worker could not be started.' }),
+    this.worker = startHelper<Request, Report>(
+      './coordinator.js',
+      (report) => this.take(report),
+      (message) => this.take({ kind: 'failed', message }),
     );
     this.ran = decisive(json);
     this.store.state.result = null;
@@ -52,7 +50,7 @@ export class Runner {
 
   private ask(request: Request, stage: string): void {
     this.store.setRun({ status: 'running', stage, fraction: 0, secondsLeft: undefined, message: '' });
-    this.worker!.postMessage(request);
+    this.worker!.ask(request);
   }
 
   /** Ends the run at once; what is known already stays. */
@@ -62,7 +60,7 @@ export class Runner {
   }
 
   private stop(): void {
-    this.worker?.terminate();
+    this.worker?.end();
     this.worker = null;
     this.asked.clear();
   }
@@ -73,7 +71,7 @@ export class Runner {
       const key = `${slice} ${frame}`;
       if (film.potentials.has(frame) || this.asked.has(key)) return;
       this.asked.add(key);
-      this.worker?.postMessage({ kind: 'potentials', slice, frame } satisfies Request);
+      this.worker?.ask({ kind: 'potentials', slice, frame });
     });
   }
 

@@ -13,8 +13,8 @@ import type { EncoderRequest } from './encoder.ts';
 import { notify } from './notice.ts';
 import type { PackAnswer, PackRequest } from './packer.ts';
 import type { Panes } from './panes.ts';
-import { beside } from './runner.ts';
 import type { Store } from './store.ts';
+import { answerOf, startHelper } from './workers.ts';
 import { nameOf, written } from './written.ts';
 
 /** Hands a file to the browser's downloads. */
@@ -158,20 +158,11 @@ export class Saving {
       })),
     };
     notify('Packing the fields; the page can be used meanwhile.');
-    const packer = new Worker(beside('./packer.js'), { type: 'module' });
-    try {
-      const answer = await new Promise<PackAnswer>((resolve, reject) => {
-        packer.onmessage = ({ data }) => resolve(data);
-        packer.onerror = ({ message }) => reject(new Error(message));
-        packer.postMessage(request);
-      });
-      if ('failed' in answer) throw new Error(answer.failed);
-      const name = format === 'vti' ? 'fields-vti.zip' : 'fields.h5';
-      const type = format === 'vti' ? 'application/zip' : 'application/x-hdf5';
-      download(`${nameOf(this.store)}-${name}`, bytesBlob(answer.bytes, type));
-    } finally {
-      packer.terminate();
-    }
+    const answer = await answerOf<PackRequest, PackAnswer>('./packer.js', request);
+    if ('failed' in answer) throw new Error(answer.failed);
+    const name = format === 'vti' ? 'fields-vti.zip' : 'fields.h5';
+    const type = format === 'vti' ? 'application/zip' : 'application/x-hdf5';
+    download(`${nameOf(this.store)}-${name}`, bytesBlob(answer.bytes, type));
   }
 
   private async picture(): Promise<void> {
@@ -254,17 +245,18 @@ export class Saving {
   }
 
   private async animation(): Promise<void> {
-    const encoder = new Worker(beside('./encoder.js'), { type: 'module' });
-    const answer = () =>
-      new Promise<{ kind: string; bytes?: Uint8Array<ArrayBuffer> }>((resolve, reject) => {
-        encoder.onmessage = ({ data }) => resolve(data);
-        encoder.onerror = ({ message }) => reject(new Error(message));
+    type Answer = { kind: string; bytes?: Uint8Array<ArrayBuffer> };
+    let answered: { resolve: (answer: Answer) => void; reject: (error: Error) => void };
+    const encoder = startHelper<EncoderRequest, Answer>(
+      './encoder.js',
+      (answer) => answered.resolve(answer),
+      (message) => answered.reject(new Error(message)),
+    );
+    const ask = (request: EncoderRequest, transfer: Transferable[] = []) =>
+      new Promise<Answer>((resolve, reject) => {
+        answered = { resolve, reject };
+        encoder.ask(request, transfer);
       });
-    const ask = (request: EncoderRequest, transfer: Transferable[] = []) => {
-      const answered = answer();
-      encoder.postMessage(request, transfer);
-      return answered;
-    };
     notify('Making the film; the time line runs along.');
     try {
       await this.eachPicture(0, async (still) => {
@@ -274,7 +266,7 @@ export class Saving {
       const { bytes } = await ask({ kind: 'end', perSecond: this.store.state.view.speed });
       download(`${nameOf(this.store)}.png`, new Blob([bytes!], { type: 'image/png' }));
     } finally {
-      encoder.terminate();
+      encoder.end();
     }
   }
 }

@@ -1,7 +1,7 @@
 import { fileWords } from '../files/words.ts';
 import type { ResultFile } from '../report/folder.ts';
-import { beside } from './runner.ts';
 import type { Store } from './store.ts';
+import { answerOf } from './workers.ts';
 import type { WriterRequest } from './writer.ts';
 
 /** A file's name from the scenario's title. */
@@ -18,14 +18,8 @@ export async function written(store: Store, file: ResultFile): Promise<string> {
   const { result, traces, spectra } = store.state;
   if (!result) throw new Error('there is no result yet; wait for the verdict.');
   const command = `npx fieldassay compare ${nameOf(store)}.json --out out`;
-  const writer = new Worker(beside('./writer.js'), { type: 'module' });
-  try {
-    return await new Promise((resolve, reject) => {
-      writer.onmessage = ({ data }: MessageEvent<string>) => resolve(data);
-      writer.onerror = ({ message }) => reject(new Error(message || 'a worker could not be started.'));
-      writer.postMessage({ file, report: { result, traces, spectra, command } } satisfies WriterRequest);
-    });
-  } finally {
-    writer.terminate();
-  }
+  return await answerOf<WriterRequest, string>('./writer.js', {
+    file,
+    report: { result, traces, spectra, command },
+  });
 }

@@ -8,10 +8,10 @@ import { h } from '../dom.ts';
 import { asked, halves } from '../halves.ts';
 import { notify } from '../notice.ts';
 import type { Places, Started } from '../places.ts';
-import { beside } from '../runner.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
 import { table } from '../table.ts';
+import { type Helper, startHelper } from '../workers.ts';
 import { nameOf } from '../written.ts';
 import type { JudgeReport, JudgeRequest } from './messages.ts';
 
@@ -36,11 +36,11 @@ export function judge(host: HTMLElement, store: Store, places: Places): Started 
 /** A file as it is judged. */
 interface Given {
   readonly name: string;
-  readonly bytes: Uint8Array;
+  readonly bytes: Uint8Array<ArrayBuffer>;
 }
 
 class JudgePlace {
-  private worker: Worker | null = null;
+  private worker: Helper<JudgeRequest> | null = null;
   private given: Given | null = null;
   private judged: Judged | null = null;
   private due = false;
@@ -184,16 +184,18 @@ class JudgePlace {
     const { given, store } = this;
     if (!given || store.state.problems.length > 0) return;
     this.due = false;
-    this.worker?.terminate();
-    this.worker = new Worker(beside('./judge.js'), { type: 'module' });
-    this.worker.addEventListener('message', ({ data }: MessageEvent<JudgeReport>) => this.hear(given, data));
-    this.worker.addEventListener('error', ({ message }) => this.refuse(message || 'A worker could not be started.'));
-    this.worker.postMessage({
+    this.worker?.end();
+    this.worker = startHelper<JudgeRequest, JudgeReport>(
+      './judge.js',
+      (report) => this.hear(given, report),
+      (message) => this.refuse(message),
+    );
+    this.worker.ask({
       scenario: store.state.json,
       ...given,
       map: this.map(),
       cellSize: this.texts.cell.value || undefined,
-    } satisfies JudgeRequest);
+    });
     this.bar.hidden = false;
     this.again.disabled = true;
   }
@@ -207,7 +209,7 @@ class JudgePlace {
   }
 
   private end(judged: Judged | null, stage: string): void {
-    this.worker?.terminate();
+    this.worker?.end();
     this.worker = null;
     this.judged = judged;
     this.bar.hidden = true;

@@ -1,15 +1,17 @@
-import type { TraceMap } from '../../files/traceMap.ts';
+import { z } from 'zod';
+import { traceMapSchema } from '../../files/traceMap.ts';
 import type { Judged } from '../../run/judge/judgeTraces.ts';
 
 /** What the page asks the judging worker. */
-export interface JudgeRequest {
-  readonly scenario: unknown;
-  readonly name: string;
-  readonly bytes: Uint8Array;
-  readonly map: TraceMap;
+export const requestSchema = z.object({
+  scenario: z.unknown(),
+  name: z.string(),
+  bytes: z.instanceof(Uint8Array),
+  map: traceMapSchema,
   /** of the solver that is judged; undefined: the scenario's */
-  readonly cellSize: string | undefined;
-}
+  cellSize: z.string().optional(),
+});
+export type JudgeRequest = z.infer<typeof requestSchema>;
 
 /** What the worker tells. */
 export type JudgeReport =

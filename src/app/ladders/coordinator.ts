@@ -7,15 +7,14 @@ import { pool } from '../../run/surveyPool.ts';
 import { surveySoFar, surveyTable } from '../../run/surveyTable.ts';
 import { EXAMPLES } from '../../scenario/examples.ts';
 import { loadSurvey, type Survey } from '../../scenario/survey.ts';
-import type { Kept, Report, Request } from './messages.ts';
+import { heed } from '../heed.ts';
+import { type Kept, type Report, type Request, requestSchema } from './messages.ts';
 
 const tell = (report: Report) => postMessage(report);
 
-addEventListener('message', ({ data }: MessageEvent<Request>) => {
-  void answer(data).catch((error: unknown) => {
-    if (error instanceof Refusal) tell({ kind: 'refused', problems: error.problems });
-    else tell({ kind: 'failed', message: (error as Error)?.message ?? String(error) });
-  });
+heed(requestSchema, answer, (error) => {
+  if (error instanceof Refusal) tell({ kind: 'refused', problems: error.problems });
+  else tell({ kind: 'failed', message: error.message });
 });
 
 async function answer({ kind, survey: file, kept }: Request): Promise<void> {

@@ -1,4 +1,5 @@
 /** Films of several walls around the same sources, and of the exact field that they share, off the page's own thread. */
+import { z } from 'zod';
 import { threadsAvailable } from '#platform';
 import type { GridFrames } from '../../run/planes.ts';
 import { filmExact, filmGrid, filmOf } from '../../run/planes.ts';
@@ -8,11 +9,13 @@ import { loadScenario } from '../../scenario/load.ts';
 import type { Scenario } from '../../scenario/model.ts';
 import type { ExactCells, FilmOf } from '../../scene/film.ts';
 import { planesShown, shownSlice } from '../../scene/slices.ts';
+import { heed } from '../heed.ts';
 
-/** Scenarios that differ by their walls alone. */
-export interface FilmRequest {
-  readonly scenarios: readonly unknown[];
-}
+const requestSchema = z.object({
+  /** that differ by their walls alone */
+  scenarios: z.array(z.unknown()).min(1).readonly(),
+});
+export type FilmRequest = z.infer<typeof requestSchema>;
 
 export type FilmReport =
   | ({ readonly kind: 'film' } & FilmOf)
@@ -24,9 +27,11 @@ export type FilmReport =
 
 const tell = (report: FilmReport, transfer: Transferable[] = []) => postMessage(report, { transfer });
 
-addEventListener('message', ({ data }: MessageEvent<FilmRequest>) => {
-  void film(data.scenarios).catch((error: Error) => tell({ kind: 'failed', message: error.message }));
-});
+heed(
+  requestSchema,
+  ({ scenarios }) => film(scenarios),
+  ({ message }) => tell({ kind: 'failed', message }),
+);
 
 function scenarioOf(json: unknown): Scenario {
   const loaded = loadScenario(json);
@@ -36,8 +41,7 @@ function scenarioOf(json: unknown): Scenario {
 
 async function film(jsons: readonly unknown[]): Promise<void> {
   const scenarios = jsons.map(scenarioOf);
-  const [first] = scenarios;
-  if (!first) return;
+  const first = scenarios[0]!;
   const team = new Team(threadsAvailable());
   const { every, instants } = filmOf(questionOf(first));
   const slices = [shownSlice(first, planesShown(first)[0]!)];

@@ -1,14 +1,20 @@
+import { z } from 'zod';
 import type { SurveyResult } from '../../compare/surveyResult.ts';
 import type { Problem } from '../../scenario/reading.ts';
 
 /** Texts of finished cases by their hash: what a survey that goes on need not run again. */
 export type Kept = readonly (readonly [hash: string, text: string])[];
 
+const kept: z.ZodType<Kept> = z.array(z.tuple([z.string(), z.string()]));
+
 /** What the page asks of the worker that coordinates one survey. Stopping it is ending the worker. */
-export type Request =
-  | { readonly kind: 'run'; readonly survey: unknown; readonly kept: Kept }
-  /** only what the kept cases say together: a survey that runs elsewhere */
-  | { readonly kind: 'collect'; readonly survey: unknown; readonly kept: Kept };
+export const requestSchema = z.object({
+  /** `collect`: only what the kept cases say together, of a survey that runs elsewhere */
+  kind: z.literal(['run', 'collect']),
+  survey: z.unknown(),
+  kept,
+});
+export type Request = z.infer<typeof requestSchema>;
 
 export type Report =
   | { readonly kind: 'progress'; readonly stage: string; readonly fraction: number; readonly secondsLeft?: number }

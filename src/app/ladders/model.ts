@@ -3,8 +3,8 @@ import type { Problem } from '../../scenario/reading.ts';
 import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
 import { textOf } from '../../scenario/text.ts';
-import { beside } from '../runner.ts';
 import type { Store } from '../store.ts';
+import { type Helper, startHelper } from '../workers.ts';
 import { Folder } from './folder.ts';
 import type { Report, Request } from './messages.ts';
 
@@ -39,7 +39,7 @@ export type SurveyTopic = 'survey' | 'run' | 'result';
  */
 export class SurveyModel {
   readonly state: SurveyState;
-  private worker: Worker | undefined;
+  private worker: Helper<Request> | undefined;
   private readonly kept = new Map<string, string>();
   private readonly listeners = new Map<SurveyTopic, (() => void)[]>();
   private folder: Folder | undefined;
@@ -148,21 +148,19 @@ export class SurveyModel {
   }
 
   private stop(): void {
-    this.worker?.terminate();
+    this.worker?.end();
     this.worker = undefined;
     this.folder?.end();
     this.folder = undefined;
   }
 
   private ask(request: Request): void {
-    if (!this.worker) {
-      this.worker = new Worker(beside('./survey.js'), { type: 'module' });
-      this.worker.addEventListener('message', ({ data }: MessageEvent<Report>) => this.take(data));
-      this.worker.addEventListener('error', ({ message }) =>
-        this.take({ kind: 'failed', message: message || 'A worker could not be started.' }),
-      );
-    }
-    this.worker.postMessage(request);
+    this.worker ??= startHelper<Request, Report>(
+      './survey.js',
+      (report) => this.take(report),
+      (message) => this.take({ kind: 'failed', message }),
+    );
+    this.worker.ask(request);
   }
 
   private take(report: Report): void {

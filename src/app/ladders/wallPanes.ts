@@ -15,7 +15,7 @@ import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
 import { paintLabels } from '../labels.ts';
 import { VIEWS } from '../panes.ts';
-import { beside } from '../runner.ts';
+import { type Helper, startHelper } from '../workers.ts';
 import type { FilmReport, FilmRequest } from './filmer.ts';
 import type { SurveyModel } from './model.ts';
 
@@ -57,7 +57,7 @@ export class WallPanes {
   private readonly chart: LiveChart;
   private picture = new Picture(1, 1);
   private camera: Camera | undefined;
-  private worker: Worker | undefined;
+  private worker: Helper<FilmRequest> | undefined;
   private walls: readonly Wall[] = [];
   private films: Film[] = [];
   private sceneries: Scenery[] = [];
@@ -191,14 +191,16 @@ export class WallPanes {
     this.body.hidden = false;
     this.status.textContent = 'Starting the workers…';
     this.start.textContent = 'Cancel';
-    this.worker = new Worker(beside('./filmer.js'), { type: 'module' });
-    this.worker.addEventListener('message', ({ data }: MessageEvent<FilmReport>) => this.take(data));
-    this.worker.addEventListener('error', ({ message }) => this.end(message || 'A worker could not be started.'));
-    this.worker.postMessage({ scenarios: this.shown.map(({ json }) => json) } satisfies FilmRequest);
+    this.worker = startHelper<FilmRequest, FilmReport>(
+      './filmer.js',
+      (report) => this.take(report),
+      (message) => this.end(message),
+    );
+    this.worker.ask({ scenarios: this.shown.map(({ json }) => json) });
   }
 
   private end(message: string): void {
-    this.worker?.terminate();
+    this.worker?.end();
     this.worker = undefined;
     this.start.textContent = 'Show their fields';
     this.status.textContent = message;

@@ -1,26 +1,28 @@
+import { z } from 'zod';
 import type { Plan } from '../../compare/planResult.ts';
 import type { KnownSetup } from '../../run/planSearch.ts';
-import type { Wall } from '../../run/predict.ts';
+import { BOUNDARIES, LIMITS } from '../../scenario/schema.ts';
+
+const wall = z.object({ type: z.literal(BOUNDARIES), layers: z.int().min(0).max(LIMITS.layers).optional() });
 
 /** What is wanted of a plan. */
-export interface Wanted {
+const wantedSchema = z.object({
   /** the scenario's JSON */
-  readonly scenario: unknown;
-  readonly tolerance: number;
+  scenario: z.unknown(),
+  tolerance: z.number().positive().max(1),
   /** where it must hold: an observer's name, or a distance from the sources, m; all observers where neither is given */
-  readonly at?: string | undefined;
-  readonly distance?: number | undefined;
+  at: z.string().optional(),
+  distance: z.number().positive().optional(),
   /** Hz; the whole signal where there is none */
-  readonly band?: number | undefined;
-  readonly walls: readonly Wall[];
+  band: z.number().positive().optional(),
+  walls: z.array(wall).min(1).readonly(),
   /** cell updates a second of the user's own solver */
-  readonly ownRate?: number | undefined;
-}
+  ownRate: z.number().positive().optional(),
+});
+export type Wanted = z.infer<typeof wantedSchema>;
 
-export interface Request {
-  readonly id: number;
-  readonly wanted: Wanted;
-}
+export const requestSchema = z.object({ id: z.int().min(0), wanted: wantedSchema });
+export type Request = z.infer<typeof requestSchema>;
 
 export type Report =
   | { readonly kind: 'plan'; readonly id: number; readonly plan: Plan }

@@ -20,10 +20,10 @@ import { halves } from '../halves.ts';
 import { notify } from '../notice.ts';
 import type { Places, Started } from '../places.ts';
 import type { Prediction } from '../prediction.ts';
-import { beside } from '../runner.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
 import { table } from '../table.ts';
+import { type Helper, startHelper } from '../workers.ts';
 import { nameOf } from '../written.ts';
 import { aboutOf, type Report, type Request, type Wanted } from './messages.ts';
 import { type Wish, Wishes } from './wishes.ts';
@@ -55,7 +55,7 @@ class Found {
   private readonly figures = h('div', { className: 'charts grid wide' });
   private readonly tables = h('div', {});
   private readonly saves: readonly HTMLButtonElement[];
-  private worker: Worker | undefined;
+  private worker: Helper<Request> | undefined;
   private asked = 0;
   private answered = 0;
   private plan: Plan | null = null;
@@ -129,18 +129,17 @@ class Found {
       this.askedFor = key;
       this.refused = '';
       this.worker ??= this.begin();
-      this.worker.postMessage({ id: ++this.asked, wanted } satisfies Request);
+      this.worker.ask({ id: ++this.asked, wanted });
     }
     this.show();
   }
 
-  private begin(): Worker {
-    const worker = new Worker(beside('./planner.js'), { type: 'module' });
-    worker.addEventListener('message', ({ data }: MessageEvent<Report>) => this.take(data));
-    worker.addEventListener('error', ({ message }) =>
-      this.take({ kind: 'refused', id: this.asked, message: message || 'A worker could not be started.' }),
+  private begin(): Helper<Request> {
+    return startHelper<Request, Report>(
+      './planner.js',
+      (report) => this.take(report),
+      (message) => this.take({ kind: 'refused', id: this.asked, message }),
     );
-    return worker;
   }
 
   private take(report: Report): void {

@@ -4,7 +4,8 @@ import { withTeam } from '../../run/compare.ts';
 import { type Given, given } from '../../run/given.ts';
 import { cellRate, type PreparedGoal, planOf, prepareGoal } from '../../run/plan.ts';
 import { knownSetups, PlanMemory, searchPlan, WALLS } from '../../run/planSearch.ts';
-import { aboutOf, type Report, type Request, type Wanted } from './messages.ts';
+import { heed } from '../heed.ts';
+import { aboutOf, type Report, type Request, requestSchema } from './messages.ts';
 
 const tell = (report: Report) => postMessage(report);
 
@@ -13,14 +14,18 @@ const AHEAD = [0.1, 0.05, 0.02, 0.01, 0.005];
 
 let memory = new PlanMemory();
 let about = '';
-let newest: { readonly id: number; readonly wanted: Wanted } | undefined;
+let newest: Request | undefined;
 let busy = false;
 let speed: Promise<number> | undefined;
 
-addEventListener('message', ({ data }: MessageEvent<Request>) => {
-  newest = data;
-  if (!busy) void work();
-});
+heed(
+  requestSchema,
+  async (request) => {
+    newest = request;
+    if (!busy) await work();
+  },
+  ({ message }, data) => tell({ kind: 'refused', id: Number((data as Partial<Request> | null)?.id), message }),
+);
 
 /** Lets newer messages be heard: a search is long and unbroken. */
 const breathe = () => new Promise((next) => setTimeout(next));
