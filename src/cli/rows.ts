@@ -19,11 +19,8 @@ const UNITS: Readonly<Record<string, string>> = {
  * @throws InputError naming file, row, column and value of what cannot be used
  */
 export function readRows(file: string, asked: readonly string[]): { names: string[]; rows: number[][] } {
-  const { data, meta, errors } = Papa.parse<Record<string, string>>(readInput(file, 'the points file').trim(), {
-    header: true,
-    skipEmptyLines: true,
-  });
-  const found = meta.fields ?? [];
+  const { data, errors } = Papa.parse<string[]>(readInput(file, 'the points file').trim(), { skipEmptyLines: true });
+  const [found = [], ...records] = data;
   const names = asked.map((name) => name.split('|').find((one) => found.includes(one)));
   if (names.includes(undefined)) {
     const units = [...new Set(asked.flatMap((name) => name.split('|')).map((name) => UNITS[name]))].join(' and ');
@@ -35,14 +32,21 @@ export function readRows(file: string, asked: readonly string[]): { names: strin
   const broken = errors.find(({ code }) => code !== 'UndetectableDelimiter');
   if (broken) throw new InputError(`${file}, row ${(broken.row ?? 0) + 2}: ${broken.message}`);
   const columns = names as string[];
-  const rows = data.map((record, n) =>
-    columns.map((name) => {
-      const text = (record[name] ?? '').trim();
+  const places = columns.map((name) => {
+    const place = found.indexOf(name);
+    if (found.includes(name, place + 1)) throw new InputError(`${file}: the header names ${name} twice; leave one out`);
+    return place;
+  });
+  const rows = records.map((record, n) => {
+    if (record.length !== found.length)
+      throw new InputError(`${file}, row ${n + 2}: has ${record.length} cells; the header has ${found.length}`);
+    return columns.map((name, c) => {
+      const text = record[places[c]!]!.trim();
       const value = Number(text);
       if (text === '' || !Number.isFinite(value))
         throw new InputError(`${file}, row ${n + 2}: ${name} is “${text}”; it must be a finite number, ${UNITS[name]}`);
       return value;
-    }),
-  );
+    });
+  });
   return { names: columns, rows };
 }

@@ -157,8 +157,6 @@ export const fuzzMessages = (name: WorkerName, asked: Asked, seen: { refused: nu
       }
       seen.refused++;
       expect(words.length).toBeGreaterThan(10);
-      expect(words).not.toMatch(
-        /\[object|is not a function|not iterable|Cannot read|call stack|Unexpected token/,
-      );
+      expect(words).not.toMatch(/\[object|is not a function|not iterable|Cannot read|call stack|Unexpected token/);
     },
   );
