@@ -1,150 +1,25 @@
 import GUI, { type Controller } from 'lil-gui';
 import { formatQuantity } from '../elementary/quantity.ts';
 import type { Problem } from '../scenario/reading.ts';
-import {
-  BOUNDARIES,
-  CPML_DEFAULTS,
-  HIGDON_DEFAULTS,
-  LIAO_DEFAULTS,
-  SPLIT_PML_DEFAULTS,
-  WAVEFORMS,
-} from '../scenario/schema.ts';
+import { BOUNDARIES, WAVEFORMS } from '../scenario/schema.ts';
 import { timeStepOf } from '../scenario/sites.ts';
 import { parseFraction } from '../scenario/units.ts';
 import { MOST_PLANES } from '../scene/slices.ts';
 import { h } from './dom.ts';
 import { addQuantity, asTyped, type Path, type QuantityField, setAt, shownNumber, valueAt } from './fields.ts';
+import {
+  BEGINNINGS,
+  BOUNDARY_FIELDS,
+  chosenBoundary,
+  NEW_SOURCES,
+  WAVEFORM_FIELDS,
+  WAVEFORM_HELP,
+} from './panelFields.ts';
 import { waveformPreview } from './preview.ts';
 import type { Draft, Store } from './store.ts';
 
 /** How long an edit may go on before it counts: a slider being dragged, a number being typed. */
 const SETTLE = 300;
-
-/** Keys of each waveform beside `type`, and what a new one begins with. */
-const WAVEFORM_FIELDS: Readonly<Record<string, readonly Omit<QuantityField, 'path'>[]>> = (() => {
-  const amplitude = {
-    name: 'amplitude',
-    unit: 'A',
-    help: 'Peak current, A; negative turns it round.',
-    step: 0.1,
-  } as const;
-  const delay = {
-    name: 'delay',
-    unit: 'ns',
-    help: 'Centre of the pulse, ns: at least 8.6 sigma keep the jump at t = 0 below rounding.',
-    min: 0,
-    max: 20,
-    step: 0.01,
-  } as const;
-  const sigma = {
-    name: 'sigma',
-    unit: 'ns',
-    help: 'Time scale of the pulse, ns, above 0: shorter means higher frequencies.',
-    min: 0.01,
-    max: 2,
-    step: 0.005,
-  } as const;
-  return {
-    gaussian: [amplitude, delay, sigma],
-    gaussianDerivative: [amplitude, delay, sigma],
-    modulatedGaussian: [
-      amplitude,
-      delay,
-      sigma,
-      { name: 'frequency', unit: 'GHz', help: 'Carrier frequency, GHz, above 0.', min: 0.05, max: 20, step: 0.05 },
-    ],
-    doubleExponential: [
-      amplitude,
-      { name: 'alpha', unit: '1/ns', help: 'Rate of decay, 1/ns; smaller than beta.', min: 0.01, max: 20, step: 0.01 },
-      { name: 'beta', unit: '1/ns', help: 'Rate of rise, 1/ns; larger than alpha.', min: 0.02, max: 100, step: 0.01 },
-    ],
-    heidler: [amplitude],
-    rampedSine: [
-      amplitude,
-      { name: 'frequency', unit: 'GHz', help: 'Frequency of the sine, GHz, above 0.', min: 0.05, max: 20, step: 0.05 },
-      {
-        name: 'ramp',
-        unit: '',
-        help: 'Periods that the rise and the fall each take, 1 or more.',
-        min: 1,
-        max: 20,
-        step: 0.5,
-        fallback: 3,
-      },
-      { name: 'hold', unit: '', help: 'Periods at full amplitude, 0 or more.', min: 0, max: 50, step: 0.5 },
-    ],
-    // Samples are edited in the text.
-    table: [],
-  };
-})();
-
-const BEGINNINGS: Readonly<Record<string, Draft>> = {
-  gaussian: { amplitude: '1 A', delay: '0.9 ns', sigma: '0.1 ns' },
-  gaussianDerivative: { amplitude: '1 A', delay: '0.9 ns', sigma: '0.1 ns' },
-  modulatedGaussian: { amplitude: '1 A', delay: '1.8 ns', sigma: '0.2 ns', frequency: '2 GHz' },
-  doubleExponential: { amplitude: '1 A', alpha: '1 1/ns', beta: '10 1/ns' },
-  heidler: { preset: 'iec61000-4-2', amplitude: '15 A' },
-  rampedSine: { amplitude: '1 A', frequency: '2 GHz', ramp: 3, hold: 2 },
-  table: {
-    samples: [
-      ['0 ns', '0 A'],
-      ['0.3 ns', '0.1 A'],
-      ['0.6 ns', '1 A'],
-      ['0.9 ns', '0.1 A'],
-      ['1.2 ns', '0 A'],
-    ],
-  },
-};
-
-const WAVEFORM_HELP = 'Time dependence of the current; zero before t = 0.';
-
-const LAYERS: Omit<QuantityField, 'fallback'> = {
-  path: ['layers'],
-  name: 'layers',
-  unit: '',
-  help: 'Cells of absorber outside the box; a whole number.',
-  min: 1,
-  max: 32,
-  step: 1,
-};
-
-const DAMPING: Omit<QuantityField, 'fallback'> = {
-  path: ['damping'],
-  name: 'damping',
-  unit: '',
-  help: 'Loss a cell that keeps the wall from drifting.',
-  min: 0,
-  max: 0.05,
-  step: 0.001,
-};
-
-const incidence = (n: 0 | 1, name: string): QuantityField => ({
-  path: ['angles', n],
-  name,
-  unit: 'deg',
-  help: 'Angle of incidence that nothing returns from, degrees from the normal.',
-  min: 0,
-  max: 85,
-  step: 1,
-});
-
-/** What is edited of a boundary that all faces share; paths from the boundary. */
-const BOUNDARY_FIELDS: Readonly<Record<string, readonly QuantityField[]>> = {
-  higdon2: [
-    incidence(0, 'first angle'),
-    incidence(1, 'second angle'),
-    { ...DAMPING, fallback: HIGDON_DEFAULTS.damping },
-  ],
-  liao: [{ ...DAMPING, fallback: LIAO_DEFAULTS.damping }],
-  cpml: [{ ...LAYERS, fallback: CPML_DEFAULTS.layers }],
-  splitPml: [{ ...LAYERS, fallback: SPLIT_PML_DEFAULTS.layers }],
-};
-
-/** A boundary as it is written when it is chosen: what its controls change stands in the file. */
-function chosenBoundary(type: string): object {
-  if (type === 'cpml' || type === 'splitPml') return { type, layers: CPML_DEFAULTS.layers };
-  return type === 'higdon2' ? { type, angles: ['0 deg', '45 deg'] } : { type };
-}
 
 /** The docked panels. They edit the scenario's file, so that text and panels always say the same. */
 export class Panels {
@@ -397,23 +272,13 @@ export class Panels {
           (draft) => draft.sources.splice(n, 1),
         );
     });
-    this.action(gui, 'Add a wire', 'Adds a straight wire along z, 60 mm long, beside the others.', (draft) => {
-      const names = (draft.sources ?? []).map((s: Draft) => s?.name);
-      let k = 1;
-      while (names.includes(`added ${k}`)) k++;
-      draft.sources = [
-        ...(draft.sources ?? []),
-        {
-          type: 'wire',
-          name: `added ${k}`,
-          points: [
-            [`${20 * k} mm`, '0 mm', '-30 mm'],
-            [`${20 * k} mm`, '0 mm', '30 mm'],
-          ],
-          current: { profile: 'uniform', waveform: { type: 'gaussianDerivative', ...BEGINNINGS.gaussianDerivative } },
-        },
-      ];
-    });
+    for (const { name, help, made } of NEW_SOURCES)
+      this.action(gui, name, help, (draft) => {
+        const names = (draft.sources ?? []).map((s: Draft) => s?.name);
+        let k = 1;
+        while (names.includes(`added ${k}`)) k++;
+        draft.sources = [...(draft.sources ?? []), { name: `added ${k}`, ...made(`${20 * k} mm`) }];
+      });
   }
 
   private wireFolder(gui: GUI, json: Draft, path: Path, source: Draft): void {
