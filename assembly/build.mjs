@@ -88,7 +88,10 @@ async function buildKernels(folder) {
     const given = [join(root, entry), '--outFile', wasm, ...config.flags, ...args];
     await run(`asc ${name}`, 'assemblyscript/bin/asc.js', given);
     const bytes = readFileSync(wasm).toString('base64');
-    writeFileSync(join(folder, `${name}.ts`), `/** The bytes of ${entry}, compiled. */\nexport default '${bytes}';\n`);
+    writeFileSync(
+      join(folder, `${name}.ts`),
+      `/** The bytes of ${entry}, compiled. */\nconst bytes: string =\n  '${bytes}';\nexport default bytes;\n`,
+    );
     rmSync(wasm);
   });
 }
