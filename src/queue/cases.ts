@@ -10,6 +10,9 @@ const QUEUE_SCHEMA = 'fieldassay_queue';
 /** So often a case is tried before it is given up. */
 const TRIES = 3;
 
+/** Channels on which those that wait for cases, or for what they come to, are woken. */
+export const CHANNELS = { cases: 'fieldassay_cases', results: 'fieldassay_results' } as const;
+
 /** Far beyond any case: a worker that is there but does nothing any more loses its case after this. */
 const EXPIRE_SECONDS = 30 * 86_400;
 
@@ -150,6 +153,7 @@ export class CaseQueue {
             { db: adapter(db) },
           );
         await this.#boss.insert(jobs, { db: adapter(db) });
+        await db.query(`notify ${CHANNELS.cases}`);
       });
     }
   }
@@ -210,6 +214,7 @@ export class CaseQueue {
         ],
       );
       if (await end(db, attempt, null)) await this.#boss.complete(job.name, job.id, {}, { db: adapter(db) });
+      await db.query(`notify ${CHANNELS.results}`);
     });
   }
 

@@ -2,7 +2,7 @@ import { memoryLimit } from '#platform';
 import type { Engine, SurveyRun } from '../run/survey.ts';
 import { type Entry, hashOf, keptOutcome, wholeSurvey } from '../run/surveyCases.ts';
 import type { Address } from './address.ts';
-import { CaseQueue, type SentCase } from './cases.ts';
+import { CaseQueue, CHANNELS, type SentCase } from './cases.ts';
 import { Connection, later } from './connection.ts';
 import { ownRelease } from './release.ts';
 
@@ -69,9 +69,12 @@ class Collection {
     await this.#collect();
     survey.meter.report();
     await this.#send();
+    const announced = await queue.connection.listen(CHANNELS.results);
     while (this.#waiting.size > 0) {
       await this.#look();
-      if (this.#waiting.size > 0) await later(LOOK_EVERY, survey.signal);
+      // Looking costs more than a result that is announced is worth, save towards the end.
+      if (this.#waiting.size > OUTCOMES_AT_ONCE) await later(LOOK_EVERY, survey.signal);
+      else if (this.#waiting.size > 0) await announced.wait(LOOK_EVERY, survey.signal);
     }
   }
 

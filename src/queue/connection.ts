@@ -3,6 +3,31 @@ import pg from 'pg';
 import type { Address } from './address.ts';
 import { CONNECT_SECONDS, codeOf, isCollision, isFull, isLoss, ServerError, told } from './errors.ts';
 
+/** Wakes who waits for it; rung while nobody does, it wakes the next at once. */
+export class Bell {
+  #rung = false;
+  #wake = () => {};
+
+  ring(): void {
+    this.#rung = true;
+    this.#wake();
+  }
+
+  /** Waits for it, no longer than so many milliseconds. @throws the signal's reason when aborted */
+  async wait(longest: number, signal?: AbortSignal): Promise<void> {
+    const woken = new AbortController();
+    const wake = () => woken.abort();
+    this.#wake = wake;
+    signal?.addEventListener('abort', wake, { once: true });
+    if (this.#rung || signal?.aborted) wake();
+    await later(longest, woken.signal).catch(() => {});
+    signal?.removeEventListener('abort', wake);
+    this.#wake = () => {};
+    this.#rung = false;
+    signal?.throwIfAborted();
+  }
+}
+
 /** Runs statements: in a transaction, or each by itself. */
 export interface Statements {
   query<Row = Record<string, unknown>>(text: string, values?: readonly unknown[]): Promise<Row[]>;
@@ -35,6 +60,8 @@ export class Connection {
   patient = false;
   /** when the server was last lost; undefined while it is there */
   #lostAt: number | undefined;
+  /** rung by what the server says on a channel */
+  readonly #bells = new Map<string, Bell>();
   readonly #greetings: ((db: Statements) => Promise<void>)[] = [];
 
   private constructor(
@@ -71,6 +98,16 @@ export class Connection {
   async greet(act: (db: Statements) => Promise<void>): Promise<void> {
     await this.#inTurn((client) => act(statements(client)));
     this.#greetings.push(act);
+  }
+
+  /** Hears from now on what anybody says on a channel, `notify`. What is said while the connection is lost is not heard. */
+  async listen(channel: string): Promise<Bell> {
+    const bell = new Bell();
+    this.#bells.set(channel, bell);
+    await this.greet(async (db) => {
+      await db.query(`listen ${channel}`);
+    });
+    return bell;
   }
 
   /**
@@ -178,6 +215,7 @@ export class Connection {
       client.on('error', () => {
         if (this.#client === client) this.#drop();
       });
+      client.on('notification', ({ channel }) => this.#bells.get(channel)?.ring());
       try {
         await client.connect();
         await checkKind(client, this.address);
@@ -243,6 +281,7 @@ export async function later(milliseconds: number, signal?: AbortSignal): Promise
       done();
     }
     signal?.addEventListener('abort', end, { once: true });
+    if (signal?.aborted) end();
   });
   signal?.throwIfAborted();
 }

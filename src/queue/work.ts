@@ -8,11 +8,11 @@ import { runCase } from '../run/surveyCase.ts';
 import { asWritten, shareKey } from '../run/surveyCases.ts';
 import { SHARED } from '../run/surveyPool.ts';
 import type { Address } from './address.ts';
-import { CaseQueue, type Taken } from './cases.ts';
-import { Connection, later } from './connection.ts';
+import { CaseQueue, CHANNELS, type Taken } from './cases.ts';
+import { Bell, Connection, later } from './connection.ts';
 import { ownRelease, releaseText } from './release.ts';
 
-/** Looking for cases while there are none, milliseconds. */
+/** Looking for cases while there are none and none is announced, milliseconds. */
 const LOOK_EVERY = 500;
 const UPKEEP_EVERY = 2000;
 
@@ -59,6 +59,7 @@ class Worker {
   /** aborted when nothing more is to be done here, with the reason where that is an error */
   readonly #over = new AbortController();
   #saidTooLarge = false;
+  #announced = new Bell();
 
   constructor(
     readonly queue: CaseQueue,
@@ -75,6 +76,7 @@ class Worker {
     const over = this.#over.signal;
     await this.#refuseOthers();
     await queue.appear({ role: 'worker', threads: this.#threads });
+    this.#announced = await queue.connection.listen(CHANNELS.cases);
     queue.connection.patient = true;
     const { address } = queue.connection;
     say(
@@ -179,7 +181,8 @@ class Worker {
 
   async #pause(): Promise<void> {
     const { stop } = this.options;
-    await Promise.race([later(LOOK_EVERY, stop).catch(() => {}), ...(this.#running.size > 0 ? [this.#oneEnds()] : [])]);
+    const announced = this.#announced.wait(LOOK_EVERY, stop).catch(() => {});
+    await Promise.race([announced, ...(this.#running.size > 0 ? [this.#oneEnds()] : [])]);
   }
 
   async #housekeep(): Promise<void> {

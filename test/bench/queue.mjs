@@ -10,7 +10,7 @@
  *   node test/bench/queue.mjs [--rounds 3]
  */
 import { spawn } from 'node:child_process';
-import { mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
+import { existsSync, mkdtempSync, readFileSync, rmSync, writeFileSync } from 'node:fs';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
@@ -51,12 +51,31 @@ function start(args, cwd) {
   return running;
 }
 
-async function timed(args, cwd) {
+/** Processor time that a running process has spent, s, by Linux's account in hundredths; NaN elsewhere. */
+function spent(pid) {
+  const stat = `/proc/${pid}/stat`;
+  if (!existsSync(stat)) return Number.NaN;
+  const fields = readFileSync(stat, 'utf8')
+    .replace(/^.*\) /, '')
+    .split(' ');
+  return (Number(fields[11]) + Number(fields[12])) / 100;
+}
+
+/** Wall time and processor time of a command, s: its own, and what others have spent meanwhile. */
+async function timed(args, cwd, others = []) {
+  const spentThere = () => others.reduce((sum, { child }) => sum + spent(child.pid), 0);
+  const before = spentThere();
   const started = performance.now();
   const running = start(args, cwd);
+  let own = 0;
+  // Its account ends with it.
+  const look = setInterval(() => {
+    own = spent(running.child.pid) || own;
+  }, 20);
   const status = await running.ended;
+  clearInterval(look);
   if (status !== 0) throw new Error(`${args.join(' ')} ended with status ${status}: ${running.said}`);
-  return (performance.now() - started) / 1000;
+  return { wall: (performance.now() - started) / 1000, cpu: own + spentThere() - before };
 }
 
 async function readyWorkers(url, cwd) {
@@ -94,8 +113,8 @@ export async function benchQueue(rounds = 3) {
       await server.newDatabase(database);
       const url = server.url(database);
       const workers = await readyWorkers(url, folder);
-      const cold = await timed(['survey', 'first.json', '--out', `queue-${round}`, '--queue', url], folder);
-      const warm = await timed(['survey', 'second.json', '--out', 'second', '--queue', url], folder);
+      const cold = await timed(['survey', 'first.json', '--out', `queue-${round}`, '--queue', url], folder, workers);
+      const warm = await timed(['survey', 'second.json', '--out', 'second', '--queue', url], folder, workers);
       for (const { child, ended } of workers) {
         child.kill('SIGINT');
         await ended;
@@ -104,13 +123,15 @@ export async function benchQueue(rounds = 3) {
       const here = async (name) =>
         await timed(['survey', `${name}.json`, '--out', `pool-${name}-${round}`, '--threads', `${WORKERS}`], folder);
       const pool = await here('first');
-      const poolWarm = (await here('both')) - pool + (await here('first'));
+      const [both, known] = [await here('both'), await here('first')];
+      const poolWarm = { wall: both.wall - pool.wall + known.wall, cpu: both.cpu - pool.cpu + known.cpu };
       const [a, b] = ['queue', 'pool-first'].map((who) => timeless(join(folder, `${who}-${round}/survey-result.json`)));
       if (a !== b) throw new Error('the results differ');
-      const [overCold, overWarm] = [cold / pool - 1, warm / poolWarm - 1];
-      runs.push({ cold, warm, pool, poolWarm, overCold, overWarm, between: Number(share) });
+      const over = (a, b) => ({ wall: a.wall / b.wall - 1, cpu: a.cpu / b.cpu - 1 });
+      const overs = { overCold: over(cold, pool), overWarm: over(warm, poolWarm) };
+      runs.push({ cold, warm, pool, poolWarm, ...overs, between: Number(share) });
     }
-    const of = (key) => runs.map((run) => run[key]);
+    const of = (key, time = 'wall') => runs.map((run) => run[key][time]);
     return {
       title: 'A survey of twelve cases by four workers through a queue, against four threads of one process',
       results: [
@@ -123,7 +144,10 @@ export async function benchQueue(rounds = 3) {
           overCold: median(of('overCold')),
           overWarm: median(of('overWarm')),
           overWarmRange: range(of('overWarm')),
-          betweenCases: median(of('between')),
+          // beside other work processor time tells more than the clock
+          overColdProcessor: median(of('overCold', 'cpu')),
+          overWarmProcessor: median(of('overWarm', 'cpu')),
+          betweenCases: median(runs.map(({ between }) => between)),
           runs,
         },
       ],

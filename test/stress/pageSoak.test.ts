@@ -6,11 +6,13 @@ import { launchBrowser } from '../page/browser.ts';
 import { finished, openPage, settled } from '../page/open.ts';
 import { serveBuiltPage } from '../page/server.ts';
 import { SMALL } from '../page/small.ts';
-import { trendOf } from './steadiness.ts';
+import { floorsOf, trendOf } from './steadiness.ts';
 
 /** Changes of the scenario, each run to its end; so many of them before anything is measured. */
 const ROUNDS = 50;
 const WARM = 10;
+/** The least of so many in a row is what is held. */
+const ROW = 5;
 
 /**
  * What a round may leave behind, at most. A film's pictures and its result are some megabytes, a worker's heap as much: a
@@ -75,10 +77,16 @@ test('the page holds no more after fifty runs than after ten', async () => {
   }
   const measured = rounds.slice(WARM);
   const trends = (Object.keys(MOST) as (keyof typeof MOST)[]).map((key) => {
-    const values = measured.map((each) => each[key]);
-    const { rise, error } = trendOf(values);
-    console.log(`${key}: ${values[0]}, at last ${values.at(-1)}; ${rise.toFixed(2)} ± ${error.toFixed(2)} a round`);
-    return { key, rise, error };
+    const floors = floorsOf(
+      measured.map((each) => each[key]),
+      ROW,
+    );
+    const { rise, error } = trendOf(floors);
+    console.log(
+      `${key}: ${floors.join(' ')}, ${ROW} rounds each; ` +
+        `${(rise / ROW).toFixed(2)} ± ${(error / ROW).toFixed(2)} a round, at most ${MOST[key]}`,
+    );
+    return { key, rise: rise / ROW, error: error / ROW };
   });
   for (const { key, rise, error } of trends) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
   const workers = rounds.map((each) => each.workers);

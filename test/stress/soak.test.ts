@@ -5,18 +5,20 @@ import { join } from 'node:path';
 import { createInterface } from 'node:readline';
 import { expect, onTestFinished, test } from 'vitest';
 import { SMALL } from '../run/surveyFolder.ts';
-import { trendOf } from './steadiness.ts';
+import { floorsOf, trendOf } from './steadiness.ts';
 
 /** For so long rounds follow each other in one process, minutes. */
 const MINUTES = 8;
 /** Rounds before anything is measured: code is compiled and pools of memory fill. */
 const WARM = 20;
 
+/** The least of so many rounds in a row is what is held. */
+const ROW = 8;
+
 /**
  * What may be added a round, bytes, at most. The least that a round could leave behind is one comparison's answer (above
- * 1 MB: its volume samples are typed arrays, its result some 100 kB of objects) or one team of workers (a thread's stack and
- * heap, several MB), so that a tenth of the answer and half of the result tell a leak from none. What the system counts
- * plays more than what the engine counts.
+ * 1 MB: its volume samples are typed arrays, its result some 100 kB of objects) or a worker (a thread's heap and stack,
+ * several MB), so that a tenth of the answer, or half of the result, tells a leak from none.
  */
 const MOST = { rss: 100e3, heapUsed: 50e3, arrayBuffers: 100e3, external: 100e3 } as const;
 
@@ -50,18 +52,20 @@ test('memory stays flat over comparisons without end', async () => {
   const taken: Taken[] = [];
   for await (const line of createInterface(child.stdout)) taken.push(JSON.parse(line));
   expect(child.exitCode ?? (await new Promise((done) => child.once('close', done)))).toBe(0);
-  // Fewer could not tell a rise of a tenth of a megabyte from an allocator's play.
   const measured = taken.slice(WARM);
-  expect(measured.length).toBeGreaterThan(60);
+  // Fewer could not tell a rise of a tenth of a megabyte from an allocator's play.
+  expect(measured.length).toBeGreaterThanOrEqual(8 * ROW);
   const trends = (Object.keys(MOST) as (keyof typeof MOST)[]).map((key) => {
-    const values = measured.map((each) => each[key]);
-    const { rise, error } = trendOf(values);
-    const megabytes = (n: number) => (values[n]! / 1e6).toFixed(1);
-    console.log(
-      `${key}: ${megabytes(0)} MB, after ${values.length} rounds more ${megabytes(values.length - 1)} MB; ` +
-        `${(rise / 1e3).toFixed(1)} ± ${(error / 1e3).toFixed(1)} kB a round, at most ${MOST[key] / 1e3} kB`,
+    const floors = floorsOf(
+      measured.map((each) => each[key]),
+      ROW,
     );
-    return { key, rise, error };
+    const { rise, error } = trendOf(floors);
+    console.log(
+      `${key}: ${floors.map((n) => (n / 1e6).toFixed(1)).join(' ')} MB, ${ROW} rounds each; ` +
+        `${(rise / ROW / 1e3).toFixed(1)} ± ${(error / ROW / 1e3).toFixed(1)} kB a round, at most ${MOST[key] / 1e3} kB`,
+    );
+    return { key, rise: rise / ROW, error: error / ROW };
   });
   // Two standard errors: what is not surely below the bound does not pass.
   for (const { key, rise, error } of trends) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
