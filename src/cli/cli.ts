@@ -249,7 +249,11 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
       '--out <file>',
       'required: CSV to write: axis,i,j,k,x,y,z,length, then the current at each instant that the header names, SI units',
     )
-    .addHelpText('after', '\nExample: fieldassay currents tilted-wire --out edges.csv\n')
+    .addHelpText(
+      'after',
+      '\nThe current at (n+½)Δt drives E from nΔt to (n+1)Δt: −(Δt/ε) · current/(area of the face that the edge pierces).\n' +
+        '\nExample: fieldassay currents tilted-wire --out edges.csv\n',
+    )
     .action((name: string, { out }: { out: string }) => writeWhole(out, currentsCommand(readScenario(name))));
 
   program
