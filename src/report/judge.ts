@@ -113,11 +113,14 @@ function rowsOf({ observers }: Judgement): {
   );
 }
 
+/** A cause that explains less of what is wrong is not worth reading. */
+const WORTH = 0.005;
+
 /** The likeliest cause, then those that explain most, as many as are worth reading; none where nothing is to be explained. */
 function shownCauses({ causes }: Judgement): TriedCause[] {
   const [best, ...others] = causes.tried;
   if (causes.status === 'sound' || !best) return [];
-  const telling = others.filter(({ explained }) => explained > 0).sort((a, b) => b.explained - a.explained);
+  const telling = others.filter(({ explained }) => explained >= WORTH).sort((a, b) => b.explained - a.explained);
   return [best, ...telling].slice(0, 6);
 }
 
