@@ -23,7 +23,7 @@ import { readHdf5 } from '../files/hdf5Reader.ts';
 import { unzipped } from '../files/unzipped.ts';
 import { readImage } from '../files/vtiReader.ts';
 import { launchBrowser } from './browser.ts';
-import { dropOn, finished, judged, openPage, settled, textOfPage } from './open.ts';
+import { dropOn, finished, judged, type Opened, openPage, settled, textOfPage } from './open.ts';
 import { COMMAND, type Served, serveBuiltPage } from './server.ts';
 import { SMALL } from './small.ts';
 
@@ -52,8 +52,14 @@ async function enter(page: Page, scenario: unknown): Promise<void> {
 }
 
 describe('the page with its own scenario', () => {
+  let opened: Opened;
+  beforeAll(async () => {
+    opened = await openPage(browser, served.url);
+  });
+  afterAll(() => opened?.page.context().close());
+
   test('says what the command line says, to every printed digit, with no GPU and no complaint', async () => {
-    const { page, troubles, requests } = await openPage(browser, served.url);
+    const { page, troubles, requests } = opened;
     const promise = await page.evaluate(() => ({
       isolated: crossOriginIsolated,
       webgl2: document.createElement('canvas').getContext('webgl2'),
@@ -100,11 +106,11 @@ describe('the page with its own scenario', () => {
 
     expect(requests.filter((url) => !url.startsWith(served.url) && !url.startsWith('data:'))).toEqual([]);
     expect(troubles).toEqual([]);
-    await page.context().close();
   });
 
   test('colours are the fields: grid by a run of its own, exact by the integral, difference by both', async () => {
-    const { page } = await openPage(browser, served.url, { viewport: { width: 1440, height: 1000 } });
+    const { page } = opened;
+    await page.setViewportSize({ width: 1440, height: 1000 });
     await finished(page);
     await page.evaluate(() => {
       fieldassay.store.state.playing = false;
@@ -182,7 +188,6 @@ describe('the page with its own scenario', () => {
       expect(tally[n]).toBeGreaterThan(30);
       expect(worst[n]).toBeLessThan(0.51);
     }
-    await page.context().close();
   }, 240_000);
 });
 
@@ -230,31 +235,6 @@ describe('the page, used', () => {
       run: fieldassay.store.state.run.status,
     }));
     expect([duration, run]).toEqual(['2.5 ns', 'done']);
-    expect(troubles).toEqual([]);
-    await page.context().close();
-  });
-
-  test('a bad file is refused in words and changes nothing; an unsound one is shown with its lines', async () => {
-    const { page, troubles } = await openPage(browser, small);
-    await judged(page);
-    const before = await page.evaluate(() => fieldassay.store.state.text);
-    await dropOn(page, 'broken.json', '{ "sources": [ }');
-    await page.getByRole('alert').waitFor();
-    expect(await page.getByRole('alert').textContent()).toMatch(/broken\.json was not opened.*line 1/s);
-    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
-    await dropOn(page, 'list.json', '[1, 2]');
-    await page.getByRole('alert').nth(1).waitFor();
-    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
-
-    const unsound = JSON.stringify({ ...SMALL, duration: 'long' }, null, 2);
-    await dropOn(page, 'unsound.json', unsound);
-    await page.locator('.problems button').first().waitFor();
-    const line = unsound.split('\n').findIndex((text) => text.includes('"duration"')) + 1;
-    expect(await textOfPage(page, '.problems')).toContain(`Line ${line}:`);
-    await page.keyboard.press('Control+z');
-    await page.locator('#sentence').click();
-    await page.keyboard.press('Control+z');
-    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
     expect(troubles).toEqual([]);
     await page.context().close();
   });
@@ -381,30 +361,6 @@ describe('the page, used', () => {
     await page.context().close();
   });
 
-  test('says at the field what is wrong, with the way back as a button', async () => {
-    const { page, troubles } = await openPage(browser, small);
-    await judged(page);
-    const sentence = await textOfPage(page, '#sentence');
-    const courant = page.locator('.lil-controller', { hasText: 'Courant number' }).locator('input');
-    await page.evaluate(() =>
-      fieldassay.store.edit((draft) => {
-        draft.grid.courant = 1.5;
-      }),
-    );
-    const problem = page.locator('.problem');
-    await problem.waitFor();
-    expect(await problem.textContent()).toMatch(/courant.*1\.5/i);
-    expect(await courant.inputValue()).toBe('1.5');
-    expect(await textOfPage(page, '#run')).toContain('Not run');
-    expect(await textOfPage(page, '#sentence')).toBe(sentence);
-    await problem.getByRole('button').click();
-    await page.waitForFunction(() => fieldassay.store.state.problems.length === 0);
-    expect(await problem.count()).toBe(0);
-    expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
-    expect(troubles).toEqual([]);
-    await page.context().close();
-  });
-
   test('does by keyboard what the pointer does', async () => {
     const { page, troubles } = await openPage(browser, small);
     await finished(page);
@@ -511,6 +467,60 @@ describe('the page, used', () => {
     await page.waitForFunction(() => document.querySelector('#charts')?.textContent?.includes('observer probe'));
     expect(troubles).toEqual([]);
     await page.context().close();
+  });
+});
+
+describe('what is wrong', () => {
+  let opened: Opened;
+  beforeAll(async () => {
+    opened = await openPage(browser, small);
+    await judged(opened.page);
+  });
+  afterAll(() => opened?.page.context().close());
+
+  test('is said at the field, with the way back as a button', async () => {
+    const { page, troubles } = opened;
+    const sentence = await textOfPage(page, '#sentence');
+    const courant = page.locator('.lil-controller', { hasText: 'Courant number' }).locator('input');
+    await page.evaluate(() =>
+      fieldassay.store.edit((draft) => {
+        draft.grid.courant = 1.5;
+      }),
+    );
+    const problem = page.locator('.problem');
+    await problem.waitFor();
+    expect(await problem.textContent()).toMatch(/courant.*1\.5/i);
+    expect(await courant.inputValue()).toBe('1.5');
+    expect(await textOfPage(page, '#run')).toContain('Not run');
+    expect(await textOfPage(page, '#sentence')).toBe(sentence);
+    await problem.getByRole('button').click();
+    await page.waitForFunction(() => fieldassay.store.state.problems.length === 0);
+    expect(await problem.count()).toBe(0);
+    expect(await page.evaluate(() => fieldassay.store.state.json)).toEqual(SMALL);
+    expect(troubles).toEqual([]);
+  });
+
+  test('a bad file is refused in words and changes nothing; an unsound one is shown with its lines', async () => {
+    const { page, troubles } = opened;
+    const before = await page.evaluate(() => fieldassay.store.state.text);
+    await dropOn(page, 'broken.json', '{ "sources": [ }');
+    await page.getByRole('alert').waitFor();
+    expect(await page.getByRole('alert').textContent()).toMatch(/broken\.json was not opened.*line 1/s);
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+    await dropOn(page, 'list.json', '[1, 2]');
+    await page.getByRole('alert').nth(1).waitFor();
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+
+    const unsound = JSON.stringify({ ...SMALL, duration: 'long' }, null, 2);
+    await dropOn(page, 'unsound.json', unsound);
+    await page.locator('.problems button').first().waitFor();
+    const line = unsound.split('\n').findIndex((text) => text.includes('"duration"')) + 1;
+    expect(await textOfPage(page, '.problems')).toContain(`Line ${line}:`);
+    await page.keyboard.press('Control+z');
+    await page.locator('#sentence').click();
+    await page.keyboard.press('Control+z');
+    expect(await page.evaluate(() => fieldassay.store.state.text)).toBe(before);
+    expect(troubles).toEqual([]);
   });
 });
 
@@ -646,34 +656,15 @@ interface Scanner {
 }
 
 describe('the page for everybody', () => {
-  for (const colorScheme of ['light', 'dark'] as const)
-    test(`an accessibility scan finds nothing, ${colorScheme}`, async () => {
+  test.each([
+    { width: 1024, height: 700, colorScheme: 'dark' },
+    { width: 1280, height: 800, colorScheme: 'light' },
+    { width: 3840, height: 2160, colorScheme: 'light' },
+  ] as const)(
+    'at $width × $height, $colorScheme, nothing is cut off, and an accessibility scan finds nothing',
+    async ({ width, height, colorScheme }) => {
       const axe = readFileSync(resolve('node_modules/axe-core/axe.min.js'), 'utf8');
-      const { page } = await openPage(browser, small, { colorScheme }, axe);
-      await finished(page);
-      for (const state of ['panels', 'text', 'menu']) {
-        if (state === 'text') await page.getByRole('button', { name: 'Text', exact: true }).click();
-        if (state === 'menu') await page.getByRole('button', { name: 'Save ▾' }).click();
-        const violations = await page.evaluate(async () => {
-          const { violations: found } = await (globalThis as unknown as { axe: Scanner }).axe.run();
-          return found.flatMap(({ id, nodes }) =>
-            nodes.map(({ html, failureSummary }) => `${id}: ${html} ${failureSummary}`),
-          );
-        });
-        expect(violations, `${state}, ${colorScheme}`).toEqual([]);
-      }
-      await page.context().close();
-    });
-
-  for (const [width, height] of [
-    [1024, 700],
-    [1280, 800],
-    [3840, 2160],
-  ] as const)
-    test(`at ${width} × ${height} nothing is cut off`, async () => {
-      const { page } = await openPage(browser, small, {
-        viewport: { width, height },
-      });
+      const { page } = await openPage(browser, small, { viewport: { width, height }, colorScheme }, axe);
       await finished(page);
       const wide = await page.evaluate(() => document.documentElement.scrollWidth - innerWidth);
       expect(wide).toBeLessThanOrEqual(0);
@@ -683,8 +674,20 @@ describe('the page for everybody', () => {
       }));
       expect(panes).toBeGreaterThanOrEqual(240);
       expect(timeline).toBeLessThanOrEqual(height);
+      for (const state of ['panels', 'text', 'menu']) {
+        if (state === 'text') await page.getByRole('button', { name: 'Text', exact: true }).click();
+        if (state === 'menu') await page.getByRole('button', { name: 'Save ▾' }).click();
+        const violations = await page.evaluate(async () => {
+          const { violations: found } = await (globalThis as unknown as { axe: Scanner }).axe.run();
+          return found.flatMap(({ id, nodes }) =>
+            nodes.map(({ html, failureSummary }) => `${id}: ${html} ${failureSummary}`),
+          );
+        });
+        expect(violations, state).toEqual([]);
+      }
       await page.context().close();
-    });
+    },
+  );
 });
 
 test('the bundle holds no WebGL renderer', () => {
