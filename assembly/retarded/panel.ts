@@ -41,11 +41,14 @@ const SLOPE: usize = 0xa00;
 const CHARGE_MOVED: usize = 0xa80;
 const CURRENT_MOVED: usize = 0xb00;
 const SAMPLES: usize = 0xb80;
-/** Of E, B, φ and A: Σ weight·rounding. */
+/** Of E, B, φ and A: Σ weight·rounding, apart from that of the formulas. */
 const NOISE: usize = 0x1080;
 /** Σ weight·sample by component. */
 const SUMS: usize = 0x10a0;
-/** Of E, B, φ and A: Σ weight·|sample|, and eight squares, of degrees 7 … 14. */
+/**
+ * Of E, B, φ and A: Σ weight·|sample|, with the sum of components for the size of a vector and terms of different slowness
+ * taken one by one; and eight squares, of degrees 7 … 14.
+ */
 const SIZES: usize = 0x1100;
 const SQUARES: usize = 0x1120;
 /** The earliest and the latest source time. */
@@ -69,178 +72,262 @@ function sumOf(v: v128): f64 {
   return f64x2.extract_lane(v, 0) + f64x2.extract_lane(v, 1);
 }
 
-/** Begins a part: no samples, no noise, no waves. */
-export function begin(): void {
-  memory.fill(panel + CHARGE, 0, SUMS - CHARGE);
+/** Two sums over lanes, one in each lane. */
+@inline
+function sumsOf(a: v128, b: v128): v128 {
+  return f64x2.add(v128.shuffle<f64>(a, b, 0, 2), v128.shuffle<f64>(a, b, 1, 3));
+}
+
+/** What was there before is kept, or nothing. */
+@inline
+function kept(before: v128, keep: v128): v128 {
+  return v128.and(before, keep);
+}
+
+@inline
+function maskOf(fresh: bool): v128 {
+  return i64x2.splat(fresh ? 0 : -1);
 }
 
 /**
- * Nodes of a stretch of a straight line.
+ * Nodes of a stretch of a straight line, and source times of a first term.
  * @param foot arc length of the foot of the observer's perpendicular
  * @param rho2 squared length of the perpendicular
  */
-export function lookAlong(foot: f64, rho2: f64, middle: f64, half: f64): void {
+export function lookAlong(foot: f64, rho2: f64, middle: f64, half: f64, late: f64, slowness: f64): void {
+  const centre = f64x2.splat(middle);
+  const scale = f64x2.splat(half);
+  const base = f64x2.splat(foot);
+  const square = f64x2.splat(rho2);
+  const one = f64x2.splat(1);
   for (let at = panel, end = at + ROW; at < end; at += 16) {
-    const s = f64x2.add(f64x2.splat(middle), f64x2.mul(f64x2.splat(half), v128.load(at, NODES)));
-    const along = f64x2.sub(f64x2.splat(foot), s);
-    const r = f64x2.sqrt(f64x2.add(f64x2.splat(rho2), f64x2.mul(along, along)));
+    const s = f64x2.add(centre, f64x2.mul(scale, v128.load(at, NODES)));
+    const along = f64x2.sub(base, s);
+    const r = f64x2.sqrt(f64x2.add(square, f64x2.mul(along, along)));
     v128.store(at, s, ARC);
     v128.store(at, along, X);
     v128.store(at, r, DISTANCE);
-    v128.store(at, f64x2.div(f64x2.splat(1), r), INVERSE);
+    v128.store(at, f64x2.div(one, r), INVERSE);
   }
+  lookBack(late, slowness);
 }
 
 /** Source times t − delay − p s − R/v of all nodes. @param late t − delay */
 export function lookBack(late: f64, slowness: f64): void {
+  const start = f64x2.splat(late);
+  const p = f64x2.splat(slowness);
+  const v1 = f64x2.splat(perSpeed);
   let lowest = f64x2.splat(Infinity);
   let highest = f64x2.splat(-Infinity);
   for (let at = panel, end = at + ROW; at < end; at += 16) {
-    const launched = f64x2.sub(f64x2.splat(late), f64x2.mul(f64x2.splat(slowness), v128.load(at, ARC)));
-    const u = f64x2.sub(launched, f64x2.mul(v128.load(at, DISTANCE), f64x2.splat(perSpeed)));
+    const launched = f64x2.sub(start, f64x2.mul(p, v128.load(at, ARC)));
+    const u = f64x2.sub(launched, f64x2.mul(v128.load(at, DISTANCE), v1));
     v128.store(at, u, INSTANT);
-    lowest = f64x2.min(lowest, u);
-    highest = f64x2.max(highest, u);
+    lowest = f64x2.pmin(lowest, u);
+    highest = f64x2.pmax(highest, u);
   }
   store<f64>(panel, Math.min(f64x2.extract_lane(lowest, 0), f64x2.extract_lane(lowest, 1)), LOWEST);
   store<f64>(panel, Math.max(f64x2.extract_lane(highest, 0), f64x2.extract_lane(highest, 1)), HIGHEST);
 }
 
 /**
- * Adds factor·wave(u) to one of the sums of waves; before the waveform's start it is 0. A waveform is a polynomial about
- * there, in x = (u − middle)·perHalf.
- * @param coefficients of falling powers, `degree` + 1 of them
- * @param into CHARGE, CURRENT or SLOPE
- * @param moved where |wave|·shift is added: what the rounding of u does to the integral of this one
+ * Adds factor·wave to a sum of waves, and |wave|·shift to what the rounding of u does to the integral of that wave.
+ * @param begun all bits where the waveform has begun, else none
+ * @param moved 0 for the charge, whose integral nothing asks for
  */
 @inline
-function addPolynomial(
-  coefficients: usize,
-  degree: i32,
-  middle: f64,
-  perHalf: f64,
-  factor: f64,
+function addWave(
+  at: usize,
+  wave: v128,
+  begun: v128,
+  factor: v128,
+  shift: v128,
+  fresh: bool,
   into: usize,
-  shift: f64,
   moved: usize,
 ): void {
-  const end = coefficients + (<usize>degree << 3);
-  const zero = f64x2.splat(middle);
-  const scale = f64x2.splat(perHalf);
+  const felt = v128.and(wave, begun);
+  const added = f64x2.mul(factor, felt);
+  const place = at + into;
+  v128.store(place, fresh ? added : f64x2.add(v128.load(place), added));
+  if (moved == 0) return;
+  const shaken = f64x2.mul(shift, f64x2.abs(felt));
+  const rounded = at + moved;
+  v128.store(rounded, fresh ? shaken : f64x2.add(v128.load(rounded), shaken));
+}
+
+/**
+ * Adds a term at the source times of the nodes to the sums of waves. A window (src/retarded/windows.ts) is: middle, 1/half
+ * width, degree as i32, and from byte 32 on the coefficients of w, w′ and q in x = (u − middle)/half, of falling powers,
+ * three by three.
+ * @param shift |factor| times what u is rounded to, s
+ * @param charged whether q is asked for
+ * @param fresh whether the sums begin with this term
+ */
+export function addTerm(window: usize, factor: f64, shift: f64, charged: bool, fresh: bool): void {
+  if (fresh) addTermTo(window, factor, shift, charged, true);
+  else addTermTo(window, factor, shift, charged, false);
+}
+
+@inline
+function addTermTo(window: usize, factor: f64, shift: f64, charged: bool, fresh: bool): void {
+  const middle = f64x2.splat(load<f64>(window));
+  const perHalf = f64x2.splat(load<f64>(window, 8));
+  const first = window + 32;
+  const end = first + <usize>load<i32>(window, 16) * 24;
+  const gain = f64x2.splat(factor);
+  const shaken = f64x2.splat(shift);
+  const zero = f64x2.splat(0);
   for (let at = panel, last = at + ROW; at < last; at += 64) {
-    const x0 = f64x2.mul(f64x2.sub(v128.load(at, INSTANT), zero), scale);
-    const x1 = f64x2.mul(f64x2.sub(v128.load(at, INSTANT + 16), zero), scale);
-    const x2 = f64x2.mul(f64x2.sub(v128.load(at, INSTANT + 32), zero), scale);
-    const x3 = f64x2.mul(f64x2.sub(v128.load(at, INSTANT + 48), zero), scale);
-    let y0 = v128.load_splat<f64>(coefficients);
-    let y1 = y0;
-    let y2 = y0;
-    let y3 = y0;
-    for (let next = coefficients; next < end; ) {
-      next += 8;
+    const u0 = v128.load(at, INSTANT);
+    const begun0 = f64x2.ge(u0, zero);
+    const x0 = f64x2.mul(f64x2.sub(u0, middle), perHalf);
+    const u1 = v128.load(at, INSTANT + 16);
+    const begun1 = f64x2.ge(u1, zero);
+    const x1 = f64x2.mul(f64x2.sub(u1, middle), perHalf);
+    const u2 = v128.load(at, INSTANT + 32);
+    const begun2 = f64x2.ge(u2, zero);
+    const x2 = f64x2.mul(f64x2.sub(u2, middle), perHalf);
+    const u3 = v128.load(at, INSTANT + 48);
+    const begun3 = f64x2.ge(u3, zero);
+    const x3 = f64x2.mul(f64x2.sub(u3, middle), perHalf);
+    let w0 = v128.load_splat<f64>(first);
+    let w1 = w0;
+    let w2 = w0;
+    let w3 = w0;
+    let d0 = v128.load_splat<f64>(first, 8);
+    let d1 = d0;
+    let d2 = d0;
+    let d3 = d0;
+    for (let next = first; next < end; ) {
+      next += 24;
       const c = v128.load_splat<f64>(next);
-      y0 = f64x2.add(f64x2.mul(y0, x0), c);
-      y1 = f64x2.add(f64x2.mul(y1, x1), c);
-      y2 = f64x2.add(f64x2.mul(y2, x2), c);
-      y3 = f64x2.add(f64x2.mul(y3, x3), c);
+      w0 = f64x2.add(f64x2.mul(w0, x0), c);
+      w1 = f64x2.add(f64x2.mul(w1, x1), c);
+      w2 = f64x2.add(f64x2.mul(w2, x2), c);
+      w3 = f64x2.add(f64x2.mul(w3, x3), c);
+      const e = v128.load_splat<f64>(next, 8);
+      d0 = f64x2.add(f64x2.mul(d0, x0), e);
+      d1 = f64x2.add(f64x2.mul(d1, x1), e);
+      d2 = f64x2.add(f64x2.mul(d2, x2), e);
+      d3 = f64x2.add(f64x2.mul(d3, x3), e);
     }
-    addWave(at, y0, factor, into, shift, moved);
-    addWave(at + 16, y1, factor, into, shift, moved);
-    addWave(at + 32, y2, factor, into, shift, moved);
-    addWave(at + 48, y3, factor, into, shift, moved);
+    addWave(at, w0, begun0, gain, shaken, fresh, CURRENT, CHARGE_MOVED);
+    addWave(at + 16, w1, begun1, gain, shaken, fresh, CURRENT, CHARGE_MOVED);
+    addWave(at + 32, w2, begun2, gain, shaken, fresh, CURRENT, CHARGE_MOVED);
+    addWave(at + 48, w3, begun3, gain, shaken, fresh, CURRENT, CHARGE_MOVED);
+    addWave(at, d0, begun0, gain, shaken, fresh, SLOPE, CURRENT_MOVED);
+    addWave(at + 16, d1, begun1, gain, shaken, fresh, SLOPE, CURRENT_MOVED);
+    addWave(at + 32, d2, begun2, gain, shaken, fresh, SLOPE, CURRENT_MOVED);
+    addWave(at + 48, d3, begun3, gain, shaken, fresh, SLOPE, CURRENT_MOVED);
+    if (!charged) continue;
+    let q0 = v128.load_splat<f64>(first, 16);
+    let q1 = q0;
+    let q2 = q0;
+    let q3 = q0;
+    for (let next = first; next < end; ) {
+      next += 24;
+      const c = v128.load_splat<f64>(next, 16);
+      q0 = f64x2.add(f64x2.mul(q0, x0), c);
+      q1 = f64x2.add(f64x2.mul(q1, x1), c);
+      q2 = f64x2.add(f64x2.mul(q2, x2), c);
+      q3 = f64x2.add(f64x2.mul(q3, x3), c);
+    }
+    addWave(at, q0, begun0, gain, shaken, fresh, CHARGE, 0);
+    addWave(at + 16, q1, begun1, gain, shaken, fresh, CHARGE, 0);
+    addWave(at + 32, q2, begun2, gain, shaken, fresh, CHARGE, 0);
+    addWave(at + 48, q3, begun3, gain, shaken, fresh, CHARGE, 0);
   }
 }
 
 @inline
-function addWave(at: usize, wave: v128, factor: f64, into: usize, shift: f64, moved: usize): void {
-  const felt = v128.and(wave, f64x2.ge(v128.load(at, INSTANT), f64x2.splat(0)));
-  v128.store(at + into, f64x2.add(v128.load(at + into), f64x2.mul(f64x2.splat(factor), felt)));
-  if (moved == 0) return;
-  const change = f64x2.mul(f64x2.splat(shift), f64x2.abs(felt));
-  v128.store(at + moved, f64x2.add(v128.load(at + moved), change));
-}
-
-export function addCharge(q: usize, degree: i32, middle: f64, perHalf: f64, factor: f64): void {
-  addPolynomial(q, degree, middle, perHalf, factor, CHARGE, 0, 0);
-}
-
-/** @param shift |factor| times what u is rounded to, s */
-export function addCurrent(w: usize, degree: i32, middle: f64, perHalf: f64, factor: f64, shift: f64): void {
-  addPolynomial(w, degree, middle, perHalf, factor, CURRENT, shift, CHARGE_MOVED);
-}
-
-export function addSlope(slope: usize, degree: i32, middle: f64, perHalf: f64, factor: f64, shift: f64): void {
-  addPolynomial(slope, degree, middle, perHalf, factor, SLOPE, shift, CURRENT_MOVED);
-}
-
-/** What q, w and w′ of the terms that share an element are rounded to, the last with what moves it. */
-let noiseOfCharge: f64 = 0;
-let noiseOfCurrent: f64 = 0;
-let noiseOfSlope: f64 = 0;
-
-export function setNoise(charge: f64, current: f64, slope: f64): void {
-  noiseOfCharge = charge;
-  noiseOfCurrent = current;
-  noiseOfSlope = slope;
-}
-
-@inline
-function addSample(at: usize, component: usize, sample: v128): void {
+function addSample(at: usize, component: usize, sample: v128, keep: v128): void {
   const place = at + component * ROW;
-  v128.store(place, f64x2.add(v128.load(place, SAMPLES), sample), SAMPLES);
+  v128.store(place, f64x2.add(kept(v128.load(place, SAMPLES), keep), sample), SAMPLES);
 }
 
+/** Adds sums over lanes to those of two quantities, from `group` on. */
 @inline
-function addNoise(group: usize, noise: v128): void {
-  const place = panel + (group << 3);
-  store<f64>(place, load<f64>(place, NOISE) + sumOf(noise), NOISE);
+function addPair(place: usize, group: usize, first: v128, second: v128, keep: v128): void {
+  const at = panel + place + (group << 3);
+  v128.store(at, f64x2.add(kept(v128.load(at), keep), sumsOf(first, second)));
 }
 
 /**
  * E and B of the sums of waves, which are of terms with one slowness and one amplitude along the wire.
  * @param straight the part is one of a line: components 0 E_P, 1 E_s, 2 B; else 0 … 2 E, 3 … 5 B
+ * @param shaped the amplitude is not 1 throughout
  * @param rho length of P, m
  */
 @inline
-function addFieldsOf(straight: bool, slowness: f64, rho: f64): void {
+function addFieldsOf(
+  straight: bool,
+  shaped: bool,
+  slowness: f64,
+  rho: f64,
+  fresh: bool,
+  noiseOfCharge: f64,
+  noiseOfCurrent: f64,
+  noiseOfSlope: f64,
+): void {
   const v1 = f64x2.splat(perSpeed);
+  const v2 = f64x2.splat(perSpeed * perSpeed);
   const p = f64x2.splat(slowness);
+  const sizeOfP = f64x2.splat(Math.abs(slowness));
   const width = f64x2.splat(rho);
-  const slopeNoise = f64x2.splat(noiseOfSlope);
+  const noiseQ = f64x2.splat(noiseOfCharge);
+  const noiseW = f64x2.splat(noiseOfCurrent);
+  const noiseD = f64x2.splat(noiseOfSlope);
+  const keep = maskOf(fresh);
   let noiseE = f64x2.splat(0);
-  let noiseB = f64x2.splat(0);
+  let noiseB = noiseE;
+  let sizeE = noiseE;
+  let sizeB = noiseE;
   for (let at = panel, end = at + ROW; at < end; at += 16) {
     const inverse = v128.load(at, INVERSE);
     const r = v128.load(at, DISTANCE);
-    const a = v128.load(at, AMPLITUDE);
-    const gradient = v128.load(at, GRADIENT);
-    const q = v128.load(at, CHARGE);
     const w = v128.load(at, CURRENT);
     const d = v128.load(at, SLOPE);
-    const weight = v128.load(at, WEIGHTS);
     const inverse2 = f64x2.mul(inverse, inverse);
-    const near = f64x2.mul(inverse2, inverse);
-    const far = f64x2.mul(inverse2, v1);
-    const carried = f64x2.mul(a, p);
-    const charge = f64x2.sub(f64x2.mul(carried, w), f64x2.mul(gradient, q));
-    const chargeRate = f64x2.sub(f64x2.mul(carried, d), f64x2.mul(gradient, w));
-    const radial = f64x2.add(f64x2.mul(charge, near), f64x2.mul(chargeRate, far));
-    const induced = f64x2.mul(a, f64x2.mul(f64x2.mul(inverse, v1), v1));
-    const magnetic = f64x2.mul(a, f64x2.add(f64x2.mul(w, near), f64x2.mul(d, far)));
-    // Coefficients of q, w and w′ in E and in B, their sizes.
-    const still = f64x2.mul(f64x2.abs(gradient), inverse2);
-    const moving = f64x2.mul(f64x2.abs(f64x2.sub(f64x2.mul(carried, near), f64x2.mul(gradient, far))), r);
-    const carriedFar = f64x2.mul(carried, far);
+    let near = f64x2.mul(inverse2, inverse);
+    let far = f64x2.mul(inverse2, v1);
+    let induced = f64x2.mul(inverse, v2);
+    let radial: v128;
+    let magnetic: v128;
+    let rounded = f64x2.add(noiseW, v128.load(at, CURRENT_MOVED));
+    let electric: v128;
+    if (shaped) {
+      const a = v128.load(at, AMPLITUDE);
+      const gradient = v128.load(at, GRADIENT);
+      const stays = f64x2.abs(gradient);
+      const nearCharge = f64x2.mul(f64x2.mul(stays, inverse2), f64x2.add(noiseQ, v128.load(at, CHARGE_MOVED)));
+      electric = f64x2.add(nearCharge, f64x2.mul(f64x2.mul(f64x2.mul(stays, far), r), rounded));
+      const left = f64x2.add(f64x2.mul(v128.load(at, CHARGE), near), f64x2.mul(w, far));
+      near = f64x2.mul(a, near);
+      far = f64x2.mul(a, far);
+      induced = f64x2.mul(a, induced);
+      magnetic = f64x2.add(f64x2.mul(w, near), f64x2.mul(d, far));
+      radial = f64x2.sub(f64x2.mul(p, magnetic), f64x2.mul(gradient, left));
+      near = f64x2.abs(near);
+    } else {
+      electric = f64x2.splat(0);
+      magnetic = f64x2.add(f64x2.mul(w, near), f64x2.mul(d, far));
+      radial = f64x2.mul(p, magnetic);
+    }
+    const carried = f64x2.mul(p, far);
     let radiated: v128;
     let turn: v128;
+    let size: v128;
     if (straight) {
       const along = v128.load(at, X);
-      addSample(at, 0, radial);
-      addSample(at, 1, f64x2.sub(f64x2.mul(radial, along), f64x2.mul(induced, d)));
-      addSample(at, 2, magnetic);
+      const axial = f64x2.sub(f64x2.mul(radial, along), f64x2.mul(induced, d));
+      addSample(at, 0, radial, keep);
+      addSample(at, 1, axial, keep);
+      addSample(at, 2, magnetic, keep);
+      size = f64x2.add(f64x2.mul(f64x2.abs(radial), width), f64x2.abs(axial));
       radiated = f64x2.add(
-        f64x2.mul(f64x2.abs(carriedFar), width),
-        f64x2.abs(f64x2.sub(f64x2.mul(carriedFar, along), induced)),
+        f64x2.abs(f64x2.mul(carried, width)),
+        f64x2.abs(f64x2.sub(f64x2.mul(carried, along), induced)),
       );
       turn = width;
     } else {
@@ -254,85 +341,87 @@ function addFieldsOf(straight: bool, slowness: f64, rho: f64): void {
       const cy = f64x2.sub(f64x2.mul(sz, x), f64x2.mul(sx, z));
       const cz = f64x2.sub(f64x2.mul(sx, y), f64x2.mul(sy, x));
       const drawn = f64x2.mul(induced, d);
-      addSample(at, 0, f64x2.sub(f64x2.mul(radial, x), f64x2.mul(drawn, sx)));
-      addSample(at, 1, f64x2.sub(f64x2.mul(radial, y), f64x2.mul(drawn, sy)));
-      addSample(at, 2, f64x2.sub(f64x2.mul(radial, z), f64x2.mul(drawn, sz)));
-      addSample(at, 3, f64x2.mul(magnetic, cx));
-      addSample(at, 4, f64x2.mul(magnetic, cy));
-      addSample(at, 5, f64x2.mul(magnetic, cz));
-      radiated = f64x2.add(f64x2.mul(f64x2.abs(carriedFar), r), induced);
+      const ex = f64x2.sub(f64x2.mul(radial, x), f64x2.mul(drawn, sx));
+      const ey = f64x2.sub(f64x2.mul(radial, y), f64x2.mul(drawn, sy));
+      const ez = f64x2.sub(f64x2.mul(radial, z), f64x2.mul(drawn, sz));
+      addSample(at, 0, ex, keep);
+      addSample(at, 1, ey, keep);
+      addSample(at, 2, ez, keep);
+      size = f64x2.add(f64x2.add(f64x2.abs(ex), f64x2.abs(ey)), f64x2.abs(ez));
+      addSample(at, 3, f64x2.mul(magnetic, cx), keep);
+      addSample(at, 4, f64x2.mul(magnetic, cy), keep);
+      addSample(at, 5, f64x2.mul(magnetic, cz), keep);
+      radiated = f64x2.add(f64x2.abs(f64x2.mul(carried, r)), f64x2.abs(induced));
       turn = f64x2.add(f64x2.add(f64x2.abs(cx), f64x2.abs(cy)), f64x2.abs(cz));
     }
-    const chargeNoise = f64x2.add(f64x2.splat(noiseOfCharge), v128.load(at, CHARGE_MOVED));
-    const currentNoise = f64x2.add(f64x2.splat(noiseOfCurrent), v128.load(at, CURRENT_MOVED));
-    const electric = f64x2.add(
-      f64x2.add(f64x2.mul(still, chargeNoise), f64x2.mul(moving, currentNoise)),
-      f64x2.mul(radiated, slopeNoise),
-    );
-    const around = f64x2.mul(
-      f64x2.mul(f64x2.abs(a), turn),
-      f64x2.add(f64x2.mul(near, currentNoise), f64x2.mul(far, slopeNoise)),
-    );
+    const weight = v128.load(at, WEIGHTS);
+    const nearNoise = f64x2.mul(near, rounded);
+    const farNoise = f64x2.mul(f64x2.abs(far), noiseD);
+    electric = f64x2.add(electric, f64x2.mul(f64x2.mul(sizeOfP, r), nearNoise));
+    electric = f64x2.add(electric, f64x2.mul(radiated, noiseD));
     noiseE = f64x2.add(noiseE, f64x2.mul(weight, electric));
-    noiseB = f64x2.add(noiseB, f64x2.mul(weight, around));
+    noiseB = f64x2.add(noiseB, f64x2.mul(weight, f64x2.mul(turn, f64x2.add(nearNoise, farNoise))));
+    sizeE = f64x2.add(sizeE, f64x2.mul(weight, size));
+    sizeB = f64x2.add(sizeB, f64x2.mul(weight, f64x2.mul(turn, f64x2.abs(magnetic))));
   }
-  addNoise(0, noiseE);
-  addNoise(1, noiseB);
+  addPair(NOISE, 0, noiseE, noiseB, keep);
+  addPair(SIZES, 0, sizeE, sizeB, keep);
 }
 
 /** φ and A of the sums of waves: components 3 φ and 4 A along a line, else 6 φ and 7 … 9 A. */
 @inline
-function addPotentialsOf(straight: bool, slowness: f64): void {
+function addPotentialsOf(
+  straight: bool,
+  shaped: bool,
+  slowness: f64,
+  fresh: bool,
+  noiseOfCharge: f64,
+  noiseOfCurrent: f64,
+): void {
   const p = f64x2.splat(slowness);
+  const sizeOfP = f64x2.splat(Math.abs(slowness));
+  const noiseQ = f64x2.splat(noiseOfCharge);
+  const noiseW = f64x2.splat(noiseOfCurrent);
+  const keep = maskOf(fresh);
   let noisePhi = f64x2.splat(0);
-  let noiseA = f64x2.splat(0);
+  let noiseA = noisePhi;
+  let sizePhi = noisePhi;
+  let sizeA = noisePhi;
   for (let at = panel, end = at + ROW; at < end; at += 16) {
     const inverse = v128.load(at, INVERSE);
-    const a = v128.load(at, AMPLITUDE);
-    const gradient = v128.load(at, GRADIENT);
-    const w = v128.load(at, CURRENT);
-    const weight = v128.load(at, WEIGHTS);
-    const carried = f64x2.mul(a, p);
-    const charge = f64x2.sub(f64x2.mul(carried, w), f64x2.mul(gradient, v128.load(at, CHARGE)));
-    const current = f64x2.mul(f64x2.mul(a, w), inverse);
-    addSample(at, straight ? 3 : 6, f64x2.mul(charge, inverse));
-    if (straight) addSample(at, 4, current);
-    else {
-      addSample(at, 7, f64x2.mul(current, v128.load(at, SX)));
-      addSample(at, 8, f64x2.mul(current, v128.load(at, SY)));
-      addSample(at, 9, f64x2.mul(current, v128.load(at, SZ)));
+    const rounded = f64x2.add(noiseW, v128.load(at, CURRENT_MOVED));
+    let current = v128.load(at, CURRENT);
+    let carried = f64x2.mul(p, current);
+    let noiseOfThis = rounded;
+    let scalar = f64x2.mul(sizeOfP, rounded);
+    if (shaped) {
+      const a = v128.load(at, AMPLITUDE);
+      const size = f64x2.abs(a);
+      const gradient = v128.load(at, GRADIENT);
+      const left = f64x2.mul(f64x2.abs(gradient), f64x2.add(noiseQ, v128.load(at, CHARGE_MOVED)));
+      carried = f64x2.sub(f64x2.mul(a, carried), f64x2.mul(gradient, v128.load(at, CHARGE)));
+      current = f64x2.mul(a, current);
+      noiseOfThis = f64x2.mul(size, rounded);
+      scalar = f64x2.add(f64x2.mul(size, scalar), left);
     }
-    const chargeNoise = f64x2.add(f64x2.splat(noiseOfCharge), v128.load(at, CHARGE_MOVED));
-    const currentNoise = f64x2.add(f64x2.splat(noiseOfCurrent), v128.load(at, CURRENT_MOVED));
-    const scalar = f64x2.add(
-      f64x2.mul(f64x2.abs(gradient), chargeNoise),
-      f64x2.mul(f64x2.abs(carried), currentNoise),
-    );
+    const scalarSample = f64x2.mul(carried, inverse);
+    const vector = f64x2.mul(current, inverse);
+    addSample(at, straight ? 3 : 6, scalarSample, keep);
+    if (straight) addSample(at, 4, vector, keep);
+    else {
+      addSample(at, 7, f64x2.mul(vector, v128.load(at, SX)), keep);
+      addSample(at, 8, f64x2.mul(vector, v128.load(at, SY)), keep);
+      addSample(at, 9, f64x2.mul(vector, v128.load(at, SZ)), keep);
+    }
+    const weight = v128.load(at, WEIGHTS);
+    sizePhi = f64x2.add(sizePhi, f64x2.mul(weight, f64x2.abs(scalarSample)));
+    sizeA = f64x2.add(sizeA, f64x2.mul(weight, f64x2.abs(vector)));
     const weighed = f64x2.mul(weight, inverse);
     noisePhi = f64x2.add(noisePhi, f64x2.mul(weighed, scalar));
-    noiseA = f64x2.add(noiseA, f64x2.mul(weighed, f64x2.mul(f64x2.abs(a), currentNoise)));
+    noiseA = f64x2.add(noiseA, f64x2.mul(weighed, noiseOfThis));
   }
-  addNoise(2, noisePhi);
-  addNoise(3, noiseA);
-}
-
-/** Fields of the sums of waves, which are of terms with one slowness and one amplitude; the sums begin anew after it. */
-export function addLine(slowness: f64, rho: f64, fields: bool, potentials: bool): void {
-  if (fields) addFieldsOf(true, slowness, rho);
-  if (potentials) addPotentialsOf(true, slowness);
-  memory.fill(panel + CHARGE, 0, SAMPLES - CHARGE);
-}
-
-export function addCurve(slowness: f64, fields: bool, potentials: bool): void {
-  if (fields) addFieldsOf(false, slowness, 0);
-  if (potentials) addPotentialsOf(false, slowness);
-  memory.fill(panel + CHARGE, 0, SAMPLES - CHARGE);
-}
-
-/** Two sums over lanes, one in each lane. */
-@inline
-function sumsOf(a: v128, b: v128): v128 {
-  return f64x2.add(v128.shuffle<f64>(a, b, 0, 2), v128.shuffle<f64>(a, b, 1, 3));
+  addPair(NOISE, 2, noisePhi, noiseA, keep);
+  addPair(SIZES, 2, sizePhi, sizeA, keep);
 }
 
 @inline
@@ -344,9 +433,10 @@ function dot(table: usize, offset: usize, a: v128, b: v128, c: v128, d: v128): v
 }
 
 /**
- * One quantity of a part, of `count` components: their sums, Σ weight·|quantity| and squares of its parts of high degree.
+ * One quantity of a part, of `count` components: their sums, and squares of what is in it of high degrees.
  * @param metric what the square of the first component counts
  */
+@inline
 function fold(group: usize, first: usize, count: usize, metric: f64): void {
   const table = panel;
   let square0 = f64x2.splat(0);
@@ -401,26 +491,62 @@ function fold(group: usize, first: usize, count: usize, metric: f64): void {
   v128.store(to, square1, SQUARES + 16);
   v128.store(to, square2, SQUARES + 32);
   v128.store(to, square3, SQUARES + 48);
-
-  let size = f64x2.splat(0);
-  for (let at = panel, end = at + ROW; at < end; at += 16) {
-    let from = at + first * ROW;
-    const sample = v128.load(from, SAMPLES);
-    let squared = f64x2.mul(f64x2.splat(metric), f64x2.mul(sample, sample));
-    for (let component: usize = 1; component < count; component++) {
-      from += ROW;
-      const other = v128.load(from, SAMPLES);
-      squared = f64x2.add(squared, f64x2.mul(other, other));
-    }
-    size = f64x2.add(size, f64x2.mul(v128.load(at, WEIGHTS), f64x2.sqrt(squared)));
-  }
-  store<f64>(panel + (group << 3), sumOf(size), SIZES);
 }
 
-export function foldLine(rho2: f64, fields: bool, potentials: bool): void {
+/**
+ * Fields of the sums of waves on a line, which are of terms with one slowness and one amplitude.
+ * @param fields whether E and B are asked for; `potentials`: φ and A
+ * @param shaped the amplitude is not 1 throughout
+ * @param fresh whether the samples begin with these
+ * @param charge what Σ q of the terms is rounded to; `current`: Σ w; `slope`: Σ w′, with what moves it
+ */
+export function addLine(
+  slowness: f64,
+  rho: f64,
+  fields: bool,
+  potentials: bool,
+  shaped: bool,
+  fresh: bool,
+  charge: f64,
+  current: f64,
+  slope: f64,
+): void {
   if (fields) {
-    fold(0, 0, 2, rho2);
-    fold(1, 2, 1, rho2);
+    if (shaped) addFieldsOf(true, true, slowness, rho, fresh, charge, current, slope);
+    else addFieldsOf(true, false, slowness, rho, fresh, charge, current, slope);
+  }
+  if (potentials) {
+    if (shaped) addPotentialsOf(true, true, slowness, fresh, charge, current);
+    else addPotentialsOf(true, false, slowness, fresh, charge, current);
+  }
+}
+
+/** The same on any other curve. */
+export function addCurve(
+  slowness: f64,
+  fields: bool,
+  potentials: bool,
+  shaped: bool,
+  fresh: bool,
+  charge: f64,
+  current: f64,
+  slope: f64,
+): void {
+  if (fields) {
+    if (shaped) addFieldsOf(false, true, slowness, 0, fresh, charge, current, slope);
+    else addFieldsOf(false, false, slowness, 0, fresh, charge, current, slope);
+  }
+  if (potentials) {
+    if (shaped) addPotentialsOf(false, true, slowness, fresh, charge, current);
+    else addPotentialsOf(false, false, slowness, fresh, charge, current);
+  }
+}
+
+/** Sums of the samples, and what they hold of high degrees. */
+export function foldLine(rho: f64, fields: bool, potentials: bool): void {
+  if (fields) {
+    fold(0, 0, 2, rho * rho);
+    fold(1, 2, 1, rho * rho);
   }
   if (potentials) {
     fold(2, 3, 1, 1);

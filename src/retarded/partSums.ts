@@ -1,6 +1,6 @@
 import { instantiate } from '../elementary/wasm.ts';
 import bytes from '../kernels/retarded.ts';
-import type { WaveTerm } from '../scenario/model.ts';
+import type { Profile, WaveTerm } from '../scenario/model.ts';
 import type { Waveform } from '../scenario/waveform.ts';
 import type { Constants } from './elements.ts';
 import { instantRounding } from './panels.ts';
@@ -13,16 +13,31 @@ interface Kernel {
   readonly memory: WebAssembly.Memory;
   heapBase(): number;
   setPanel(address: number, perSpeed: number): void;
-  begin(): void;
-  lookAlong(foot: number, rho2: number, middle: number, half: number): void;
+  lookAlong(foot: number, rho2: number, middle: number, half: number, late: number, slowness: number): void;
   lookBack(late: number, slowness: number): void;
-  addCharge(address: number, degree: number, middle: number, perHalf: number, factor: number): void;
-  addCurrent(address: number, degree: number, middle: number, perHalf: number, factor: number, shift: number): void;
-  addSlope(address: number, degree: number, middle: number, perHalf: number, factor: number, shift: number): void;
-  setNoise(charge: number, current: number, slope: number): void;
-  addLine(slowness: number, rho: number, fields: boolean, potentials: boolean): void;
-  addCurve(slowness: number, fields: boolean, potentials: boolean): void;
-  foldLine(rho2: number, fields: boolean, potentials: boolean): void;
+  addTerm(window: number, factor: number, shift: number, charged: boolean, fresh: boolean): void;
+  addLine(
+    slowness: number,
+    rho: number,
+    fields: boolean,
+    potentials: boolean,
+    shaped: boolean,
+    fresh: boolean,
+    charge: number,
+    current: number,
+    slope: number,
+  ): void;
+  addCurve(
+    slowness: number,
+    fields: boolean,
+    potentials: boolean,
+    shaped: boolean,
+    fresh: boolean,
+    charge: number,
+    current: number,
+    slope: number,
+  ): void;
+  foldLine(rho: number, fields: boolean, potentials: boolean): void;
   foldCurve(fields: boolean, potentials: boolean): void;
 }
 
@@ -43,7 +58,8 @@ const CURRENT = CHARGE + PLACES;
 const SLOPE = CURRENT + PLACES;
 const CHARGE_MOVED = SLOPE + PLACES;
 const CURRENT_MOVED = CHARGE_MOVED + PLACES;
-const NOISE = CURRENT_MOVED + 11 * PLACES;
+const SAMPLES = CURRENT_MOVED + PLACES;
+const NOISE = SAMPLES + 10 * PLACES;
 const SUMS = NOISE + 4;
 const SIZES = NOISE + 16;
 const SQUARES = SIZES + 4;
@@ -97,7 +113,7 @@ export class PartSums {
     if (missing > 0) memory.grow(Math.ceil(missing / 65536));
     this.#panel = 8 * from;
     this.#numbers = new Float64Array(memory.buffer, this.#panel, PANEL_NUMBERS);
-    this.#shelf = new Shelf(new Float64Array(memory.buffer), from + PANEL_NUMBERS);
+    this.#shelf = new Shelf(memory.buffer, from + PANEL_NUMBERS);
     this.#squares = [0, 1, 2, 3].map((g) => this.#numbers.subarray(SQUARES + g * DEGREES, SQUARES + (g + 1) * DEGREES));
     for (let m = 0; m <= MIDDLE; m++) {
       const mirrored = m + PLACES / 2;
@@ -132,60 +148,63 @@ export class PartSums {
       kernel.setPanel(this.#panel, perSpeed);
       this.#perSpeed = perSpeed;
     }
+    const { line } = view;
+    const middle = (from + to) / 2;
     const half = (to - from) / 2;
-    kernel.begin();
-    this.#look(view, (from + to) / 2, half);
-
-    const scales = scalesOf(waveform);
+    const [ofCharge, ofCurrent, ofSlope] = scalesOf(waveform);
     const extent = Math.abs(from) + Math.abs(to) + view.reach;
     // What rounding of places does to instants.
     const placed = Number.EPSILON * extent * perSpeed;
     const nearest = view.distance(from, to);
-    const farthest = nearest + 2 * half;
+    const farthest = (nearest + 2 * half) * perSpeed;
     const longest = Math.max(Math.abs(from), Math.abs(to));
+    const rho = line ? Math.sqrt(line.rho2) : 0;
+    if (!line) this.#look(view, middle, half);
     let factors = 0;
     let bends = 0;
-    terms.forEach(({ factor, delay, slowness, profile }, n) => {
-      const rounded = instantRounding(t, delay, slowness * longest, farthest * perSpeed);
-      const shift = Math.abs(factor) * (placed + rounded);
-      kernel.lookBack(t - delay, slowness);
+    let samples = false;
+    for (let n = 0; n < terms.length; n++) {
+      const { factor, delay, slowness, profile } = terms[n]!;
+      if (line && n === 0) kernel.lookAlong(line.foot, line.rho2, middle, half, t - delay, slowness);
+      else kernel.lookBack(t - delay, slowness);
       if (this.#numbers[LOWEST + 1]! >= 0) {
+        const shift = Math.abs(factor) * (placed + instantRounding(t, delay, slowness * longest, farthest));
+        bends += shift * this.#addTerm(waveform, factor, shift, profile !== undefined, factors === 0);
         factors += Math.abs(factor);
-        bends += shift * this.#addTerm(waveform, factor, shift, profile !== undefined);
       }
       // Terms come in order of slowness, and those of one slowness and profile share their elements.
       const next = terms[n + 1];
-      if (next?.slowness === slowness && next.profile === profile) return;
-      if (factors > 0) {
-        for (let place = 0; place < PLACES; place++) {
-          const s = this.#numbers[ARC + place]!;
-          this.#numbers[AMPLITUDE + place] = profile ? profile.value(s) : 1;
-          this.#numbers[GRADIENT + place] = profile ? profile.slope(s) : 0;
-        }
-        kernel.setNoise(
-          factors * ROUNDINGS * scales[0],
-          factors * ROUNDINGS * scales[1],
-          factors * ROUNDINGS * scales[2] + bends,
-        );
-        if (view.line) kernel.addLine(slowness, Math.sqrt(view.line.rho2), fields, potentials);
-        else kernel.addCurve(slowness, fields, potentials);
-      }
+      if (factors === 0 || (next?.slowness === slowness && next.profile === profile)) continue;
+      const shaped = profile !== undefined;
+      if (shaped) this.#shape(profile);
+      const noise = ROUNDINGS * factors;
+      const [q, w, d] = [noise * ofCharge, noise * ofCurrent, noise * ofSlope + bends];
+      if (line) kernel.addLine(slowness, rho, fields, potentials, shaped, !samples, q, w, d);
+      else kernel.addCurve(slowness, fields, potentials, shaped, !samples, q, w, d);
+      samples = true;
       factors = 0;
       bends = 0;
-    });
-
-    if (view.line) kernel.foldLine(view.line.rho2, fields, potentials);
+    }
+    if (!samples || !fields || !potentials) out.fill(0, at, at + PART_NUMBERS);
+    if (!samples) return;
+    if (line) kernel.foldLine(rho, fields, potentials);
     else kernel.foldCurve(fields, potentials);
     this.#take(k, view, half, ROUNDINGS + (Number.EPSILON * extent) / nearest, wanted, out, at);
   }
 
-  /** Places of the nodes. */
+  /** Amplitudes at the nodes, and their gradients. */
+  #shape(profile: Profile): void {
+    const numbers = this.#numbers;
+    for (let place = 0; place < PLACES; place++) {
+      const s = numbers[ARC + place]!;
+      numbers[AMPLITUDE + place] = profile.value(s);
+      numbers[GRADIENT + place] = profile.slope(s);
+    }
+  }
+
+  /** Places of the nodes on a curve. */
   #look(view: PlaceView, middle: number, half: number): void {
     const numbers = this.#numbers;
-    if (view.line) {
-      this.#kernel.lookAlong(view.line.foot, view.line.rho2, middle, half);
-      return;
-    }
     for (let place = 0; place < PLACES; place++) {
       const s = middle + half * numbers[NODES + place]!;
       view.look(s);
@@ -202,7 +221,7 @@ export class PartSums {
   }
 
   /** Adds a term at the source times left in the panel to the sums of waves; returns the largest |w″| met, A/s². */
-  #addTerm(waveform: Waveform, factor: number, shift: number, charged: boolean): number {
+  #addTerm(waveform: Waveform, factor: number, shift: number, charged: boolean, fresh: boolean): number {
     const numbers = this.#numbers;
     let windows = this.#windows.get(waveform);
     if (!windows) {
@@ -211,12 +230,10 @@ export class PartSums {
     }
     const window = windows.about(numbers[LOWEST]!, numbers[LOWEST + 1]!);
     if (window) {
-      const { middle, perHalf, charge, current, slope } = window;
-      if (charged) this.#kernel.addCharge(charge.address, charge.degree, middle, perHalf, factor);
-      this.#kernel.addCurrent(current.address, current.degree, middle, perHalf, factor, shift);
-      this.#kernel.addSlope(slope.address, slope.degree, middle, perHalf, factor, shift);
+      this.#kernel.addTerm(window.address, factor, shift, charged, fresh);
       return window.bend;
     }
+    if (fresh) numbers.fill(0, CHARGE, SAMPLES);
     let bend = 0;
     for (let place = 0; place < PLACES; place++) {
       const u = numbers[INSTANT + place]!;
@@ -243,17 +260,15 @@ export class PartSums {
     at: number,
   ): void {
     const numbers = this.#numbers;
-    out.fill(0, at, at + PART_NUMBERS);
     const E = half * electric;
     const B = half * magnetic;
     if (view.line) {
       const { px, py, pz } = view.line;
       const { sx, sy, sz } = view;
-      const across = E * numbers[SUMS]!;
-      const along = E * numbers[SUMS + 1]!;
-      const around = B * numbers[SUMS + 2]!;
-      const carried = B * numbers[SUMS + 4]!;
       if (fields) {
+        const across = E * numbers[SUMS]!;
+        const along = E * numbers[SUMS + 1]!;
+        const around = B * numbers[SUMS + 2]!;
         out[at] = across * px + along * sx;
         out[at + 1] = across * py + along * sy;
         out[at + 2] = across * pz + along * sz;
@@ -262,6 +277,7 @@ export class PartSums {
         out[at + 5] = around * (sx * py - sy * px);
       }
       if (potentials) {
+        const carried = B * numbers[SUMS + 4]!;
         out[at + 6] = E * numbers[SUMS + 3]!;
         out[at + 7] = carried * sx;
         out[at + 8] = carried * sy;

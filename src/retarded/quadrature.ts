@@ -88,8 +88,10 @@ const SLOW_SAFETY = 5;
  * @param squares squared coefficients, ascending degrees; of a vector, their sums over its components
  */
 export function kronrodError(squares: Float64Array): number {
-  const size = (pair: number) => Math.sqrt(squares[2 * pair]! + squares[2 * pair + 1]!);
-  const [first, second, third, last] = [size(0), size(1), size(2), size(3)];
+  const first = Math.sqrt(squares[0]! + squares[1]!);
+  const second = Math.sqrt(squares[2]! + squares[3]!);
+  const third = Math.sqrt(squares[4]! + squares[5]!);
+  const last = Math.sqrt(squares[6]! + squares[7]!);
   if (last === 0) return 0;
   const fall = Math.max(second / first, third / second, last / third);
   if (!(fall < SLOW)) return SLOW_SAFETY * Math.max(second, third, last);

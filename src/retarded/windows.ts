@@ -21,49 +21,51 @@ const LATE = 1 / 16;
 /** Halvings of a window before its waveform counts as one that no polynomial follows. */
 const HALVINGS = 24;
 
-/** q, w or w′ about an instant as a polynomial in (u − middle)·perHalf. */
-export interface Polynomial {
-  /** where the kernel finds its coefficients, of falling powers */
-  readonly address: number;
-  readonly degree: number;
-}
-
 /** A stretch of source time on which a waveform is a polynomial to rounding of its peaks. */
 export interface Window {
-  readonly middle: number;
-  readonly perHalf: number;
-  readonly charge: Polynomial;
-  readonly current: Polynomial;
-  readonly slope: Polynomial;
+  /** where the kernel finds it */
+  readonly address: number;
   /** the largest |w″| found there, A/s² */
   readonly bend: number;
 }
 
-/** Where polynomials lie in the kernel's memory. All of it is forgotten when it is full: they are made again alike. */
+/** Numbers before a window's coefficients: middle, 1/half, degree. */
+const HEAD = 4;
+
+/** Where windows lie in the kernel's memory. All of them are forgotten when it is full: they are made again alike. */
 export class Shelf {
+  readonly #numbers: Float64Array;
+  readonly #integers: Int32Array;
   #next: number;
   /** grows with every time that all is forgotten */
   edition = 0;
 
+  /** @param from in numbers of 8 bytes */
   constructor(
-    readonly memory: Float64Array,
+    memory: ArrayBuffer,
     readonly from: number,
   ) {
+    this.#numbers = new Float64Array(memory);
+    this.#integers = new Int32Array(memory);
     this.#next = from;
   }
 
-  /** Makes room for `count` more numbers, or forgets. */
-  reserve(count: number): void {
-    if (this.#next + count <= this.memory.length) return;
-    this.#next = this.from;
-    this.edition++;
-  }
-
-  put(ascending: Float64Array, degree: number): Polynomial {
+  /**
+   * Puts a window as the kernel reads it; returns its address.
+   * @param powers of w, w′ and q: coefficients of ascending powers of (u − middle)/half, up to `degree`
+   */
+  put(middle: number, half: number, degree: number, powers: readonly Float64Array[]): number {
+    if (this.#next + HEAD + 3 * SAMPLES > this.#numbers.length) {
+      this.#next = this.from;
+      this.edition++;
+    }
     const at = this.#next;
-    for (let power = 0; power <= degree; power++) this.memory[at + degree - power] = ascending[power]!;
-    this.#next += degree + 1;
-    return { address: 8 * at, degree };
+    this.#numbers[at] = middle;
+    this.#numbers[at + 1] = 1 / half;
+    this.#integers[2 * (at + 2)] = degree;
+    this.#next += HEAD;
+    for (let power = degree; power >= 0; power--) for (const list of powers) this.#numbers[this.#next++] = list[power]!;
+    return 8 * at;
   }
 }
 
@@ -147,20 +149,14 @@ export class Windows {
       return lastAbove(coefficients[kind]!, DROPPED * this.#scales[kind]!);
     });
     if (degrees.some((degree) => degree >= SAMPLES - SPENT)) return undefined;
-    this.shelf.reserve(3 * SAMPLES);
-    const [charge, current, slope] = coefficients.map((list, kind) => {
-      const degree = degrees[kind]!;
-      inPowers(list, degree, powers);
-      return this.shelf.put(powers, degree);
-    }) as [Polynomial, Polynomial, Polynomial];
-    return { middle, perHalf: 1 / half, charge, current, slope, bend };
+    const [charge, current, slope] = coefficients.map((list, kind) => inPowers(list, degrees[kind]!));
+    return { address: this.shelf.put(middle, half, Math.max(...degrees), [current!, slope!, charge!]), bend };
   }
 }
 
 const sample = new Float64Array(4);
 const samples = [0, 1, 2].map(() => new Float64Array(SAMPLES));
 const coefficients = [0, 1, 2].map(() => new Float64Array(SAMPLES));
-const powers = new Float64Array(SAMPLES);
 
 /** Zeros of T₂₄, and T_k at them: COSINES[k·24 + m]. */
 const NODES = Float64Array.from({ length: SAMPLES }, (_, m) => cos((Math.PI * (m + 0.5)) / SAMPLES));
@@ -190,21 +186,23 @@ function lastAbove(list: Float64Array, limit: number): number {
  * Σ c_k T_k up to `degree` in ascending powers, by T_{k+1} = 2x T_k − T_{k−1}. Coefficients that come to rounding within 24
  * fall by 4 or more from one to the next, so that powers, which grow by 1 + √2, do not cancel.
  */
-function inPowers(series: Float64Array, degree: number, out: Float64Array): void {
-  out.fill(0);
+function inPowers(series: Float64Array, degree: number): Float64Array {
+  const powers = new Float64Array(SAMPLES);
   let previous = new Float64Array(SAMPLES + 1);
   let current = new Float64Array(SAMPLES + 1);
-  previous[1] = 0;
   current[0] = 1;
   for (let k = 0; k <= degree; k++) {
-    for (let power = 0; power <= k; power++) out[power]! += series[k]! * current[power]!;
-    const gain = k === 0 ? 1 : 2;
     const next = new Float64Array(SAMPLES + 1);
-    for (let power = 0; power <= k + 1; power++)
-      next[power] = (power > 0 ? gain * current[power - 1]! : 0) - previous[power]!;
+    const gain = k === 0 ? 1 : 2;
+    for (let power = 0; power <= k; power++) {
+      powers[power]! += series[k]! * current[power]!;
+      next[power + 1] = gain * current[power]!;
+    }
+    for (let power = 0; power < k; power++) next[power]! -= previous[power]!;
     previous = current;
     current = next;
   }
+  return powers;
 }
 
 /** The index of the first of ascending numbers that is above x. */

@@ -1,13 +1,17 @@
 import type { GriddedSources } from '../../src/gridding/edges.ts';
 import { chartFile } from '../../src/report/svg.ts';
 import { DelayGrid, ElementList } from '../../src/retarded/delayGrid.ts';
+import { constantsOf } from '../../src/retarded/elements.ts';
 import { fieldOf } from '../../src/retarded/field.ts';
 import { GriddedIntegrator } from '../../src/retarded/gridded.ts';
 import { exactHistory } from '../../src/retarded/history.ts';
+import { PART_NUMBERS, PartSums } from '../../src/retarded/partSums.ts';
+import { viewOf } from '../../src/retarded/pieceView.ts';
 import { prepareSources } from '../../src/retarded/prepare.ts';
+import { KRONROD_POINTS } from '../../src/retarded/quadrature.ts';
 import { framesOf, withBelow } from '../../src/run/planes.ts';
 import { mediumOf } from '../../src/scenario/constants.ts';
-import { polyline } from '../../src/scenario/curve.ts';
+import { type ArcPiece, circlePiece, type LinePiece, linePiece, polyline } from '../../src/scenario/curve.ts';
 import { EXAMPLES } from '../../src/scenario/examples.ts';
 import { loadScenario } from '../../src/scenario/load.ts';
 import type { Source, Vec3 } from '../../src/scenario/model.ts';
@@ -196,6 +200,50 @@ function closedFormJobs(): Job[] {
   ];
 }
 
+/** Parts that filaments are cut into, each of 15 elements, and instants of a round. */
+const PARTS = 100;
+export const ELEMENTS = PARTS * KRONROD_POINTS;
+export const SUM_INSTANTS = 50;
+
+/** E and B of the elements of a wave at 0.7 of full speed, part by part at one observer, with their error estimates. */
+function elementJob(name: string, piece: LinePiece | ArcPiece, observer: Vec3): Job {
+  const sums = new PartSums();
+  const out = new Float64Array(PART_NUMBERS);
+  const constants = constantsOf(vacuum);
+  const view = viewOf(piece, observer);
+  const carried = {
+    terms: [{ factor: 1, delay: 0, slowness: 1 / (0.7 * vacuum.speed) }],
+    waveform: makeWaveform({ type: 'gaussianDerivative', amplitude: 1, sigma: 0.4e-9, delay: 3e-9 }),
+  };
+  const wanted = { fields: true, potentials: false };
+  const length = piece.length / PARTS;
+  return {
+    case: `E and B of ${ELEMENTS} elements ${name}, with error estimates`,
+    unit: ELEMENT_UNIT,
+    round: () =>
+      timed(ELEMENTS * SUM_INSTANTS, () => {
+        let sum = 0;
+        for (let n = 0; n < SUM_INSTANTS; n++) {
+          const t = 3e-9 + (5e-9 * n) / SUM_INSTANTS;
+          for (let m = 0; m < PARTS; m++) {
+            sums.integrate(constants, carried, view, m * length, (m + 1) * length, t, wanted, out, 0);
+            sum += out[2]! + out[4]!;
+          }
+        }
+        return sum;
+      }),
+  };
+}
+
+export const ELEMENT_UNIT = 'elements × instants';
+
+function elementJobs(): Job[] {
+  return [
+    elementJob('on a straight wire', linePiece([0, 0, -0.5], [0, 0, 0.5], 0), [0.4, 0.2, 0.3]),
+    elementJob('on a circle', circlePiece([0, 0, 0], [0, 0, 1], 0.16), [0.1, 0.2, 0.5]),
+  ];
+}
+
 /** The default scenario, and places on its planes that lie beside its wire, not on it. */
 const bench = (() => {
   const loaded = loadScenario(EXAMPLES['bench-cable-pulse']);
@@ -290,5 +338,11 @@ export function costSvg({ edges, instants }: ReturnType<typeof costs>): string {
 }
 
 export function jobs(): Job[] {
-  return [griddedJob('smooth', smooth), griddedJob('kinked', kinked), spreadingJob(), ...closedFormJobs()];
+  return [
+    griddedJob('smooth', smooth),
+    griddedJob('kinked', kinked),
+    spreadingJob(),
+    ...elementJobs(),
+    ...closedFormJobs(),
+  ];
 }

@@ -1,10 +1,11 @@
 /**
  * What the exact side costs on one thread: histories of gridded currents, closed forms, quadrature; and, where there is a
- * C compiler, the direct sum of as many delayed terms in C beside the delay spreading that takes its place, in turns.
+ * C compiler, the direct sum of as many delayed terms in C beside the delay spreading that takes its place, and sums of as many
+ * elements at one instant beside those of the kernel, in turns.
  * Then planes on one thread and on two, as workers share them, and what a history costs against edges and instants, drawn
  * in out/integral-cost.svg. Targets: 1 ms for 228 edges, 1000 instants and six components; 600 × 300 closed-form values well
  * below 0.1 s; a plane of 256² at one instant in 0.1 s; an animation of three planes of 128² and 120 frames in 2 s; two
- * threads 1.8 times as fast as one.
+ * threads 1.8 times as fast as one; element sums at 0.33 of the C compiler's, whose vectors are twice as long.
  */
 import { spawnSync } from 'node:child_process';
 import { mkdirSync, mkdtempSync, rmSync, writeFileSync } from 'node:fs';
@@ -110,16 +111,46 @@ function compiled(folder) {
     : undefined;
 }
 
-function nativeJob(program, terms, instants) {
+/** C against kernel: the kernel's share of the elements a second of C. */
+const TARGET_SHARE = 0.33;
+
+function nativeJob(program, name, what, unit, size, instants) {
   return {
-    case: `sum of ${terms} delayed terms (q, w, w′) at ${instants} instants, direct, in C`,
-    unit: 'terms × instants',
+    case: what,
+    unit,
     round() {
-      const { stdout, status } = spawnSync(program, [String(terms), String(instants)], { encoding: 'utf8' });
+      const { stdout, status } = spawnSync(program, [name, String(size), String(instants)], { encoding: 'utf8' });
       if (status !== 0) throw new Error(`native/retarded.c ended with status ${status}`);
       return JSON.parse(stdout);
     },
   };
+}
+
+function nativeJobs(program, { TERMS, INSTANTS, ELEMENTS, SUM_INSTANTS, ELEMENT_UNIT }) {
+  const history = `sum of ${TERMS} delayed terms (q, w, w′) at ${INSTANTS} instants, direct, in C`;
+  const sums = `E and B of ${ELEMENTS} elements in C, no estimate`;
+  const elements = (name, pulse) =>
+    nativeJob(program, name, `${sums}, ${pulse}`, ELEMENT_UNIT, ELEMENTS, 10 * SUM_INSTANTS);
+  return [
+    nativeJob(program, 'terms', history, 'terms × instants', TERMS, INSTANTS),
+    elements('elements', 'the cheapest pulse'),
+    elements('sampled', 'any pulse, from a table'),
+  ];
+}
+
+/** Of results that count elements: the kernel's speed over that of C. */
+function shares(results, unit) {
+  const counting = results.filter((result) => result.unit === unit);
+  const native = counting.filter((result) => result.case.includes(' in C,'));
+  return counting
+    .filter((result) => !native.includes(result))
+    .flatMap((ours) =>
+      native.map((theirs) => ({
+        case: `${ours.case}, over: ${theirs.case}`,
+        ratio: ours.perSecond / theirs.perSecond,
+        target: TARGET_SHARE,
+      })),
+    );
 }
 
 const sorted = (list) => list.toSorted((a, b) => a - b);
@@ -131,16 +162,32 @@ const sorted = (list) => list.toSorted((a, b) => a - b);
 export async function benchRetarded(rounds = 41) {
   const folder = mkdtempSync(join(tmpdir(), 'retarded-'));
   try {
-    const { jobs, costs, costSvg, TERMS, INSTANTS } = await workload(folder);
+    const work = await workload(folder);
+    const { jobs, costs, costSvg } = work;
     const list = jobs();
     const program = compiled(folder);
-    if (program) list.push(nativeJob(program, TERMS, INSTANTS));
-    for (const job of list.slice(0, jobs().length)) for (let n = 0; n < WARM_UP; n++) job.round();
+    const own = list.length;
+    if (program) list.push(...nativeJobs(program, work));
+    for (const job of list.slice(0, own)) for (let n = 0; n < WARM_UP; n++) job.round();
     const taken = list.map(() => []);
     for (let n = 0; n < rounds; n++) for (const [m, job] of list.entries()) taken[m].push(job.round());
     const cost = costs();
     mkdirSync('out', { recursive: true });
     writeFileSync('out/integral-cost.svg', costSvg(cost));
+    const timed = list.map((job, m) => {
+      const ms = sorted(taken[m].map(({ seconds }) => 1000 * seconds));
+      const median = ms[ms.length >> 1];
+      return {
+        case: job.case,
+        median,
+        least: ms[0],
+        most: ms.at(-1),
+        rounds,
+        perSecond: (1000 * taken[m][0].work) / median,
+        unit: job.unit,
+        checksum: taken[m][0].checksum,
+      };
+    });
     return {
       title: 'The exact side, one thread, milliseconds',
       targetMs: TARGET_MS,
@@ -150,20 +197,8 @@ export async function benchRetarded(rounds = 41) {
           case: `cost of six components at one point against ${against}, seconds`,
           points: Object.fromEntries(points),
         })),
-        ...list.map((job, m) => {
-          const ms = sorted(taken[m].map(({ seconds }) => 1000 * seconds));
-          const median = ms[ms.length >> 1];
-          return {
-            case: job.case,
-            median,
-            least: ms[0],
-            most: ms.at(-1),
-            rounds,
-            perSecond: (1000 * taken[m][0].work) / median,
-            unit: job.unit,
-            checksum: taken[m][0].checksum,
-          };
-        }),
+        ...timed,
+        ...shares(timed, work.ELEMENT_UNIT),
       ],
     };
   } finally {
