@@ -19,7 +19,7 @@ const NARROW = 1 / 4;
 const LATE = 1 / 16;
 
 /** Halvings of a window before its waveform counts as one that no polynomial follows. */
-const HALVINGS = 24;
+const HALVINGS = 16;
 
 /** A stretch of source time on which a waveform is a polynomial to rounding of its peaks. */
 export interface Window {
@@ -83,8 +83,8 @@ export const scalesOf = ({ peak, timeScale, finalCharge }: Waveform): readonly [
  */
 export class Windows {
   readonly #starts: readonly number[];
-  /** by stretch between seams, then by width and place; `undefined` where the waveform is not resolved */
-  readonly #made: Map<number, Window | undefined>[];
+  /** by stretch between seams, then by width and place; null where the waveform is not resolved */
+  readonly #made: Map<number, Window | null>[];
   readonly #scales: readonly [number, number, number];
   #edition = 0;
 
@@ -120,11 +120,12 @@ export class Windows {
       level++;
     }
     for (const lowestLevel = level - HALVINGS; level >= lowestLevel && width >= needed; level--) {
-      const index = Math.floor((2 * (from - start)) / width);
-      const key = index * 128 + level + 64;
+      // Small integers, which maps find fastest: the index is below 2 / LATE · 2^HALVINGS, the level from −HALVINGS to 47.
+      const index = Math.floor((2 * (from - start)) / width) | 0;
+      const key = (index * 64 + level + HALVINGS) | 0;
       const made = this.#made[n]!;
       let window = made.get(key);
-      if (window === undefined && !made.has(key)) {
+      if (window === undefined) {
         const low = start + (index * width) / 2;
         window = this.#make(low, Math.min(low + width, end));
         made.set(key, window);
@@ -135,7 +136,7 @@ export class Windows {
     return undefined;
   }
 
-  #make(low: number, high: number): Window | undefined {
+  #make(low: number, high: number): Window | null {
     const middle = (low + high) / 2;
     const half = (high - low) / 2;
     let bend = 0;
@@ -148,7 +149,7 @@ export class Windows {
       chebyshev(values, coefficients[kind]!);
       return lastAbove(coefficients[kind]!, DROPPED * this.#scales[kind]!);
     });
-    if (degrees.some((degree) => degree >= SAMPLES - SPENT)) return undefined;
+    if (degrees.some((degree) => degree >= SAMPLES - SPENT)) return null;
     const [charge, current, slope] = coefficients.map((list, kind) => inPowers(list, degrees[kind]!));
     return { address: this.shelf.put(middle, half, Math.max(...degrees), [current!, slope!, charge!]), bend };
   }
