@@ -36,8 +36,8 @@ export interface ReadTraces {
   readonly notes: readonly string[];
 }
 
-/** Bytes of a text at most: its cells take some ten times their room. */
-const MOST_TEXT = 1e8;
+/** Bytes of a text at most: read into cells it takes up to twenty times its room. */
+const MOST_TEXT = 64e6;
 
 /**
  * Traces from the bytes of a file: our own traces.csv and traces.npz as they are, other CSV texts and NumPy files by their

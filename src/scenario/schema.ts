@@ -27,8 +27,9 @@ export const LIMITS = {
   layers: 128,
   /** cells across one sigma of phase: more is a continuous wave, which a pulse solver answers badly */
   cyclesPerSigma: 1000,
-  /** of any length, time, frequency, rate or current in SI units: their squares and cubes stay finite */
+  /** of any length, time, frequency, rate or current in SI units: their squares and cubes neither overflow nor vanish */
   magnitude: 1e30,
+  least: 1e-30,
   text: 1000,
   name: 100,
 } as const;
@@ -87,19 +88,25 @@ function transformed(parse: (given: number | string) => Parsed, wanted: string) 
   });
 }
 
-type Range = 'any' | 'positive' | 'not negative';
+type Range = 'any' | 'size' | 'positive' | 'not negative';
 
 /** A quantity with a unit, within a range. */
 function quantity(kind: Kind, range: Range = 'any') {
   const { words, example } = KINDS[kind];
-  const wanted = { any: words, positive: `${words} above 0`, 'not negative': `${words} of 0 or more` }[range];
+  const size = `${words} of 0, or of ${LIMITS.least} or more in size`;
+  const wanted = { any: words, size, positive: `${words} above 0`, 'not negative': `${words} of 0 or more` }[range];
   return transformed((given) => {
     const parsed = parseQuantity(given, kind);
     if ('reason' in parsed) return parsed;
     if (Math.abs(parsed.value) > LIMITS.magnitude)
       return { reason: `is ${show(given)}; it must be at most ${LIMITS.magnitude} in SI units` };
-    const inRange =
-      range === 'any' || (range === 'positive' ? parsed.value >= 1 / LIMITS.magnitude : parsed.value >= 0);
+    const { value } = parsed;
+    const inRange = {
+      any: true,
+      size: value === 0 || Math.abs(value) >= LIMITS.least,
+      positive: value >= LIMITS.least,
+      'not negative': value >= 0,
+    }[range];
     return inRange ? parsed : { reason: `is ${show(given)}; it must be ${wanted}, such as ${example}` };
   }, `${wanted}, such as ${example}`);
 }
@@ -143,7 +150,7 @@ const list = <Item extends z.ZodType>(item: Item, least: number, most: number, w
 };
 
 const amplitude = (what: string) =>
-  quantity('current')
+  quantity('current', 'size')
     .refine((value) => value !== 0, { error: 'is 0; a source needs a current, such as "1 A"' })
     .describe(`${what}, A`);
 const delay = quantity('time').describe(

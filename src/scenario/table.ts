@@ -6,6 +6,9 @@ import type { Waveform, WaveformSpec } from './waveform.ts';
 /** Frequencies at which a spectrum is looked at, up to twice what the samples resolve. */
 const LINES = 240;
 
+/** A, of the largest sample: squares of what is less are lost to rounding. */
+const LEAST_PEAK = 1e-30;
+
 /**
  * A current given by samples: the natural cubic spline through them (de Boor, A Practical Guide to Splines, 1978, ch. IV,
  * from memory), 0 before the first and after the last. Charge and derivatives are the spline's own.
@@ -137,6 +140,10 @@ function check(times: readonly number[], currents: readonly number[]): void {
   });
   const peak = currents.reduce((most, i) => Math.max(most, Math.abs(i)), 0);
   if (peak === 0) throw new RangeError('every current of the table is 0; a source needs a current.');
+  if (peak < LEAST_PEAK)
+    throw new RangeError(
+      `no current of the table is above ${peak} A; it takes ${LEAST_PEAK} A, whose square is not lost.`,
+    );
   const ends = times[0]! > 0 ? [0, currents.length - 1] : [currents.length - 1];
   for (const m of ends)
     if (currents[m] !== 0)

@@ -483,6 +483,22 @@ describe('refusals name the path, the value and the remedy', () => {
       expect(problemsOf({ ...bench(), [key]: JSON.parse(brackets) })[0]!.message).toMatch(/more than 100 deep/);
   });
 
+  test('currents so small that their squares are 0 are refused, and not looked for without end', () => {
+    const terms = [{ amplitude: -1.1e-239, tau1: '1.2 ns', tau2: '0.5 ns', n: 5 }];
+    for (const waveform of [
+      { type: 'heidler', terms },
+      { type: 'gaussian', amplitude: 1e-200, delay: '0.9 ns', sigma: '0.1 ns' },
+    ])
+      expect(problemsOf(changed({ [WAVEFORM]: waveform }))[0]!.message).toMatch(
+        /must be a current of 0, or of 1e-30 or more in size/,
+      );
+    const samples = [0, 1e-250, 0].map((current, n) => [n * 1e-9, current]);
+    expect(problemsOf(changed({ [WAVEFORM]: { type: 'table', samples } }))[0]!.message).toMatch(/above 1e-250 A/);
+    // The flanks of a table may be as small as they come.
+    const flanked = [0, 1e-250, 1, 1e-250, 0].map((current, n) => [n * 1e-9, current]);
+    expect(problemsOf(changed({ [WAVEFORM]: { type: 'table', samples: flanked } }))).toEqual([]);
+  });
+
   test('texts that would not show as they are have no place in a file', () => {
     for (const [text, code] of [
       ['a\u001b[2J', 'U+001B'],
