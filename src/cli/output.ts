@@ -137,12 +137,14 @@ const MAY_ADD = constants.W_OK | constants.X_OK;
 function refuseFolder(folder: string): void {
   const there = (place: string) => statSync(place, { throwIfNoEntry: false });
   let place = resolve(folder);
+  let isThere = false;
   try {
+    isThere = there(place)?.isDirectory() === true;
     while (!there(place)) place = dirname(place);
     if (!there(place)?.isDirectory()) throw failure('EEXIST');
     accessSync(place, MAY_ADD);
   } catch (error) {
-    throw place === resolve(folder) ? unwritable(folder, error) : unmade(folder, error);
+    throw isThere ? unwritable(folder, error) : unmade(folder, error);
   }
 }
 
