@@ -255,16 +255,17 @@ const isSmooth = ({ kinks, jump }: Waveform): boolean => kinks.length === 0 || (
 
 /**
  * W(p) = ∫₀^∞ w e^(−pt) dt on the contour's lines, (re, im) each, by Gauss's rule on parts that grow from each kink up to
- * the waveform's time scale or a part of a turn.
+ * the waveform's time scale or a part of a turn, and end at seams.
  */
 function spectrumOf(waveform: Waveform, { damping, step, lines }: Contour): Float64Array {
-  const { kinks, timeScale } = waveform;
+  const { kinks, seams, timeScale } = waveform;
   const spent = isSmooth(waveform) ? waveform.lastActivity(SPECTRUM_LEVEL) : Number.POSITIVE_INFINITY;
   const last = Math.min(spent, DAMPING / damping);
   const longest = Math.min(timeScale, (2 * HALF_PHASE) / (step * lines));
   const { nodes, weights } = gaussLegendre(POINTS);
   const out = new Float64Array(2 * (lines + 1));
-  const stations = [...new Set([0, ...kinks.filter((kink) => kink < last), last])].sort((a, b) => a - b);
+  const inside = [...kinks, ...seams].filter((t) => t < last);
+  const stations = [...new Set([0, ...inside, last])].sort((a, b) => a - b);
   for (let m = 1; m < stations.length; m++) {
     const to = stations[m]!;
     let length = kinks.includes(stations[m - 1]!) ? longest * FIRST_PART : longest;
@@ -544,8 +545,11 @@ function sumNodes(
 /** Roundings that a line's sum is worth, generously counted. */
 const ROUNDINGS = 32 * Number.EPSILON;
 
-/** Part of the lines, from the highest down, by which the size of those left out is judged. */
-const TAIL = 1 / 16;
+/**
+ * Part of the lines, from the highest down, by which the size of those left out is judged: wide enough to hold a peak of
+ * what equal spacing of a table's samples repeats in its spectrum.
+ */
+const TAIL = 1 / 4;
 
 /** Lines of one point back in time. */
 class Inverse {
