@@ -141,7 +141,14 @@ function commands(signal: AbortSignal, end: (status: number) => void): Command {
     .version(VERSION)
     .exitOverride()
     .configureOutput({
-      outputError: (text, write) => write(`${text.trimEnd().split('\n').map(printable).join('\n')}\n`),
+      outputError: (text, write) =>
+        write(
+          `${text
+            .trimEnd()
+            .split(/\n(?=\(Did you mean )/)
+            .map(printable)
+            .join('\n')}\n`,
+        ),
     })
     .showHelpAfterError('(see --help)');
 
