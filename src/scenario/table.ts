@@ -9,6 +9,9 @@ const LINES = 240;
 /** A, of the largest sample: squares of what is less are lost to rounding. */
 const LEAST_PEAK = 1e-30;
 
+/** s, between samples: divided by less, currents are beyond the largest number. */
+const LEAST_STEP = 1e-30;
+
 /**
  * A current given by samples: the natural cubic spline through them (de Boor, A Practical Guide to Splines, 1978, ch. IV,
  * from memory), 0 before the first and after the last. Charge and derivatives are the spline's own.
@@ -137,6 +140,8 @@ function check(times: readonly number[], currents: readonly number[]): void {
       throw new RangeError(`the first sample is at ${t} s; nothing flows before t = 0, shift the table.`);
     if (m > 0 && !(t > times[m - 1]!))
       throw new RangeError(`sample ${m + 1} is at ${t} s, not after ${times[m - 1]} s; times must rise.`);
+    if (m > 0 && t - times[m - 1]! < LEAST_STEP)
+      throw new RangeError(`sample ${m + 1} is ${t - times[m - 1]!} s after the one before; it takes ${LEAST_STEP} s.`);
   });
   const peak = currents.reduce((most, i) => Math.max(most, Math.abs(i)), 0);
   if (peak === 0) throw new RangeError('every current of the table is 0; a source needs a current.');

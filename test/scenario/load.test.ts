@@ -494,6 +494,8 @@ describe('refusals name the path, the value and the remedy', () => {
       );
     const samples = [0, 1e-250, 0].map((current, n) => [n * 1e-9, current]);
     expect(problemsOf(changed({ [WAVEFORM]: { type: 'table', samples } }))[0]!.message).toMatch(/above 1e-250 A/);
+    const steep = [0, 1e-323, 2e-9].map((t, n) => [t, n % 2]);
+    expect(problemsOf(changed({ [WAVEFORM]: { type: 'table', samples: steep } }))[0]!.message).toMatch(/takes 1e-30 s/);
     // The flanks of a table may be as small as they come.
     const flanked = [0, 1e-250, 1, 1e-250, 0].map((current, n) => [n * 1e-9, current]);
     expect(problemsOf(changed({ [WAVEFORM]: { type: 'table', samples: flanked } }))).toEqual([]);
