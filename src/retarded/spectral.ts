@@ -198,7 +198,7 @@ export function steadyField(
     const [fine, coarse] = [POINTS, FEWER_POINTS].map((points) => {
       const nodes = nodesAt(sources, owners, medium, point, 0, omega, points);
       const out = new Float64Array(WIDTH);
-      sumNodes(nodes, medium, 0, omega, weights, new Rotors(nodes, { damping: 0, step: omega, lines: 1 }, 1), out);
+      sumNodes(nodes, medium, 0, omega, weights, new Rotors(nodes, { damping: 0, step: omega }, 1), out);
       const latest = nodes.delay.reduce((most, delay) => Math.max(most, Math.abs(delay)), 0);
       return { out, rounding: inexact + Number.EPSILON * (16 + 2 * omega * latest) };
     }) as [{ out: Float64Array; rounding: number }, { out: Float64Array; rounding: number }];
@@ -237,7 +237,13 @@ interface Contour {
   readonly damping: number;
   readonly step: number;
   readonly lines: number;
+  /** part of the lines, from the highest down, by which the size of those left out is judged */
+  readonly tail: number;
 }
+
+/** For a spectrum that falls all the way; and, for equidistant samples of a table, whose spectrum repeats itself as it falls. */
+const TAIL = 1 / 16;
+const TAIL_OF_SAMPLES = 1 / 4;
 
 function contourOf(waveforms: readonly Waveform[], window: number): Contour {
   const period = PERIODS * Math.max(window, ...waveforms.map(({ timeScale }) => timeScale));
@@ -247,7 +253,12 @@ function contourOf(waveforms: readonly Waveform[], window: number): Contour {
       isSmooth(waveform) ? 2 * Math.PI * waveform.highestFrequency(SPECTRUM_LEVEL) : Number.POSITIVE_INFINITY,
     ),
   );
-  return { damping: DAMPING / period, step, lines: Math.min(MOST_LINES, Math.ceil(highest / step)) };
+  return {
+    damping: DAMPING / period,
+    step,
+    lines: Math.min(MOST_LINES, Math.ceil(highest / step)),
+    tail: waveforms.some(({ seams }) => seams.length > 0) ? TAIL_OF_SAMPLES : TAIL,
+  };
 }
 
 /** Whether nothing but a jump too small to matter ends a waveform's spectrum later than its shape does. */
@@ -433,7 +444,7 @@ class Rotors {
   readonly #turnRe: Float64Array;
   readonly #turnIm: Float64Array;
 
-  constructor(nodes: Nodes, { damping, step }: Contour, k = 0) {
+  constructor(nodes: Nodes, { damping, step }: Pick<Contour, 'damping' | 'step'>, k = 0) {
     const { delay } = nodes;
     this.re = Float64Array.from(delay, (t) => exp(-damping * t) * cos(k * step * t));
     this.im = Float64Array.from(delay, (t) => -exp(-damping * t) * sin(k * step * t));
@@ -545,12 +556,6 @@ function sumNodes(
 /** Roundings that a line's sum is worth, generously counted. */
 const ROUNDINGS = 32 * Number.EPSILON;
 
-/**
- * Part of the lines, from the highest down, by which the size of those left out is judged: wide enough to hold a peak of
- * what equal spacing of a table's samples repeats in its spectrum.
- */
-const TAIL = 1 / 4;
-
 /** Lines of one point back in time. */
 class Inverse {
   /** errors of E and B at t = 0, growing as e^(at) */
@@ -572,7 +577,7 @@ class Inverse {
       for (const g of [0, 1] as const) {
         const size = norm(this.lines.subarray(k * WIDTH, (k + 1) * WIDTH), g);
         sums[g] += size;
-        if (k >= (1 - TAIL) * count) tail[g] = Math.max(tail[g], size);
+        if (k >= (1 - contour.tail) * count) tail[g] = Math.max(tail[g], size);
       }
     // B is right relative to |E|/v: directions are rounded.
     const scale: [number, number] = [sums[0], Math.max(sums[1], sums[0] / medium.speed)];

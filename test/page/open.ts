@@ -41,7 +41,11 @@ export async function openPage(
       troubles.push(`${message.type()}: ${message.text()}`);
   });
   page.on('pageerror', (error) => troubles.push(`exception: ${error.message}`));
-  page.on('requestfailed', (request) => troubles.push(`failed: ${request.url()} ${request.failure()?.errorText}`));
+  page.on('requestfailed', (request) => {
+    const reason = request.failure()?.errorText;
+    // The page's own doing: a worker that is not wanted any more is ended before its script is there.
+    if (reason !== 'net::ERR_ABORTED') troubles.push(`failed: ${request.url()} ${reason}`);
+  });
   page.on('request', (request) => requests.push(request.url()));
   await page.goto(url);
   await page.waitForFunction(() => 'fieldassay' in globalThis);
