@@ -1,3 +1,4 @@
+import { boundarySchema, boundaryText } from '../compare/boundaryWords.ts';
 import { paretoFront } from '../compare/front.ts';
 import type { CaseResult, LadderResult, Outcome, SurveyResult } from '../compare/surveyResult.ts';
 import { isDone } from '../compare/surveyResult.ts';
@@ -18,17 +19,24 @@ const KEY_WORDS: Readonly<Record<string, string>> = {
   duration: 'duration',
 };
 
-/** A value of a survey file in few words; objects by their `type`, or else as JSON. */
+/** A value of a survey file in few words: walls as reports call them, other objects by their `type`, or else as JSON. */
 function valueWord(value: unknown): string {
   if (typeof value === 'string') return value;
   if (Array.isArray(value)) return value.map(valueWord).join(' × ');
   if (typeof value !== 'object' || value === null) return String(value);
+  const wall = boundarySchema.safeParse(value);
   const { type, ...others } = value as Record<string, unknown>;
-  if (typeof type !== 'string') return JSON.stringify(value);
-  return [type, ...Object.entries(others).map(([key, each]) => `${key} ${valueWord(each)}`)].join(', ');
+  if (wall.success) return wordsOf(boundaryText(wall.data), { ...others, layers: undefined });
+  return typeof type === 'string' ? wordsOf(type, others) : JSON.stringify(value);
 }
 
-/** "cells 5 mm, cpml, layers 8": what tells a case from the others. */
+const wordsOf = (first: string, others: object): string =>
+  [
+    first,
+    ...Object.entries(others).flatMap(([key, each]) => (each === undefined ? [] : `${key} ${valueWord(each)}`)),
+  ].join(', ');
+
+/** "cells 5 mm, CPML, 8 layers": what tells a case from the others. */
 export function caseName(settings: CaseResult['settings']): string {
   return Object.entries(settings)
     .map(([key, value]) => `${KEY_WORDS[key] ?? key} ${valueWord(value)}`.trim())
