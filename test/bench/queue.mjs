@@ -114,7 +114,7 @@ export async function benchQueue(rounds = 3) {
       const url = server.url(database);
       const workers = await readyWorkers(url, folder);
       const cold = await timed(['survey', 'first.json', '--out', `queue-${round}`, '--queue', url], folder, workers);
-      const warm = await timed(['survey', 'second.json', '--out', 'second', '--queue', url], folder, workers);
+      const warm = await timed(['survey', 'second.json', '--out', `second-${round}`, '--queue', url], folder, workers);
       for (const { child, ended } of workers) {
         child.kill('SIGINT');
         await ended;
