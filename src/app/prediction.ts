@@ -4,7 +4,7 @@ import type { Foresight } from '../run/foresee.ts';
 import { byId, h } from './dom.ts';
 import type { Foretell, Foretold } from './predictor.ts';
 import type { Store } from './store.ts';
-import { type Helper, startHelper } from './workers.ts';
+import { type PageWorker, startWorker } from './workers.ts';
 
 /** The first prediction waits so long, ms: pictures come first. */
 const FIRST = 1200;
@@ -18,7 +18,7 @@ const PATIENCE = 400;
  */
 export class Prediction {
   private readonly line = byId('predicted');
-  private worker: Helper<Foretell> | undefined;
+  private worker: PageWorker<Foretell> | undefined;
   /** when the worker was last asked, and for what */
   private asked: { readonly text: string; readonly at: number } | undefined;
   private foretold: { readonly text: string; readonly what: Foretold } | undefined;
@@ -62,8 +62,8 @@ export class Prediction {
     this.worker.ask({ scenario: json });
   }
 
-  private begin(): Helper<Foretell> {
-    return startHelper<Foretell, Foretold>(
+  private begin(): PageWorker<Foretell> {
+    return startWorker<Foretell, Foretold>(
       './predictor.js',
       (what) => this.take(what),
       (failed) => this.take({ failed }),

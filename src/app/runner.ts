@@ -3,7 +3,7 @@ import { Film } from '../scene/film.ts';
 import { planesShown } from '../scene/slices.ts';
 import type { Report, Request } from './messages.ts';
 import type { Store } from './store.ts';
-import { type Helper, startHelper } from './workers.ts';
+import { type PageWorker, startWorker } from './workers.ts';
 
 /** What decides a comparison's numbers: everything but title and planes. Runs are not repeated for those. */
 function decisive(json: unknown): string {
@@ -14,7 +14,7 @@ function decisive(json: unknown): string {
 
 /** Runs scenarios in a worker and puts what it tells into the store. One run at a time. */
 export class Runner {
-  private worker: Helper<Request> | null = null;
+  private worker: PageWorker<Request> | null = null;
   private ran = '';
   private readonly asked = new Set<string>();
 
@@ -35,7 +35,7 @@ export class Runner {
     const { json, scenario } = this.store.state;
     if (!scenario) return;
     this.stop();
-    this.worker = startHelper<Request, Report>(
+    this.worker = startWorker<Request, Report>(
       './coordinator.js',
       (report) => this.take(report),
       (message) => this.take({ kind: 'failed', message }),

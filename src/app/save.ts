@@ -14,7 +14,7 @@ import { notify } from './notice.ts';
 import type { PackAnswer, PackRequest } from './packer.ts';
 import type { Panes } from './panes.ts';
 import type { Store } from './store.ts';
-import { answerOf, startHelper } from './workers.ts';
+import { answerOf, startWorker } from './workers.ts';
 import { nameOf, written } from './written.ts';
 
 /** Hands a file to the browser's downloads. */
@@ -247,7 +247,7 @@ export class Saving {
   private async animation(): Promise<void> {
     type Answer = { kind: string; bytes?: Uint8Array<ArrayBuffer> };
     let answered: { resolve: (answer: Answer) => void; reject: (error: Error) => void };
-    const encoder = startHelper<EncoderRequest, Answer>(
+    const encoder = startWorker<EncoderRequest, Answer>(
       './encoder.js',
       (answer) => answered.resolve(answer),
       (message) => answered.reject(new Error(message)),

@@ -2,7 +2,7 @@
 const beside = (name: string): string => new URL(name, import.meta.url).href;
 
 /** A worker at work for the page. */
-export interface Helper<Request> {
+export interface PageWorker<Request> {
   ask(request: Request, transfer?: Transferable[]): void;
   /** Ends it at once, whatever it is doing; what it had sent by then is not heard any more. */
   end(): void;
@@ -13,11 +13,11 @@ export interface Helper<Request> {
  * @param take hears what it tells, until it is ended
  * @param fail hears, in words, that it could not be started, died, or told what cannot be read
  */
-export function startHelper<Request, Report>(
+export function startWorker<Request, Report>(
   script: string,
   take: (report: Report) => void,
   fail: (message: string) => void,
-): Helper<Request> {
+): PageWorker<Request> {
   const worker = new Worker(beside(script), { type: 'module' });
   let heard = true;
   worker.addEventListener('message', ({ data }: MessageEvent<Report>) => heard && take(data));
@@ -37,13 +37,13 @@ export function startHelper<Request, Report>(
  * @throws Error where it gives none
  */
 export async function answerOf<Request, Answer>(script: string, request: Request): Promise<Answer> {
-  let helper: Helper<Request> | undefined;
+  let worker: PageWorker<Request> | undefined;
   try {
     return await new Promise<Answer>((resolve, reject) => {
-      helper = startHelper<Request, Answer>(script, resolve, (message) => reject(new Error(message)));
-      helper.ask(request);
+      worker = startWorker<Request, Answer>(script, resolve, (message) => reject(new Error(message)));
+      worker.ask(request);
     });
   } finally {
-    helper?.end();
+    worker?.end();
   }
 }

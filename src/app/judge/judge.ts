@@ -11,7 +11,7 @@ import type { Places, Started } from '../places.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
 import { table } from '../table.ts';
-import { type Helper, startHelper } from '../workers.ts';
+import { type PageWorker, startWorker } from '../workers.ts';
 import { nameOf } from '../written.ts';
 import type { JudgeReport, JudgeRequest } from './messages.ts';
 
@@ -40,7 +40,7 @@ interface Given {
 }
 
 class JudgePlace {
-  private worker: Helper<JudgeRequest> | null = null;
+  private worker: PageWorker<JudgeRequest> | null = null;
   private given: Given | null = null;
   private judged: Judged | null = null;
   private due = false;
@@ -185,7 +185,7 @@ class JudgePlace {
     if (!given || store.state.problems.length > 0) return;
     this.due = false;
     this.worker?.end();
-    this.worker = startHelper<JudgeRequest, JudgeReport>(
+    this.worker = startWorker<JudgeRequest, JudgeReport>(
       './judge.js',
       (report) => this.hear(given, report),
       (message) => this.refuse(message),

@@ -4,7 +4,7 @@ import { BOUNDARIES, CPML_DEFAULTS } from '../../scenario/schema.ts';
 import { expandSurvey, loadSurvey } from '../../scenario/survey.ts';
 import { textOf } from '../../scenario/text.ts';
 import type { Store } from '../store.ts';
-import { type Helper, startHelper } from '../workers.ts';
+import { type PageWorker, startWorker } from '../workers.ts';
 import { Folder } from './folder.ts';
 import type { Report, Request } from './messages.ts';
 
@@ -39,7 +39,7 @@ export type SurveyTopic = 'survey' | 'run' | 'result';
  */
 export class SurveyModel {
   readonly state: SurveyState;
-  private worker: Helper<Request> | undefined;
+  private worker: PageWorker<Request> | undefined;
   private readonly kept = new Map<string, string>();
   private readonly listeners = new Map<SurveyTopic, (() => void)[]>();
   private folder: Folder | undefined;
@@ -155,7 +155,7 @@ export class SurveyModel {
   }
 
   private ask(request: Request): void {
-    this.worker ??= startHelper<Request, Report>(
+    this.worker ??= startWorker<Request, Report>(
       './survey.js',
       (report) => this.take(report),
       (message) => this.take({ kind: 'failed', message }),

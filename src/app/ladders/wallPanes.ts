@@ -15,7 +15,7 @@ import { LiveChart } from '../charts.ts';
 import { h } from '../dom.ts';
 import { paintLabels } from '../labels.ts';
 import { VIEWS } from '../panes.ts';
-import { type Helper, startHelper } from '../workers.ts';
+import { type PageWorker, startWorker } from '../workers.ts';
 import type { FilmReport, FilmRequest } from './filmer.ts';
 import type { SurveyModel } from './model.ts';
 
@@ -57,7 +57,7 @@ export class WallPanes {
   private readonly chart: LiveChart;
   private picture = new Picture(1, 1);
   private camera: Camera | undefined;
-  private worker: Helper<FilmRequest> | undefined;
+  private worker: PageWorker<FilmRequest> | undefined;
   private walls: readonly Wall[] = [];
   private films: Film[] = [];
   private sceneries: Scenery[] = [];
@@ -191,7 +191,7 @@ export class WallPanes {
     this.body.hidden = false;
     this.status.textContent = 'Starting the workers…';
     this.start.textContent = 'Cancel';
-    this.worker = startHelper<FilmRequest, FilmReport>(
+    this.worker = startWorker<FilmRequest, FilmReport>(
       './filmer.js',
       (report) => this.take(report),
       (message) => this.end(message),

@@ -23,7 +23,7 @@ import type { Prediction } from '../prediction.ts';
 import { download, textBlob } from '../save.ts';
 import type { Store } from '../store.ts';
 import { table } from '../table.ts';
-import { type Helper, startHelper } from '../workers.ts';
+import { type PageWorker, startWorker } from '../workers.ts';
 import { nameOf } from '../written.ts';
 import { aboutOf, type Report, type Request, type Wanted } from './messages.ts';
 import { type Wish, Wishes } from './wishes.ts';
@@ -55,7 +55,7 @@ class Found {
   private readonly figures = h('div', { className: 'charts grid wide' });
   private readonly tables = h('div', {});
   private readonly saves: readonly HTMLButtonElement[];
-  private worker: Helper<Request> | undefined;
+  private worker: PageWorker<Request> | undefined;
   private asked = 0;
   private answered = 0;
   private plan: Plan | null = null;
@@ -134,8 +134,8 @@ class Found {
     this.show();
   }
 
-  private begin(): Helper<Request> {
-    return startHelper<Request, Report>(
+  private begin(): PageWorker<Request> {
+    return startWorker<Request, Report>(
       './planner.js',
       (report) => this.take(report),
       (message) => this.take({ kind: 'refused', id: this.asked, message }),
