@@ -15,9 +15,9 @@ import { boxProblem, type Question, questionOf } from '../run/question.ts';
 import { lastArrival } from '../scenario/distance.ts';
 import { loadScenario } from '../scenario/load.ts';
 import type { Plane, Scenario } from '../scenario/model.ts';
-import { observerCell } from '../scenario/sites.ts';
+import { cellCentre, observerCell } from '../scenario/sites.ts';
 import type { TrustMap } from '../scene/film.ts';
-import { cellCentre, type ShownSlice, shownSlice } from '../scene/slices.ts';
+import { type ShownSlice, shownSlice } from '../scene/slices.ts';
 import { type Instants, instantsOf } from '../trace/trace.ts';
 import { heed } from './heed.ts';
 import { type Report, type Request, requestSchema } from './messages.ts';
@@ -306,7 +306,7 @@ function pointErrors(scenario: Scenario, { slice, instants, grid, exact: x }: Fi
       }
     }
   const late = Uint8Array.from({ length: all }, (_, p) =>
-    instants.E[frames - 1]! >= lastArrival(sources, medium, cellCentre(scenario, slice, p), ACTIVE) ? 0 : 1,
+    instants.E[frames - 1]! >= lastArrival(sources, medium, cellCentre(scenario.grid, slice.cells, p), ACTIVE) ? 0 : 1,
   );
   const [E, H] = sums.map(({ difference, energy }, field) =>
     Float32Array.from({ length: all }, (_, p) => {

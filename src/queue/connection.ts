@@ -33,7 +33,7 @@ export interface Statements {
   query<Row = Record<string, unknown>>(text: string, values?: readonly unknown[]): Promise<Row[]>;
 }
 
-export interface SessionOptions {
+export interface ConnectionOptions {
   readonly say: (text: string) => void;
   readonly signal?: AbortSignal;
   readonly waitsForRoom?: boolean;
@@ -82,7 +82,7 @@ export class Connection {
   static async open(
     address: Address,
     application: string,
-    { say, signal, waitsForRoom = false }: SessionOptions,
+    { say, signal, waitsForRoom = false }: ConnectionOptions,
   ): Promise<Connection> {
     const connection = new Connection(address, application, say, signal, waitsForRoom);
     signal?.throwIfAborted();

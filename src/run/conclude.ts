@@ -15,6 +15,7 @@ import { memoryNeeded } from '../fdtd/layout.ts';
 import type { GridResult } from '../fdtd/run.ts';
 import { distanceToSources, lastArrival } from '../scenario/distance.ts';
 import type { Observer, Vec3 } from '../scenario/model.ts';
+import { cellCentre } from '../scenario/sites.ts';
 import { COMPONENTS, type FieldHistory } from '../trace/trace.ts';
 import type { Answers, Asked } from './answers.ts';
 import { describeBoundary, notesOf } from './describe.ts';
@@ -76,7 +77,7 @@ export function conclude(given: Case): Comparison {
     ),
     integralError,
   });
-  const centres = points.slice(0, 3).map((p) => cellCentre(given, places.budgetCells, p));
+  const centres = points.slice(0, 3).map((p) => cellCentre(grid, places.budgetCells, p));
   const residuals = residualsOf(sources, medium, centres, steps * timeStep);
 
   const timing = ({ seconds, cellUpdates }: GridResult) => ({ seconds, cellUpdates });
@@ -149,21 +150,15 @@ function volumeFields({ box, free, volumeExact }: Answers) {
   return { grid: of(box), free: of(free ?? box), exact: volumeExact.history };
 }
 
-function cellCentre({ question }: Case, cells: Int32Array, p: number): Vec3 {
-  const { box, cellSize } = question.scenario.grid;
-  const at = (a: 0 | 1 | 2) => box.from[a] + (cells[3 * p + a]! + 0.5) * cellSize[a];
-  return [at(0), at(1), at(2)];
-}
-
 /** Closest and farthest trusted distance and wall clearance, for E and for H. */
 function trustedDistances(given: Case) {
   const { question, places, free, answers } = given;
-  const { sources, medium, tolerance } = question.scenario;
+  const { grid, sources, medium, tolerance } = question.scenario;
   const volume = volumeFields(answers);
   const levels = volumeLevels(answers, free?.floor ?? 0);
   const { distance, wallDistance, weight } = places.volume;
   const arrivals = Float64Array.from({ length: volume.exact.points.count }, (_, p) =>
-    lastArrival(sources, medium, cellCentre(given, places.volume.cell, p), ACTIVE),
+    lastArrival(sources, medium, cellCentre(grid, places.volume.cell, p), ACTIVE),
   );
   const samples = (a: FieldHistory, field: Field) => {
     const { error, status } = pointErrors(a, volume.exact, volume.exact, field, arrivals, levels);
@@ -220,8 +215,9 @@ function observerInside(
   { name, at }: Observer,
   p: number,
 ): ObserverResult {
-  const { sources, medium, tolerance } = given.question.scenario;
-  const { cells, place } = { cells: given.places.budgetCells, place: cellCentre(given, given.places.budgetCells, p) };
+  const { grid, sources, medium, tolerance } = given.question.scenario;
+  const cells = given.places.budgetCells;
+  const place = cellCentre(grid, cells, p);
   const arrival = lastArrival(sources, medium, place, ACTIVE);
   const perObserver = (field: Field) => {
     const floor = levels.rounding(field, p) + levels.exact(field, p);

@@ -9,7 +9,7 @@ import { difference, type Histories, type Levels } from '../compare/budget.ts';
 import type { Check } from '../compare/result.ts';
 import { formatNumber } from '../elementary/quantity.ts';
 import { distanceToSources } from '../scenario/distance.ts';
-import type { Vec3 } from '../scenario/model.ts';
+import { cellCentre } from '../scenario/sites.ts';
 import { type FieldHistory, instantsOf } from '../trace/trace.ts';
 import { rootMeanSquare } from './levels.ts';
 import type { Places } from './places.ts';
@@ -62,12 +62,8 @@ export async function predictLattice(
   if (kinked) return { reason: `has no closed form for the waveform of “${kinked.name}”, which is not smooth` };
   const { budgetCells, every } = places;
   const longest = Math.max(...grid.cellSize);
-  const centre = (p: number): Vec3 => {
-    const at = (a: 0 | 1 | 2) => grid.box.from[a] + (budgetCells[3 * p + a]! + 0.5) * grid.cellSize[a];
-    return [at(0), at(1), at(2)];
-  };
   const far = Array.from({ length: budgetCells.length / 3 }, (_, p) => p).filter(
-    (p) => distanceToSources(sources, centre(p)) >= NEAREST_CELLS * longest,
+    (p) => distanceToSources(sources, cellCentre(grid, budgetCells, p)) >= NEAREST_CELLS * longest,
   );
   if (far.length === 0)
     return { reason: `is predicted from ${NEAREST_CELLS} cells off the sources on, and no point is` };

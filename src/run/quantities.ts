@@ -4,6 +4,7 @@ import { farInstants, radiatedEnergy } from '../derived/radiation.ts';
 import { centreOf, largestPartAt, regionsAlong } from '../derived/regions.ts';
 import { longestPart } from '../retarded/panels.ts';
 import type { Scenario, Vec3 } from '../scenario/model.ts';
+import { cellCentre } from '../scenario/sites.ts';
 import type { Asked, Means } from './answers.ts';
 import type { Comparison } from './conclude.ts';
 import { vanishes } from './levels.ts';
@@ -51,13 +52,9 @@ export async function withQuantities(
 /** Both routes at the middles of the cells where the budget is taken. */
 function routesOf({ scenario, steps, timeStep }: Question, { inside, budgetCells }: Places): Routes {
   const { sources, medium, grid } = scenario;
-  const middle = (p: number): Vec3 => {
-    const at = (a: 0 | 1 | 2) => grid.box.from[a] + (budgetCells[3 * p + a]! + 0.5) * grid.cellSize[a];
-    return [at(0), at(1), at(2)];
-  };
   const all = Array.from({ length: budgetCells.length / 3 }, (_, p) => ({
     observer: inside[p]?.name ?? null,
-    at: middle(p),
+    at: cellCentre(grid, budgetCells, p),
   }));
   return compareRoutes(sources, medium, all, steps * timeStep, SEED);
 }

@@ -19,3 +19,14 @@ export function orderOfJump(jump: number): Waveform['expectedOrder'] {
     return { order: 2, reason: 'smooth but for a small jump at t = 0, whose front is an error of its own that stays' };
   return { order: 2, reason: 'smooth' };
 }
+
+/**
+ * The order of the grid's error for a current that need not be smooth where it begins: its field jumps with its slope.
+ * @param jump of the current at its start, part of its peak; `bend`: of its slope, part of the steepest
+ * @param whose slope jumps and where, for people: "the table jumps at its first sample"
+ */
+export function orderOfOnset(jump: number, bend: number, whose: string): Waveform['expectedOrder'] {
+  return jump <= JUMP_REFUSED && bend > JUMP_REFUSED
+    ? { order: 0.34, reason: `the slope of ${whose}, so its radiated field does` }
+    : orderOfJump(jump);
+}

@@ -1,6 +1,6 @@
 import { cos, sin } from '../elementary/elementary.ts';
 import { formatQuantity } from '../elementary/quantity.ts';
-import { JUMP_NOTED, JUMP_REFUSED, orderOfJump } from './jump.ts';
+import { JUMP_NOTED, orderOfJump, orderOfOnset } from './jump.ts';
 import { bisect, largest } from './search.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 
@@ -115,10 +115,7 @@ export function phasorPulse(spec: PhasorSpec): Waveform {
     kinks: jump > rounding || bend > rounding ? [0, period] : [],
     seams: [],
     jump,
-    expectedOrder:
-      jump <= JUMP_REFUSED && bend > JUMP_REFUSED
-        ? { order: 0.34, reason: 'the slope of the sum jumps at t = 0, so its radiated field does' }
-        : orderOfJump(jump),
+    expectedOrder: orderOfOnset(jump, bend, 'the sum jumps at t = 0'),
     lastActivity: (level) => sum.lastActivity(level),
     finalCharge: charge(period),
     highestFrequency: (level) => highestLine(spec, level),

@@ -25,3 +25,13 @@ export function observerCell(grid: Grid, at: Vec3): [number, number, number] {
   };
   return [index(0), index(1), index(2)];
 }
+
+/** The middle of cell p of a list of cells, three indices each, m. */
+export function cellCentre(
+  { box, cellSize }: Pick<Grid, 'box' | 'cellSize'>,
+  cells: ArrayLike<number>,
+  p: number,
+): Vec3 {
+  const at = (a: Axis) => box.from[a] + (cells[3 * p + a]! + 0.5) * cellSize[a];
+  return [at(0), at(1), at(2)];
+}

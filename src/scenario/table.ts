@@ -1,5 +1,5 @@
 import { cos, sin } from '../elementary/elementary.ts';
-import { JUMP_REFUSED, orderOfJump } from './jump.ts';
+import { orderOfOnset } from './jump.ts';
 import { bisect, largest } from './search.ts';
 import type { Waveform, WaveformSpec } from './waveform.ts';
 
@@ -90,10 +90,7 @@ export function table(spec: Extract<WaveformSpec, { type: 'table' }>): Waveform 
     kinks: [times[0]!, times[last]!],
     seams: times.slice(1, last),
     jump,
-    expectedOrder:
-      jump <= JUMP_REFUSED && startSlope > JUMP_REFUSED
-        ? { order: 0.34, reason: 'the slope of the table jumps at its first sample, so its radiated field does' }
-        : orderOfJump(jump),
+    expectedOrder: orderOfOnset(jump, startSlope, 'the table jumps at its first sample'),
     lastActivity: (level) => {
       const active = (t: number) => Math.abs(slope(t)) >= level * steepest;
       for (let m = last - 1; m >= 0; m--) {

@@ -1,6 +1,7 @@
 import { type Slice, sliceOf } from '../run/planes.ts';
 import { distanceToSources } from '../scenario/distance.ts';
-import type { Axis, Plane, Scenario, Vec3 } from '../scenario/model.ts';
+import type { Axis, Plane, Scenario } from '../scenario/model.ts';
+import { cellCentre } from '../scenario/sites.ts';
 
 /** A slice with what pictures need to know of its cells. */
 export interface ShownSlice extends Slice {
@@ -22,12 +23,7 @@ export function planesShown({ planes, grid }: Scenario): Plane[] {
 export function shownSlice(scenario: Scenario, plane: Plane): ShownSlice {
   const slice = sliceOf(scenario, plane);
   const distance = Float32Array.from({ length: slice.nu * slice.nv }, (_, p) =>
-    distanceToSources(scenario.sources, cellCentre(scenario, slice, p)),
+    distanceToSources(scenario.sources, cellCentre(scenario.grid, slice.cells, p)),
   );
   return { ...slice, distance };
-}
-
-/** The middle of a slice's cell, m. */
-export function cellCentre({ grid }: Scenario, { cells }: Slice, p: number): Vec3 {
-  return [0, 1, 2].map((a) => grid.box.from[a]! + (cells[3 * p + a]! + 0.5) * grid.cellSize[a]!) as unknown as Vec3;
 }

@@ -6,7 +6,7 @@ import { launchBrowser } from '../page/browser.ts';
 import { finished, openPage, settled } from '../page/open.ts';
 import { serveBuiltPage } from '../page/server.ts';
 import { SMALL } from '../page/small.ts';
-import { floorsOf, trendOf } from './steadiness.ts';
+import { growthOf } from './steadiness.ts';
 
 /** Changes of the scenario, each run to its end; so many of them before anything is measured. */
 const ROUNDS = 50;
@@ -75,20 +75,13 @@ test('the page holds no more after fifty runs than after ten', async () => {
     expect(await page.evaluate(() => fieldassay.store.state.run.status)).toBe('done');
     rounds.push(await taken(page, debug));
   }
-  const measured = rounds.slice(WARM);
-  const trends = (Object.keys(MOST) as (keyof typeof MOST)[]).map((key) => {
-    const floors = floorsOf(
-      measured.map((each) => each[key]),
-      ROW,
-    );
-    const { rise, error } = trendOf(floors);
+  const growths = growthOf(rounds.slice(WARM), Object.keys(MOST) as (keyof typeof MOST)[], ROW);
+  for (const { key, floors, rise, error } of growths)
     console.log(
       `${key}: ${floors.join(' ')}, ${ROW} rounds each; ` +
-        `${(rise / ROW).toFixed(2)} ± ${(error / ROW).toFixed(2)} a round, at most ${MOST[key]}`,
+        `${rise.toFixed(2)} ± ${error.toFixed(2)} a round, at most ${MOST[key]}`,
     );
-    return { key, rise: rise / ROW, error: error / ROW };
-  });
-  for (const { key, rise, error } of trends) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
+  for (const { key, rise, error } of growths) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
   const workers = rounds.map((each) => each.workers);
   console.log(`workers: ${workers.join(' ')}`);
   expect(Math.max(...workers)).toBe(workers[0]);

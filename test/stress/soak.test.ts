@@ -5,7 +5,7 @@ import { join } from 'node:path';
 import { createInterface } from 'node:readline';
 import { expect, onTestFinished, test } from 'vitest';
 import { SMALL } from '../run/surveyFolder.ts';
-import { floorsOf, trendOf } from './steadiness.ts';
+import { growthOf } from './steadiness.ts';
 
 /** For so long rounds follow each other in one process, minutes. */
 const MINUTES = 8;
@@ -55,20 +55,14 @@ test('memory stays flat over comparisons without end', async () => {
   const measured = taken.slice(WARM);
   // Fewer could not tell a rise of a tenth of a megabyte from an allocator's play.
   expect(measured.length).toBeGreaterThanOrEqual(8 * ROW);
-  const trends = (Object.keys(MOST) as (keyof typeof MOST)[]).map((key) => {
-    const floors = floorsOf(
-      measured.map((each) => each[key]),
-      ROW,
-    );
-    const { rise, error } = trendOf(floors);
+  const growths = growthOf(measured, Object.keys(MOST) as (keyof typeof MOST)[], ROW);
+  for (const { key, floors, rise, error } of growths)
     console.log(
       `${key}: ${floors.map((n) => (n / 1e6).toFixed(1)).join(' ')} MB, ${ROW} rounds each; ` +
-        `${(rise / ROW / 1e3).toFixed(1)} ± ${(error / ROW / 1e3).toFixed(1)} kB a round, at most ${MOST[key] / 1e3} kB`,
+        `${(rise / 1e3).toFixed(1)} ± ${(error / 1e3).toFixed(1)} kB a round, at most ${MOST[key] / 1e3} kB`,
     );
-    return { key, rise: rise / ROW, error: error / ROW };
-  });
   // Two standard errors: what is not surely below the bound does not pass.
-  for (const { key, rise, error } of trends) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
+  for (const { key, rise, error } of growths) expect(rise + 2 * error, key).toBeLessThan(MOST[key]);
   // Threads, ports and timers that are left behind.
   expect(Math.max(...measured.map(({ held }) => held))).toBeLessThanOrEqual(taken[0]!.held);
 });

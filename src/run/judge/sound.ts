@@ -6,7 +6,8 @@ import { predictGridField } from '../../lattice/predict.ts';
 import { predictGridFieldBySpectrum } from '../../lattice/spectral.ts';
 import { exactHistory } from '../../retarded/history.ts';
 import { distanceToSources, lastArrival } from '../../scenario/distance.ts';
-import type { Scenario, Vec3 } from '../../scenario/model.ts';
+import type { Scenario } from '../../scenario/model.ts';
+import { cellCentre } from '../../scenario/sites.ts';
 import { type FieldHistory, type Instants, instantsOf, samplePoints } from '../../trace/trace.ts';
 import { type Question, questionOf, sampleInterval } from '../question.ts';
 import { sampleAt } from './exactTraces.ts';
@@ -68,9 +69,7 @@ export class SoundErrors {
       return {
         reason: `is predicted from ${FEWEST_CELLS} cells per shortest wavelength on, and there are ${formatNumber(cellsPerWavelength, 2)}`,
       };
-    const centre = ([0, 1, 2] as const).map(
-      (a) => grid.box.from[a] + (cell[a] + 0.5) * grid.cellSize[a],
-    ) as unknown as Vec3;
+    const centre = cellCentre(grid, cell, 0);
     const distance = distanceToSources(sources, centre) / Math.max(...grid.cellSize);
     if (distance < NEAREST_CELLS)
       return {
